@@ -1,0 +1,1 @@
+"""Electrical studies of a ship's power plant from one Excel workbook."""

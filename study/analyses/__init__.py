@@ -1,0 +1,1 @@
+"""Room 4: one question a module."""

@@ -1,0 +1,1 @@
+"""Room 5: result against limit."""

@@ -1,0 +1,1 @@
+"""Foundation: pure functions, one module for each standard or subject."""

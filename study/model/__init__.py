@@ -1,0 +1,1 @@
+"""Room 2: what the plant is."""

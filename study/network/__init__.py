@@ -1,0 +1,1 @@
+"""Room 3: one operating mode as numbers."""

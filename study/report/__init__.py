@@ -1,0 +1,1 @@
+"""Room 6: results and verdicts shown; computes nothing."""
