@@ -1,0 +1,102 @@
+"""The one verdict type: a value against a limit, judged unrounded."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import Literal
+
+Status = Literal["within", "close", "exceeds", "not assessed"]
+Sense = Literal["at most", "at least"]
+STATUS_ORDER: tuple[Status, ...] = ("exceeds", "not assessed", "close", "within")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Verdict:
+    """One judged quantity.
+
+    Attributes
+    ----------
+    mode, subject, equipment, quantity : str
+        Where and what; `subject` is a row of the verdict grid, for example ``loading``.
+    value, limit : float
+        In `unit`; NaN where there is none.
+    sense : str
+        Whether the limit is an upper or a lower one.
+    margin : float
+        Distance to the limit as a fraction of it, positive inside.
+    status : str
+        ``within``, ``close``, ``exceeds`` or ``not assessed``.
+    depends_on_data : bool
+        True where the verdict flips within the tolerance of the data behind it.
+    basis : str
+        Rule or standard, marked where the project agreed another value.
+    cell : str
+        Governing input cell as ``Sheet!A1``, or empty.
+    remedy : str
+        What would cure it, in one sentence; empty where nothing needs doing.
+    """
+
+    mode: str
+    subject: str
+    equipment: str
+    quantity: str
+    value: float
+    limit: float
+    unit: str
+    sense: Sense
+    margin: float
+    status: Status
+    depends_on_data: bool
+    basis: str
+    cell: str
+    remedy: str
+
+
+def judge(value: float, limit: float, sense: Sense, close_margin: float) -> tuple[Status, float]:
+    """Judge one unrounded value.
+
+    Parameters
+    ----------
+    value, limit : float
+        In the same unit.
+    sense : {'at most', 'at least'}
+        Kind of limit.
+    close_margin : float
+        Fraction of the limit inside which a value that holds is called close.
+
+    Returns
+    -------
+    status : str
+        The word of the verdict.
+    margin : float
+        (limit - value) / |limit| for an upper limit, the reverse for a lower one; the plain difference
+        where the limit is zero.
+
+    Examples
+    --------
+    >>> judge(95.0, 100.0, "at most", 0.10)
+    ('close', 0.05)
+    >>> judge(100.0, 100.0, "at most", 0.10)[0]
+    'close'
+    >>> judge(float("nan"), 100.0, "at most", 0.10)[0]
+    'not assessed'
+    """
+    if math.isnan(value) or math.isnan(limit):
+        return "not assessed", math.nan
+    distance = limit - value if sense == "at most" else value - limit
+    margin = distance / abs(limit) if limit else distance
+    if distance < 0:
+        return "exceeds", margin
+    return ("close" if margin < close_margin else "within"), margin
+
+
+def worst(verdicts: tuple[Verdict, ...]) -> Verdict | None:
+    """Return the governing verdict: worst status first, then the smallest margin; None for none."""
+    if not verdicts:
+        return None
+    return min(verdicts, key=lambda v: (STATUS_ORDER.index(v.status), _margin_key(v)))
+
+
+def _margin_key(verdict: Verdict) -> float:
+    return math.inf if math.isnan(verdict.margin) else verdict.margin

@@ -1,0 +1,121 @@
+"""Result of the sharing study: sets in parallel, as set, as trimmed, and maladjusted."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from study.results.arrays import BoolArray, FloatArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class SharingCurve:
+    """kW and kvar of every set over total load, arrays [load, set]; totals and frequency [load].
+
+    ``load_pu`` is of the sum of rated kW. Deviations are from the proportional share; tolerances [set].
+    ``solved`` [load] is False where the plant has no solution at that load.
+    """
+
+    trimmed: bool
+    load_pu: FloatArray
+    p_total_kw: FloatArray
+    q_total_kvar: FloatArray
+    p_kw: FloatArray
+    q_kvar: FloatArray
+    dp_kw: FloatArray
+    dq_kvar: FloatArray
+    u_pu: FloatArray
+    f_hz: FloatArray
+    solved: BoolArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class AdjustingMargin:
+    """How far one setting of one set may be off before something is broken.
+
+    ``setting`` is 'no-load voltage', 'voltage droop', 'no-load frequency' or 'speed droop', values per unit;
+    ``low_pu`` and ``high_pu`` are the nearest values at which ``*_breaks`` happens (NaN: nothing within range).
+    """
+
+    genset: str
+    setting: str
+    as_set_pu: float
+    low_pu: float
+    low_breaks: str
+    high_pu: float
+    high_breaks: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class SettingLine:
+    """The voltage-kvar line of one set, arrays [point], with the operating point on it."""
+
+    genset: str
+    q_kvar: FloatArray
+    u_pu: FloatArray
+    q_operating_kvar: float
+    u_operating_pu: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class IslandSharing:
+    """One island with two or more sets in parallel.
+
+    ``p_tolerance_kw`` and ``q_tolerance_kvar`` are [set]; operating arrays [set] are at the mode's own load.
+    ``circulating_kvar`` is half the sum of the distances from the proportional share.
+    """
+
+    mode: str
+    island: int
+    sets: tuple[str, ...]
+    cos_phi: float
+    p_rated_kw: FloatArray
+    q_rated_kvar: FloatArray
+    p_tolerance_kw: FloatArray
+    q_tolerance_kvar: FloatArray
+    p_operating_kw: FloatArray
+    q_operating_kvar: FloatArray
+    u_operating_pu: float
+    f_operating_hz: float
+    circulating_kvar: float
+    as_set: SharingCurve
+    trimmed: SharingCurve
+    lines: tuple[SettingLine, ...]
+    margins: tuple[AdjustingMargin, ...]
+    findings: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class MaladjustedCase:
+    """A maladjustment event solved as a case of its own; arrays [set]."""
+
+    case: str
+    mode: str
+    genset: str
+    setting: str
+    value_pu: float
+    was_pu: float
+    cell: str
+    solved: bool
+    sets: tuple[str, ...]
+    p_before_kw: FloatArray
+    q_before_kvar: FloatArray
+    p_after_kw: FloatArray
+    q_after_kvar: FloatArray
+    p_tolerance_kw: FloatArray
+    q_tolerance_kvar: FloatArray
+    p_share_kw: FloatArray
+    q_share_kvar: FloatArray
+    s_rated_kva: FloatArray
+    u_before_pu: float
+    u_after_pu: float
+    f_before_hz: float
+    f_after_hz: float
+    sentence: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class SharingResult:
+    """Sharing of every mode and island, and every maladjusted case."""
+
+    islands: tuple[IslandSharing, ...]
+    cases: tuple[MaladjustedCase, ...]
