@@ -1,0 +1,1 @@
+"""The tests: a mirror of the package, and checks against what others published."""
