@@ -15,7 +15,7 @@ class ConsumerDemand:
 
     ``p_unit_kw`` is the input of one unit at its duty point times load factor, ``p_kw`` that of all units in
     use before diversity, ``p_counted_kw`` after simultaneity or diversity: these add up to the mode's total.
-    ``efficiency`` and ``cos_phi`` are those at the actual part load; ``factor`` = p_counted / p (0 where none).
+    ``efficiency`` and ``cos_phi`` are those at the actual part load; ``factor`` is p_counted / p (0: none).
     ``duty`` indexes ``DUTIES``; ``fed`` is False where the load's board is dead.
     """
 

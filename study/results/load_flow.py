@@ -9,8 +9,9 @@ from study.results.arrays import BoolArray, FloatArray, IntArray
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class BoardState:
-    """Boards of a mode, arrays [board]. ``island`` is -1 and the numbers are NaN where ``energised`` is False.
+    """Boards of a mode, arrays [board].
 
+    ``island`` is -1 and the numbers are NaN where ``energised`` is False.
     Angle is against the island's first board. ``busbar_current_a`` is the larger of the sum of currents in
     and the sum out; ``busbar_loading`` NaN where the busbar has no rating.
     """

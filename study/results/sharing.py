@@ -33,7 +33,7 @@ class AdjustingMargin:
     """How far one setting of one set may be off before something is broken.
 
     ``setting`` is 'no-load voltage', 'voltage droop', 'no-load frequency' or 'speed droop', values per unit;
-    ``low_pu`` and ``high_pu`` are the nearest values at which ``*_breaks`` happens (NaN: nothing within range).
+    ``low_pu`` and ``high_pu`` are the nearest values at which ``*_breaks`` happens (NaN: none).
     """
 
     genset: str
