@@ -91,6 +91,67 @@ def judge(value: float, limit: float, sense: Sense, close_margin: float) -> tupl
     return ("close" if margin < close_margin else "within"), margin
 
 
+def make_verdict(
+    *,
+    mode: str,
+    subject: str,
+    equipment: str,
+    quantity: str,
+    value: float,
+    limit: float,
+    unit: str,
+    close_margin: float,
+    basis: str,
+    sense: Sense = "at most",
+    data_tolerance: float = 0.0,
+    cell: str = "",
+    remedy: str = "",
+) -> Verdict:
+    """Judge a value and return the whole verdict.
+
+    Parameters
+    ----------
+    mode, subject, equipment, quantity, unit, basis, cell : str
+        As in `Verdict`.
+    value, limit : float
+        In `unit`.
+    close_margin : float
+        Fraction of the limit inside which a value that holds is called close.
+    sense : {'at most', 'at least'}
+        Kind of limit.
+    data_tolerance : float
+        Relative tolerance of the data behind `value`; the verdict depends on the data where a value this much
+        higher or lower would cross the limit.
+    remedy : str
+        What would cure it; kept only where the value exceeds its limit.
+
+    Returns
+    -------
+    Verdict
+    """
+    status, margin = judge(value, limit, sense, close_margin)
+    exceeds = {
+        judge(value * (1.0 + sign * data_tolerance), limit, sense, close_margin)[0] == "exceeds"
+        for sign in (-1.0, 0.0, 1.0)
+    }
+    return Verdict(
+        mode=mode,
+        subject=subject,
+        equipment=equipment,
+        quantity=quantity,
+        value=value,
+        limit=limit,
+        unit=unit,
+        sense=sense,
+        margin=margin,
+        status=status,
+        depends_on_data=len(exceeds) > 1,
+        basis=basis,
+        cell=cell,
+        remedy=remedy if status == "exceeds" else "",
+    )
+
+
 def worst(verdicts: tuple[Verdict, ...]) -> Verdict | None:
     """Return the governing verdict: worst status first, then the smallest margin; None for none."""
     if not verdicts:
