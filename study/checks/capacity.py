@@ -58,7 +58,7 @@ def _unfed(mode: ModeBalance, limits: Limits) -> Iterator[Verdict]:
             unit="kW",
             close_margin=0.0,
             basis="every load in use needs a live board",
-            remedy="Feed the board in this mode, or set the load's units in use to 0 (sheets Running, Demand).",
+            remedy="Feed the board in this mode, or set its loads to 0 in use (sheets Running, Demand).",
         )
 
 

@@ -132,7 +132,7 @@ def _branches(plant: Plant, mode: ModeLoadFlow, limits: Limits) -> Iterator[Verd
             limit=allowed,
             unit="A",
             close_margin=limits.fraction("close_margin"),
-            basis=limits.basis(key) if allowed == allowed else f"no {heading.lower()} given",
+            basis=limits.basis(key) if not math.isnan(allowed) else f"no {heading.lower()} given",
             data_tolerance=limits.fraction("load_data_tolerance"),
             cell=plant.cell_of(name, heading),
             remedy=remedy,
@@ -154,7 +154,9 @@ def _busbars(plant: Plant, mode: ModeLoadFlow, limits: Limits) -> Iterator[Verdi
             limit=rated * limits.fraction("busbar_loading"),
             unit="A",
             close_margin=limits.fraction("close_margin"),
-            basis=limits.basis("busbar_loading") if rated == rated else "no busbar rated current given",
+            basis=limits.basis("busbar_loading")
+            if not math.isnan(rated)
+            else "no busbar rated current given",
             data_tolerance=limits.fraction("load_data_tolerance"),
             cell=plant.cell_of(name, "Busbar rated current"),
             remedy="Take a busbar of a higher rated current or split the load.",
