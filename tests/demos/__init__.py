@@ -1,0 +1,1 @@
+"""Three invented vessels, from which the demo workbooks are written."""

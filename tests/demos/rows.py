@@ -1,0 +1,330 @@
+"""Builders that expand the compact data of a demo vessel into the rows of the workbook's sheets."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from typing import Final
+
+from tests.demos import catalogue, sizing
+from tests.demos.catalogue import Row
+from tests.demos.headings import DEVICE_COLUMNS, LOAD_COLUMNS
+
+SHEETS: Final = (
+    *("Project", "Acceptance", "Boards", "Gensets", "Shore supplies", "Converter supplies"),
+    *("Synchronous motors", "Transformers", "Three-winding transformers", "Cables", "Ties", "Reactors"),
+    *("Filters", "Loads", "Modes", "Running", "Set-points", "Demand", "Simultaneity", "Interlocks"),
+    *("Transfers", "Devices", "Protection functions", "Setting ranges", "Curves", "Let-through"),
+    *("Maker discrimination", "Spectra", "Events"),
+)
+NAMED_SHEETS: Final = (*SHEETS[2:13], "Loads", "Devices")
+DUTIES: Final = {"c": "continuous", "i": "intermittent", "o": "occasional"}
+MOTOR_BREAKERS_A: Final = (2, 4, 6, 10, 16, 25, 32, 50, 63, 80, 100, 160, 250, 400, 630)
+Tables = dict[str, list[Row]]
+
+
+def table(headings: str, *lines: Sequence[object]) -> list[Row]:
+    """Return one row for each line: values in the order of `headings`, which are separated by bars."""
+    names = headings.split("|")
+    for line in lines:
+        if len(line) > len(names):
+            raise ValueError(f"{line[0]}: {len(line)} values for {len(names)} headings")
+    return [{n: v for n, v in zip(names, line, strict=False) if v is not None} for line in lines]
+
+
+def making_ka(breaking_ka: float) -> float:
+    """Return the making capacity that goes with a breaking capacity; ratios from memory of IEC 60947-2."""
+    for above, ratio in ((50, 2.2), (20, 2.1), (10, 2.0), (6, 1.7)):
+        if breaking_ka > above:
+            return round(breaking_ka * ratio, 1)
+    return round(breaking_ka * 1.5, 1)
+
+
+class Book:
+    """The sheets of one vessel while they fill; keeps of each board what later rows need to know."""
+
+    def __init__(self, *, hz: float, modes: Sequence[str]) -> None:
+        self.hz = hz
+        self.modes = tuple(modes)
+        self.sheets: Tables = {sheet: [] for sheet in SHEETS}
+        self.volts: dict[str, float] = {}
+        self.breaking_ka: dict[str, float] = {}
+        self.ambient_degc: dict[str, float] = {}
+        self.loads_kw: list[tuple[str, float, tuple[str, ...]]] = []
+
+    def add(self, sheet: str, headings: str, *lines: Sequence[object]) -> None:
+        """Add plain rows to a sheet."""
+        self.sheets[sheet] += table(headings, *lines)
+
+    def boards(self, *lines: Sequence[object]) -> None:
+        """Add boards; the last two values are the breaking capacity fitted [kA] and the ambient [°C]."""
+        headings = (
+            "Board|Nominal voltage [V]|Role|Busbar rated current [A]|Peak withstand [kA]"
+            "|Short-time withstand [kA]|Short-time duration [s]|System earthing|Redundancy group"
+        )
+        for *line, breaking_ka, ambient_degc in lines:
+            name = str(line[0])
+            self.volts[name] = float(str(line[1]))
+            self.breaking_ka[name] = float(str(breaking_ka))
+            self.ambient_degc[name] = float(str(ambient_degc))
+            self.add("Boards", headings, line)
+
+    def cable(
+        self,
+        name: str,
+        ends: tuple[str, str],
+        amps: float,
+        length_m: float,
+        *,
+        board: str,
+        cores: str = "3",
+        phases: int = 3,
+        bunched: int = 6,
+        max_drop_percent: float = 3.0,
+        least_mm2: float = 1.5,
+        drop_amps: float | None = None,
+        section_mm2: float | None = None,
+        **columns: object,
+    ) -> None:
+        """Add a cable that carries `amps`, or with the section given; it lies in the room of `board`."""
+        ambient = self.ambient_degc[board]
+        runs, section = sizing.choose_cable(
+            amps,
+            self.volts[board],
+            length_m,
+            cores=cores,
+            phases=phases,
+            ambient_degc=ambient,
+            bunched=bunched,
+            max_drop_percent=max_drop_percent,
+            least_mm2=least_mm2,
+            drop_amps=drop_amps,
+        )
+        if section_mm2 is not None:
+            runs, section = 1, section_mm2
+        row: Row = {
+            "Cable": name,
+            "From": ends[0],
+            "To": ends[1],
+            "Cores": cores if cores == "3 single" else int(cores),
+            "Runs in parallel": runs,
+            "Section [mm2]": section,
+            "Length [m]": length_m,
+            "Conductor": "copper",
+            "Conductor class": 2 if section > 10 else 5,
+            "Tinned": "no" if section > 10 else "yes",
+            "Insulation": "EPR",
+            "Conductor temperature [°C]": 90,
+            "Short-circuit temperature [°C]": 250,
+            "Ambient temperature [°C]": ambient,
+            "Cables bunched": bunched,
+            "Duty": "continuous",
+        }
+        self.sheets["Cables"].append(row | columns)
+
+    def least_mm2(self, board: str) -> float:
+        """Return the smallest section of a run that a short-time delayed breaker protects [mm2]."""
+        return 35 if self.volts[board] > 1000 else 10 if self.breaking_ka[board] >= 25 else 4
+
+    def device(
+        self, name: str, equipment: str, end: str | None, kind: str, amps: float, **columns: object
+    ) -> None:
+        """Add a protective device with whatever settings are named."""
+        row: Row = {
+            "Device": name,
+            "Equipment": equipment,
+            "End": end,
+            "Kind": kind,
+            "Rated current [A]": amps,
+        }
+        row |= {DEVICE_COLUMNS[key]: value for key, value in columns.items()}
+        self.sheets["Devices"].append({heading: v for heading, v in row.items() if v is not None})
+
+    def breaker(
+        self,
+        name: str,
+        equipment: str,
+        board: str,
+        amps: float,
+        *,
+        icw_ka: float | None = None,
+        **settings: object,
+    ) -> None:
+        """Add a circuit breaker of the breaking capacity fitted on a board."""
+        breaking_ka = self.breaking_ka[board]
+        big = icw_ka is not None
+        self.device(
+            name,
+            equipment,
+            board,
+            "circuit breaker",
+            amps,
+            **{
+                "u": self.volts[board]
+                if self.volts[board] > 1000
+                else 690
+                if self.volts[board] > 500
+                else 500,
+                "icu": breaking_ka,
+                "ics": breaking_ka,
+                "icw": icw_ka,
+                "icw_s": 1 if big else None,
+                "icm": making_ka(breaking_ka),
+                "category": "B" if big else "A",
+                "source": "adjustable",
+                "senses": "rms",
+                "i_tol": 10,
+                "t_tol": 10,
+                "open_s": 0.03 if big else 0.005,
+                "break_s": 0.06 if big else 0.02,
+            }
+            | settings,
+        )
+
+    def load(self, *line: object, **columns: object) -> None:
+        """Add a consumer, its demand and, where a length is given, its cable and devices.
+
+        The line is: name, board, service, kind, units installed, kW, demand, length of cable [m]. The demand
+        has one word for each mode: ``units/load factor`` with ``i`` or ``o`` behind it for a duty that is not
+        continuous, or a dash.
+        """
+        name, board, service, kind, installed, kw, demand, *length_m = line
+        row: Row = {
+            "Load": name,
+            "Board": board,
+            "Service": service,
+            "Kind": kind,
+            "Installed": installed,
+            "Rated output [kW]": kw,
+            "Phases": 3,
+            "Essential to": "none",
+            "Trip stage": "none",
+        }
+        if kind == "motor":
+            row |= {"Starting method": "direct", "Poles": 4, "Load torque law": "fan"}
+        row |= {LOAD_COLUMNS[key]: value for key, value in columns.items()}
+        self.sheets["Loads"].append(row)
+        self.sheets["Demand"].append(self._demand(str(name), str(demand)))
+        if length_m:
+            self._connect(row, float(str(length_m[0])))
+
+    def _demand(self, name: str, demand: str) -> Row:
+        words = demand.split()
+        if len(words) != len(self.modes):
+            raise ValueError(f"{name}: {len(words)} demands for {len(self.modes)} modes")
+        row: Row = {"Load": name}
+        for mode, word in zip(self.modes, words, strict=True):
+            if word == "-":
+                row[f"{mode}: in use"] = 0
+                continue
+            units, factor = word.split("/")
+            duty = factor[-1] if factor[-1] in DUTIES else "c"
+            row[f"{mode}: in use"] = int(units)
+            row[f"{mode}: load factor [%]"] = float(factor.rstrip("cio"))
+            row[f"{mode}: duty"] = DUTIES[duty]
+        return row
+
+    def load_current_a(self, row: Mapping[str, object]) -> float:
+        """Return the rated current of one unit of a load [A], given or worked out."""
+        if "Running current [A]" in row:
+            return float(str(row["Running current [A]"]))
+        kw = float(str(row["Rated output [kW]"]))
+        efficiency, cos_phi = sizing.motor_figures(kw) if row["Kind"] == "motor" else (1.0, 0.95)
+        efficiency = float(str(row.get("Efficiency [%]", 100 * efficiency))) / 100
+        cos_phi = float(str(row.get("Power factor", cos_phi)))
+        volts = float(str(row.get("Rated voltage [V]", self.volts[str(row["Board"])])))
+        return sizing.line_current_a(kw / efficiency / cos_phi, volts, int(str(row["Phases"])))
+
+    def _connect(self, row: Row, length_m: float) -> None:
+        name, board = str(row["Load"]), str(row["Board"])
+        amps = self.load_current_a(row)
+        phases = int(str(row["Phases"]))
+        run = f"C-{name}"
+        carries = self._protect(row, run, amps)
+        self.cable(
+            run,
+            (board, name),
+            carries,
+            length_m,
+            board=board,
+            cores="2" if phases < 3 else "3 single" if amps > 350 else "3",
+            phases=phases,
+            bunched=8,
+            drop_amps=amps,
+            least_mm2=2.5 if row["Kind"] == "motor" or self.breaking_ka[board] > 6 else 1.5,
+        )
+
+    def _protect(self, row: Row, run: str, amps: float) -> float:
+        """Add the devices of one consumer; return the current its cable has to carry [A]."""
+        name, board = str(row["Load"]), str(row["Board"])
+        if row["Kind"] == "motor":
+            size = sizing.next_size(amps, MOTOR_BREAKERS_A)
+            self.breaker(
+                f"Q-{name}", run, board, size, ii=round(13 * amps), senses="peak", curve=frame(size), i_tol=20
+            )
+            if row["Essential to"] != "steering" and "fire pump" not in name.lower():
+                heavy = float(str(row.get("Starting time [s]", 0))) > 8
+                self.device(
+                    f"F-{name}",
+                    name,
+                    None,
+                    "thermal overload",
+                    round(amps, 1),
+                    ir=round(amps, 1),
+                    trip_class="20" if heavy else "10",
+                    source="adjustable",
+                )
+            return 1.15 * amps
+        size = sizing.next_size(1.1 * amps)
+        if size <= 63:
+            self.breaker(f"Q-{name}", run, board, size, curve="MCB C", source="fixed", i_tol=None, t_tol=None)
+            return size
+        setting = round(1.15 * amps)
+        self.breaker(
+            f"Q-{name}",
+            run,
+            board,
+            sizing.next_size(setting, sizing.SUPPLY_BREAKERS_A),
+            ir=setting,
+            tr=8,
+            tr_at=2,
+            ii=round(8 * setting),
+            curve=frame(setting),
+        )
+        return setting
+
+    def running(self, states: Mapping[str, str]) -> None:
+        """Add the Running sheet: for each equipment one word for each mode."""
+        for equipment, words in states.items():
+            if len(words.split()) != len(self.modes):
+                raise ValueError(f"{equipment}: {words}")
+            self.sheets["Running"].append(
+                {"Equipment": equipment, **dict(zip(self.modes, words.split(), strict=True))}
+            )
+
+    def finish(self) -> Tables:
+        """Add the makers' sheets that the rows refer to, check the names and return the tables."""
+        curves = {str(row["Curve"]) for row in self.sheets["Devices"] if "Curve" in row}
+        spectra = {
+            str(row["Spectrum"])
+            for sheet in ("Loads", "Converter supplies")
+            for row in self.sheets[sheet]
+            if "Spectrum" in row
+        }
+        self.sheets["Curves"] = catalogue.curve_rows()
+        self.sheets["Let-through"] = catalogue.let_through_rows(curves)
+        self.sheets["Spectra"] += catalogue.spectrum_rows(spectra)
+        names = [
+            str(next(iter(row.values()))).casefold() for sheet in NAMED_SHEETS for row in self.sheets[sheet]
+        ]
+        twice = sorted({name for name in names if names.count(name) > 1})
+        if twice:
+            raise ValueError(f"names used twice: {', '.join(twice)}")
+        return self.sheets
+
+
+def frame(amps: float) -> str:
+    """Return the let-through sheet of the moulded-case frame that holds a rating."""
+    for size in (32, 100, 160, 250):
+        if amps <= size:
+            return f"CL {size}"
+    return "CL 630"
