@@ -129,6 +129,13 @@ def field(kind: str, frequency_hz: float) -> Row:
     return {"Field supply": kind, **row}
 
 
+def least_mm2(sheet: str, fault_ka: float) -> float:
+    """Return the section that the let-through of a sheet may heat to 250 °C: sqrt(I2t)/143."""
+    points = LET_THROUGH[sheet]
+    let_through = next((a2s for ka, _, a2s in points if ka >= fault_ka), points[-1][2])
+    return float(let_through**0.5 / 143)
+
+
 def curve_rows() -> list[Row]:
     """Return the rows of the Curves sheet."""
     keys = ("Curve", "Current [x In]", "Time min [s]", "Time max [s]")

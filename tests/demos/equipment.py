@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from typing import Final
 
 from tests.demos import catalogue, sizing
@@ -208,3 +208,21 @@ def feeder(
             tsd=short[1],
             ii="off",
         )
+
+
+def protect_sets(book: Book, names: Sequence[str], *, preferential: bool = True) -> None:
+    """Add the functions that every set's breaker carries besides its overcurrent release."""
+    for name in names:
+        lines: list[tuple[object, ...]] = [
+            (f"{name} reverse power", name, "reverse power", 10, "%", 10, f"Q-{name}"),
+            (f"{name} undervoltage", name, "undervoltage", 70, "%", 1.5, f"Q-{name}"),
+            (f"{name} overvoltage", name, "overvoltage", 120, "%", 5, f"Q-{name}"),
+            (f"{name} underfrequency", name, "underfrequency", 90, "%", 5, f"Q-{name}"),
+            (f"{name} overfrequency", name, "overfrequency", 110, "%", 5, f"Q-{name}"),
+        ]
+        if preferential:
+            lines += [
+                (f"{name} preferential trip 1", name, "preferential trip 1", 105, "%", 5, "Trip stage 1"),
+                (f"{name} preferential trip 2", name, "preferential trip 2", 105, "%", 10, "Trip stage 2"),
+            ]
+        book.add("Protection functions", "Function|Equipment|Kind|Pick-up|Unit|Delay [s]|Trips", *lines)

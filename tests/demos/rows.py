@@ -7,7 +7,7 @@ from typing import Final
 
 from tests.demos import catalogue, sizing
 from tests.demos.catalogue import Row
-from tests.demos.headings import DEVICE_COLUMNS, LOAD_COLUMNS
+from tests.demos.headings import DEVICE_COLUMNS
 
 SHEETS: Final = (
     *("Project", "Acceptance", "Boards", "Gensets", "Shore supplies", "Converter supplies"),
@@ -17,8 +17,6 @@ SHEETS: Final = (
     *("Maker discrimination", "Spectra", "Events"),
 )
 NAMED_SHEETS: Final = (*SHEETS[2:13], "Loads", "Devices")
-DUTIES: Final = {"c": "continuous", "i": "intermittent", "o": "occasional"}
-MOTOR_BREAKERS_A: Final = (2, 4, 6, 10, 16, 25, 32, 50, 63, 80, 100, 160, 250, 400, 630)
 Tables = dict[str, list[Row]]
 
 
@@ -42,14 +40,16 @@ def making_ka(breaking_ka: float) -> float:
 class Book:
     """The sheets of one vessel while they fill; keeps of each board what later rows need to know."""
 
-    def __init__(self, *, hz: float, modes: Sequence[str]) -> None:
+    def __init__(
+        self, *, hz: float, modes: Sequence[str], consumer_volts: Mapping[float, float] | None = None
+    ) -> None:
         self.hz = hz
+        self.consumer_volts = dict(consumer_volts or {})
         self.modes = tuple(modes)
         self.sheets: Tables = {sheet: [] for sheet in SHEETS}
         self.volts: dict[str, float] = {}
         self.breaking_ka: dict[str, float] = {}
         self.ambient_degc: dict[str, float] = {}
-        self.loads_kw: list[tuple[str, float, tuple[str, ...]]] = []
 
     def add(self, sheet: str, headings: str, *lines: Sequence[object]) -> None:
         """Add plain rows to a sheet."""
@@ -180,118 +180,6 @@ class Book:
             | settings,
         )
 
-    def load(self, *line: object, **columns: object) -> None:
-        """Add a consumer, its demand and, where a length is given, its cable and devices.
-
-        The line is: name, board, service, kind, units installed, kW, demand, length of cable [m]. The demand
-        has one word for each mode: ``units/load factor`` with ``i`` or ``o`` behind it for a duty that is not
-        continuous, or a dash.
-        """
-        name, board, service, kind, installed, kw, demand, *length_m = line
-        row: Row = {
-            "Load": name,
-            "Board": board,
-            "Service": service,
-            "Kind": kind,
-            "Installed": installed,
-            "Rated output [kW]": kw,
-            "Phases": 3,
-            "Essential to": "none",
-            "Trip stage": "none",
-        }
-        if kind == "motor":
-            row |= {"Starting method": "direct", "Poles": 4, "Load torque law": "fan"}
-        row |= {LOAD_COLUMNS[key]: value for key, value in columns.items()}
-        self.sheets["Loads"].append(row)
-        self.sheets["Demand"].append(self._demand(str(name), str(demand)))
-        if length_m:
-            self._connect(row, float(str(length_m[0])))
-
-    def _demand(self, name: str, demand: str) -> Row:
-        words = demand.split()
-        if len(words) != len(self.modes):
-            raise ValueError(f"{name}: {len(words)} demands for {len(self.modes)} modes")
-        row: Row = {"Load": name}
-        for mode, word in zip(self.modes, words, strict=True):
-            if word == "-":
-                row[f"{mode}: in use"] = 0
-                continue
-            units, factor = word.split("/")
-            duty = factor[-1] if factor[-1] in DUTIES else "c"
-            row[f"{mode}: in use"] = int(units)
-            row[f"{mode}: load factor [%]"] = float(factor.rstrip("cio"))
-            row[f"{mode}: duty"] = DUTIES[duty]
-        return row
-
-    def load_current_a(self, row: Mapping[str, object]) -> float:
-        """Return the rated current of one unit of a load [A], given or worked out."""
-        if "Running current [A]" in row:
-            return float(str(row["Running current [A]"]))
-        kw = float(str(row["Rated output [kW]"]))
-        efficiency, cos_phi = sizing.motor_figures(kw) if row["Kind"] == "motor" else (1.0, 0.95)
-        efficiency = float(str(row.get("Efficiency [%]", 100 * efficiency))) / 100
-        cos_phi = float(str(row.get("Power factor", cos_phi)))
-        volts = float(str(row.get("Rated voltage [V]", self.volts[str(row["Board"])])))
-        return sizing.line_current_a(kw / efficiency / cos_phi, volts, int(str(row["Phases"])))
-
-    def _connect(self, row: Row, length_m: float) -> None:
-        name, board = str(row["Load"]), str(row["Board"])
-        amps = self.load_current_a(row)
-        phases = int(str(row["Phases"]))
-        run = f"C-{name}"
-        carries = self._protect(row, run, amps)
-        self.cable(
-            run,
-            (board, name),
-            carries,
-            length_m,
-            board=board,
-            cores="2" if phases < 3 else "3 single" if amps > 350 else "3",
-            phases=phases,
-            bunched=8,
-            drop_amps=amps,
-            least_mm2=2.5 if row["Kind"] == "motor" or self.breaking_ka[board] > 6 else 1.5,
-        )
-
-    def _protect(self, row: Row, run: str, amps: float) -> float:
-        """Add the devices of one consumer; return the current its cable has to carry [A]."""
-        name, board = str(row["Load"]), str(row["Board"])
-        if row["Kind"] == "motor":
-            size = sizing.next_size(amps, MOTOR_BREAKERS_A)
-            self.breaker(
-                f"Q-{name}", run, board, size, ii=round(13 * amps), senses="peak", curve=frame(size), i_tol=20
-            )
-            if row["Essential to"] != "steering" and "fire pump" not in name.lower():
-                heavy = float(str(row.get("Starting time [s]", 0))) > 8
-                self.device(
-                    f"F-{name}",
-                    name,
-                    None,
-                    "thermal overload",
-                    round(amps, 1),
-                    ir=round(amps, 1),
-                    trip_class="20" if heavy else "10",
-                    source="adjustable",
-                )
-            return 1.15 * amps
-        size = sizing.next_size(1.1 * amps)
-        if size <= 63:
-            self.breaker(f"Q-{name}", run, board, size, curve="MCB C", source="fixed", i_tol=None, t_tol=None)
-            return size
-        setting = round(1.15 * amps)
-        self.breaker(
-            f"Q-{name}",
-            run,
-            board,
-            sizing.next_size(setting, sizing.SUPPLY_BREAKERS_A),
-            ir=setting,
-            tr=8,
-            tr_at=2,
-            ii=round(8 * setting),
-            curve=frame(setting),
-        )
-        return setting
-
     def running(self, states: Mapping[str, str]) -> None:
         """Add the Running sheet: for each equipment one word for each mode."""
         for equipment, words in states.items():
@@ -320,11 +208,3 @@ class Book:
         if twice:
             raise ValueError(f"names used twice: {', '.join(twice)}")
         return self.sheets
-
-
-def frame(amps: float) -> str:
-    """Return the let-through sheet of the moulded-case frame that holds a rating."""
-    for size in (32, 100, 160, 250):
-        if amps <= size:
-            return f"CL {size}"
-    return "CL 630"

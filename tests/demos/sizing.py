@@ -32,6 +32,7 @@ REACTANCE_OHM_PER_KM = 0.1
 HEATING_90C = 1 + 0.00393 * 70
 CORE_FACTOR = {"3 single": 1.0, "2": 0.85, "3": 0.70, "4": 0.70}
 FRAMES_A = (6, 10, 16, 20, 25, 32, 40, 50, 63, 80, 100, 125, 160, 200, 250, 320, 400, 500, 630)
+FUSES_A = (16, 20, 25, 32, 40, 50, 63, 80, 100, 125, 160, 200, 250, 315, 400, 500, 630)
 SUPPLY_BREAKERS_A = (100, 160, 250, 400, 630, 800, 1000, 1250, 1600, 2000, 2500, 3200, 4000)
 # full-load efficiency and power factor of 4-pole motors by kW (IE2/IE3 class, common practice)
 MOTOR_KW = (0.75, 1.5, 3, 5.5, 7.5, 11, 15, 22, 30, 45, 75, 110, 160, 250)

@@ -6,7 +6,10 @@ takes over from a main set by a short parallel change-over.
 
 from __future__ import annotations
 
-from tests.demos.equipment import SHORE_HEADINGS, feeder, genset, transformer
+from functools import partial
+
+from tests.demos.consumers import add_load
+from tests.demos.equipment import SHORE_HEADINGS, feeder, genset, protect_sets, transformer
 from tests.demos.rows import Book, Tables
 
 MODES = ("At sea", "Manoeuvring", "Harbour")
@@ -98,7 +101,7 @@ def _consumers(book: Book) -> None:
     engine, deck, air, home = "Engine auxiliaries", "Deck", "Ventilation", "Domestic"
     prop, safe = {"for_": "propulsion"}, {"for_": "safety"}
     live = {"for_": "habitability"}
-    load = book.load
+    load = partial(add_load, book)
     # demand: at sea, manoeuvring, harbour
     load(
         "Bow thruster", "MSB", "Thrusters", "motor", 1, 30, "- 1/70i -", 20,
@@ -200,7 +203,7 @@ def _consumers(book: Book) -> None:
     load("Cabin heaters", "MSB", "Heating", "heating", 1, 8, "1/45 1/40 1/30", 22, pf=1.0, stage=1, **live)
     load(
         "Battery charger", "MSB", "Navigation", "converter", 2, 3, "1/60 1/60 1/60", 14,
-        eff=90, pulses="6-pulse", dc_choke=3, dpf=0.95, pf=0.88, spectrum="Typical 6-pulse DC link", **safe,
+        pulses="6-pulse", dc_choke=3, dpf=0.95, pf=0.88, spectrum="Typical 6-pulse DC link", **safe,
     )  # fmt: skip
     load(
         "Provision refrigeration",
@@ -328,18 +331,7 @@ def _operation(book: Book) -> None:
 
 
 def _protection(book: Book) -> None:
-    functions = []
-    for name in ("DG1", "DG2", "HG"):
-        functions += [
-            (f"{name} reverse power", name, "reverse power", 10, "%", 10, f"Q-{name}"),
-            (f"{name} undervoltage", name, "undervoltage", 70, "%", 1.5, f"Q-{name}"),
-            (f"{name} overvoltage", name, "overvoltage", 120, "%", 5, f"Q-{name}"),
-            (f"{name} underfrequency", name, "underfrequency", 90, "%", 5, f"Q-{name}"),
-            (f"{name} overfrequency", name, "overfrequency", 110, "%", 5, f"Q-{name}"),
-            (f"{name} preferential trip 1", name, "preferential trip 1", 105, "%", 5, "Trip stage 1"),
-            (f"{name} preferential trip 2", name, "preferential trip 2", 105, "%", 10, "Trip stage 2"),
-        ]
-    book.add("Protection functions", "Function|Equipment|Kind|Pick-up|Unit|Delay [s]|Trips", *functions)
+    protect_sets(book, ("DG1", "DG2", "HG"))
     book.add(
         "Setting ranges",
         "Device|Setting|Min|Max|Step",
