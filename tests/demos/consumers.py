@@ -11,6 +11,39 @@ from tests.demos.headings import LOAD_COLUMNS
 from tests.demos.rows import Book
 
 DUTIES: Final = {"c": "continuous", "i": "intermittent", "o": "occasional"}
+# words of the compact load lists that stand for one or more columns
+PRESETS: Final[dict[str, Row]] = {
+    "propulsion": {"for_": "propulsion"},
+    "steering": {"for_": "steering"},
+    "safety": {"for_": "safety"},
+    "habitability": {"for_": "habitability"},
+    "port": {"group": "Port"},
+    "starboard": {"group": "Starboard"},
+    "constant": {"law": "constant"},
+    "star-delta": {"start": "star-delta", "change_s": 5},
+    "autotransformer": {"start": "autotransformer", "tap": 65},
+    "soft-starter": {"start": "soft starter", "soft_in": 3.2, "ramp_s": 10},
+    "single-phase": {"phases": 2},
+    "fused": {"fused": True},
+    "regenerates": {"regen": "yes"},
+    "6-pulse": {"pulses": "6-pulse", "choke": 3, "pf": 0.92, "dpf": 0.95, "spectrum": "Typical 6-pulse"},
+    "dc-link": {
+        "pulses": "6-pulse",
+        "dc_choke": 4,
+        "pf": 0.93,
+        "dpf": 0.95,
+        "spectrum": "Typical 6-pulse DC link",
+    },
+    "12-pulse": {"pulses": "12-pulse", "choke": 4, "pf": 0.94, "dpf": 0.96, "spectrum": "Typical 12-pulse"},
+    "24-pulse": {"pulses": "24-pulse", "choke": 4, "pf": 0.95, "dpf": 0.96, "spectrum": "Typical 24-pulse"},
+    "active": {
+        "pulses": "active front end",
+        "choke": 8,
+        "pf": 0.99,
+        "dpf": 1.0,
+        "spectrum": "Typical active front end",
+    },
+}
 MOTOR_BREAKERS_A: Final = (2, 4, 6, 10, 16, 25, 32, 50, 63, 80, 100, 160, 250, 400, 630)
 
 
@@ -44,6 +77,47 @@ def add_load(book: Book, *line: object, **columns: object) -> None:
         _connect(book, row, float(str(length_m[0])), fused=bool(fused))
 
 
+def read_loads(book: Book, text: str) -> None:
+    """Add the consumers of a compact list.
+
+    A line in brackets gives board, service, kind and words that hold for the lines under it. Each of those
+    is: name, kW of a unit (``2x5.5`` for two), demand of each mode, length of cable [m], words, description.
+    A word is a preset or ``column=value``; a dash for the length leaves cable and devices out.
+    """
+    head: list[str] = []
+    for line in text.strip().splitlines():
+        cells = [cell.strip() for cell in line.strip().strip("[]").split("|")]
+        if line.startswith("["):
+            head = cells
+            continue
+        board, service, kind, *common = head
+        name, power, demand, length_m, *rest = cells
+        installed, _, kw = power.rpartition("x")
+        columns = read_words(" ".join((*common, *rest[:1])))
+        if len(rest) > 1:
+            columns["about"] = rest[1]
+        values: list[object] = [name, board, service, kind, int(installed or 1), float(kw), demand]
+        add_load(book, *values, *([] if length_m == "-" else [float(length_m)]), **columns)
+
+
+def read_words(words: str) -> Row:
+    """Return the columns that presets and ``column=value`` words stand for."""
+    columns: Row = {}
+    for word in words.split():
+        key, given, value = word.partition("=")
+        columns |= {key: _value(value)} if given else PRESETS[word]
+    return columns
+
+
+def _value(text: str) -> object:
+    for kind in (int, float):
+        try:
+            return kind(text)
+        except ValueError:
+            continue
+    return text.replace("_", " ")
+
+
 def _demand(book: Book, name: str, demand: str) -> Row:
     words = demand.split()
     if len(words) != len(book.modes):
@@ -67,7 +141,7 @@ def load_current_a(book: Book, row: Mapping[str, object]) -> float:
         return float(str(row["Running current [A]"]))
     kw = float(str(row["Rated output [kW]"]))
     efficiency, cos_phi = sizing.motor_figures(kw) if row["Kind"] == "motor" else (1.0, 0.95)
-    efficiency = float(str(row.get("Efficiency [%]", 100 * efficiency))) / 100
+    efficiency = float(str(row.get("Efficiency", efficiency)))
     cos_phi = float(str(row.get("Power factor", cos_phi)))
     volts = float(str(row.get("Rated voltage [V]", book.volts[str(row["Board"])])))
     return sizing.line_current_a(kw / efficiency / cos_phi, volts, int(str(row["Phases"])))
@@ -94,7 +168,7 @@ def _connect(book: Book, row: Row, length_m: float, *, fused: bool) -> None:
 
 
 def _protect_motor(book: Book, row: Row, amps: float, fused: bool) -> tuple[float, str]:
-    """Add the devices of a motor; return what its cable carries [A] and the let-through sheet."""
+    """Add a motor's devices; return what its cable carries [A] and the let-through sheet."""
     name, board = str(row["Load"]), str(row["Board"])
     size = sizing.next_size(amps, MOTOR_BREAKERS_A)
     if fused:

@@ -8,7 +8,7 @@ from typing import Final
 LOAD_COLUMNS: Final = {
     "about": "Description",
     "absorbed": "Absorbed power [kW]",
-    "eff": "Efficiency [%]",
+    "eff": "Efficiency",
     "pf": "Power factor",
     "amps": "Running current [A]",
     "volts": "Rated voltage [V]",

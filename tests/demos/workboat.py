@@ -6,13 +6,64 @@ takes over from a main set by a short parallel change-over.
 
 from __future__ import annotations
 
-from functools import partial
-
-from tests.demos.consumers import add_load
+from tests.demos.consumers import read_loads
 from tests.demos.equipment import SHORE_HEADINGS, feeder, genset, protect_sets, transformer
 from tests.demos.rows import Book, Tables
 
 MODES = ("At sea", "Manoeuvring", "Harbour")
+
+# name | kW | demand at sea, manoeuvring, in harbour | cable m | words
+LOADS = """
+[MSB | Thrusters | motor]
+Bow thruster | 30 | - 1/70i - | 20 | soft-starter soft_in=3.0 ramp_s=8 rpm=1475 ist=6.8 start_pf=0.3 tl=1.6 tk=2.4 inertia=0.55 eff=0.93 pf=0.86 start_s=8 stage=1
+[DB-ER | Engine auxiliaries | motor]
+Sea-water cooling pump | 2x7.5 | 1/85 1/85 - | 8 | propulsion rpm=1455 ist=6.5
+Fresh-water cooling pump | 2x4 | 1/85 1/85 - | 8 | propulsion rpm=1445 ist=6.3
+Lubricating-oil pump | 2x4 | 1/80 1/80 - | 9 | propulsion constant
+Fuel separator | 3 | 1/80 - 1/80i | 10 | constant start_s=6 eff=0.86
+Fuel transfer pump | 2.2 | 1/85i - 1/85i | 10 | constant
+Start-air compressor | 5.5 | 1/90i 1/90i - | 9 | constant tl=2.2
+[MSB | Ventilation | motor]
+Engine-room fan | 2x5.5 | 2/85 2/85 1/60 | 15 | propulsion ist=6.5 start_s=4
+Air-conditioning compressor | 15 | 1/80 1/75 1/50 | 18 | star-delta habitability constant change_s=4 rpm=1465 eff=0.915 pf=0.84 stage=2
+Air-conditioning fan | 4 | 1/90 1/90 1/80 | 18 | habitability ist=6.0 stage=2
+[MSB | Steering | motor | steering constant]
+Steering gear 1 | 5.5 | 1/35 1/40 - | 24
+Steering gear 2 | 5.5 | - 1/40 - | 24
+[MSB | Safety | motor]
+Fire pump | 15 | 1/90o 1/90o 1/90o | 16 | star-delta safety change_s=4
+[DB-ER | Safety | motor]
+Bilge pump | 4 | 1/80i 1/80i 1/80i | 11 | safety
+[DB-ER | Domestic | motor | habitability]
+Sewage plant | 2.2 | 1/80i 1/80i 1/80i | 12
+Fresh-water pump | 1.5 | 1/80i 1/80i 1/80i | 12
+[DB-ER | Domestic | general]
+Fresh-water maker | 6 | 1/85 - - | 10 | pf=0.85 stage=1
+[MSB | Deck | motor | constant stage=1]
+Tow winch pump | 22 | 1/70i 1/75i - | 22 | star-delta rpm=1465 ist=6.8 inertia=0.25 eff=0.922 pf=0.85
+Deck crane pump | 18.5 | 1/60o - - | 20 | star-delta rpm=1465 ist=6.7 inertia=0.2
+Anchor windlass | 11 | - 1/60i - | 26 | tl=2.2
+[MSB | Galley | heating]
+Galley range | 9 | 1/40 1/20 1/40i | 20 | habitability pf=1.0 stage=1
+[MSB | Heating | heating | habitability pf=1.0 stage=1]
+Water heater | 6 | 1/50 1/50 1/50 | 19
+Cabin heaters | 8 | 1/45 1/40 1/30 | 22
+[MSB | Navigation | converter]
+Battery charger | 2x3 | 1/60 1/60 1/60 | 14 | dc-link safety dc_choke=3 pf=0.88
+[DB-230 | Domestic | motor]
+Provision refrigeration | 2x1.5 | 2/60 2/60 1/60 | 16 | habitability constant
+[DB-230 | Galley | general]
+Galley sockets | 4 | 1/40i 1/30i 1/40i | 14 | habitability single-phase fused stage=2
+[DB-230 | Lighting | lighting | single-phase]
+Cabin lighting and sockets | 5 | 1/70 1/70 1/60 | 16 | habitability
+Engine-room lighting | 2.5 | 1/90 1/90 1/70 | 12 | safety
+Deck floodlights | 4 | 1/30 1/80 1/30 | 25
+[DB-WH | Navigation | general | safety single-phase]
+Navigation equipment | 2.5 | 1/80 1/90 1/15 | 6
+Radio equipment | 1.2 | 1/50 1/50 1/20 | 6
+[DB-WH | Heating | heating]
+Window heating | 1.5 | 1/60 1/60 - | 8 | single-phase pf=1.0
+"""  # noqa: E501
 
 
 def tables() -> Tables:
@@ -20,7 +71,7 @@ def tables() -> Tables:
     book = Book(hz=50, modes=MODES)
     _project(book)
     _plant(book)
-    _consumers(book)
+    read_loads(book, LOADS)
     _operation(book)
     _protection(book)
     return book.finish()
@@ -95,180 +146,6 @@ def _plant(book: Book) -> None:
         )
     feeder(book, ("MSB", "DB-ER"), 63, 14, short=(5, 0.15))
     feeder(book, ("DB-230", "DB-WH"), 32, 22, short=(6, 0.1), max_drop_percent=1.2)
-
-
-def _consumers(book: Book) -> None:
-    engine, deck, air, home = "Engine auxiliaries", "Deck", "Ventilation", "Domestic"
-    prop, safe = {"for_": "propulsion"}, {"for_": "safety"}
-    live = {"for_": "habitability"}
-    load = partial(add_load, book)
-    # demand: at sea, manoeuvring, harbour
-    load(
-        "Bow thruster", "MSB", "Thrusters", "motor", 1, 30, "- 1/70i -", 20,
-        start="soft starter", soft_in=3.0, ramp_s=8, rpm=1475, ist=6.8, start_pf=0.3, tl=1.6, tk=2.4,
-        inertia=0.55, eff=93.0, pf=0.86, start_s=8, stage=1,
-    )  # fmt: skip
-    load(
-        "Sea-water cooling pump",
-        "DB-ER",
-        engine,
-        "motor",
-        2,
-        7.5,
-        "1/85 1/85 -",
-        8,
-        rpm=1455,
-        ist=6.5,
-        **prop,
-    )
-    load(
-        "Fresh-water cooling pump",
-        "DB-ER",
-        engine,
-        "motor",
-        2,
-        4,
-        "1/85 1/85 -",
-        8,
-        rpm=1445,
-        ist=6.3,
-        **prop,
-    )
-    load("Lubricating-oil pump", "DB-ER", engine, "motor", 2, 4, "1/80 1/80 -", 9, law="constant", **prop)
-    load(
-        "Fuel separator",
-        "DB-ER",
-        engine,
-        "motor",
-        1,
-        3,
-        "1/80 - 1/80i",
-        10,
-        law="constant",
-        start_s=6,
-        eff=86,
-    )
-    load("Fuel transfer pump", "DB-ER", engine, "motor", 1, 2.2, "1/85i - 1/85i", 10, law="constant")
-    load("Start-air compressor", "DB-ER", engine, "motor", 1, 5.5, "1/90i 1/90i -", 9, law="constant", tl=2.2)
-    load("Engine-room fan", "MSB", air, "motor", 2, 5.5, "2/85 2/85 1/60", 15, ist=6.5, start_s=4, **prop)
-    load(
-        "Steering gear 1",
-        "MSB",
-        "Steering",
-        "motor",
-        1,
-        5.5,
-        "1/35 1/40 -",
-        24,
-        law="constant",
-        for_="steering",
-    )
-    load(
-        "Steering gear 2", "MSB", "Steering", "motor", 1, 5.5, "- 1/40 -", 24, law="constant", for_="steering"
-    )
-    load(
-        "Fire pump",
-        "MSB",
-        "Safety",
-        "motor",
-        1,
-        15,
-        "1/90o 1/90o 1/90o",
-        16,
-        start="star-delta",
-        change_s=4,
-        **safe,
-    )
-    load("Bilge pump", "DB-ER", "Safety", "motor", 1, 4, "1/80i 1/80i 1/80i", 11, **safe)
-    load("Sewage plant", "DB-ER", home, "motor", 1, 2.2, "1/80i 1/80i 1/80i", 12, **live)
-    load("Fresh-water pump", "DB-ER", home, "motor", 1, 1.5, "1/80i 1/80i 1/80i", 12, **live)
-    load("Fresh-water maker", "DB-ER", home, "general", 1, 6, "1/85 - -", 10, pf=0.85, stage=1)
-    load(
-        "Tow winch pump", "MSB", deck, "motor", 1, 22, "1/70i 1/75i -", 22,
-        start="star-delta", change_s=5, rpm=1465, ist=6.8, inertia=0.25, law="constant",
-        eff=92.2, pf=0.85, stage=1,
-    )  # fmt: skip
-    load(
-        "Deck crane pump", "MSB", deck, "motor", 1, 18.5, "1/60o - -", 20,
-        start="star-delta", change_s=5, rpm=1465, ist=6.7, inertia=0.2, law="constant", stage=1,
-    )  # fmt: skip
-    load("Anchor windlass", "MSB", deck, "motor", 1, 11, "- 1/60i -", 26, law="constant", tl=2.2, stage=1)
-    load(
-        "Air-conditioning compressor", "MSB", air, "motor", 1, 15, "1/80 1/75 1/50", 18,
-        start="star-delta", change_s=4, rpm=1465, eff=91.5, pf=0.84, law="constant", stage=2, **live,
-    )  # fmt: skip
-    load("Air-conditioning fan", "MSB", air, "motor", 1, 4, "1/90 1/90 1/80", 18, ist=6.0, stage=2, **live)
-    load("Galley range", "MSB", "Galley", "heating", 1, 9, "1/40 1/20 1/40i", 20, pf=1.0, stage=1, **live)
-    load("Water heater", "MSB", "Heating", "heating", 1, 6, "1/50 1/50 1/50", 19, pf=1.0, stage=1, **live)
-    load("Cabin heaters", "MSB", "Heating", "heating", 1, 8, "1/45 1/40 1/30", 22, pf=1.0, stage=1, **live)
-    load(
-        "Battery charger", "MSB", "Navigation", "converter", 2, 3, "1/60 1/60 1/60", 14,
-        pulses="6-pulse", dc_choke=3, dpf=0.95, pf=0.88, spectrum="Typical 6-pulse DC link", **safe,
-    )  # fmt: skip
-    load(
-        "Provision refrigeration",
-        "DB-230",
-        home,
-        "motor",
-        2,
-        1.5,
-        "2/60 2/60 1/60",
-        16,
-        law="constant",
-        **live,
-    )
-    load(
-        "Galley sockets",
-        "DB-230",
-        "Galley",
-        "general",
-        1,
-        4,
-        "1/40i 1/30i 1/40i",
-        14,
-        phases=2,
-        stage=2,
-        **live,
-    )
-    load(
-        "Cabin lighting and sockets",
-        "DB-230",
-        "Lighting",
-        "lighting",
-        1,
-        5,
-        "1/70 1/70 1/60",
-        16,
-        phases=2,
-        **live,
-    )
-    load(
-        "Engine-room lighting",
-        "DB-230",
-        "Lighting",
-        "lighting",
-        1,
-        2.5,
-        "1/90 1/90 1/70",
-        12,
-        phases=2,
-        **safe,
-    )
-    load("Deck floodlights", "DB-230", "Lighting", "lighting", 1, 4, "1/30 1/80 1/30", 25, phases=2)
-    load(
-        "Navigation equipment",
-        "DB-WH",
-        "Navigation",
-        "general",
-        1,
-        2.5,
-        "1/80 1/90 1/15",
-        6,
-        phases=2,
-        **safe,
-    )
-    load("Radio equipment", "DB-WH", "Navigation", "general", 1, 1.2, "1/50 1/50 1/20", 6, phases=2, **safe)
-    load("Window heating", "DB-WH", "Heating", "heating", 1, 1.5, "1/60 1/60 -", 8, phases=2, pf=1.0)
 
 
 def _operation(book: Book) -> None:
