@@ -4,14 +4,15 @@ from __future__ import annotations
 
 import re
 from collections.abc import Collection, Iterable
+from dataclasses import replace
 
+from study.workbook.package_cells import area
 from study.workbook.package_names import Sheet, defined_names
 from study.workbook.package_opc import Package
 from study.workbook.package_xml import Document, Node
 from study.workbook.package_zip import part_key
 
 _NOTICE = "Not part of the latest run; the sheet is kept because other cells refer to it."
-_PLACE = re.compile(r"([A-Z]+)(\d+)")
 
 
 def is_referred_to(
@@ -82,12 +83,12 @@ def stale_sheet(data: bytes, part: str, tables: Iterable[str]) -> bytes:
         The new part.
     """
     sheet = Document(data, part)
-    headings = [_heading_row(ref) for ref in tables]
+    headings = [replace(a, bottom=a.top) for a in map(area, tables)]
     cells = sheet.root.find("sheetData")
     for row in cells.all("row") if cells else ():
         for cell in row.all("c"):
             place = cell.attributes.get("r", "")
-            if cell.children and not any(_is_inside(place, heading) for heading in headings):
+            if cell.children and not any(area(place).overlaps(heading) for heading in headings):
                 sheet.replace(cell, _emptied(place, cell, sheet.prefix(cell)))
     return sheet.result()
 
@@ -99,27 +100,3 @@ def _emptied(place: str, cell: Node, prefix: str) -> str:
         text = f"<{prefix}is><{prefix}t>{_NOTICE}</{prefix}t></{prefix}is>"
         return f'<{prefix}c{where}{style} t="inlineStr">{text}</{prefix}c>'
     return f'<{prefix}c{where}{style} t="e"><{prefix}v>#N/A</{prefix}v></{prefix}c>'
-
-
-def _heading_row(ref: str) -> tuple[int, int, int]:
-    """Return first column, last column and row of the heading of a table."""
-    first, _, last = ref.partition(":")
-    (left, top), (right, _) = _split(first), _split(last or first)
-    return left, right, top
-
-
-def _is_inside(place: str, heading: tuple[int, int, int]) -> bool:
-    column, row = _split(place)
-    left, right, top = heading
-    return row == top and left <= column <= right
-
-
-def _split(place: str) -> tuple[int, int]:
-    """Return column and row of a cell address, both from 1; zeros when it is none."""
-    found = _PLACE.fullmatch(place.replace("$", ""))
-    if not found:
-        return 0, 0
-    column = 0
-    for letter in found[1]:
-        column = 26 * column + ord(letter) - ord("A") + 1
-    return column, int(found[2])

@@ -289,3 +289,41 @@ class Document:
             out += self.data[at:start] + text
             at = stop
         return bytes(out + self.data[at:])
+
+
+def effective(node: Node) -> Node:
+    """Return the first element inside a compatibility block, or the element itself."""
+    if node.space != COMPATIBILITY:
+        return node
+    return next((inner for choice in node.children for inner in choice.children), node)
+
+
+def out_of_order(root: Node, order: tuple[str, ...], repeatable: tuple[str, ...]) -> list[str]:
+    """Return what is wrong with the sequence of an element's children.
+
+    Parameters
+    ----------
+    root : Node
+        The element.
+    order : tuple of str
+        Names in the order of the schema.
+    repeatable : tuple of str
+        Names that may stand more than once.
+
+    Returns
+    -------
+    list of str
+        One sentence for each fault.
+    """
+    faults, last = [], -1
+    for name in (effective(c).name for c in root.children):
+        if name not in order:
+            faults.append(f"{name} is no child of {root.name}")
+            continue
+        place = order.index(name)
+        if place < last:
+            faults.append(f"{name} stands behind {order[last]}")
+        elif place == last and name not in repeatable:
+            faults.append(f"{name} stands twice")
+        last = max(last, place)
+    return faults
