@@ -34,5 +34,5 @@ def test_regulation_from_the_loaded_voltage(phi, printed_v, printed_percent):
     v = terminal_voltage_at_field(1.0, 1.0, phi, MACHINE)
     field = field_required(v, 1.0, phi, MACHINE)
     rise = (float(open_circuit_voltage(field, MACHINE.saturation)) - float(v)) / float(v)
-    # The book takes 480 V over line voltages rounded to whole volts, up to 0.14 % of them; and the last digit.
+    # The book takes 480 V over line voltages rounded to whole volts: up to 0.14 %; and the last digit.
     assert 100.0 * rise == pytest.approx(printed_percent, abs=0.19)
