@@ -1,0 +1,302 @@
+"""Headings: names compared as an engineer compares them, units converted, near misses caught."""
+
+from __future__ import annotations
+
+import re
+import unicodedata
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
+from functools import lru_cache
+from types import MappingProxyType
+from typing import Final
+
+from study.units import UNITS, conversion_factor
+from study.workbook.columns import Column, ModeColumn, SheetSpec
+
+REMARK: Final = "#"
+NEAR: Final = 2
+_PRIMES = str.maketrans(
+    {
+        "’": "'",
+        "‘": "'",
+        "′": "'",
+        "´": "'",
+        "`": "'",
+        "ʹ": "'",
+        "″": "''",
+        "”": "''",
+        "“": "''",
+        '"': "''",
+        "ʺ": "''",
+    }
+)
+_BRACKETS = re.compile(r"^(?P<name>.*?)\s*\[(?P<unit>[^\[\]]*)\]\s*$", re.DOTALL)
+_PERCENT_OF = {"% U": "%"}
+
+
+def folded(text: str) -> str:
+    """Return a name as it is compared: without case, outer and doubled blanks.
+
+    Examples
+    --------
+    >>> folded("  DG 1 ") == folded("dg  1")
+    True
+    """
+    return " ".join(text.split()).casefold()
+
+
+def heading_key(text: str) -> str:
+    """Return a heading's name as it is compared: without case, blanks, line breaks and kind of prime mark.
+
+    Examples
+    --------
+    >>> heading_key("Xd″  saturated") == heading_key("xd'' Saturated")
+    True
+    """
+    return "".join(text.translate(_PRIMES).split()).casefold()
+
+
+def split_heading(text: str) -> tuple[str, str | None]:
+    """Return name and unit of a heading; None where it has no brackets.
+
+    Examples
+    --------
+    >>> split_heading("Rated power [kVA]")
+    ('Rated power', 'kVA')
+    >>> split_heading("Board")
+    ('Board', None)
+    """
+    match = _BRACKETS.match(text)
+    if match is None:
+        return text.strip(), None
+    return match["name"].strip(), match["unit"].strip()
+
+
+def edit_distance(a: str, b: str, limit: int) -> int:
+    """Return the number of insertions, deletions and replacements between two texts, at most `limit` + 1.
+
+    Source: V. I. Levenshtein, Soviet Physics Doklady 10 (1966) 707, by the usual row-wise recurrence.
+
+    Examples
+    --------
+    >>> edit_distance("kitten", "sitting", 5)
+    3
+    >>> edit_distance("kitten", "sitting", 1)
+    2
+    """
+    if abs(len(a) - len(b)) > limit:
+        return limit + 1
+    row = list(range(len(b) + 1))
+    for i, left in enumerate(a, 1):
+        above, row[0] = row[0], i
+        for j, right in enumerate(b, 1):
+            above, row[j] = row[j], min(row[j] + 1, row[j - 1] + 1, above + (left != right))
+        if min(row) > limit:
+            return limit + 1
+    return min(row[-1], limit + 1)
+
+
+def nearest(text: str, names: Iterable[str], count: int = 3) -> tuple[str, ...]:
+    """Return the names that look most like `text`, best first, none that look nothing like it.
+
+    Examples
+    --------
+    >>> nearest("MSB-1", ["MSB 1", "MSB 2", "ESB"])
+    ('MSB 1', 'MSB 2')
+    """
+    wanted = heading_key(text)
+    limit = max(NEAR, len(wanted) // 3)
+    scored = [(edit_distance(wanted, heading_key(name), limit), name) for name in names]
+    return tuple(name for distance, name in sorted(scored) if distance <= limit)[:count]
+
+
+@lru_cache(maxsize=512)
+def known_unit(text: str) -> str | None:
+    """Return the unit of the table that `text` means, None where there is none.
+
+    Case is forgiven except where it tells mega from milli.
+
+    Examples
+    --------
+    >>> known_unit("kva"), known_unit("mm²"), known_unit("mw"), known_unit("furlong")
+    ('kVA', 'mm2', None, None)
+    """
+    plain = _plain_unit(text)
+    if plain in _EXACT:
+        return _EXACT[plain]
+    candidates = {
+        unit for unit in _FOLDED.get(plain.casefold(), ()) if plain[:1] not in "mM" or unit[:1] == plain[:1]
+    }
+    return candidates.pop() if len(candidates) == 1 else None
+
+
+def _plain_unit(text: str) -> str:
+    plain = unicodedata.normalize("NFKC", text).replace("×", "x").replace("·", " ").replace("º", "°")
+    return " ".join(plain.split())
+
+
+def _unit_tables() -> tuple[Mapping[str, str], Mapping[str, tuple[str, ...]]]:
+    exact: dict[str, str] = {}
+    for unit in UNITS:
+        exact.setdefault(_plain_unit(unit), unit)
+    by_fold: dict[str, list[str]] = {}
+    for plain, unit in exact.items():
+        by_fold.setdefault(plain.casefold(), []).append(unit)
+    return exact, {fold: tuple(units) for fold, units in by_fold.items()}
+
+
+_EXACT, _FOLDED = _unit_tables()
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Match:
+    """A heading that is known; a cell's number times `factor` is in the unit of the column."""
+
+    column: Column
+    factor: float
+    mode: str | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Misfit:
+    """A heading that cannot be read: what is wrong and what is wanted."""
+
+    code: str
+    found: str
+    wanted: str
+
+
+class HeadingIndex:
+    """The known headings of one sheet.
+
+    Parameters
+    ----------
+    spec : SheetSpec
+        The sheet.
+    modes : iterable of str
+        Names of the modes, for sheets with a column for each.
+    """
+
+    def __init__(self, spec: SheetSpec, modes: Iterable[str] = ()) -> None:
+        self._columns: dict[str, list[Column]] = {}
+        self._modes: dict[str, tuple[str, ModeColumn]] = {}
+        self._shown: dict[str, str] = {}
+        for column in spec.columns:
+            for name in (column.name, *column.older):
+                self._columns.setdefault(heading_key(name), []).append(column)
+                self._shown.setdefault(heading_key(name), column.heading)
+        for mode in modes:
+            for repeated in spec.mode_columns:
+                name = f"{mode}: {repeated.suffix}" if repeated.suffix else mode
+                self._modes[heading_key(name)] = (mode, repeated)
+                self._shown.setdefault(heading_key(name), repeated.heading(mode))
+
+    def recognise(self, text: str) -> Match | Misfit | None:
+        """Return what a heading means; None where it is the engineer's own."""
+        whole = self._modes.get(heading_key(text))
+        if whole is not None and not whole[1].column.unit:
+            return Match(column=whole[1].column, factor=1.0, mode=whole[0])
+        name, unit = split_heading(text)
+        found = heading_key(name)
+        if found in self._modes:
+            mode, repeated = self._modes[found]
+            factor = unit_factor(repeated.column, unit)
+            return (
+                factor
+                if isinstance(factor, Misfit)
+                else Match(column=repeated.column, factor=factor, mode=mode)
+            )
+        if found in self._columns:
+            return _by_unit(self._columns[found], unit)
+        return self._near(found) or self._unbracketed(name)
+
+    def _near(self, found: str) -> Misfit | None:
+        for known, shown in self._shown.items():
+            # Two letters apart says nothing about a name of two letters.
+            limit = NEAR if len(known) > NEAR else 1
+            if edit_distance(found, known, limit) <= limit:
+                return Misfit(
+                    code="near-miss-heading",
+                    found=f"the heading is nearly “{shown}”",
+                    wanted=f"write “{shown}”, or start the heading with {REMARK} if it is your own remark",
+                )
+        return None
+
+    def _unbracketed(self, name: str) -> Misfit | None:
+        for known, shown in self._shown.items():
+            rest = heading_key(name).removeprefix(known)
+            if rest != heading_key(name) and known_unit(rest.strip("(),.-/")) is not None:
+                return Misfit(
+                    code="unit-without-brackets",
+                    found="the unit is not in square brackets",
+                    wanted=f"write “{shown}”",
+                )
+        return None
+
+
+def _by_unit(columns: list[Column], unit: str | None) -> Match | Misfit:
+    misfits: list[Misfit] = []
+    for column in columns:
+        factor = unit_factor(column, unit)
+        if not isinstance(factor, Misfit):
+            return Match(column=column, factor=factor)
+        misfits.append(factor)
+    if len(misfits) == 1:
+        return misfits[0]
+    wanted = " or ".join(f"“{column.heading}”" for column in columns)
+    return Misfit(code=misfits[0].code, found=misfits[0].found, wanted=f"write {wanted}")
+
+
+def unit_factor(column: Column, unit: str | None) -> float | Misfit:
+    """Return what a number under a heading with `unit` is multiplied by, or why it cannot be.
+
+    Examples
+    --------
+    >>> power = Column(name="Rated power", unit="kVA", field="s_rated_kva", kind="number")
+    >>> unit_factor(power, "MVA")
+    1000.0
+    """
+    if unit is None or unit in {"", "-"}:
+        return _without_unit(column)
+    if _plain_unit(unit) == _plain_unit(column.unit):
+        return 1.0
+    if not column.unit and not column.is_ratio:
+        plain = f"write “{column.name}”"
+        return Misfit(code="wrong-unit", found=f"the heading has the unit [{unit}]", wanted=plain)
+    return _converted(column, unit)
+
+
+def _without_unit(column: Column) -> float | Misfit:
+    if not column.unit:
+        return 1.0
+    return Misfit(code="missing-unit", found="the heading has no unit", wanted=f"write “{column.heading}”")
+
+
+def _converted(column: Column, unit: str) -> float | Misfit:
+    known = known_unit(unit)
+    if known is None:
+        return Misfit(code="unknown-unit", found=f"the unit [{unit}] is not known", wanted=_accepted(column))
+    try:
+        return conversion_factor(known, _PERCENT_OF.get(column.unit, column.unit) or "pu")
+    except ValueError:
+        return Misfit(code="wrong-unit", found=f"the unit [{unit}] does not fit", wanted=_accepted(column))
+
+
+def _accepted(column: Column) -> str:
+    wanted = _PERCENT_OF.get(column.unit, column.unit) or "pu"
+    if wanted not in UNITS:
+        return f"write “{column.heading}”"
+    dimension = UNITS[wanted][0]
+    units = [f"[{unit}]" for unit, (its_dimension, _) in UNITS.items() if its_dimension == dimension]
+    return f"write “{column.heading}”; known units are {', '.join(units)}"
+
+
+MISFIT_CODES: Final = MappingProxyType(
+    {
+        "near-miss-heading": "a heading is one or two letters away from a known one",
+        "unit-without-brackets": "the unit of a heading stands without square brackets",
+        "missing-unit": "a heading has no unit and needs one",
+        "wrong-unit": "the unit of a heading measures something else",
+        "unknown-unit": "the unit of a heading is not known",
+    }
+)
