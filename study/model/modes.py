@@ -39,7 +39,10 @@ class Demand:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class SetPoint:
-    """A trim of one piece of equipment in one mode; None leaves the equipment's own setting."""
+    """A trim of one piece of equipment in one mode; None leaves the equipment's own setting.
+
+    ``q_set_kvar`` is what a set in kvar control holds; None there means its rated power factor.
+    """
 
     equipment: str
     mode: str
@@ -49,6 +52,7 @@ class SetPoint:
     p_set_kw: float | None
     regulator_mode: RegulatorMode | None
     tap_pu: float | None
+    q_set_kvar: float | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
