@@ -79,7 +79,11 @@ class LossOfSet:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class IslandBalance:
-    """One live island of a mode: load against sources."""
+    """One live island of a mode: load against sources.
+
+    ``loss_with_standby`` is the loss of the same set with the standby sets started, at every trip stage;
+    empty where no set stands by.
+    """
 
     island: int
     boards: tuple[str, ...]
@@ -99,6 +103,7 @@ class IslandBalance:
     shore: str | None
     shore_current_a: float
     shore_rated_a: float
+    loss_with_standby: tuple[LossOfSet, ...] = ()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -119,7 +124,10 @@ class MainSetOut:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class RestartStep:
-    """One step of the restart after a blackout: what is connected, and what the engines can take."""
+    """One step of the restart after a blackout: what is connected, and what the engines can take.
+
+    Each island restarts by itself: ``p_total_kw`` is what its sets carry after the step.
+    """
 
     step: int
     at_s: float
@@ -127,6 +135,7 @@ class RestartStep:
     p_step_kw: float
     p_total_kw: float
     step_capability_kw: float
+    island: int = 0
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -136,7 +145,8 @@ class ModeBalance:
     Arrays: ``p_by_service_kw`` and ``q_by_service_kvar`` are [service, duty] after diversity,
     ``p_connected_by_service_kw`` [service, duty] before it; ``p_by_board_kw`` is [board] of what hangs on the
     board itself. ``alternative_kw`` is the mode's total by the other rule: continuous load, plus the largest
-    intermittent consumer and those whose simultaneity is 100 %.
+    intermittent consumer and those whose simultaneity is 100 %. ``p_synchronous_kw`` is the part of the total
+    that synchronous motors take: they have a service of their own and no row in the demand.
     """
 
     mode: str
@@ -158,6 +168,7 @@ class ModeBalance:
     main_set_out: tuple[MainSetOut, ...]
     restart: tuple[RestartStep, ...]
     findings: tuple[str, ...]
+    p_synchronous_kw: float = 0.0
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -1,0 +1,76 @@
+"""What the load balance needs of one mode's network: islands, sources on line, what feeds each load."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+import numpy as np
+
+from study.model.loads import Load
+from study.model.plant import Plant
+from study.network.view import DEAD, View
+from study.results.arrays import IntArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ModeSupply:
+    """What the balance needs of one mode's network.
+
+    Attributes
+    ----------
+    islands : tuple of tuple of str
+        Boards of each live island.
+    island_of_board : mapping of str to int
+        Live boards only; a board that is not named is dead.
+    running : frozenset of str
+        Sources on line.
+    motors_on : tuple of str
+        Synchronous motors that are on and live.
+    load_island : ndarray of int, shape (load,)
+        -1 where nothing feeds the load.
+    load_board : ndarray of int, shape (load,)
+        Place in the plant of the board that feeds the load now, second feeds included.
+    """
+
+    islands: tuple[tuple[str, ...], ...]
+    island_of_board: Mapping[str, int]
+    running: frozenset[str]
+    motors_on: tuple[str, ...]
+    load_island: IntArray
+    load_board: IntArray
+
+
+def supply_of(plant: Plant, view: View) -> ModeSupply:
+    """Return what the balance needs of a mode's view of the network."""
+    place = {board.name: i for i, board in enumerate(plant.boards)}
+    moved = {feed.target: feed.used for feed in view.feeds if feed.transferred}
+    load_board = [
+        node if node < len(plant.boards) else place[_feeding_board(plant, load, moved)]
+        for load, node in zip(plant.loads, view.load_node, strict=True)
+    ]
+    load_island = [
+        view.island[node] if fed else DEAD for node, fed in zip(view.load_node, view.load_fed, strict=True)
+    ]
+    return ModeSupply(
+        islands=tuple(island.boards for island in view.islands),
+        island_of_board={
+            board.name: number
+            for board, number in zip(plant.boards, view.board_island, strict=True)
+            if number != DEAD
+        },
+        running=frozenset(view.sources),
+        motors_on=view.motors_on,
+        load_island=np.array(load_island, dtype=np.int64),
+        load_board=np.array(load_board, dtype=np.int64),
+    )
+
+
+def _feeding_board(plant: Plant, load: Load, moved: Mapping[str, str]) -> str:
+    """Return the board at the far end of the supply that a load uses."""
+    supply = moved.get(load.name)
+    boards = {board.name for board in plant.boards}
+    if supply in boards:
+        return str(supply)
+    ends = [end for c in plant.cables if c.name == supply for end in (c.from_end, c.to_end)]
+    return next((end for end in ends if end in boards), load.board)
