@@ -21,7 +21,7 @@ from study.workbook.package_opc import (
 from study.workbook.package_parts import read_graph
 from study.workbook.package_styles import FIRST_CUSTOM_FORMAT, ORDER
 from study.workbook.package_tables import read_tables
-from study.workbook.package_xml import OFFICE, Node, as_utf8, effective, out_of_order, parse
+from study.workbook.package_xml import OFFICE, Node, as_utf8, effective, out_of_order, parse, whole_number
 from study.workbook.package_zip import part_key
 
 LONGEST_SHEET_NAME = 31
@@ -66,19 +66,19 @@ def validate_package(data: bytes) -> list[str]:
         graph = read_graph(package)
         roots = {part_key(n): parse(as_utf8(package.read(n), n), n) for n in package.names if _is_xml(n)}
         sheets = read_sheets(package, roots[part_key(package.workbook_part)], "")
+        read = _Read(package=package, graph=graph, roots=roots)
+        return [
+            *_check_types(read),
+            *_check_relations(read),
+            *_check_workbook(read, sheets),
+            *_check_names(read, sheets),
+            *_check_styles(read.related("styles")),
+            *_check_differential(read),
+            *_check_chain(read, sheets),
+            *_check_sheets(read, sheets),
+        ]
     except PackageError as error:
         return [str(error)]
-    read = _Read(package=package, graph=graph, roots=roots)
-    return [
-        *_check_types(read),
-        *_check_relations(read),
-        *_check_workbook(read, sheets),
-        *_check_names(read, sheets),
-        *_check_styles(read.related("styles")),
-        *_check_differential(read),
-        *_check_chain(read, sheets),
-        *_check_sheets(read, sheets),
-    ]
 
 
 def _is_xml(name: str) -> bool:
@@ -151,8 +151,8 @@ def _check_names(read: _Read, sheets: list[Sheet]) -> Iterator[str]:
     if book.find("definedNames") and not names:
         yield f"{part}: the list of names is empty"
     for view in book.walk():
-        active = view.attributes.get("activeTab", "0") if view.name == "workbookView" else "0"
-        if not active.isdigit() or int(active) >= len(sheets):
+        active = whole_number(view, "activeTab") if view.name == "workbookView" else 0
+        if active >= len(sheets):
             yield f"{part}: the active tab {active} is not there"
 
 
@@ -162,8 +162,8 @@ def _check_styles(root: Node | None) -> Iterator[str]:
     yield from (f"styles: {fault}" for fault in out_of_order(root, ORDER, ()))
     sizes = {c.name: len(c.children) for c in root.children if c.space == root.space}
     for container in root.children:
-        count = container.attributes.get("count")
-        if count is not None and container.space == root.space and int(count) != len(container.children):
+        count = whole_number(container, "count", len(container.children))
+        if count != len(container.children) and container.space == root.space:
             yield f"styles: {container.name} counts {count} but holds {len(container.children)}"
     declared = [n.attributes.get("numFmtId", "") for n in _formats(root)]
     for number in _repeated(declared):
@@ -174,8 +174,8 @@ def _check_styles(root: Node | None) -> Iterator[str]:
         "borderId": sizes.get("borders", 0),
     }
     for name in ("cellStyleXfs", "cellXfs"):
-        container = root.find(name)
-        for place, xf in enumerate(container.children if container else ()):
+        formats = root.find(name)
+        for place, xf in enumerate(formats.children if formats else ()):
             yield from _check_xf(f"{name}[{place}]", xf, limits, sizes.get("cellStyleXfs", 0), declared)
 
 
@@ -188,10 +188,10 @@ def _check_xf(
     where: str, xf: Node, limits: dict[str, int], styles: int, declared: list[str]
 ) -> Iterator[str]:
     for name, limit in (limits | {"xfId": max(1, styles)}).items():
-        if int(xf.attributes.get(name, "0")) >= limit:
-            yield f"styles: {where} refers to {name} {xf.attributes.get(name, '0')} of {limit}"
-    number = xf.attributes.get("numFmtId", "0")
-    if int(number) >= FIRST_CUSTOM_FORMAT and number not in declared:
+        if whole_number(xf, name) >= limit:
+            yield f"styles: {where} refers to {name} {xf.attributes[name]} of {limit}"
+    number = whole_number(xf, "numFmtId")
+    if number >= FIRST_CUSTOM_FORMAT and str(number) not in declared:
         yield f"styles: {where} refers to the number format {number}, which is not declared"
 
 
@@ -204,7 +204,7 @@ def _check_differential(read: _Read) -> Iterator[str]:
             if node.space != read.book.space:
                 continue
             for name, value in node.attributes.items():
-                if name.lower().endswith("dxfid") and int(value) >= size:
+                if name.lower().endswith("dxfid") and whole_number(node, name) >= size:
                     yield f"{part}: {node.name} refers to {name} {value} of {size}"
 
 

@@ -9,7 +9,7 @@ from collections.abc import Iterator, Mapping, Sequence
 from study.workbook.package_cells import address, area, split_address
 from study.workbook.package_sheets import SHEET_ORDER
 from study.workbook.package_tables import TablePlace
-from study.workbook.package_xml import Node, out_of_order
+from study.workbook.package_xml import Node, out_of_order, whole_number
 
 _TABLE_NAME = re.compile(r"[^\W\d][\w.]*|\\[\w.]*")
 _CELL_LIKE = re.compile(r"[A-Za-z]{1,3}\d+|[rR]\d*[cC]\d*|[rRcC]")
@@ -30,20 +30,20 @@ def check_sheet(part: str, root: Node, formats: int, strings: int) -> Iterator[s
     yield from (f"{part}: {fault}" for fault in out_of_order(root, SHEET_ORDER, ("conditionalFormatting",)))
     columns = root.find("cols")
     for column in columns.children if columns else ():
-        yield from _check_number(part, "column", column.attributes.get("style", "0"), formats)
+        yield from _check_number(part, "column", whole_number(column, "style"), formats)
     data = root.find("sheetData")
     last_row = 0
     for row in data.all("row") if data else ():
-        number = int(row.attributes.get("r", last_row + 1))
+        number = whole_number(row, "r", last_row + 1)
         if number <= last_row:
             yield f"{part}: row {number} stands behind row {last_row}"
         last_row = number
-        yield from _check_number(part, f"row {number}", row.attributes.get("s", "0"), formats)
+        yield from _check_number(part, f"row {number}", whole_number(row, "s"), formats)
         yield from _check_cells(part, row, number, formats, strings)
 
 
-def _check_number(part: str, what: str, style: str, formats: int) -> Iterator[str]:
-    if int(style) >= formats:
+def _check_number(part: str, what: str, style: int, formats: int) -> Iterator[str]:
+    if style >= formats:
         yield f"{part}: {what} uses the cell format {style} of {formats}"
 
 
@@ -55,7 +55,7 @@ def _check_cells(part: str, row: Node, number: int, formats: int, strings: int) 
         if in_row != number or column <= last:
             yield f"{part}: cell {place} stands out of order in row {number}"
         last = column
-        yield from _check_number(part, f"cell {place}", cell.attributes.get("s", "0"), formats)
+        yield from _check_number(part, f"cell {place}", whole_number(cell, "s"), formats)
         kind, value = cell.attributes.get("t", "n"), cell.find("v")
         if kind == "s" and (value is None or not value.text.isdigit() or int(value.text) >= strings):
             yield f"{part}: cell {place} refers to a shared string that is not there"

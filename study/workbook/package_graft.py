@@ -209,7 +209,7 @@ def _tables_on(base: _Side, sheet: Sheet, tables: list[TablePlace]) -> list[Tabl
 
 def _names_a_sheet(chain: bytes, numbers: set[int]) -> bool:
     """Return whether a chain of calculation names one of these sheets."""
-    return bool(numbers & {int(i) for i in re.findall(rb'\bi="(\d+)"', chain)})
+    return bool(numbers & {int(i) for i in re.findall(rb"""\bi=["'](\d+)["']""", chain)})
 
 
 def _joined_styles(base: _Side, result: _Side) -> tuple[bytes, StyleMap]:

@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 
 from study.issues import PackageError
 from study.workbook.package_opc import Package, Relation, read_relations, rels_part
-from study.workbook.package_xml import OFFICE, Document, Node, escape
+from study.workbook.package_xml import OFFICE, Document, Node, escape, whole_number
 
 MARK = "StudyResultSheet"
 """Hidden name, scoped to a sheet, whose value is that sheet's name as text.
@@ -83,10 +83,10 @@ def defined_names(root: Node) -> list[tuple[Node, DefinedName]]:
 
 
 def _defined_name(node: Node) -> DefinedName:
-    scope = node.attributes.get("localSheetId")
+    scope = whole_number(node, "localSheetId") if "localSheetId" in node.attributes else None
     return DefinedName(
         name=node.attributes.get("name", ""),
-        scope=None if scope is None else int(scope),
+        scope=scope,
         hidden=node.attributes.get("hidden", "0") in _TRUE,
         value=node.text,
     )
@@ -109,14 +109,13 @@ def read_sheets(package: Package, root: Node, prefix: str) -> list[Sheet]:
     for index, node in enumerate(container.all("sheet") if container else ()):
         name = node.attributes.get("name", "")
         relation = relations.get(node.attributes.get(f"{{{OFFICE}}}id", ""))
-        number = node.attributes.get("sheetId", "")
-        if relation is None or relation.external or not number.isdigit():
+        if relation is None or relation.external:
             raise PackageError(f"the sheet {name} has no part; the file is damaged")
         sheets.append(
             Sheet(
                 name=name,
                 index=index,
-                number=int(number),
+                number=whole_number(node, "sheetId"),
                 relation=relation,
                 owned=name.startswith(prefix)
                 and marks.get(index) == mark_value(name)

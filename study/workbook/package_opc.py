@@ -75,6 +75,8 @@ class Package:
         SHA-256 of it; hand it to `write_atomically` to be sure that the file did not change meanwhile.
     members : tuple of Member
         Zip entries in their order.
+    by_key : mapping of str to Member
+        The same by compared name.
     workbook_part : str
         Name of the part that lists the sheets.
     macro_enabled : bool
@@ -84,6 +86,7 @@ class Package:
     data: bytes = field(repr=False)
     digest: str
     members: tuple[Member, ...] = field(repr=False)
+    by_key: Mapping[str, Member] = field(repr=False)
     workbook_part: str
     macro_enabled: bool
 
@@ -94,11 +97,7 @@ class Package:
 
     def read(self, part: str) -> bytes:
         """Return the content of a part, whatever the case of its name."""
-        wanted = part_key(part)
-        for member in self.members:
-            if part_key(member.name) == wanted:
-                return inflate(member)
-        raise PackageError(f"part {part} is missing; the file is damaged")
+        return _required(self.by_key, part)
 
 
 def rels_part(part: str) -> str:
@@ -231,6 +230,7 @@ def package_from_bytes(data: bytes) -> Package:
         data=data,
         digest=hashlib.sha256(data).hexdigest(),
         members=members,
+        by_key=by_key,
         workbook_part=workbook,
         macro_enabled=_WORKBOOK_TYPES[types.of(workbook) or ""],
     )

@@ -153,9 +153,10 @@ def edit_content_types(data: bytes, gone: set[str], new: Mapping[str, str]) -> b
         The same bytes when nothing had to be declared.
     """
     types, document = read_content_types(data), Document(data, TYPES_PART)
+    by_key = {part_key(n): t for n, t in new.items()}
     for node in document.root.all("Override"):
         key = part_key(node.attributes.get("PartName", ""))
-        wanted = {part_key(n): t for n, t in new.items()}.get(key)
+        wanted = by_key.get(key)
         if key in gone:
             document.remove(node)
         elif wanted is not None:

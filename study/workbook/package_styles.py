@@ -5,7 +5,16 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
-from study.workbook.package_xml import COMPATIBILITY, MAIN, XML_LINE, Document, Node, escape, parse
+from study.workbook.package_xml import (
+    COMPATIBILITY,
+    MAIN,
+    XML_LINE,
+    Document,
+    Node,
+    escape,
+    parse,
+    whole_number,
+)
 
 ORDER = (
     "numFmts",
@@ -138,9 +147,9 @@ def merge_styles(base: bytes, extra: bytes) -> tuple[bytes, StyleMap]:
     for xf in _items(root, "cellXfs"):
         moved = {
             "numFmtId": formats.get(xf.attributes.get("numFmtId", "0"), xf.attributes.get("numFmtId", "0")),
-            "fontId": str(fonts[int(xf.attributes.get("fontId", "0"))]),
-            "fillId": str(fills[int(xf.attributes.get("fillId", "0"))]),
-            "borderId": str(borders[int(xf.attributes.get("borderId", "0"))]),
+            "fontId": str(fonts[whole_number(xf, "fontId")]),
+            "fillId": str(fills[whole_number(xf, "fillId")]),
+            "borderId": str(borders[whole_number(xf, "borderId")]),
             "xfId": normal,
         }
         cells.append(pools["cellXfs"].place(replace(xf, attributes=xf.attributes | moved)))
@@ -162,7 +171,7 @@ def _number_formats(root: Node) -> list[Node]:
 
 def _place_formats(pool: _Pool, base: Node, extra: Node) -> dict[str, str]:
     """Return the new number of each number format; codes already declared keep their number."""
-    used = [int(n.attributes.get("numFmtId", "0")) for n in _number_formats(base)]
+    used = [whole_number(n, "numFmtId") for n in _number_formats(base)]
     following = max([FIRST_CUSTOM_FORMAT - 1, *used]) + 1
     declared = {
         n.attributes.get("formatCode", ""): n.attributes["numFmtId"]

@@ -6,7 +6,7 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, replace
 
 from study.workbook.package_opc import TYPES_PART, Package, read_content_types
-from study.workbook.package_xml import as_utf8, parse
+from study.workbook.package_xml import as_utf8, parse, whole_number
 from study.workbook.package_zip import part_key
 
 TABLE_TYPE = "application/vnd.openxmlformats-officedocument.spreadsheetml.table+xml"
@@ -43,12 +43,13 @@ def read_tables(package: Package) -> list[TablePlace]:
     tables = []
     for part in package.names:
         if types.of(part) == TABLE_TYPE:
-            attributes = parse(as_utf8(package.read(part), part), part).attributes
+            root = parse(as_utf8(package.read(part), part), part)
+            attributes = root.attributes
             name = attributes.get("displayName", attributes.get("name", ""))
             tables.append(
                 TablePlace(
                     part=part,
-                    number=int(attributes.get("id", "0")),
+                    number=whole_number(root, "id"),
                     name=name,
                     ref=attributes.get("ref", ""),
                     headed=attributes.get("headerRowCount", "1") != "0",

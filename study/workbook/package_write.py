@@ -54,7 +54,7 @@ def write_atomically(path: str | Path, data: bytes, *, read_digest: str | None =
         with os.fdopen(handle, "wb") as stream:
             stream.write(data)
             stream.flush()
-            os.fsync(stream.fileno())
+            _sync(stream.fileno())
         _keep_owner(temporary, target)
         os.chmod(temporary, mode)
         # Once more, as near to the rename as can be: another program may have saved while we wrote.
@@ -117,6 +117,15 @@ def _keep_owner(temporary: Path, target: Path) -> None:
     with contextlib.suppress(OSError, AttributeError):
         old = target.stat()
         os.chown(temporary, old.st_uid, old.st_gid)
+
+
+def _sync(handle: int) -> None:
+    """Flush to the disk; some network drives cannot be asked to, which is no reason to fail."""
+    try:
+        os.fsync(handle)
+    except OSError as error:
+        if error.errno not in (errno.EINVAL, errno.ENOTSUP, errno.ENOSYS):
+            raise
 
 
 def _sync_folder(folder: Path) -> None:

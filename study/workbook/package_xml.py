@@ -76,6 +76,20 @@ class Node:
             waiting.extend(reversed(node.children))
 
 
+def whole_number(node: Node, name: str, default: int = 0) -> int:
+    """Return an attribute that is a number not below zero.
+
+    Raises
+    ------
+    PackageError
+        It is something else.
+    """
+    text = node.attributes.get(name, str(default))
+    if not text.isascii() or not text.isdigit() or len(text) > 10:
+        raise PackageError(f"an element {node.name} says {name}={text[:20]!r}; the file is damaged")
+    return int(text)
+
+
 def escape(text: str) -> str:
     """Return the text fit for an element or a double-quoted attribute."""
     return _escape(text, {'"': "&quot;", "\n": "&#10;", "\r": "&#13;", "\t": "&#9;"})
@@ -132,7 +146,7 @@ def check_prolog(head: bytes, part: str, *, whole: bool) -> None:
         parser.Parse(head, False)
     except _Stop:
         pass
-    except expat.ExpatError as error:
+    except (expat.ExpatError, LookupError, ValueError) as error:
         raise PackageError(f"part {part} is damaged (its XML cannot be read)") from error
     if reached == ["document type"]:
         raise PackageError(_DOCTYPE.format(part))
@@ -152,6 +166,7 @@ class _Builder:
         self.parser.CharacterDataHandler = self.characters
         self.parser.StartDoctypeDeclHandler = self.doctype
         self.open: list[Node] = []
+        self.texts: list[list[str]] = []
         self.root: Node | None = None
         self.count = 0
 
@@ -172,9 +187,11 @@ class _Builder:
         else:
             self.root = node
         self.open.append(node)
+        self.texts.append([])
 
     def end(self, _: str) -> None:
         node = self.open.pop()
+        node.text = "".join(self.texts.pop())
         at = self.parser.CurrentByteIndex
         tag = _START_TAG.match(self.data, node.start)
         if tag and tag[0].endswith(b"/>"):
@@ -183,8 +200,8 @@ class _Builder:
             node.close, node.stop = at, self.data.index(b">", at) + 1
 
     def characters(self, text: str) -> None:
-        if self.open:
-            self.open[-1].text += text
+        if self.texts:
+            self.texts[-1].append(text)
 
 
 def parse(data: bytes, part: str) -> Node:

@@ -287,24 +287,37 @@ def verify(member: Member) -> bytes:
 def _inflated(member: Member) -> Iterator[bytes]:
     """Yield the content in chunks; stop at the declared size, raise when size or CRC differ."""
     damaged = f"part {member.name} is damaged (its check sum is wrong); restore the file from a copy"
-    inflater = zlib.decompressobj(-zlib.MAX_WBITS)
-    crc, length, waiting = 0, 0, member.packed
+    crc, length = 0, 0
     try:
-        while True:
-            if member.method == _STORED:
-                chunk, waiting = waiting, b""
-            else:
-                chunk = inflater.decompress(waiting, _CHUNK)
-                waiting = inflater.unconsumed_tail
+        for chunk in _unpacked(member):
             length += len(chunk)
             crc = zlib.crc32(chunk, crc)
-            if length > member.size or not chunk:
+            if length > member.size:
                 break
             yield chunk
     except zlib.error as error:
         raise PackageError(damaged) from error
     if length != member.size or crc != member.crc:
         raise PackageError(damaged)
+
+
+def _unpacked(member: Member) -> Iterator[bytes]:
+    """Yield the content in chunks of bounded size, whatever the stream claims."""
+    pieces = (member.packed[at : at + _CHUNK] for at in range(0, len(member.packed), _CHUNK))
+    if member.method == _STORED:
+        yield from pieces
+        return
+    inflater = zlib.decompressobj(-zlib.MAX_WBITS)
+    for piece in pieces:
+        waiting = piece
+        while waiting and not inflater.eof:
+            chunk = inflater.decompress(waiting, _CHUNK)
+            waiting = inflater.unconsumed_tail
+            if chunk:
+                yield chunk
+    rest = inflater.flush()
+    if rest:
+        yield rest
 
 
 def write_members(members: Iterable[Member]) -> bytes:
