@@ -21,13 +21,14 @@ from study.formulas.synchronous import (
 )
 from study.model.plant import Plant
 from study.model.sources import Genset
-from study.network.field_supply import field_supply, has_regulator, steady_machine
+from study.network.machines import largest_field, machine_of, set_field
 from study.results.arrays import FloatArray, read_only
 from study.results.regulation import InherentCurve, RegulationResult, SetRegulation
 
 LABELS = ("power factor 0 lagging", "0.8 lagging", "1.0", "0.8 leading")
 COS_PHI = np.array([0.0, 0.8, 1.0, 0.8])
 LAGGING = (True, True, True, False)
+WITHOUT_REGULATOR = ("fixed", "compounded without regulator")
 CURRENTS_PU = np.linspace(0.0, 1.2, 49)
 LOADS_PU = np.linspace(0.0, 1.0, 41)
 _OVERLOADS_PU = np.linspace(0.02, 3.0, 150)
@@ -69,7 +70,7 @@ def inherent_curves(genset: Genset) -> InherentCurve:
     InherentCurve
         Voltage [pu] by power factor and current, NaN where the field cannot drive the current.
     """
-    machine = steady_machine(genset.machine)
+    machine = machine_of(genset)
     phi = np.arccos(COS_PHI) * np.where(LAGGING, 1.0, -1.0)
     field = float(field_required(1.0, 0.0, 0.0, machine))
     u_pu = terminal_voltage_at_field(field, CURRENTS_PU[np.newaxis, :], phi[:, np.newaxis], machine)
@@ -82,6 +83,44 @@ def inherent_curves(genset: Genset) -> InherentCurve:
         regulation_pu=read_only(inherent_regulation(1.0, phi, machine)),
         field_pu=read_only(field_required(1.0, 1.0, phi, machine)),
     )
+
+
+def has_regulator(genset: Genset) -> bool:
+    """Return whether a regulator acts on the set's field.
+
+    Parameters
+    ----------
+    genset : Genset
+        The set.
+
+    Returns
+    -------
+    bool
+        False for a fixed field, a compounded set without regulator, and a regulator switched to fixed
+        excitation.
+    """
+    return (
+        genset.excitation.field_supply not in WITHOUT_REGULATOR
+        and genset.regulator.mode != "fixed excitation"
+    )
+
+
+def field_supply_in_use(genset: Genset) -> FieldSupply:
+    """Return the most field that the set's supply gives, or the constant field of a set on fixed excitation.
+
+    Parameters
+    ----------
+    genset : Genset
+        The set.
+
+    Returns
+    -------
+    FieldSupply
+        Constant, voltage-derived and current-derived parts.
+    """
+    if genset.regulator.mode == "fixed excitation":
+        return set_field(genset, genset.regulator.no_load_voltage_pu)
+    return largest_field(genset)
 
 
 def compensation_reactance(genset: Genset) -> float:
@@ -139,7 +178,7 @@ def proportional_offset(
 
 
 def _regulate(genset: Genset) -> SetRegulation:
-    machine, supply = steady_machine(genset.machine), field_supply(genset)
+    machine, supply = machine_of(genset), field_supply_in_use(genset)
     p, q = _loads(genset)
     without = _held(genset, supply, _regulated_without_droop(genset, machine, p, q))
     with_droop = _held(genset, supply, _regulated_with_droop(genset, p, q))
@@ -184,7 +223,7 @@ def _regulated_with_droop(genset: Genset, p: FloatArray, q: FloatArray) -> Float
 def _held(genset: Genset, supply: FieldSupply, regulated: FloatArray) -> FloatArray:
     p, q = _loads(genset)
     top = regulated if has_regulator(genset) else np.full(p.shape, 2.0)
-    machine = steady_machine(genset.machine)
+    machine = machine_of(genset)
     return held_voltage(p, q, exponent=1.0, v_top_pu=top, supply=supply, machine=machine)
 
 

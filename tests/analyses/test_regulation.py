@@ -71,20 +71,19 @@ def test_a_fixed_field_follows_the_inherent_curve() -> None:
     assert any("no voltage at rated load" in text for text in row.findings)
 
 
-def test_a_compounded_set_without_regulator_meets_both_ends() -> None:
-    """Calibrated on no load and rated load; between them it is off by a few per cent (common practice)."""
+def test_a_compounded_set_without_regulator_has_its_stated_voltage_at_rated_load() -> None:
+    """Calibrated at rated load; elsewhere it is off by a few per cent (common practice, no source)."""
     row = regulation_of(
         genset(
             "G",
             "MSB",
             field_supply="compounded without regulator",
-            no_load_voltage_pu=1.02,
-            voltage_droop_pu=0.03,
+            unregulated_voltage_pu=1.0,
+            compound_current_share=0.65,
         )
     )
-    assert row.u_without_droop_pu[0] == pytest.approx(1.02, abs=1e-9)
-    assert row.u_without_droop_pu[-1] == pytest.approx(0.99, abs=1e-9)
-    assert np.ptp(row.u_without_droop_pu[1:-1]) > 0.005
+    assert row.u_without_droop_pu[-1] == pytest.approx(1.0, abs=1e-9)
+    assert 0.005 < np.ptp(row.u_without_droop_pu) < 0.15
 
 
 def test_a_compounded_regulator_can_only_take_away() -> None:
