@@ -119,7 +119,7 @@ def _value(text: str) -> object:
 
 
 def _demand(book: Book, name: str, demand: str) -> Row:
-    words = demand.split()
+    words = _by_letters(demand, book.letters) if book.letters else demand.split()
     if len(words) != len(book.modes):
         raise ValueError(f"{name}: {len(words)} demands for {len(book.modes)} modes")
     row: Row = {"Load": name}
@@ -133,6 +133,18 @@ def _demand(book: Book, name: str, demand: str) -> Row:
         row[f"{mode}: load factor [%]"] = float(factor.rstrip("cio"))
         row[f"{mode}: duty"] = DUTIES[duty]
     return row
+
+
+def _by_letters(demand: str, letters: str) -> list[str]:
+    """Return one word for each mode from parts such as ``TSM 1/80; HA 1/50i`` (a dash: in no mode)."""
+    words = dict.fromkeys(letters, "-")
+    for part in demand.split(";"):
+        where, _, word = part.strip().partition(" ")
+        for letter in where.strip("-"):
+            if words[letter] != "-":
+                raise ValueError(f"{demand}: {letter} is named twice")
+            words[letter] = word
+    return list(words.values())
 
 
 def load_current_a(book: Book, row: Mapping[str, object]) -> float:
@@ -206,26 +218,35 @@ def _protect_other(book: Book, row: Row, amps: float, fused: bool) -> tuple[floa
         size = sizing.next_size(1.15 * amps, sizing.FUSES_A)
         _fuse(book, name, board, size, "gG")
         return size / 0.9, "CL 32" if size <= 63 else frame(size)
-    size = sizing.next_size(1.1 * amps)
-    if size <= 63 and book.breaking_ka[board] <= 15:
+    if 1.1 * amps <= 63 and takes_miniature(book, board):
+        size = sizing.next_size(1.1 * amps)
         book.breaker(
             f"Q-{name}", f"C-{name}", board, size, curve="MCB C", source="fixed", i_tol=None, t_tol=None
         )
         return size, "MCB C"
     setting = max(round(1.15 * amps), 16)
     size = sizing.next_size(setting, sizing.SUPPLY_BREAKERS_A)
+    air = size > 630
     book.breaker(
         f"Q-{name}",
         f"C-{name}",
         board,
         size,
+        icw_ka=0.8 * book.breaking_ka[board] if air else None,
         ir=setting,
         tr=8,
         tr_at=2,
-        ii=round(8 * setting),
-        curve=frame(size),
+        isd=6 * setting if air else None,
+        tsd=0.1 if air else None,
+        ii=round((12 if air else 8) * setting),
+        curve=None if air else frame(size),
     )
     return setting, frame(size)
+
+
+def takes_miniature(book: Book, board: str) -> bool:
+    """Return True where miniature breakers have the breaking capacity for a board."""
+    return book.breaking_ka[board] <= 15
 
 
 def _fuse(book: Book, load: str, board: str, amps: float, fuse_class: str) -> None:

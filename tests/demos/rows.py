@@ -29,8 +29,13 @@ def table(headings: str, *lines: Sequence[object]) -> list[Row]:
     return [{n: v for n, v in zip(names, line, strict=False) if v is not None} for line in lines]
 
 
-def making_ka(breaking_ka: float) -> float:
-    """Return the making capacity that goes with a breaking capacity; ratios from memory of IEC 60947-2."""
+def making_ka(breaking_ka: float, volts: float = 0.0) -> float:
+    """Return the making capacity that goes with a breaking capacity.
+
+    Ratios from memory of IEC 60947-2, and of IEC 62271-100 at 60 Hz above 1 kV.
+    """
+    if volts > 1000:
+        return round(2.6 * breaking_ka, 1)
     for above, ratio in ((50, 2.2), (20, 2.1), (10, 2.0), (6, 1.7)):
         if breaking_ka > above:
             return round(breaking_ka * ratio, 1)
@@ -41,8 +46,14 @@ class Book:
     """The sheets of one vessel while they fill; keeps of each board what later rows need to know."""
 
     def __init__(
-        self, *, hz: float, modes: Sequence[str], consumer_volts: Mapping[float, float] | None = None
+        self,
+        *,
+        hz: float,
+        modes: Sequence[str],
+        consumer_volts: Mapping[float, float] | None = None,
+        letters: str = "",
     ) -> None:
+        self.letters = letters
         self.hz = hz
         self.consumer_volts = dict(consumer_volts or {})
         self.modes = tuple(modes)
@@ -119,11 +130,13 @@ class Book:
             "Cables bunched": bunched,
             "Duty": "continuous",
         }
+        if self.volts[board] > 1000:
+            row |= {"R0 [ohm/km]": 1.9, "X0 [ohm/km]": 0.35, "Capacitance [uF/km]": 0.42}
         self.sheets["Cables"].append(row | columns)
 
     def least_mm2(self, board: str) -> float:
         """Return the smallest section of a run that a short-time delayed breaker protects [mm2]."""
-        return 35 if self.volts[board] > 1000 else 10 if self.breaking_ka[board] >= 25 else 4
+        return 70 if self.volts[board] > 1000 else 10 if self.breaking_ka[board] >= 25 else 4
 
     def device(
         self, name: str, equipment: str, end: str | None, kind: str, amps: float, **columns: object
@@ -149,36 +162,40 @@ class Book:
         icw_ka: float | None = None,
         **settings: object,
     ) -> None:
-        """Add a circuit breaker of the breaking capacity fitted on a board."""
-        breaking_ka = self.breaking_ka[board]
+        """Add a circuit breaker of the breaking capacity fitted on a board.
+
+        Above 1 kV the settings stand in a row of their own, that of the relay which trips it.
+        """
+        volts, breaking_ka = self.volts[board], self.breaking_ka[board]
         big = icw_ka is not None
+        ratings: Row = {
+            "u": 7200 if volts > 1000 else 690 if volts > 500 else 500,
+            "icu": breaking_ka,
+            "ics": breaking_ka,
+            "icw": icw_ka,
+            "icw_s": 1 if big else None,
+            "icm": making_ka(breaking_ka, volts),
+            "source": "adjustable",
+            "open_s": 0.03 if big else 0.005,
+            "break_s": 0.06 if big else 0.02,
+        }
+        release: Row = {"senses": "rms", "i_tol": 10, "t_tol": 10, "category": "B" if big else "A"} | settings
+        if volts <= 1000:
+            self.device(name, equipment, board, "circuit breaker", amps, **ratings | release)
+            return
         self.device(
-            name,
-            equipment,
-            board,
-            "circuit breaker",
-            amps,
-            **{
-                "u": self.volts[board]
-                if self.volts[board] > 1000
-                else 690
-                if self.volts[board] > 500
-                else 500,
-                "icu": breaking_ka,
-                "ics": breaking_ka,
-                "icw": icw_ka,
-                "icw_s": 1 if big else None,
-                "icm": making_ka(breaking_ka),
-                "category": "B" if big else "A",
-                "source": "adjustable",
-                "senses": "rms",
-                "i_tol": 10,
-                "t_tol": 10,
-                "open_s": 0.03 if big else 0.005,
-                "break_s": 0.06 if big else 0.02,
-            }
-            | settings,
+            name, equipment, board, "circuit breaker", max(630, amps), **ratings | {"icw": breaking_ka}
         )
+        self._relay(f"R{name[1:]}", equipment, board, amps, settings)
+
+    def _relay(self, name: str, equipment: str, board: str, amps: float, settings: Row) -> None:
+        """Add the relay of a breaker above 1 kV; its very inverse curve goes through the long-time point."""
+        seconds, multiple = float(str(settings["tr"])), float(str(settings["tr_at"]))
+        times = {"open_s": 0.04, "break_s": 0.08, "i_tol": 5, "t_tol": 5, "senses": "rms"}
+        kept = {key: settings[key] for key in ("ir", "isd", "tsd", "ii") if key in settings}
+        inverse = {"relay": "very inverse", "tms": round(seconds * (multiple - 1) / 13.5, 2)}
+        transformer = {"ct1": amps, "ct2": 1, "reset": "definite", "source": "adjustable"}
+        self.device(name, equipment, board, "overcurrent relay", amps, **kept | inverse | transformer | times)
 
     def running(self, states: Mapping[str, str]) -> None:
         """Add the Running sheet: for each equipment one word for each mode."""
