@@ -1,0 +1,50 @@
+"""Every table of the study, made once and rendered by every output."""
+
+from __future__ import annotations
+
+from study.report.content import StudyOutcome
+from study.report.tables import Table
+from study.report.tables_assumptions import assumption_tables
+from study.report.tables_balance import balance_tables
+from study.report.tables_branches import branch_tables
+from study.report.tables_load_flow import load_flow_tables
+from study.report.tables_modes import modes_table
+from study.report.tables_regulation import regulation_tables
+from study.report.tables_sharing import sharing_tables
+from study.report.tables_sources import source_tables
+from study.report.tables_verdicts import verdict_tables
+
+
+def all_tables(outcome: StudyOutcome) -> dict[str, Table]:
+    """Return every table by its key.
+
+    Parameters
+    ----------
+    outcome : StudyOutcome
+        The study.
+
+    Returns
+    -------
+    dict
+        Key to table, in the order of the report.
+
+    Raises
+    ------
+    ValueError
+        Two tables with one key.
+    """
+    tables = (
+        *verdict_tables(outcome),
+        modes_table(outcome),
+        *source_tables(outcome),
+        *balance_tables(outcome),
+        *load_flow_tables(outcome),
+        *branch_tables(outcome),
+        *sharing_tables(outcome),
+        *regulation_tables(outcome),
+        *assumption_tables(outcome),
+    )
+    found = {table.key: table for table in tables}
+    if len(found) != len(tables):
+        raise ValueError("two tables have one key")
+    return found

@@ -1,0 +1,107 @@
+"""Every table as plain data for other programs: stable keys with unit suffixes, unrounded values."""
+
+from __future__ import annotations
+
+import json
+import math
+from dataclasses import asdict
+from typing import Any
+
+from study.report.catalogue import all_tables
+from study.report.content import StudyOutcome
+from study.report.tables import Column, Table, Value
+
+FORMAT = "vessel-study-results/1"
+
+
+def json_document(outcome: StudyOutcome) -> dict[str, Any]:
+    """Return the whole study as dictionaries, lists, texts and numbers.
+
+    NaN and infinite values become null. A table with columns for each mode has them under ``modes``, by the
+    name of the mode.
+
+    Parameters
+    ----------
+    outcome : StudyOutcome
+        The study.
+
+    Returns
+    -------
+    dict
+        Ready for `json.dumps`.
+    """
+    return {
+        "format": FORMAT,
+        "tool_version": outcome.tool_version,
+        "input": {
+            "file_name": outcome.plant.file_name,
+            "sha256_of_input_cells": outcome.plant.input_digest,
+        },
+        "project": {key: _json_value(value) for key, value in asdict(outcome.plant.project).items()},
+        "modes": list(outcome.modes),
+        "tables": {key: table_document(table) for key, table in all_tables(outcome).items()},
+    }
+
+
+def json_text(outcome: StudyOutcome) -> str:
+    """Return the study as JSON text.
+
+    Parameters
+    ----------
+    outcome : StudyOutcome
+        The study.
+
+    Returns
+    -------
+    str
+        The text, the same for the same study.
+    """
+    return json.dumps(json_document(outcome), ensure_ascii=False, allow_nan=False, indent=1) + "\n"
+
+
+def table_document(table: Table) -> dict[str, Any]:
+    """Return one table.
+
+    Parameters
+    ----------
+    table : Table
+        The table.
+
+    Returns
+    -------
+    dict
+        Title, notes, columns and rows.
+    """
+    columns = {column.key: column for column in table.columns}
+    return {
+        "title": table.title,
+        "notes": list(table.notes),
+        "columns": [_column_document(column) for column in columns.values()],
+        "rows": [_row_document(table, r, row) for r, row in enumerate(table.rows())],
+    }
+
+
+def _column_document(column: Column) -> dict[str, Any]:
+    document: dict[str, Any] = {"key": column.key, "heading": column.heading, "unit": column.unit}
+    if column.group:
+        document["for_each_mode"] = True
+    return document
+
+
+def _row_document(table: Table, number: int, row: tuple[Value, ...]) -> dict[str, Any]:
+    document: dict[str, Any] = {}
+    by_mode: dict[str, dict[str, Any]] = {group: {} for group in table.groups}
+    for column, value in zip(table.columns, row, strict=True):
+        place = by_mode[column.group] if column.group else document
+        place[column.key] = _json_value(value)
+    if by_mode:
+        document["modes"] = by_mode
+    if table.row_styles:
+        document["row"] = table.style(number) or "item"
+    return document
+
+
+def _json_value(value: Value) -> Value:
+    if isinstance(value, float) and not math.isfinite(value):
+        return None
+    return value

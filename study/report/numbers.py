@@ -1,0 +1,322 @@
+"""The one place of rounding: numbers as text, with their units.
+
+Numbers in a column share their decimals, so that they line up on the decimal point. A judged value gets as
+many digits as it takes to differ from a limit that it exceeds.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable
+
+NOT_AVAILABLE = "n/a"
+MINUS = "−"
+_MOST_DIGITS = 15
+_NOISE = 1e-9
+
+
+def percent(value_pu: float) -> float:
+    """Return a fraction in percent.
+
+    Parameters
+    ----------
+    value_pu : float
+        Fraction [1].
+
+    Returns
+    -------
+    float
+        The same [%].
+
+    Examples
+    --------
+    >>> percent(0.025)
+    2.5
+    """
+    return 100.0 * float(value_pu)
+
+
+def significant_decimals(value: float, digits: int = 4, most: int = 6) -> int:
+    """Return the decimals that show a number with so many significant digits.
+
+    Parameters
+    ----------
+    value : float
+        Any number; 0 and NaN ask for no decimals.
+    digits : int
+        Significant digits wanted [1].
+    most : int
+        Never more decimals than this [1].
+
+    Returns
+    -------
+    int
+        Decimals, 0 or more [1].
+
+    Examples
+    --------
+    >>> [significant_decimals(v) for v in (12345.0, 231.4, 0.98765)]
+    [0, 1, 4]
+    """
+    if not math.isfinite(value) or value == 0.0:
+        return 0
+    return min(most, max(0, digits - 1 - math.floor(math.log10(abs(value)))))
+
+
+def column_decimals(values: Iterable[float], most: int = 2, digits: int = 3) -> int:
+    """Return the decimals that a column of numbers shares.
+
+    So many significant digits for the smallest number, but not more than one above that for the largest;
+    and always enough that the smallest does not print as zero, within `most`.
+
+    Parameters
+    ----------
+    values : iterable of float
+        The column; NaN and infinite are passed over.
+    most : int
+        Never more decimals than this [1].
+    digits : int
+        Significant digits of the smallest number [1].
+
+    Returns
+    -------
+    int
+        Decimals, 0 or more [1].
+
+    Examples
+    --------
+    >>> column_decimals([0.4, 80.0]), column_decimals([0.4, 3500.0]), column_decimals([1200.0, 3500.0])
+    (2, 1, 0)
+    """
+    sizes = [abs(v) for v in values if math.isfinite(v)]
+    largest = max(sizes, default=0.0)
+    sizes = [v for v in sizes if v > _NOISE * largest]
+    if not sizes:
+        return 0
+    smallest = min(sizes)
+    wanted = min(
+        significant_decimals(smallest, digits, most), significant_decimals(largest, digits + 1, most)
+    )
+    return min(most, max(wanted, significant_decimals(smallest, 1, most)))
+
+
+def exact_decimals(values: Iterable[float], most: int = 2) -> int:
+    """Return the fewest decimals that show every number as it was written.
+
+    Parameters
+    ----------
+    values : iterable of float
+        The column; NaN and infinite are passed over.
+    most : int
+        Never more decimals than this [1].
+
+    Returns
+    -------
+    int
+        Decimals, 0 or more [1].
+
+    Examples
+    --------
+    >>> exact_decimals([0.55, 250.0]), exact_decimals([11.0, 45.0])
+    (2, 0)
+    """
+    known = [v for v in values if math.isfinite(v)]
+    for decimals in range(most):
+        if all(abs(round(v, decimals) - v) <= _NOISE * max(1.0, abs(v)) for v in known):
+            return decimals
+    return most
+
+
+def decimals_apart(value: float, limit: float, decimals: int, most: int = _MOST_DIGITS) -> int:
+    """Return the decimals, `decimals` or more, at which a value and its limit print differently.
+
+    Parameters
+    ----------
+    value, limit : float
+        In the same unit.
+    decimals : int
+        Decimals wanted otherwise [1].
+    most : int
+        Where to stop looking [1].
+
+    Returns
+    -------
+    int
+        Decimals [1]; `decimals` where the two are equal or one is not finite.
+
+    Examples
+    --------
+    >>> decimals_apart(100.004, 100.0, 1), decimals_apart(100.0, 100.0, 1)
+    (3, 1)
+    """
+    if value == limit or not (math.isfinite(value) and math.isfinite(limit)):
+        return decimals
+    for more in range(decimals, most + 1):
+        if number(value, more) != number(limit, more):
+            return more
+    return decimals if most < _MOST_DIGITS else most
+
+
+def number(value: float, decimals: int, infinite: str = "infinite", missing: str = NOT_AVAILABLE) -> str:
+    """Return a number as text with fixed decimals and a true minus sign; never minus nought.
+
+    Parameters
+    ----------
+    value : float
+        Number to print; NaN becomes ``n/a``.
+    decimals : int
+        Decimals [1].
+    infinite, missing : str
+        Words for an infinite value and for NaN.
+
+    Returns
+    -------
+    str
+        The text.
+
+    Examples
+    --------
+    >>> number(-0.04, 1), number(12.345, 2), number(float("nan"), 1)
+    ('0.0', '12.35', 'n/a')
+    """
+    if math.isnan(value):
+        return missing
+    if math.isinf(value):
+        return infinite
+    text = f"{value:.{decimals}f}"
+    if not text.strip("-0."):
+        return text.lstrip("-")
+    return text.replace("-", MINUS)
+
+
+def tiny(value: float) -> str:
+    """Return a small number with a power of ten.
+
+    Parameters
+    ----------
+    value : float
+        Number to print.
+
+    Returns
+    -------
+    str
+        The text.
+
+    Examples
+    --------
+    >>> tiny(2.34e-10), tiny(0.0)
+    ('2.3e−10', '0')
+    """
+    if not math.isfinite(value):
+        return number(value, 0)
+    if value == 0.0:
+        return "0"
+    mantissa, exponent = f"{value:.1e}".split("e")
+    return f"{mantissa}e{int(exponent)}".replace("-", MINUS)
+
+
+def quantity(value: float, unit: str, decimals: int | None = None) -> str:
+    """Return a number with its unit, as in a sentence: four significant digits, no idle noughts.
+
+    Parameters
+    ----------
+    value : float
+        Number to print; NaN becomes ``n/a``.
+    unit : str
+        Unit behind it; may be empty.
+    decimals : int, optional
+        Decimals [1]; by significant digits where it is not given.
+
+    Returns
+    -------
+    str
+        The text.
+
+    Examples
+    --------
+    >>> quantity(231.0, "A"), quantity(0.98765, "pu"), quantity(100.04, "%", 2)
+    ('231 A', '0.9877 pu', '100.04 %')
+    """
+    if not math.isfinite(value):
+        return number(value, 0)
+    if decimals is None:
+        text = number(value, significant_decimals(value))
+        text = text.rstrip("0").rstrip(".") if "." in text else text
+    else:
+        text = number(value, decimals)
+    return f"{text} {unit}" if unit else text
+
+
+def judged_pair(value: float, limit: float, *, exceeds: bool) -> tuple[str, str]:
+    """Return a judged value and its limit as text that never agrees where the value exceeds the limit.
+
+    Parameters
+    ----------
+    value, limit : float
+        In the same unit.
+    exceeds : bool
+        Whether the value is beyond the limit.
+
+    Returns
+    -------
+    tuple of str
+        Value and limit.
+
+    Examples
+    --------
+    >>> judged_pair(100.0003, 100.0, exceeds=True)
+    ('100.0003', '100.0000')
+    >>> judged_pair(81.27, 100.0, exceeds=False)
+    ('81.3', '100.0')
+    """
+    decimals = judged_decimals(value, limit, exceeds=exceeds)
+    texts = number(value, decimals), number(limit, decimals)
+    if exceeds and texts[0] == texts[1] and value != limit:
+        return repr(float(value)).replace("-", MINUS), repr(float(limit)).replace("-", MINUS)
+    return texts
+
+
+def judged_decimals(value: float, limit: float, *, exceeds: bool) -> int:
+    """Return the decimals that `judged_pair` prints with.
+
+    Parameters
+    ----------
+    value, limit : float
+        In the same unit.
+    exceeds : bool
+        Whether the value is beyond the limit.
+
+    Returns
+    -------
+    int
+        Decimals [1].
+
+    Examples
+    --------
+    >>> judged_decimals(3.12, 2.5, exceeds=True)
+    3
+    """
+    sizes = [abs(v) for v in (value, limit) if math.isfinite(v)]
+    decimals = significant_decimals(max(sizes, default=0.0))
+    return decimals_apart(value, limit, decimals) if exceeds else decimals
+
+
+def excel_format(decimals: int) -> str:
+    """Return the number format of a spreadsheet cell.
+
+    Parameters
+    ----------
+    decimals : int
+        Decimals [1].
+
+    Returns
+    -------
+    str
+        The format.
+
+    Examples
+    --------
+    >>> excel_format(0), excel_format(2)
+    ('0', '0.00')
+    """
+    return "0" if decimals == 0 else "0." + "0" * decimals
