@@ -138,8 +138,11 @@ def least_mm2(sheet: str, fault_ka: float) -> float:
 
 def curve_rows() -> list[Row]:
     """Return the rows of the Curves sheet."""
-    keys = ("Curve", "Current [x In]", "Time min [s]", "Time max [s]")
-    return [dict(zip(keys, ("MCB C", *point), strict=True)) for point in MCB_C]
+    rows: list[Row] = []
+    for current, shortest, longest in MCB_C:
+        row: Row = {"Curve": "MCB C", "Current [x In]": current, "Time min [s]": shortest}
+        rows.append(row if longest is None else row | {"Time max [s]": longest})
+    return rows
 
 
 def let_through_rows(used: set[str]) -> list[Row]:

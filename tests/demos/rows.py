@@ -66,6 +66,12 @@ class Book:
         """Add plain rows to a sheet."""
         self.sheets[sheet] += table(headings, *lines)
 
+    def amend(self, sheet: str, columns: Row, *names: str) -> None:
+        """Write further columns into rows that stand already."""
+        for name in names:
+            row = next(row for row in self.sheets[sheet] if next(iter(row.values())) == name)
+            row |= columns
+
     def boards(self, *lines: Sequence[object]) -> None:
         """Add boards; the last two values are the breaking capacity fitted [kA] and the ambient [°C]."""
         headings = (

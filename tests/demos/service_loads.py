@@ -28,8 +28,8 @@ Hose reel | 2x7.5 | - - - 2/40i - - - | 30 | constant
 
 CARGO = """
 [CARGO | Cargo | motor]
-Mud pump 1 | 110 | - - - 1/95 - - - | 16 | star-delta port eff=0.952 pf=0.87 ist=6.7 stage=2 inertia=1.4 start_s=5
-Mud pump 2 | 110 | - - - 1/95 - - - | 18 | star-delta port eff=0.952 pf=0.87 ist=6.7 stage=2 inertia=1.4 start_s=5
+Mud pump 1 | 110 | - - - 1/100 - - - | 16 | absorbed=104 drop_out=65 star-delta port eff=0.952 pf=0.87 ist=6.7 stage=2 inertia=1.4 start_s=5
+Mud pump 2 | 110 | - - - 1/100 - - - | 18 | absorbed=104 drop_out=65 star-delta port eff=0.952 pf=0.87 ist=6.7 stage=2 inertia=1.4 start_s=5
 Fuel cargo pump 1 | 75 | - - - 1/92 - - - | 20 | star-delta port eff=0.946 pf=0.87 ist=6.7 stage=2 inertia=1.4 start_s=5
 Fuel cargo pump 2 | 75 | - - - 1/92 - - - | 22 | star-delta port eff=0.946 pf=0.87 ist=6.7 stage=2 inertia=1.4 start_s=5
 Brine pump | 75 | - - - 1/90i - - - | 22 | star-delta port eff=0.946 pf=0.87 ist=6.7 stage=2 inertia=1.4 start_s=5
@@ -153,7 +153,7 @@ Gymnasium and hospital | 4 | 1/40i - 1/40i 1/40i - - - | 26 | single-phase
 
 EMERGENCY = """
 [ESB | Safety | motor | safety]
-Emergency fire pump | 45 | 1/90o 1/90o 1/90o 1/90o 1/90o 1/90o 1/85 | 46 | ist=6.8 eff=0.938 pf=0.87 restart_s=20
+Emergency fire pump | 45 | 1/90o 1/90o 1/90o 1/90o 1/90o 1/90o 1/85 | 46 | ist=6.8 eff=0.938 pf=0.87 restart_s=20 amps=72 start_pf=0.3 tk=2.5
 Emergency bilge pump | 11 | 1/80i 1/80i 1/80i 1/80i 1/80i 1/80i 1/80 | 36
 Quick-closing and watertight doors | 5.5 | 1/60o 1/60o 1/60o 1/60o 1/60o 1/60o 1/60i | 40 | constant
 Water-mist pump | 30 | - - - - - - 1/80o | 34 | star-delta ist=6.8 change_s=4

@@ -40,6 +40,7 @@ def tables() -> Tables:
     _distribution(book)
     for consumers in (THRUSTERS_AND_DECK, CARGO, ENGINE_ROOM, ACCOMMODATION, EMERGENCY):
         read_loads(book, consumers)
+    _makers_data(book)
     _operation(book)
     _events(book)
     _protection(book)
@@ -182,6 +183,21 @@ def _distribution(book: Book) -> None:
     )
     feeder(book, ("LDB-P", "ER-LT"), 70, 30, short=(5, 0.08))
     feeder(book, ("ELDB", "NAV"), 63, 26, short=(5, 0.08))
+
+
+def _makers_data(book: Book) -> None:
+    """Replace what a data sheet settles: short-time cables, measured cable data, breaker tests."""
+    short: dict[str, object] = {"Duty": "30 min", "Overall diameter [mm]": 32}
+    book.amend("Cables", short, "C-Anchor windlass")
+    intermittent: dict[str, object] = {"Duty": "intermittent", "Overall diameter [mm]": 34}
+    book.amend("Cables", intermittent, "C-Deck crane pump 1", "C-Deck crane pump 2")
+    book.amend("Cables", {"Further derating": 0.95}, "C-ER-P", "C-ER-S")
+    measured: dict[str, object] = {"Resistance [ohm/km]": 0.0601, "Reactance [ohm/km]": 0.098}
+    book.amend("Cables", measured, "C-DG1", "C-DG2")
+    book.amend("Cables", {"Current rating [A]": 340}, "C-Shore")
+    book.amend("Devices", {"Test power factor": 0.25}, "Q-DG1", "Q-DG2", "Q-DG3", "Q-BT-MSB")
+    book.amend("Devices", {"Long-time law": "I4t"}, "Q-Shore")
+    book.amend("Devices", {"Short-time law": "I2t"}, "Q-GALLEY")
 
 
 def _operation(book: Book) -> None:
