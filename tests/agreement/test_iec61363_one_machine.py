@@ -3,11 +3,11 @@
 The machine: 1 MVA, 450 V, 60 Hz, Xd 2.2, X'd 0.25, X''d 0.15, Xq 1.1, X''q 0.18, Xl 0.09, Ra 0.01 pu, T'd
 0.25 s, T''d 15 ms, Tdc = X''d/(w Ra), constant field; Ikd is the true steady current.
 
-The differences are properties of the method: loaded, the formula puts the whole e.m.f. on the direct axis, and
-behind resistance its decay theory takes R as small against X. Another program, written apart, gave the same
-full-order values to the last digit and the same differences within 0.1 % (it had no guard at R = X = 0, worth
-0.2 % of T'' and T'). They are held within half of the last digit; a wrong T''de, T'de or Tdce moves them by
-percents.
+The differences are properties of the method: loaded, the formula puts the whole e.m.f. on the direct axis,
+and behind resistance its decay theory takes R as small against X. Another program, written apart, gave the
+same full-order values to the last digit and the same differences within 0.1 % (it had no guard at R = X = 0,
+worth 0.2 % of T'' and T'). They are held within half of the last digit; a wrong T''de, T'de or Tdce moves them
+by percents.
 """
 
 import math
