@@ -126,7 +126,7 @@ Cooling-water pump {n} | 11 | TSMKPLHAO 1/80 | 18
 Reheater {n}A | 30 | TSMKPLA 1/40; HO 1/20 | 24
 Reheater {n}B | 30 | TSMKPLA 1/35 | 26
 Humidifier {n} | 12 | TSMKPLA 1/30 | 24
-"""
+"""  # noqa: E501
 
 # one accommodation deck: n its number
 ACCOMMODATION_DECK = """

@@ -61,7 +61,7 @@ def _boards(book: Book) -> None:
         ("REFRIG", 450, "distribution", 250, 52, 25, 1, "insulated", None, 36, 40),
         ("LAUNDRY", 450, "distribution", 400, 52, 25, 1, "insulated", None, 36, 40),
         ("DECK-F", 450, "distribution", 630, 52, 25, 1, "insulated", "Port", 36, 45),
-        ("DECK-A", 450, "distribution", 1000, 63, 30, 1, "insulated", "Starboard", 42, 45),
+        ("DECK-A", 450, "distribution", 1000, 75, 36, 1, "insulated", "Starboard", 42, 45),
         ("WORKSHOP", 450, "distribution", 400, 52, 25, 1, "insulated", "Port", 36, 45),
         ("THR-F", 450, "distribution", 400, 52, 25, 1, "insulated", None, 36, 45),
         ("THR-A", 450, "distribution", 400, 52, 25, 1, "insulated", None, 36, 45),

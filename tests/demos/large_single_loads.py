@@ -112,7 +112,7 @@ Rapid ballast pump 1 | 315 | L 1/95 | 36 | soft-starter eff=0.96 pf=0.89 ist=6.5
 Rapid ballast pump 2 | 315 | L 1/95i | 38 | soft-starter eff=0.96 pf=0.89 ist=6.5 inertia=9 stage=2 absorbed=265 rpm=1785
 [LV690-P | Safety | motor | port]
 Fire-monitor pump | 315 | KPL 1/90o | 40 | safety soft-starter eff=0.96 pf=0.89 ist=6.5 inertia=9 amps=308 rpm=1785
-"""
+"""  # noqa: E501
 
 EMERGENCY = """
 [ESB | Safety | motor | safety]
@@ -175,7 +175,7 @@ Radio station | 3 | TSMKPLAHO 1/40; E 1/60 | 8
 Satellite terminals | 3 | TSMKPLAHO 1/60; E 1/60 | 10
 Ship network | 6 | TSMKPLAHO 1/70; E 1/50 | 10
 Computer room cooling | 4 | TSMKPLAHOE 1/70 | 12
-"""
+"""  # noqa: E501
 
 CONVERTERS = """
 [PB-P1A | Propulsion | converter | propulsion port 6-pulse shift=7.5]
