@@ -1,0 +1,396 @@
+"""The vectorised load flow: any number of scenarios of a mode, with the limits of the sources."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from study.formulas.load_compensation import reactance_from_droop, signed_reactance
+from study.issues import SolveError
+from study.network.equations import Demand, Point
+from study.network.laws import VoltageLaws, voltage_laws
+from study.network.limits import (
+    CEILING,
+    LARGEST_CURRENT,
+    NO_EXCITATION,
+    excitation_steps,
+    limited_laws,
+    power_steps,
+    regulator_error,
+)
+from study.network.network import ModeNetwork, checked_loads
+from study.network.power import PowerLaws, power_laws
+from study.network.scenarios import Solutions, columns_of, solve_scenarios
+from study.network.sources import Law, Source
+from study.network.stability import most_reversed, runaway
+
+FloatArray = NDArray[np.float64]
+ComplexArray = NDArray[np.complex128]
+IntArray = NDArray[np.int64]
+BoolArray = NDArray[np.bool_]
+
+LIMIT_WORDS = {CEILING: "excitation", NO_EXCITATION: "excitation", LARGEST_CURRENT: "current"}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Settings:
+    """Trims that vary from scenario to scenario, arrays [scenario, source] or [source]; None leaves them.
+
+    Per unit of the source's rated voltage and of rated frequency; droops over the base named in the workbook.
+    """
+
+    no_load_voltage_pu: FloatArray | None = None
+    voltage_droop_pu: FloatArray | None = None
+    no_load_frequency_pu: FloatArray | None = None
+    speed_droop_pu: FloatArray | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class BatchSolution:
+    """Scenarios of one mode, arrays [scenario, ...].
+
+    ``v_bus_pu`` [scenario, bus] is complex, per unit of the level's base voltage. Sources' kW and kvar are those
+    at their terminals. ``excitation_state`` and ``power_state`` [scenario, source] are 0 within limits (see
+    `limits`). ``field_pu`` is a multiple of the field at rated load. Where ``solved`` is False the numbers are
+    NaN and ``reason`` says why.
+    """
+
+    at: ModeNetwork
+    solved: BoolArray
+    reason: tuple[str, ...]
+    residual_pu: FloatArray
+    iterations: IntArray
+    v_bus_pu: ComplexArray
+    i_source_pu: ComplexArray
+    source_p_kw: FloatArray
+    source_q_kvar: FloatArray
+    source_u_pu: FloatArray
+    field_pu: FloatArray
+    frequency_pu: FloatArray
+    excitation_state: IntArray
+    power_state: IntArray
+    ran_away: BoolArray
+
+    def board_u_pu(self) -> FloatArray:
+        """Return board voltages [scenario, board], per unit of the board's nominal voltage; NaN where dead."""
+        network = self.at.network
+        nominal = np.array([b.u_nominal_v for b in network.plant.boards])
+        bus = self.at.bus_of_node[: len(nominal)]
+        out = np.abs(self.v_bus_pu)[:, bus] * (network.u_base_v[: len(nominal)] / nominal)
+        out[:, bus < 0] = np.nan
+        return np.asarray(out)
+
+
+def solve_batch(
+    at: ModeNetwork, p_kw: ArrayLike, q_kvar: ArrayLike, settings: Settings | None = None
+) -> BatchSolution:
+    """Solve scenarios of a mode.
+
+    Parameters
+    ----------
+    at : ModeNetwork
+        The mode's network.
+    p_kw, q_kvar : ndarray, shape (load,) or (scenario, load)
+        Power of each consumer, all its units in use, at its rated voltage. [kW], [kvar]
+    settings : Settings, optional
+        Trims other than those of the workbook.
+
+    Returns
+    -------
+    BatchSolution
+        One row for each scenario.
+
+    Raises
+    ------
+    SolveError
+        Loads or settings that are not numbers or not of the right shape.
+    """
+    return _Batch(at, p_kw, q_kvar, settings or Settings()).solve()
+
+
+class _Batch:
+    """One call: inputs as [.., scenario] arrays, and the state of every source in every scenario."""
+
+    def __init__(self, at: ModeNetwork, p_kw: ArrayLike, q_kvar: ArrayLike, settings: Settings) -> None:
+        self.at, self.sources = at, at.sources
+        self.s_base = at.network.s_base_kva
+        p, q = checked_loads(at, p_kw, q_kvar)
+        trims = [
+            _column_wise(at, getattr(settings, name), name)
+            for name in (
+                "no_load_voltage_pu",
+                "voltage_droop_pu",
+                "no_load_frequency_pu",
+                "speed_droop_pu",
+            )
+        ]
+        widths = {len(p)} | {t.shape[1] for t in trims if t is not None}
+        self.count = max(widths)
+        if widths - {1, self.count}:
+            raise SolveError(f"{at.mode.name}: loads and settings are given for {sorted(widths)} scenarios")
+        self.demand = _demand(at, p, q)
+        u_base = at.network.u_base_v[np.array([s.node for s in self.sources], np.int64)]
+        v_ref = _or_own(trims[0], self.sources, "v_ref_pu")
+        self.laws = voltage_laws(
+            self.sources,
+            u_base,
+            self.s_base,
+            v_ref_pu=v_ref,
+            xc_pu=_reactances(self.sources, v_ref, trims[0], trims[1]),
+        )
+        self.f_no_load = _or_own(trims[2], self.sources, "f_no_load_pu")
+        self.speed_droop = _or_own(trims[3], self.sources, "speed_droop_pu")
+        shape = (len(self.sources), self.count)
+        self.state, self.power_state = np.zeros(shape, np.int64), np.zeros(shape, np.int64)
+        self.pinned = np.zeros(shape, bool)
+
+    def solve(self) -> BatchSolution:
+        reasons = np.full(self.count, "", object)
+        refused = " ".join(r for r in self.at.refusals if r)
+        if refused or not self.sources:
+            reasons[:] = refused or "no source is on line."
+            return self._result(self._nothing(), reasons)
+        found = self._nothing()
+        todo = np.arange(self.count)
+        for _ in range(4 * len(self.sources) + 4):
+            if not len(todo):
+                break
+            todo = np.concatenate([self._pass(found, k, reasons) for k in self._alike(todo)])
+        for k in todo:
+            reasons[k] = "the sources' limits lead from one to the other without end: no steady state found."
+        return self._result(found, reasons)
+
+    def _alike(self, todo: IntArray) -> list[IntArray]:
+        """Return scenarios grouped by the state of their sources."""
+        both = np.concatenate([self.state, self.power_state])[:, todo]
+        if not both.any():
+            return [todo]
+        _, group = np.unique(both, axis=1, return_inverse=True)
+        return [todo[group == g] for g in range(group.max() + 1)]
+
+    def _pass(self, found: Solutions, k: IntArray, reasons: NDArray[np.object_]) -> IntArray:
+        """Solve scenarios in one state; return those in which a source then changes its state."""
+        state, power_state = self.state[:, k[0]], self.power_state[:, k[0]]
+        own = self.laws.columns(k)
+        laws = limited_laws(own, self.sources, state)
+        power = self._power(k, power_state)
+        for n in np.flatnonzero(power.short):
+            reasons[k] = f"the load exceeds what the engines of {_names(self.sources, n)} can give."
+        if power.short.any():
+            return np.zeros(0, np.int64)
+        demand = columns_of(self.demand, k)
+        some = solve_scenarios(self.at.structure, laws, power, demand, len(k), _mean_point(found, k))
+        _store(found, k, some)
+        ran = self._let_run_away(k, found, state, power_state)
+        lost = k[~some.converged]
+        for n in np.setdiff1d(lost, ran):
+            reasons[n] = self._no_point(n, found)
+        moved = self._change_states(np.setdiff1d(k, np.union1d(lost, ran)), found, state, power_state)
+        return np.union1d(moved, ran)
+
+    def _no_point(self, n: int, found: Solutions) -> str:
+        tried = f"(residual {found.residual_pu[n]:.1e} pu after {found.iterations[n]} iterations)."
+        if self.pinned[:, n].any():
+            names = " and ".join(self.sources[j].name for j in np.flatnonzero(self.pinned[:, n]))
+            return (
+                f"the droop circuit of {names} is reversed: the regulators run apart to their limits, and "
+                f"the sets cannot stay in step there {tried}"
+            )
+        return f"no operating point: the load exceeds what sources and network can carry {tried}"
+
+    def _power(self, k: IntArray, power_state: IntArray) -> PowerLaws:
+        f_no_load, droop = self.f_no_load, self.speed_droop
+        return power_laws(
+            self.sources,
+            self.at.structure.islands,
+            self.s_base,
+            f_no_load_pu=f_no_load if f_no_load.shape[1] == 1 else f_no_load[:, k],
+            speed_droop_pu=droop if droop.shape[1] == 1 else droop[:, k],
+            at_limit=power_state,
+        )
+
+    def _change_states(
+        self, k: IntArray, found: Solutions, state: IntArray, power_state: IntArray
+    ) -> IntArray:
+        """Let the source that is furthest from its limit, or from needing it, change its state."""
+        if not len(k):
+            return k
+        v, i = found.v[self.at.structure.source_bus][:, k], found.i[:, k]
+        power = self._power(k, power_state)
+        f = np.broadcast_to(power.frequency(found.m[:, k]), (self.at.structure.islands, len(k)))
+        wanted, by = excitation_steps(self.laws.columns(k), self.sources, state, v, i)
+        by[self.pinned[:, k]] = 0.0
+        p_wanted, p_by = power_steps(
+            power, self.sources, power_state, (v * np.conj(i)).real, f, self.s_base
+        )
+        distance = np.concatenate([by, p_by])
+        most = distance.argmax(axis=0)
+        moves = distance[most, np.arange(len(k))] > 0.0
+        count = len(self.sources)
+        by_field, by_engine = np.flatnonzero(moves & (most < count)), np.flatnonzero(moves & (most >= count))
+        self.state[most[by_field], k[by_field]] = wanted[most[by_field], by_field]
+        j = most[by_engine] - count
+        self.power_state[j, k[by_engine]] = p_wanted[j, by_engine]
+        return k[moves]
+
+    def _let_run_away(
+        self, k: IntArray, found: Solutions, state: IntArray, power_state: IntArray
+    ) -> IntArray:
+        """Send sets whose regulators do not hold the point to the limit that they run to.
+
+        Where reversed and normal droop cancel there is no point at all: then the reversed set with the most
+        droop runs. Returns the scenarios in which a set has been sent.
+        """
+        ran = []
+        for n in k if (self.laws.x < 0.0).any() else k[:0]:
+            one = np.array([n])
+            laws = limited_laws(self.laws.columns(one), self.sources, state)
+            demand, power = columns_of(self.demand, one), self._power(one, power_state)
+            j: int | None
+            x = None
+            if found.converged[n]:
+                x = Point(v=found.v[:, one], i=found.i[:, one], m=found.m[:, one])
+                j = runaway(self.at.structure, laws, power, demand, x)
+            else:
+                j = most_reversed(laws)
+            if j is not None:
+                self.state[j, n] = self._limit_reached(j, laws, power, demand, x)
+                self.pinned[j, n] = True
+                ran.append(n)
+        return np.array(ran, np.int64)
+
+    def _limit_reached(
+        self, j: int, laws: VoltageLaws, power: PowerLaws, demand: Demand, x: Point | None
+    ) -> int:
+        """Return the limit that a set runs to when it is closed in with no kvar on it."""
+        code, q_set, q_per_p = laws.code.copy(), laws.q_set.copy(), laws.q_per_p.copy()
+        code[j], q_set[j], q_per_p[j] = Law.REACTIVE_POWER, 0.0, 0.0
+        idle = replace(laws, code=code, q_set=q_set, q_per_p=q_per_p)
+        at_rest = solve_scenarios(self.at.structure, idle, power, demand, 1, x)
+        bus = self.at.structure.source_bus
+        error = regulator_error(laws, at_rest.v[bus], at_rest.i)
+        return CEILING if error[j, 0] > 0.0 else NO_EXCITATION
+
+    def _nothing(self) -> Solutions:
+        at = self.at.structure
+        return Solutions(
+            v=np.full((at.buses, self.count), np.nan, complex),
+            i=np.full((at.sources, self.count), np.nan, complex),
+            m=np.full((at.islands, self.count), np.nan),
+            residual_pu=np.full(self.count, np.inf),
+            iterations=np.zeros(self.count, np.int64),
+            converged=np.zeros(self.count, bool),
+        )
+
+    def _result(self, found: Solutions, reasons: NDArray[np.object_]) -> BatchSolution:
+        solved = np.array([r == "" for r in reasons], bool)
+        lost = ~solved
+        found.v[:, lost], found.i[:, lost], found.m[:, lost] = np.nan, np.nan, np.nan
+        v_s = found.v[self.at.structure.source_bus]
+        s = v_s * np.conj(found.i) * self.s_base
+        return BatchSolution(
+            at=self.at,
+            solved=solved,
+            reason=tuple(str(r) for r in reasons),
+            residual_pu=found.residual_pu,
+            iterations=found.iterations,
+            v_bus_pu=found.v.T,
+            i_source_pu=found.i.T,
+            source_p_kw=s.real.T,
+            source_q_kvar=s.imag.T,
+            source_u_pu=(np.abs(v_s) * self.laws.to_own_v).T,
+            field_pu=self._field(v_s, found.i).T,
+            frequency_pu=self._frequency(found.m).T,
+            excitation_state=self.state.T,
+            power_state=self.power_state.T,
+            ran_away=self.pinned.T,
+        )
+
+    def _field(self, v: ComplexArray, i: ComplexArray) -> FloatArray:
+        out = np.full(v.shape, np.nan)
+        for j, s in enumerate(self.sources):
+            if s.machine is not None:
+                out[j] = self.laws.field(j, v[j], i[j]) / s.rated_field_pu
+        return out
+
+    def _frequency(self, m: FloatArray) -> FloatArray:
+        out = np.full(m.shape, np.nan)
+        for k in self._alike(np.arange(self.count)):
+            out[:, k] = self._power(k, self.power_state[:, k[0]]).frequency(m[:, k])
+        return np.where(np.isnan(m), np.nan, out)
+
+
+def _names(sources: tuple[Source, ...], island: int) -> str:
+    return " and ".join(s.name for s in sources if s.island == island)
+
+
+def _mean_point(found: Solutions, k: IntArray) -> Point | None:
+    """Return the mean of what was found before for these scenarios, as a first point."""
+    known = k[found.converged[k]]
+    if not len(known):
+        return None
+    return Point(
+        v=found.v[:, known].mean(axis=1, keepdims=True),
+        i=found.i[:, known].mean(axis=1, keepdims=True),
+        m=found.m[:, known].mean(axis=1, keepdims=True),
+    )
+
+
+def _store(found: Solutions, k: IntArray, some: Solutions) -> None:
+    found.v[:, k], found.i[:, k], found.m[:, k] = some.v, some.i, some.m
+    found.residual_pu[k], found.converged[k] = some.residual_pu, some.converged
+    found.iterations[k] += some.iterations
+
+
+def _demand(at: ModeNetwork, p_kw: FloatArray, q_kvar: FloatArray) -> Demand:
+    """Return the consumers' power at the ports, [port, scenario]."""
+    s = (p_kw + 1j * q_kvar).T / at.network.s_base_kva
+    share = at.load_arrays.constant_power[:, None]
+    constant = at.port_sum @ (s * share) + at.port_constant[:, None]
+    impedance = at.port_sum @ (s * (1.0 - share) * at.load_arrays.v_scale[:, None] ** 2)
+    return Demand(constant=np.asarray(constant), impedance=np.asarray(impedance))
+
+
+def _column_wise(at: ModeNetwork, values: FloatArray | None, name: str) -> FloatArray | None:
+    if values is None:
+        return None
+    out = np.atleast_2d(np.asarray(values, float)).T
+    if out.shape[0] != len(at.sources):
+        raise SolveError(
+            f"{at.mode.name}: {name} is given for {out.shape[0]} of {len(at.sources)} sources"
+        )
+    if not np.isfinite(out).all():
+        raise SolveError(f"{at.mode.name}: {name} holds what is not a number")
+    return out
+
+
+def _or_own(values: FloatArray | None, sources: tuple[Source, ...], name: str) -> FloatArray:
+    own = np.array([getattr(s, name) for s in sources], float)[:, None]
+    return own if values is None else values
+
+
+def _reactances(
+    sources: tuple[Source, ...], v_ref: FloatArray, given_v: FloatArray | None, droop: FloatArray | None
+) -> FloatArray:
+    """Return the compensating reactance of each source, again where voltage or droop setting varies."""
+    own = np.array([s.xc_pu for s in sources], float)[:, None]
+    if droop is None and given_v is None:
+        return own
+    base = np.array([s.droop_pu for s in sources], float)[:, None] if droop is None else droop
+    v_all, d_all = np.broadcast_arrays(v_ref, base)
+    out = np.repeat(own, v_all.shape[1], axis=1)
+    for j, s in enumerate(sources):
+        if s.machine is not None and s.law in (Law.PHASOR, Law.REACTIVE_CURRENT, Law.CROSS_CURRENT):
+            pairs, place = np.unique(np.stack([v_all[j], d_all[j]]), axis=1, return_inverse=True)
+            out[j] = np.array([_reactance(s, v, d) for v, d in pairs.T])[place]
+        elif droop is not None and s.law == Law.PHASOR:
+            out[j] = d_all[j]
+    return out
+
+
+def _reactance(source: Source, v_ref: float, droop: float) -> float:
+    law = "reactive current" if source.law == Law.REACTIVE_CURRENT else "phasor"
+    x = reactance_from_droop(droop, source.droop_base, law, source.cos_phi, v_ref)  # type: ignore[arg-type]
+    return signed_reactance(x, "reversed" if source.reversed_polarity else "normal")

@@ -1,0 +1,279 @@
+"""The equations of a mode in real numbers: node currents, source laws, one power balance for each island.
+
+Unknowns are Re V and Im V of every bus, Re I and Im I of every source, and one number m for each island (see
+`power`). Rows: node currents (real, then imaginary), active-power law and voltage law of each source, and for
+each island either the angle of its first source's bus or, on shore supply, m itself.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.sparse import csc_matrix, csr_array
+from scipy.sparse.linalg import SuperLU, splu
+
+from study.network.laws import VoltageLaws
+from study.network.power import PowerLaws
+from study.network.sources import Law
+
+FloatArray = NDArray[np.float64]
+ComplexArray = NDArray[np.complex128]
+IntArray = NDArray[np.int64]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Structure:
+    """Sizes and places that do not change while a mode is solved.
+
+    ``source_bus`` and ``source_island`` are [source]; ``load_bus`` [port] lists buses with consumers on them,
+    ``reference_bus`` [island] the bus whose voltage has no imaginary part.
+    ``rows`` and ``columns`` are those of the Jacobian's entries in the order `jacobian` fills them;
+    ``slot`` their places in the sparse matrix, ``indices`` and ``indptr`` its pattern.
+    """
+
+    admittance: csr_array
+    source_bus: IntArray
+    source_island: IntArray
+    load_bus: IntArray
+    reference_bus: IntArray
+    islands: int
+    fixed_values: FloatArray
+    slot: IntArray
+    indices: IntArray
+    indptr: IntArray
+
+    @property
+    def buses(self) -> int:
+        """Number of buses."""
+        return int(self.admittance.shape[0])
+
+    @property
+    def sources(self) -> int:
+        """Number of sources."""
+        return len(self.source_bus)
+
+    @property
+    def size(self) -> int:
+        """Number of unknowns."""
+        return 2 * self.buses + 2 * self.sources + self.islands
+
+
+def structure(
+    admittance: csr_array, source_bus: IntArray, source_island: IntArray, load_bus: IntArray, islands: int
+) -> Structure:
+    """Return the structure of a mode's equations.
+
+    Parameters
+    ----------
+    admittance : csr_array, shape (bus, bus)
+        Nodal admittance. [pu]
+    source_bus, source_island : ndarray of int, shape (source,)
+        Where each source stands.
+    load_bus : ndarray of int, shape (port,)
+        Buses with consumers, each once.
+    islands : int
+        Number of islands.
+
+    Returns
+    -------
+    Structure
+        With the pattern of the Jacobian.
+    """
+    n, s = admittance.shape[0], len(source_bus)
+    y = admittance.tocoo()
+    row, col = y.coords
+    j = np.arange(s)
+    own = np.repeat(j, s), np.tile(j, s)
+    r_p, r_q = 2 * n + j, 2 * n + s + j
+    r_m = 2 * n + 2 * s + np.arange(islands)
+    c_re, c_im, c_m = 2 * n + j, 2 * n + s + j, 2 * n + 2 * s + np.arange(islands)
+    first = np.array([np.flatnonzero(source_island == m)[0] for m in range(islands)], np.int64)
+    ref_bus = source_bus[first] if islands else np.zeros(0, np.int64)
+    b = load_bus
+    rows = [row, row, n + row, n + row, source_bus, n + source_bus]
+    cols = [col, n + col, col, n + col, c_re, c_im]
+    fixed = np.concatenate([y.data.real, -y.data.imag, y.data.imag, y.data.real, -np.ones(2 * s)])
+    rows += [b, b, n + b, n + b, r_p, r_p, r_p, r_p, r_p]
+    cols += [b, n + b, b, n + b, source_bus, n + source_bus, c_re, c_im, 2 * n + 2 * s + source_island]
+    rows += [r_q[own[0]]] * 4
+    cols += [source_bus[own[1]], (n + source_bus)[own[1]], c_re[own[1]], c_im[own[1]]]
+    rows += [r_m, r_m]
+    cols += [n + ref_bus, c_m]
+    all_rows, all_cols = np.concatenate(rows), np.concatenate(cols)
+    size = 2 * n + 2 * s + islands
+    key = all_cols.astype(np.int64) * size + all_rows
+    unique, slot = np.unique(key, return_inverse=True)
+    indptr = np.searchsorted(unique // size, np.arange(size + 1))
+    return Structure(
+        admittance=admittance,
+        source_bus=source_bus,
+        source_island=source_island,
+        load_bus=load_bus,
+        reference_bus=ref_bus,
+        islands=islands,
+        fixed_values=fixed,
+        slot=slot,
+        indices=(unique % size).astype(np.int32),
+        indptr=indptr.astype(np.int32),
+    )
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Demand:
+    """Consumers' power at the ports, complex [port, scenario]: constant part, and the part that goes with V^2."""
+
+    constant: ComplexArray
+    impedance: ComplexArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Point:
+    """A point in the space of unknowns: [bus], [source] and [island], each with scenarios behind."""
+
+    v: ComplexArray
+    i: ComplexArray
+    m: FloatArray
+
+
+def load_current(v: ComplexArray, demand: Demand) -> ComplexArray:
+    """Return the current that the consumers draw at the ports' voltages.
+
+    Parameters
+    ----------
+    v : ndarray, shape (port, ...)
+        Voltage. [pu]
+    demand : Demand
+        Their power. [pu]
+
+    Returns
+    -------
+    ndarray, shape (port, ...)
+        Current. [pu]
+    """
+    return np.asarray(np.conj(demand.constant / v) + np.conj(demand.impedance) * v)
+
+
+def shore_row(laws: VoltageLaws, v: ComplexArray, i: ComplexArray) -> FloatArray:
+    """Return Im(V + Z I) of each source: zero for a shore supply, whose voltage is the angle reference."""
+    return np.asarray(laws.compensated(v, i).imag)
+
+
+def power_residual(
+    laws: VoltageLaws, power: PowerLaws, at: Structure, v: ComplexArray, i: ComplexArray, m: FloatArray
+) -> FloatArray:
+    """Return P - a - b m of each source, or the second equation of a shore supply; [source, scenario]."""
+    out = (v * np.conj(i)).real - power.a - power.b * m[at.source_island]
+    behind = laws.code == Law.BEHIND_IMPEDANCE
+    if behind.any():
+        out[behind] = shore_row(laws, v, i)[behind]
+    return np.asarray(out)
+
+
+def residual(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, x: Point) -> FloatArray:
+    """Return the residual of every row for one scenario.
+
+    Parameters
+    ----------
+    at : Structure
+        Of the mode.
+    laws, power : VoltageLaws, PowerLaws
+        Of the sources, one scenario.
+    demand : Demand
+        Of the consumers, one scenario.
+    x : Point
+        Arrays with one column.
+
+    Returns
+    -------
+    ndarray, shape (size,)
+        Residuals. [pu]
+    """
+    n, s = at.buses, at.sources
+    v, i, m = x.v[:, 0], x.i[:, 0], x.m[:, 0]
+    current = at.admittance @ v
+    np.subtract.at(current, at.source_bus, i)
+    current[at.load_bus] += load_current(v[at.load_bus], _column(demand))
+    out = np.empty(at.size)
+    out[:n], out[n : 2 * n] = current.real, current.imag
+    v_s = x.v[at.source_bus]
+    out[2 * n : 2 * n + s] = power_residual(laws, power, at, v_s, x.i, x.m)[:, 0]
+    out[2 * n + s : 2 * n + 2 * s] = laws.residual(v_s, x.i)[:, 0]
+    out[2 * n + 2 * s :] = np.where(power.shore, m, v[at.reference_bus].imag)
+    return out
+
+
+def _column(demand: Demand) -> Demand:
+    return Demand(constant=demand.constant[:, 0], impedance=demand.impedance[:, 0])
+
+
+def jacobian(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, x: Point) -> SuperLU:
+    """Return the factorised Jacobian at a point of one scenario.
+
+    Parameters
+    ----------
+    at, laws, power, demand, x
+        As for `residual`.
+
+    Returns
+    -------
+    SuperLU
+        Factors.
+
+    Raises
+    ------
+    RuntimeError
+        Singular matrix (from SuperLU).
+    """
+    values = jacobian_values(at, laws, power, demand, x)
+    data = np.bincount(at.slot, weights=values, minlength=len(at.indices))
+    matrix = csc_matrix((data, at.indices, at.indptr), shape=(at.size, at.size))
+    return splu(matrix)
+
+
+def jacobian_values(
+    at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, x: Point
+) -> FloatArray:
+    """Return the Jacobian's entries in the order of `structure`."""
+    v_s, i_s = x.v[at.source_bus, 0], x.i[:, 0]
+    by_load = load_gradient(x.v[at.load_bus, 0], _column(demand))
+    by_power = np.stack([i_s.real, i_s.imag, v_s.real, v_s.imag])
+    b = power.b[:, 0].copy()
+    behind = laws.code == Law.BEHIND_IMPEDANCE
+    if behind.any():
+        by_power[:, behind] = np.stack(
+            [0 * laws.r[:, 0], 0 * laws.r[:, 0] + 1.0, laws.x[:, 0], laws.r[:, 0]]
+        )[:, behind]
+        b[behind] = 0.0
+    by_law = laws.gradient(v_s, i_s)
+    return np.concatenate(
+        [
+            at.fixed_values,
+            by_load.ravel(),
+            by_power.ravel(),
+            -b,
+            by_law.transpose(1, 0, 2).ravel(),
+            np.where(power.shore, 0.0, 1.0),
+            np.where(power.shore, 1.0, 0.0),
+        ]
+    )
+
+
+def load_gradient(v: ComplexArray, demand: Demand) -> FloatArray:
+    """Return the gradient of `load_current`, [4, port]: Re by e, Re by f, Im by e, Im by f.
+
+    With ``I = (P - jQ)/(e - jf)``: ``Re I = (P e + Q f)/V^2``, ``Im I = (P f - Q e)/V^2``.
+    """
+    e, f = v.real, v.imag
+    p, q, square = demand.constant.real, demand.constant.imag, e * e + f * f
+    re, im = (p * e + q * f) / square, (p * f - q * e) / square
+    pz, qz = demand.impedance.real, demand.impedance.imag
+    return np.stack(
+        [
+            (p - 2.0 * e * re) / square + pz,
+            (q - 2.0 * f * re) / square + qz,
+            (-q - 2.0 * e * im) / square - qz,
+            (p - 2.0 * f * im) / square + pz,
+        ]
+    )

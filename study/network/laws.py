@@ -1,0 +1,229 @@
+"""The laws of the sources as equations in terminal voltage and current, with their gradients.
+
+Arrays are [source, scenario]; a source's current leaves it. Every equation is zero where the law holds.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from study.formulas.excitation import FieldSupply, available_field
+from study.formulas.load_compensation import cross_current_reactance
+from study.formulas.synchronous import Machine, field_required
+from study.network.sources import Law, Source
+
+FloatArray = NDArray[np.float64]
+ComplexArray = NDArray[np.complex128]
+IntArray = NDArray[np.int64]
+
+STEP = 1e-6  # of voltage and current, for the gradient of the field equation
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class VoltageLaws:
+    """The voltage law of each source, per unit of the network's base.
+
+    ``code`` [source]; ``e_ref`` and ``x`` [source, scenario or 1]; ``cross`` [source, source] reactances that
+    other sets' currents act through. ``to_own_v`` and ``to_own_i`` turn network per unit into the source's.
+    """
+
+    code: IntArray
+    e_ref: FloatArray
+    x: FloatArray
+    r: FloatArray
+    q_set: FloatArray
+    q_per_p: FloatArray
+    cross: FloatArray
+    i_max: FloatArray
+    to_own_v: FloatArray
+    to_own_i: FloatArray
+    machines: tuple[Machine | None, ...]
+    supplies: tuple[FieldSupply, ...]
+
+    def column(self, k: int | None) -> VoltageLaws:
+        """Return the laws of one scenario, or of the mean of all where k is None."""
+        return replace(self, e_ref=take(self.e_ref, k), x=take(self.x, k))
+
+    def columns(self, k: IntArray) -> VoltageLaws:
+        """Return the laws of some scenarios."""
+        return replace(self, e_ref=some(self.e_ref, k), x=some(self.x, k))
+
+    def residual(self, v: ComplexArray, i: ComplexArray) -> FloatArray:
+        """Return the residual of every law, [source, scenario]; the first of the two for an impedance."""
+        out = np.empty(v.shape)
+        for code in np.unique(self.code):
+            k = np.flatnonzero(self.code == code)
+            out[k] = self._residual_of(int(code), k, v, i)
+        return out
+
+    def compensated(self, v: ComplexArray, i: ComplexArray) -> ComplexArray:
+        """Return V + jX I and what cross-current compensation adds, [source, scenario]."""
+        out = v + (self.r + 1j * self.x) * i
+        return out + 1j * (self.cross @ i) if self.cross.any() else out
+
+    def _residual_of(self, code: int, k: IntArray, v: ComplexArray, i: ComplexArray) -> FloatArray:
+        s = v[k] * np.conj(i[k])
+        match code:
+            case Law.PHASOR | Law.CROSS_CURRENT:
+                return np.abs(self.compensated(v, i)[k]) ** 2 - self.e_ref[k] ** 2
+            case Law.REACTIVE_CURRENT:
+                v_mag = np.abs(v[k])
+                return v_mag**2 + self.x[k] * s.imag - self.e_ref[k] * v_mag
+            case Law.REACTIVE_POWER:
+                return s.imag - self.q_set[k] - self.q_per_p[k] * s.real
+            case Law.BEHIND_IMPEDANCE:
+                return self.compensated(v, i)[k].real - self.e_ref[k]
+            case Law.CURRENT_LIMIT:
+                return np.abs(i[k]) ** 2 - self.i_max[k] ** 2
+            case Law.FIELD:
+                return np.stack([self.field_surplus(j, v[j], i[j]) for j in k])
+        raise ValueError(f"unknown law {code}")
+
+    def field_surplus(self, j: int, v: ComplexArray, i: ComplexArray) -> FloatArray:
+        """Return field required less field available of source j, per unit of its air-gap-line field."""
+        machine = self.machines[j]
+        assert machine is not None
+        v_own, i_own, phi = self._own(j, v, i)
+        return field_required(v_own, i_own, phi, machine) - available_field(
+            v_own, i_own, phi, self.supplies[j]
+        )
+
+    def field(self, j: int, v: ComplexArray, i: ComplexArray) -> FloatArray:
+        """Return the field that source j needs, per unit of its air-gap-line field; NaN without a machine."""
+        machine = self.machines[j]
+        if machine is None:
+            return np.full(v.shape, np.nan)
+        return field_required(*self._own(j, v, i), machine)
+
+    def _own(self, j: int, v: ComplexArray, i: ComplexArray) -> tuple[FloatArray, FloatArray, FloatArray]:
+        phi = np.angle(v * np.conj(i))
+        return np.abs(v) * self.to_own_v[j], np.abs(i) * self.to_own_i[j], phi
+
+    def gradient(self, v: ComplexArray, i: ComplexArray) -> FloatArray:
+        """Return the gradient at one point, [source, 4, source]: by Re V, Im V, Re I, Im I of each source."""
+        count = len(v)
+        out = np.zeros((count, 4, count))
+        vc = self.compensated(v[:, None], i[:, None])[:, 0]
+        for j in range(count):
+            out[j] = self._gradient_of(j, v, i, vc)
+        return out
+
+    def _gradient_of(self, j: int, v: ComplexArray, i: ComplexArray, vc: ComplexArray) -> FloatArray:
+        out = np.zeros((4, len(v)))
+        e, f, re, im = v[j].real, v[j].imag, i[j].real, i[j].imag
+        x, k = self.x[j, 0], self.q_per_p[j, 0]
+        match self.code[j]:
+            case Law.PHASOR | Law.CROSS_CURRENT:
+                turned = 1j * self.cross[j] * np.conj(vc[j])
+                turned[j] += (self.r[j, 0] + 1j * x) * np.conj(vc[j])
+                out[0, j], out[1, j] = 2.0 * vc[j].real, 2.0 * vc[j].imag
+                out[2], out[3] = 2.0 * turned.real, -2.0 * turned.imag
+            case Law.REACTIVE_CURRENT:
+                per_v = self.e_ref[j, 0] / abs(v[j])
+                out[:, j] = (2.0 * e - x * im - per_v * e, 2.0 * f + x * re - per_v * f, x * f, -x * e)
+            case Law.REACTIVE_POWER:
+                out[:, j] = (-im - k * re, re - k * im, f - k * e, -e - k * f)
+            case Law.BEHIND_IMPEDANCE:
+                out[:, j] = (1.0, 0.0, self.r[j, 0], -x)
+            case Law.CURRENT_LIMIT:
+                out[:, j] = (0.0, 0.0, 2.0 * re, 2.0 * im)
+            case Law.FIELD:
+                out[:, j] = self._field_gradient(j, v[j], i[j])
+        return out
+
+    def _field_gradient(self, j: int, v: complex, i: complex) -> FloatArray:
+        h_v, h_i = STEP, STEP / self.to_own_i[j, 0]
+        dv = np.array([h_v, -h_v, 1j * h_v, -1j * h_v, 0, 0, 0, 0])
+        di = np.array([0, 0, 0, 0, h_i, -h_i, 1j * h_i, -1j * h_i])
+        g = self.field_surplus(j, v + dv, i + di)
+        return (g[0::2] - g[1::2]) / (2.0 * np.array([h_v, h_v, h_i, h_i]))
+
+
+def take(values: FloatArray, k: int | None) -> FloatArray:
+    """Return one column, or the mean column where k is None; one column stands for all scenarios."""
+    if values.shape[1] == 1:
+        return values
+    return values.mean(axis=1, keepdims=True) if k is None else values[:, k : k + 1]
+
+
+def some(values: FloatArray, k: IntArray) -> FloatArray:
+    """Return some columns; one column stands for all scenarios."""
+    return values if values.shape[1] == 1 else values[:, k]
+
+
+def voltage_laws(
+    sources: tuple[Source, ...],
+    u_base_v: FloatArray,
+    s_base_kva: float,
+    *,
+    v_ref_pu: FloatArray,
+    xc_pu: FloatArray,
+) -> VoltageLaws:
+    """Return the laws of the sources within their limits.
+
+    Parameters
+    ----------
+    sources : tuple of Source
+        Sources on line.
+    u_base_v : ndarray, shape (source,)
+        Base voltage at each source's node. [V]
+    s_base_kva : float
+        Base power. [kVA]
+    v_ref_pu, xc_pu : ndarray, shape (source, scenario or 1)
+        Voltage at no load and compensating reactance. [pu of the source's own rating]
+
+    Returns
+    -------
+    VoltageLaws
+        Per unit of the network.
+    """
+    rating = np.array([s.s_rated_kva for s in sources])[:, None] / s_base_kva
+    own_v = np.array([u / s.u_rated_v for u, s in zip(u_base_v, sources, strict=True)])[:, None]
+    to_network = 1.0 / (own_v**2 * rating)
+    code = np.array([s.law for s in sources], np.int64)
+    cross = _cross_matrix(sources, np.asarray(xc_pu)[:, 0], to_network[:, 0], own_v[:, 0], rating[:, 0])
+    own_x = np.where((code == Law.CROSS_CURRENT)[:, None], 0.0, xc_pu)
+    return VoltageLaws(
+        code=code,
+        e_ref=v_ref_pu / own_v,
+        x=own_x * to_network,
+        r=np.array([s.r_pu for s in sources])[:, None] * to_network,
+        q_set=np.array([s.q_set_pu for s in sources])[:, None] * rating,
+        q_per_p=np.array([s.q_per_p for s in sources])[:, None],
+        cross=cross,
+        i_max=np.array([s.i_max_pu for s in sources])[:, None] * rating * own_v,
+        to_own_v=own_v,
+        to_own_i=1.0 / (rating * own_v),
+        machines=tuple(s.machine for s in sources),
+        supplies=tuple(s.field for s in sources),
+    )
+
+
+def _cross_matrix(
+    sources: tuple[Source, ...],
+    xc: FloatArray,
+    to_network: FloatArray,
+    own_v: FloatArray,
+    rating: FloatArray,
+) -> FloatArray:
+    """Return the cross-current reactances of all groups, per unit of the network.
+
+    Row i multiplies the other sets' currents in pu of their own rating: j's own current is I / (rating own_v),
+    and the voltage seen is in pu of i's rated voltage.
+    """
+    out = np.zeros((len(sources), len(sources)))
+    groups = {(s.island, s.cross_group) for s in sources if s.law == Law.CROSS_CURRENT}
+    for island, group in groups:
+        k = [
+            n
+            for n, s in enumerate(sources)
+            if s.law == Law.CROSS_CURRENT and (s.island, s.cross_group) == (island, group)
+        ]
+        # Each row by its own setting: sets of one group may be set apart.
+        for row, n in enumerate(k):
+            matrix = cross_current_reactance([sources[m].s_rated_kva for m in k], float(xc[n]))
+            out[n, k] = matrix[row] / own_v[n] / (rating[k] * own_v[k])
+    return out

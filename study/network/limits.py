@@ -1,0 +1,207 @@
+"""What a source cannot exceed, and which of its laws gives way: engine, excitation, converter current.
+
+A state is 0 where the source's own law holds. Excitation: 1 at the ceiling, 2 at no field, 3 at the largest
+current of a converter. Power: 1 at the largest kW, -1 at the largest that a converter takes in.
+"""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from study.formulas.excitation import available_field
+from study.network.laws import VoltageLaws
+from study.network.machines import NO_FIELD
+from study.network.power import PowerLaws
+from study.network.sources import Law, Source, Speed
+
+FloatArray = NDArray[np.float64]
+ComplexArray = NDArray[np.complex128]
+IntArray = NDArray[np.int64]
+
+CEILING, NO_EXCITATION, LARGEST_CURRENT = 1, 2, 3
+SLACK = 1e-9  # of rating, by which a limit may be passed before the source is held at it
+
+
+def limited_laws(laws: VoltageLaws, sources: tuple[Source, ...], state: IntArray) -> VoltageLaws:
+    """Return the laws with those of limited sources replaced.
+
+    Parameters
+    ----------
+    laws : VoltageLaws
+        Within limits.
+    sources : tuple of Source
+        Sources on line.
+    state : ndarray of int, shape (source,)
+        Excitation state of each.
+
+    Returns
+    -------
+    VoltageLaws
+        At the limits named.
+    """
+    if not state.any():
+        return laws
+    code = laws.code.copy()
+    code[(state == CEILING) | (state == NO_EXCITATION)] = Law.FIELD
+    code[state == LARGEST_CURRENT] = Law.CURRENT_LIMIT
+    supplies = tuple(
+        {CEILING: s.ceiling, NO_EXCITATION: NO_FIELD}.get(int(k), own)
+        for s, k, own in zip(sources, state, laws.supplies, strict=True)
+    )
+    return replace(laws, code=code, supplies=supplies)
+
+
+def excitation_steps(
+    laws: VoltageLaws, sources: tuple[Source, ...], state: IntArray, v: ComplexArray, i: ComplexArray
+) -> tuple[IntArray, FloatArray]:
+    """Return the state each source wants in each scenario, and how far it is from where it is.
+
+    Parameters
+    ----------
+    laws : VoltageLaws
+        Within limits.
+    sources : tuple of Source
+        Sources on line.
+    state : ndarray of int, shape (source,)
+        Excitation state solved for.
+    v, i : ndarray, shape (source, scenario)
+        Terminal voltage and current found.
+
+    Returns
+    -------
+    tuple of ndarray
+        State wanted and distance (0 where it stays), [source, scenario].
+    """
+    wanted = np.repeat(state[:, None], v.shape[1], axis=1)
+    distance = np.zeros(v.shape)
+    error = regulator_error(laws, v, i)
+    for j, s in enumerate(sources):
+        if s.law in (Law.FIELD, Law.BEHIND_IMPEDANCE):
+            continue
+        if s.machine is not None:
+            _machine_step(laws, s, j, int(state[j]), (v, i, error), wanted, distance)
+        elif np.isfinite(s.i_max_pu):
+            _converter_step(laws, j, int(state[j]), (v, i, error), wanted, distance)
+    return wanted, distance
+
+
+def regulator_error(laws: VoltageLaws, v: ComplexArray, i: ComplexArray) -> FloatArray:
+    """Return set-point less what the regulator sees, [source, scenario]: positive asks for more field."""
+    out = laws.e_ref - np.abs(laws.compensated(v, i))
+    s = v * np.conj(i)
+    reactive = laws.code == Law.REACTIVE_CURRENT
+    out[reactive] = (laws.e_ref - np.abs(v) - laws.x * s.imag / np.abs(v))[reactive]
+    kvar = laws.code == Law.REACTIVE_POWER
+    out[kvar] = (laws.q_set + laws.q_per_p * s.real - s.imag)[kvar]
+    return np.asarray(out)
+
+
+def _machine_step(
+    laws: VoltageLaws,
+    source: Source,
+    j: int,
+    state: int,
+    point: tuple[ComplexArray, ComplexArray, FloatArray],
+    wanted: IntArray,
+    distance: FloatArray,
+) -> None:
+    v, i, error = point
+    if state == CEILING:
+        _move(wanted, distance, j, error[j] < -SLACK, 0, -error[j])
+    elif state == NO_EXCITATION:
+        _move(wanted, distance, j, error[j] > SLACK, 0, error[j])
+    else:
+        needed = laws.field(j, v[j], i[j])
+        phi = np.angle(v[j] * np.conj(i[j]))
+        most = available_field(
+            np.abs(v[j]) * laws.to_own_v[j], np.abs(i[j]) * laws.to_own_i[j], phi, source.ceiling
+        )
+        over = (needed - most) / source.rated_field_pu
+        _move(wanted, distance, j, over > SLACK, CEILING, over)
+        under = -needed / source.rated_field_pu
+        _move(wanted, distance, j, under > SLACK, NO_EXCITATION, under)
+
+
+def _converter_step(
+    laws: VoltageLaws,
+    j: int,
+    state: int,
+    point: tuple[ComplexArray, ComplexArray, FloatArray],
+    wanted: IntArray,
+    distance: FloatArray,
+) -> None:
+    v, i, error = point
+    if state == LARGEST_CURRENT:
+        lagging = (v[j] * np.conj(i[j])).imag >= 0.0
+        inside = np.where(lagging, -error[j], error[j])
+        _move(wanted, distance, j, inside > SLACK, 0, inside)
+    else:
+        over = np.abs(i[j]) / laws.i_max[j] - 1.0
+        _move(wanted, distance, j, over > SLACK, LARGEST_CURRENT, over)
+
+
+def _move(
+    wanted: IntArray, distance: FloatArray, j: int, where: NDArray[np.bool_], state: int, by: FloatArray
+) -> None:
+    wanted[j, where] = state
+    distance[j, where] = by[where]
+
+
+def power_steps(
+    power: PowerLaws,
+    sources: tuple[Source, ...],
+    state: IntArray,
+    p: FloatArray,
+    f: FloatArray,
+    s_base_kva: float,
+) -> tuple[IntArray, FloatArray]:
+    """Return the power state each source wants, and how far it is from where it is.
+
+    Parameters
+    ----------
+    power : PowerLaws
+        As solved.
+    sources : tuple of Source
+        Sources on line.
+    state : ndarray of int, shape (source,)
+        Power state solved for.
+    p : ndarray, shape (source, scenario)
+        Active power found. [pu]
+    f : ndarray, shape (island, scenario)
+        Frequency found. [pu]
+    s_base_kva : float
+        Base power. [kVA]
+
+    Returns
+    -------
+    tuple of ndarray
+        State wanted and distance (0 where it stays), [source, scenario].
+    """
+    wanted = np.repeat(state[:, None], p.shape[1], axis=1)
+    distance = np.zeros(p.shape)
+    for j, s in enumerate(sources):
+        limit, rated = s.p_max_kw / s_base_kva, s.p_rated_kw / s_base_kva
+        if not np.isfinite(limit) or s.speed == Speed.FIXED:
+            continue
+        if state[j] == 0:
+            over = (p[j] - limit) / rated
+            _move(wanted, distance, j, over > SLACK, 1, over)
+            if s.kind == "converter supply":
+                under = (-limit - p[j]) / rated
+                _move(wanted, distance, j, under > SLACK, -1, under)
+        else:
+            asked = _asked(power, s, j, f)
+            inside = state[j] * (limit * state[j] - asked) / rated
+            _move(wanted, distance, j, inside > SLACK, 0, inside)
+    return wanted, distance
+
+
+def _asked(power: PowerLaws, source: Source, j: int, f: FloatArray) -> FloatArray:
+    """Return the power that a limited source's governor asks for at the frequency found."""
+    f_own = f[source.island]
+    if source.speed == Speed.DROOP:
+        return np.asarray(power.gain[j] * (power.f_no_load[j] - f_own))
+    return np.where(f_own < power.f_no_load[j], np.inf, -np.inf)

@@ -1,0 +1,154 @@
+"""Newton's method for one scenario: the factors are kept while they serve and renewed when they do not."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.sparse.linalg import SuperLU
+
+from study.network.equations import Demand, Point, Structure, jacobian, residual
+from study.network.laws import VoltageLaws
+from study.network.power import PowerLaws
+
+FloatArray = NDArray[np.float64]
+
+TOLERANCE = 1e-10  # of node current and source laws, pu of the base power
+ROUNDING = 16.0 * float(np.finfo(float).eps)
+MOST_ITERATIONS = 60
+SLOW = 0.1  # the factors are renewed when a step leaves more than this part of the residual
+SHORTEST_STEP = 1.0 / 64.0
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Solved:
+    """Where Newton's method ended: the point, its largest residual, and the last factors."""
+
+    point: Point
+    residual_pu: float
+    iterations: int
+    converged: bool
+    factors: SuperLU | None
+
+
+def tolerance(at: Structure) -> float:
+    """Return the residual accepted: 1e-10 pu, or what rounding leaves beside very small impedances."""
+    largest = float(np.abs(at.admittance.data).max()) if at.admittance.nnz else 0.0
+    return max(TOLERANCE, ROUNDING * largest)
+
+
+def flat_start(at: Structure, power: PowerLaws, demand: Demand) -> Point:
+    """Return a first point: rated voltage everywhere, load divided by the active-power laws.
+
+    Parameters
+    ----------
+    at : Structure
+        Of the mode.
+    power : PowerLaws
+        One scenario.
+    demand : Demand
+        One scenario.
+
+    Returns
+    -------
+    Point
+        Arrays with one column.
+    """
+    total = (demand.constant + demand.impedance)[:, 0].sum() / max(at.islands, 1)
+    m = np.zeros(at.islands)
+    p = power.a[:, 0].copy()
+    for n in range(at.islands):
+        here = at.source_island == n
+        slope = power.b[here, 0].sum()
+        if slope != 0.0 and not power.shore[n]:
+            m[n] = (total.real - power.a[here, 0].sum()) / slope
+        p[here] += power.b[here, 0] * m[n]
+    q = np.full(at.sources, total.imag * at.islands / max(at.sources, 1))
+    return Point(v=np.ones((at.buses, 1), complex), i=(p - 1j * q)[:, None].astype(complex), m=m[:, None])
+
+
+def solve_one(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, start: Point) -> Solved:
+    """Solve one scenario by Newton's method.
+
+    Parameters
+    ----------
+    at : Structure
+        Of the mode.
+    laws, power : VoltageLaws, PowerLaws
+        One scenario.
+    demand : Demand
+        One scenario.
+    start : Point
+        First point.
+
+    Returns
+    -------
+    Solved
+        Where ``converged`` is False the point is the best found.
+    """
+    accept = tolerance(at)
+    x = _pack(start)
+    f = residual(at, laws, power, demand, start)
+    size = float(np.abs(f).max())
+    factors: SuperLU | None = None
+    fresh = False
+    step = 1.0
+    for count in range(1, MOST_ITERATIONS + 1):
+        if size <= accept:
+            return _ended(at, x, size, count - 1, accept, factors)
+        if factors is None or not fresh:
+            factors = _factors(at, laws, power, demand, _unpack(at, x))
+            if factors is None:
+                break
+        trial = x - step * factors.solve(f)
+        f_trial = _finite(residual(at, laws, power, demand, _unpack(at, trial)))
+        size_trial = float(np.abs(f_trial).max())
+        if size_trial < size:
+            fresh = size_trial < SLOW * size
+            x, f, size = trial, f_trial, size_trial
+            step = min(1.0, 2.0 * step)
+        elif fresh:
+            fresh = False
+        else:
+            step *= 0.5
+            fresh = True
+            if step < SHORTEST_STEP:
+                break
+    return _ended(at, x, size, count, accept, factors)
+
+
+def _factors(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, x: Point) -> SuperLU | None:
+    try:
+        return jacobian(at, laws, power, demand, x)
+    except RuntimeError:  # singular: SuperLU's own word for it
+        return None
+
+
+def _ended(
+    at: Structure, x: FloatArray, size: float, count: int, accept: float, factors: SuperLU | None
+) -> Solved:
+    return Solved(
+        point=_unpack(at, x),
+        residual_pu=size,
+        iterations=count,
+        converged=size <= accept,
+        factors=factors,
+    )
+
+
+def _finite(f: FloatArray) -> FloatArray:
+    return np.where(np.isfinite(f), f, np.inf)
+
+
+def _pack(x: Point) -> FloatArray:
+    return np.concatenate([x.v[:, 0].real, x.v[:, 0].imag, x.i[:, 0].real, x.i[:, 0].imag, x.m[:, 0]])
+
+
+def _unpack(at: Structure, x: FloatArray) -> Point:
+    n, s = at.buses, at.sources
+    return Point(
+        v=(x[:n] + 1j * x[n : 2 * n])[:, None],
+        i=(x[2 * n : 2 * n + s] + 1j * x[2 * n + s : 2 * n + 2 * s])[:, None],
+        m=x[2 * n + 2 * s :, None],
+    )
