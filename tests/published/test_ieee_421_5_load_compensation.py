@@ -67,7 +67,7 @@ def test_equal_droop_shares_equally():
 
 
 def test_4_and_8_per_cent_split_about_two_thirds_to_one_third():
-    """Common practice, no source: kvar divide inversely to the droops; exactly so on reactive current alone."""
+    """Common practice, no source: kvar divide inversely to the droops; exactly so on reactive current."""
     _, phasor = share_reactive([1.0, 1.0], [0.04, 0.08], [0.8, 0.8], [1000.0, 1000.0], 1000.0)
     _, current = share_reactive([1.0, 1.0], [0.04, 0.08], [0.0, 0.0], [1000.0, 1000.0], 1000.0)
     assert current.tolist() == pytest.approx([2000.0 / 3.0, 1000.0 / 3.0], abs=1e-8)
