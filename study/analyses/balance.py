@@ -13,7 +13,7 @@ from dataclasses import replace
 
 import numpy as np
 
-from study.analyses.balance_demand import consumer_demand, load_table
+from study.analyses.balance_demand import asked_of, consumer_demand, load_table
 from study.analyses.balance_findings import plant_findings
 from study.analyses.balance_mode import Study, mode_balance
 from study.analyses.balance_options import BalanceOptions
@@ -56,7 +56,7 @@ def load_balance(plant: Plant, views: Sequence[View], options: BalanceOptions | 
     supplies = [supply_of(plant, view) for view in views]
     fed = np.array([s.load_island != DEAD for s in supplies], dtype=bool)
     fed = fed.reshape(len(plant.modes), len(plant.loads))
-    demand = consumer_demand(plant, table, fed, options.intermittent_diversity)
+    demand = consumer_demand(plant.modes, table, asked_of(plant, table), fed, options.intermittent_diversity)
     study = Study(
         plant=plant,
         table=table,

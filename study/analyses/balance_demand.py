@@ -47,6 +47,15 @@ class LoadTable:
     undiversified: BoolArray
 
 
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Asked:
+    """The demand of every mode as arrays [mode, load]; ``duty`` indexes ``DUTIES``."""
+
+    in_use: FloatArray
+    load_factor: FloatArray
+    duty: IntArray
+
+
 def load_table(plant: Plant) -> LoadTable:
     """Return the loads as arrays, with what does not change from mode to mode.
 
@@ -110,15 +119,36 @@ def boards_fed_from_emergency(plant: Plant) -> frozenset[str]:
     return frozenset(reached)
 
 
-def consumer_demand(plant: Plant, table: LoadTable, fed: BoolArray, diversity: float) -> ConsumerDemand:
+def asked_of(plant: Plant, table: LoadTable) -> Asked:
+    """Return the demand of all modes as arrays; a load that a mode does not name is not in use."""
+    shape = (len(plant.modes), len(table.names))
+    in_use, load_factor = np.zeros(shape), np.zeros(shape)
+    duty = np.zeros(shape, dtype=np.int64)
+    column = {name: i for i, name in enumerate(table.names)}
+    number = {name: i for i, name in enumerate(DUTIES)}
+    for row, mode in enumerate(plant.modes):
+        where = [column[name] for name in mode.demand if name in column]
+        rows = [
+            (d.in_use, d.load_factor, number[d.duty]) for name, d in mode.demand.items() if name in column
+        ]
+        if rows:
+            in_use[row, where], load_factor[row, where], duty[row, where] = zip(*rows, strict=True)
+    return Asked(in_use=in_use, load_factor=load_factor, duty=duty)
+
+
+def consumer_demand(
+    modes: tuple[Mode, ...], table: LoadTable, asked: Asked, fed: BoolArray, diversity: float
+) -> ConsumerDemand:
     """Return what every load takes in every mode.
 
     Parameters
     ----------
-    plant : Plant
-        Its modes carry the demand.
+    modes : tuple of Mode
+        Their names, kinds and simultaneity factors are used.
     table : LoadTable
         The loads as arrays.
+    asked : Asked
+        The demand of the modes as arrays.
     fed : ndarray of bool, shape (mode, load)
         False where the load's board is dead.
     diversity : float
@@ -130,7 +160,7 @@ def consumer_demand(plant: Plant, table: LoadTable, fed: BoolArray, diversity: f
         Arrays [mode, load]. Efficiency is 1 where the rating is an input; loads that are not in use keep the
         values at rated output.
     """
-    in_use, load_factor, duty = _asked(plant, table)
+    in_use, load_factor = asked.in_use, asked.load_factor
     output_kw = table.p_absorbed_kw * load_factor
     idle = (in_use == 0.0) | (output_kw == 0.0)
     beta = np.where(idle, 1.0, np.abs(output_kw) / table.p_rated_kw)
@@ -146,13 +176,13 @@ def consumer_demand(plant: Plant, table: LoadTable, fed: BoolArray, diversity: f
     p_unit_kw = np.where(output_kw >= 0.0, output_kw / efficiency, output_kw * efficiency)
     p_kw = in_use * p_unit_kw
     q_kvar = reactive_power_kvar(np.abs(p_kw), cos_phi)
-    factor = counting_factors(plant.modes, table, duty, diversity) * fed
+    factor = counting_factors(modes, table, asked.duty, diversity) * fed
     return ConsumerDemand(
-        modes=tuple(mode.name for mode in plant.modes),
+        modes=tuple(mode.name for mode in modes),
         loads=table.names,
         in_use=read_only(in_use),
         load_factor=read_only(load_factor),
-        duty=read_only(duty),
+        duty=read_only(asked.duty),
         efficiency=read_only(efficiency),
         cos_phi=read_only(cos_phi),
         factor=read_only(factor),
@@ -226,20 +256,3 @@ def synchronous_motor_kw(motor: SynchronousMotor, mode: Mode) -> float:
     if trim is not None and trim.p_set_kw is not None:
         return abs(trim.p_set_kw)
     return motor.p_output_kw / motor.efficiency
-
-
-def _asked(plant: Plant, table: LoadTable) -> tuple[FloatArray, FloatArray, IntArray]:
-    shape = (len(plant.modes), len(table.names))
-    in_use, load_factor = np.zeros(shape), np.zeros(shape)
-    duty = np.zeros(shape, dtype=np.int64)
-    column = {name: i for i, name in enumerate(table.names)}
-    number = {name: i for i, name in enumerate(DUTIES)}
-    for row, mode in enumerate(plant.modes):
-        asked = [(column[name], d) for name, d in mode.demand.items() if name in column]
-        if not asked:
-            continue
-        where = [i for i, _ in asked]
-        in_use[row, where] = [d.in_use for _, d in asked]
-        load_factor[row, where] = [d.load_factor for _, d in asked]
-        duty[row, where] = [number[d.duty] for _, d in asked]
-    return in_use, load_factor, duty

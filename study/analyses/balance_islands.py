@@ -35,12 +35,12 @@ class Consumers:
     @property
     def p_kw(self) -> float:
         """Active power that counts [kW]."""
-        return math.fsum((*self.demand.p_counted_kw[self.row][self.here], self.motors_kw))
+        return math.fsum((*self.demand.p_counted_kw[self.row][self.here].tolist(), self.motors_kw))
 
     @property
     def q_kvar(self) -> float:
         """Reactive power that counts [kvar]."""
-        return math.fsum(self.demand.q_counted_kvar[self.row][self.here])
+        return math.fsum(self.demand.q_counted_kvar[self.row][self.here].tolist())
 
     def without(self, shed: BoolArray) -> Consumers:
         """Return the same island without the marked loads."""
