@@ -1,1 +1,7 @@
-"""Room 1: cells in, a plant out; result sheets grafted back."""
+"""Room 1: cells in, plant out; and sheets grafted back."""
+
+from study.workbook.blank import write_workbook
+from study.workbook.build import check_workbook, read_plant
+from study.workbook.sheets import column_documentation
+
+__all__ = ["check_workbook", "column_documentation", "read_plant", "write_workbook"]

@@ -123,6 +123,13 @@ SET_POINTS = SheetSpec(
         number("No-load voltage", "%", "no_load_voltage_pu", between(50.0, 150.0), "of rated voltage"),
         number("No-load frequency", "%", "no_load_frequency_pu", between(50.0, 150.0), "of rated frequency"),
         number("Set power", "kW", "p_set_kw", between(-200_000.0, 200_000.0), "of a converter supply"),
+        number(
+            "Set reactive power",
+            "kvar",
+            "q_set_kvar",
+            between(-200_000.0, 200_000.0),
+            "of a set in kvar control; blank: its rated power factor",
+        ),
         choice("Regulator mode", "regulator_mode", get_args(RegulatorMode), ""),
         number("Tap", "%", "tap_pu", between(-20.0, 20.0), "+ : more primary turns"),
     ),

@@ -1,0 +1,174 @@
+"""The file as raw cells: every sheet by name, and what can be trusted of its formulas."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+from functools import partial
+from pathlib import Path
+from typing import Final
+
+from study.workbook.package_names import Sheet, defined_names, read_sheets
+from study.workbook.package_opc import Package, open_package, read_relations, rels_part
+from study.workbook.package_xml import Node, as_utf8, parse
+from study.workbook.sheet_xml import (
+    BookTables,
+    ResultFormula,
+    SheetCells,
+    Value,
+    read_cells,
+    read_shared_strings,
+)
+from study.workbook.sheets import RESULT_PREFIX
+
+_PERCENT_FORMATS: Final = frozenset({9, 10})
+_DATE_FORMATS: Final = frozenset({*range(14, 23), *range(27, 37), *range(45, 48), *range(50, 59)})
+_QUOTED = re.compile(r'"[^"]*"|\\.|\[[^\]]*\]|_.|\*.')
+_RESULT_SHEET = re.compile(r"'(?:\[[^\]]*\])?R [^']*(?:''[^']*)*'!", re.IGNORECASE)
+
+
+Rows = Mapping[int, Mapping[int, Value]]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RawSheet:
+    """One sheet; `read` returns its cells by row and column number from 1, rows in order."""
+
+    name: str
+    read: Callable[[], Rows]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RawBook:
+    """The sheets that are not results, in the order of the tabs."""
+
+    file_name: str
+    sheets: Sequence[RawSheet]
+
+
+def read_raw(path: Path | str) -> RawBook:
+    """Open a workbook file and list the sheets that are not results.
+
+    Parameters
+    ----------
+    path : path
+        An .xlsx or .xlsm file.
+
+    Returns
+    -------
+    RawBook
+        Its sheets; the cells of one are read when they are asked for.
+
+    Raises
+    ------
+    PackageError
+        The file cannot be opened safely.
+    """
+    package = open_package(path)
+    return read_package(package, Path(path).name)
+
+
+def read_package(package: Package, file_name: str) -> RawBook:
+    """List the sheets of an opened workbook that are not results."""
+    root = _xml(package, package.workbook_part)
+    tables = _tables(package, root)
+    sheets = [sheet for sheet in read_sheets(package, root, RESULT_PREFIX) if not is_result(sheet.name)]
+    names = _result_names(root)
+    return RawBook(
+        file_name=file_name,
+        sheets=tuple(
+            RawSheet(name=sheet.name, read=partial(_rows, package, sheet, tables, names))
+            for sheet in sheets
+            if sheet.relation.is_a("worksheet")
+        ),
+    )
+
+
+def is_result(name: str) -> bool:
+    """Return True for the name of a result sheet.
+
+    Examples
+    --------
+    >>> is_result("R Load flow"), is_result("Running")
+    (True, False)
+    """
+    return name[: len(RESULT_PREFIX)].upper() == RESULT_PREFIX
+
+
+def _xml(package: Package, part: str) -> Node:
+    return parse(as_utf8(package.read(part), part), part)
+
+
+def _tables(package: Package, root: Node) -> BookTables:
+    relations = read_relations(package.read(rels_part(package.workbook_part)), package.workbook_part)
+    properties = root.find("workbookPr")
+    starts_1904 = properties is not None and properties.attributes.get("date1904", "0") in {"1", "true"}
+    strings: list[str] = []
+    shown: list[str] = []
+    for relation in relations:
+        if relation.external:
+            continue
+        if relation.is_a("sharedStrings"):
+            strings = read_shared_strings(
+                as_utf8(package.read(relation.target), relation.target), relation.target
+            )
+        elif relation.is_a("styles"):
+            shown = shown_as(_xml(package, relation.target))
+    return BookTables(strings=strings, shown_as=shown, starts_1904=starts_1904)
+
+
+def shown_as(styles: Node) -> list[str]:
+    """Return for each cell style whether its numbers are shown as ``percent``, as a ``date``, or plainly."""
+    formats = styles.find("numFmts")
+    codes = {
+        node.attributes.get("numFmtId", ""): node.attributes.get("formatCode", "")
+        for node in (formats.all("numFmt") if formats else ())
+    }
+    cells = styles.find("cellXfs")
+    return [
+        _format_kind(xf.attributes.get("numFmtId", "0"), codes) for xf in (cells.all("xf") if cells else ())
+    ]
+
+
+def _format_kind(number: str, codes: Mapping[str, str]) -> str:
+    if number in codes:
+        return code_kind(codes[number])
+    known = int(number) if number.isdigit() else 0
+    if known in _PERCENT_FORMATS:
+        return "percent"
+    return "date" if known in _DATE_FORMATS else ""
+
+
+def code_kind(code: str) -> str:
+    """Return what a number format shows: ``percent``, ``date``, or an empty text for a plain number.
+
+    Examples
+    --------
+    >>> code_kind("0.0%"), code_kind("yyyy-mm-dd"), code_kind('0.0 "days"'), code_kind("[Red]0.0")
+    ('percent', 'date', '', '')
+    """
+    bare = _QUOTED.sub("", code.partition(";")[0]).lower()
+    if "%" in bare:
+        return "percent"
+    return "date" if any(letter in bare for letter in "ymdhs") and "general" not in bare else ""
+
+
+def _rows(package: Package, sheet: Sheet, tables: BookTables, names: re.Pattern[str] | None) -> Rows:
+    data = as_utf8(package.read(sheet.part), sheet.part)
+    cells = read_cells(data, sheet.part, tables)
+    _mark_results(cells, names)
+    return dict(sorted(cells.rows.items()))
+
+
+def _result_names(root: Node) -> re.Pattern[str] | None:
+    names = [d.name for _, d in defined_names(root) if _RESULT_SHEET.search(d.value)]
+    if not names:
+        return None
+    return re.compile(rf"(?<![\w.])(?:{'|'.join(map(re.escape, names))})(?![\w.(])", re.IGNORECASE)
+
+
+def _mark_results(cells: SheetCells, names: re.Pattern[str] | None) -> None:
+    for (row, column), formula in cells.formulas.items():
+        if _RESULT_SHEET.search(formula) or (names is not None and names.search(formula)):
+            cells.rows.setdefault(row, {})[column] = ResultFormula(formula)
