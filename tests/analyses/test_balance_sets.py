@@ -159,6 +159,7 @@ def three_sizes() -> list[Any]:
         (150.0, 0.0, ("G200",)),  # of equal numbers the least kW
         (200.0, 0.0, ("G200",)),  # just enough
         (200.0, 0.1, ("G400",)),  # 200/0.9 = 222.2 kW
+        (362.0, 0.1, ("G800",)),  # 402.2 kW: the margin is of the rating, not of the load
         (700.0, 0.1, ("G800",)),  # 777.8 kW
         (760.0, 0.1, ("G800", "G200")),  # 844.4 kW
         (1300.0, 0.0, ("G800", "G400", "G200")),
