@@ -268,7 +268,9 @@ def _new_lists(
     lists: dict[str, bytes] = {}
     own_styles = base.related("styles")
     if own_styles is None:
-        name = free_name("xl/styles.xml", {part_key(n) for n in (*base.package.names, *parts)})
+        # Some readers look for the usual name instead of following the relation.
+        taken = {part_key(n) for n in (*base.package.names, *parts)}
+        name = free_name("xl/styles.xml", taken) if "xl/styles.xml" in taken else "xl/styles.xml"
         new_relations.append(Relation(id=next(ids), kind=f"{OFFICE}/styles", target=name, external=False))
         declared[name] = STYLES_TYPE
         lists[name] = styles

@@ -240,6 +240,7 @@ class Document:
         self.part = part
         self.root = parse(self.data, part)
         self._edits: list[tuple[int, int, bytes]] = []
+        self._filled: dict[int, tuple[Node, list[str]]] = {}
 
     def raw_name(self, node: Node) -> str:
         """Return the name as it stands in the file, prefix included."""
@@ -260,12 +261,11 @@ class Document:
         return None
 
     def append(self, node: Node, xml: str) -> None:
-        """Insert text as the last content of a node; once for each node."""
+        """Insert text as the last content of a node."""
         if node.close >= 0:
             self._edits.append((node.close, node.close, xml.encode()))
         else:
-            slash = self.data.rindex(b"/", node.start, node.stop)
-            self._edits.append((slash, node.stop, f">{xml}</{self.raw_name(node)}>".encode()))
+            self._filled.setdefault(node.start, (node, []))[1].append(xml)
 
     def insert_in_order(self, xml: str, name: str, order: tuple[str, ...]) -> None:
         """Insert a child of the root before the first one that the schema puts behind it."""
@@ -300,9 +300,13 @@ class Document:
 
     def result(self) -> bytes:
         """Return the part with all edits made."""
+        edits = list(self._edits)
+        for node, texts in self._filled.values():
+            slash = self.data.rindex(b"/", node.start, node.stop)
+            edits.append((slash, node.stop, f">{''.join(texts)}</{self.raw_name(node)}>".encode()))
         out, at = bytearray(), 0
         # An insertion at the first byte of a replaced span belongs before it, whichever came first.
-        for start, stop, text in sorted(self._edits, key=lambda e: (e[0], e[1])):
+        for start, stop, text in sorted(edits, key=lambda e: (e[0], e[1])):
             out += self.data[at:start] + text
             at = stop
         return bytes(out + self.data[at:])
