@@ -130,20 +130,23 @@ def island_findings(
             yield f"{source.name} would be driven with {-p_kw:.0f} kW: the set powers exceed the load."
 
 
-def start_finding(plant: Plant, consumers: Consumers, capability_kw: float) -> Iterator[str]:
-    """Yield the motor whose start asks more active power than the engines take in one step.
-
-    Source: ship electrical textbooks: engine check at start, Pb + sqrt3 U Is cos(start) within engine power.
-    """
+def largest_start(plant: Plant, consumers: Consumers) -> int | None:
+    """Return the place of the motor in use that draws most active power while it starts; None for none."""
     rows = [
-        (starting_power_kw(plant.loads[i]), plant.loads[i])
+        (starting_power_kw(plant.loads[i]), int(i))
         for i in consumers.here.nonzero()[0]
         if plant.loads[i].motor is not None and not behind_converter(plant.loads[i])
     ]
-    if not rows:
-        return
-    p_kw, load = max(rows, key=lambda pair: pair[0])
-    if p_kw > capability_kw and load.motor is not None:
+    return max(rows)[1] if rows else None
+
+
+def start_finding(load: Load, capability_kw: float) -> Iterator[str]:
+    """Yield a motor whose start asks more active power than the engines take in one step.
+
+    Source: Japanese ship-electrical textbooks: engine check at the start of a motor.
+    """
+    p_kw = starting_power_kw(load)
+    if p_kw > capability_kw:
         yield (
             f"{load.name}, started {_how(load)}, draws about {p_kw:.0f} kW while it runs up; the engines on "
             f"line take {capability_kw:.0f} kW in one step."

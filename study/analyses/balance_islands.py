@@ -151,12 +151,14 @@ def fewest_sets_words(chosen: tuple[str, ...] | None, installed: int, p_load_kw:
 def step_capability_kw(running: Sequence[Source], before: dict[str, Share]) -> float:
     """Return the largest load that the sources on line take in one step.
 
-    The step is shared in proportion to rated kW. No engine may get more than its largest load step, and no
-    source more than what is left to its rated kW, so the source that reaches its limit first decides:
-    ``min(min(step_i, P_rated_i - P_i) / w_i)`` with ``w_i = P_rated_i / sum(P_rated)``.
+    The step is shared in proportion to rated kW. No engine may get more than its largest load step, nor more
+    than what is left to its overload power; no supply without an engine more than what is left to its rating.
+    The source that reaches its limit first decides: ``min(min(step_i, P_max_i - P_i) / w_i)`` with
+    ``w_i = P_rated_i / sum(P_rated)`` and ``P_max = 1.1 P_engine eta``.
 
     Source: largest load step by the maker (IACS UR M3 and ISO 8528-5, mean effective pressure curves, from
-    memory); the sharing is derived. It is the engine's first step, used at any load before the step.
+    memory), used at any load before the step. Overload power of 110 %: Japanese ship-electrical textbooks,
+    engine check at the start of a motor, ``Pb + sqrt3 U Is cos(phi) <= 1.1 Pe eta``. The sharing is derived.
 
     Parameters
     ----------
@@ -173,7 +175,8 @@ def step_capability_kw(running: Sequence[Source], before: dict[str, Share]) -> f
     forming = [s for s in running if s.forming]
     weights = proportions([s.p_rated_kw for s in forming])
     room = [
-        min(s.step_kw, s.p_rated_kw - before[s.name].p_kw) / w for s, w in zip(forming, weights, strict=True)
+        min(s.step_kw, s.p_overload_kw - before[s.name].p_kw) / w
+        for s, w in zip(forming, weights, strict=True)
     ]
     return max(0.0, min(room, default=0.0))
 

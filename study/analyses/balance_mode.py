@@ -213,16 +213,23 @@ def _island_balance(study: Study, island: LiveIsland, sources: Sequence[Source])
 
 
 def _largest_step(study: Study, island: LiveIsland) -> LoadStep:
-    consumers = island.consumers
-    index, p_kw = largest_unit(consumers, study.table.behind_converter)
-    # The load that is switched is not yet in when the step comes.
-    counted_kw = p_kw * float(study.demand.factor[consumers.row, index]) if index >= 0 else 0.0
-    before = share_load(island.running, consumers.p_kw - counted_kw, consumers.q_kvar)
+    index, p_kw = largest_unit(island.consumers, study.table.behind_converter)
     return LoadStep(
         load=study.demand.loads[index] if index >= 0 else "",
         p_kw=p_kw,
-        capability_kw=step_capability_kw(island.running, before),
+        capability_kw=_capability_without(study, island, index),
     )
+
+
+def _capability_without(study: Study, island: LiveIsland, index: int) -> float:
+    """Return the step that the sources take before one unit of a load is in; index -1 for no load."""
+    demand, consumers = study.demand, island.consumers
+    counted_kw = 0.0
+    if index >= 0:
+        unit_kw = demand.p_unit_kw[consumers.row, index] * min(1.0, demand.in_use[consumers.row, index])
+        counted_kw = float(unit_kw * demand.factor[consumers.row, index])
+    before = share_load(island.running, consumers.p_kw - counted_kw, consumers.q_kvar)
+    return step_capability_kw(island.running, before)
 
 
 def _island_notes(study: Study, island: LiveIsland, balance: IslandBalance) -> list[str]:
@@ -231,8 +238,10 @@ def _island_notes(study: Study, island: LiveIsland, balance: IslandBalance) -> l
             island.boards, island.running, island.standby, island.shares, balance.p_load_kw
         )
     )
-    if any(s.kind == "genset" for s in island.running):
-        notes += findings.start_finding(study.plant, island.consumers, balance.step_capability_kw)
+    start = findings.largest_start(study.plant, island.consumers)
+    if start is not None and any(s.kind == "genset" for s in island.running):
+        capability_kw = _capability_without(study, island, start)
+        notes += findings.start_finding(study.plant.loads[start], capability_kw)
     return notes
 
 

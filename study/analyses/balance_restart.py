@@ -170,7 +170,7 @@ class _Sequence:
 
     def fitting(self, due: Sequence[Reconnection]) -> list[Reconnection]:
         """Return what of the loads that are due goes into one step now; nothing where it has to wait."""
-        room_kw = self.capability_kw()
+        room_kw = min(self.capability_kw(), self.left_kw())
         taken: list[Reconnection] = []
         for load in due:
             if load.p_kw > room_kw:
@@ -179,13 +179,17 @@ class _Sequence:
             room_kw -= load.p_kw
         return taken or self._too_large(due[0])
 
+    def left_kw(self) -> float:
+        """Return what the rating of all sets leaves free."""
+        return capacity(self.sets)[0] - self.p_total_kw
+
     def _too_large(self, load: Reconnection) -> list[Reconnection]:
+        if load.p_kw > self.left_kw():
+            self.waiting.append(load)
+            return []
         later = [s.start_delay_s for s in self.sets if s.start_delay_s > self.at_s]
         if later:
             self.at_s = min(later)
-            return []
-        if load.p_kw > capacity(self.sets)[0] - self.p_total_kw:
-            self.waiting.append(load)
             return []
         return [load]
 

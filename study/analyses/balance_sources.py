@@ -17,6 +17,8 @@ from study.model.plant import Plant
 from study.model.sources import ConverterSupply, Genset, ShoreSupply
 from study.network.view import DEAD
 
+ENGINE_OVERLOAD = 1.1  # ISO 3046-1, overload power for an hour, from memory
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Source:
@@ -50,6 +52,11 @@ class Source:
     def running(self) -> bool:
         """True for a source on line."""
         return self.state == "on"
+
+    @property
+    def p_overload_kw(self) -> float:
+        """Active power that the source can give for a short time [kW]: engines 110 % of their power."""
+        return self.p_rated_kw if math.isnan(self.engine_kw) else ENGINE_OVERLOAD * self.engine_kw
 
     @property
     def p_capacity_kw(self) -> float:

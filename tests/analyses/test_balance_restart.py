@@ -43,7 +43,7 @@ def test_loads_come_back_in_the_order_of_their_delays() -> None:
     ]
     assert [s.p_step_kw for s in steps] == [60.0, 200.0, 100.0]
     assert [s.p_total_kw for s in steps] == [60.0, 260.0, 360.0]
-    # 50 % of 860 kW * 0.95 = 408.5 kW, less where less is free: 800 - 60 and 800 - 260
+    # 50 % of 860 kW * 0.95 = 408.5 kW; more is left to 110 % of 817 kW: 898.7 - 260 = 638.7 kW
     assert [s.step_capability_kw for s in steps] == pytest.approx([408.5, 408.5, 408.5])
 
 

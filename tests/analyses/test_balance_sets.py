@@ -226,18 +226,26 @@ def test_equal_sets_take_the_sum_of_their_steps() -> None:
     )
 
 
-def test_step_is_bounded_by_what_is_free_before_the_load_comes_in() -> None:
-    # one set of 800 kW; 600 kW carried, the fire pump (occasional, not counted) of 250 kW comes on top
+def test_step_is_bounded_by_the_overload_power_left_before_the_load_comes_in() -> None:
+    # One engine of 860 kW * 0.95 = 817 kW, 898.7 kW at 110 %. The largest unit is the heater of 600 kW:
+    # nothing else is in before it, so 50 % of 817 = 408.5 kW.
     loads = [*heaters(600.0), load("Fire pump", "MSB", kind="general", p_rated_kw=250.0, cos_phi=1.0)]
     demands = {"H0 MSB": demand(), "Fire pump": demand(1.0, 1.0, "occasional")}
     got = island(one_board({"gensets": [genset("G1", "MSB")]}, loads, demand=demands))
-    # the largest single unit is the heater of 600 kW: nothing else is in before it, 0.5*817 = 408.5
     assert (got.largest_step_load, got.step_capability_kw) == ("H0 MSB", pytest.approx(408.5))
+    # Three heaters of 200 kW are in before the fire pump, which is not counted: 898.7 - 600 = 298.7 kW.
     loads[0] = load("H0 MSB", "MSB", kind="heating", installed=3, p_rated_kw=200.0)
     demands["H0 MSB"] = demand(3.0)
     got = island(one_board({"gensets": [genset("G1", "MSB")]}, loads, demand=demands))
     assert (got.largest_step_load, got.largest_step_kw) == ("Fire pump", 250.0)
-    assert got.step_capability_kw == pytest.approx(200.0)
+    assert got.step_capability_kw == pytest.approx(298.7)
+
+
+def test_supply_without_an_engine_takes_a_step_up_to_its_rating() -> None:
+    # 700 kVA, of 400 kW in two units the largest of 300 comes last: 700 - 100 = 600 kW
+    shaft = converter_supply("SG", "MSB", s_rated_kva=700.0)
+    got = island(one_board({"converter_supplies": [shaft]}, heaters(100.0, 300.0)))
+    assert got.step_capability_kw == pytest.approx(600.0)
 
 
 def test_a_load_that_a_converter_brings_up_is_no_step() -> None:
