@@ -54,6 +54,9 @@ def plant_findings(plant: Plant, demand: ConsumerDemand) -> Iterator[str]:
         if load.trip_stage and load.essential_to in ("propulsion", "steering", "safety"):
             yield f"{load.name} is essential to {load.essential_to} and yet in trip stage {load.trip_stage}."
     yield from _running_currents(plant, demand)
+    if plant.filters:
+        names = listed([bank.name for bank in plant.filters])
+        yield f"The kvar of filters and capacitors ({names}) are in the load flow and not in the balance."
     known = {load.service for load in plant.loads}
     strange = sorted({s for m in plant.modes for s, _ in m.simultaneity} - known)
     if strange:
@@ -76,12 +79,6 @@ def supply_findings(plant: Plant, mode: Mode, sources: Sequence[Source], supply:
     for shore in plant.shore_supplies:
         if shore.name in supply.running:
             yield from _shore_quality(plant, shore)
-    for bank in plant.filters:
-        if mode.is_on(bank.name) and bank.board in supply.island_of_board:
-            yield (
-                f"{bank.name} gives {bank.q_rated_kvar:.0f} kvar; the balance does not count it, "
-                "the load flow does."
-            )
 
 
 def demand_findings(plant: Plant, mode: Mode, demand: ConsumerDemand, row: int) -> Iterator[str]:

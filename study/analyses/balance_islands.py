@@ -112,21 +112,28 @@ def fewest_sets(
     return None
 
 
-def set_candidates(sources: Sequence[Source], island: int) -> list[Source]:
+def set_candidates(sources: Sequence[Source], island: int, mode_kind: str) -> list[Source]:
     """Return the sets that could feed an island in the long run.
 
-    Main and harbour sets, whatever their state, and supplies through a converter that hold the voltage, have
-    no store to run empty, and are running or standing by.
+    Main sets, whatever their state; harbour sets in port, and elsewhere where they run or stand by; and
+    supplies through a converter that hold the voltage, have no store to run empty, and run or stand by.
     """
+    in_port = mode_kind in ("harbour", "shore")
     return [
         s
         for s in sources
         if s.island == island
         and (
-            s.service in ("main", "harbour")
+            s.service == "main"
+            or (s.service == "harbour" and (in_port or s.state != "off"))
             or (s.kind == "converter supply" and s.forming and not s.stored and s.state != "off")
         )
     ]
+
+
+def charging_kw(running: Sequence[Source]) -> float:
+    """Return what supplies take by their set power, a load that any sets have to carry [kW]."""
+    return math.fsum(max(0.0, -(s.p_set_kw or 0.0)) for s in running if not s.forming)
 
 
 def fewest_sets_words(chosen: tuple[str, ...] | None, installed: int, p_load_kw: float) -> str:

@@ -11,6 +11,7 @@ from study.analyses.balance_demand import LoadTable, alternative_total_kw, synch
 from study.analyses.balance_islands import (
     Consumers,
     LoadStep,
+    charging_kw,
     fewest_sets,
     fewest_sets_words,
     largest_unit,
@@ -179,11 +180,13 @@ def _island_balance(study: Study, island: LiveIsland, sources: Sequence[Source])
     p_load_kw, q_load_kvar = island.consumers.p_kw, island.consumers.q_kvar
     s_load_kva = math.hypot(p_load_kw, q_load_kvar)
     p_capacity_kw, s_capacity_kva = capacity(island.running)
-    candidates = set_candidates(sources, island.number)
+    candidates = set_candidates(sources, island.number, study.plant.modes[island.consumers.row].kind)
     chosen = None
     if p_load_kw > 0.0:
+        p_need_kw = p_load_kw + charging_kw(island.running)
+        s_need_kva = math.hypot(p_need_kw, q_load_kvar)
         margin = study.options.one_set_margin
-        chosen = fewest_sets(candidates, p_load_kw, s_load_kva, margin, study.interlocked)
+        chosen = fewest_sets(candidates, p_need_kw, s_need_kva, margin, study.interlocked)
     step = _largest_step(study, island)
     loss = loss_of_largest(
         island.sources, island.shares, island.consumers, study.table.trip_stage, study.interlocked

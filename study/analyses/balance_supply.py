@@ -44,9 +44,10 @@ class ModeSupply:
 def supply_of(plant: Plant, view: View) -> ModeSupply:
     """Return what the balance needs of a mode's view of the network."""
     place = {board.name: i for i, board in enumerate(plant.boards)}
+    ends = {cable.name: (cable.from_end, cable.to_end) for cable in plant.cables}
     moved = {feed.target: feed.used for feed in view.feeds if feed.transferred}
     load_board = [
-        node if node < len(plant.boards) else place[_feeding_board(plant, load, moved)]
+        node if node < len(plant.boards) else place[_feeding_board(load, moved, ends, place)]
         for load, node in zip(plant.loads, view.load_node, strict=True)
     ]
     load_island = [
@@ -66,11 +67,9 @@ def supply_of(plant: Plant, view: View) -> ModeSupply:
     )
 
 
-def _feeding_board(plant: Plant, load: Load, moved: Mapping[str, str]) -> str:
+def _feeding_board(
+    load: Load, moved: Mapping[str, str], ends: Mapping[str, tuple[str, str]], boards: Mapping[str, int]
+) -> str:
     """Return the board at the far end of the supply that a load uses."""
-    supply = moved.get(load.name)
-    boards = {board.name for board in plant.boards}
-    if supply in boards:
-        return str(supply)
-    ends = [end for c in plant.cables if c.name == supply for end in (c.from_end, c.to_end)]
-    return next((end for end in ends if end in boards), load.board)
+    supply = moved.get(load.name, load.board)
+    return next((end for end in (supply, *ends.get(supply, ())) if end in boards), load.board)

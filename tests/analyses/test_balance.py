@@ -195,7 +195,7 @@ def test_odd_things_are_said_in_words() -> None:
         "G2 stands by on B2, which is dead in M.",
         "G3 on B3: no load in this island.",
         "Fan: 2 in use, 1 installed.",
-        "F1 gives 100 kvar; the balance does not count it, the load flow does.",
+        "The kvar of filters and capacitors (F1) are in the load flow and not in the balance.",
     ):
         assert words in said
 

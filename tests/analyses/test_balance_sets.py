@@ -204,6 +204,33 @@ def test_shaft_supply_counts_among_the_fewest_sets_and_a_battery_does_not() -> N
     assert island(one_board(sources, heaters(500.0))).fewest_sets == ("SG",)
 
 
+@pytest.mark.parametrize(
+    ("kind", "state", "expected"),
+    [
+        ("sea", "off", ("G1",)),
+        ("sea", "standby", ("HG",)),
+        ("harbour", "off", ("HG",)),
+        ("shore", "off", ("HG",)),
+    ],
+)
+def test_harbour_set_counts_in_port_or_where_it_is_ready(
+    kind: str, state: str, expected: tuple[str, ...]
+) -> None:
+    harbour = genset("HG", "MSB", service="harbour", s_rated_kva=500.0, p_engine_kw=430.0)
+    p = one_board(
+        {"gensets": [genset("G1", "MSB"), harbour]}, heaters(300.0), kind=kind, states={"HG": state}
+    )
+    assert island(p).fewest_sets == expected
+
+
+def test_fewest_sets_carry_what_a_battery_charges_and_do_not_lean_on_what_it_gives() -> None:
+    # 380 kW of load on sets of 800, 400 and 200 kW: 400 kW is enough alone, not with 150 kW of charging
+    for p_set_kw, expected in ((150.0, ("G400",)), (-150.0, ("G800",))):
+        battery = converter_supply("B1", "MSB", control="grid following", p_set_kw=p_set_kw)
+        p = one_board({"gensets": three_sizes(), "converter_supplies": [battery]}, heaters(380.0))
+        assert island(p).fewest_sets == expected
+
+
 # ---- load steps
 
 
