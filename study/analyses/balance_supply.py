@@ -7,7 +7,6 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from study.model.loads import Load
 from study.model.plant import Plant
 from study.network.view import DEAD, View
 from study.results.arrays import IntArray
@@ -44,12 +43,12 @@ class ModeSupply:
 def supply_of(plant: Plant, view: View) -> ModeSupply:
     """Return what the balance needs of a mode's view of the network."""
     place = {board.name: i for i, board in enumerate(plant.boards)}
+    feeding = {load.name: place[load.board] for load in plant.loads}
     ends = {cable.name: (cable.from_end, cable.to_end) for cable in plant.cables}
-    moved = {feed.target: feed.used for feed in view.feeds if feed.transferred}
-    load_board = [
-        node if node < len(plant.boards) else place[_feeding_board(load, moved, ends, place)]
-        for load, node in zip(plant.loads, view.load_node, strict=True)
-    ]
+    for feed in view.feeds:
+        if feed.transferred and feed.target in feeding:
+            supply = (feed.used, *ends.get(feed.used, ()))
+            feeding[feed.target] = next((place[x] for x in supply if x in place), feeding[feed.target])
     load_island = [
         view.island[node] if fed else DEAD for node, fed in zip(view.load_node, view.load_fed, strict=True)
     ]
@@ -63,13 +62,5 @@ def supply_of(plant: Plant, view: View) -> ModeSupply:
         running=frozenset(view.sources),
         motors_on=view.motors_on,
         load_island=np.array(load_island, dtype=np.int64),
-        load_board=np.array(load_board, dtype=np.int64),
+        load_board=np.array(list(feeding.values()), dtype=np.int64),
     )
-
-
-def _feeding_board(
-    load: Load, moved: Mapping[str, str], ends: Mapping[str, tuple[str, str]], boards: Mapping[str, int]
-) -> str:
-    """Return the board at the far end of the supply that a load uses."""
-    supply = moved.get(load.name, load.board)
-    return next((end for end in (supply, *ends.get(supply, ())) if end in boards), load.board)
