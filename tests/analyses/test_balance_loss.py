@@ -140,7 +140,7 @@ def test_any_one_main_set_out_against_the_essential_loads() -> None:
         genset("EG", "MSB", service="emergency"),
     ]
     p = one_board({"gensets": sets}, loads, states={"EG": "off", "G200": "off", "G400": "standby"})
-    rows = {r.out: r for r in balance(p.main_set_out}
+    rows = {r.out: r for r in balance(p).main_set_out}
     assert set(rows) == {"G800", "G400", "G200"}
     assert {r.p_load_kw for r in rows.values()} == {700.0}
     assert {k: r.p_capacity_kw for k, r in rows.items()} == {"G800": 600.0, "G400": 1000.0, "G200": 1200.0}
@@ -150,7 +150,7 @@ def test_any_one_main_set_out_against_the_essential_loads() -> None:
 
 def test_one_main_set_alone_leaves_nothing_when_it_is_out() -> None:
     loads = [load("Lights", "MSB", kind="lighting", essential_to="safety")]
-    row = balance(one_board({"gensets": [genset("G1", "MSB")]}, loads).main_set_out[0]
+    row = balance(one_board({"gensets": [genset("G1", "MSB")]}, loads)).main_set_out[0]
     assert row.p_capacity_kw == 0.0
     assert math.isinf(row.kw_loading)
 
