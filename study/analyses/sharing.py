@@ -7,7 +7,15 @@ from collections.abc import Sequence
 import numpy as np
 
 from study.analyses.sharing_cases import SETTINGS, maladjusted_case
-from study.analyses.sharing_curves import Group, share_of, sharing_curve, solve_scaled, trimmed_settings
+from study.analyses.sharing_curves import (
+    LOADS_PU,
+    Group,
+    scale_to,
+    share_of,
+    sharing_curve,
+    solve_scaled,
+    trimmed_settings,
+)
 from study.analyses.sharing_margins import adjusting_margins, operating_loads
 from study.analyses.sharing_options import SharingOptions
 from study.formulas.load_compensation import terminal_voltage_phasor, terminal_voltage_reactive_current
@@ -70,8 +78,10 @@ def _groups(at: ModeNetwork, p_kw: FloatArray, q_kvar: FloatArray) -> list[Group
 
 def _island(group: Group, own: BatchSolution, options: SharingOptions) -> IslandSharing:
     p, q = own.source_p_kw[0, group.places], own.source_q_kvar[0, group.places]
-    as_set = sharing_curve(group, None, trimmed=False)
-    settings = trimmed_settings(group)
+    scale, solution = scale_to(group, LOADS_PU)
+    as_set = sharing_curve(group, solution, trimmed=False)
+    settings = trimmed_settings(group, scale, solution)
+    _, trimmed = scale_to(group, LOADS_PU, settings)
     u_own = float(own.source_u_pu[0, group.places[0]])
     share = share_of(q.sum(), group.q_rated_kvar, q, group.shares_kvar)
     s_total = float(np.hypot(p.sum(), q.sum()))
@@ -95,7 +105,7 @@ def _island(group: Group, own: BatchSolution, options: SharingOptions) -> Island
         f_operating_hz=float(own.frequency_pu[0, group.island]) * group.at.network.plant.project.f_rated_hz,
         circulating_kvar=float(np.abs(q - share).sum()) / 2.0,
         as_set=as_set,
-        trimmed=sharing_curve(group, settings or Settings(), trimmed=True),
+        trimmed=sharing_curve(group, trimmed, trimmed=True),
         lines=tuple(
             _line(s, p[n], q[n], float(own.source_u_pu[0, k]))
             for n, (k, s) in enumerate(zip(group.places, group.sources, strict=True))

@@ -15,9 +15,8 @@ from study.results.arrays import BoolArray, FloatArray, IntArray, read_only
 from study.results.sharing import SharingCurve
 
 LOADS_PU = np.linspace(0.20, 1.00, 17)
-TRIM_LOAD_PU = 0.75
-_PASSES = 3  # of load scaling: what remains is the change of losses over the last step
-_TRIMS = 6
+_TRIM_AT = 11  # 75 % load, where the rules have the sets tuned
+_TRIMS = 4
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -87,6 +86,8 @@ def scale_to(
 ) -> tuple[FloatArray, BatchSolution]:
     """Return the factors on the island's loads that put a given load on its sets, and the solution there.
 
+    One correction for the losses: what remains is their change over that correction.
+
     Parameters
     ----------
     group : Group
@@ -107,12 +108,10 @@ def scale_to(
     of_loads = float(group.p_kw[group.loads].sum())
     scale = wanted / of_loads
     solution = solve_scaled(group, scale, settings)
-    for _ in range(_PASSES - 1):
-        total = solution.source_p_kw[:, group.places].sum(axis=1)
-        better = scale * np.where(total > 0.0, wanted / np.where(total > 0.0, total, 1.0), 1.0)
-        scale = np.where(np.isfinite(better), better, scale)
-        solution = solve_scaled(group, scale, settings)
-    return scale, solution
+    total = solution.source_p_kw[:, group.places].sum(axis=1)
+    better = scale * np.where(total > 0.0, wanted / np.where(total > 0.0, total, 1.0), 1.0)
+    scale = np.where(np.isfinite(better), better, scale)
+    return scale, solve_scaled(group, scale, settings)
 
 
 def share_of(total: FloatArray, rated: FloatArray, actual: FloatArray, takes_part: BoolArray) -> FloatArray:
@@ -142,15 +141,15 @@ def share_of(total: FloatArray, rated: FloatArray, actual: FloatArray, takes_par
     return share
 
 
-def sharing_curve(group: Group, settings: Settings | None, *, trimmed: bool) -> SharingCurve:
+def sharing_curve(group: Group, solution: BatchSolution, *, trimmed: bool) -> SharingCurve:
     """Return kW and kvar of each set from 20 to 100 % of the combined rating.
 
     Parameters
     ----------
     group : Group
         The island.
-    settings : Settings or None
-        The trimmed settings, or None for those of the workbook.
+    solution : BatchSolution
+        From `scale_to` over `LOADS_PU`.
     trimmed : bool
         What to call the curve.
 
@@ -159,7 +158,6 @@ def sharing_curve(group: Group, settings: Settings | None, *, trimmed: bool) -> 
     SharingCurve
         At the mode's own power factor, losses included.
     """
-    _, solution = scale_to(group, LOADS_PU, settings)
     p, q = solution.source_p_kw[:, group.places], solution.source_q_kvar[:, group.places]
     p_total, q_total = p.sum(axis=1), q.sum(axis=1)
     board = group.sources[0].node
@@ -179,7 +177,7 @@ def sharing_curve(group: Group, settings: Settings | None, *, trimmed: bool) -> 
     )
 
 
-def trimmed_settings(group: Group) -> Settings | None:
+def trimmed_settings(group: Group, scale: FloatArray, as_set: BatchSolution) -> Settings | None:
     """Return the set-points that make the sets share in proportion at 75 % of their combined rating.
 
     The no-load frequency of a set with speed droop becomes ``f + droop P*/Pr``; the no-load voltage becomes
@@ -193,6 +191,10 @@ def trimmed_settings(group: Group) -> Settings | None:
     ----------
     group : Group
         The island.
+    scale : ndarray, shape (load,)
+        Factors of `scale_to` over `LOADS_PU`, as set.
+    as_set : BatchSolution
+        The solution there.
 
     Returns
     -------
@@ -202,35 +204,36 @@ def trimmed_settings(group: Group) -> Settings | None:
     sources = group.at.sources
     v_ref = np.array([s.v_ref_pu for s in sources])
     f_ref = np.array([s.f_no_load_pu for s in sources])
-    own_scale, solution = scale_to(group, np.array([TRIM_LOAD_PU]))
-    if not solution.solved[0]:
-        return None
-    u_wanted = float(solution.source_u_pu[0, group.places].mean())
+    solution, row = as_set, _TRIM_AT
+    u_wanted = float(solution.source_u_pu[row, group.places].mean())
+    settings = None
     for _ in range(_TRIMS):
-        if not solution.solved[0]:
+        if not solution.solved[row]:
             return None
-        _trim_speed(group, solution, f_ref)
-        _trim_voltage(group, solution, v_ref, u_wanted)
+        _trim_speed(group, solution, row, f_ref)
+        _trim_voltage(group, solution, row, v_ref, u_wanted)
         settings = Settings(no_load_voltage_pu=v_ref[None, :], no_load_frequency_pu=f_ref[None, :])
-        solution = solve_scaled(group, own_scale, settings)
+        solution, row = solve_scaled(group, scale[[_TRIM_AT]], settings), 0
     return settings
 
 
-def _trim_speed(group: Group, solution: BatchSolution, f_ref: FloatArray) -> None:
-    p = solution.source_p_kw[0, group.places]
+def _trim_speed(group: Group, solution: BatchSolution, row: int, f_ref: FloatArray) -> None:
+    p = solution.source_p_kw[row, group.places]
     share = share_of(p.sum(), group.p_rated_kw, p, group.shares_kw)
-    f = float(solution.frequency_pu[0, group.island])
+    f = float(solution.frequency_pu[row, group.island])
     for k, s, wanted in zip(group.places, group.sources, share, strict=True):
         if s.speed == Speed.DROOP:
             f_ref[k] = f + s.speed_droop_pu * wanted / s.p_rated_kw
 
 
-def _trim_voltage(group: Group, solution: BatchSolution, v_ref: FloatArray, u_wanted: float) -> None:
-    p = solution.source_p_kw[0, group.places]
-    q = solution.source_q_kvar[0, group.places]
+def _trim_voltage(
+    group: Group, solution: BatchSolution, row: int, v_ref: FloatArray, u_wanted: float
+) -> None:
+    p = solution.source_p_kw[row, group.places]
+    q = solution.source_q_kvar[row, group.places]
     p_share = share_of(p.sum(), group.p_rated_kw, p, group.shares_kw)
     q_share = share_of(q.sum(), group.q_rated_kvar, q, group.shares_kvar)
-    u = solution.source_u_pu[0, group.places]
+    u = solution.source_u_pu[row, group.places]
     u = u + u_wanted - u.mean()
     for n, (k, s) in enumerate(zip(group.places, group.sources, strict=True)):
         at = (p_share[n] / s.s_rated_kva, q_share[n] / s.s_rated_kva)

@@ -47,13 +47,6 @@ class OperatingLoads:
     u_pu: FloatArray
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class _Study:
-    group: Group
-    loads: OperatingLoads
-    options: SharingOptions
-
-
 def operating_loads(
     curve: SharingCurve, p_own_kw: FloatArray, q_own_kvar: FloatArray, u_own_pu: float
 ) -> OperatingLoads:
@@ -106,9 +99,40 @@ def adjusting_margins(
         settings += ["no-load voltage", "voltage droop"]
     if _speed_shared(group.sources):
         settings += ["no-load frequency", "speed droop"]
-    study = _Study(group=group, loads=loads, options=options)
-    margins = (_margin(study, n, setting) for n in range(len(group.sources)) for setting in settings)
-    return tuple(margin for margin in margins if margin is not None)
+    pairs = [(n, name) for name in settings for n in range(len(group.sources))]
+    trials = [t for t in (_trial(group.sources, n, name) for n, name in pairs) if t is not None]
+    if not trials:
+        return ()
+    p, q, u = _shift(group, loads, trials)
+    use = _uses(group, options, p, q, u)
+    names, table = list(use), np.stack(list(use.values()))
+    reach, breaks = table.max(axis=0), table.argmax(axis=0)
+    found, first = [], 0
+    for trial in trials:
+        here = slice(first, first + len(trial.tried))
+        found.append(_margin(group, trial, reach[here], [names[k] for k in breaks[here]]))
+        first += len(trial.tried)
+    return tuple(found)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Trial:
+    """Values [value] of one setting of set `place` to be tried, its own among them."""
+
+    place: int
+    setting: str
+    own: float
+    tried: FloatArray
+
+
+def _trial(sources: tuple[Source, ...], n: int, setting: str) -> _Trial | None:
+    """Return what to try of one setting of one set; None where the set does not have the setting."""
+    own = _own_value(sources[n], setting)
+    if own == 0.0:
+        return None
+    tried = own + np.linspace(*RANGES[setting], _STEPS)
+    tried = np.unique(np.append(tried[tried >= LEAST_DROOP_PU] if "droop" in setting else tried, own))
+    return _Trial(place=n, setting=setting, own=own, tried=tried)
 
 
 def _voltage_shared(sources: tuple[Source, ...]) -> bool:
@@ -134,22 +158,14 @@ def _own_value(source: Source, setting: str) -> float:
     }[setting]
 
 
-def _margin(study: _Study, n: int, setting: str) -> AdjustingMargin | None:
-    """Return the margin of one setting of one set; None where the set does not have the setting."""
-    source = study.group.sources[n]
-    own = _own_value(source, setting)
-    if own == 0.0:
-        return None
-    tried = own + np.linspace(*RANGES[setting], _STEPS)
-    tried = np.unique(np.append(tried[tried >= LEAST_DROOP_PU] if "droop" in setting else tried, own))
-    reach, words = _reach(study, n, setting, tried)
-    at_own = int(np.searchsorted(tried, own))
-    low, low_words = _first_broken(tried[at_own::-1], reach[at_own::-1], words[at_own::-1])
-    high, high_words = _first_broken(tried[at_own:], reach[at_own:], words[at_own:])
+def _margin(group: Group, trial: _Trial, reach: FloatArray, words: list[str]) -> AdjustingMargin:
+    at_own = int(np.searchsorted(trial.tried, trial.own))
+    low, low_words = _first_broken(trial.tried[at_own::-1], reach[at_own::-1], words[at_own::-1])
+    high, high_words = _first_broken(trial.tried[at_own:], reach[at_own:], words[at_own:])
     return AdjustingMargin(
-        genset=source.name,
-        setting=setting,
-        as_set_pu=own,
+        genset=group.sources[trial.place].name,
+        setting=trial.setting,
+        as_set_pu=trial.own,
         low_pu=low,
         low_breaks=low_words,
         high_pu=high,
@@ -167,14 +183,6 @@ def _first_broken(tried: FloatArray, reach: FloatArray, words: list[str]) -> tup
         return float(tried[0]), f"{words[0]}, broken as set"
     part = (1.0 - reach[k - 1]) / (reach[k] - reach[k - 1]) if np.isfinite(reach[k]) else 0.0
     return float(tried[k - 1] + part * (tried[k] - tried[k - 1])), words[k]
-
-
-def _reach(study: _Study, n: int, setting: str, tried: FloatArray) -> tuple[FloatArray, list[str]]:
-    """Return how much of the nearest limit each value uses, 1 at the limit, and what that limit is."""
-    used = _uses(study.group, study.options, *_shift(study.group, study.loads, n, setting, tried))
-    table = np.stack(list(used.values()))
-    names = list(used)
-    return table.max(axis=0), [names[k] for k in table.argmax(axis=0)]
 
 
 def _uses(
@@ -202,43 +210,53 @@ def _uses(
 
 
 def _shift(
-    group: Group, loads: OperatingLoads, n: int, setting: str, tried: FloatArray
+    group: Group, loads: OperatingLoads, trials: list[_Trial]
 ) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Return kW and kvar [value, load, set] and voltage [value, load] with one setting of one set moved."""
+    """Return kW and kvar [value, load, set] and voltage [value, load] for every value of every trial."""
     base = {name: np.array([_own_value(s, name) for s in group.sources]) for name in RANGES}
-    moved = {name: np.repeat(base[name][None, :], len(tried), axis=0) for name in RANGES}
-    moved[setting][:, n] = tried
-    p_total = loads.p_kw.sum(axis=1)
-    p = np.broadcast_to(loads.p_kw, (len(tried), *loads.p_kw.shape))
-    if "speed" in setting or "frequency" in setting:
-        p = p + _kw(group, moved, p_total) - _kw(group, {k: v[None, :] for k, v in base.items()}, p_total)
-    if setting in ("no-load voltage", "voltage droop"):
-        u_old, q_old = _kvar(group, loads, {k: v[None, :] for k, v in base.items()}, loads.p_kw[None])
-        u_new, q_new = _kvar(group, loads, moved, p)
-        return p, loads.q_kvar + q_new - q_old, loads.u_pu + u_new - u_old
-    shape = (len(tried), *loads.q_kvar.shape)
-    return p, np.broadcast_to(loads.q_kvar, shape), np.broadcast_to(loads.u_pu, shape[:2])
+    count = sum(len(t.tried) for t in trials)
+    moved = {name: np.repeat(base[name][None, :], count, axis=0) for name in RANGES}
+    speed, first = np.zeros(count, bool), 0
+    for t in trials:
+        here = slice(first, first + len(t.tried))
+        moved[t.setting][here, t.place] = t.tried
+        speed[here] = t.setting in ("no-load frequency", "speed droop")
+        first += len(t.tried)
+    at_own = {name: values[None, :] for name, values in base.items()}
+    p = np.repeat(loads.p_kw[None], count, axis=0)
+    q = np.repeat(loads.q_kvar[None], count, axis=0)
+    u = np.repeat(loads.u_pu[None], count, axis=0)
+    if speed.any():
+        some = {name: values[speed] for name, values in moved.items()}
+        p[speed] += _kw(group, some, loads) - _kw(group, at_own, loads)
+    if not speed.all():
+        some = {name: values[~speed] for name, values in moved.items()}
+        u_old, q_old = _kvar(group, loads, at_own)
+        u_new, q_new = _kvar(group, loads, some)
+        q[~speed] += q_new - q_old
+        u[~speed] += u_new - u_old
+    return p, q, u
 
 
-def _kw(group: Group, settings: dict[str, FloatArray], p_total: FloatArray) -> FloatArray:
+def _kw(group: Group, settings: dict[str, FloatArray], loads: OperatingLoads) -> FloatArray:
     _, p = share_straight(
         settings["no-load frequency"][:, None, :],
         settings["speed droop"][:, None, :],
         group.p_rated_kw,
-        p_total[None, :],
+        loads.p_kw.sum(axis=1)[None, :],
     )
     return p
 
 
 def _kvar(
-    group: Group, loads: OperatingLoads, settings: dict[str, FloatArray], p_kw: FloatArray
+    group: Group, loads: OperatingLoads, settings: dict[str, FloatArray]
 ) -> tuple[FloatArray, FloatArray]:
     rating = np.array([s.s_rated_kva for s in group.sources])
     phasor = np.array([s.law == Law.PHASOR for s in group.sources])
     return share_reactive(
         settings["no-load voltage"][:, None, :],
         _reactances(group.sources, settings)[:, None, :],
-        np.where(phasor, p_kw / rating, 0.0),
+        np.where(phasor, loads.p_kw / rating, 0.0)[None],
         rating,
         loads.q_kvar.sum(axis=1)[None, :],
     )

@@ -89,7 +89,7 @@ def share_reactive(
     """Return bus voltage and reactive power of each set under the phasor law of load compensation.
 
     Solves ``sum r_i q_i(V) = total`` with ``q_i(V) = (V/Xc)(sqrt(Vref^2 - (Xc P/V)^2) - V)``, each clamped at
-    its limits, by bisection between the noses of the sets and twice the highest set-point, where q_i only
+    its limits, by root finding between the noses of the sets and twice the highest set-point, where q_i only
     falls. One set without droop holds its set-point while it is within its limits. With `p_pu` = 0 the law is
     that of a regulator that works on reactive current alone.
 
@@ -145,11 +145,40 @@ def share_reactive(
     total_1 = q_tot[..., 0]
     if np.any(np.sum(each(low), axis=-1) < total_1) or np.any(np.sum(each(high), axis=-1) > total_1):
         raise ValueError("there is no voltage at which the sets carry this reactive load")
+    v = _bisect(each, low, high, total_1) if stiff.any() else _common_voltage(each, low, high, total_1)
+    return _settle_stiff(v, each, v_ref, stiff, total_1)
+
+
+def _bisect(
+    each: Callable[[FloatArray], FloatArray], low: FloatArray, high: FloatArray, total: FloatArray
+) -> FloatArray:
+    """Return the voltage between two at which the sets' powers, falling with it, add up to the total."""
     for _ in range(80):
         middle = 0.5 * (low + high)
-        above = np.sum(each(middle), axis=-1) >= total_1
+        above = np.sum(each(middle), axis=-1) >= total
         low, high = np.where(above, middle, low), np.where(above, high, middle)
-    return _settle_stiff(0.5 * (low + high), each, v_ref, stiff, total_1)
+    return np.asarray(0.5 * (low + high))
+
+
+def _common_voltage(
+    each: Callable[[FloatArray], FloatArray], low: FloatArray, high: FloatArray, total: FloatArray
+) -> FloatArray:
+    """Return the same as `_bisect` by the secant through two trial voltages, kept inside the bracket."""
+    old, v = high, 0.5 * (low + high)
+    excess_old = np.sum(each(old), axis=-1) - total
+    for _ in range(80):
+        excess = np.sum(each(v), axis=-1) - total
+        low, high = np.where(excess >= 0.0, v, low), np.where(excess >= 0.0, high, v)
+        moved = excess != excess_old
+        slope = np.where(moved, (excess - excess_old) / np.where(v != old, v - old, 1.0), -1.0)
+        step = np.where(excess == 0.0, 0.0, -excess / slope)
+        better = v + step
+        inside = (better >= low) & (better <= high) & moved
+        old, excess_old = v, excess
+        v = np.where(inside, better, 0.5 * (low + high))
+        if np.max(np.abs(v - old), initial=0.0) < 1e-14:
+            break
+    return np.asarray(v)
 
 
 def _settle_stiff(
