@@ -21,9 +21,11 @@ from study.workbook.headings import edit_distance, folded, heading_key
 from study.workbook.items import project, read_acceptance, read_project
 from study.workbook.links import Names, check_references, check_unique, enter_names, settle_spellings
 from study.workbook.places import CellPlaces
+from study.workbook.plausible import check_plausible
 from study.workbook.reader import RawBook, RawSheet, read_raw
 from study.workbook.sheets import BY_NAME, SHEETS
 from study.workbook.tables import Row, Table, find_table, read_rows
+from study.workbook.topology import Plan
 
 ITEM_SHEETS: Final = ("Project", "Acceptance")
 # A letter in five letters: Notes is not a misspelt Modes.
@@ -108,6 +110,7 @@ def check_raw(book: RawBook) -> tuple[Plant | None, tuple[Issue, ...]]:
     states, on = modes.running_states(reading.rows, names, reading.modes, reading.found)
     asked, duties = modes.demands(reading.rows, names, reading.modes, reading.found)
     reading.assumptions += on + duties
+    check_plausible(Plan(rows=reading.rows, names=names, found=reading.found), reading.modes)
     if reading.found.any_fault:
         return None, reading.found.in_order()
     broken = [
@@ -151,8 +154,9 @@ def _read_items(reading: Reading) -> None:
     table = reading.tables.get("Project")
     reading.project, assumed, rows = read_project(table, spec, reading.found, reading.not_read)
     reading.assumptions += assumed
-    for item, number in rows.items() if table is not None else ():
-        reading.places["Project", item] = place("Project", table.at[None, "value"], number)
+    if table is not None:
+        column = table.at.get((None, "value"), table.key_column)
+        reading.places |= {("Project", item): place("Project", column, row) for item, row in rows.items()}
     reading.acceptance = read_acceptance(reading.tables.get("Acceptance"), reading.found)
     for limit in reading.acceptance:
         reading.places["Acceptance", limit.quantity] = limit.cell

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping, Sequence
-from typing import Any
+from typing import Any, Final
 
 from study.model.modes import Demand, DutyKind, Event, Interlock, Mode, SetPoint, State, Transfer
 from study.model.plant import Assumption
@@ -14,7 +14,7 @@ from study.workbook.links import Names, RowsBySheet
 from study.workbook.sheets import SOURCE_SHEETS
 from study.workbook.tables import Row, Table
 
-DEFAULT_DUTY = "continuous"
+DEFAULT_DUTY: Final[DutyKind] = "continuous"
 
 
 def check_mode_headings(tables: Mapping[str, Table], modes: Sequence[str], found: Findings) -> None:
@@ -59,36 +59,30 @@ def running_states(
             if state is not None:
                 states[mode][equipment] = state
             elif (mode, "state") in row.table.at and f"{mode}: state" not in row.broken:
-                _blank_state(row, equipment, mode, is_source, states, assumptions, found)
+                if is_source:
+                    _report_stateless(row, equipment, mode, found)
+                else:
+                    states[mode][equipment] = "on"
+                    assumptions.append(_assumed_on(row, equipment, mode))
     _check_listed(rows, names, listed, found)
     return states, assumptions
 
 
-def _blank_state(
-    row: Row,
-    equipment: str,
-    mode: str,
-    is_source: bool,
-    states: dict[str, dict[str, State]],
-    assumptions: list[Assumption],
-    found: Findings,
-) -> None:
-    if is_source:
-        found.add(
-            "missing-state", row.sheet, row.cell("state", mode), f"{equipment} has no state in the mode {mode}",
-            "write on, off or standby",
-        )  # fmt: skip
-        return
-    states[mode][equipment] = "on"
-    assumptions.append(
-        Assumption(
-            equipment=equipment,
-            quantity=f"state in {mode}",
-            value="on",
-            unit="",
-            source="what is not switched off is on",
-            cell=row.place("state", mode),
-        )
+def _report_stateless(row: Row, equipment: str, mode: str, found: Findings) -> None:
+    found.add(
+        "missing-state", row.sheet, row.cell("state", mode),
+        f"{equipment} has no state in the mode {mode}", "write on, off or standby",
+    )  # fmt: skip
+
+
+def _assumed_on(row: Row, equipment: str, mode: str) -> Assumption:
+    return Assumption(
+        equipment=equipment,
+        quantity=f"state in {mode}",
+        value="on",
+        unit="",
+        source="what is not switched off is on",
+        cell=row.place("state", mode),
     )
 
 
@@ -115,67 +109,62 @@ def demands(
         if load is None:
             continue
         for mode in modes:
-            demand = _demand(row, load, mode, names, assumptions, found)
-            if demand is not None:
-                asked[mode][load] = demand
+            values = row.modes.get(mode)
+            if not values or not _is_asked(row, mode, values, found):
+                continue
+            _check_installed(row, mode, values["in_use"], names, found)
+            if "duty" not in values:
+                assumptions.append(_assumed_duty(row, load, mode))
+            asked[mode][load] = Demand(
+                in_use=values["in_use"],
+                load_factor=values["load_factor"] / 100.0,
+                duty=values.get("duty", DEFAULT_DUTY),
+                cell=row.place("in_use", mode),
+            )
     return asked, assumptions
 
 
-def _demand(
-    row: Row, load: str, mode: str, names: Names, assumptions: list[Assumption], found: Findings
-) -> Demand | None:
-    values = row.modes.get(mode)
-    if not values:
-        return None
-    in_use, factor, duty = values.get("in_use"), values.get("load_factor"), values.get("duty")
-    if not in_use:
-        _check_unused_demand(row, load, mode, values, found)
-        return None
-    if factor is None:
-        if f"{mode}: load_factor" not in row.broken and (mode, "load_factor") in row.table.at:
-            found.add(
-                "missing-load-factor", row.sheet, row.cell("load_factor", mode),
-                f"{load} has {in_use:.10g} in use in the mode {mode} and no load factor", "give it in per cent",
-            )  # fmt: skip
-        return None
-    _check_installed(row, load, mode, in_use, names, found)
-    if duty is None:
-        duty = _assumed_duty(row, load, mode, assumptions)
-    return Demand(in_use=in_use, load_factor=factor / 100.0, duty=duty, cell=row.place("in_use", mode))
-
-
-def _check_unused_demand(row: Row, load: str, mode: str, values: Mapping[str, Any], found: Findings) -> None:
-    blank = "in_use" not in values and f"{mode}: in_use" not in row.broken
-    if blank and values.get("load_factor") and (mode, "in_use") in row.table.at:
+def _is_asked(row: Row, mode: str, values: Mapping[str, Any], found: Findings) -> bool:
+    """Return True where units are in use and their load factor is known; report what is left out."""
+    in_use, factor = values.get("in_use"), values.get("load_factor")
+    if in_use and factor is not None:
+        return True
+    if in_use and f"{mode}: load_factor" not in row.broken and (mode, "load_factor") in row.table.at:
+        found.add(
+            "missing-load-factor", row.sheet, row.cell("load_factor", mode),
+            f"{row.name} has {in_use:.10g} in use in the mode {mode} and no load factor",
+            "give it in per cent",
+        )  # fmt: skip
+    elif (
+        in_use is None and factor and f"{mode}: in_use" not in row.broken and (mode, "in_use") in row.table.at
+    ):
         found.add(
             "in-use-without-demand", row.sheet, row.cell("in_use", mode),
-            f"{load} has a load factor in the mode {mode} and no units in use, so it asks for nothing",
+            f"{row.name} has a load factor in the mode {mode} and no units in use, so it asks for nothing",
             "write the number of units, or 0",
-            "warning",
+            severity="warning",
         )  # fmt: skip
+    return False
 
 
-def _check_installed(row: Row, load: str, mode: str, in_use: float, names: Names, found: Findings) -> None:
-    installed = names.rows[load].values.get("installed")
+def _check_installed(row: Row, mode: str, in_use: float, names: Names, found: Findings) -> None:
+    installed = names.rows[row.name].values.get("installed")
     if installed is not None and in_use > installed:
         found.add(
             "too-many-in-use", row.sheet, row.cell("in_use", mode),
-            f"{load} has {in_use:.10g} in use and {installed} installed", "correct one of the two",
+            f"{row.name} has {in_use:.10g} in use and {installed} installed", "correct one of the two",
         )  # fmt: skip
 
 
-def _assumed_duty(row: Row, load: str, mode: str, assumptions: list[Assumption]) -> DutyKind:
-    assumptions.append(
-        Assumption(
-            equipment=load,
-            quantity=f"duty in {mode}",
-            value=DEFAULT_DUTY,
-            unit="",
-            source="counts in full; the safe side for the balance",
-            cell=row.place("duty", mode),
-        )
+def _assumed_duty(row: Row, load: str, mode: str) -> Assumption:
+    return Assumption(
+        equipment=load,
+        quantity=f"duty in {mode}",
+        value=DEFAULT_DUTY,
+        unit="",
+        source="counts in full; the safe side for the balance",
+        cell=row.place("duty", mode),
     )
-    return "continuous"
 
 
 def check_services(rows: RowsBySheet, found: Findings) -> None:

@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Hashable, Mapping
 from dataclasses import fields
 from functools import cache
-from typing import Any, TypeVar
+from typing import Any, TypeVar, cast
 
 from study.workbook.columns import SheetSpec
 from study.workbook.tables import Row
@@ -14,7 +14,7 @@ _Made = TypeVar("_Made")
 
 
 @cache
-def _field_names(kind: type) -> tuple[str, ...]:
+def _field_names(kind: Any) -> tuple[str, ...]:
     return tuple(field.name for field in fields(kind))
 
 
@@ -48,4 +48,9 @@ def model_values(row: Row) -> dict[str, Any]:
 
 def make(made: type[_Made], values: Mapping[str, Any], /, **others: Any) -> _Made:
     """Return a dataclass from the values of its fields; `others` go before `values`."""
-    return made(**{name: others[name] if name in others else values[name] for name in _field_names(made)})
+    return made(
+        **{
+            name: others[name] if name in others else values[name]
+            for name in _field_names(cast(Hashable, made))
+        }
+    )

@@ -29,7 +29,7 @@ def is_blank(value: object) -> bool:
 
     Examples
     --------
-    >>> is_blank(None), is_blank("\\xa0 "), is_blank(0.0)
+    >>> is_blank(None), is_blank(" "), is_blank(0.0)
     (True, True, False)
     """
     return value is None or (type(value) is str and not value.strip())
@@ -196,7 +196,7 @@ def plain(value: Any) -> str | None:
 
     Examples
     --------
-    >>> plain(101.0), plain(" DG\\n1 "), plain(True)
+    >>> plain(101.0), plain(" DG  1 "), plain(True)
     ('101', 'DG 1', None)
     """
     if isinstance(value, (bool, datetime)):

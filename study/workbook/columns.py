@@ -12,6 +12,9 @@ from typing import Any, Literal
 Kind = Literal["number", "integer", "text", "choice", "yes-no", "date", "reference", "references"]
 Blank = Literal["required", "typical", "none", "unknown"]
 
+GIVEN: tuple[str, ...] = ("given",)
+"""Stands for any value in the condition of a column."""
+
 Values = Mapping[str, Any]
 """One row by field name; numbers are in the unit of the column's own heading."""
 
@@ -181,7 +184,10 @@ class Column:
 
     def applies(self, values: Values) -> bool:
         """Return True where the column is used in this row."""
-        return all(values.get(field) in allowed for field, allowed in self.when)
+        return all(
+            values.get(field) is not None if allowed is GIVEN else values.get(field) in allowed
+            for field, allowed in self.when
+        )
 
     def to_model(self, value: Any) -> Any:
         """Return the value in the model's unit: per cent become plain fractions.

@@ -106,7 +106,7 @@ class Findings:
         self._seen: set[tuple[str, str, str]] = set()
 
     def add(
-        self, code: str, sheet: str, cell: str, found: str, wanted: str, severity: Severity = "fault"
+        self, code: str, sheet: str, cell: str, found: str, wanted: str, *, severity: Severity = "fault"
     ) -> None:
         """Add one issue; the same code on the same cell is added once.
 

@@ -130,7 +130,7 @@ def _report_unused(row: Row, column: Column, found: Findings) -> None:
     )
     found.add(
         "not-used", row.sheet, row.cell(column.field), f"{row.name}: {column.name} is not used here",
-        f"it is used where {reason}", "note",
+        f"it is used where {reason}", severity="note",
     )  # fmt: skip
 
 

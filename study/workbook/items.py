@@ -44,67 +44,54 @@ def read_project(
     values: dict[str, Any] = {}
     rows: dict[str, int] = {}
     for number, cells in table.data_rows():
-        match = _item(table, number, cells, index, found, not_read)
-        if match is None:
+        text = plain(cells.get(table.at[None, "item"]) or "")
+        match = _item(table, number, text, index, found)
+        if not isinstance(match, Match):
+            if match is None:
+                not_read.append(f"{place(spec.name, table.key_column, number)}: item {shown(text)}")
             continue
         if match.column.name in rows:
             found.add(
                 "doubled-item", spec.name, table.cell(number, "item"),
-                f"{match.column.name} stands in row {rows[match.column.name]} already", "keep one of the rows",
+                f"{match.column.name} stands in row {rows[match.column.name]} already",
+                "keep one of the rows",
             )  # fmt: skip
             continue
         rows[match.column.name] = number
-        _value(table, number, cells, match, values, found)
+        raw = cells.get(table.at.get((None, "value"), -1))
+        if not is_blank(raw):
+            values[match.column.field] = _value(table, number, raw, match, found)
     return values, _fill(table, spec, values, rows, found), rows
 
 
 def _item(
-    table: Table,
-    number: int,
-    cells: Mapping[int, Any],
-    index: HeadingIndex,
-    found: Findings,
-    not_read: list[str],
-) -> Match | None:
-    text = plain(cells.get(table.at[None, "item"]) or "")
+    table: Table, number: int, text: str | None, index: HeadingIndex, found: Findings
+) -> Match | Misfit | None:
     cell = table.cell(number, "item")
     if not text:
-        found.add(
-            "missing-name", table.spec.name, cell, "the row has no item", "name the item, or clear the row"
-        )
-        return None
+        wanted = "name the item, or clear the row"
+        found.add("missing-name", table.spec.name, cell, "the row has no item", wanted)
+        return Misfit(code="missing-name", found="", wanted="")
     match = index.recognise(text)
-    if isinstance(match, Misfit) and match.code == "missing-unit":
-        column = next(c for c in table.spec.items if heading_key(c.name) == heading_key(text))
-        return Match(column=column, factor=1.0)
-    if isinstance(match, Misfit):
-        code = "near-miss-item" if match.code == "near-miss-heading" else match.code
-        said = match.found.replace("the heading", "it")
-        found.add(
-            code,
-            table.spec.name,
-            cell,
-            f"item {shown(text)}: {said}",
-            match.wanted.replace("heading", "item"),
-        )
-        return None
-    if match is None:
-        not_read.append(f"{place(table.spec.name, table.key_column, number)}: item {shown(text)}")
+    if not isinstance(match, Misfit):
+        return match
+    if match.code == "missing-unit":
+        # The items of the contract have no unit of their own: the number is in the unit of the item.
+        wanted = heading_key(split_heading(text)[0])
+        return Match(column=next(c for c in table.spec.items if heading_key(c.name) == wanted), factor=1.0)
+    code = "near-miss-item" if match.code == "near-miss-heading" else match.code
+    said = match.found.replace("the heading", "it")
+    wanted = match.wanted.replace("heading", "item")
+    found.add(code, table.spec.name, cell, f"item {shown(text)}: {said}", wanted)
     return match
 
 
-def _value(
-    table: Table, number: int, cells: Mapping[int, Any], match: Match, values: dict[str, Any], found: Findings
-) -> None:
-    raw = cells.get(table.at.get((None, "value"), -1))
-    if is_blank(raw):
-        return
+def _value(table: Table, number: int, raw: Any, match: Match, found: Findings) -> Any:
     read = read_cell(raw, match)
     if isinstance(read, Refused):
         found.add(read.code, table.spec.name, table.cell(number, "value"), read.found, read.wanted)
-        values[match.column.field] = None
-    else:
-        values[match.column.field] = read
+        return None
+    return read
 
 
 def _fill(

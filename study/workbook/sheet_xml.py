@@ -131,8 +131,8 @@ def plain_text(text: str) -> str:
 
     Examples
     --------
-    >>> plain_text("a_x000A_b")
-    'a\\nb'
+    >>> plain_text("a_x0020_b")
+    'a b'
     """
     if "_x" not in text:
         return text

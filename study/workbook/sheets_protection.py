@@ -7,6 +7,7 @@ from typing import get_args
 from study.model.protection import DeviceKind, FunctionKind
 from study.workbook import typical as rule
 from study.workbook.columns import (
+    GIVEN,
     NOT_NEGATIVE,
     POSITIVE,
     POWER_FACTOR,
@@ -29,7 +30,9 @@ from study.workbook.sheets_modes import ANY_EQUIPMENT, BRANCHES
 
 PRACTICE = "common practice, no source"
 PROTECTED = ("Boards", *SOURCES, "Synchronous motors", *BRANCHES, "Filters", "Loads")
-BREAKER = ("circuit breaker", "overcurrent relay")
+BREAKER = (("kind", ("circuit breaker",)),)
+RELEASE = (("kind", ("circuit breaker", "overcurrent relay")),)
+NO_FUSE = (("kind", ("circuit breaker", "overcurrent relay", "thermal overload")),)
 SETTINGS = (
     "Long-time current",
     "Long-time delay",
@@ -77,11 +80,11 @@ SETTING_COLUMNS: tuple[Column, ...] = (
     number("Long-time delay", "s", "long_time_delay_s", above(0.0, 3600.0), "at the multiple beside it"),
     number(
         "Long-time delay at", "x Ir", "long_time_delay_at", between(1.05, 20.0), "",
-        when=(("kind", ("circuit breaker",)),), **typical(6.0, PRACTICE),
+        when=(*BREAKER, ("long_time_delay_s", GIVEN)), **typical(6.0, PRACTICE),
     ),
     choice(
         "Long-time law", "long_time_law", ("I2t", "I4t"), "",
-        when=(("kind", ("circuit breaker",)),), **typical("I2t", PRACTICE),
+        when=(*BREAKER, ("long_time_a", GIVEN)), **typical("I2t", PRACTICE),
     ),
     number("Short-time current", "A", "short_time_a", POSITIVE, "Isd, or off; blank: none", words=("off",)),
     number("Short-time delay", "s", "short_time_delay_s", between(0.0, 60.0), "blank: none"),
@@ -93,26 +96,26 @@ SETTING_COLUMNS: tuple[Column, ...] = (
     choice(
         "Instantaneous senses", "instantaneous_senses", ("rms", "peak"),
         "magnetic: peak; electronic: as the maker says",
-        when=(("kind", BREAKER),),
+        when=RELEASE,
         **typical("peak", "magnetic releases see the peak; the worse case for discrimination"),
     ),
     number("Earth-fault current", "A", "earth_fault_a", POSITIVE, "blank: none"),
     number("Earth-fault delay", "s", "earth_fault_delay_s", between(0.0, 60.0), "blank: none"),
     number(
         "Current tolerance", "%", "current_tolerance", between(0.0, 50.0), "plus and minus",
-        **typical(20.0, "short-circuit releases of IEC 60947-2, from memory"),
+        when=NO_FUSE, **typical(20.0, "short-circuit releases of IEC 60947-2, from memory"),
     ),
     number(
         "Time tolerance", "%", "time_tolerance", between(0.0, 100.0), "plus and minus",
-        **typical(20.0, PRACTICE),
+        when=NO_FUSE, **typical(20.0, PRACTICE),
     ),
     number(
         "Opening time min", "s", "opening_time_min_s", between(0.0, 2.0), "release to contacts apart",
-        **derived(rule.opening_time_min, "0.01 s; 0 for a fuse", PRACTICE),
+        when=RELEASE, **derived(rule.opening_time_min, "0.01 s", PRACTICE),
     ),
     number(
         "Breaking time max", "s", "breaking_time_max_s", between(0.0, 5.0), "release to arc out",
-        **derived(rule.breaking_time_max, "0.08 s; 0 for a fuse", PRACTICE),
+        when=RELEASE, **derived(rule.breaking_time_max, "0.08 s", PRACTICE),
     ),
 )  # fmt: skip
 

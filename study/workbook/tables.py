@@ -131,8 +131,11 @@ def find_table(
     table = Table(spec=spec, header_row=number, placed=(), raw=rows)
     placed: list[Placed] = []
     for column, value in sorted(rows[number].items()):
-        match = _heading(table, column, value, index, found, not_read) if column >= first else None
-        if match is not None:
+        text = _heading_text(table, column, value, found) if column >= first else None
+        match = None if text is None else _heading(table, column, text, index, found)
+        if match is None and text is not None:
+            _report_unknown(table, column, text, found, not_read)
+        if isinstance(match, Match):
             placed.append(Placed(column_number=column, match=match, text=str(value)))
             table.at[match.mode, match.column.field] = column
             table.heading_columns[_plain_heading(spec, match)] = column
@@ -180,34 +183,32 @@ def _report_no_header(spec: SheetSpec, rows: Rows, found: Findings) -> None:
     found.add("missing-header", spec.name, "", "the sheet has no row of headings", wanted)
 
 
-def _heading(
-    table: Table, column: int, value: Any, index: HeadingIndex, found: Findings, not_read: list[str]
-) -> Match | None:
-    """Return the heading of one column, or report why it is not read."""
-    sheet, cell = table.spec.name, address(column, table.header_row)
-    text = plain(value) if not isinstance(value, _NO_TEXT) else None
+def _heading_text(table: Table, column: int, value: Any, found: Findings) -> str | None:
+    """Return a heading's text; None where there is none or it is a remark."""
+    text = None if isinstance(value, _NO_TEXT) else plain(value)
     if text is None:
         found.add(
-            "error-value" if isinstance(value, ErrorValue) else "no-stored-value",
-            sheet, cell, f"the heading is {shown(value)}", "type the heading as text",
+            "error-value" if isinstance(value, ErrorValue) else "no-stored-value", table.spec.name,
+            address(column, table.header_row), f"the heading is {shown(value)}", "type the heading as text",
         )  # fmt: skip
         return None
-    if not text or text.startswith(REMARK):
-        return None
+    return None if not text or text.startswith(REMARK) else text
+
+
+def _heading(
+    table: Table, column: int, text: str, index: HeadingIndex, found: Findings
+) -> Match | Misfit | None:
+    """Return what the heading of one column means; report one that is at fault."""
+    sheet, cell = table.spec.name, address(column, table.header_row)
     match = index.recognise(text)
     if isinstance(match, Misfit):
         found.add(match.code, sheet, cell, f"heading {shown(text)}: {match.found}", match.wanted)
-        return None
-    if match is None:
-        _report_unknown(table, column, text, found, not_read)
-        return None
-    if (match.mode, match.column.field) in table.at:
+        return match
+    if match is not None and (match.mode, match.column.field) in table.at:
         other = address(table.at[match.mode, match.column.field], table.header_row)
-        found.add(
-            "doubled-heading", sheet, cell, f"heading {shown(text)} stands in {other} already",
-            "keep one of them",
-        )  # fmt: skip
-        return None
+        said = f"heading {shown(text)} stands in {other} already"
+        found.add("doubled-heading", sheet, cell, said, "keep one of them")
+        return Misfit(code="doubled-heading", found=said, wanted="")
     return match
 
 
@@ -282,14 +283,14 @@ def _remark_on(row: Row, placed: Placed, value: Any, read: Any, found: Findings)
             "unusual-value", row.sheet, address(placed.column_number, row.number),
             f"{column.name} is {_with_unit(read, column)}",
             f"usual is {usual.words(column.unit)}; check the unit of the heading",
-            "warning",
+            severity="warning",
         )  # fmt: skip
     if type(value) is Percent and column.is_percent:
         found.add(
             "percent-read", row.sheet, address(placed.column_number, row.number),
             f"{column.name} is shown as a percentage and read as {_with_unit(read, column)}",
             "format the cell as a plain number",
-            "note",
+            severity="note",
         )  # fmt: skip
 
 

@@ -252,9 +252,9 @@ def ambient(row: Values) -> float:
 
 def opening_time_min(row: Values) -> float:
     """Return the shortest opening time of a device [s]."""
-    return 0.0 if row["kind"] == "fuse" else 0.01
+    return 0.01 if row["kind"] in {"circuit breaker", "overcurrent relay"} else 0.0
 
 
 def breaking_time_max(row: Values) -> float:
     """Return the longest breaking time of a device [s]."""
-    return 0.0 if row["kind"] == "fuse" else 0.08
+    return 0.08 if row["kind"] in {"circuit breaker", "overcurrent relay"} else 0.0
