@@ -68,6 +68,8 @@ def add_load(book: Book, *line: object, **columns: object) -> None:
     }
     if kind == "motor":
         row |= {"Starting method": "direct", "Poles": 4, "Load torque law": "fan"}
+        if columns.get("for_") in ("propulsion", "steering"):
+            row["Restart delay after blackout [s]"] = book.next_restart_s()
     row["Rated voltage [V]"] = book.consumer_volts.get(book.volts[str(board)], book.volts[str(board)])
     fused = columns.pop("fused", False)
     row |= {LOAD_COLUMNS[key]: value for key, value in columns.items()}

@@ -174,8 +174,8 @@ OUTSIDE = """
 
 # which modes each diesel set runs in, as in the Running sheet
 SETS = (
-    (1, "ER1-P", "port", "TMKPL"),
-    (2, "ER2-P", "port", "SA"),
+    (1, "ER1-P", "port", "TSMKPL"),
+    (2, "ER2-P", "port", "A"),
     (3, "ER2-P", "port", "PL"),
     (4, "ER1-S", "starboard", "TSMKPL"),
     (5, "ER2-S", "starboard", ""),

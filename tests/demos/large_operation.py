@@ -82,8 +82,8 @@ def _running(book: Book) -> None:
     book.running(
         {
             # transit, slow, manoeuvring, closed ring, two parts, lift, harbour, anchor, shore, emergency
-            "DG1": "on off on on on on off off off off",
-            "DG2": "standby on standby standby standby standby standby on off off",
+            "DG1": "on on on on on on off off off off",
+            "DG2": "standby standby standby standby standby standby standby on off off",
             "DG3": "standby standby standby standby on on off standby off off",
             "DG4": "on on on on on on off standby off off",
             "DG5": "standby standby standby standby standby standby off off off off",
@@ -102,6 +102,8 @@ def _running(book: Book) -> None:
             "BT-450": "off off off off off off on off on off",
             "BT-LDB": "off off off off off off off off off off",
             "C-ESB": "on on on on on on on on on off",
+            "C-THR-F-2": " ".join(["standby"] * 9 + ["off"]),
+            "C-THR-A-2": " ".join(["standby"] * 9 + ["off"]),
             "FLT-P": "off off off on on on off off off off",
             "FLT-S": "off off off on on on off off off off",
             "FLT-MV": "on on on off off off off off off off",
@@ -132,7 +134,7 @@ def _events(book: Book) -> None:
         ("Thruster step", "Station keeping closed ring", "load step", "Bow thruster 1", 600, "kW", 0.5),
         ("One large set trips", "Station keeping in two parts", "set trip", "DG3", None, None, 0.5),
         ("Set trips in transit", "Transit", "set trip", "DG4", None, None, 0.5),
-        ("Propulsion throws off", "Slow transit", "load rejection", "DG2", 80, "%", 0.5),
+        ("Propulsion throws off", "Slow transit", "load rejection", "DG1", 80, "%", 0.5),
         ("Voltage of DG4 raised", "Transit", "set-point step", "DG4", 103, "% no-load voltage", 0.5),
         ("Droop of DG1 changed", "Transit", "droop changed", "DG1", 5, "% voltage droop", 0.5),
         ("Field of DG6 lost", "Transit", "field loss", "DG6", None, None, 0.5),

@@ -12,6 +12,7 @@ PORT: dict[str, object] = {"Redundancy group": "Port"}
 STARBOARD: dict[str, object] = {"Redundancy group": "Starboard"}
 SIDES: tuple[tuple[str, dict[str, object]], ...] = (("P", PORT), ("S", STARBOARD))
 
+ACTIVE = "Typical active front end"
 SMALL_PANELS = ("L-THR-F", "L-THR-A", "L-WORK", "L-SWB", "L-DECK-F", "L-DECK-A")
 
 
@@ -101,7 +102,7 @@ def _sources(book: Book) -> None:
         )
     alone: dict[str, object] = {"Governor mode": "isochronous", "No-load frequency [%]": 100.0}
     harbour = alone | {"Service": "harbour", "Starts at island load [%]": None, "No-load voltage [%]": 101.0}
-    genset(book, ("HG", "SWB-S"), (1600, 1350), ("LV 800", "shunt"), 25, also=harbour, short=(2.0, 0.4))
+    genset(book, ("HG", "SWB-S"), (1700, 1450), ("LV 800", "shunt"), 25, also=harbour, short=(2.0, 0.4))
     emergency = alone | {
         "Service": "emergency",
         "Starts at island load [%]": None,
@@ -109,7 +110,7 @@ def _sources(book: Book) -> None:
         "Largest engine load step [%]": 60,
     }
     genset(book, ("EDG", "ESB"), (800, 700), ("LV 800", "permanent magnet"), 12, also=emergency)
-    book.add("Shore supplies", SHORE_HEADINGS, ("Shore", "SWB-P", 450, 60, 1600, 30, 12, 0.4))
+    book.add("Shore supplies", SHORE_HEADINGS, ("Shore", "SWB-P", 460, 60, 1600, 35, 25, 0.4))
     book.cable("C-Shore", ("Shore", "SWB-P"), 1600, 40, board="SWB-P", cores="3 single")
     book.breaker(
         "Q-Shore", "C-Shore", "SWB-P", 1600, icw_ka=65, ir=1600, tr=10, tr_at=2, isd=6400, tsd=0.4, ii="off"
@@ -119,51 +120,16 @@ def _sources(book: Book) -> None:
         "Supply|Board|Rated apparent power [kVA]|Control|Set power [kW]|Set reactive power [kvar]"
         "|Voltage droop [%]|Speed droop [%]|Stored energy [kWh]|Short-circuit current [x In]"
         "|Short-circuit duration [s]|Spectrum",
-        (
-            "BATT-P",
-            "LV690-P",
-            1500,
-            "grid forming",
-            None,
-            None,
-            3.0,
-            4.0,
-            1000,
-            1.5,
-            3,
-            "Typical active front end",
-        ),
-        (
-            "BATT-S",
-            "LV690-S",
-            1500,
-            "grid following",
-            0,
-            0,
-            None,
-            None,
-            1000,
-            1.3,
-            3,
-            "Typical active front end",
-        ),
+        ("BATT-P", "LV690-P", 2200, "grid forming", None, None, 3.0, 4.0, 1500, 1.5, 3, ACTIVE),
+        ("BATT-S", "LV690-S", 1500, "grid following", 0, 0, None, None, 1000, 1.3, 3, ACTIVE),
     )
-    for name, board in (("BATT-P", "LV690-P"), ("BATT-S", "LV690-S")):
-        amps = sizing.line_current_a(1500, 690)
+    for name, board, kva, frame in (("BATT-P", "LV690-P", 2200, 2500), ("BATT-S", "LV690-S", 1500, 1600)):
+        amps = sizing.line_current_a(kva, 690)
         book.cable(f"C-{name}", (name, board), 1.1 * amps, 28, board=board, cores="3 single")
         book.breaker(
-            f"Q-{name}",
-            f"C-{name}",
-            board,
-            1600,
-            icw_ka=50,
-            ir=1380,
-            tr=10,
-            tr_at=2,
-            isd=2400,
-            tsd=0.2,
-            ii="off",
-        )
+            f"Q-{name}", f"C-{name}", board, frame, icw_ka=50, ir=round(1.1 * amps), tr=10, tr_at=2,
+            isd=round(1.25 * amps), tsd=0.2, ii="off",
+        )  # fmt: skip
 
 
 def _synchronous_motor(book: Book) -> None:
@@ -223,11 +189,17 @@ def _medium_voltage(book: Book) -> None:
     for name, board, to in (("T-690-P", "MV-2", "LV690-P"), ("T-690-S", "MV-4", "LV690-S")):
         _step_down(book, name, (board, to), 2500, (7.0, 21.0, 5.0))
     for name, board, to in (("T-450-P", "MV-1", "SWB-P"), ("T-450-S", "MV-3", "SWB-S")):
-        _step_down(book, name, (board, to), 2500, (8.0, 21.0, 5.0))
+        _step_down(book, name, (board, to), 2500, (8.0, 21.0, 5.0), no_load_v=462)
 
 
 def _step_down(
-    book: Book, name: str, ends: tuple[str, str], kva: float, figures: tuple[float, float, float]
+    book: Book,
+    name: str,
+    ends: tuple[str, str],
+    kva: float,
+    figures: tuple[float, float, float],
+    *,
+    no_load_v: float = 690,
 ) -> None:
     transformer(
         book,
@@ -236,6 +208,7 @@ def _step_down(
         kva,
         figures,
         lengths_m=(38, 14),
+        volts=(6600, no_load_v),
         primary=(7, 0.35),
         secondary=(4, 0.3),
         also={"Vector group": "Dyn11", "X0/X1": 0.95, "R0/R1": 1.0},
@@ -294,6 +267,9 @@ def _distribution(book: Book) -> None:
         feeder(book, (f"SWB-{side}", f"PROP-{side}"), 160, 40, short=(6, 0.2))
         feeder(book, (f"SWB-{side}", f"PUMP-{side}"), 520, 44, short=(5, 0.2))
     feeder(book, ("SWB-P", "ESB"), 900, 62, short=(5, 0.25), switch_at_end=True)
+    # second feeds of the thruster rooms, normally open
+    feeder(book, ("SWB-S", "THR-F"), 200, 74, name="THR-F-2", short=(6, 0.2))
+    feeder(book, ("SWB-P", "THR-A"), 200, 68, name="THR-A-2", short=(6, 0.2))
     for n in (1, 2, 3, 4):
         feeder(book, ("SWB-P" if n in (1, 3) else "SWB-S", f"HVAC-{n}"), 420, 50 + 6 * n, short=(6, 0.2))
     for board, to, amps, length_m in (
@@ -315,9 +291,10 @@ def _low_distribution(book: Book) -> None:
             book,
             name,
             ends,
-            250,
-            (4.5, 3.3, 0.75),
+            315,
+            (4.5, 4.0, 0.9),
             lengths_m=(18, 10),
+            volts=(450, 236),
             primary=(8, 0.2),
             secondary=(4.5, 0.15),
         )
@@ -329,6 +306,7 @@ def _low_distribution(book: Book) -> None:
             120,
             (4.0, 1.75, 0.42),
             lengths_m=(10, 8),
+            volts=(450, 236),
             primary=(8, 0.2),
             secondary=(4.5, 0.15),
         )

@@ -182,17 +182,17 @@ CONVERTERS = """
 Propulsion converter P1A | 1250 | T 1/84; S 1/35; M 1/25; KP 1/18; L 1/14 | 14
 [PB-P1B | Propulsion | converter | propulsion port 6-pulse shift=7.5]
 Propulsion converter P1B | 1250 | T 1/84; S 1/35; M 1/25; KP 1/18; L 1/14 | 14
-[PB-P2A | Propulsion | converter | propulsion port 6-pulse shift=-7.5]
+[PB-P2A | Propulsion | converter | propulsion port 6-pulse shift=-7.5 stage=2]
 Propulsion converter P2A | 1250 | T 1/84; S 1/35; M 1/25; KP 1/18; L 1/14 | 14
-[PB-P2B | Propulsion | converter | propulsion port 6-pulse shift=-7.5]
+[PB-P2B | Propulsion | converter | propulsion port 6-pulse shift=-7.5 stage=2]
 Propulsion converter P2B | 1250 | T 1/84; S 1/35; M 1/25; KP 1/18; L 1/14 | 14
 [PB-S1A | Propulsion | converter | propulsion starboard 6-pulse shift=7.5]
 Propulsion converter S1A | 1250 | T 1/84; S 1/35; M 1/25; KP 1/18; L 1/14 | 14
 [PB-S1B | Propulsion | converter | propulsion starboard 6-pulse shift=7.5]
 Propulsion converter S1B | 1250 | T 1/84; S 1/35; M 1/25; KP 1/18; L 1/14 | 14
-[PB-S2A | Propulsion | converter | propulsion starboard 6-pulse shift=-7.5]
+[PB-S2A | Propulsion | converter | propulsion starboard 6-pulse shift=-7.5 stage=2]
 Propulsion converter S2A | 1250 | T 1/84; S 1/35; M 1/25; KP 1/18; L 1/14 | 14
-[PB-S2B | Propulsion | converter | propulsion starboard 6-pulse shift=-7.5]
+[PB-S2B | Propulsion | converter | propulsion starboard 6-pulse shift=-7.5 stage=2]
 Propulsion converter S2B | 1250 | T 1/84; S 1/35; M 1/25; KP 1/18; L 1/14 | 14
 [TB-F1 | Thrusters | converter | propulsion port 12-pulse]
 Bow thruster 1 | 1200 | M 1/50; KP 1/45; L 1/40 | 12

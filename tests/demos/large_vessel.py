@@ -5,6 +5,9 @@ of one shaft are shifted by 15 degrees against each other. Four thrusters, two b
 emergency set, a synchronous pump motor. The section ties have the impedance of their busbar trunking (about
 20 m), so that the ring's currents are determined.
 
+The second converter pair of each shaft is taken off by the preferential trip (stage 2). In harbour the
+harbour set is alone: its loss is a blackout, and is reported as it is.
+
 Meant to be a sound design; no faults are planted.
 """
 

@@ -54,6 +54,7 @@ class Book:
         letters: str = "",
     ) -> None:
         self.letters = letters
+        self.restarts = 0
         self.hz = hz
         self.consumer_volts = dict(consumer_volts or {})
         self.modes = tuple(modes)
@@ -65,6 +66,11 @@ class Book:
     def add(self, sheet: str, headings: str, *lines: Sequence[object]) -> None:
         """Add plain rows to a sheet."""
         self.sheets[sheet] += table(headings, *lines)
+
+    def next_restart_s(self) -> float:
+        """Return the restart delay of the next essential motor: ten steps, five seconds apart."""
+        self.restarts += 1
+        return 5.0 * (self.restarts % 10)
 
     def amend(self, sheet: str, columns: Row, *names: str) -> None:
         """Write further columns into rows that stand already."""

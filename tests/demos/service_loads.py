@@ -8,9 +8,9 @@ from __future__ import annotations
 
 THRUSTERS_AND_DECK = """
 [MSB-P | Thrusters | converter]
-Bow thruster | 320 | - 1/50 1/60 - - - - | 40 | 12-pulse port fused | 330 kW drive behind a 12-pulse rectifier
+Bow thruster | 320 | - 1/42 1/60 - - - - | 40 | 12-pulse port fused | 330 kW drive behind a 12-pulse rectifier
 [MSB-S | Thrusters | converter]
-Stern thruster | 240 | - 1/45 1/60 - - - - | 45 | active starboard fused | Drive with active front end
+Stern thruster | 240 | - 1/40 1/50 - - - - | 45 | active starboard fused | Drive with active front end
 [MSB-S | Deck | converter]
 Towing winch | 110 | 1/15i 1/30i 1/20i - - - - | 52 | dc-link starboard fused regenerates stage=1 | Frequency-controlled, brakes into the board through a regenerative rectifier
 [DECK | Deck | motor]
@@ -34,7 +34,7 @@ Fuel cargo pump 1 | 75 | - - - 1/92 - - - | 20 | star-delta port eff=0.946 pf=0.
 Fuel cargo pump 2 | 75 | - - - 1/92 - - - | 22 | star-delta port eff=0.946 pf=0.87 ist=6.7 stage=2 inertia=1.4 start_s=5
 Brine pump | 75 | - - - 1/90i - - - | 22 | star-delta port eff=0.946 pf=0.87 ist=6.7 stage=2 inertia=1.4 start_s=5
 Fresh-water cargo pump | 37 | - - - 1/85 - - - | 24 | star-delta port ist=6.7 stage=2 inertia=1.4 start_s=5
-Tank cleaning pump | 30 | 1/85i - - - 1/85i - - | 24 | star-delta stage=1
+Tank cleaning pump | 30 | 1/85i - - - - - - | 24 | star-delta stage=1
 Cargo hydraulic pump | 18.5 | - - - 1/70i - - - | 18 | constant
 Stripping pump | 2x7.5 | - - - 1/80i - - - | 22 | constant
 Mud tank agitator | 4x5.5 | - - 4/60 4/70 - - - | 32 | constant stage=2
@@ -100,9 +100,9 @@ Steering gear 1 | 18.5 | 1/30 1/40 1/30 - - - - | 62 | steering constant eff=0.9
 ACCOMMODATION = """
 [HVAC | Ventilation | motor]
 Air-conditioning compressor 1 | 45 | 1/85 1/85 1/85 1/85 1/70 1/70 - | 18 | star-delta habitability constant change_s=4 stage=2 eff=0.94 pf=0.86
-Air-conditioning compressor 2 | 45 | 1/60 1/40 1/60 1/40 - - - | 20 | star-delta habitability constant change_s=4 stage=2 eff=0.94 pf=0.86
-Air-handling unit | 3x11 | 3/85 3/85 3/85 3/85 2/85 2/85 - | 22 | habitability start_s=6 inertia=0.7
-Cabin exhaust fan | 4x2.2 | 4/80 4/80 4/80 4/80 3/80 3/80 - | 24 | habitability
+Air-conditioning compressor 2 | 45 | - 1/40 1/50 1/40 - - - | 20 | star-delta habitability constant change_s=4 stage=2 eff=0.94 pf=0.86
+Air-handling unit | 3x11 | 3/85 3/85 3/85 3/85 2/85 2/85 - | 22 | habitability start_s=6 inertia=0.7 stage=2
+Cabin exhaust fan | 4x2.2 | 4/80 4/80 4/80 4/80 3/80 3/80 - | 24 | habitability stage=2
 Cargo-hold fan | 4x5.5 | 2/80 2/80 2/80 4/85 - - - | 34 | stage=1
 Chilled-water pump | 2x7.5 | 1/85 1/85 1/85 1/85 1/80 1/80 - | 18 | habitability
 [HVAC | Heating | heating]
@@ -125,7 +125,7 @@ Alleyway lighting 1 | 4 | 1/95 1/95 1/95 1/95 1/95 1/95 - | 22 | single-phase
 [ACC-1 | Domestic | general]
 Cabin sockets 1 | 8 | 1/60 1/50 1/60 1/60 1/50 1/50 - | 18 | habitability port pf=0.9
 [ACC-1 | Heating | heating]
-Cabin heaters 1 | 12 | 1/70 1/60 1/70 1/70 1/60 1/60 - | 20 | port pf=1.0
+Cabin heaters 1 | 12 | 1/70 1/60 1/70 1/70 1/60 1/60 - | 20 | port pf=1.0 stage=1
 [ACC-1 | Galley | general]
 Pantry 1 | 3.5 | 1/50i 1/50i 1/50i 1/50i 1/50i 1/50i - | 20 | port single-phase fused stage=2
 [ACC-2 | Lighting | lighting | habitability starboard]
@@ -134,7 +134,7 @@ Alleyway lighting 2 | 4 | 1/95 1/95 1/95 1/95 1/95 1/95 - | 22 | single-phase
 [ACC-2 | Domestic | general]
 Cabin sockets 2 | 8 | 1/60 1/50 1/60 1/60 1/50 1/50 - | 18 | habitability starboard pf=0.9
 [ACC-2 | Heating | heating]
-Cabin heaters 2 | 12 | 1/70 1/60 1/70 1/70 1/60 1/60 - | 20 | starboard pf=1.0
+Cabin heaters 2 | 12 | 1/70 1/60 1/70 1/70 1/60 1/60 - | 20 | starboard pf=1.0 stage=1
 [ACC-2 | Galley | general]
 Pantry 2 | 3.5 | 1/50i 1/50i 1/50i 1/50i 1/50i 1/50i - | 20 | starboard single-phase fused stage=2
 [ER-LT | Lighting | lighting]
@@ -153,7 +153,7 @@ Gymnasium and hospital | 4 | 1/40i - 1/40i 1/40i - - - | 26 | single-phase
 
 EMERGENCY = """
 [ESB | Safety | motor | safety]
-Emergency fire pump | 45 | 1/90o 1/90o 1/90o 1/90o 1/90o 1/90o 1/85 | 46 | ist=6.8 eff=0.938 pf=0.87 restart_s=20 amps=72 start_pf=0.3 tk=2.5
+Emergency fire pump | 45 | 1/90o 1/90o 1/90o 1/90o 1/90o 1/90o 1/85 | 46 | star-delta ist=6.8 eff=0.938 pf=0.87 restart_s=20 amps=72 start_pf=0.3 tk=2.5
 Emergency bilge pump | 11 | 1/80i 1/80i 1/80i 1/80i 1/80i 1/80i 1/80 | 36
 Quick-closing and watertight doors | 5.5 | 1/60o 1/60o 1/60o 1/60o 1/60o 1/60o 1/60i | 40 | constant
 Water-mist pump | 30 | - - - - - - 1/80o | 34 | star-delta ist=6.8 change_s=4

@@ -122,7 +122,7 @@ def _plant(book: Book) -> None:
         "Starts at island load [%]": None,
         "Largest engine load step [%]": 100,
     }
-    genset(book, ("HG", "MSB"), (60, 55), ("LV 50", "compounded"), 10, also=harbour)
+    genset(book, ("HG", "MSB"), (80, 72), ("LV 50", "compounded"), 10, also=harbour)
     book.add(
         "Shore supplies",
         SHORE_HEADINGS,
