@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import dataclass
+from typing import Final
 
 from study.checks.limits import LimitUsed
 from study.checks.verdict import STATUS_ORDER, Status, Verdict
@@ -12,6 +13,11 @@ from study.results.balance import BalanceResult
 from study.results.load_flow import LoadFlowResult
 from study.results.regulation import RegulationResult
 from study.results.sharing import SharingResult
+
+CAUTION: Final = (
+    "These results support, and do not replace, class approval, flag rules, local codes and the judgement of "
+    "a qualified engineer; protection settings are to be verified at trials before energising."
+)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -25,7 +25,14 @@ Value = str | float | int | bool | None
 Kind = Literal["text", "long text", "number", "count", "tiny", "judged", "free", "verdict", "cell"]
 RowStyle = Literal["", "group", "subtotal", "total"]
 
-SHEETS: Final = ("R Summary", "R Load balance", "R Load flow", "R Sharing", "R Assumptions")
+SHEETS: Final = (
+    "R Summary",
+    "R Load balance",
+    "R Capacity",
+    "R Load flow",
+    "R Sharing",
+    "R Assumptions",
+)
 
 _SNAKE = re.compile(r"[a-z][a-z0-9]*(_[a-z0-9]+)*")
 _NOISE_DECIMALS = 6
@@ -136,6 +143,9 @@ class Table:
         keys = [(c.group, c.key) for c in self.columns]
         if len(set(keys)) != len(keys):
             raise ValueError(f"table {self.key}: a column key stands twice")
+        titles = [(c.group, c.title) for c in self.columns]
+        if len(set(titles)) != len(titles):
+            raise ValueError(f"table {self.key}: a heading stands twice")
         for key in (self.key, *(c.key for c in self.columns)):
             if not _SNAKE.fullmatch(key):
                 raise ValueError(f"table {self.key}: {key!r} is not snake_case")

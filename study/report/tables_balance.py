@@ -278,7 +278,7 @@ def services_table(outcome: StudyOutcome) -> Table:
     return make_table(
         key="load_by_service",
         title="Load by service",
-        sheet=_SHEET,
+        sheet="R Capacity",
         columns=columns,
         rows=[row for mode in outcome.balance.modes for row in _service_rows(mode)],
         group_by=("mode",),
@@ -315,7 +315,7 @@ def board_demand_table(outcome: StudyOutcome) -> Table:
     return make_table(
         key="load_by_board",
         title="Load of each board",
-        sheet=_SHEET,
+        sheet="R Capacity",
         columns=columns,
         rows=rows,
         group_by=("mode",),

@@ -122,7 +122,7 @@ def extremes_table(outcome: StudyOutcome) -> Table:
             against="p_tolerance_kw",
         ),
         Column(key="p_tolerance_kw", heading="Tolerance", unit="kW", most_decimals=1),
-        percent_column("at_load_for_kw_percent", "at load", most_decimals=0),
+        percent_column("at_load_for_kw_percent", "kW worst at load", most_decimals=0),
         Column(key="kw_verdict", heading="kW sharing", kind="verdict"),
         Column(
             key="largest_dq_kvar",
@@ -132,7 +132,7 @@ def extremes_table(outcome: StudyOutcome) -> Table:
             against="q_tolerance_kvar",
         ),
         Column(key="q_tolerance_kvar", heading="Tolerance", unit="kvar", most_decimals=1),
-        percent_column("at_load_for_kvar_percent", "at load", most_decimals=0),
+        percent_column("at_load_for_kvar_percent", "kvar worst at load", most_decimals=0),
         Column(key="kvar_verdict", heading="kvar sharing", kind="verdict"),
     ]
     rows: list[tuple[Value, ...]] = []
@@ -316,6 +316,8 @@ def curves_table(result: SharingResult) -> Table:
         Column(key="dp_kw", heading="Off its share", unit="kW"),
         Column(key="q_kvar", heading="Carries", unit="kvar", most_decimals=1),
         Column(key="dq_kvar", heading="Off its share", unit="kvar"),
+        Column(key="p_tolerance_kw", heading="kW tolerance", unit="kW", most_decimals=1),
+        Column(key="q_tolerance_kvar", heading="kvar tolerance", unit="kvar", most_decimals=1),
         percent_column("u_percent", "Bus voltage of rated", most_decimals=2),
         Column(key="f_hz", heading="Frequency", unit="Hz", most_decimals=3),
     ]
@@ -330,6 +332,8 @@ def curves_table(result: SharingResult) -> Table:
             curve.dp_kw[k, i],
             curve.q_kvar[k, i],
             curve.dq_kvar[k, i],
+            island.p_tolerance_kw[i],
+            island.q_tolerance_kvar[i],
             percent(curve.u_pu[k]),
             curve.f_hz[k],
         )
@@ -351,6 +355,7 @@ def lines_table(result: SharingResult) -> Table:
     """Return the voltage-kvar line of each set with its operating point."""
     columns = [
         text_column("mode", "Mode"),
+        text_column("island", "Sets in parallel"),
         text_column("genset", "Set"),
         text_column("point", "Point"),
         Column(key="q_kvar", heading="Reactive", unit="kvar", most_decimals=1),
@@ -360,12 +365,13 @@ def lines_table(result: SharingResult) -> Table:
     for island in result.islands:
         for line in island.lines:
             rows += [
-                (island.mode, line.genset, "line", float(q), percent(u))
+                (island.mode, island_label(result, island), line.genset, "line", float(q), percent(u))
                 for q, u in zip(line.q_kvar, line.u_pu, strict=True)
             ]
             rows.append(
                 (
                     island.mode,
+                    island_label(result, island),
                     line.genset,
                     "operating point",
                     line.q_operating_kvar,

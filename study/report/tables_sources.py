@@ -21,7 +21,7 @@ from study.report.tables import (
 )
 from study.results.balance import BalanceResult, IslandBalance, ModeBalance
 
-_SHEET = "R Load balance"
+_SHEET = "R Capacity"
 NO_SET = "no set left"
 
 

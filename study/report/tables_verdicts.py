@@ -184,6 +184,8 @@ _JUDGED = (
 
 def _judged_values(v: Verdict) -> tuple[Value, ...]:
     factor, unit = (100.0, "%") if v.unit == "pu" else (1.0, v.unit)
+    if is_plain_fact(v):
+        return None, None, None, v.sense, None, v.status
     margin = percent(v.margin) if v.limit != 0.0 else None
     return factor * v.value, factor * v.limit, unit, v.sense, margin, v.status
 

@@ -1,0 +1,359 @@
+"""One result sheet: tables one under the other, each with notes and its worked-out row."""
+
+from __future__ import annotations
+
+import math
+import textwrap
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
+from typing import Any, Final
+
+from study.report.numbers import excel_format
+from study.report.style import ACCENT, QUIET, RULE, TINT, VERDICTS, VerdictLook
+from study.report.tables import Column, Table, Value
+
+FIRST_ROW: Final = 4
+_WIDEST_TEXT = 26
+_WIDEST_LONG_TEXT = 44
+_NARROWEST = 7.5
+_LINE_POINTS = 13.5
+
+
+class Formats:
+    """Cell formats of the result workbook, each made once.
+
+    Parameters
+    ----------
+    book : xlsxwriter.Workbook
+        The workbook.
+    """
+
+    def __init__(self, book: Any) -> None:
+        self._book = book
+        self._made: dict[tuple[tuple[str, Any], ...], Any] = {}
+
+    def get(self, **properties: Any) -> Any:
+        """Return the format with these properties."""
+        whole = {"font_name": "Calibri", "font_size": 10, "valign": "top", **properties}
+        key = tuple(sorted(whole.items()))
+        if key not in self._made:
+            self._made[key] = self._book.add_format(whole)
+        return self._made[key]
+
+    def colours(self, look: VerdictLook) -> Any:
+        """Return the colours of a status word, for a conditional format."""
+        key = (("status", look.css),)
+        if key not in self._made:
+            self._made[key] = self._book.add_format({"font_color": look.ink, "bg_color": look.ground})
+        return self._made[key]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Place:
+    """Where a table stands on its sheet; rows are counted from 0."""
+
+    table: Table
+    title_row: int
+    chart_row: int
+    first_row: int
+    last_row: int
+    end_row: int
+
+    def column(self, key: str, group: str = "") -> int:
+        """Return the position of a column."""
+        return self.table.index(key, group)
+
+
+def layout(
+    tables: Sequence[Table], start: int, above: Mapping[str, int], beside: Mapping[str, int]
+) -> list[Place]:
+    """Return where each table stands; charts keep their rows free.
+
+    Parameters
+    ----------
+    tables : sequence of Table
+        In the order of the sheet.
+    start : int
+        First free row.
+    above, beside : mapping of str to int
+        Rows that the charts between a table's notes and its heading, and to its right, need, by its key.
+
+    Returns
+    -------
+    list of Place
+        One for each table.
+    """
+    places = []
+    row = start
+    for table in tables:
+        chart_row = row + 1 + len(table.notes)
+        first = chart_row + above.get(table.key, 0) + (2 if table.groups else 1)
+        last = first + max(1, table.n_rows) - 1
+        worked = 1 + len(table.worked.lines) if table.worked else 0
+        end = max(last + len(table.footers) + worked, chart_row + beside.get(table.key, 0))
+        places.append(
+            Place(
+                table=table, title_row=row, chart_row=chart_row, first_row=first, last_row=last, end_row=end
+            )
+        )
+        row = end + 3
+    return places
+
+
+@dataclass
+class SheetWriter:
+    """Writes tables to one sheet and remembers what the widths and the colours need.
+
+    Attributes
+    ----------
+    sheet : xlsxwriter worksheet
+        The sheet.
+    formats : Formats
+        Cell formats of the workbook.
+    widths : dict
+        Characters that each column has to hold.
+    texts : dict
+        The cells of each measured table as text, by its key.
+    verdict_ranges : list of str
+        Ranges with status words.
+    """
+
+    sheet: Any
+    formats: Formats
+    widths: dict[int, float] = field(default_factory=dict)
+    texts: dict[str, list[tuple[str, ...]]] = field(default_factory=dict)
+    verdict_ranges: list[str] = field(default_factory=list)
+
+    def text(self, row: int, column: int, text: str, **properties: Any) -> None:
+        """Write words; what looks like a formula stays words."""
+        self.sheet.write_string(row, column, text, self.formats.get(**properties))
+
+    def measure(self, table: Table, *, alone: bool = False) -> None:
+        """Widen the columns to what a table needs; to be done for all tables before the first is written.
+
+        A table that is `alone` on its sheet may have a wider first column.
+        """
+        texts = [table.texts(c) for c in range(len(table.columns))]
+        self.texts[table.key] = texts
+        for c, column in enumerate(table.columns):
+            longest = max((len(t) for t in texts[c]), default=0)
+            wide = column.kind == "long text" or (alone and c == 0)
+            most = _WIDEST_LONG_TEXT if wide else _WIDEST_TEXT
+            word = max(len(word) for word in column.title.split())
+            least = max(_NARROWEST, word + 2.0)
+            self.widths[c] = max(self.widths.get(c, 0.0), least, min(longest + 2.5, most))
+
+    def write(self, place: Place) -> None:
+        """Write a table with its notes, footers and worked-out row."""
+        table = place.table
+        self.text(place.title_row, 0, table.title, bold=True, font_size=12, font_color=ACCENT)
+        for i, note in enumerate(table.notes):
+            self.text(place.title_row + 1 + i, 0, note, italic=True, font_color=QUIET)
+        if table.n_rows == 0:
+            self.text(place.first_row, 0, "none", font_color=QUIET)
+            return
+        for c, column in enumerate(table.columns):
+            self._column(place, c, column)
+        if table.groups or table.row_styles:
+            self._plain_header(place)
+        else:
+            self._excel_table(place)
+        self._heights(place)
+        self._footers(place)
+        self._worked(place)
+
+    def _column(self, place: Place, c: int, column: Column) -> None:
+        table = place.table
+        decimals, texts = table.decimals(c), self.texts[table.key][c]
+        most = max(decimals, default=0)
+        for r, value in enumerate(table.values[c]):
+            look = _row_look(table.style(r))
+            at = place.first_row + r, c
+            number = {"num_format": _padded(decimals[r], most, column)}
+            self._cell(at, value, column, text=texts[r], number=number | look, words=look)
+        if column.kind == "verdict":
+            self.verdict_ranges.append(cell_range(place.first_row, c, place.last_row, c))
+
+    def _cell(
+        self,
+        at: tuple[int, int],
+        value: Value,
+        column: Column,
+        *,
+        text: str,
+        number: dict[str, Any],
+        words: dict[str, Any],
+    ) -> None:
+        row, c = at
+        if value is None or value == "":
+            self.sheet.write_blank(row, c, None, self.formats.get(**words))
+        elif column.kind == "cell":
+            link = self.formats.get(font_color=ACCENT, underline=1, align="left", indent=1, **words)
+            self.sheet.write_url(row, c, internal_link(str(value)), link, str(value))
+        elif isinstance(value, (int, float)) and not isinstance(value, bool) and math.isfinite(value):
+            self.sheet.write_number(row, c, value, self.formats.get(**number))
+        elif column.is_text:
+            wrap = {"text_wrap": True} if len(text) > self.widths[c] - 1.5 else {}
+            self.text(row, c, text, align="left", indent=1 if c else 0, **wrap, **words)
+        else:
+            self.text(row, c, text, align="right", font_color=QUIET, **words)
+
+    def _lines(self, text: str, c: int) -> int:
+        """Return the lines that a text takes in its column."""
+        width = max(4, int(self.widths[c] - 0.5))
+        return 1 if len(text) <= width else len(textwrap.wrap(text, width))
+
+    def _heights(self, place: Place) -> None:
+        """Set the heights of the heading and of rows with long text."""
+        table, texts = place.table, self.texts[place.table.key]
+        lines = max(self._lines(column.title, c) for c, column in enumerate(table.columns))
+        self.sheet.set_row(place.first_row - 1, _LINE_POINTS * lines + 3)
+        wide = [c for c, column in enumerate(table.columns) if column.is_text]
+        for r in range(table.n_rows):
+            if table.style(r) != "group":
+                most = max((self._lines(texts[c][r], c) for c in wide), default=1)
+                if most > 1:
+                    self.sheet.set_row(place.first_row + r, _LINE_POINTS * most + 2)
+
+    def _header_format(self, column: Column, *, first: bool) -> Any:
+        return self.formats.get(
+            bold=True,
+            text_wrap=True,
+            valign="bottom",
+            align="left" if column.is_text else "right",
+            indent=1 if column.is_text and not first else 0,
+            font_color=ACCENT,
+            bg_color=TINT,
+            bottom=1,
+            bottom_color=ACCENT,
+        )
+
+    def _excel_table(self, place: Place) -> None:
+        table = place.table
+        self.sheet.add_table(
+            place.first_row - 1,
+            0,
+            place.last_row,
+            len(table.columns) - 1,
+            {
+                "name": f"R_{table.key}",
+                "style": None,
+                "columns": [
+                    {"header": c.title, "header_format": self._header_format(c, first=i == 0)}
+                    for i, c in enumerate(table.columns)
+                ],
+            },
+        )
+
+    def _plain_header(self, place: Place) -> None:
+        table = place.table
+        for c, column in enumerate(table.columns):
+            look = self._header_format(column, first=c == 0)
+            self.sheet.write_string(place.first_row - 1, c, column.title, look)
+        for group in table.groups:
+            at = [c for c, column in enumerate(table.columns) if column.group == group]
+            look = self.formats.get(
+                bold=True, align="left", font_color="#FFFFFF", bg_color=ACCENT, left=1, left_color=RULE
+            )
+            self.sheet.merge_range(place.first_row - 2, at[0], place.first_row - 2, at[-1], "", look)
+            self.sheet.write_string(place.first_row - 2, at[0], group, look)
+
+    def _footers(self, place: Place) -> None:
+        table = place.table
+        for i, footer in enumerate(table.footers):
+            row = place.last_row + 1 + i
+            self.text(row, 0, footer.label, bold=True, text_wrap=True)
+            for group in table.groups:
+                at = [c for c, column in enumerate(table.columns) if column.group == group]
+                look = self.formats.get(text_wrap=True, left=1, left_color=RULE)
+                text = footer.texts.get(group, "")
+                self.sheet.merge_range(row, at[0], row, at[-1], "", look)
+                self.sheet.write_string(row, at[0], text, look)
+            at = [c for c, column in enumerate(table.columns) if column.group == table.groups[0]]
+            room = sum(self.widths[c] for c in at)
+            widest = max((len(t) for t in footer.texts.values()), default=0)
+            lines = max(math.ceil(widest / room), self._lines(footer.label, 0))
+            self.sheet.set_row(row, _LINE_POINTS * lines + 2)
+
+    def _worked(self, place: Place) -> None:
+        worked = place.table.worked
+        if worked is None:
+            return
+        row = place.last_row + len(place.table.footers) + 1
+        self.text(row, 0, f"Worked out: {worked.row}", italic=True, font_color=QUIET)
+        for i, line in enumerate(worked.lines):
+            whole = f"{line.label} = {line.formula} = {line.figures} = {line.result}"
+            self.text(row + 1 + i, 0, whole, font_color=QUIET)
+
+    def finish(self) -> None:
+        """Set column widths and the colours of the verdicts."""
+        for c, width in self.widths.items():
+            self.sheet.set_column(c, c, width)
+        for cells in self.verdict_ranges:
+            for status, look in VERDICTS.items():
+                self.sheet.conditional_format(
+                    cells,
+                    {
+                        "type": "text",
+                        "criteria": "begins with",
+                        "value": status,
+                        "format": self.formats.colours(look),
+                    },
+                )
+
+
+def _row_look(style: str) -> dict[str, Any]:
+    match style:
+        case "group":
+            return {"bold": True, "font_color": ACCENT}
+        case "subtotal":
+            return {"italic": True, "top": 4, "top_color": RULE}
+        case "total":
+            return {"bold": True, "top": 1, "top_color": ACCENT}
+        case _:
+            return {}
+
+
+def _padded(decimals: int, most: int, column: Column) -> str:
+    """Return a number format that keeps the decimal point in line with the longest number of the column."""
+    if column.kind == "tiny":
+        return "0.0E+00"
+    if column.kind in ("count", "free"):
+        return "General"
+    if column.kind == "judged":
+        return excel_format(decimals)
+    spaces = most - decimals
+    point = "_." if decimals == 0 and most > 0 else ""
+    return excel_format(decimals) + point + "_0" * spaces
+
+
+def internal_link(cell: str) -> str:
+    """Return the hyperlink of an address such as ``Shore supplies!C4``.
+
+    Parameters
+    ----------
+    cell : str
+        Sheet and cell; the sheet may stand in quotes.
+
+    Returns
+    -------
+    str
+        The link in the form that XlsxWriter takes.
+
+    Examples
+    --------
+    >>> internal_link("Shore supplies!C4")
+    "internal:'Shore supplies'!C4"
+    """
+    sheet, _, address = cell.rpartition("!")
+    if sheet.startswith("'") and sheet.endswith("'"):
+        sheet = sheet[1:-1].replace("''", "'")
+    quoted = sheet.replace("'", "''")
+    return f"internal:'{quoted}'!{address}"
+
+
+def cell_range(first_row: int, first_column: int, last_row: int, last_column: int) -> str:
+    """Return a range in letters and numbers; rows and columns are counted from 0."""
+    from xlsxwriter.utility import xl_range
+
+    return str(xl_range(first_row, first_column, last_row, last_column))

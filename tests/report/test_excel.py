@@ -1,0 +1,141 @@
+"""The result sheets, read back by openpyxl."""
+
+from __future__ import annotations
+
+import math
+import re
+import zipfile
+from io import BytesIO
+
+import pytest
+from openpyxl import load_workbook
+from openpyxl.worksheet.worksheet import Worksheet
+
+from study.report.catalogue import all_tables
+from study.report.excel import result_workbook
+from study.report.excel_sheet import internal_link
+from study.report.tables import SHEETS, Table
+from tests.report import made_up
+
+OUTCOME = made_up.outcome()
+TABLES = all_tables(OUTCOME)
+DATA = result_workbook(OUTCOME)
+BOOK = load_workbook(BytesIO(DATA))
+_FORMAT = re.compile(r"0(?:\.(0+))?")
+
+
+def _start(table: Table) -> tuple[Worksheet, int]:
+    """Return the sheet of a table and the row of its first row of data."""
+    sheet = BOOK[table.sheet]
+    titles = [c.title for c in table.columns]
+    for row in range(1, sheet.max_row + 1):
+        if [sheet.cell(row, c + 1).value for c in range(len(titles))] == titles:
+            above = next(
+                r for r in range(row, 0, -1) if sheet.cell(r, 1).font.b and sheet.cell(r, 1).font.sz == 12
+            )
+            if sheet.cell(above, 1).value == table.title:
+                return sheet, row + 1
+    raise AssertionError(f"{table.key} is not on {table.sheet}")
+
+
+def test_every_sheet_has_the_prefix_of_results() -> None:
+    assert tuple(BOOK.sheetnames) == SHEETS
+    assert all(name.startswith("R ") for name in BOOK.sheetnames)
+
+
+@pytest.mark.parametrize("table", TABLES.values(), ids=TABLES.keys())
+def test_every_value_stands_on_its_sheet_unrounded(table: Table) -> None:
+    if table.n_rows == 0:
+        pytest.skip("nothing to show in this study")
+    sheet, first = _start(table)
+    for r, row in enumerate(table.rows()):
+        for c, value in enumerate(row):
+            found = sheet.cell(first + r, c + 1).value
+            if isinstance(value, (int, float)) and not isinstance(value, bool) and math.isfinite(value):
+                assert found == pytest.approx(value, rel=1e-14), table.columns[c].key
+            elif value is None or value == "":
+                assert found is None
+            else:
+                assert isinstance(found, str)
+
+
+def _width(sheet: Worksheet, column: int) -> float:
+    # Neighbours of one width share one entry.
+    return next(d.width for d in sheet.column_dimensions.values() if d.min <= column <= d.max)
+
+
+@pytest.mark.parametrize("table", TABLES.values(), ids=TABLES.keys())
+def test_columns_are_wide_enough_for_their_numbers(table: Table) -> None:
+    if table.n_rows == 0:
+        pytest.skip("nothing to show in this study")
+    sheet, _ = _start(table)
+    for c, column in enumerate(table.columns):
+        if not column.is_text:
+            numbers = [t for t in table.texts(c) if t[-1:].isdigit()]
+            assert max((len(t) for t in numbers), default=0) + 1 <= _width(sheet, c + 1), column.key
+
+
+def test_number_formats_have_few_decimals_but_where_a_limit_is_near() -> None:
+    sheet, first = _start(TABLES["cables"])
+    at = TABLES["cables"].index("current_a") + 1
+    formats = [sheet.cell(first + r, at).number_format for r in range(3)]
+    assert formats[0] == "0.0000"
+    assert formats[1].startswith("0.0_0")
+
+
+def test_text_of_cells_is_never_a_formula() -> None:
+    for sheet in BOOK.worksheets:
+        for row in sheet.iter_rows():
+            assert all(cell.data_type != "f" for cell in row)
+    names = {cell.value for cell in BOOK["R Load balance"]["A"]}
+    assert {"=1+1 sounder", made_up.SCRIPT} <= names
+
+
+def test_governing_cells_are_links_into_the_workbook() -> None:
+    sheet, first = _start(TABLES["cables"])
+    cell = sheet.cell(first, TABLES["cables"].index("input_cell") + 1)
+    assert cell.value == "Cables!A4"
+    assert cell.hyperlink is not None
+    assert cell.hyperlink.location == "'Cables'!A4"
+    assert cell.hyperlink.target is None
+
+
+def test_link_to_a_sheet_with_a_blank_or_a_quote_in_its_name() -> None:
+    assert internal_link("Shore supplies!C4") == "internal:'Shore supplies'!C4"
+    assert internal_link("'Shore supplies'!C4") == "internal:'Shore supplies'!C4"
+    assert internal_link("'Mate''s list'!B2") == "internal:'Mate''s list'!B2"
+
+
+def test_status_words_are_coloured_by_condition() -> None:
+    rules = [rule.text for formats in BOOK["R Summary"].conditional_formatting for rule in formats.rules]
+    assert {"within", "close", "exceeds", "not assessed"} <= set(rules)
+
+
+def test_charts_stand_beside_loading_voltages_and_sharing() -> None:
+    names = zipfile.ZipFile(BytesIO(DATA)).namelist()
+    assert sum(name.startswith("xl/charts/chart") for name in names) >= 10
+    sheets = {name: len(BOOK[name]._charts) for name in SHEETS}  # openpyxl reads charts back
+    assert sheets["R Capacity"] >= 3
+    assert sheets["R Load flow"] >= 1
+    assert sheets["R Sharing"] >= 8
+
+
+def test_charts_point_at_numbers_of_their_own_sheet() -> None:
+    archive = zipfile.ZipFile(BytesIO(DATA))
+    for name in archive.namelist():
+        if name.startswith("xl/charts/chart"):
+            text = archive.read(name).decode()
+            for sheet in re.findall(r"<c:f>'([^']+)'!", text):
+                assert sheet in SHEETS
+
+
+def test_rows_of_headings_repeat_in_print_and_pages_are_landscape() -> None:
+    for sheet in BOOK.worksheets:
+        assert sheet.page_setup.orientation == "landscape"
+        assert sheet.print_title_rows
+        assert sheet.freeze_panes
+        assert "Page &P of &N" in DATA.decode("latin-1") or sheet.oddFooter.right.text == "Page &P of &N"
+
+
+def test_the_same_study_gives_the_same_bytes() -> None:
+    assert result_workbook(made_up.outcome()) == DATA
