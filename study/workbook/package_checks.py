@@ -11,7 +11,10 @@ from study.issues import PackageError
 from study.workbook.package_checks_sheets import cell_texts, check_sheet, check_tables
 from study.workbook.package_names import WORKBOOK_ORDER, Sheet, defined_names, read_sheets
 from study.workbook.package_opc import (
+    SPREADSHEET,
+    STYLES_TYPE,
     TYPES_PART,
+    WORKSHEET_TYPE,
     Package,
     Relation,
     package_from_bytes,
@@ -20,7 +23,7 @@ from study.workbook.package_opc import (
 )
 from study.workbook.package_parts import read_graph
 from study.workbook.package_styles import FIRST_CUSTOM_FORMAT, ORDER
-from study.workbook.package_tables import read_tables
+from study.workbook.package_tables import TABLE_TYPE, read_tables
 from study.workbook.package_xml import OFFICE, Node, as_utf8, effective, out_of_order, parse, whole_number
 from study.workbook.package_zip import part_key
 
@@ -69,6 +72,7 @@ def validate_package(data: bytes) -> list[str]:
         read = _Read(package=package, graph=graph, roots=roots)
         return [
             *_check_types(read),
+            *_check_related_types(read),
             *_check_relations(read),
             *_check_workbook(read, sheets),
             *_check_names(read, sheets),
@@ -103,6 +107,32 @@ def _check_types(read: _Read) -> Iterator[str]:
     declared += ["." + n.attributes.get("Extension", "").lower() for n in root.all("Default")]
     for part in _repeated(declared):
         yield f"{TYPES_PART}: declares {part} twice"
+
+
+_DRAWING = "application/vnd.openxmlformats-officedocument.drawing"
+_TYPE_BY_RELATION = {
+    "worksheet": WORKSHEET_TYPE,
+    "styles": STYLES_TYPE,
+    "table": TABLE_TYPE,
+    "sharedStrings": SPREADSHEET + "sharedStrings+xml",
+    "calcChain": SPREADSHEET + "calcChain+xml",
+    "comments": SPREADSHEET + "comments+xml",
+    "pivotTable": SPREADSHEET + "pivotTable+xml",
+    "drawing": _DRAWING + "+xml",
+    "chart": _DRAWING + "ml.chart+xml",
+    "vmlDrawing": "application/vnd.openxmlformats-officedocument.vmlDrawing",
+}
+
+
+def _check_related_types(read: _Read) -> Iterator[str]:
+    """Check that a part has the type that its relation promises."""
+    types = read_content_types(read.package.read(TYPES_PART))
+    for relations in read.graph.values():
+        for relation in relations:
+            kind = _TYPE_BY_RELATION.get(relation.kind.rpartition("/")[2])
+            found = types.of(relation.target)
+            if kind and not relation.external and found != kind:
+                yield f"{relation.target}: is related as {relation.id} but its type is {found}"
 
 
 def _check_relations(read: _Read) -> Iterator[str]:

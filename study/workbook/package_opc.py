@@ -22,16 +22,16 @@ from study.workbook.package_xml import (
 from study.workbook.package_zip import MAX_FILE_BYTES, Member, inflate, part_key, read_members, verify
 
 TYPES_PART = "[Content_Types].xml"
-_SPREADSHEET = "application/vnd.openxmlformats-officedocument.spreadsheetml."
-WORKSHEET_TYPE = _SPREADSHEET + "worksheet+xml"
-STYLES_TYPE = _SPREADSHEET + "styles+xml"
+SPREADSHEET = "application/vnd.openxmlformats-officedocument.spreadsheetml."
+WORKSHEET_TYPE = SPREADSHEET + "worksheet+xml"
+STYLES_TYPE = SPREADSHEET + "styles+xml"
 _WORKBOOK_TYPES = {
-    _SPREADSHEET + "sheet.main+xml": False,
+    SPREADSHEET + "sheet.main+xml": False,
     "application/vnd.ms-excel.sheet.macroEnabled.main+xml": True,
 }
 _OTHER_TYPES = {
     "application/vnd.ms-excel.sheet.binary.macroEnabled.main": "is a binary workbook (.xlsb)",
-    _SPREADSHEET + "template.main+xml": "is a template (.xltx)",
+    SPREADSHEET + "template.main+xml": "is a template (.xltx)",
     "application/vnd.ms-excel.template.macroEnabled.main+xml": "is a template (.xltm)",
     "application/vnd.ms-excel.addin.macroEnabled.main+xml": "is an add-in (.xlam)",
 }

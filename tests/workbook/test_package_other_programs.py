@@ -1,0 +1,113 @@
+"""Other programs open the file, save it, and the next run still knows its own sheets."""
+
+from __future__ import annotations
+
+import io
+import shutil
+import subprocess
+import warnings
+
+import openpyxl
+import pytest
+import python_calamine
+
+from study.workbook.package import graft_result_sheets, validate_package
+from tests.workbook.package_samples import (
+    VBA,
+    engineers_book,
+    openpyxl_book,
+    packed_book,
+    parts,
+    result_book,
+    saved_by_openpyxl,
+)
+
+OFFICE_SUITE = shutil.which("soffice")
+BOOKS = {"XlsxWriter": engineers_book, "openpyxl": openpyxl_book, "macros": packed_book}
+
+
+def load(data):
+    with warnings.catch_warnings():
+        warnings.simplefilter("ignore")
+        return openpyxl.load_workbook(io.BytesIO(data))
+
+
+def table(data, sheet):
+    return (
+        python_calamine.CalamineWorkbook.from_filelike(io.BytesIO(data)).get_sheet_by_name(sheet).to_python()
+    )
+
+
+@pytest.fixture(scope="module")
+def converted(tmp_path_factory):
+    """Each grafted workbook as LibreOffice saves and prints it; one start of the program for each format."""
+    if OFFICE_SUITE is None:
+        pytest.skip("LibreOffice (soffice) is not on the path")
+    folder = tmp_path_factory.mktemp("office")
+    paths = []
+    for name, make in BOOKS.items():
+        paths.append(folder / f"{name}.xlsx")
+        paths[-1].write_bytes(graft_result_sheets(make(), result_book(value=3.5)))
+    profile = f"-env:UserInstallation={(folder / 'profile').as_uri()}"
+    for kind, out in (("xlsx:Calc MS Excel 2007 XML", "saved"), ("pdf", "printed")):
+        command = [OFFICE_SUITE, profile, "--headless", "--convert-to", kind, "--outdir", str(folder / out)]
+        subprocess.run([*command, *map(str, paths)], check=True, capture_output=True, timeout=240)
+    return folder
+
+
+@pytest.mark.parametrize("book", BOOKS)
+def test_a_save_by_libreoffice_in_between(converted, book):
+    saved = (converted / "saved" / f"{book}.xlsx").read_bytes()
+    assert validate_package(saved) == []
+    again = graft_result_sheets(saved, result_book(value=8))
+    assert validate_package(again) == []
+    assert load(again).sheetnames == load(saved).sheetnames
+    assert load(again)["R Summary"]["B3"].value == 8
+    assert load(again)["R Summary"].defined_names["StudyResultSheet"].hidden
+    assert graft_result_sheets(again, result_book(value=8)) == again
+    first = load(graft_result_sheets(BOOKS[book](), result_book(value=8)))
+    for cell in ("A1", "A2", "B3", "B7", "A4"):
+        twin = load(again)["R Load flow"][cell]
+        assert repr((twin.font, twin.fill)) == repr(
+            (first["R Load flow"][cell].font, first["R Load flow"][cell].fill)
+        )
+        assert twin.number_format == first["R Load flow"][cell].number_format
+
+
+@pytest.mark.parametrize("book", BOOKS)
+def test_libreoffice_reads_the_results(converted, book):
+    saved = (converted / "saved" / f"{book}.xlsx").read_bytes()
+    rows = table(saved, "R Summary")
+    assert rows[0][0] == "R Summary"
+    assert rows[1][:4] == ["=HYPERLINK(A1)", "@cmd", '+1 dxfId="0" s="1" <c r="A1">', "-2"]
+    assert rows[2][:2] == ["two kinds of text", 3.5]
+    assert rows[5][:3] == ["Board", "Value", "Verdict"]
+    assert rows[6][:3] == ["MSB 0", 3.5, "within"]
+    if book == "openpyxl":
+        # A reference with no stored value, so LibreOffice had to follow it.
+        assert table(saved, "Other")[0][0] == 3.5
+    assert len(load(saved)["R Summary"]._charts) == 1
+    assert (converted / "printed" / f"{book}.pdf").stat().st_size > 10_000
+
+
+@pytest.mark.parametrize("book", ["XlsxWriter", "openpyxl"])
+def test_a_save_by_openpyxl_in_between(book):
+    saved = saved_by_openpyxl(graft_result_sheets(BOOKS[book](), result_book(value=3.5)))
+    again = graft_result_sheets(saved, result_book(value=8))
+    assert validate_package(again) == []
+    assert load(again).sheetnames == load(saved).sheetnames
+    assert load(again)["R Summary"]["B3"].value == 8
+    assert graft_result_sheets(again, result_book(value=8)) == again
+    untouched = {n: c for n, c in parts(saved).items() if n.startswith(("xl/worksheets/sheet1", "docProps"))}
+    assert untouched.items() <= parts(again).items()
+
+
+def test_macros_after_a_save_by_openpyxl():
+    out = io.BytesIO()
+    with warnings.catch_warnings():
+        warnings.simplefilter("ignore")
+        data = graft_result_sheets(engineers_book(macros=True), result_book())
+        openpyxl.load_workbook(io.BytesIO(data), keep_vba=True).save(out)
+    again = graft_result_sheets(out.getvalue(), result_book(value=8))
+    assert parts(again)["xl/vbaProject.bin"] == VBA
+    assert load(again)["R Summary"]["B3"].value == 8
