@@ -7,7 +7,7 @@ carry them through a further impedance. The text of the standard was not at hand
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -141,11 +141,48 @@ def equivalent_generator(
     return EquivalentGenerator(source=source, sub_fitted=sub_fitted, trans_fitted=trans_fitted)
 
 
+def starred(source: Source, voltage_v: ArrayLike) -> Source:
+    """Return each source with its own starred impedances, Z'' = U0/(sqrt3 I'') and Z' = U0/(sqrt3 I').
+
+    The load before the fault is then inside the impedances, as it is in the equivalent generator, while
+    every source keeps its own decay. Without this step a loaded machine drives its full e.m.f. into a distant
+    fault, which the load that stays on the board does not let it do: up to 13 % too much.
+
+    Source: the starred impedances of IEC 61363-1:1998, clause 7, from memory, taken for each source.
+
+    Parameters
+    ----------
+    source : Source
+        At the board.
+    voltage_v : array_like
+        Line voltage of the board before the fault [V].
+
+    Returns
+    -------
+    Source
+        Same currents; the reactance of the sustained current is left alone.
+
+    Raises
+    ------
+    ValueError
+        A resistance that exceeds the starred impedance.
+    """
+    z_sub = _source_impedance_ohm(voltage_v, source.current.subtransient_a)
+    z_trans = _source_impedance_ohm(voltage_v, source.current.transient_a)
+    if (source.r_ohm > z_sub).any():
+        raise ValueError("the resistance of a source exceeds its starred impedance")
+    return replace(
+        source,
+        x_sub_ohm=np.sqrt(z_sub**2 - source.r_ohm**2),
+        x_trans_ohm=np.sqrt(z_trans**2 - source.r_ohm**2),
+    )
+
+
 def own_part_of_common_impedance_ohm(initial_a: ArrayLike, impedance_ohm: ArrayLike) -> ComplexArray:
     """Return the series impedance that each source sees in an impedance common to all of them.
 
     A common impedance Z carries the sum of all currents, so a source that gives the part s of it sees Z / s.
-    Each source taken through its own part keeps its own decay behind the impedance.
+    Each source, `starred` where loads ran, taken through its own part keeps its own decay behind it.
 
     Source: circuit theory; exact for sources alike, and at t = 0 for sources of equal impedance angle.
 

@@ -10,6 +10,7 @@ import math
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.polynomial import Polynomial
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -50,14 +51,15 @@ class QuadratureAxis:
     r_damper: float
 
 
-def _direct_numerator(xd: float, x_trans: float, x_sub: float, t_trans_s: float, t_sub_s: float) -> np.poly1d:
+def _direct_numerator(
+    xd: float, x_trans: float, x_sub: float, t_trans_s: float, t_sub_s: float
+) -> Polynomial:
     """Return N(s) of 1/Xd(s) = N(s) / [(1 + sT')(1 + sT'')]."""
-    slow, fast = np.poly1d([t_trans_s, 1.0]), np.poly1d([t_sub_s, 1.0])
-    s = np.poly1d([1.0, 0.0])
+    slow, fast, s = Polynomial([1.0, t_trans_s]), Polynomial([1.0, t_sub_s]), Polynomial([0.0, 1.0])
     return (
         slow * fast / xd
-        + s * fast * t_trans_s * (1.0 / x_trans - 1.0 / xd)
-        + s * slow * t_sub_s * (1.0 / x_sub - 1.0 / x_trans)
+        + s * fast * (t_trans_s * (1.0 / x_trans - 1.0 / xd))
+        + s * slow * (t_sub_s * (1.0 / x_sub - 1.0 / x_trans))
     )
 
 
@@ -109,12 +111,13 @@ def direct_axis_circuit(
     if not (xd > x_trans > x_sub > x_leak > 0.0 and t_trans_s > t_sub_s > 0.0):
         raise ValueError("the direct axis needs Xd > X'd > X''d > Xl > 0 and T'd > T''d > 0")
     omega0, xad = 2.0 * math.pi * frequency_hz, xd - x_leak
-    poles = np.poly1d([t_trans_s, 1.0]) * np.poly1d([t_sub_s, 1.0])
+    poles = Polynomial([1.0, t_trans_s]) * Polynomial([1.0, t_sub_s])
     numerator = _direct_numerator(xd, x_trans, x_sub, t_trans_s, t_sub_s)
     rotor_den = poles - x_leak * numerator
-    rotor_num = np.poly1d((xd * numerator - poles).coefficients[:-1])
+    # Its constant term is nothing: at s = 0 no current flows in the rotor.
+    rotor_num = Polynomial((xd * numerator - poles).coef[1:])
     windings = []
-    for pole in np.sort(np.real(rotor_den.roots))[::-1]:
+    for pole in np.sort(np.real(rotor_den.roots()))[::-1]:
         time_constant = -1.0 / pole
         gain = time_constant * rotor_num(pole) / (xad * rotor_den.deriv()(pole))
         windings.append((float(time_constant / gain), float(1.0 / (gain * omega0))))
@@ -198,7 +201,7 @@ def open_circuit_time_constants_s(
     >>> round(slow, 3), round(fast, 4)
     (2.279, 0.0241)
     """
-    roots = np.real(_direct_numerator(xd, x_trans, x_sub, t_trans_s, t_sub_s).roots)
+    roots = np.real(_direct_numerator(xd, x_trans, x_sub, t_trans_s, t_sub_s).roots())
     return float(-1.0 / roots.max()), float(-1.0 / roots.min())
 
 

@@ -2,7 +2,7 @@
 
 Speeds are constant, which is fair for about 0.2 s; field voltage is constant after one step. The plant is
 then linear, and its response to a fault is a sum of modes: the slow ones are the a.c. envelope, those near
-supply frequency are the direct component. Static load is a constant current, which a fault does not change.
+supply frequency are the direct component.
 """
 
 from __future__ import annotations
@@ -13,6 +13,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
+from scipy.linalg import block_diag
 
 from study.formulas.fault_current import SQRT2, SQRT3, ComplexArray, FloatArray
 from study.formulas.park import DirectAxis, QuadratureAxis
@@ -74,6 +75,23 @@ class InductionMachine:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class StaticLoad:
+    """A load of constant series impedance on the board [ohm at rated frequency].
+
+    Attributes
+    ----------
+    r_ohm, x_ohm : float
+        One phase; the resistance above 0 ohm [ohm].
+    """
+
+    r_ohm: float
+    x_ohm: float
+
+
+Participant = SynchronousMachine | InductionMachine | StaticLoad
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class PlantResponse:
     """Currents after the fault as modes, in a frame that turns with the supply.
 
@@ -82,10 +100,10 @@ class PlantResponse:
     rate_per_s : ComplexArray
         Eigenvalues, shape modes [1/s].
     modes_a : ComplexArray
-        Amplitudes, shape (1 + machines) x modes: first the current at the fault, then each machine's own,
-        synchronous ones before motors [A].
+        Amplitudes, shape (1 + participants) x modes: first the current at the fault, then each
+        participant's own in their order [A].
     steady_a : ComplexArray
-        Steady values, shape 1 + machines; a machine's includes its current before the fault [A].
+        Steady values, shape 1 + participants; a participant's includes its current before the fault [A].
     frequency_hz : float
         [Hz]
     """
@@ -145,32 +163,32 @@ def _induction_block(machine: InductionMachine, phase_v: float) -> _Block:
     return _Block(x=x, r=r, to_common=np.eye(2, 4), drive_v=np.zeros(4), before_a=before)
 
 
-def _block_diagonal(matrices: Sequence[FloatArray]) -> FloatArray:
-    """Return the matrices along the diagonal of one."""
-    size = sum(len(matrix) for matrix in matrices)
-    whole = np.zeros((size, size))
-    start = 0
-    for matrix in matrices:
-        whole[start : start + len(matrix), start : start + len(matrix)] = matrix
-        start += len(matrix)
-    return whole
+def _static_block(load: StaticLoad, phase_v: float) -> _Block:
+    """Return the block of a static load; states current x, y in the common frame, into the board."""
+    z = np.array([[load.r_ohm, -load.x_ohm], [load.x_ohm, load.r_ohm]])
+    before = -phase_v / complex(load.r_ohm, load.x_ohm)
+    return _Block(x=-load.x_ohm * np.eye(2), r=-z, to_common=np.eye(2), drive_v=np.zeros(2), before_a=before)
 
 
-def _blocks(
-    machines: Sequence[SynchronousMachine], motors: Sequence[InductionMachine], voltage_v: float
-) -> list[_Block]:
-    """Return the blocks of all machines, synchronous ones first."""
+def _blocks(participants: Sequence[Participant], voltage_v: float) -> list[_Block]:
+    """Return one block for each participant, in their order."""
     phase_v = voltage_v / SQRT3
-    blocks = [_synchronous_block(machine, phase_v) for machine in machines]
-    blocks += [_induction_block(motor, phase_v) for motor in motors]
-    if not blocks:
+    if not participants:
         raise ValueError("a plant without machines has no fault current")
+    blocks = []
+    for participant in participants:
+        match participant:
+            case SynchronousMachine():
+                blocks.append(_synchronous_block(participant, phase_v))
+            case InductionMachine():
+                blocks.append(_induction_block(participant, phase_v))
+            case StaticLoad():
+                blocks.append(_static_block(participant, phase_v))
     return blocks
 
 
 def state_space(
-    machines: Sequence[SynchronousMachine],
-    motors: Sequence[InductionMachine],
+    participants: Sequence[Participant],
     *,
     voltage_v: float,
     fault_r_ohm: float,
@@ -184,8 +202,8 @@ def state_space(
 
     Parameters
     ----------
-    machines, motors : sequence
-        At least one in all.
+    participants : sequence
+        What stays on the board during the fault, at least one machine.
     voltage_v : float
         Line voltage of the board before the fault [V].
     fault_r_ohm, fault_x_ohm : float
@@ -202,14 +220,14 @@ def state_space(
     Raises
     ------
     ValueError
-        No machine at all.
+        No participant at all.
     """
-    blocks = _blocks(machines, motors, voltage_v)
+    blocks = _blocks(participants, voltage_v)
     omega0 = 2.0 * math.pi * frequency_hz
     to_common = np.hstack([block.to_common for block in blocks])
     branch = np.array([[fault_r_ohm, -fault_x_ohm], [fault_x_ohm, fault_r_ohm]])
-    x = _block_diagonal([block.x for block in blocks]) - fault_x_ohm * to_common.T @ to_common
-    r = to_common.T @ branch @ to_common - _block_diagonal([block.r for block in blocks])
+    x = block_diag(*[block.x for block in blocks]) - fault_x_ohm * to_common.T @ to_common
+    r = to_common.T @ branch @ to_common - block_diag(*[block.r for block in blocks])
     drive = np.concatenate([block.drive_v for block in blocks]) - to_common.T @ np.array(
         [voltage_v / SQRT3, 0.0]
     )
@@ -217,8 +235,7 @@ def state_space(
 
 
 def plant_response(
-    machines: Sequence[SynchronousMachine],
-    motors: Sequence[InductionMachine],
+    participants: Sequence[Participant],
     *,
     voltage_v: float,
     fault_r_ohm: float,
@@ -231,8 +248,8 @@ def plant_response(
 
     Parameters
     ----------
-    machines, motors : sequence
-        At least one in all.
+    participants : sequence
+        What stays on the board during the fault, at least one machine.
     voltage_v : float
         Line voltage of the board before the fault [V].
     fault_r_ohm, fault_x_ohm : float
@@ -243,18 +260,17 @@ def plant_response(
     Returns
     -------
     PlantResponse
-        Current at the fault and of each machine.
+        Current at the fault and of each participant.
 
     Raises
     ------
     ValueError
-        No machine at all.
+        No participant at all.
     ArithmeticError
         The modes do not add up to the state before the fault.
     """
     a, b, to_common = state_space(
-        machines,
-        motors,
+        participants,
         voltage_v=voltage_v,
         fault_r_ohm=fault_r_ohm,
         fault_x_ohm=fault_x_ohm,
@@ -267,7 +283,7 @@ def plant_response(
         raise ArithmeticError("the eigenvectors of the plant are too close to dependent")
     pick = to_common[0] + 1j * to_common[1]
     modes, steady_currents, start = [pick @ amplitude], [pick @ steady], 0
-    for block in _blocks(machines, motors, voltage_v):
+    for block in _blocks(participants, voltage_v):
         own = slice(start, start + len(block.x))
         modes.append(pick[own] @ amplitude[own])
         steady_currents.append(block.before_a + pick[own] @ steady[own])
@@ -281,7 +297,7 @@ def plant_response(
 
 
 def phasors_a(response: PlantResponse, time_s: FloatArray) -> ComplexArray:
-    """Return the currents in the turning frame: at the fault, then of each machine.
+    """Return the currents in the turning frame: at the fault, then of each participant.
 
     Source: two-axis theory; the direct component turns backwards at supply frequency in this frame.
 
@@ -295,14 +311,14 @@ def phasors_a(response: PlantResponse, time_s: FloatArray) -> ComplexArray:
     Returns
     -------
     ComplexArray
-        Shape (1 + machines) x times, r.m.s. measure [A].
+        Shape (1 + participants) x times, r.m.s. measure [A].
     """
     growth = np.exp(np.multiply.outer(response.rate_per_s, time_s))
     return np.asarray(response.modes_a @ growth + response.steady_a[:, None], dtype=complex)
 
 
 def envelopes_a(response: PlantResponse, time_s: FloatArray) -> FloatArray:
-    """Return the symmetrical currents, r.m.s.: at the fault, then of each machine.
+    """Return the symmetrical currents, r.m.s.: at the fault, then of each participant.
 
     They are the modes that turn slower than half supply frequency.
 
@@ -318,7 +334,7 @@ def envelopes_a(response: PlantResponse, time_s: FloatArray) -> FloatArray:
     Returns
     -------
     FloatArray
-        Shape (1 + machines) x times [A].
+        Shape (1 + participants) x times [A].
     """
     slow = np.abs(response.rate_per_s.imag) < math.pi * response.frequency_hz
     growth = np.exp(np.multiply.outer(response.rate_per_s[slow], time_s))

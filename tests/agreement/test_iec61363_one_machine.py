@@ -6,8 +6,8 @@ The machine: 1 MVA, 450 V, 60 Hz, Xd 2.2, X'd 0.25, X''d 0.15, Xq 1.1, X''q 0.18
 The differences are properties of the method: loaded, the formula puts the whole e.m.f. on the direct axis,
 and behind resistance its decay theory takes R as small against X. Another program, written apart, gave the
 same full-order values to the last digit and the same differences within 0.1 % (it had no guard at R = X = 0,
-worth 0.2 % of T'' and T'). They are held within half of the last digit; a wrong T''de, T'de or Tdce moves them
-by percents.
+worth 0.2 % of T'' and T'). They are held within half of the last digit; a wrong T''de, T'de or Tdce moves
+them by percents.
 """
 
 import math
@@ -85,7 +85,7 @@ def iec_source(load_a, sustained_a, *, t_sub_s=0.015, t_trans_s=0.25):
 
 
 def respond(machine, r_ohm=0.0, x_ohm=0.0):
-    return plant_response([machine], [], voltage_v=U_V, fault_r_ohm=r_ohm, fault_x_ohm=x_ohm, frequency_hz=HZ)
+    return plant_response([machine], voltage_v=U_V, fault_r_ohm=r_ohm, fault_x_ohm=x_ohm, frequency_hz=HZ)
 
 
 # Full-order values [A]: I'' or t = 0, T/2, 0.1 s, 1 s; worst peak at T/2; true maximum and its time [ms].
@@ -226,7 +226,7 @@ def test_typical_motor_against_the_full_order_motor():
         cable_x_ohm=0.0,
     )
     response = plant_response(
-        [], [motor], voltage_v=math.sqrt(3.0), fault_r_ohm=0.0, fault_x_ohm=0.0, frequency_hz=HZ
+        [motor], voltage_v=math.sqrt(3.0), fault_r_ohm=0.0, fault_x_ohm=0.0, frequency_hz=HZ
     )
     found = envelopes_a(response, np.array([0.0, HALF_CYCLE_S]))[1]
     assert found == pytest.approx([6.71, 4.34], abs=0.005)

@@ -67,7 +67,9 @@ MOTOR = InductionMachine(
 
 
 def fault(machines, motors=(), r=0.0, x=0.0):
-    return plant_response(machines, motors, voltage_v=U_LINE, fault_r_ohm=r, fault_x_ohm=x, frequency_hz=HZ)
+    return plant_response(
+        [*machines, *motors], voltage_v=U_LINE, fault_r_ohm=r, fault_x_ohm=x, frequency_hz=HZ
+    )
 
 
 def operational_admittance(s, axis):
