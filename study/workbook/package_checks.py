@@ -161,8 +161,6 @@ def _check_workbook(read: _Read, sheets: list[Sheet]) -> Iterator[str]:
         yield f"{part}: two sheets are named {name}"
     for number in _repeated(str(s.number) for s in sheets):
         yield f"{part}: the sheetId {number} stands twice"
-    for target in _repeated(part_key(s.part) for s in sheets):
-        yield f"{part}: two sheets share the part {target}"
     for sheet in sheets:
         if not 0 < len(sheet.name) <= LONGEST_SHEET_NAME or _FORBIDDEN.search(sheet.name):
             yield f"{part}: {sheet.name!r} is no valid name of a sheet"

@@ -8,6 +8,7 @@ from dataclasses import dataclass, field
 from study.issues import PackageError
 from study.workbook.package_opc import Package, Relation, read_relations, rels_part
 from study.workbook.package_xml import OFFICE, Document, Node, escape, whole_number
+from study.workbook.package_zip import part_key
 
 MARK = "StudyResultSheet"
 """Hidden name, scoped to a sheet, whose value is that sheet's name as text.
@@ -105,7 +106,7 @@ def read_sheets(package: Package, root: Node, prefix: str) -> list[Sheet]:
     }
     marks = {d.scope: d.value for _, d in defined_names(root) if d.name.lower() == MARK.lower()}
     container = root.find("sheets")
-    sheets = []
+    sheets: list[Sheet] = []
     for index, node in enumerate(container.all("sheet") if container else ()):
         name = node.attributes.get("name", "")
         relation = relations.get(node.attributes.get(f"{{{OFFICE}}}id", ""))
@@ -124,6 +125,8 @@ def read_sheets(package: Package, root: Node, prefix: str) -> list[Sheet]:
                 node=node,
             )
         )
+    if len({part_key(s.part) for s in sheets}) < len(sheets):
+        raise PackageError("two sheets share one part; the file is damaged")
     return sheets
 
 

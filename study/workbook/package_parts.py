@@ -161,14 +161,22 @@ def edit_content_types(data: bytes, gone: set[str], new: Mapping[str, str]) -> b
             document.remove(node)
         elif wanted is not None:
             document.set_attribute(node, "ContentType", wanted)
-    prefix = document.prefix(document.root)
-    missing = [n for n, t in new.items() if part_key(n) not in types.overrides and types.of(n) != t]
-    if missing:
-        rows = (
-            f'<{prefix}Override PartName="/{escape(n)}" ContentType="{escape(new[n])}"/>' for n in missing
-        )
-        document.append(document.root, "".join(rows))
+    missing = {n: t for n, t in new.items() if part_key(n) not in types.overrides and types.of(n) != t}
+    document.append(document.root, _declarations(missing, types.defaults, document.prefix(document.root)))
     return document.result()
+
+
+def _declarations(missing: Mapping[str, str], defaults: Mapping[str, str], prefix: str) -> str:
+    """Declare parts as Excel does: pictures and notes by their extension, XML one by one."""
+    rows, known = [], dict(defaults)
+    for name, kind in missing.items():
+        extension = part_key(name).rpartition(".")[2]
+        if extension not in known and not kind.endswith("+xml"):
+            known[extension] = kind
+            rows.append(f'<{prefix}Default Extension="{escape(extension)}" ContentType="{escape(kind)}"/>')
+        elif known.get(extension) != kind:
+            rows.append(f'<{prefix}Override PartName="/{escape(name)}" ContentType="{escape(kind)}"/>')
+    return "".join(rows)
 
 
 def edit_relations(data: bytes, source: str, gone: set[str], new: Sequence[Relation]) -> bytes:

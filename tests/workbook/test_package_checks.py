@@ -107,7 +107,7 @@ FAULTS = {
         RELS,
         rb"worksheets/sheet5.xml",
         b"worksheets/sheet4.xml",
-        "share the part xl/worksheets/sheet4.xml",
+        "two sheets share one part",
     ),
     "no visible sheet": (
         BOOK,

@@ -321,6 +321,8 @@ def test_the_least_workbook_that_there_is(results):
     assert validate_package(data) == []
     assert graft_result_sheets(data, results) == data
     assert load(data).sheetnames == ["One", "R Summary", "R Load flow"]
+    assert b'<Default Extension="png" ContentType="image/png"/>' in parts(data)["[Content_Types].xml"]
+    assert parts(data)["[Content_Types].xml"].count(b'Default Extension="vml"') == 1
     assert load(data)["One"]["A1"].value == 1
     test_every_result_cell_keeps_its_look(results, data)
 
