@@ -1,0 +1,413 @@
+"""Runs the rooms in order: workbook, network, analyses, checks, report. No formula, no cell address."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from study.issues import Issue, PackageError, StudyError
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+    from study.analyses.balance import BalanceOptions
+    from study.analyses.sharing_options import SharingOptions
+    from study.checks.limits import Limits
+    from study.model.plant import Plant
+    from study.report.content import StudyOutcome
+
+Progress = Callable[[str], None]
+DEMOS = ("workboat", "service-vessel", "large-vessel")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Written:
+    """Files that a run has written, and what the user should know about them."""
+
+    paths: tuple[Path, ...]
+    notes: tuple[str, ...]
+
+
+def run_study(book: Path | str, progress: Progress | None = None) -> StudyOutcome:
+    """Read a workbook and do the whole study; nothing is written.
+
+    Parameters
+    ----------
+    book : path
+        An .xlsx or .xlsm file.
+    progress : callable, optional
+        Is told in a few words what is being done.
+
+    Returns
+    -------
+    StudyOutcome
+        Plant, results and verdicts.
+
+    Raises
+    ------
+    WorkbookError
+        The workbook cannot be used; holds every fault.
+    PackageError
+        The file cannot be opened.
+    """
+    from study.workbook import read_plant
+
+    _tell(progress, f"reading {Path(book).name}")
+    return study_plant(read_plant(book), progress)
+
+
+def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
+    """Do the whole study of a plant that has been read.
+
+    Parameters
+    ----------
+    plant : Plant
+        The plant.
+    progress : callable, optional
+        Is told in a few words what is being done.
+
+    Returns
+    -------
+    StudyOutcome
+        Plant, results and verdicts.
+    """
+    from study.analyses.balance import load_balance
+    from study.analyses.load_flow import load_flow
+    from study.analyses.regulation import voltage_regulation
+    from study.analyses.sharing import sharing_study
+    from study.checks.limits import limits_in_force
+    from study.network.network import build_network, mode_network
+    from study.report.content import StudyOutcome
+    from study.report.methods import METHODS
+
+    limits = limits_in_force(plant.acceptance)
+    network = build_network(plant)
+    networks = [mode_network(network, mode) for mode in plant.modes]
+    _tell(progress, "load balance")
+    balance = load_balance(plant, [at.view for at in networks], _balance_options(limits))
+    p_kw, q_kvar = balance.demand.p_counted_kw, balance.demand.q_counted_kvar
+    _tell(progress, f"load flow of {len(networks)} modes")
+    flow = load_flow(networks, p_kw, q_kvar)
+    _tell(progress, "regulation and sharing")
+    regulation = voltage_regulation(plant)
+    sharing = sharing_study(networks, p_kw, q_kvar, _sharing_options(limits))
+    outcome = StudyOutcome(
+        plant=plant,
+        balance=balance,
+        load_flow=flow,
+        regulation=regulation,
+        sharing=sharing,
+        verdicts=(),
+        limits=tuple(limits.by_key[key] for key in USED_LIMITS),
+        methods=METHODS,
+        tool_version=tool_version(),
+    )
+    return _judged(outcome, limits)
+
+
+USED_LIMITS = (
+    "close_margin",
+    "voltage_reference",
+    "load_data_tolerance",
+    "intermittent_diversity",
+    "one_set_margin",
+    "set_loading",
+    "set_loss_loading",
+    "one_out_loading",
+    "emergency_duration",
+    "emergency_start",
+    "voltage_low",
+    "voltage_high",
+    "frequency_deviation",
+    "cable_drop",
+    "regulation_main",
+    "regulation_emergency",
+    "speed_variation",
+    "kw_sharing_largest",
+    "kw_sharing_own",
+    "kvar_sharing_largest",
+    "kvar_sharing_smallest",
+    "cable_loading",
+    "transformer_loading",
+    "busbar_loading",
+    "supply_loading",
+)
+
+
+def _judged(outcome: StudyOutcome, limits: Limits) -> StudyOutcome:
+    from dataclasses import replace
+
+    from study.checks.capacity import judge_capacity
+    from study.checks.loading import judge_loading
+    from study.checks.sharing import judge_regulation, judge_sharing
+    from study.checks.voltage import judge_voltage
+
+    plant = outcome.plant
+    return replace(
+        outcome,
+        verdicts=(
+            *judge_capacity(plant, outcome.balance, limits),
+            *judge_loading(plant, outcome.load_flow, limits),
+            *judge_voltage(plant, outcome.load_flow, limits),
+            *judge_sharing(plant, outcome.sharing, limits),
+            *judge_regulation(plant, outcome.regulation, limits),
+        ),
+    )
+
+
+def _balance_options(limits: Limits) -> BalanceOptions:
+    from study.analyses.balance import BalanceOptions
+
+    return BalanceOptions(
+        intermittent_diversity=limits.number("intermittent_diversity"),
+        one_set_margin=limits.fraction("one_set_margin"),
+        emergency_hours=limits.number("emergency_duration"),
+        emergency_basis=limits.basis("emergency_duration"),
+        blackout_start_s=limits.number("emergency_start"),
+    )
+
+
+def _sharing_options(limits: Limits) -> SharingOptions:
+    from study.analyses.sharing_options import SharingOptions
+
+    return SharingOptions(
+        kw_of_largest=limits.fraction("kw_sharing_largest"),
+        kw_of_own=limits.fraction("kw_sharing_own"),
+        kvar_of_largest=limits.fraction("kvar_sharing_largest"),
+        kvar_of_smallest=limits.fraction("kvar_sharing_smallest"),
+        voltage_low=limits.fraction("voltage_low"),
+        voltage_high=limits.fraction("voltage_high"),
+    )
+
+
+def check_study(book: Path | str) -> tuple[Plant | None, tuple[Issue, ...]]:
+    """Read and check a workbook, and do nothing else.
+
+    Parameters
+    ----------
+    book : path
+        An .xlsx or .xlsm file.
+
+    Returns
+    -------
+    plant : Plant or None
+        None where there is a fault.
+    issues : tuple of Issue
+        Everything found, in the order of the sheets.
+    """
+    from study.issues import WorkbookError
+    from study.network.network import build_network
+    from study.workbook import check_workbook
+
+    plant, issues = check_workbook(book)
+    if plant is not None:
+        try:
+            build_network(plant)
+        except WorkbookError as error:
+            return None, (*issues, *error.issues)
+    return plant, issues
+
+
+def write_new(book: Path, demo: str | None) -> None:
+    """Write a blank workbook, or a copy of a demonstration vessel.
+
+    Parameters
+    ----------
+    book : Path
+        The file to write.
+    demo : str or None
+        Name of the demonstration vessel.
+
+    Raises
+    ------
+    StudyError
+        There is no vessel of that name.
+    """
+    from study.resources import resource_dir
+    from study.workbook import write_workbook
+    from study.workbook.package import write_atomically
+
+    if book.suffix.lower() != ".xlsx":
+        raise StudyError(f"{book.name}: give the new workbook a name that ends in .xlsx")
+    if demo is None:
+        write_workbook(book)
+        return
+    if demo not in DEMOS:
+        raise StudyError(f"there is no demonstration vessel {demo!r}; the names are {', '.join(DEMOS)}")
+    write_atomically(book, (resource_dir("workbooks") / f"{demo}.xlsx").read_bytes())
+
+
+def write_results(
+    outcome: StudyOutcome,
+    book: Path | str,
+    *,
+    out: Path | None = None,
+    networks: bool = False,
+    progress: Progress | None = None,
+) -> Written:
+    """Write result sheets into the workbook, and report and JSON beside it; or all of it to a folder.
+
+    Parameters
+    ----------
+    outcome : StudyOutcome
+        The study of that workbook.
+    book : path
+        The workbook that was read.
+    out : Path, optional
+        A folder; the workbook itself is then left untouched and a copy is written there.
+    networks : bool
+        Also write the network of every mode for those who script.
+    progress : callable, optional
+        Is told in a few words what is being done.
+
+    Returns
+    -------
+    Written
+        Paths and notes.
+
+    Raises
+    ------
+    PackageError
+        A file cannot be written; what stood there before is whole.
+    """
+    from study.report.excel import result_workbook
+    from study.report.html import report_page
+    from study.report.json_out import json_text
+    from study.workbook.package import graft_result_sheets, open_package, write_atomically
+
+    book = Path(book)
+    folder = _folder(book, out)
+    _tell(progress, "writing the result sheets")
+    package = open_package(book)
+    data = graft_result_sheets(package.data, result_workbook(outcome))
+    target, notes = _write_book(book, folder / book.name, data, package.digest)
+    paths = [target]
+    _tell(progress, "writing the report")
+    for name, text in (
+        (f"{book.stem}-report.html", report_page(outcome)),
+        (f"{book.stem}-results.json", json_text(outcome)),
+    ):
+        write_atomically(folder / name, text.encode("utf-8"))
+        paths.append(folder / name)
+    if networks:
+        paths += _write_networks(outcome, folder, book.stem)
+    return Written(paths=tuple(paths), notes=notes)
+
+
+def _folder(book: Path, out: Path | None) -> Path:
+    if out is None:
+        return book.parent
+    if out.exists() and not out.is_dir():
+        raise PackageError(f"{out} is a file; give the name of a folder")
+    try:
+        out.mkdir(parents=True, exist_ok=True)
+    except OSError as error:
+        raise PackageError(f"{out}: the folder cannot be made ({error.strerror})") from error
+    if out.resolve() == book.resolve().parent:
+        raise PackageError(f"{out} is the workbook's own folder; --out leaves the workbook untouched")
+    return out
+
+
+def _write_book(book: Path, target: Path, data: bytes, digest: str) -> tuple[Path, tuple[str, ...]]:
+    """Write the workbook; where it cannot be written in place, write a copy beside it and say so."""
+    from study.workbook.package import write_atomically
+
+    in_place = target.resolve() == book.resolve()
+    try:
+        write_atomically(target, data, read_digest=digest if in_place else None)
+    except PackageError as error:
+        if not in_place:
+            raise
+        copy = book.with_name(f"{book.stem}-with-results{book.suffix}")
+        write_atomically(copy, data)
+        return copy, (f"{error}; the result sheets are in {copy.name} instead",)
+    return target, ()
+
+
+def _write_networks(outcome: StudyOutcome, folder: Path, stem: str) -> list[Path]:
+    from study.network.network import build_network, mode_network
+    from study.network.solver import case, export_json
+    from study.workbook.package import write_atomically
+
+    demand = outcome.balance.demand
+    network = build_network(outcome.plant)
+    paths = []
+    for row, mode in enumerate(outcome.plant.modes):
+        one = case(mode_network(network, mode), demand.p_counted_kw[row], demand.q_counted_kvar[row])
+        name = "".join(c if c.isalnum() else "-" for c in mode.name.lower())
+        path = folder / f"{stem}-network-{row + 1:02d}-{name}.json"
+        write_atomically(path, export_json(network, one).encode("utf-8"))
+        paths.append(path)
+    return paths
+
+
+def result_frames(outcome: StudyOutcome) -> dict[str, pd.DataFrame]:
+    """Return every result table as a DataFrame, for notebooks.
+
+    Parameters
+    ----------
+    outcome : StudyOutcome
+        The study.
+
+    Returns
+    -------
+    dict of str to pandas.DataFrame
+        Keyed and headed like the JSON file; columns of a mode are headed ``(mode, key)``.
+    """
+    import pandas as pd
+
+    from study.report.catalogue import all_tables
+
+    frames = {}
+    for key, table in all_tables(outcome).items():
+        headings = [(c.group, c.key) if c.group else c.key for c in table.columns]
+        frames[key] = pd.DataFrame(dict(zip(headings, table.values, strict=True)))
+    return frames
+
+
+def summary_text(outcome: StudyOutcome) -> str:
+    """Return a short table of verdicts for the terminal: subjects down, modes across."""
+    from study.report.comparison import verdict_summary
+
+    return verdict_summary(outcome)
+
+
+def compare_modes(book: Path, one: str, other: str) -> str:
+    """Return two modes of a workbook side by side, as text.
+
+    Raises
+    ------
+    StudyError
+        The workbook has no such mode.
+    """
+    from study.report.comparison import modes_side_by_side
+
+    outcome = run_study(book)
+    for name in (one, other):
+        if name not in outcome.modes:
+            raise StudyError(f"{book.name} has no mode {name!r}; its modes are {', '.join(outcome.modes)}")
+    return modes_side_by_side(outcome, one, other)
+
+
+def compare_workbooks(book: Path, other: Path) -> str:
+    """Return what changed between two revisions of a workbook, inputs and verdicts, as text."""
+    from study.report.comparison import revisions_side_by_side
+
+    return revisions_side_by_side(run_study(book), run_study(other))
+
+
+def tool_version() -> str:
+    """Return the version of the installed program."""
+    from importlib.metadata import PackageNotFoundError, version
+
+    try:
+        return version("vessel-study")
+    except PackageNotFoundError:
+        return "not installed"
+
+
+def _tell(progress: Progress | None, text: str) -> None:
+    if progress is not None:
+        progress(text)
