@@ -11,8 +11,9 @@ from dataclasses import dataclass
 from typing import Literal
 
 from study.issues import Issue, WorkbookError
-from study.model.branches import Cable, Transformer
+from study.model.branches import Cable
 from study.model.plant import Plant
+from study.network.union_find import UnionFind
 
 BranchKind = Literal["cable", "transformer", "three-winding transformer", "tie", "reactor"]
 LARGEST_STEP_AT_ONE_LEVEL = (
@@ -102,7 +103,7 @@ class _Builder:
         self.board_node: dict[str, int] = {}
         self.side_node: dict[tuple[str, str], int] = {}
         self.home = _boards_of_equipment(plant)
-        self.transformers: dict[str, Transformer] = {t.name: t for t in plant.transformers}
+        self.windings = _windings(plant)
         self.loads = {x.name for x in plant.loads}
 
     def build(self) -> Topology:
@@ -181,18 +182,18 @@ class _Builder:
         return None
 
     def _boards_at(self, end: str) -> tuple[str, ...]:
-        """Return the boards that an end of a cable stands on: two for a transformer."""
+        """Return the boards that an end of a cable stands on: one for each winding of a transformer."""
         if end in self.board_node:
             return (end,)
-        if end in self.transformers:
-            return self.transformers[end].from_board, self.transformers[end].to_board
+        if end in self.windings:
+            return tuple(self.windings[end].values())
         return (self.home[end],) if end in self.home else ()
 
     def _end_node(self, end: str, board: str) -> int:
         if end in self.board_node:
             return self.board_node[end]
-        if end in self.transformers:
-            side = "primary" if board == self.transformers[end].from_board else "secondary"
+        if end in self.windings:
+            side = next(winding for winding, at in self.windings[end].items() if at == board)
             return self._terminal(side, end, board, side)
         return self._terminal("terminal", end, board, "")
 
@@ -217,20 +218,16 @@ class _Builder:
     def _add_three_winding(self) -> None:
         for i, t in enumerate(self.plant.three_winding):
             star = self._new_node("star", t.name, t.primary_board)
-            ends = {
-                "primary": t.primary_board,
-                "secondary": t.secondary_board,
-                "tertiary": t.tertiary_board,
-            }
-            for winding, board in ends.items():
+            for winding, board in self.windings[t.name].items():
+                terminal = self.side_node.get((t.name, winding), self.board_node[board])
                 self.branches.append(
                     Branch(
                         kind="three-winding transformer",
                         name=t.name,
                         winding=winding,  # type: ignore[arg-type]
                         index=i,
-                        from_node=self.board_node[board] if winding == "primary" else star,
-                        to_node=star if winding == "primary" else self.board_node[board],
+                        from_node=terminal if winding == "primary" else star,
+                        to_node=star if winding == "primary" else terminal,
                         from_end=board if winding == "primary" else t.name,
                         to_end=t.name if winding == "primary" else board,
                         boards=(t.primary_board, board),
@@ -309,42 +306,16 @@ class _Builder:
         )
 
 
-class UnionFind:
-    """Groups of nodes that are joined; the root of a group is its lowest node.
-
-    Parameters
-    ----------
-    size : int
-        Number of nodes.
-
-    Examples
-    --------
-    >>> u = UnionFind(3); u.join(2, 1); u.root(2), u.root(0)
-    (1, 0)
-    """
-
-    def __init__(self, size: int) -> None:
-        self._parent = list(range(size))
-
-    def root(self, node: int) -> int:
-        """Return the root of a node's group."""
-        parent = self._parent
-        while parent[node] != node:
-            parent[node] = parent[parent[node]]
-            node = parent[node]
-        return node
-
-    def join(self, a: int, b: int) -> bool:
-        """Join two groups; False where they were one already."""
-        ra, rb = self.root(a), self.root(b)
-        if ra == rb:
-            return False
-        self._parent[max(ra, rb)] = min(ra, rb)
-        return True
-
-    def roots(self) -> list[int]:
-        """Return the root of every node."""
-        return [self.root(i) for i in range(len(self._parent))]
+def _windings(plant: Plant) -> dict[str, dict[str, str]]:
+    """Return the board on each winding of every transformer."""
+    two: dict[str, dict[str, str]] = {
+        t.name: {"primary": t.from_board, "secondary": t.to_board} for t in plant.transformers
+    }
+    three = {
+        t.name: {"primary": t.primary_board, "secondary": t.secondary_board, "tertiary": t.tertiary_board}
+        for t in plant.three_winding
+    }
+    return two | three
 
 
 def _boards_of_equipment(plant: Plant) -> dict[str, str]:
