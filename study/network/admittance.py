@@ -51,6 +51,7 @@ def nodal_admittance(
     from_bus: IntArray,
     to_bus: IntArray,
     two_port: tuple[ComplexArray, ComplexArray, ComplexArray, ComplexArray],
+    *,
     shunt_bus: IntArray,
     shunt_pu: ComplexArray,
 ) -> csr_array:

@@ -149,8 +149,8 @@ def _cable_row(
 def _phase_factors(load: Load, u_v: float) -> tuple[float, float]:
     """Return impedance and current factors of a run to a consumer that is not three-phase.
 
-    Out and back: the drop is 2 Z I where it is sqrt(3) Z I in a three-phase run. A line-to-line consumer draws
-    S/U = sqrt(3) S/(sqrt(3) U), one from line to neutral 3 S/(sqrt(3) U), with 2 x 3 in the impedance.
+    Out and back: the drop is 2 Z I where it is sqrt(3) Z I in a three-phase run. A line-to-line consumer
+    draws S/U = sqrt(3) S/(sqrt(3) U), one from line to neutral 3 S/(sqrt(3) U), with 2 x 3 in the impedance.
     """
     if load.phases == 3:
         return 1.0, 1.0
@@ -160,7 +160,7 @@ def _phase_factors(load: Load, u_v: float) -> tuple[float, float]:
 def _is_line_to_neutral(load: Load, u_v: float) -> bool:
     if load.phases != 1:
         return False
-    return abs(load.u_rated_v * 3.0**0.5 / u_v - 1.0) < PHASE_VOLTAGE_TOLERANCE
+    return bool(abs(load.u_rated_v * 3.0**0.5 / u_v - 1.0) < PHASE_VOLTAGE_TOLERANCE)
 
 
 def _transformer_row(
@@ -202,11 +202,10 @@ def _winding_row(
     t: ThreeWindingTransformer, winding: str, u_from_v: float, u_to_v: float, s_base_kva: float
 ) -> tuple[float, float, float, float, float, float]:
     """Return one leg of the star that stands for a three-winding transformer."""
-    ps, pt, st = (
-        _pair(t.u_k_primary_secondary_pu, t.copper_loss_primary_secondary_kw, t.s_primary_kva, t.s_secondary_kva),
-        _pair(t.u_k_primary_tertiary_pu, t.copper_loss_primary_tertiary_kw, t.s_primary_kva, t.s_tertiary_kva),
-        _pair(t.u_k_secondary_tertiary_pu, t.copper_loss_secondary_tertiary_kw, t.s_secondary_kva, t.s_tertiary_kva),
-    )  # fmt: skip
+    s_p, s_s, s_t = t.s_primary_kva, t.s_secondary_kva, t.s_tertiary_kva
+    ps = _pair(t.u_k_primary_secondary_pu, t.copper_loss_primary_secondary_kw, min(s_p, s_s))
+    pt = _pair(t.u_k_primary_tertiary_pu, t.copper_loss_primary_tertiary_kw, min(s_p, s_t))
+    st = _pair(t.u_k_secondary_tertiary_pu, t.copper_loss_secondary_tertiary_kw, min(s_s, s_t))
     legs = {
         "primary": (ps + pt - st, t.u_primary_v),
         "secondary": (ps + st - pt, t.u_secondary_v),
@@ -220,11 +219,10 @@ def _winding_row(
     return z.real, z.imag, 0.0, 0.0, (t.u_primary_v / u_from_v) / (u_own / u_to_v), 1.0
 
 
-def _pair(u_k_pu: float, copper_loss_kw: float, s_one_kva: float, s_other_kva: float) -> complex:
+def _pair(u_k_pu: float, copper_loss_kw: float, s_kva: float) -> complex:
     """Return the short-circuit impedance between two windings per unit and kVA of base."""
-    s = min(s_one_kva, s_other_kva)
-    r = copper_loss_kw / s
-    return complex(r, _rest(u_k_pu, r)) / s
+    r = copper_loss_kw / s_kva
+    return complex(r, _rest(u_k_pu, r)) / s_kva
 
 
 def _rest(z: float, r: float) -> float:

@@ -7,10 +7,9 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from study.formulas.load_compensation import reactance_from_droop, signed_reactance
 from study.issues import SolveError
-from study.network.equations import Demand, Point
-from study.network.laws import VoltageLaws, voltage_laws
+from study.network.equations import Demand, Point, Problem
+from study.network.laws import VoltageLaws, some, voltage_laws
 from study.network.limits import (
     CEILING,
     LARGEST_CURRENT,
@@ -22,7 +21,8 @@ from study.network.limits import (
 )
 from study.network.network import ModeNetwork, checked_loads
 from study.network.power import PowerLaws, power_laws
-from study.network.scenarios import Solutions, columns_of, solve_scenarios
+from study.network.scenarios import Solutions, solve_scenarios
+from study.network.settings import Settings, column_wise, or_own, reactances
 from study.network.sources import Law, Source
 from study.network.stability import most_reversed, runaway
 
@@ -35,29 +35,18 @@ LIMIT_WORDS = {CEILING: "excitation", NO_EXCITATION: "excitation", LARGEST_CURRE
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Settings:
-    """Trims that vary from scenario to scenario, arrays [scenario, source] or [source]; None leaves them.
-
-    Per unit of the source's rated voltage and of rated frequency; droops over the base named in the workbook.
-    """
-
-    no_load_voltage_pu: FloatArray | None = None
-    voltage_droop_pu: FloatArray | None = None
-    no_load_frequency_pu: FloatArray | None = None
-    speed_droop_pu: FloatArray | None = None
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
 class BatchSolution:
     """Scenarios of one mode, arrays [scenario, ...].
 
-    ``v_bus_pu`` [scenario, bus] is complex, per unit of the level's base voltage. Sources' kW and kvar are those
-    at their terminals. ``excitation_state`` and ``power_state`` [scenario, source] are 0 within limits (see
-    `limits`). ``field_pu`` is a multiple of the field at rated load. Where ``solved`` is False the numbers are
-    NaN and ``reason`` says why.
+    ``v_bus_pu`` [scenario, bus] is complex, per unit of the level's base voltage. Sources' kW and kvar are
+    those at their terminals. ``excitation_state`` and ``power_state`` [scenario, source] are 0 within limits
+    (see `limits`). ``field_pu`` is a multiple of the field at rated load. Where ``solved`` is False the
+    numbers are NaN and ``reason`` says why. ``laws`` and ``power`` are those within limits.
     """
 
     at: ModeNetwork
+    laws: VoltageLaws
+    power: PowerLaws
     solved: BoolArray
     reason: tuple[str, ...]
     residual_pu: FloatArray
@@ -74,7 +63,7 @@ class BatchSolution:
     ran_away: BoolArray
 
     def board_u_pu(self) -> FloatArray:
-        """Return board voltages [scenario, board], per unit of the board's nominal voltage; NaN where dead."""
+        """Return board voltages [scenario, board], per unit of nominal voltage; NaN where dead."""
         network = self.at.network
         nominal = np.array([b.u_nominal_v for b in network.plant.boards])
         bus = self.at.bus_of_node[: len(nominal)]
@@ -118,7 +107,7 @@ class _Batch:
         self.s_base = at.network.s_base_kva
         p, q = checked_loads(at, p_kw, q_kvar)
         trims = [
-            _column_wise(at, getattr(settings, name), name)
+            column_wise(at, getattr(settings, name), name)
             for name in (
                 "no_load_voltage_pu",
                 "voltage_droop_pu",
@@ -132,16 +121,16 @@ class _Batch:
             raise SolveError(f"{at.mode.name}: loads and settings are given for {sorted(widths)} scenarios")
         self.demand = _demand(at, p, q)
         u_base = at.network.u_base_v[np.array([s.node for s in self.sources], np.int64)]
-        v_ref = _or_own(trims[0], self.sources, "v_ref_pu")
+        v_ref = or_own(trims[0], self.sources, "v_ref_pu")
         self.laws = voltage_laws(
             self.sources,
             u_base,
             self.s_base,
             v_ref_pu=v_ref,
-            xc_pu=_reactances(self.sources, v_ref, trims[0], trims[1]),
+            xc_pu=reactances(self.sources, v_ref, trims[0], trims[1]),
         )
-        self.f_no_load = _or_own(trims[2], self.sources, "f_no_load_pu")
-        self.speed_droop = _or_own(trims[3], self.sources, "speed_droop_pu")
+        self.f_no_load = or_own(trims[2], self.sources, "f_no_load_pu")
+        self.speed_droop = or_own(trims[3], self.sources, "speed_droop_pu")
         shape = (len(self.sources), self.count)
         self.state, self.power_state = np.zeros(shape, np.int64), np.zeros(shape, np.int64)
         self.pinned = np.zeros(shape, bool)
@@ -173,22 +162,27 @@ class _Batch:
     def _pass(self, found: Solutions, k: IntArray, reasons: NDArray[np.object_]) -> IntArray:
         """Solve scenarios in one state; return those in which a source then changes its state."""
         state, power_state = self.state[:, k[0]], self.power_state[:, k[0]]
-        own = self.laws.columns(k)
-        laws = limited_laws(own, self.sources, state)
-        power = self._power(k, power_state)
-        for n in np.flatnonzero(power.short):
-            reasons[k] = f"the load exceeds what the engines of {_names(self.sources, n)} can give."
-        if power.short.any():
+        problem = self._problem(k, state, power_state)
+        for n in np.flatnonzero(problem.power.short):
+            reasons[k] = f"the load exceeds what the engines of {_names(self.sources, int(n))} can give."
+        if problem.power.short.any():
             return np.zeros(0, np.int64)
-        demand = columns_of(self.demand, k)
-        some = solve_scenarios(self.at.structure, laws, power, demand, len(k), _mean_point(found, k))
-        _store(found, k, some)
+        solved = solve_scenarios(problem, len(k), _mean_point(found, k))
+        _store(found, k, solved)
         ran = self._let_run_away(k, found, state, power_state)
-        lost = k[~some.converged]
+        lost = k[~solved.converged]
         for n in np.setdiff1d(lost, ran):
             reasons[n] = self._no_point(n, found)
         moved = self._change_states(np.setdiff1d(k, np.union1d(lost, ran)), found, state, power_state)
-        return np.union1d(moved, ran)
+        return np.asarray(np.union1d(moved, ran))
+
+    def _problem(self, k: IntArray, state: IntArray, power_state: IntArray) -> Problem:
+        return Problem(
+            at=self.at.structure,
+            laws=limited_laws(self.laws.columns(k), self.sources, state),
+            power=self._power(k, power_state),
+            demand=Demand(constant=some(self.demand.constant, k), impedance=some(self.demand.impedance, k)),
+        )
 
     def _no_point(self, n: int, found: Solutions) -> str:
         tried = f"(residual {found.residual_pu[n]:.1e} pu after {found.iterations[n]} iterations)."
@@ -223,7 +217,7 @@ class _Batch:
         wanted, by = excitation_steps(self.laws.columns(k), self.sources, state, v, i)
         by[self.pinned[:, k]] = 0.0
         p_wanted, p_by = power_steps(
-            power, self.sources, power_state, (v * np.conj(i)).real, f, self.s_base
+            power, self.sources, power_state, p=(v * np.conj(i)).real, f=f, s_base_kva=self.s_base
         )
         distance = np.concatenate([by, p_by])
         most = distance.argmax(axis=0)
@@ -233,7 +227,7 @@ class _Batch:
         self.state[most[by_field], k[by_field]] = wanted[most[by_field], by_field]
         j = most[by_engine] - count
         self.power_state[j, k[by_engine]] = p_wanted[j, by_engine]
-        return k[moves]
+        return np.asarray(k[moves])
 
     def _let_run_away(
         self, k: IntArray, found: Solutions, state: IntArray, power_state: IntArray
@@ -246,29 +240,27 @@ class _Batch:
         ran = []
         for n in k if (self.laws.x < 0.0).any() else k[:0]:
             one = np.array([n])
-            laws = limited_laws(self.laws.columns(one), self.sources, state)
-            demand, power = columns_of(self.demand, one), self._power(one, power_state)
+            problem = self._problem(one, state, power_state)
             j: int | None
             x = None
             if found.converged[n]:
                 x = Point(v=found.v[:, one], i=found.i[:, one], m=found.m[:, one])
-                j = runaway(self.at.structure, laws, power, demand, x)
+                j = runaway(problem, x)
             else:
-                j = most_reversed(laws)
+                j = most_reversed(problem.laws)
             if j is not None:
-                self.state[j, n] = self._limit_reached(j, laws, power, demand, x)
+                self.state[j, n] = self._limit_reached(j, problem, x)
                 self.pinned[j, n] = True
                 ran.append(n)
         return np.array(ran, np.int64)
 
-    def _limit_reached(
-        self, j: int, laws: VoltageLaws, power: PowerLaws, demand: Demand, x: Point | None
-    ) -> int:
+    def _limit_reached(self, j: int, problem: Problem, x: Point | None) -> int:
         """Return the limit that a set runs to when it is closed in with no kvar on it."""
+        laws = problem.laws
         code, q_set, q_per_p = laws.code.copy(), laws.q_set.copy(), laws.q_per_p.copy()
         code[j], q_set[j], q_per_p[j] = Law.REACTIVE_POWER, 0.0, 0.0
         idle = replace(laws, code=code, q_set=q_set, q_per_p=q_per_p)
-        at_rest = solve_scenarios(self.at.structure, idle, power, demand, 1, x)
+        at_rest = solve_scenarios(replace(problem, laws=idle), 1, x)
         bus = self.at.structure.source_bus
         error = regulator_error(laws, at_rest.v[bus], at_rest.i)
         return CEILING if error[j, 0] > 0.0 else NO_EXCITATION
@@ -292,6 +284,8 @@ class _Batch:
         s = v_s * np.conj(found.i) * self.s_base
         return BatchSolution(
             at=self.at,
+            laws=self.laws,
+            power=self._power(np.arange(self.count), np.zeros(len(self.sources), np.int64)),
             solved=solved,
             reason=tuple(str(r) for r in reasons),
             residual_pu=found.residual_pu,
@@ -320,6 +314,50 @@ class _Batch:
         for k in self._alike(np.arange(self.count)):
             out[:, k] = self._power(k, self.power_state[:, k[0]]).frequency(m[:, k])
         return np.where(np.isnan(m), np.nan, out)
+
+
+def laws_in_force(batch: BatchSolution, k: int = 0) -> VoltageLaws:
+    """Return the voltage laws of one scenario, with limited sources at their limits.
+
+    Parameters
+    ----------
+    batch : BatchSolution
+        Solved scenarios.
+    k : int
+        Which.
+
+    Returns
+    -------
+    VoltageLaws
+        One column.
+    """
+    return limited_laws(batch.laws.column(k), batch.at.sources, batch.excitation_state[k])
+
+
+def power_in_force(batch: BatchSolution, k: int = 0) -> PowerLaws:
+    """Return the active-power laws of one scenario, with limited sources at their limits.
+
+    Parameters
+    ----------
+    batch : BatchSolution
+        Solved scenarios.
+    k : int
+        Which.
+
+    Returns
+    -------
+    PowerLaws
+        One column.
+    """
+    own = batch.power.column(k)
+    return power_laws(
+        batch.at.sources,
+        batch.at.structure.islands,
+        batch.at.network.s_base_kva,
+        f_no_load_pu=own.f_no_load,
+        speed_droop_pu=own.speed_droop,
+        at_limit=batch.power_state[k],
+    )
 
 
 def _names(sources: tuple[Source, ...], island: int) -> str:
@@ -351,46 +389,3 @@ def _demand(at: ModeNetwork, p_kw: FloatArray, q_kvar: FloatArray) -> Demand:
     constant = at.port_sum @ (s * share) + at.port_constant[:, None]
     impedance = at.port_sum @ (s * (1.0 - share) * at.load_arrays.v_scale[:, None] ** 2)
     return Demand(constant=np.asarray(constant), impedance=np.asarray(impedance))
-
-
-def _column_wise(at: ModeNetwork, values: FloatArray | None, name: str) -> FloatArray | None:
-    if values is None:
-        return None
-    out = np.atleast_2d(np.asarray(values, float)).T
-    if out.shape[0] != len(at.sources):
-        raise SolveError(
-            f"{at.mode.name}: {name} is given for {out.shape[0]} of {len(at.sources)} sources"
-        )
-    if not np.isfinite(out).all():
-        raise SolveError(f"{at.mode.name}: {name} holds what is not a number")
-    return out
-
-
-def _or_own(values: FloatArray | None, sources: tuple[Source, ...], name: str) -> FloatArray:
-    own = np.array([getattr(s, name) for s in sources], float)[:, None]
-    return own if values is None else values
-
-
-def _reactances(
-    sources: tuple[Source, ...], v_ref: FloatArray, given_v: FloatArray | None, droop: FloatArray | None
-) -> FloatArray:
-    """Return the compensating reactance of each source, again where voltage or droop setting varies."""
-    own = np.array([s.xc_pu for s in sources], float)[:, None]
-    if droop is None and given_v is None:
-        return own
-    base = np.array([s.droop_pu for s in sources], float)[:, None] if droop is None else droop
-    v_all, d_all = np.broadcast_arrays(v_ref, base)
-    out = np.repeat(own, v_all.shape[1], axis=1)
-    for j, s in enumerate(sources):
-        if s.machine is not None and s.law in (Law.PHASOR, Law.REACTIVE_CURRENT, Law.CROSS_CURRENT):
-            pairs, place = np.unique(np.stack([v_all[j], d_all[j]]), axis=1, return_inverse=True)
-            out[j] = np.array([_reactance(s, v, d) for v, d in pairs.T])[place]
-        elif droop is not None and s.law == Law.PHASOR:
-            out[j] = d_all[j]
-    return out
-
-
-def _reactance(source: Source, v_ref: float, droop: float) -> float:
-    law = "reactive current" if source.law == Law.REACTIVE_CURRENT else "phasor"
-    x = reactance_from_droop(droop, source.droop_base, law, source.cos_phi, v_ref)  # type: ignore[arg-type]
-    return signed_reactance(x, "reversed" if source.reversed_polarity else "normal")

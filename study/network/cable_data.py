@@ -9,7 +9,7 @@ from study.model.branches import Cable
 def cable_ohm_per_km(cable: Cable, f_hz: float) -> tuple[float, float]:
     """Return resistance at operating temperature, with skin effect, and reactance of one run.
 
-    Source: IEC 60228 for the conductor, IEC 60287-1-1 for temperature and skin effect (see `formulas.cables`).
+    Source: IEC 60228 for the conductor, IEC 60287-1-1 for temperature and skin effect; see `formulas.cables`.
 
     Parameters
     ----------
@@ -30,9 +30,7 @@ def cable_ohm_per_km(cable: Cable, f_hz: float) -> tuple[float, float]:
     """
     r20 = cable.resistance_ohm_per_km
     if r20 is None:
-        r20 = conductor_resistance(
-            cable.section_mm2, cable.conductor, cable.conductor_class, cable.tinned
-        )
+        r20 = conductor_resistance(cable.section_mm2, cable.conductor, cable.conductor_class, cable.tinned)
     x = cable.reactance_ohm_per_km
     if x is None:
         x = typical_reactance(cable.section_mm2, cable.cores, f_hz)

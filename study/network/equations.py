@@ -7,14 +7,14 @@ each island either the angle of its first source's bus or, on shore supply, m it
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 from scipy.sparse import csc_matrix, csr_array
 from scipy.sparse.linalg import SuperLU, splu
 
-from study.network.laws import VoltageLaws
+from study.network.laws import VoltageLaws, some, take
 from study.network.power import PowerLaws
 from study.network.sources import Law
 
@@ -122,7 +122,7 @@ def structure(
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Demand:
-    """Consumers' power at the ports, complex [port, scenario]: constant part, and the part that goes with V^2."""
+    """Consumers' power at the ports, complex [port, scenario]: constant, and what goes with V^2."""
 
     constant: ComplexArray
     impedance: ComplexArray
@@ -161,7 +161,7 @@ def shore_row(laws: VoltageLaws, v: ComplexArray, i: ComplexArray) -> FloatArray
 
 
 def power_residual(
-    laws: VoltageLaws, power: PowerLaws, at: Structure, v: ComplexArray, i: ComplexArray, m: FloatArray
+    at: Structure, laws: VoltageLaws, power: PowerLaws, m: FloatArray, *, v: ComplexArray, i: ComplexArray
 ) -> FloatArray:
     """Return P - a - b m of each source, or the second equation of a shore supply; [source, scenario]."""
     out = (v * np.conj(i)).real - power.a - power.b * m[at.source_island]
@@ -171,17 +171,41 @@ def power_residual(
     return np.asarray(out)
 
 
-def residual(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, x: Point) -> FloatArray:
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Problem:
+    """What is to be solved: the mode's structure, and laws and demand of one scenario or of many."""
+
+    at: Structure
+    laws: VoltageLaws
+    power: PowerLaws
+    demand: Demand
+
+    def column(self, k: int | None) -> Problem:
+        """Return one scenario, or the mean of all where k is None."""
+        return replace(
+            self,
+            laws=self.laws.column(k),
+            power=self.power.column(k),
+            demand=Demand(constant=take(self.demand.constant, k), impedance=take(self.demand.impedance, k)),
+        )
+
+    def columns(self, k: IntArray) -> Problem:
+        """Return some scenarios."""
+        return replace(
+            self,
+            laws=self.laws.columns(k),
+            power=self.power.columns(k),
+            demand=Demand(constant=some(self.demand.constant, k), impedance=some(self.demand.impedance, k)),
+        )
+
+
+def residual(problem: Problem, x: Point) -> FloatArray:
     """Return the residual of every row for one scenario.
 
     Parameters
     ----------
-    at : Structure
-        Of the mode.
-    laws, power : VoltageLaws, PowerLaws
-        Of the sources, one scenario.
-    demand : Demand
-        Of the consumers, one scenario.
+    problem : Problem
+        One scenario.
     x : Point
         Arrays with one column.
 
@@ -190,15 +214,16 @@ def residual(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand,
     ndarray, shape (size,)
         Residuals. [pu]
     """
+    at, laws, power = problem.at, problem.laws, problem.power
     n, s = at.buses, at.sources
     v, i, m = x.v[:, 0], x.i[:, 0], x.m[:, 0]
     current = at.admittance @ v
     np.subtract.at(current, at.source_bus, i)
-    current[at.load_bus] += load_current(v[at.load_bus], _column(demand))
+    current[at.load_bus] += load_current(v[at.load_bus], _column(problem.demand))
     out = np.empty(at.size)
     out[:n], out[n : 2 * n] = current.real, current.imag
     v_s = x.v[at.source_bus]
-    out[2 * n : 2 * n + s] = power_residual(laws, power, at, v_s, x.i, x.m)[:, 0]
+    out[2 * n : 2 * n + s] = power_residual(at, laws, power, x.m, v=v_s, i=x.i)[:, 0]
     out[2 * n + s : 2 * n + 2 * s] = laws.residual(v_s, x.i)[:, 0]
     out[2 * n + 2 * s :] = np.where(power.shore, m, v[at.reference_bus].imag)
     return out
@@ -208,12 +233,12 @@ def _column(demand: Demand) -> Demand:
     return Demand(constant=demand.constant[:, 0], impedance=demand.impedance[:, 0])
 
 
-def jacobian(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, x: Point) -> SuperLU:
+def jacobian(problem: Problem, x: Point) -> SuperLU:
     """Return the factorised Jacobian at a point of one scenario.
 
     Parameters
     ----------
-    at, laws, power, demand, x
+    problem, x
         As for `residual`.
 
     Returns
@@ -226,18 +251,18 @@ def jacobian(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand,
     RuntimeError
         Singular matrix (from SuperLU).
     """
-    values = jacobian_values(at, laws, power, demand, x)
+    at = problem.at
+    values = jacobian_values(problem, x)
     data = np.bincount(at.slot, weights=values, minlength=len(at.indices))
     matrix = csc_matrix((data, at.indices, at.indptr), shape=(at.size, at.size))
     return splu(matrix)
 
 
-def jacobian_values(
-    at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, x: Point
-) -> FloatArray:
+def jacobian_values(problem: Problem, x: Point) -> FloatArray:
     """Return the Jacobian's entries in the order of `structure`."""
+    at, laws, power = problem.at, problem.laws, problem.power
     v_s, i_s = x.v[at.source_bus, 0], x.i[:, 0]
-    by_load = load_gradient(x.v[at.load_bus, 0], _column(demand))
+    by_load = load_gradient(x.v[at.load_bus, 0], _column(problem.demand))
     by_power = np.stack([i_s.real, i_s.imag, v_s.real, v_s.imag])
     b = power.b[:, 0].copy()
     behind = laws.code == Law.BEHIND_IMPEDANCE

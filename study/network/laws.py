@@ -6,6 +6,7 @@ Arrays are [source, scenario]; a source's current leaves it. Every equation is z
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from typing import TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -18,6 +19,7 @@ from study.network.sources import Law, Source
 FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
 IntArray = NDArray[np.int64]
+_Number = TypeVar("_Number", np.float64, np.complex128)
 
 STEP = 1e-6  # of voltage and current, for the gradient of the field equation
 
@@ -142,14 +144,14 @@ class VoltageLaws:
         return (g[0::2] - g[1::2]) / (2.0 * np.array([h_v, h_v, h_i, h_i]))
 
 
-def take(values: FloatArray, k: int | None) -> FloatArray:
+def take(values: NDArray[_Number], k: int | None) -> NDArray[_Number]:
     """Return one column, or the mean column where k is None; one column stands for all scenarios."""
     if values.shape[1] == 1:
         return values
-    return values.mean(axis=1, keepdims=True) if k is None else values[:, k : k + 1]
+    return np.asarray(values.mean(axis=1, keepdims=True)) if k is None else values[:, k : k + 1]
 
 
-def some(values: FloatArray, k: IntArray) -> FloatArray:
+def some(values: NDArray[_Number], k: IntArray) -> NDArray[_Number]:
     """Return some columns; one column stands for all scenarios."""
     return values if values.shape[1] == 1 else values[:, k]
 
@@ -211,8 +213,8 @@ def _cross_matrix(
 ) -> FloatArray:
     """Return the cross-current reactances of all groups, per unit of the network.
 
-    Row i multiplies the other sets' currents in pu of their own rating: j's own current is I / (rating own_v),
-    and the voltage seen is in pu of i's rated voltage.
+    Row i multiplies the other sets' currents in pu of their own rating, which are I / (rating own_v), and the
+    voltage seen is in pu of i's rated voltage.
     """
     out = np.zeros((len(sources), len(sources)))
     groups = {(s.island, s.cross_group) for s in sources if s.law == Law.CROSS_CURRENT}

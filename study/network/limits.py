@@ -82,9 +82,13 @@ def excitation_steps(
         if s.law in (Law.FIELD, Law.BEHIND_IMPEDANCE):
             continue
         if s.machine is not None:
-            _machine_step(laws, s, j, int(state[j]), (v, i, error), wanted, distance)
+            steps = _machine_steps(laws, s, j, int(state[j]), (v[j], i[j], error[j]))
         elif np.isfinite(s.i_max_pu):
-            _converter_step(laws, j, int(state[j]), (v, i, error), wanted, distance)
+            steps = _converter_steps(laws, j, int(state[j]), (v[j], i[j], error[j]))
+        else:
+            continue
+        for new_state, by in steps:
+            wanted[j, by > SLACK], distance[j, by > SLACK] = new_state, by[by > SLACK]
     return wanted, distance
 
 
@@ -99,61 +103,42 @@ def regulator_error(laws: VoltageLaws, v: ComplexArray, i: ComplexArray) -> Floa
     return np.asarray(out)
 
 
-def _machine_step(
+def _machine_steps(
     laws: VoltageLaws,
     source: Source,
     j: int,
     state: int,
     point: tuple[ComplexArray, ComplexArray, FloatArray],
-    wanted: IntArray,
-    distance: FloatArray,
-) -> None:
+) -> list[tuple[int, FloatArray]]:
+    """Return the states that a set may go to, each with how far it is past what keeps it where it is."""
     v, i, error = point
     if state == CEILING:
-        _move(wanted, distance, j, error[j] < -SLACK, 0, -error[j])
-    elif state == NO_EXCITATION:
-        _move(wanted, distance, j, error[j] > SLACK, 0, error[j])
-    else:
-        needed = laws.field(j, v[j], i[j])
-        phi = np.angle(v[j] * np.conj(i[j]))
-        most = available_field(
-            np.abs(v[j]) * laws.to_own_v[j], np.abs(i[j]) * laws.to_own_i[j], phi, source.ceiling
-        )
-        over = (needed - most) / source.rated_field_pu
-        _move(wanted, distance, j, over > SLACK, CEILING, over)
-        under = -needed / source.rated_field_pu
-        _move(wanted, distance, j, under > SLACK, NO_EXCITATION, under)
+        return [(0, -error)]
+    if state == NO_EXCITATION:
+        return [(0, error)]
+    needed = laws.field(j, v, i)
+    v_own, i_own = np.abs(v) * laws.to_own_v[j], np.abs(i) * laws.to_own_i[j]
+    most = available_field(v_own, i_own, np.angle(v * np.conj(i)), source.ceiling)
+    return [
+        (CEILING, (needed - most) / source.rated_field_pu),
+        (NO_EXCITATION, -needed / source.rated_field_pu),
+    ]
 
 
-def _converter_step(
-    laws: VoltageLaws,
-    j: int,
-    state: int,
-    point: tuple[ComplexArray, ComplexArray, FloatArray],
-    wanted: IntArray,
-    distance: FloatArray,
-) -> None:
+def _converter_steps(
+    laws: VoltageLaws, j: int, state: int, point: tuple[ComplexArray, ComplexArray, FloatArray]
+) -> list[tuple[int, FloatArray]]:
     v, i, error = point
     if state == LARGEST_CURRENT:
-        lagging = (v[j] * np.conj(i[j])).imag >= 0.0
-        inside = np.where(lagging, -error[j], error[j])
-        _move(wanted, distance, j, inside > SLACK, 0, inside)
-    else:
-        over = np.abs(i[j]) / laws.i_max[j] - 1.0
-        _move(wanted, distance, j, over > SLACK, LARGEST_CURRENT, over)
-
-
-def _move(
-    wanted: IntArray, distance: FloatArray, j: int, where: NDArray[np.bool_], state: int, by: FloatArray
-) -> None:
-    wanted[j, where] = state
-    distance[j, where] = by[where]
+        return [(0, np.where((v * np.conj(i)).imag >= 0.0, -error, error))]
+    return [(LARGEST_CURRENT, np.abs(i) / laws.i_max[j] - 1.0)]
 
 
 def power_steps(
     power: PowerLaws,
     sources: tuple[Source, ...],
     state: IntArray,
+    *,
     p: FloatArray,
     f: FloatArray,
     s_base_kva: float,
@@ -186,16 +171,16 @@ def power_steps(
         limit, rated = s.p_max_kw / s_base_kva, s.p_rated_kw / s_base_kva
         if not np.isfinite(limit) or s.speed == Speed.FIXED:
             continue
-        if state[j] == 0:
-            over = (p[j] - limit) / rated
-            _move(wanted, distance, j, over > SLACK, 1, over)
-            if s.kind == "converter supply":
-                under = (-limit - p[j]) / rated
-                _move(wanted, distance, j, under > SLACK, -1, under)
-        else:
+        steps: list[tuple[int, FloatArray]]
+        if state[j] != 0:
             asked = _asked(power, s, j, f)
-            inside = state[j] * (limit * state[j] - asked) / rated
-            _move(wanted, distance, j, inside > SLACK, 0, inside)
+            steps = [(0, state[j] * (limit * state[j] - asked) / rated)]
+        else:
+            steps = [(1, (p[j] - limit) / rated)]
+            if s.kind == "converter supply":
+                steps.append((-1, (-limit - p[j]) / rated))
+        for new_state, by in steps:
+            wanted[j, by > SLACK], distance[j, by > SLACK] = new_state, by[by > SLACK]
     return wanted, distance
 
 

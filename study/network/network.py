@@ -22,7 +22,8 @@ from study.network.arrays import (
     transformer_ratio,
 )
 from study.network.equations import Structure, structure
-from study.network.sources import Source, refusal, sources_of
+from study.network.refusals import refusal
+from study.network.sources import Source, sources_of
 from study.network.topology import Topology, build_topology
 from study.network.view import DEAD, View, view_of
 
@@ -46,8 +47,8 @@ class Network:
 class ModeNetwork:
     """The network of one mode.
 
-    ``bus_of_node`` [node] and ``load_bus`` [load] are -1 where dead or switched off. ``live`` lists the closed
-    branches with impedance (places in the topology); ``two_port``, ``ratio`` and ``units`` are [live].
+    ``bus_of_node`` [node] and ``load_bus`` [load] are -1 where dead or switched off. ``live`` lists the
+    closed branches with impedance (places in the topology); ``two_port``, ``ratio`` and ``units`` are [live].
     ``order`` [island] is frequency over rated: not 1 on a shore supply of another frequency.
     ``filter_pu`` [filter] is 0 where the filter is off or dead. ``motor_kva`` [synchronous motor] likewise.
     ``refusals`` [island] say why an island cannot be solved, or are empty.
@@ -159,8 +160,8 @@ def mode_network(network: Network, mode: Mode | str) -> ModeNetwork:
         bus_of_node[from_node],
         bus_of_node[to_node],
         two_port,
-        filter_bus[filter_pu != 0.0],
-        filter_pu[filter_pu != 0.0],
+        shunt_bus=filter_bus[filter_pu != 0.0],
+        shunt_pu=filter_pu[filter_pu != 0.0],
     )
     load_bus = np.where(view.load_fed, bus_of_node[np.array(view.load_node, np.int64)], DEAD)
     motor_bus, motor_kva = _motors(network, mode, view, bus_of_node)
@@ -238,9 +239,7 @@ def _ratios(network: Network, mode: Mode, live: IntArray) -> FloatArray:
             continue
         u_from, u_to = network.u_base_v[branch.from_node], network.u_base_v[branch.to_node]
         if branch.kind == "transformer":
-            ratio[n] = transformer_ratio(
-                network.plant.transformers[branch.index], point.tap_pu, u_from, u_to
-            )
+            ratio[n] = transformer_ratio(network.plant.transformers[branch.index], point.tap_pu, u_from, u_to)
         elif branch.winding == "primary":
             ratio[n] = transformer_ratio(
                 network.plant.three_winding[branch.index], point.tap_pu, u_from, u_to
@@ -270,9 +269,7 @@ def _filters(network: Network, mode: Mode, view: View, order: FloatArray) -> Com
     return out
 
 
-def _motors(
-    network: Network, mode: Mode, view: View, bus_of_node: IntArray
-) -> tuple[IntArray, ComplexArray]:
+def _motors(network: Network, mode: Mode, view: View, bus_of_node: IntArray) -> tuple[IntArray, ComplexArray]:
     """Return bus and power of the synchronous motors: rated input times load factor, rated leading kvar."""
     motors = network.plant.synchronous_motors
     bus = np.array([bus_of_node[network.topology.node_of[m.name]] for m in motors], np.int64)
@@ -294,9 +291,7 @@ def _sum_at_ports(bus: IntArray, ports: IntArray) -> csr_array:
     return csr_array((np.ones(len(on)), (rows, on)), shape=(len(ports), len(bus)))
 
 
-def checked_loads(
-    at: ModeNetwork, p_kw: ArrayLike, q_kvar: ArrayLike
-) -> tuple[FloatArray, FloatArray]:
+def checked_loads(at: ModeNetwork, p_kw: ArrayLike, q_kvar: ArrayLike) -> tuple[FloatArray, FloatArray]:
     """Return kW and kvar of the consumers as [scenario, load], refusing what is no number.
 
     Parameters
@@ -317,7 +312,9 @@ def checked_loads(
         A wrong number of loads, or a value that is not a finite number; names the consumers.
     """
     loads = at.network.plant.loads
-    p, q = np.broadcast_arrays(np.atleast_2d(np.asarray(p_kw, float)), np.atleast_2d(np.asarray(q_kvar, float)))
+    p, q = np.broadcast_arrays(
+        np.atleast_2d(np.asarray(p_kw, float)), np.atleast_2d(np.asarray(q_kvar, float))
+    )
     if p.shape[1] != len(loads):
         raise SolveError(f"{at.mode.name}: kW and kvar are given for {p.shape[1]} of {len(loads)} loads")
     bad = ~(np.isfinite(p) & np.isfinite(q)).all(axis=0)

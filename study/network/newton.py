@@ -8,9 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.sparse.linalg import SuperLU
 
-from study.network.equations import Demand, Point, Structure, jacobian, residual
-from study.network.laws import VoltageLaws
-from study.network.power import PowerLaws
+from study.network.equations import Point, Problem, Structure, jacobian, residual
 
 FloatArray = NDArray[np.float64]
 
@@ -38,16 +36,12 @@ def tolerance(at: Structure) -> float:
     return max(TOLERANCE, ROUNDING * largest)
 
 
-def flat_start(at: Structure, power: PowerLaws, demand: Demand) -> Point:
+def flat_start(problem: Problem) -> Point:
     """Return a first point: rated voltage everywhere, load divided by the active-power laws.
 
     Parameters
     ----------
-    at : Structure
-        Of the mode.
-    power : PowerLaws
-        One scenario.
-    demand : Demand
+    problem : Problem
         One scenario.
 
     Returns
@@ -55,6 +49,7 @@ def flat_start(at: Structure, power: PowerLaws, demand: Demand) -> Point:
     Point
         Arrays with one column.
     """
+    at, power, demand = problem.at, problem.power, problem.demand
     total = (demand.constant + demand.impedance)[:, 0].sum() / max(at.islands, 1)
     m = np.zeros(at.islands)
     p = power.a[:, 0].copy()
@@ -68,16 +63,12 @@ def flat_start(at: Structure, power: PowerLaws, demand: Demand) -> Point:
     return Point(v=np.ones((at.buses, 1), complex), i=(p - 1j * q)[:, None].astype(complex), m=m[:, None])
 
 
-def solve_one(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, start: Point) -> Solved:
+def solve_one(problem: Problem, start: Point) -> Solved:
     """Solve one scenario by Newton's method.
 
     Parameters
     ----------
-    at : Structure
-        Of the mode.
-    laws, power : VoltageLaws, PowerLaws
-        One scenario.
-    demand : Demand
+    problem : Problem
         One scenario.
     start : Point
         First point.
@@ -87,22 +78,23 @@ def solve_one(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand
     Solved
         Where ``converged`` is False the point is the best found.
     """
+    at = problem.at
     accept = tolerance(at)
     x = _pack(start)
-    f = residual(at, laws, power, demand, start)
+    f = residual(problem, start)
     size = float(np.abs(f).max())
     factors: SuperLU | None = None
     fresh = False
     step = 1.0
     for count in range(1, MOST_ITERATIONS + 1):
         if size <= accept:
-            return _ended(at, x, size, count - 1, accept, factors)
+            return _ended(at, x, size, count - 1, factors)
         if factors is None or not fresh:
-            factors = _factors(at, laws, power, demand, _unpack(at, x))
+            factors = _factors(problem, _unpack(at, x))
             if factors is None:
                 break
         trial = x - step * factors.solve(f)
-        f_trial = _finite(residual(at, laws, power, demand, _unpack(at, trial)))
+        f_trial = _finite(residual(problem, _unpack(at, trial)))
         size_trial = float(np.abs(f_trial).max())
         if size_trial < size:
             fresh = size_trial < SLOW * size
@@ -115,24 +107,22 @@ def solve_one(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand
             fresh = True
             if step < SHORTEST_STEP:
                 break
-    return _ended(at, x, size, count, accept, factors)
+    return _ended(at, x, size, count, factors)
 
 
-def _factors(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, x: Point) -> SuperLU | None:
+def _factors(problem: Problem, x: Point) -> SuperLU | None:
     try:
-        return jacobian(at, laws, power, demand, x)
+        return jacobian(problem, x)
     except RuntimeError:  # singular: SuperLU's own word for it
         return None
 
 
-def _ended(
-    at: Structure, x: FloatArray, size: float, count: int, accept: float, factors: SuperLU | None
-) -> Solved:
+def _ended(at: Structure, x: FloatArray, size: float, count: int, factors: SuperLU | None) -> Solved:
     return Solved(
         point=_unpack(at, x),
         residual_pu=size,
         iterations=count,
-        converged=size <= accept,
+        converged=size <= tolerance(at),
         factors=factors,
     )
 

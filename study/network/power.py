@@ -18,6 +18,8 @@ FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
 BoolArray = NDArray[np.bool_]
 
+VARYING = ("a", "b", "gain", "f_no_load", "speed_droop", "held_f")
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class PowerLaws:
@@ -32,19 +34,18 @@ class PowerLaws:
     b: FloatArray
     gain: FloatArray
     f_no_load: FloatArray
+    speed_droop: FloatArray
     held_f: FloatArray
     shore: BoolArray
     short: BoolArray
 
     def column(self, k: int | None) -> PowerLaws:
         """Return the laws of one scenario, or of the mean of all where k is None."""
-        names = ("a", "b", "gain", "f_no_load", "held_f")
-        return replace(self, **{n: take(getattr(self, n), k) for n in names})
+        return replace(self, **{n: take(getattr(self, n), k) for n in VARYING})
 
     def columns(self, k: IntArray) -> PowerLaws:
         """Return the laws of some scenarios."""
-        names = ("a", "b", "gain", "f_no_load", "held_f")
-        return replace(self, **{n: some(getattr(self, n), k) for n in names})
+        return replace(self, **{n: some(getattr(self, n), k) for n in VARYING})
 
     def frequency(self, m: FloatArray) -> FloatArray:
         """Return each island's frequency, [island, scenario], from the unknowns."""
@@ -111,7 +112,16 @@ def power_laws(
     a[fixed] = np.broadcast_to(p_set, shape)[fixed]
     held = at_limit != 0
     a[held] = limit[held] * at_limit[held, None]
-    return PowerLaws(a=a, b=b, gain=gain, f_no_load=f_no_load_pu, held_f=held_f, shore=shore, short=short)
+    return PowerLaws(
+        a=a,
+        b=b,
+        gain=gain,
+        f_no_load=f_no_load_pu,
+        speed_droop=speed_droop_pu,
+        held_f=held_f,
+        shore=shore,
+        short=short,
+    )
 
 
 def _common(f_no_load: FloatArray, masters: BoolArray, rated: FloatArray) -> FloatArray:

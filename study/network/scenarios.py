@@ -14,10 +14,16 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.sparse.linalg import SuperLU
 
-from study.network.equations import Demand, Point, Structure, load_current, load_gradient
-from study.network.laws import VoltageLaws
+from study.network.equations import (
+    Demand,
+    Point,
+    Problem,
+    Structure,
+    jacobian,
+    load_current,
+    load_gradient,
+)
 from study.network.newton import Solved, flat_start, solve_one, tolerance
-from study.network.power import PowerLaws
 from study.network.sources import Law
 
 FloatArray = NDArray[np.float64]
@@ -43,23 +49,12 @@ class Solutions:
     converged: BoolArray
 
 
-def solve_scenarios(
-    at: Structure,
-    laws: VoltageLaws,
-    power: PowerLaws,
-    demand: Demand,
-    count: int,
-    start: Point | None = None,
-) -> Solutions:
+def solve_scenarios(problem: Problem, count: int, start: Point | None = None) -> Solutions:
     """Solve scenarios that share structure and kinds of law.
 
     Parameters
     ----------
-    at : Structure
-        Of the mode.
-    laws, power : VoltageLaws, PowerLaws
-        Arrays with `count` columns or one.
-    demand : Demand
+    problem : Problem
         Arrays with `count` columns or one.
     count : int
         Number of scenarios.
@@ -71,36 +66,24 @@ def solve_scenarios(
     Solutions
         In the order given; where ``converged`` is False the numbers are the last ones found.
     """
-    mean = Demand(constant=_mean(demand.constant), impedance=_mean(demand.impedance))
-    base = _base(at, laws.column(None), power.column(None), mean, start)
+    base = _base(problem.column(None), start)
     if count == 1:
         return _from_one(base)
-    out = _empty(at, count)
-    if base.factors is not None and base.converged:
-        frame = _Frame(at, laws, power, mean, base, count)
+    out = _empty(problem.at, count)
+    if base.converged:
+        frame = _Frame(problem.column(None), base.point, count)
         for first in range(0, count, BLOCK):
             k = np.arange(first, min(first + BLOCK, count))
-            frame.solve_block(out, k, laws.columns(k), power.columns(k), columns_of(demand, k))
-    for k in np.flatnonzero(~out.converged):
-        _one_by_one(at, out, int(k), (laws, power, demand), base)
+            frame.solve_block(out, k, problem.columns(k))
+    for lost in np.flatnonzero(~out.converged):
+        _one_by_one(out, int(lost), problem.column(int(lost)), base)
     return out
 
 
-def columns_of(demand: Demand, k: IntArray) -> Demand:
-    """Return some scenarios of a demand; one column stands for all."""
-    if demand.constant.shape[1] == 1:
-        return demand
-    return Demand(constant=demand.constant[:, k], impedance=demand.impedance[:, k])
-
-
-def _mean(values: ComplexArray) -> ComplexArray:
-    return values if values.shape[1] == 1 else values.mean(axis=1, keepdims=True)
-
-
-def _base(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, start: Point | None) -> Solved:
-    base = solve_one(at, laws, power, demand, start or flat_start(at, power, demand))
+def _base(problem: Problem, start: Point | None) -> Solved:
+    base = solve_one(problem, start or flat_start(problem))
     if not base.converged and start is not None:
-        base = solve_one(at, laws, power, demand, flat_start(at, power, demand))
+        base = solve_one(problem, flat_start(problem))
     return base
 
 
@@ -110,7 +93,7 @@ def _from_one(base: Solved) -> Solutions:
         i=base.point.i,
         m=base.point.m,
         residual_pu=np.array([base.residual_pu]),
-        iterations=np.array([base.iterations]),
+        iterations=np.full(1, base.iterations, np.int64),
         converged=np.array([base.converged]),
     )
 
@@ -126,21 +109,11 @@ def _empty(at: Structure, count: int) -> Solutions:
     )
 
 
-def _one_by_one(
-    at: Structure,
-    out: Solutions,
-    k: int,
-    inputs: tuple[VoltageLaws, PowerLaws, Demand],
-    base: Solved,
-) -> None:
+def _one_by_one(out: Solutions, k: int, problem: Problem, base: Solved) -> None:
     """Solve one scenario by Newton's method, from the mean scenario and from rated voltage."""
-    laws, power = inputs[0].column(k), inputs[1].column(k)
-    demand = columns_of(inputs[2], np.array([k]))
-    starts = [flat_start(at, power, demand)]
-    if base.converged:
-        starts.insert(0, base.point)
+    starts = [base.point, flat_start(problem)] if base.converged else [flat_start(problem)]
     for start in starts:
-        one = solve_one(at, laws, power, demand, start)
+        one = solve_one(problem, start)
         out.v[:, k], out.i[:, k], out.m[:, k] = one.point.v[:, 0], one.point.i[:, 0], one.point.m[:, 0]
         out.residual_pu[k], out.converged[k] = one.residual_pu, one.converged
         out.iterations[k] += one.iterations
@@ -151,48 +124,35 @@ def _one_by_one(
 class _Frame:
     """The Jacobian at the base, and the right-hand side of each scenario's step."""
 
-    def __init__(
-        self, at: Structure, laws: VoltageLaws, power: PowerLaws, mean: Demand, base: Solved, count: int
-    ) -> None:
+    def __init__(self, mean: Problem, base: Point, count: int) -> None:
+        at = self.at = mean.at
         n, s = at.buses, at.sources
-        self.at = at
-        v, i = base.point.v, base.point.i
-        v_s = v[at.source_bus, 0]
-        one = Demand(constant=mean.constant[:, 0], impedance=mean.impedance[:, 0])
-        self.by_load = load_gradient(v[at.load_bus, 0], one)[:, :, None]
-        self.by_law = laws.column(None).gradient(v_s, i[:, 0]).reshape(s, 4 * s)
-        self.v0, self.i0 = v_s[:, None], i
-        self.b0 = power.column(None).b
-        self.behind = laws.code == Law.BEHIND_IMPEDANCE
-        self.b0 = np.where(self.behind[:, None], 0.0, self.b0)
+        v_s = base.v[at.source_bus, 0]
+        one = Demand(constant=mean.demand.constant[:, 0], impedance=mean.demand.impedance[:, 0])
+        self.by_load = load_gradient(base.v[at.load_bus, 0], one)[:, :, None]
+        self.by_law = mean.laws.gradient(v_s, base.i[:, 0]).reshape(s, 4 * s)
+        self.v0, self.i0 = v_s[:, None], base.i
+        self.behind = (mean.laws.code == Law.BEHIND_IMPEDANCE)[:, None]
+        self.b0 = np.where(self.behind, 0.0, mean.power.b)
         self.accept = tolerance(at)
         b = at.load_bus
         self.rows = np.concatenate([b, n + b, np.arange(2 * n, 2 * n + 2 * s)])
-        assert base.factors is not None
-        factors = self._renewed(laws, power, mean, base)
         self.local = np.union1d(at.load_bus, at.source_bus)
         self.load_place = np.searchsorted(self.local, at.load_bus)
         self.source_place = np.searchsorted(self.local, at.source_bus)
         local_rows = np.concatenate([self.local, n + self.local, np.arange(2 * n, at.size)])
-        self.step, self.whole = _steps(at, factors, self.rows, local_rows, count)
+        self.step, self.whole = _steps(at, jacobian(mean, base), self.rows, local_rows, count)
 
-    def _renewed(self, laws: VoltageLaws, power: PowerLaws, mean: Demand, base: Solved) -> SuperLU:
-        from study.network.equations import jacobian
-
-        return jacobian(self.at, laws.column(None), power.column(None), mean, base.point)
-
-    def solve_block(
-        self, out: Solutions, k: IntArray, laws: VoltageLaws, power: PowerLaws, demand: Demand
-    ) -> None:
+    def solve_block(self, out: Solutions, k: IntArray, problem: Problem) -> None:
         """Sweep one block of scenarios until every one has converged or stopped converging."""
         count = len(k)
-        right = self._first_right(laws, power, demand, count)
+        right = self._first_right(problem, count)
         residual = np.full(count, np.inf)
         sweeps = np.zeros(count, np.int64)
         with np.errstate(all="ignore"):  # a diverging scenario overflows; it is solved again by itself
             for _ in range(MOST_SWEEPS):
                 v, i, m = self._split(self.step(right))
-                new = self._right(v, i, m, laws, power, demand)
+                new = self._right(v, i, m, problem)
                 change = np.abs(new - right).max(axis=0)
                 sweeps += residual > self.accept
                 residual = np.where(np.isnan(change), np.inf, change)
@@ -207,13 +167,13 @@ class _Frame:
         out.residual_pu[k], out.iterations[k] = residual, sweeps
         out.converged[k] = residual <= self.accept
 
-    def _first_right(self, laws: VoltageLaws, power: PowerLaws, demand: Demand, count: int) -> FloatArray:
+    def _first_right(self, problem: Problem, count: int) -> FloatArray:
         """Return the right-hand side at the base point."""
         shape = (len(self.local), count)
         v = np.ones(shape, complex)
         v[self.source_place] = self.v0
         i = np.broadcast_to(self.i0, (self.at.sources, count))
-        return self._right(v, i, np.zeros((self.at.islands, count)), laws, power, demand)
+        return self._right(v, i, np.zeros((self.at.islands, count)), problem)
 
     def _split(self, x: FloatArray) -> tuple[ComplexArray, ComplexArray, FloatArray]:
         n, s = len(self.local), self.at.sources
@@ -221,17 +181,10 @@ class _Frame:
         i = x[2 * n : 2 * n + s] + 1j * x[2 * n + s : 2 * n + 2 * s]
         return v, i, x[2 * n + 2 * s :]
 
-    def _right(
-        self,
-        v: ComplexArray,
-        i: ComplexArray,
-        m: FloatArray,
-        laws: VoltageLaws,
-        power: PowerLaws,
-        demand: Demand,
-    ) -> FloatArray:
+    def _right(self, v: ComplexArray, i: ComplexArray, m: FloatArray, problem: Problem) -> FloatArray:
         v_l, v_s = v[self.load_place], v[self.source_place]
-        drawn = load_current(v_l, demand)
+        laws, power = problem.laws, problem.power
+        drawn = load_current(v_l, problem.demand)
         p, s = len(v_l), len(v_s)
         out = np.empty((2 * p + 2 * s, v.shape[1]))
         re_e, re_f, im_e, im_f = self.by_load
@@ -240,7 +193,7 @@ class _Frame:
         m_s = m[self.at.source_island]
         linear = (v_s * np.conj(self.i0) + self.v0 * np.conj(i)).real
         law = linear - (v_s * np.conj(i)).real + power.a + (power.b - self.b0) * m_s
-        out[2 * p : 2 * p + s] = np.where(self.behind[:, None], 0.0, law)
+        out[2 * p : 2 * p + s] = np.where(self.behind, 0.0, law)
         z = np.concatenate([v_s.real, v_s.imag, i.real, i.imag])
         out[2 * p + s :] = self.by_law @ z - laws.residual(v_s, i)
         return out

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 from enum import IntEnum
 
@@ -112,7 +111,12 @@ def sources_of(plant: Plant, mode: Mode, topology: Topology, view: View) -> tupl
     """
     on = set(view.sources)
     made: list[Source] = []
-    for item in (*plant.gensets, *plant.shore_supplies, *plant.converter_supplies):
+    items: list[Genset | ShoreSupply | ConverterSupply] = [
+        *plant.gensets,
+        *plant.shore_supplies,
+        *plant.converter_supplies,
+    ]
+    for item in items:
         if item.name not in on:
             continue
         node = topology.node_of[item.name]
@@ -129,12 +133,12 @@ def sources_of(plant: Plant, mode: Mode, topology: Topology, view: View) -> tupl
 
 
 def _from_genset(g: Genset, point: SetPoint | None, place: tuple[int, int]) -> Source:
-    v_ref = _given(point and point.no_load_voltage_pu, g.regulator.no_load_voltage_pu)
+    v_ref = _trim(point, "no_load_voltage_pu", g.regulator.no_load_voltage_pu)
     law, words = _genset_law(g, (point and point.regulator_mode) or g.regulator.mode)
     q_set_kvar = point.q_set_kvar if point else None
     machine = machine_of(g)
     p_max = ENGINE_OVERLOAD * g.p_engine_kw * g.alternator_efficiency
-    p_set = _given(point and point.p_set_kw, np.nan)
+    p_set = _trim(point, "p_set_kw", np.nan)
     return Source(
         name=g.name,
         kind="genset",
@@ -161,7 +165,7 @@ def _from_genset(g: Genset, point: SetPoint | None, place: tuple[int, int]) -> S
         rated_field_pu=rated_load_field(g.cos_phi_rated, machine),
         i_max_pu=np.inf,
         speed=_genset_speed(g, p_set),
-        f_no_load_pu=_given(point and point.no_load_frequency_pu, g.governor.no_load_frequency_pu),
+        f_no_load_pu=_trim(point, "no_load_frequency_pu", g.governor.no_load_frequency_pu),
         speed_droop_pu=g.governor.droop_pu,
         p_set_kw=p_set,
         p_max_kw=p_max,
@@ -174,22 +178,18 @@ def _genset_law(g: Genset, mode: RegulatorMode) -> tuple[Law, str]:
     supply = g.excitation.field_supply
     if supply in ("fixed", "compounded without regulator"):
         return Law.FIELD, "fixed field" if supply == "fixed" else "compounded, no regulator"
-    match mode:
-        case "fixed excitation":
-            return Law.FIELD, "fixed excitation"
-        case "kvar control":
-            return Law.REACTIVE_POWER, "kvar control"
-        case "cross-current":
-            return Law.CROSS_CURRENT, "cross-current compensation"
-        case "no droop":
-            return Law.PHASOR, "no droop"
-        case "droop" if g.regulator.droop_pu == 0.0:
-            return Law.PHASOR, "no droop"
-        case "droop" if g.regulator.droop_law == "reactive current":
-            return Law.REACTIVE_CURRENT, "droop on reactive current"
-        case "droop":
-            return Law.PHASOR, "droop on the current phasor"
-    raise ValueError(f"{g.name}: unknown regulator mode {mode!r}")
+    if mode == "droop" and g.regulator.droop_pu > 0.0:
+        return {
+            "phasor": (Law.PHASOR, "droop on the current phasor"),
+            "reactive current": (Law.REACTIVE_CURRENT, "droop on reactive current"),
+        }[g.regulator.droop_law]
+    return {
+        "fixed excitation": (Law.FIELD, "fixed excitation"),
+        "kvar control": (Law.REACTIVE_POWER, "kvar control"),
+        "cross-current": (Law.CROSS_CURRENT, "cross-current compensation"),
+        "no droop": (Law.PHASOR, "no droop"),
+        "droop": (Law.PHASOR, "no droop"),
+    }[mode]
 
 
 def _droop_in_use(g: Genset, law: Law, words: str) -> float:
@@ -232,7 +232,7 @@ def _from_shore(s: ShoreSupply, point: SetPoint | None, place: tuple[int, int], 
         s_rated,
         s.u_rated_v,
         law=Law.BEHIND_IMPEDANCE,
-        v_ref_pu=_given(point and point.no_load_voltage_pu, 1.0),
+        v_ref_pu=_trim(point, "no_load_voltage_pu", 1.0),
         r_pu=x * s.r_over_x,
         xc_pu=x,
         speed=Speed.SHORE,
@@ -244,7 +244,7 @@ def _from_shore(s: ShoreSupply, point: SetPoint | None, place: tuple[int, int], 
 def _from_converter(
     c: ConverterSupply, point: SetPoint | None, place: tuple[int, int], u_board_v: float
 ) -> Source:
-    p_set = _given(point and point.p_set_kw, np.nan if c.p_set_kw is None else c.p_set_kw)
+    p_set = _trim(point, "p_set_kw", np.nan if c.p_set_kw is None else c.p_set_kw)
     if c.control == "grid following":
         return _plain(
             c.name,
@@ -266,13 +266,13 @@ def _from_converter(
         c.s_rated_kva,
         u_board_v,
         law=Law.PHASOR,
-        v_ref_pu=_given(point and point.no_load_voltage_pu, 1.0),
+        v_ref_pu=_trim(point, "no_load_voltage_pu", 1.0),
         droop_pu=c.voltage_droop_pu,
         droop_base="rated kVA",
         xc_pu=c.voltage_droop_pu,
         i_max_pu=1.0,
         speed=Speed.DROOP if c.speed_droop_pu else Speed.ISOCHRONOUS,
-        f_no_load_pu=_given(point and point.no_load_frequency_pu, 1.0 + c.speed_droop_pu * share),
+        f_no_load_pu=_trim(point, "no_load_frequency_pu", 1.0 + c.speed_droop_pu * share),
         speed_droop_pu=c.speed_droop_pu,
         p_max_kw=c.s_rated_kva,
         words="grid forming",
@@ -318,69 +318,11 @@ def _plain(
     )
 
 
-def _given(value: float | None, otherwise: float) -> float:
-    return otherwise if value is None else value
+def _trim(point: SetPoint | None, name: str, otherwise: float) -> float:
+    """Return what the mode's set-point says of a quantity, or the source's own value."""
+    value = getattr(point, name, None)
+    return otherwise if value is None else float(value)
 
 
 def _tan(cos_phi: float) -> float:
     return float((1.0 - cos_phi**2) ** 0.5 / cos_phi)
-
-
-def refusal(members: Sequence[Source]) -> str:
-    """Return why the sources of an island cannot share its load, or an empty text where they can.
-
-    Parameters
-    ----------
-    members : sequence of Source
-        Sources of one island.
-
-    Returns
-    -------
-    str
-        A sentence.
-    """
-    return _kvar_refusal(members) or _kw_refusal(members)
-
-
-def _kvar_refusal(members: Sequence[Source]) -> str:
-    if all(s.law == Law.REACTIVE_POWER for s in members):
-        return f"nothing holds the voltage: {_list(members)} run at fixed kvar."
-    holders = [s.name for s in members if s.law == Law.PHASOR and s.xc_pu == 0.0]
-    holders += [s.name for s in members if s.law == Law.BEHIND_IMPEDANCE and s.xc_pu == s.r_pu == 0.0]
-    for group in dict.fromkeys(s.cross_group for s in members if s.law == Law.CROSS_CURRENT):
-        inside = [s for s in members if s.law == Law.CROSS_CURRENT and s.cross_group == group]
-        if len(inside) > 1 and any(s.xc_pu == 0.0 for s in inside):
-            return (
-                f"cross-current compensation of {_list(inside)} has no droop setting: kvar is undetermined."
-            )
-        holders.append(" with ".join(s.name for s in inside))
-    if len(holders) > 1:
-        return (
-            f"kvar is undetermined: {' and '.join(holders)} each hold the voltage without droop, and no "
-            "cross-current compensation joins them."
-        )
-    return ""
-
-
-def _kw_refusal(members: Sequence[Source]) -> str:
-    shores = [s for s in members if s.speed == Speed.SHORE]
-    masters = [s.name for s in members if s.speed == Speed.ISOCHRONOUS]
-    sharing = [s for s in members if s.speed == Speed.LOAD_SHARING]
-    if sharing:
-        masters.append(" with ".join(s.name for s in sharing))
-    if len({s.f_no_load_pu for s in shores}) > 1:
-        return f"{_list(shores)} have different frequencies and are in parallel."
-    if shores and masters:
-        return (
-            f"kW is undetermined: {' and '.join(masters)} would hold the frequency that {shores[0].name} holds; "
-            "give a set power or a speed droop."
-        )
-    if len(masters) > 1:
-        return f"kW is undetermined: {' and '.join(masters)} each hold the frequency, without load sharing."
-    if not shores and all(s.speed == Speed.FIXED for s in members):
-        return f"nothing holds the frequency: {_list(members)} run at fixed kW."
-    return ""
-
-
-def _list(members: Sequence[Source]) -> str:
-    return " and ".join(s.name for s in members)

@@ -1,7 +1,7 @@
 """Whether the regulators of sets in parallel hold the point found: a reversed droop circuit may not.
 
-Every regulator raises its field while it sees less than its set-point. With H the change of what each sees for
-a change of each field, the point is held where every eigenvalue of H has a positive real part.
+Every regulator raises its field while it sees less than its set-point. With H the change of what each sees
+for a change of each field, the point is held where every eigenvalue of H has a positive real part.
 """
 
 from __future__ import annotations
@@ -11,9 +11,8 @@ from dataclasses import replace
 import numpy as np
 from numpy.typing import NDArray
 
-from study.network.equations import Demand, Point, Structure, jacobian
+from study.network.equations import Point, Problem, jacobian
 from study.network.laws import VoltageLaws
-from study.network.power import PowerLaws
 from study.network.sources import Law
 
 FloatArray = NDArray[np.float64]
@@ -22,7 +21,7 @@ IntArray = NDArray[np.int64]
 REGULATED = (Law.PHASOR, Law.REACTIVE_CURRENT, Law.CROSS_CURRENT)
 
 
-def runaway(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, x: Point) -> int | None:
+def runaway(problem: Problem, x: Point) -> int | None:
     """Return the set with reversed droop that leaves a point, or None where the regulators hold it.
 
     Source: small-signal condition for integrating regulators, derived; that a reversed droop circuit makes
@@ -30,7 +29,7 @@ def runaway(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, 
 
     Parameters
     ----------
-    at, laws, power, demand
+    problem : Problem
         One scenario.
     x : Point
         Its solution.
@@ -40,12 +39,13 @@ def runaway(at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, 
     int or None
         Place of the source.
     """
+    laws = problem.laws
     reversed_sets = (laws.x[:, 0] < 0.0) & np.isin(laws.code, REGULATED)
     if not reversed_sets.any():
         return None
     has_field = np.array([m is not None for m in laws.machines])
     regulated = np.flatnonzero(has_field & np.isin(laws.code, REGULATED))
-    values, vectors = np.linalg.eig(_sensitivity(at, laws, power, demand, x, regulated))
+    values, vectors = np.linalg.eig(_sensitivity(problem, x, regulated))
     worst = int(np.argmin(values.real))
     if values.real[worst] > 0.0:
         return None
@@ -70,14 +70,13 @@ def most_reversed(laws: VoltageLaws) -> int | None:
     return int(np.argmin(x)) if x.min() < 0.0 and len(x) > 1 else None
 
 
-def _sensitivity(
-    at: Structure, laws: VoltageLaws, power: PowerLaws, demand: Demand, x: Point, regulated: IntArray
-) -> FloatArray:
+def _sensitivity(problem: Problem, x: Point, regulated: IntArray) -> FloatArray:
     """Return H [regulator, field], field per unit of the air-gap line."""
+    at, laws = problem.at, problem.laws
     n, s = at.buses, at.sources
     code = laws.code.copy()
     code[regulated] = Law.FIELD
-    factors = jacobian(at, replace(laws, code=code), power, demand, x)
+    factors = jacobian(replace(problem, laws=replace(laws, code=code)), x)
     unit = np.zeros((at.size, len(regulated)))
     unit[2 * n + s + regulated, np.arange(len(regulated))] = 1.0
     moved = factors.solve(unit)

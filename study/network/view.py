@@ -7,8 +7,9 @@ from dataclasses import dataclass
 from study.model.modes import Mode
 from study.model.plant import Plant
 from study.network.rings import vector_group_clashes
-from study.network.topology import Topology, UnionFind, build_topology
+from study.network.topology import Topology, build_topology
 from study.network.transfers import Feed, FeedUse, resolve_feeds
+from study.network.union_find import UnionFind
 
 DEAD = -1
 

@@ -1,0 +1,41 @@
+"""Groups of nodes that are joined."""
+
+from __future__ import annotations
+
+
+class UnionFind:
+    """Groups of nodes that are joined; the root of a group is its lowest node.
+
+    Parameters
+    ----------
+    size : int
+        Number of nodes.
+
+    Examples
+    --------
+    >>> u = UnionFind(3); u.join(2, 1); u.root(2), u.root(0)
+    (1, 0)
+    """
+
+    def __init__(self, size: int) -> None:
+        self._parent = list(range(size))
+
+    def root(self, node: int) -> int:
+        """Return the root of a node's group."""
+        parent = self._parent
+        while parent[node] != node:
+            parent[node] = parent[parent[node]]
+            node = parent[node]
+        return node
+
+    def join(self, a: int, b: int) -> bool:
+        """Join two groups; False where they were one already."""
+        ra, rb = self.root(a), self.root(b)
+        if ra == rb:
+            return False
+        self._parent[max(ra, rb)] = min(ra, rb)
+        return True
+
+    def roots(self) -> list[int]:
+        """Return the root of every node."""
+        return [self.root(i) for i in range(len(self._parent))]
