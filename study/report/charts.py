@@ -1,0 +1,54 @@
+"""Every figure of the page, by its section."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from study.report.charts_balance import load_by_service, set_loading
+from study.report.charts_sharing import case_figures, sharing_figures
+from study.report.charts_voltage import board_voltages, regulation_figures, voltages_by_board
+from study.report.content import StudyOutcome
+from study.report.plotting import Drawing, house_style
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Figures:
+    """The figures of a study, in the order of the page."""
+
+    balance: tuple[Drawing, ...]
+    voltages: tuple[Drawing, ...]
+    sharing: tuple[Drawing, ...]
+    cases: tuple[Drawing, ...]
+    regulation: tuple[Drawing, ...]
+
+    @property
+    def every(self) -> tuple[Drawing, ...]:
+        """All figures."""
+        return (*self.balance, *self.voltages, *self.sharing, *self.cases, *self.regulation)
+
+
+def draw_figures(outcome: StudyOutcome) -> Figures:
+    """Draw every figure of a study.
+
+    Parameters
+    ----------
+    outcome : StudyOutcome
+        The study.
+
+    Returns
+    -------
+    Figures
+        A figure that has nothing to show is left out.
+    """
+    with house_style():
+        return Figures(
+            balance=_present(load_by_service(outcome), set_loading(outcome)),
+            voltages=_present(board_voltages(outcome), voltages_by_board(outcome)),
+            sharing=sharing_figures(outcome),
+            cases=case_figures(outcome),
+            regulation=regulation_figures(outcome),
+        )
+
+
+def _present(*figures: Drawing | None) -> tuple[Drawing, ...]:
+    return tuple(figure for figure in figures if figure is not None)
