@@ -5,6 +5,7 @@ from __future__ import annotations
 import io
 import re
 import warnings
+import zipfile
 
 import openpyxl
 import pytest
@@ -91,6 +92,14 @@ def test_going_back_to_old_results_gives_the_old_file():
     first = graft_result_sheets(packed_book(), result_book(value=3.5))
     second = graft_result_sheets(first, result_book(value=9.75, rows=5))
     assert graft_result_sheets(second, result_book(value=3.5)) == first
+
+
+def test_parts_that_do_not_change_are_not_compressed_anew():
+    """Another program may have saved with a better or no compression."""
+    first = graft_result_sheets(engineers_book(), result_book())
+    stored = rezip(parts(first), zipfile.ZIP_STORED)
+    with zipfile.ZipFile(io.BytesIO(graft_result_sheets(stored, result_book()))) as package:
+        assert {i.compress_type for i in package.infolist()} == {zipfile.ZIP_STORED}
 
 
 def test_references_of_the_engineers_hold():
