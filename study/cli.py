@@ -6,6 +6,7 @@ Heavy libraries are imported inside the commands, so that ``--help`` answers at 
 from __future__ import annotations
 
 import argparse
+import os
 import sys
 
 TYPE_CHECKING = False  # the name tells the type checker; importing it from typing would slow --help
@@ -38,6 +39,8 @@ def main(arguments: Sequence[str] | None = None) -> int:
         0, 1, 2 or 3 as the epilog of ``--help`` says.
     """
     options = _parser().parse_args(arguments)
+    # the matrices are small: a second thread of the linear algebra library costs more than it gives
+    os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
     command: Callable[[argparse.Namespace], int] = options.command
     from study.issues import StudyError, WorkbookError
 
