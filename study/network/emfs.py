@@ -46,8 +46,8 @@ class Emfs:
 
     def law_error(self, v_bus: ComplexArray, s: ComplexArray, members: IntArray) -> FloatArray:
         """Return the residual of each member's voltage law at the voltages found, per unit."""
-        v, i = self._terminal(v_bus, s)
         with np.errstate(invalid="ignore"):  # sources of islands not solved yet are NaN
+            v, i = self._terminal(v_bus, s)
             return np.asarray(self.laws.residual(v, i)[members, 0])
 
     def power_error(self, s: ComplexArray, members: IntArray) -> FloatArray:

@@ -83,7 +83,7 @@ def export_json(network: Network, one: Case) -> str:
     grid.switch(one)
     batch = solve_batch(one.at, one.p_kw, one.q_kvar)
     if batch.solved[0]:
-        grid.set_sources(emfs_of(batch))
+        grid.set_sources(emfs_of(batch), np.arange(len(one.at.sources)))
     grid.put_in_service(one.at, np.flatnonzero(one.at.bus_of_node >= 0), np.arange(len(one.at.sources)))
     return str(pandapower.to_json(grid.net))
 
@@ -122,7 +122,7 @@ def _solve_island(grid: _Grid, emfs: Emfs, island: int, found: _Found) -> str:
     last: tuple[FloatArray, FloatArray] | None = None
     error = np.zeros(0)
     for _ in range(MOST_ADJUSTMENTS):
-        grid.set_sources(emfs)
+        grid.set_sources(emfs, members)
         if not grid.run(distributed=int((emfs.weight[members] != 0.0).sum()) > 1):
             return "pandapower finds no operating point (not converged after 30 iterations)."
         found.take(grid, emfs, island)
@@ -196,12 +196,13 @@ class _Grid:
         self._write(mode_columns(one.at, self.layout))
         self._write(consumer_columns(one.at, self.layout, one.p_kw, one.q_kvar))
 
-    def set_sources(self, emfs: Emfs) -> None:
-        """Set every source of a mode: EMF, reactance, base point and part in the slack."""
+    def set_sources(self, emfs: Emfs, members: IntArray) -> None:
+        """Set EMF, reactance, base point and part in the slack; only `members` are in service."""
         net, s_base = self.net, self.net.sn_mva
         rows = self._rows(emfs.at)
         count = len(self.layout.source_names)
         behind = (emfs.x != 0.0) | (emfs.r != 0.0)
+        here = np.isin(np.arange(len(rows)), members)
 
         def spread(values: NDArray[Any], otherwise: float | bool) -> NDArray[Any]:
             out = np.full(count, otherwise, values.dtype)
@@ -209,12 +210,12 @@ class _Grid:
             return out
 
         gen, sgen, ext = net.gen, net.sgen, net.ext_grid
-        gen["in_service"] = spread(~emfs.fixed & ~emfs.grid, False)
+        gen["in_service"] = spread(here & ~emfs.fixed & ~emfs.grid, False)
         gen["vm_pu"], ext["vm_pu"] = spread(emfs.e, 1.0), spread(emfs.e, 1.0)
         gen["p_mw"] = spread(emfs.p * s_base, 0.0)
         gen["slack"], gen["slack_weight"] = spread(emfs.weight != 0.0, False), spread(emfs.weight, 0.0)
-        ext["in_service"] = spread(emfs.grid, False)
-        sgen["in_service"] = spread(emfs.fixed, False)
+        ext["in_service"] = spread(here & emfs.grid, False)
+        sgen["in_service"] = spread(here & emfs.fixed, False)
         sgen["p_mw"], sgen["q_mvar"] = spread(emfs.p * s_base, 0.0), spread(emfs.q * s_base, 0.0)
         after = len(self.layout.impedance)
         for column, values in (("rft_pu", emfs.r), ("xft_pu", emfs.x)):
@@ -240,6 +241,10 @@ class _Grid:
         in_service[[k for k, n in enumerate(self.network.topology.nodes) if n.kind == "star"]] = False
         in_service[self.layout.nodes + self._rows(at)[members]] = True
         self.net.bus["in_service"] = in_service
+        # pandapower makes the star points itself, and leaves those of dead transformers standing alone.
+        closed = np.array(at.view.closed, bool)[self.layout.trafo3w]
+        hv_bus = self.network.branches.from_node[self.layout.trafo3w]
+        self.net.trafo3w["in_service"] = closed & in_service[hv_bus]
 
     def run(self, distributed: bool) -> bool:
         """Run the load flow; False where it does not converge."""

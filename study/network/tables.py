@@ -202,10 +202,14 @@ def _trafo3w_table(network: Network, layout: Layout) -> Columns:
     pairs = {"hv": "primary_secondary", "mv": "secondary_tertiary", "lv": "primary_tertiary"}
     least = {"hv": ("primary", "secondary"), "mv": ("secondary", "tertiary"), "lv": ("primary", "tertiary")}
     sides = {"hv": "primary", "mv": "secondary", "lv": "tertiary"}
-    node = network.topology.node_of
-    columns: Columns = {"name": np.array([t.name for t in items], object)}
+    primary, branches = layout.trafo3w, network.branches  # secondary and tertiary follow in the topology
+    columns: Columns = {
+        "name": np.array([t.name for t in items], object),
+        "hv_bus": branches.from_node[primary],
+        "mv_bus": branches.to_node[primary + 1],
+        "lv_bus": branches.to_node[primary + 2],
+    }
     for side, word in sides.items():
-        columns[f"{side}_bus"] = np.array([node[getattr(t, f"{word}_board")] for t in items], np.int64)
         columns[f"sn_{side}_mva"] = _numbers(items, f"s_{word}_kva", 1e-3)
         columns[f"vn_{side}_kv"] = _numbers(items, f"u_{word}_v", 1e-3)
         columns[f"vk_{side}_percent"] = _numbers(items, f"u_k_{pairs[side]}_pu", 100.0)
