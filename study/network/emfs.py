@@ -46,9 +46,8 @@ class Emfs:
 
     def law_error(self, v_bus: ComplexArray, s: ComplexArray, members: IntArray) -> FloatArray:
         """Return the residual of each member's voltage law at the voltages found, per unit."""
-        with np.errstate(invalid="ignore"):  # sources of islands not solved yet are NaN
-            v, i = self._terminal(v_bus, s)
-            return np.asarray(self.laws.residual(v, i)[members, 0])
+        v, i = self._terminal(v_bus, s)
+        return np.asarray(self.laws.residual(v, i)[members, 0])
 
     def power_error(self, s: ComplexArray, members: IntArray) -> FloatArray:
         """Return how far each member is from its active-power law, per unit."""
@@ -60,8 +59,11 @@ class Emfs:
         return np.asarray(p - a - b * m)
 
     def _terminal(self, v_bus: ComplexArray, s: ComplexArray) -> tuple[ComplexArray, ComplexArray]:
-        v = v_bus[self.at.structure.source_bus][:, None]
-        return v, np.conj(s[:, None] / v)
+        """Return terminal voltages and currents, idle at 1 pu where the island is not solved yet."""
+        v = v_bus[self.at.structure.source_bus]
+        known = ~np.isnan(v)
+        v = np.where(known, v, 1.0)
+        return v[:, None], np.conj(np.where(known, s, 0.0) / v)[:, None]
 
     def adjust(
         self, members: IntArray, error: FloatArray, last: tuple[FloatArray, FloatArray] | None
