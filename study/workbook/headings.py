@@ -45,6 +45,7 @@ def folded(text: str) -> str:
     return " ".join(text.split()).casefold()
 
 
+@lru_cache(maxsize=8192)
 def heading_key(text: str) -> str:
     """Return a heading's name as it is compared: without case, blanks, line breaks and kind of prime mark.
 
@@ -146,6 +147,7 @@ def _unit_tables() -> tuple[Mapping[str, str], Mapping[str, tuple[str, ...]]]:
 
 
 _EXACT, _FOLDED = _unit_tables()
+_UNIT_KEYS: Final = frozenset(heading_key(unit) for unit in (*UNITS, *_PERCENT_OF))
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -181,15 +183,20 @@ class HeadingIndex:
         self._columns: dict[str, list[Column]] = {}
         self._modes: dict[str, tuple[str, ModeColumn]] = {}
         self._shown: dict[str, str] = {}
+        self._numbers: list[str] = []
         for column in spec.columns:
             for name in (column.name, *column.older):
                 self._columns.setdefault(heading_key(name), []).append(column)
                 self._shown.setdefault(heading_key(name), column.heading)
+                if column.kind == "number":
+                    self._numbers.append(heading_key(name))
         for mode in modes:
             for repeated in spec.mode_columns:
                 name = f"{mode}: {repeated.suffix}" if repeated.suffix else mode
                 self._modes[heading_key(name)] = (mode, repeated)
                 self._shown.setdefault(heading_key(name), repeated.heading(mode))
+                if repeated.column.kind == "number":
+                    self._numbers.append(heading_key(name))
 
     def recognise(self, text: str) -> Match | Misfit | None:
         """Return what a heading means; None where it is the engineer's own."""
@@ -208,7 +215,7 @@ class HeadingIndex:
             )
         if found in self._columns:
             return _by_unit(self._columns[found], unit)
-        return self._near(found) or self._unbracketed(name)
+        return self._unbracketed(name) or self._near(found)
 
     def _near(self, found: str) -> Misfit | None:
         for known, shown in self._shown.items():
@@ -223,13 +230,13 @@ class HeadingIndex:
         return None
 
     def _unbracketed(self, name: str) -> Misfit | None:
-        for known, shown in self._shown.items():
+        for known in self._numbers:
             rest = heading_key(name).removeprefix(known)
-            if rest != heading_key(name) and known_unit(rest.strip("(),.-/")) is not None:
+            if rest != heading_key(name) and rest.strip("(),.-/") in _UNIT_KEYS:
                 return Misfit(
                     code="unit-without-brackets",
                     found="the unit is not in square brackets",
-                    wanted=f"write “{shown}”",
+                    wanted=f"write “{self._shown[known]}”",
                 )
         return None
 

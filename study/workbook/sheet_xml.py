@@ -157,6 +157,7 @@ class _CellReader:
         self.sheet = SheetCells()
         self.cells: dict[int, Value] = {}
         self.row = self.column = 0
+        self.ref: str | None = None
         self.count = 0
         self.attributes: Mapping[str, str] = {}
         self.value: list[str] = []
@@ -171,7 +172,10 @@ class _CellReader:
             self.attributes = attributes
             self.has_formula = self.has_value = False
             self.value = []
-            self._place(attributes.get("r"))
+            if "r" in attributes:
+                self.ref = attributes["r"]
+            else:
+                self._next_place()
         elif tag in {_VALUE, _TEXT}:
             self.has_value = True
             self.parser.CharacterDataHandler = self.value.append
@@ -188,12 +192,17 @@ class _CellReader:
     def _new_row(self, number: str | None) -> None:
         self.row = int(number) if number and number.isdigit() else self.row + 1
         self.column = 0
+        self.ref = None
         self.cells = self.sheet.rows.setdefault(self.row, {})
 
-    def _place(self, ref: str | None) -> None:
-        if ref is None:
-            self.column += 1
-            return
+    def _next_place(self) -> None:
+        """Give a cell without an address the column after the cell before it."""
+        if self.ref is not None:
+            self._place(self.ref)
+        self.column += 1
+        self.ref = None
+
+    def _place(self, ref: str) -> None:
         letters = ref.rstrip("0123456789")
         column = self.letters.get(letters)
         if column is None:
@@ -211,6 +220,8 @@ class _CellReader:
             self.sheet.rows.pop(self.row, None)
 
     def _keep(self) -> None:
+        if self.ref is not None:
+            self._place(self.ref)
         text = "".join(self.value)
         if self.has_formula:
             formula = self._formula_text()

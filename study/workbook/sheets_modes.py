@@ -9,6 +9,7 @@ from study.model.sources import RegulatorMode
 from study.workbook.columns import (
     POSITIVE,
     REQUIRED,
+    Bounds,
     Column,
     ModeColumn,
     SheetSpec,
@@ -154,7 +155,7 @@ DEMAND = SheetSpec(
             column=number(
                 "load factor", "%", "load_factor", between(0.0, 150.0),
                 "of the absorbed power where that is given, else of the rated output",
-                usual=between(0.0, 110.0),
+                usual=Bounds(low=1.0, high=110.0, or_zero=True),
             ),
         ),
         ModeColumn(

@@ -140,7 +140,7 @@ def _check_device_end(plan: Plan, row: Row) -> None:
     """Replace the end of a device by the name that stands at it."""
     text = row.values.get("end")
     equipment = plan.names.rows.get(row.values.get("equipment", ""))
-    if text is None or equipment is None:
+    if text is None or equipment is None or equipment.broken:
         return
     words = END_WORDS.get(equipment.sheet, {})
     fields = BRANCH_BOARDS.get(equipment.sheet, ("board",))
