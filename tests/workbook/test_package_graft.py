@@ -16,6 +16,7 @@ from difflib import SequenceMatcher
 import openpyxl
 import pytest
 import python_calamine
+import xlsxwriter
 from lxml import etree
 
 from study.issues import PackageError
@@ -123,6 +124,8 @@ def test_every_result_cell_keeps_its_look(results, grafted):
     for name in own.sheetnames:
         for row in own[name].iter_rows():
             for cell in row:
+                if cell.value is None and not cell.has_style:
+                    continue
                 twin = joined[name][cell.coordinate]
                 assert twin.number_format == cell.number_format
                 for part in ("font", "fill", "border", "alignment", "protection"):
@@ -240,8 +243,6 @@ def test_a_sheet_of_the_engineers_is_never_taken():
 
 def test_tables_and_names_of_the_engineers_are_avoided():
     def books(*tables):
-        import xlsxwriter
-
         out = io.BytesIO()
         book = xlsxwriter.Workbook(out, {"in_memory": True})
         sheet = book.add_worksheet("R Summary" if len(tables) == 3 else "Own")
@@ -334,6 +335,25 @@ def test_number_formats_do_not_mix():
     assert book["Loads"]["B2"].number_format == '0.0 "kW"'
     assert book["R Summary"]["B3"].number_format == "0.000"
     assert book["R Summary"]["A2"].number_format == '0.0 "kA"'
+
+
+def test_another_standard_font_of_the_engineers(results):
+    """Cells of ours that have no format look as the results define them, not as the engineer's standard."""
+    out = io.BytesIO()
+    font = {"font_name": "Arial", "font_size": 8, "italic": True}
+    book = xlsxwriter.Workbook(out, {"in_memory": True, "default_format_properties": font})
+    book.add_worksheet("Loads").write(0, 0, "plain")
+    book.close()
+    data = graft_result_sheets(out.getvalue(), results)
+    assert load(data)["Loads"]["A1"].font.name == "Arial"
+    assert load(data)["R Summary"]["B2"].font.name == "Calibri"
+    test_every_result_cell_keeps_its_look(results, data)
+
+
+def test_a_type_left_over_for_a_part_that_is_not_there(results):
+    row = b'<Override PartName="/xl/charts/chart3.xml" ContentType="application/xml"/></Types>'
+    base = edited(engineers_book(), types=lambda c: c.replace(b"</Types>", row))
+    assert validate_package(graft_result_sheets(base, results)) == []
 
 
 def locked(content):

@@ -383,6 +383,11 @@ def test_xml_with_too_many_elements(book, monkeypatch):
     refused(edited(book, workbook=lambda c: c.replace(b"<sheets>", noise + b"<sheets>")), "larger or deeper")
 
 
+def test_an_xml_part_that_is_too_large(book, monkeypatch):
+    monkeypatch.setattr("study.workbook.package_xml.MAX_XML_BYTES", 1000)
+    refused(book, "larger than any workbook needs")
+
+
 def test_xml_that_is_too_deep(book):
     deep = b"<a>" * 300 + b"</a>" * 300
     refused(edited(book, workbook=lambda c: c.replace(b"<sheets>", deep + b"<sheets>")), "larger or deeper")
@@ -406,6 +411,18 @@ def test_zip64_directories_are_read(book, monkeypatch):
         data = rezip(parts(book))
     assert b"PK\x06\x06" in data
     assert validate_package(graft_result_sheets(data, results)) == []
+
+
+def test_64_bit_fields_of_a_member_are_read_and_not_carried_on(book):
+    out = io.BytesIO()
+    with zipfile.ZipFile(out, "w", zipfile.ZIP_DEFLATED) as package:
+        for name, content in parts(book).items():
+            with package.open(name, "w", force_zip64=True) as member:
+                member.write(content)
+    assert b"\x01\x00\x10\x00" in out.getvalue()[:200]
+    joined = graft_result_sheets(out.getvalue(), result_book())
+    assert parts(joined)["xl/sharedStrings.xml"] == parts(book)["xl/sharedStrings.xml"]
+    assert not any(m.local_extra for m in package_zip.read_members(joined))
 
 
 def test_streamed_members_are_read_and_written_plainly(book):

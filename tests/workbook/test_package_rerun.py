@@ -354,3 +354,12 @@ def test_styles_do_not_grow_from_run_to_run():
     for value in (1, 2, 3):
         data = graft_result_sheets(data, result_book(value=value))
         assert parts(data)["xl/styles.xml"] == styles
+
+
+def test_capitals_in_a_sheet_name_make_no_other_sheet():
+    first = graft_result_sheets(engineers_book(), result_book(("R Summary",)))
+    second = graft_result_sheets(first, result_book(("R SUMMARY",), value=8))
+    assert load(second).sheetnames == load(first).sheetnames
+    third = graft_result_sheets(second, result_book(("R Summary",), value=9))
+    assert load(third).sheetnames == load(first).sheetnames
+    assert load(third)["R Summary"]["B3"].value == 9

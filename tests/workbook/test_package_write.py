@@ -59,6 +59,13 @@ def test_permissions_are_kept(target, mode):
     assert stat.S_IMODE(target.stat().st_mode) == mode
 
 
+@pytest.mark.skipif(os.name == "nt" or os.geteuid() != 0, reason="only root can give files away")
+def test_the_owner_is_kept(target):
+    os.chown(target, 12345, 23456)
+    write_atomically(target, NEW)
+    assert (target.stat().st_uid, target.stat().st_gid) == (12345, 23456)
+
+
 @pytest.mark.skipif(os.name == "nt", reason="links need rights on Windows")
 def test_a_symbolic_link_stays_one(target, tmp_path):
     folder = tmp_path / "links"
