@@ -122,9 +122,15 @@ def impedance_matrix(admittance: ComplexArray) -> ComplexArray:
         A bus that no source feeds.
     """
     unfed = np.flatnonzero(admittance.diagonal() == 0.0)
-    if unfed.size or np.linalg.cond(admittance) > _LARGEST_CONDITION:
-        raise ValueError(f"no source feeds some bus{f': {unfed.tolist()}' if unfed.size else ''}")
-    return np.asarray(np.linalg.inv(admittance), dtype=complex)
+    if unfed.size:
+        raise ValueError(f"no source feeds some bus: {unfed.tolist()}")
+    try:
+        impedance = np.asarray(np.linalg.inv(admittance), dtype=complex)
+    except np.linalg.LinAlgError as error:
+        raise ValueError("no source feeds some buses that are joined") from error
+    if np.linalg.norm(admittance, 1) * np.linalg.norm(impedance, 1) > _LARGEST_CONDITION:
+        raise ValueError("no source feeds some buses that are joined")
+    return impedance
 
 
 def initial_currents(impedance: ComplexArray, driving_voltage: ArrayLike) -> FloatArray:
