@@ -27,6 +27,7 @@ FAULTS: Final[Mapping[str, str]] = MappingProxyType(
         "unknown-mode": "a heading names a mode that the sheet Modes does not have",
         # cells
         "missing-value": "a required cell is blank",
+        "no-typical-value": "a blank cell for which there is no typical value",
         "missing-name": "a row holds values and has no name",
         "no-stored-value": "a formula whose value the file does not hold",
         "error-value": "an Excel error",
@@ -85,6 +86,8 @@ FAULTS: Final[Mapping[str, str]] = MappingProxyType(
         "resistance-ratio": "R/X of a machine outside 0.02 to 0.3",
         "engine-power": "engine and alternator do not fit each other",
         "load-sum": "loads of more than three times the capacity",
+        "no-such-conductor": "a conductor that IEC 60228 does not have, without its resistance",
+        "too-warm": "an ambient temperature above that of the conductor",
         "cable-drop": "a fall of voltage above 20 %",
         "device-voltage": "a device rated below the voltage of its board",
         "setting-range": "a range whose end lies below its start",

@@ -50,21 +50,35 @@ def fill_rows(rows: Iterable[Row], found: Findings) -> list[Assumption]:
     assumptions: list[Assumption] = []
     for row in rows:
         columns = row.table.spec.columns
-        for column in columns:
-            if column.typical is None or column.typical.rule is None:
-                _fill(row, column, assumptions, found)
+        ruled = []
         for column in columns:
             if column.typical is not None and column.typical.rule is not None:
+                ruled.append(column)
+            else:
                 _fill(row, column, assumptions, found)
+        _fill_ruled(row, ruled, assumptions, found)
         _check_groups(row, found)
     return assumptions
 
 
-def _fill(row: Row, column: Column, assumptions: list[Assumption], found: Findings) -> None:
+def _fill_ruled(row: Row, columns: list[Column], assumptions: list[Assumption], found: Findings) -> None:
+    """Fill the blanks that follow from other cells, those that wait for one another last."""
+    waiting = columns
+    while waiting:
+        left = [column for column in waiting if not _fill(row, column, assumptions, found)]
+        if len(left) == len(waiting):
+            # What the rules need is itself at fault, here or on the sheet that the row refers to.
+            row.broken.update(column.field for column in left)
+            return
+        waiting = left
+
+
+def _fill(row: Row, column: Column, assumptions: list[Assumption], found: Findings) -> bool:
+    """Fill one cell; return False where a typical value has to wait for another cell."""
     values, name = row.values, column.field
     applies = not column.when or column.applies(values)
     if name in row.broken or (name in values and (applies or row.broken)):
-        return
+        return True
     if name in values:
         _report_unused(row, column, found)
         del values[name]
@@ -73,7 +87,8 @@ def _fill(row: Row, column: Column, assumptions: list[Assumption], found: Findin
     elif column.typical is None:
         values[name] = column.absent
     else:
-        _fill_typical(row, column, applies, assumptions)
+        return _fill_typical(row, column, applies, assumptions, found)
+    return True
 
 
 def _fill_required(row: Row, column: Column, applies: bool, found: Findings) -> None:
@@ -99,16 +114,23 @@ def _what(column: Column) -> str:
     return f"give the {column.name}"
 
 
-def _fill_typical(row: Row, column: Column, applies: bool, assumptions: list[Assumption]) -> None:
+def _fill_typical(
+    row: Row, column: Column, applies: bool, assumptions: list[Assumption], found: Findings
+) -> bool:
     typical = column.typical
     if typical is None:
         raise ValueError(column.name)
     try:
         value = typical.of(row.values)
     except (KeyError, TypeError):
-        # What the rule needs is itself at fault, here or on the sheet that the row refers to.
+        return False
+    except ValueError as error:
         row.broken.add(column.field)
-        return
+        found.add(
+            "no-typical-value", row.sheet, row.cell(column.field), f"{row.name}: {column.name} is blank",
+            str(error),
+        )  # fmt: skip
+        return True
     row.values[column.field] = value
     if applies:
         source = f"{typical.words}: {typical.source}" if typical.words else typical.source
@@ -122,6 +144,7 @@ def _fill_typical(row: Row, column: Column, applies: bool, assumptions: list[Ass
                 cell=row.place(column.field),
             )
         )
+    return True
 
 
 def _report_unused(row: Row, column: Column, found: Findings) -> None:

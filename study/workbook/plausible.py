@@ -7,7 +7,7 @@ from itertools import pairwise
 from math import sqrt
 from typing import Final
 
-from study.workbook.plausible_cables import check_cable_drops
+from study.workbook.plausible_cables import check_cables
 from study.workbook.plausible_operation import check_events, check_interlocks, check_modes
 from study.workbook.plausible_protection import check_protection
 from study.workbook.plausible_voltage import check_voltages
@@ -38,7 +38,7 @@ def check_plausible(plan: Plan, modes: Sequence[str]) -> None:
     for row in plan.of("Loads"):
         _check_load(plan, row)
     _check_load_sum(plan)
-    check_cable_drops(plan)
+    check_cables(plan)
     check_modes(plan, modes)
     check_interlocks(plan, modes)
     check_events(plan)

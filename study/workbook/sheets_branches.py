@@ -225,8 +225,8 @@ CABLES = SheetSpec(
             "maker's, at 20 °C; blank: from the conductor",
         ),
         number(
-            "Reactance", "ohm/km", "reactance_ohm_per_km", above(0.0, 10.0),
-            "maker's, at rated frequency; blank: from the section",
+            "Reactance", "ohm/km", "reactance_ohm_per_km", above(0.0, 10.0), "maker's, at rated frequency",
+            **derived(rule.cable_reactance, "from section and cores", f"typical build; {PRACTICE}"),
         ),
         number("R0", "ohm/km", "r0_ohm_per_km", above(0.0, 1000.0), "blank: unknown", **UNKNOWN),
         number("X0", "ohm/km", "x0_ohm_per_km", above(0.0, 100.0), "blank: unknown", **UNKNOWN),

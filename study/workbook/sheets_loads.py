@@ -28,6 +28,7 @@ from study.workbook.columns import (
 )
 
 PRACTICE = "common practice, no source"
+CAGE = "usual cage motors; common practice, no source"
 MOTOR = (("kind", ("motor",)),)
 BY_LINE = (*MOTOR, ("starting_method", ("direct", "star-delta", "autotransformer", "soft starter")))
 AUTOTRANSFORMER = (*MOTOR, ("starting_method", ("autotransformer",)))
@@ -56,7 +57,7 @@ CONSUMER_COLUMNS: tuple[Column, ...] = (
     ),
     number(
         "Power factor", "", "cos_phi", POWER_FACTOR, "at rated output, 0 to 1",
-        **derived(rule.load_power_factor, "by kind and rated output", rule.POWER_FACTOR_SOURCE),
+        **derived(rule.load_power_factor, "by kind, rated output and poles", PRACTICE),
     ),
     number("Running current", "A", "running_current_a", POSITIVE, "of one unit at rated output, name-plate"),
     number(
@@ -82,19 +83,19 @@ MOTOR_COLUMNS: tuple[Column, ...] = (
     number(
         "Starting current", "x In", "starting_current", above(1.0, 15.0), "locked rotor, direct on line",
         usual=between(3.0, 10.0), when=BY_LINE,
-        **typical(6.5, "cage motors 6 to 7 times rated current; common practice, no source"),
+        **derived(rule.starting_current, "by rated output", CAGE),
     ),
     number(
         "Starting power factor", "", "starting_cos_phi", above(0.0, 1.0), "locked rotor",
-        when=BY_LINE, **typical(0.3, "cage motors 0.2 to 0.4; common practice, no source"),
+        when=BY_LINE, **derived(rule.starting_cos_phi, "by rated output", CAGE),
     ),
     number(
         "Locked-rotor torque", "x Tn", "locked_rotor_torque", above(0.0, 10.0), "direct on line",
-        when=BY_LINE, **typical(1.6, "cage motors 1.2 to 2.2; common practice, no source"),
+        when=BY_LINE, **derived(rule.locked_rotor_torque, "by rated output", CAGE),
     ),
     number(
         "Breakdown torque", "x Tn", "breakdown_torque", above(1.0, 10.0), "largest",
-        when=BY_LINE, **typical(2.2, "cage motors 2.0 to 3.0; common practice, no source"),
+        when=BY_LINE, **derived(rule.breakdown_torque, "by rated output", CAGE),
     ),
     choice(
         "Load torque law", "torque_law", get_args(TorqueLaw), "of the driven machine against speed",

@@ -7,13 +7,22 @@ heading. Rows also hold two things that no column does: ``f_rated_hz`` of the pr
 
 from __future__ import annotations
 
-from math import pi
+from math import log, pi
+from typing import TYPE_CHECKING, Final
 
+from study.formulas.cables import insulation_data, typical_reactance
 from study.workbook.columns import Values
 
+if TYPE_CHECKING:
+    from study.formulas.induction import StartingData
+
 SATURATED_SHARE = 0.9
-EFFICIENCY_SOURCE = "common practice, no source"
-POWER_FACTOR_SOURCE = "common practice, no source"
+EFFICIENCY_CLASS: Final = "IE2"
+EFFICIENCY_SOURCE: Final = "IEC 60034-30-1 class IE2, four poles, from memory"
+# The smallest motor of the standard and its efficiency, four poles, IE2, 50 Hz; from memory.
+SMALLEST_MOTOR: Final = (0.12, 0.591)
+TABLE_START_KW: Final = 0.75
+TABLE_END_KW: Final = 1000.0
 
 
 def x_d1_saturated(row: Values) -> float:
@@ -221,28 +230,89 @@ def displacement_power_factor(row: Values) -> float:
 
 
 def motor_efficiency(row: Values) -> float:
-    """Return the efficiency of a motor at rated output."""
-    return 0.90 if row["kind"] == "motor" else 1.0
+    """Return the efficiency of a motor at rated output; 1 for what is rated by its input.
+
+    Below 0.75 kW on the line to the smallest motor of the standard, over the logarithm of the rating.
+
+    Examples
+    --------
+    >>> round(motor_efficiency({"kind": "motor", "p_rated_kw": 11.0, "f_rated_hz": 50.0}), 3)
+    0.898
+    >>> round(motor_efficiency({"kind": "motor", "p_rated_kw": 0.12, "f_rated_hz": 50.0}), 3)
+    0.591
+    """
+    from study.formulas.induction import typical_efficiency
+
+    if row["kind"] != "motor":
+        return 1.0
+    p_kw, f_hz = float(row["p_rated_kw"]), 50.0 if float(row["f_rated_hz"]) < 55.0 else 60.0
+    at_kw = min(max(p_kw, TABLE_START_KW), TABLE_END_KW)
+    efficiency = typical_efficiency(at_kw, EFFICIENCY_CLASS, f_hz)
+    if p_kw >= TABLE_START_KW:
+        return efficiency
+    smallest_kw, smallest = SMALLEST_MOTOR
+    share = log(max(p_kw, smallest_kw) / TABLE_START_KW) / log(smallest_kw / TABLE_START_KW)
+    return efficiency + share * (smallest - efficiency)
 
 
 def motor_power_factor(row: Values) -> float:
-    """Return the power factor of a motor at rated output."""
-    return 0.85
+    """Return the power factor of a motor at rated output, by rating and number of poles."""
+    from study.formulas.induction import typical_power_factor
+
+    return typical_power_factor(float(row["p_rated_kw"]), int(row["poles"]))
 
 
-_CONDUCTOR_DEGC = {"PVC": 70.0, "silicone": 95.0}
-_END_DEGC = {"PVC": 150.0, "silicone": 350.0}
-_CROSS_LINKED_DEGC = (90.0, 250.0)
+def starting_current(row: Values) -> float:
+    """Return the starting current of a cage motor [x rated current]."""
+    return _starting_data(row).starting_current
+
+
+def starting_cos_phi(row: Values) -> float:
+    """Return the power factor of a cage motor at standstill."""
+    return _starting_data(row).starting_cos_phi
+
+
+def locked_rotor_torque(row: Values) -> float:
+    """Return the torque of a cage motor at standstill [x rated torque]."""
+    return _starting_data(row).locked_rotor_torque
+
+
+def breakdown_torque(row: Values) -> float:
+    """Return the largest torque of a cage motor [x rated torque]."""
+    return _starting_data(row).breakdown_torque
+
+
+def _starting_data(row: Values) -> StartingData:
+    from study.formulas.induction import typical_starting_data
+
+    return typical_starting_data(float(row["p_rated_kw"]))
 
 
 def conductor_temperature(row: Values) -> float:
     """Return the highest service temperature of a conductor by its insulation [degC]."""
-    return _CONDUCTOR_DEGC.get(str(row["insulation"]), _CROSS_LINKED_DEGC[0])
+    return insulation_data(str(row["insulation"]))["conductor_degc"]
 
 
 def end_temperature(row: Values) -> float:
-    """Return the end temperature of a short circuit by the insulation [degC]."""
-    return _END_DEGC.get(str(row["insulation"]), _CROSS_LINKED_DEGC[1])
+    """Return the end temperature of a short circuit by the insulation [degC].
+
+    Examples
+    --------
+    >>> end_temperature({"insulation": "EPR"})
+    250.0
+    """
+    return insulation_data(str(row["insulation"]))["end_degc"]
+
+
+def cable_reactance(row: Values) -> float:
+    """Return the reactance of a cable of typical build [ohm/km].
+
+    Raises
+    ------
+    ValueError
+        No typical build of that section.
+    """
+    return typical_reactance(float(row["section_mm2"]), row["cores"], float(row["f_rated_hz"]))
 
 
 def ambient(row: Values) -> float:
