@@ -270,17 +270,19 @@ def _filters(network: Network, mode: Mode, view: View, order: FloatArray) -> Com
 
 
 def _motors(network: Network, mode: Mode, view: View, bus_of_node: IntArray) -> tuple[IntArray, ComplexArray]:
-    """Return bus and power of the synchronous motors: rated input times load factor, rated leading kvar."""
+    """Return bus and power of the synchronous motors: set power or rated input, and no kvar.
+
+    Demand has no row for them, and their excitation is not given; as in the load balance no credit is taken
+    for the kvar that they could supply.
+    """
     motors = network.plant.synchronous_motors
     bus = np.array([bus_of_node[network.topology.node_of[m.name]] for m in motors], np.int64)
     power = np.zeros(len(motors), complex)
     for n, m in enumerate(motors):
-        if m.name not in view.motors_on:
-            continue
-        demand = mode.demand.get(m.name)
-        p_kw = m.p_output_kw / m.efficiency * (demand.in_use * demand.load_factor if demand else 1.0)
-        q_kvar = m.s_rated_kva * (1.0 - m.cos_phi_rated**2) ** 0.5
-        power[n] = complex(p_kw, -q_kvar)
+        if m.name in view.motors_on:
+            point = mode.set_points.get(m.name)
+            given = point.p_set_kw if point is not None else None
+            power[n] = m.p_output_kw / m.efficiency if given is None else abs(given)
     return bus, power
 
 

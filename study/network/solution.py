@@ -37,12 +37,14 @@ class ModeSolution:
     topology; power counts into the branch at both ends (0 at the star point of a three-winding transformer);
     currents are of one unit's run for a consumer's cable.
     ``determined`` is False for a tie in a closed ring of ties without impedance. ``f_pu`` is [island].
-    Where ``solved`` is False the arrays of sources, branches and islands are empty and ``reason`` says why.
+    ``node_v_pu`` [node] is per unit of the node's base voltage (NaN at a star point). Where ``solved`` is
+    False the arrays of sources, branches and islands are empty and ``reason`` says why.
     """
 
     at: ModeNetwork
     solved: bool
     reason: str
+    node_v_pu: ComplexArray
     energised: BoolArray
     board_v_pu: ComplexArray
     load_fed: BoolArray
@@ -89,6 +91,7 @@ def unsolved(at: ModeNetwork, reason: str, findings: Sequence[str] = ()) -> Mode
         at=at,
         solved=False,
         reason=reason,
+        node_v_pu=np.zeros(len(at.bus_of_node), complex),
         energised=np.array(at.view.board_energised, bool),
         board_v_pu=np.zeros(len(plant.boards), complex),
         load_fed=np.array(at.view.load_fed, bool),
@@ -244,6 +247,7 @@ def assemble(
         at=at,
         solved=True,
         reason="",
+        node_v_pu=np.where(at.bus_of_node >= 0, np.where(at_star, np.nan, v_bus[at.bus_of_node]), 0.0),
         energised=energised,
         board_v_pu=np.where(energised, v_bus[bus] * network.u_base_v[: len(nominal)] / nominal, 0.0),
         load_fed=np.array(at.view.load_fed, bool),

@@ -136,6 +136,8 @@ def _from_genset(g: Genset, point: SetPoint | None, place: tuple[int, int]) -> S
     v_ref = _trim(point, "no_load_voltage_pu", g.regulator.no_load_voltage_pu)
     law, words = _genset_law(g, (point and point.regulator_mode) or g.regulator.mode)
     q_set_kvar = point.q_set_kvar if point else None
+    if law == Law.REACTIVE_POWER:
+        words += " at rated power factor" if q_set_kvar is None else f" at {q_set_kvar:g} kvar"
     machine = machine_of(g)
     p_max = ENGINE_OVERLOAD * g.p_engine_kw * g.alternator_efficiency
     p_set = _trim(point, "p_set_kw", np.nan)
