@@ -281,7 +281,10 @@ def write_results(
     folder = _folder(book, out)
     _tell(progress, "writing the result sheets")
     package = open_package(book)
-    data = graft_result_sheets(package.data, result_workbook(outcome))
+    try:
+        data = graft_result_sheets(package.data, result_workbook(outcome))
+    except PackageError as error:
+        raise PackageError(f"{book.name}: {error}") from error
     target, notes = _write_book(book, folder / book.name, data, package.digest)
     paths = [target]
     _tell(progress, "writing the report")
@@ -327,8 +330,9 @@ def _write_book(book: Path, target: Path, data: bytes, digest: str) -> tuple[Pat
 
 
 def _write_networks(outcome: StudyOutcome, folder: Path, stem: str) -> list[Path]:
+    from study.network.cases import case
     from study.network.network import build_network, mode_network
-    from study.network.solver import case, export_json
+    from study.network.solver import export_json
     from study.workbook.package import write_atomically
 
     demand = outcome.balance.demand

@@ -78,7 +78,7 @@ def inherent_curves(genset: Genset) -> InherentCurve:
         labels=LABELS,
         cos_phi=read_only(COS_PHI),
         lagging=LAGGING,
-        current_pu=read_only(CURRENTS_PU),
+        current_pu=read_only(np.broadcast_to(CURRENTS_PU, u_pu.shape)),
         u_pu=read_only(u_pu),
         regulation_pu=read_only(inherent_regulation(1.0, phi, machine)),
         field_pu=read_only(field_required(1.0, 1.0, phi, machine)),
