@@ -1,8 +1,8 @@
 """Test power factors, making ratios and d.c. components of breakers and assemblies; rules of thumb.
 
-Source: IEC 60947-1 table 16, IEC 60947-2 tables 2 and 11, IEC 61439-1 table 7, IEC 62271-100, IEEE Std C37.13,
-all from memory; 46 CFR 111.52-3; ClassNK H2.3.3 and the plant of the Nippon Foundation training texts (three
-sets of 480 A, motors of 790 A).
+Source: IEC 60947-1 table 16, IEC 60947-2 tables 2 and 11, IEC 61439-1 table 7, IEC 62271-100, IEEE C37.13,
+all from memory; 46 CFR 111.52-3; ClassNK H2.3.3 and the plant of the Nippon Foundation training texts: three
+sets of 480 A, motors of 790 A.
 """
 
 import math
