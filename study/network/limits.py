@@ -119,10 +119,21 @@ def _machine_steps(
     needed = laws.field(j, v, i)
     v_own, i_own = np.abs(v) * laws.to_own_v[j], np.abs(i) * laws.to_own_i[j]
     most = available_field(v_own, i_own, np.angle(v * np.conj(i)), source.ceiling)
+    assert source.machine is not None
+    # Past a quarter turn of load angle the field found is one that pushes the rotor out of step: as a field
+    # against the present one it counts as negative.
+    inside = (
+        (v_own + (source.machine.ra_pu + 1j * source.machine.xq_pu) * _lagging(v, i) * i_own).real
+    ) >= 0.0
     return [
         (CEILING, (needed - most) / source.rated_field_pu),
-        (NO_EXCITATION, -needed / source.rated_field_pu),
+        (NO_EXCITATION, np.where(inside, -needed, needed) / source.rated_field_pu),
     ]
+
+
+def _lagging(v: ComplexArray, i: ComplexArray) -> ComplexArray:
+    """Return the direction of the current against the voltage."""
+    return np.asarray(np.exp(-1j * np.angle(v * np.conj(i))))
 
 
 def _converter_steps(
