@@ -42,7 +42,7 @@ def set_loading(outcome: StudyOutcome) -> Drawing | None:
     if not groups:
         return None
     rows = _rows_of_groups(groups)
-    names = 0.07 * (7 + max(len(s.name) for _, sets in groups for s in sets)) + 0.1
+    names = 0.06 * (7 + max(len(s.name) for _, sets in groups for s in sets)) + 0.1
     height = 0.45 + len(rows) * (1.75 + names + 0.4)
     figure = canvas(height)
     top = 0.1

@@ -7,6 +7,7 @@ from typing import Any
 import numpy as np
 
 from study.report.content import StudyOutcome
+from study.report.findings import listed
 from study.report.numbers import percent, quantity
 from study.report.plotting import (
     SMALL,
@@ -56,14 +57,13 @@ def _island(island: IslandSharing, number: int) -> Drawing:
         for column, (word, unit) in enumerate((("kW", "kW"), ("kvar", "kvar"))):
             left = 3.72 + 2.68 * column
             axes = figure.add_axes(frame(figure, left=left, right=8.6 - left - 2.05, bottom=bottom, top=top))
-            tolerance = _deviations(axes, island, curve, unit)
-            handles.setdefault("tolerance", tolerance)
+            handles = _deviations(axes, island, curve, unit) | handles
             axes.set_title(f"{word}, {adjusted(curve)}")
             axes.set_ylabel(f"Off its share [{unit}]", labelpad=1)
             if row == 1:
                 axes.set_xlabel("Load [% of rated kW on line]")
     legend_below(figure, list(handles.values()), list(handles))
-    sets = ", ".join(island.sets)
+    sets = listed(island.sets, 6)
     return drawing(
         figure,
         key=f"fig-sharing-{number + 1}",
@@ -91,10 +91,9 @@ def _words(island: IslandSharing) -> str:
 
 def _setting_lines(axes: Any, island: IslandSharing) -> dict[str, Any]:
     handles: dict[str, Any] = {}
-    for i, line in enumerate(island.lines):
-        (drawn,) = axes.plot(
-            line.q_kvar, 100.0 * line.u_pu, color=colour(i), linestyle=dash(i), zorder=2, label=line.genset
-        )
+    for line in island.lines:
+        i = island.sets.index(line.genset)
+        axes.plot(line.q_kvar, 100.0 * line.u_pu, color=colour(i), linestyle=dash(i), zorder=2)
         axes.plot(
             [line.q_operating_kvar],
             [100.0 * line.u_operating_pu],
@@ -105,7 +104,6 @@ def _setting_lines(axes: Any, island: IslandSharing) -> dict[str, Any]:
             markeredgewidth=0.6,
             zorder=4,
         )
-        handles[line.genset] = drawn
     handles["bus voltage"] = axes.axhline(
         percent(island.u_operating_pu), color=INK, linewidth=0.9, linestyle=(0, (4, 2)), zorder=1
     )
@@ -115,20 +113,21 @@ def _setting_lines(axes: Any, island: IslandSharing) -> dict[str, Any]:
     return handles
 
 
-def _deviations(axes: Any, island: IslandSharing, curve: SharingCurve, unit: str) -> Any:
+def _deviations(axes: Any, island: IslandSharing, curve: SharingCurve, unit: str) -> dict[str, Any]:
     values: FloatArray = curve.dp_kw if unit == "kW" else curve.dq_kvar
     limits = island.p_tolerance_kw if unit == "kW" else island.q_tolerance_kvar
     load = 100.0 * curve.load_pu
-    for i in range(len(island.sets)):
-        axes.plot(load, values[:, i], color=colour(i), linestyle=dash(i), zorder=3)
-    drawn = None
+    handles: dict[str, Any] = {}
+    for i, name in enumerate(island.sets):
+        (handles[name],) = axes.plot(load, values[:, i], color=colour(i), linestyle=dash(i), zorder=3)
     for i, limit in enumerate(dict.fromkeys(float(x) for x in limits)):
         pattern = (0, (4, 2)) if i == 0 else (0, (1.5, 1.5))
         for sign in (-1.0, 1.0):
-            drawn = axes.axhline(sign * limit, color=QUIET, linewidth=0.9, linestyle=pattern, zorder=2)
+            line = axes.axhline(sign * limit, color=QUIET, linewidth=0.9, linestyle=pattern, zorder=2)
+            handles["tolerance"] = line
     axes.axhline(0.0, color=RULE, linewidth=0.6, zorder=1)
     axes.set_xlim(0.0, 100.0)
-    return drawn
+    return handles
 
 
 def case_figures(outcome: StudyOutcome) -> tuple[Drawing, ...]:

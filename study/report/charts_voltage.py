@@ -8,6 +8,7 @@ from typing import Any
 import numpy as np
 
 from study.report.content import StudyOutcome
+from study.report.findings import listed
 from study.report.numbers import percent, quantity
 from study.report.plotting import (
     SMALL,
@@ -229,7 +230,7 @@ def _regulation(group: Sequence[SetRegulation], number: int) -> Drawing:
     right.axhline(100.0, color=INK, linewidth=0.6)
     _room(right, 1.0)
     legend_below(figure, handles, labels)
-    names = ", ".join(s.genset for s in group)
+    names = listed([s.genset for s in group], 6)
     band = quantity(percent(row.band_as_set_pu), "%", 2)
     fall = quantity(percent(row.droop_no_load_to_rated_pu), "%", 2)
     return drawing(

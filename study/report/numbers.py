@@ -8,10 +8,13 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable
+from decimal import ROUND_HALF_UP, Context, Decimal
 
 NOT_AVAILABLE = "n/a"
 MINUS = "−"
 _MOST_DIGITS = 15
+_HUGE = 1e15
+_ROUNDING = Context(prec=50, rounding=ROUND_HALF_UP)
 _NOISE = 1e-9
 
 
@@ -183,10 +186,18 @@ def number(value: float, decimals: int, infinite: str = "infinite", missing: str
         return missing
     if math.isinf(value):
         return infinite
-    text = f"{value:.{decimals}f}"
+    text = _rounded(value, decimals)
     if not text.strip("-0."):
         return text.lstrip("-")
     return text.replace("-", MINUS)
+
+
+def _rounded(value: float, decimals: int) -> str:
+    """Round the number as it is written in decimals, halves away from zero, as a spreadsheet does."""
+    if abs(value) >= _HUGE:
+        return f"{value:.3e}"
+    step = Decimal(1).scaleb(-decimals)
+    return format(Decimal(repr(float(value))).quantize(step, context=_ROUNDING), "f")
 
 
 def tiny(value: float) -> str:

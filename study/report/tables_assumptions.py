@@ -15,7 +15,10 @@ NOT_COVERED: Final = (
     ("Grading of protective devices", "Not computed yet; settings are not judged."),
     ("Voltage and frequency dips", "Starting of large motors and load steps is not simulated yet."),
     ("Harmonic distortion", "Not computed yet."),
-    ("Comparison of two revisions of the workbook", "Not made yet; modes of one workbook are compared."),
+    (
+        "Comparison of two revisions of the workbook",
+        "Made by the command `study compare`, not on this page; modes of one workbook are compared here.",
+    ),
     ("Trial sheet", "Not made yet."),
     ("D.c. systems and batteries", "Only as a converter supply seen from the a.c. side."),
     ("Arc-flash energy", "Not covered."),

@@ -36,6 +36,7 @@ SUBJECTS: Final = (
     "dips",
     "harmonics",
 )
+_OF_LOAD_FLOW: Final = ("voltage", "frequency", "cables")
 VESSEL: Final = "vessel"
 _SHEET = "R Summary"
 _SHOWN = 5
@@ -121,7 +122,20 @@ def verdict_grid(outcome: StudyOutcome) -> VerdictGrid:
     return VerdictGrid(
         subjects=subjects,
         columns=tuple(m or VESSEL for m in keys),
-        cells=tuple(tuple(_grid_cell(places.get((s, m), ())) for m in keys) for s in subjects),
+        cells=tuple(
+            tuple(_grid_cell(places.get((s, m), ())) or _unsolved(outcome, s, m) for m in keys)
+            for s in subjects
+        ),
+    )
+
+
+def _unsolved(outcome: StudyOutcome, subject: str, mode: str) -> GridCell | None:
+    """Return an open cell where the mode has no load flow to judge; None where nothing is to be judged."""
+    unsolved = any(flow.mode == mode and not flow.solved for flow in outcome.load_flow.modes)
+    if not unsolved or subject not in _OF_LOAD_FLOW:
+        return None
+    return GridCell(
+        status="not assessed", figure="no solution", equipment="whole plant", judged=0, exceeding=0
     )
 
 

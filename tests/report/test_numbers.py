@@ -42,6 +42,10 @@ def test_number_reads_back_within_half_of_its_last_digit(value: float, decimals:
     assert text.startswith(numbers.MINUS) == (back < 0)
 
 
+def test_halves_round_away_from_zero_as_in_a_spreadsheet() -> None:
+    assert [numbers.number(v, 1) for v in (39.15, 0.25, -0.25, 2.675e2)] == ["39.2", "0.3", "−0.3", "267.5"]
+
+
 def test_what_is_not_a_number_prints_as_words() -> None:
     assert numbers.number(math.nan, 1) == "n/a"
     assert numbers.number(math.inf, 1, "no set left") == "no set left"

@@ -1,0 +1,213 @@
+"""The report: one page that carries everything with it."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any, Final
+
+from study.checks.verdict import STATUS_ORDER
+from study.report.catalogue import all_tables
+from study.report.charts import Figures, draw_figures
+from study.report.content import CAUTION, StudyOutcome
+from study.report.findings import Finding, findings
+from study.report.page_tables import TableView, table_view, turned, verdict_css, verdict_text
+from study.report.style import ACCENT, INK, QUIET, RULE, TINT, VERDICTS
+from study.report.tables import Table
+from study.report.tables_assumptions import NOT_COVERED
+from study.report.tables_verdicts import VESSEL, VerdictGrid, verdict_grid
+from study.resources import resource_dir
+
+_SECTIONS: Final = (
+    ("verdicts", "Verdicts"),
+    ("load-balance", "Load balance"),
+    ("voltage", "Voltage and sharing"),
+    ("comparing", "Comparing modes"),
+    ("assumptions", "Assumptions, limits and methods"),
+    ("not-covered", "Not covered"),
+    ("control", "Document control"),
+)
+_LISTED = 40
+_ON_SHEET_ONLY = ("board", "input_cell")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class GridView:
+    """One cell of the verdict grid."""
+
+    css: str
+    text: str
+    figure: str
+    equipment: str
+    link: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class FindingView:
+    """A finding with its status word and shape."""
+
+    css: str
+    status: str
+    finding: Finding
+
+
+def report_page(outcome: StudyOutcome) -> str:
+    """Return the report as one HTML page without anything external.
+
+    Parameters
+    ----------
+    outcome : StudyOutcome
+        The study.
+
+    Returns
+    -------
+    str
+        The page, the same for the same study.
+    """
+    from jinja2 import Environment, FileSystemLoader, StrictUndefined
+    from markupsafe import Markup
+
+    environment = Environment(
+        loader=FileSystemLoader(resource_dir("templates")),
+        autoescape=True,
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+    )
+    figures = draw_figures(outcome)
+    page = environment.get_template("report.html.j2").render(
+        **_context(outcome, figures), drawn={d.key: Markup(d.svg) for d in figures.every}
+    )
+    return str(page)
+
+
+def _context(outcome: StudyOutcome, figures: Figures) -> dict[str, Any]:
+    tables = all_tables(outcome)
+    grid = verdict_grid(outcome)
+    shown = [_finding_view(f) for f in findings(outcome)]
+    acting = [f for f in shown if f.finding.status != "close"]
+    names, lines = turned(tables["mode_figures"])
+    project = outcome.plant.project
+    return {
+        "outcome": outcome,
+        "plant": outcome.plant,
+        "project": project,
+        "caution": CAUTION,
+        "sections": [
+            {"key": key, "title": title, "number": number}
+            for number, (key, title) in enumerate(_SECTIONS, start=1)
+        ],
+        "tables": _views(tables, outcome),
+        "figures": figures,
+        "grid": grid,
+        "grid_rows": _grid_rows(grid),
+        "tally": _tally(outcome),
+        "findings": acting[:_LISTED],
+        "more_findings": acting[_LISTED:],
+        "close_findings": [f for f in shown if f.finding.status == "close"],
+        "modes": names,
+        "mode_lines": lines,
+        "mode_verdicts": _mode_verdicts(grid, len(names)),
+        "not_covered": NOT_COVERED,
+        "looks": VERDICTS,
+        "colours": {"accent": ACCENT, "ink": INK, "quiet": QUIET, "rule": RULE, "tint": TINT},
+        "print_document": css_text(f"{project.document_number} rev. {project.revision}"),
+        "print_vessel": css_text(project.vessel),
+    }
+
+
+def _views(tables: dict[str, Table], outcome: StudyOutcome) -> dict[str, TableView]:
+    """Return the tables that have a row, by key; the page asks for them by name."""
+    views = {}
+    for key, table in tables.items():
+        if table.n_rows:
+            anchors = _proofs(table, outcome) if key == "verdicts" else ()
+            without = _ON_SHEET_ONLY if key == "load_balance" else ()
+            views[key] = table_view(table, anchors=anchors, without=without)
+    return views
+
+
+def _proofs(table: Table, outcome: StudyOutcome) -> list[str]:
+    """Return an anchor for the governing row of each subject and mode."""
+    seen: set[str] = set()
+    anchors = []
+    for subject, mode in zip(table.column("subject"), table.column("mode"), strict=True):
+        anchor = _proof(str(subject), str(mode), outcome.modes)
+        anchors.append("" if anchor in seen else anchor)
+        seen.add(anchor)
+    return anchors
+
+
+def _proof(subject: str, mode: str, modes: tuple[str, ...]) -> str:
+    word = "-".join("".join(c if c.isalnum() else " " for c in subject.lower()).split())
+    number = modes.index(mode) + 1 if mode in modes else 0
+    return f"proof-{word}-{number}"
+
+
+def _grid_rows(grid: VerdictGrid) -> list[tuple[str, list[GridView | None]]]:
+    modes = tuple(column for column in grid.columns if column != VESSEL)
+    rows = []
+    for subject, cells in zip(grid.subjects, grid.cells, strict=True):
+        views: list[GridView | None] = []
+        for column, cell in zip(grid.columns, cells, strict=True):
+            if cell is None:
+                views.append(None)
+                continue
+            views.append(
+                GridView(
+                    css=verdict_css(cell.status),
+                    text=verdict_text(cell.status),
+                    figure=cell.figure,
+                    equipment=cell.equipment,
+                    link=_proof(subject, column, modes) if cell.judged else "table-load-flow-islands",
+                )
+            )
+        rows.append((subject, views))
+    return rows
+
+
+def _mode_verdicts(grid: VerdictGrid, n_modes: int) -> list[tuple[str, list[str]]]:
+    """Return each subject's status and figure for the modes, for the comparison."""
+    return [
+        (
+            subject,
+            [
+                f"{verdict_text(cell.status)}: {cell.figure}" if cell else "nothing to judge"
+                for cell in cells[:n_modes]
+            ],
+        )
+        for subject, cells in zip(grid.subjects, grid.cells, strict=True)
+        if any(cells[:n_modes])
+    ]
+
+
+def _tally(outcome: StudyOutcome) -> list[tuple[str, str, int]]:
+    """Return style, word and count of each status, worst first."""
+    return [
+        (verdict_css(word), verdict_text(word), sum(v.status == word for v in outcome.verdicts))
+        for word in STATUS_ORDER
+    ]
+
+
+def _finding_view(finding: Finding) -> FindingView:
+    return FindingView(css=verdict_css(finding.status), status=verdict_text(finding.status), finding=finding)
+
+
+def css_text(text: str) -> str:
+    r"""Return text as the inside of a CSS string, with everything but letters and digits escaped.
+
+    Parameters
+    ----------
+    text : str
+        Any text.
+
+    Returns
+    -------
+    str
+        Safe between quotes in a style sheet.
+
+    Examples
+    --------
+    >>> css_text('A "1"')
+    'A\\20 \\22 1\\22 '
+    """
+    return "".join(c if c.isascii() and c.isalnum() else f"\\{ord(c):x} " for c in text)
