@@ -46,7 +46,7 @@ def row(s: ModeSolution, name: str) -> int:
     return next(n for n, k in enumerate(s.branch) if branches[k].name == name)
 
 
-# Maker's 0.1930 ohm/km at 20 degC becomes 0.1930 x 324.5/254.5 = 0.24608 at 90 degC (IEC 60228). Skin effect by
+# Maker's 0.1930 ohm/km at 20 degC is 0.1930 x 324.5/254.5 = 0.24608 at 90 degC (IEC 60228). Skin effect by
 # IEC 60287-1-1: x^2 = 8 pi 60 1e-7/0.24608e-3 = 0.61280, factor 1 + x^4/(192 + 0.8 x^4) = 1.00195.
 R_OHM, X_OHM = 0.24608 * 1.00195 * 0.05, 0.090 * 0.05
 
