@@ -258,6 +258,33 @@ def quantity(value: float, unit: str, decimals: int | None = None) -> str:
     return f"{text} {unit}" if unit else text
 
 
+def figure(value: float, unit: str) -> str:
+    """Return a number that goes into a sum worked by hand: six significant digits.
+
+    Two more than the result shows, so that the reader's sum gives the printed result.
+
+    Parameters
+    ----------
+    value : float
+        Number to print.
+    unit : str
+        Unit behind it; may be empty.
+
+    Returns
+    -------
+    str
+        The text.
+
+    Examples
+    --------
+    >>> figure(16.718123, "kW"), figure(0.5, "")
+    ('16.7181 kW', '0.5')
+    """
+    text = number(value, significant_decimals(value, 6, 9))
+    text = text.rstrip("0").rstrip(".") if "." in text else text
+    return f"{text} {unit}" if unit else text
+
+
 def judged_pair(value: float, limit: float, *, exceeds: bool) -> tuple[str, str]:
     """Return a judged value and its limit as text that never agrees where the value exceeds the limit.
 

@@ -9,7 +9,7 @@ import numpy as np
 
 from study.model.loads import Load
 from study.report.content import StudyOutcome
-from study.report.numbers import percent, quantity
+from study.report.numbers import figure, percent, quantity
 from study.report.tables import (
     Column,
     Footer,
@@ -224,41 +224,41 @@ def _loading(mode: ModeBalance, island: IslandBalance) -> str:
 
 
 def _worked_consumer(outcome: StudyOutcome) -> Worked | None:
-    """Work out the largest motor of the first mode, or the largest consumer where no motor runs."""
+    """Work out the motor that counts most in the first mode, or the largest consumer where none runs."""
     demand = outcome.balance.demand
-    if not demand.loads or not demand.modes or not np.any(demand.p_kw[0] > 0):
+    if not demand.loads or not demand.modes or not np.any(demand.p_counted_kw[0] > 0):
         return None
     motor = np.array([outcome.plant.load(n).kind == "motor" for n in demand.loads])
-    size = np.where(motor, demand.p_kw[0], 0.0)
-    index = int(np.argmax(size if np.any(size > 0) else demand.p_kw[0]))
+    size = np.where(motor, demand.p_counted_kw[0], 0.0)
+    index = int(np.argmax(size if np.any(size > 0) else demand.p_counted_kw[0]))
     at = (0, index)
     load = outcome.plant.load(demand.loads[index])
-    absorbed = f"{quantity(load.p_absorbed_kw, 'kW')} × {quantity(float(demand.load_factor[at]), '')}"
-    unit, p = quantity(float(demand.p_unit_kw[at]), "kW"), quantity(float(demand.p_kw[at]), "kW")
-    cos_phi = quantity(float(demand.cos_phi[at]), "")
+    absorbed = f"{figure(load.p_absorbed_kw, 'kW')} × {figure(float(demand.load_factor[at]), '')}"
+    p_unit_kw, p_kw = float(demand.p_unit_kw[at]), float(demand.p_kw[at])
+    cos_phi = figure(float(demand.cos_phi[at]), "")
     lines = [
         WorkedLine(
             label="Input of one unit",
             formula="absorbed power × load factor / efficiency",
-            figures=f"{absorbed} / {quantity(float(demand.efficiency[at]), '')}",
-            result=unit,
+            figures=f"{absorbed} / {figure(float(demand.efficiency[at]), '')}",
+            result=quantity(p_unit_kw, "kW"),
         ),
         WorkedLine(
             label="All units in use",
             formula="units in use × input of one unit",
-            figures=f"{quantity(float(demand.in_use[at]), '')} × {unit}",
-            result=p,
+            figures=f"{figure(float(demand.in_use[at]), '')} × {figure(p_unit_kw, 'kW')}",
+            result=quantity(p_kw, "kW"),
         ),
         WorkedLine(
             label="Reactive power",
             formula="P × √(1 / cos²φ − 1)",
-            figures=f"{p} × √(1 / {cos_phi}² − 1)",
+            figures=f"{figure(p_kw, 'kW')} × √(1 / {cos_phi}² − 1)",
             result=quantity(float(demand.q_kvar[at]), "kvar"),
         ),
         WorkedLine(
             label="Counted",
             formula="P × simultaneity factor",
-            figures=f"{p} × {quantity(float(demand.factor[at]), '')}",
+            figures=f"{figure(p_kw, 'kW')} × {figure(float(demand.factor[at]), '')}",
             result=quantity(float(demand.p_counted_kw[at]), "kW"),
         ),
     ]

@@ -7,7 +7,7 @@ from collections.abc import Mapping
 import numpy as np
 
 from study.report.content import StatusLookup, StudyOutcome, cells_by_name
-from study.report.numbers import percent, quantity
+from study.report.numbers import figure, percent, quantity
 from study.report.tables import (
     Column,
     Table,
@@ -138,7 +138,7 @@ def _worked(outcome: StudyOutcome, kinds: tuple[str, ...]) -> Worked | None:
                 line = WorkedLine(
                     label="Of rating",
                     formula="current / rating",
-                    figures=f"{quantity(current, 'A')} / {quantity(rating, 'A')}",
+                    figures=f"{figure(current, 'A')} / {figure(rating, 'A')}",
                     result=quantity(percent(state.loading[b]), "%"),
                 )
                 return Worked(row=f"{state.names[b]}, {mode.mode}", lines=(line,))

@@ -7,7 +7,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from study.report.content import StatusLookup, StudyOutcome, cells_by_name
-from study.report.numbers import percent, quantity
+from study.report.numbers import figure, percent, quantity
 from study.report.tables import (
     Column,
     Table,
@@ -225,21 +225,21 @@ def _worked_source(result: LoadFlowResult) -> Worked | None:
     for mode in result.modes:
         state = mode.sources
         if state.names:
-            s_kva, u_v = quantity(float(state.s_kva[0]), "kVA"), quantity(float(state.u_v[0]), "V")
-            p_kw, q_kvar = quantity(float(state.p_kw[0]), ""), quantity(float(state.q_kvar[0]), "")
+            s_kva, u_v = float(state.s_kva[0]), float(state.u_v[0])
+            p_kw, q_kvar = float(state.p_kw[0]), float(state.q_kvar[0])
             return Worked(
                 row=f"{state.names[0]}, {mode.mode}",
                 lines=(
                     WorkedLine(
                         label="Apparent power",
                         formula="√(P² + Q²)",
-                        figures=f"√({p_kw}² + {q_kvar}²)",
-                        result=s_kva,
+                        figures=f"√({figure(p_kw, '')}² + {figure(q_kvar, '')}²)",
+                        result=quantity(s_kva, "kVA"),
                     ),
                     WorkedLine(
                         label="Current",
                         formula="1000 × S / (√3 × U)",
-                        figures=f"1000 × {s_kva} / (√3 × {u_v})",
+                        figures=f"1000 × {figure(s_kva, 'kVA')} / (√3 × {figure(u_v, 'V')})",
                         result=quantity(float(state.current_a[0]), "A"),
                     ),
                 ),

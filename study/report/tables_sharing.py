@@ -8,7 +8,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from study.report.content import StatusLookup, StudyOutcome
-from study.report.numbers import percent, quantity
+from study.report.numbers import figure, percent, quantity
 from study.report.tables import (
     Column,
     Table,
@@ -187,10 +187,10 @@ def _worked(result: SharingResult) -> Worked | None:
         solved = np.flatnonzero(curve.solved)
         if solved.size:
             at = int(solved[-1])
-            total = quantity(float(curve.q_total_kvar[at]), "kvar")
-            ratings = " + ".join(quantity(float(q), "") for q in island.q_rated_kvar)
-            own = quantity(float(curve.q_kvar[at, 0]), "kvar")
-            share = f"{total} × {quantity(float(island.q_rated_kvar[0]), '')} / ({ratings})"
+            total = figure(float(curve.q_total_kvar[at]), "kvar")
+            ratings = " + ".join(figure(float(q), "") for q in island.q_rated_kvar)
+            own = figure(float(curve.q_kvar[at, 0]), "kvar")
+            share = f"{total} × {figure(float(island.q_rated_kvar[0]), '')} / ({ratings})"
             line = WorkedLine(
                 label="kvar off its share",
                 formula="Q − total Q × rated kvar / sum of rated kvar",

@@ -6,7 +6,7 @@ import math
 from collections.abc import Sequence
 
 from study.report.content import StatusLookup, StudyOutcome, cells_by_name
-from study.report.numbers import percent, quantity
+from study.report.numbers import figure, percent, quantity
 from study.report.tables import (
     Column,
     Table,
@@ -118,27 +118,27 @@ def _worked_island(balance: BalanceResult) -> Worked | None:
     for mode in balance.modes:
         for island in mode.islands:
             if math.isfinite(island.kw_loading) and island.p_load_kw > 0:
-                return Worked(
-                    row=f"{mode.mode}, {island_name(mode, island)}",
-                    lines=(
-                        WorkedLine(
-                            label="Load of kW",
-                            formula="load / capacity",
-                            figures=f"{quantity(island.p_load_kw, 'kW')} / "
-                            f"{quantity(island.p_capacity_kw, 'kW')}",
-                            result=quantity(percent(island.kw_loading), "%"),
-                        ),
-                        WorkedLine(
-                            label="Load of kVA",
-                            formula="√(P² + Q²) / capacity",
-                            figures=f"√({quantity(island.p_load_kw, '')}² + "
-                            f"{quantity(island.q_load_kvar, '')}²) / "
-                            f"{quantity(island.s_capacity_kva, 'kVA')}",
-                            result=quantity(percent(island.kva_loading), "%"),
-                        ),
-                    ),
-                )
+                row = f"{mode.mode}, {island_name(mode, island)}"
+                return Worked(row=row, lines=_worked_lines(island))
     return None
+
+
+def _worked_lines(island: IslandBalance) -> tuple[WorkedLine, ...]:
+    p, q = figure(island.p_load_kw, ""), figure(island.q_load_kvar, "")
+    return (
+        WorkedLine(
+            label="Load of kW",
+            formula="load / capacity",
+            figures=f"{p} kW / {figure(island.p_capacity_kw, 'kW')}",
+            result=quantity(percent(island.kw_loading), "%"),
+        ),
+        WorkedLine(
+            label="Load of kVA",
+            formula="√(P² + Q²) / capacity",
+            figures=f"√({p}² + {q}²) / {figure(island.s_capacity_kva, 'kVA')}",
+            result=quantity(percent(island.kva_loading), "%"),
+        ),
+    )
 
 
 def sets_table(outcome: StudyOutcome) -> Table:

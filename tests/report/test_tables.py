@@ -56,15 +56,22 @@ def test_load_balance_leaves_blank_what_is_not_in_use() -> None:
     assert table.column("p_kw", "At sea")[row] is None
 
 
-def test_worked_row_of_the_load_balance_holds_by_hand() -> None:
-    worked = TABLES["load_balance"].worked
-    assert worked is not None
-    for line in worked.lines:
-        figures = re.sub(r" (kW|kvar)\b", "", line.figures)
-        figures = figures.replace("×", "*").replace("√", "np.sqrt").replace("²", "**2").replace("−", "-")
-        result = float(line.result.split()[0])
-        # Figures and results are printed with four significant digits.
-        assert eval(figures, {"np": np}) == pytest.approx(result, rel=2e-3)
+_WORKED = [table for table in TABLES.values() if table.worked is not None]
+_UNITS = re.compile(r" (?:kW|kvar|kVA|A|V|%)(?![A-Za-z])")
+
+
+@pytest.mark.parametrize("table", _WORKED, ids=[table.key for table in _WORKED])
+def test_worked_row_holds_by_hand(table: Table) -> None:
+    assert table.worked is not None
+    for line in table.worked.lines:
+        figures = _UNITS.sub("", line.figures).replace("√3", "np.sqrt(3)").replace("√", "np.sqrt")
+        figures = figures.replace("×", "*").replace("²", "**2").replace("−", "-")
+        result, _, unit = line.result.replace("−", "-").partition(" ")
+        by_hand = eval(figures, {"np": np})
+        if unit == "%" and "%" not in line.figures:
+            by_hand *= 100.0
+        # Half of the fourth significant digit of the result is 5e-4 of it at most.
+        assert by_hand == pytest.approx(float(result), rel=5.1e-4), line.label
 
 
 def test_current_just_above_its_rating_prints_above_it() -> None:
