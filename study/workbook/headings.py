@@ -15,6 +15,7 @@ from study.workbook.columns import Column, ModeColumn, SheetSpec
 
 REMARK: Final = "#"
 NEAR: Final = 2
+SHORT: Final = 3
 _PRIMES = str.maketrans(
     {
         "’": "'",
@@ -219,8 +220,8 @@ class HeadingIndex:
 
     def _near(self, found: str) -> Misfit | None:
         for known, shown in self._shown.items():
-            # Two letters apart says nothing about a name of two letters.
-            limit = NEAR if len(known) > NEAR else 1
+            # Two letters apart says nothing about a name of three: Tag is no misspelt Td'.
+            limit = NEAR if len(known) > SHORT else 1
             if edit_distance(found, known, limit) <= limit:
                 return Misfit(
                     code="near-miss-heading",

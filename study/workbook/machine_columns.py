@@ -126,7 +126,7 @@ MACHINE_COLUMNS: tuple[Column, ...] = (
     ),
     number(
         "Armature time constant", "s", "t_armature_s", TIME_CONSTANT, "decay of the d.c. component",
-        older=("Ta", "Tdc"), **derived(rule.t_armature, "X2 / (w x stator resistance)", "machine theory"),
+        **derived(rule.t_armature, "X2 / (w x stator resistance)", "machine theory"),
     ),
     number(
         "Saturation S(1.0)", "", "saturation_10", between(0.0, 5.0),

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Collection, Mapping, Sequence
 from dataclasses import dataclass
 from functools import partial
 from pathlib import Path
@@ -12,6 +12,7 @@ from typing import Final
 from study.workbook.package_names import Sheet, defined_names, read_sheets
 from study.workbook.package_opc import Package, open_package, read_relations, rels_part
 from study.workbook.package_xml import Node, as_utf8, parse
+from study.workbook.result_formulas import Place, dependent_formulas, mentions_results
 from study.workbook.sheet_xml import (
     BookTables,
     ResultFormula,
@@ -25,8 +26,10 @@ from study.workbook.sheets import RESULT_PREFIX
 _PERCENT_FORMATS: Final = frozenset({9, 10})
 _DATE_FORMATS: Final = frozenset({*range(14, 23), *range(27, 37), *range(45, 48), *range(50, 59)})
 _QUOTED = re.compile(r'"[^"]*"|\\.|\[[^\]]*\]|_.|\*.')
-_RESULT_SHEET = re.compile(r"'(?:\[[^\]]*\])?R [^']*(?:''[^']*)*'!", re.IGNORECASE)
 
+
+# An apostrophe, a book in brackets perhaps, and the prefix of result sheets, in whatever encoding of XML.
+_RESULT_MENTION = re.compile(rb"(?:'|&apos;|&#39;|\])\x00?[Rr]\x00? ")
 
 Rows = Mapping[int, Mapping[int, Value]]
 
@@ -72,16 +75,16 @@ def read_raw(path: Path | str) -> RawBook:
 def read_package(package: Package, file_name: str) -> RawBook:
     """List the sheets of an opened workbook that are not results."""
     root = _xml(package, package.workbook_part)
-    tables = _tables(package, root)
-    sheets = [sheet for sheet in read_sheets(package, root, RESULT_PREFIX) if not is_result(sheet.name)]
-    names = _result_names(root)
+    load = partial(_cells, package, _tables(package, root))
+    sheets = [
+        sheet
+        for sheet in read_sheets(package, root, RESULT_PREFIX)
+        if sheet.relation.is_a("worksheet") and not is_result(sheet.name)
+    ]
+    refused = _dependent(package, root, sheets, load)
     return RawBook(
         file_name=file_name,
-        sheets=tuple(
-            RawSheet(name=sheet.name, read=partial(_rows, package, sheet, tables, names))
-            for sheet in sheets
-            if sheet.relation.is_a("worksheet")
-        ),
+        sheets=tuple(RawSheet(name=s.name, read=partial(_rows, load, s, refused)) for s in sheets),
     )
 
 
@@ -154,21 +157,34 @@ def code_kind(code: str) -> str:
     return "date" if any(letter in bare for letter in "ymdhs") and "general" not in bare else ""
 
 
-def _rows(package: Package, sheet: Sheet, tables: BookTables, names: re.Pattern[str] | None) -> Rows:
-    data = as_utf8(package.read(sheet.part), sheet.part)
-    cells = read_cells(data, sheet.part, tables)
-    _mark_results(cells, names)
+def _cells(package: Package, tables: BookTables, sheet: Sheet) -> SheetCells:
+    return read_cells(as_utf8(package.read(sheet.part), sheet.part), sheet.part, tables)
+
+
+def _rows(load: Callable[[Sheet], SheetCells], sheet: Sheet, refused: Collection[Place]) -> Rows:
+    cells = load(sheet)
+    folded = sheet.name.casefold()
+    for (row, column), formula in cells.formulas.items():
+        if (folded, row, column) in refused:
+            cells.rows.setdefault(row, {})[column] = ResultFormula(formula)
     return dict(sorted(cells.rows.items()))
 
 
-def _result_names(root: Node) -> re.Pattern[str] | None:
-    names = [d.name for _, d in defined_names(root) if _RESULT_SHEET.search(d.value)]
-    if not names:
-        return None
-    return re.compile(rf"(?<![\w.])(?:{'|'.join(map(re.escape, names))})(?![\w.(])", re.IGNORECASE)
+def _dependent(
+    package: Package, root: Node, sheets: Sequence[Sheet], load: Callable[[Sheet], SheetCells]
+) -> Collection[Place]:
+    """Return the cells whose formulas depend on a result sheet; formulas are read only where one may."""
+    names = {d.name.casefold(): d.value for _, d in defined_names(root)}
+    result_names = any(mentions_results(value) for value in names.values())
+    if not result_names and not any(_may_mention_results(package.read(s.part)) for s in sheets):
+        return ()
+    formulas = {
+        (sheet.name.casefold(), row, column): formula
+        for sheet in sheets
+        for (row, column), formula in load(sheet).formulas.items()
+    }
+    return dependent_formulas(formulas, names)
 
 
-def _mark_results(cells: SheetCells, names: re.Pattern[str] | None) -> None:
-    for (row, column), formula in cells.formulas.items():
-        if _RESULT_SHEET.search(formula) or (names is not None and names.search(formula)):
-            cells.rows.setdefault(row, {})[column] = ResultFormula(formula)
+def _may_mention_results(data: bytes) -> bool:
+    return _RESULT_MENTION.search(data) is not None

@@ -1,0 +1,124 @@
+"""Which formulas depend on a result sheet, by themselves or by way of other cells and names.
+
+Such a value would come from the run before, and the next run would change it again. References by table and
+column name are not followed.
+"""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass
+from typing import Final
+
+from study.workbook.package_cells import Area, area
+from study.workbook.sheet_xml import LAST_COLUMN, LAST_ROW
+
+Place = tuple[str, int, int]
+"""Sheet in small letters, row and column."""
+
+_DIRECT: Final = re.compile(r"'(?:\[[^\]]*\])?R (?:[^']|'')*'!", re.IGNORECASE)
+_STRING: Final = re.compile(r'"[^"]*"')
+_REFERENCE: Final = re.compile(
+    r"(?:(?:'((?:[^']|'')+)'|([\w.]+))!)?"
+    r"(\$?[A-Za-z]{1,3}\$?\d{1,7}(?::\$?[A-Za-z]{1,3}\$?\d{1,7})?"
+    r"|\$?[A-Za-z]{1,3}:\$?[A-Za-z]{1,3}|\$?\d{1,7}:\$?\d{1,7})(?![\w(.])"
+)
+_NAME: Final = re.compile(r"(?<![\w.!'])([A-Za-z_\\][\w.]*)(?![\w.(!\[])")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Reference:
+    """A rectangle on a sheet."""
+
+    sheet: str
+    cells: Area
+
+
+def mentions_results(formula: str) -> bool:
+    """Return True where a formula names a result sheet itself.
+
+    Examples
+    --------
+    >>> mentions_results("2*'R Load flow'!B7"), mentions_results("Running!B7")
+    (True, False)
+    """
+    return "'" in formula and _DIRECT.search(formula) is not None
+
+
+def references(formula: str, own_sheet: str) -> Iterator[Reference]:
+    """Yield the rectangles that a formula refers to.
+
+    Examples
+    --------
+    >>> [(r.sheet, r.cells.bottom) for r in references("SUM(A1:B9)+Cables!$C$4", "Loads")]
+    [('loads', 9), ('cables', 4)]
+    """
+    for quoted, plain, cells in _REFERENCE.findall(_STRING.sub("", formula)):
+        sheet = quoted.replace("''", "'") or plain or own_sheet
+        yield Reference(sheet=sheet.casefold(), cells=_area(cells))
+
+
+def _area(text: str) -> Area:
+    first, colon, last = text.replace("$", "").partition(":")
+    if colon and first.isalpha():
+        return area(f"{first}1:{last}{LAST_ROW}")
+    if colon and first.isdigit():
+        return Area(left=1, top=int(first), right=LAST_COLUMN, bottom=int(last))
+    return area(f"{first}{colon}{last}")
+
+
+def dependent_formulas(formulas: Mapping[Place, str], names: Mapping[str, str]) -> set[Place]:
+    """Return the cells whose formulas depend on a result sheet.
+
+    Parameters
+    ----------
+    formulas : mapping
+        Every formula of the sheets that are no results.
+    names : mapping
+        What each defined name stands for.
+
+    Returns
+    -------
+    set of Place
+        Cells that name a result sheet, and those that refer to such cells over any number of steps.
+
+    Examples
+    --------
+    >>> chain = {("a", 1, 1): "'R Cables'!B2", ("b", 1, 1): "a!A1*2", ("b", 2, 1): "7"}
+    >>> sorted(dependent_formulas(chain, {}))
+    [('a', 1, 1), ('b', 1, 1)]
+    """
+    plain = {place: _with_names(formula, names) for place, formula in formulas.items()}
+    found = {place for place, formula in plain.items() if mentions_results(formula)}
+    waiting = {
+        place: tuple(references(text, place[0])) for place, text in plain.items() if place not in found
+    }
+    new = set(found)
+    while new:
+        by_sheet: dict[str, list[Place]] = {}
+        for place in new:
+            by_sheet.setdefault(place[0], []).append(place)
+        new = {place for place, refs in waiting.items() if any(_covers(ref, by_sheet) for ref in refs)}
+        found |= new
+        for place in new:
+            del waiting[place]
+    return found
+
+
+def _covers(reference: Reference, by_sheet: Mapping[str, list[Place]]) -> bool:
+    cells = reference.cells
+    return any(
+        cells.top <= row <= cells.bottom and cells.left <= column <= cells.right
+        for _, row, column in by_sheet.get(reference.sheet, ())
+    )
+
+
+def _with_names(formula: str, names: Mapping[str, str]) -> str:
+    """Return a formula with what its defined names stand for added at its end."""
+    if not names:
+        return formula
+    bare = _STRING.sub("", formula)
+    used = {word.casefold() for word in _NAME.findall(bare)}
+    meant = [names[word] for word in used if word in names]
+    return "+".join([formula, *meant])
