@@ -165,8 +165,8 @@ class DeviceFaults:
     idc/(sqrt2 Iac) of that side at ``parting_s``, the device's least opening time plus half a cycle.
 
     Minimum case: ``operating_s`` is when the device has cleared by its own setting at high current
-    (instantaneous, else short-time, with its breaking time; NaN where no such setting is given), ``far_place``
-    the far end of what it protects and ``least_a`` the least fault current there at that moment, through the
+    (instantaneous, else short-time, with its breaking time; NaN where no such setting is given),
+    ``far_place`` the far end of what it protects and ``least_a`` the least fault current there at that moment, through the
     device; ``least_kind`` says of which fault; at a device without setting it is at the end of the time grid.
     """
 
@@ -190,8 +190,8 @@ class Iec60909Case:
     """IEC 60909 for one case of one mode, [place]; ``c`` is the voltage factor.
 
     ``ik_*_a`` is I''k of the three-phase, two-phase and line-earth fault (NaN where the neutral is not
-    earthed), ``ip_3ph_a`` and ``ip_2ph_a`` the peaks by method C, ``ib_a`` the breaking current at ``delay_s``,
-    ``ik_steady_a`` that without motors (the standard's factor lambda is left out), ``ith_a`` the thermal
+    earthed), ``ip_3ph_a`` and ``ip_2ph_a`` the peaks by method C, ``ib_a`` the breaking current at
+    ``delay_s``, ``ik_steady_a`` that without motors (the standard's factor lambda is left out), ``ith_a`` the thermal
     equivalent over ``duration_s``. ``pandapower_*`` are the library's figures for the same network,
     ``largest_difference`` the largest relative difference of I''k or ip between both (NaN: not compared), and
     ``comparison`` says in words what was compared.
@@ -222,8 +222,8 @@ class EarthSystem:
     ``earthing`` is that of the boards; ``capacitance_f`` one phase to earth of all that is energised,
     ``capacitive_a`` the current of an earth fault by capacitance alone, ``resistor_a`` that of the neutral
     resistors (NaN: none), ``fault_a`` both together (NaN in a solidly or low-resistance earthed system:
-    see the line-earth currents), ``largest_resistor_ohm`` the largest resistance that damps an arcing fault,
-    ``resistor_power_w`` the heat. ``capacitance_given`` is False where a cable's capacitance is a typical value.
+    see the line-earth currents), ``largest_resistor_ohm`` the largest that damps an arcing fault,
+    ``resistor_power_w`` the heat. ``capacitance_given`` is False where a cable's capacitance is typical.
     """
 
     boards: tuple[str, ...]
