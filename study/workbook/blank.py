@@ -162,7 +162,7 @@ def _write_sheet(
     sheet.add_table(HEADER_ROW, 0, last_row, len(headings) - 1, table)
     for place, heading in enumerate(headings):
         texts = [_shown(row.get(heading.text)) for row in rows]
-        sheet.set_column(place, place, column_width(heading.text, texts))
+        sheet.set_column(place, place, column_width(heading.text, texts, heading.column))
         if heading.column is not None:
             _guide(sheet, place, last_row, heading.column)
         for offset, row in enumerate(rows, 1):

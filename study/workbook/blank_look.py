@@ -21,6 +21,7 @@ FONT: Final = "Calibri"
 HEADING_HEIGHT: Final = 48
 NARROWEST: Final = 8.0
 WIDEST: Final = 38.0
+WIDEST_PROSE: Final = 80.0
 A3: Final = 8
 A4: Final = 9
 A4_COLUMNS: Final = 12
@@ -59,32 +60,42 @@ def make_look(book: xlsxwriter.Workbook) -> Look:
         return book.add_format({"font_name": FONT, "font_size": 10, **properties})
 
     heading = {"bold": True, "text_wrap": True, "valign": "vcenter", "align": "center", "bottom": 1}
-    cell = {"valign": "top", "bottom": 4, "bottom_color": LINE}
+    cell = {"valign": "vcenter", "bottom": 4, "bottom_color": LINE}
     return Look(
         title=style(bold=True, font_size=16, font_color=ACCENT),
         hint=style(font_color=GREY),
         legend=style(font_color=GREY, italic=True, font_size=9),
-        required=style(**heading, bg_color=ACCENT, font_color="#FFFFFF", bottom_color=ACCENT),
-        optional=style(**heading, bg_color=TINT, font_color=ACCENT, bottom_color=ACCENT),
+        required=style(
+            **heading,
+            bg_color=ACCENT,
+            font_color="#FFFFFF",
+            bottom_color=ACCENT,
+            right=1,
+            right_color="#FFFFFF",
+        ),
+        optional=style(
+            **heading, bg_color=TINT, font_color=ACCENT, bottom_color=ACCENT, right=1, right_color="#FFFFFF"
+        ),
         remark=style(**heading, font_color=GREY, bottom_color=LINE),
-        text=style(**cell, align="left"),
-        number=style(**cell, align="right"),
-        date=style(**cell, align="left", num_format="yyyy-mm-dd"),
+        text=style(**cell, align="left", indent=1),
+        number=style(**cell, align="right", indent=1),
+        date=style(**cell, align="left", indent=1, num_format="yyyy-mm-dd"),
     )
 
 
-def column_width(heading: str, texts: Sequence[str]) -> float:
+def column_width(heading: str, texts: Sequence[str], column: Column | None) -> float:
     """Return the width that holds the longest cell, and the heading over three lines.
 
     Examples
     --------
-    >>> column_width("Board", ["Main switchboard"])
-    18.0
+    >>> column_width("Board", ["Main switchboard"], None)
+    19.0
     """
     words = max(len(word) for word in heading.split())
     longest = max((len(text) for text in texts), default=0)
-    wanted = max(NARROWEST, words + 3.0, len(heading) / 3.0 + 3.0, longest + 2.0)
-    return min(wanted, WIDEST)
+    wanted = max(NARROWEST, words + 3.0, len(heading) / 3.0 + 3.0, longest + 3.0)
+    is_prose = column is not None and column.kind == "text" and column.blank != "required"
+    return min(wanted, WIDEST_PROSE if is_prose else WIDEST)
 
 
 def set_page(sheet: Worksheet, look: Look, header_row: int, columns: int) -> None:

@@ -39,7 +39,7 @@ INSULATIONS = ("PVC", "EPR", "HEPR", "XLPE", "halogen-free", "silicone")
 BOARDS = SheetSpec(
     name="Boards",
     row_is="a board or board section",
-    hint="One row for each board or section. Withstand figures are the maker's and are never assumed.",
+    hint="Withstand figures are the maker's and are never assumed.",
     names_equipment=True,
     required=True,
     columns=(
@@ -75,7 +75,7 @@ VECTOR_GROUP_NOTE = "common practice, no source"
 TRANSFORMERS = SheetSpec(
     name="Transformers",
     row_is="a two-winding transformer, or several equal ones in parallel",
-    hint="One row for each transformer; losses and powers of one unit. From is the side that feeds.",
+    hint="Losses and powers are those of one unit. From is the side that feeds.",
     names_equipment=True,
     columns=(
         key("Transformer", "name, unique over all equipment"),
@@ -244,7 +244,7 @@ CABLES = SheetSpec(
 TIES = SheetSpec(
     name="Ties",
     row_is="a bus-tie, section switch or interconnector",
-    hint="One row for each tie between two boards of one voltage; give a long one its impedance.",
+    hint="It joins two boards of one voltage; give a long one its impedance.",
     names_equipment=True,
     columns=(
         key("Tie", "name, unique over all equipment"),
@@ -259,7 +259,7 @@ TIES = SheetSpec(
 REACTORS = SheetSpec(
     name="Reactors",
     row_is="a series reactor",
-    hint="One row for each reactor between two boards of one voltage.",
+    hint="It joins two boards of one voltage.",
     names_equipment=True,
     columns=(
         key("Reactor", "name, unique over all equipment"),
@@ -279,7 +279,7 @@ TUNED = (("kind", ("tuned", "high-pass")),)
 FILTERS = SheetSpec(
     name="Filters",
     row_is="a capacitor bank, tuned or high-pass filter",
-    hint="One row for each filter on a board.",
+    hint="Tuning order and quality are wanted for tuned and high-pass filters only.",
     names_equipment=True,
     columns=(
         key("Filter", "name, unique over all equipment"),

@@ -78,7 +78,7 @@ ACCEPTANCE = SheetSpec(
 MODES = SheetSpec(
     name="Modes",
     row_is="an operating mode",
-    hint="One row for each mode. Running and Demand have a column or three for each name given here.",
+    hint="Running and Demand have a column or three for each name given here.",
     required=True,
     unique=("name",),
     columns=(
@@ -186,7 +186,7 @@ SIMULTANEITY = SheetSpec(
 INTERLOCKS = SheetSpec(
     name="Interlocks",
     row_is="two pieces of equipment that may not be closed together",
-    hint="One row for each interlock.",
+    hint="Equipment that the sheet Running has on in one mode is held against it.",
     unique=("name",),
     columns=(
         text("Interlock", "name", "name", **REQUIRED),

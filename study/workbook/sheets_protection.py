@@ -137,7 +137,7 @@ RELAY_COLUMNS: tuple[Column, ...] = (
 DEVICES = SheetSpec(
     name="Devices",
     row_is="a protective device",
-    hint="One row for each device. Breaking, making and withstand ratings are the maker's, never assumed.",
+    hint="Breaking, making and withstand ratings are the maker's, never assumed.",
     names_equipment=True,
     columns=(*RATING_COLUMNS, *SETTING_COLUMNS, *RELAY_COLUMNS),
 )
@@ -145,7 +145,7 @@ DEVICES = SheetSpec(
 PROTECTION_FUNCTIONS = SheetSpec(
     name="Protection functions",
     row_is="a protection that does not look at a phase-current curve",
-    hint="One row for each function; the unit belongs to the pick-up.",
+    hint="The unit belongs to the pick-up.",
     unique=("name",),
     columns=(
         text("Function", "name", "name", **REQUIRED),
@@ -203,7 +203,7 @@ LET_THROUGH = SheetSpec(
 MAKER_DISCRIMINATION = SheetSpec(
     name="Maker discrimination",
     row_is="a maker's statement on a pair of devices",
-    hint="One row for each pair.",
+    hint="Up to which prospective current the downstream device alone opens.",
     unique=("upstream", "downstream"),
     columns=(
         reference("Upstream device", "upstream", ("Devices",), "", **REQUIRED),

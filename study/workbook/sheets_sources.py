@@ -37,7 +37,7 @@ BOARDS = ("Boards",)
 GENSETS = SheetSpec(
     name="Gensets",
     row_is="a generating set",
-    hint="One row for each set. Reactances are per unit of the set's own rated kVA and voltage.",
+    hint="Reactances are per unit of the set's own rated kVA and voltage.",
     names_equipment=True,
     columns=(
         key("Genset", "name, unique over all equipment"),
@@ -82,7 +82,7 @@ GENSETS = SheetSpec(
 SHORE_SUPPLIES = SheetSpec(
     name="Shore supplies",
     row_is="a shore connection",
-    hint="One row for each shore connection. Fault levels as the port states them, at the connection box.",
+    hint="Fault levels as the port states them, at the connection box.",
     names_equipment=True,
     columns=(
         key("Supply", "name, unique over all equipment"),
@@ -112,7 +112,7 @@ GRID_FORMING = (("control", ("grid forming",)),)
 CONVERTER_SUPPLIES = SheetSpec(
     name="Converter supplies",
     row_is="a battery, shaft generator or fuel cell that feeds through a converter",
-    hint="One row for each supply. Grid forming: makes its own voltage; grid following: feeds its set power.",
+    hint="Grid forming: makes its own voltage; grid following: feeds its set power.",
     names_equipment=True,
     columns=(
         key("Supply", "name, unique over all equipment"),
@@ -160,7 +160,7 @@ CONVERTER_SUPPLIES = SheetSpec(
 SYNCHRONOUS_MOTORS = SheetSpec(
     name="Synchronous motors",
     row_is="a synchronous motor",
-    hint="One row for each motor. Reactances are per unit of the motor's own rated kVA and voltage.",
+    hint="Reactances are per unit of the motor's own rated kVA and voltage.",
     names_equipment=True,
     columns=(
         key("Motor", "name, unique over all equipment"),
