@@ -166,8 +166,9 @@ class DeviceFaults:
 
     Minimum case: ``operating_s`` is when the device has cleared by its own setting at high current
     (instantaneous, else short-time, with its breaking time; NaN where no such setting is given),
-    ``far_place`` the far end of what it protects and ``least_a`` the least fault current there at that moment, through the
-    device; ``least_kind`` says of which fault; at a device without setting it is at the end of the time grid.
+    ``far_place`` the far end of what it protects and ``least_a`` the least fault current there at that
+    moment, through the device, ``least_kind`` of which fault; without a setting both are those of the end of
+    the time grid.
     """
 
     names: tuple[str, ...]
@@ -191,8 +192,8 @@ class Iec60909Case:
 
     ``ik_*_a`` is I''k of the three-phase, two-phase and line-earth fault (NaN where the neutral is not
     earthed), ``ip_3ph_a`` and ``ip_2ph_a`` the peaks by method C, ``ib_a`` the breaking current at
-    ``delay_s``, ``ik_steady_a`` that without motors (the standard's factor lambda is left out), ``ith_a`` the thermal
-    equivalent over ``duration_s``. ``pandapower_*`` are the library's figures for the same network,
+    ``delay_s``, ``ik_steady_a`` that without motors (the standard's factor lambda is left out), ``ith_a`` the
+    thermal equivalent over ``duration_s``. ``pandapower_*`` are the library's figures for the same network,
     ``largest_difference`` the largest relative difference of I''k or ip between both (NaN: not compared), and
     ``comparison`` says in words what was compared.
     """
