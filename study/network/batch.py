@@ -8,7 +8,8 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from study.issues import SolveError
-from study.network.equations import Demand, Point, Problem
+from study.network.consumers import Demand
+from study.network.equations import Point, Problem
 from study.network.laws import VoltageLaws, some, voltage_laws
 from study.network.limits import (
     CEILING,
@@ -167,7 +168,7 @@ class _Batch:
             reasons[k] = f"the load exceeds what the engines of {_names(self.sources, int(n))} can give."
         if problem.power.short.any():
             return np.zeros(0, np.int64)
-        solved = solve_scenarios(problem, len(k), _mean_point(found, k))
+        solved = solve_scenarios(problem, len(k), _mean_point(found, k, self.at.structure.buses))
         _store(found, k, solved)
         ran = self._let_run_away(k, found, state, power_state)
         lost = k[~solved.converged]
@@ -244,7 +245,7 @@ class _Batch:
             j: int | None
             x = None
             if found.converged[n]:
-                x = Point(v=found.v[:, one], i=found.i[:, one], m=found.m[:, one])
+                x = Point(v=found.v[: self.at.structure.buses, one], i=found.i[:, one], m=found.m[:, one])
                 j = runaway(problem, x)
             else:
                 j = most_reversed(problem.laws)
@@ -268,7 +269,7 @@ class _Batch:
     def _nothing(self) -> Solutions:
         at = self.at.structure
         return Solutions(
-            v=np.full((at.buses, self.count), np.nan, complex),
+            v=np.full((at.all_buses, self.count), np.nan, complex),
             i=np.full((at.sources, self.count), np.nan, complex),
             m=np.full((at.islands, self.count), np.nan),
             residual_pu=np.full(self.count, np.inf),
@@ -364,13 +365,13 @@ def _names(sources: tuple[Source, ...], island: int) -> str:
     return " and ".join(s.name for s in sources if s.island == island)
 
 
-def _mean_point(found: Solutions, k: IntArray) -> Point | None:
+def _mean_point(found: Solutions, k: IntArray, buses: int) -> Point | None:
     """Return the mean of what was found before for these scenarios, as a first point."""
     known = k[found.converged[k]]
     if not len(known):
         return None
     return Point(
-        v=found.v[:, known].mean(axis=1, keepdims=True),
+        v=found.v[:buses, known].mean(axis=1, keepdims=True),
         i=found.i[:, known].mean(axis=1, keepdims=True),
         m=found.m[:, known].mean(axis=1, keepdims=True),
     )
@@ -383,7 +384,7 @@ def _store(found: Solutions, k: IntArray, some: Solutions) -> None:
 
 
 def _demand(at: ModeNetwork, p_kw: FloatArray, q_kvar: FloatArray) -> Demand:
-    """Return the consumers' power at the ports, [port, scenario]."""
+    """Return the consumers' power at their places, [place, scenario]."""
     s = (p_kw + 1j * q_kvar).T / at.network.s_base_kva
     share = at.load_arrays.constant_power[:, None]
     constant = at.port_sum @ (s * share) + at.port_constant[:, None]

@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 from scipy.sparse import csc_matrix, csr_array
 from scipy.sparse.linalg import SuperLU, splu
 
+from study.network.consumers import Demand, Ports, drawn_current, drawn_gradient
 from study.network.laws import VoltageLaws, some, take
 from study.network.power import PowerLaws
 from study.network.sources import Law
@@ -27,8 +28,8 @@ IntArray = NDArray[np.int64]
 class Structure:
     """Sizes and places that do not change while a mode is solved.
 
-    ``source_bus`` and ``source_island`` are [source]; ``load_bus`` [port] lists buses with consumers on them,
-    ``reference_bus`` [island] the bus whose voltage has no imaginary part.
+    ``admittance`` is that of the buses that are no leaves (see `consumers`). ``source_bus`` and
+    ``source_island`` are [source], ``reference_bus`` [island] the bus whose voltage has no imaginary part.
     ``rows`` and ``columns`` are those of the Jacobian's entries in the order `jacobian` fills them;
     ``slot`` their places in the sparse matrix, ``indices`` and ``indptr`` its pattern.
     """
@@ -36,7 +37,7 @@ class Structure:
     admittance: csr_array
     source_bus: IntArray
     source_island: IntArray
-    load_bus: IntArray
+    ports: Ports
     reference_bus: IntArray
     islands: int
     fixed_values: FloatArray
@@ -46,8 +47,13 @@ class Structure:
 
     @property
     def buses(self) -> int:
-        """Number of buses."""
+        """Number of buses that are no leaves."""
         return int(self.admittance.shape[0])
+
+    @property
+    def all_buses(self) -> int:
+        """Number of buses, leaves included."""
+        return self.buses + self.ports.leaves
 
     @property
     def sources(self) -> int:
@@ -61,7 +67,7 @@ class Structure:
 
 
 def structure(
-    admittance: csr_array, source_bus: IntArray, source_island: IntArray, load_bus: IntArray, islands: int
+    admittance: csr_array, source_bus: IntArray, source_island: IntArray, ports: Ports, islands: int
 ) -> Structure:
     """Return the structure of a mode's equations.
 
@@ -71,8 +77,8 @@ def structure(
         Nodal admittance. [pu]
     source_bus, source_island : ndarray of int, shape (source,)
         Where each source stands.
-    load_bus : ndarray of int, shape (port,)
-        Buses with consumers, each once.
+    ports : Ports
+        Where consumers draw current.
     islands : int
         Number of islands.
 
@@ -91,7 +97,7 @@ def structure(
     c_re, c_im, c_m = 2 * n + j, 2 * n + s + j, 2 * n + 2 * s + np.arange(islands)
     first = np.array([np.flatnonzero(source_island == m)[0] for m in range(islands)], np.int64)
     ref_bus = source_bus[first] if islands else np.zeros(0, np.int64)
-    b = load_bus
+    b = ports.bus
     rows = [row, row, n + row, n + row, source_bus, n + source_bus]
     cols = [col, n + col, col, n + col, c_re, c_im]
     fixed = np.concatenate([y.data.real, -y.data.imag, y.data.imag, y.data.real, -np.ones(2 * s)])
@@ -110,7 +116,7 @@ def structure(
         admittance=admittance,
         source_bus=source_bus,
         source_island=source_island,
-        load_bus=load_bus,
+        ports=ports,
         reference_bus=ref_bus,
         islands=islands,
         fixed_values=fixed,
@@ -121,38 +127,12 @@ def structure(
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Demand:
-    """Consumers' power at the ports, complex [port, scenario]: constant, and what goes with V^2."""
-
-    constant: ComplexArray
-    impedance: ComplexArray
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
 class Point:
     """A point in the space of unknowns: [bus], [source] and [island], each with scenarios behind."""
 
     v: ComplexArray
     i: ComplexArray
     m: FloatArray
-
-
-def load_current(v: ComplexArray, demand: Demand) -> ComplexArray:
-    """Return the current that the consumers draw at the ports' voltages.
-
-    Parameters
-    ----------
-    v : ndarray, shape (port, ...)
-        Voltage. [pu]
-    demand : Demand
-        Their power. [pu]
-
-    Returns
-    -------
-    ndarray, shape (port, ...)
-        Current. [pu]
-    """
-    return np.asarray(np.conj(demand.constant / v) + np.conj(demand.impedance) * v)
 
 
 def shore_row(laws: VoltageLaws, v: ComplexArray, i: ComplexArray) -> FloatArray:
@@ -219,7 +199,7 @@ def residual(problem: Problem, x: Point) -> FloatArray:
     v, i, m = x.v[:, 0], x.i[:, 0], x.m[:, 0]
     current = at.admittance @ v
     np.subtract.at(current, at.source_bus, i)
-    current[at.load_bus] += load_current(v[at.load_bus], _column(problem.demand))
+    current[at.ports.bus] += drawn_current(at.ports, x.v[at.ports.bus], problem.demand)[:, 0]
     out = np.empty(at.size)
     out[:n], out[n : 2 * n] = current.real, current.imag
     v_s = x.v[at.source_bus]
@@ -227,10 +207,6 @@ def residual(problem: Problem, x: Point) -> FloatArray:
     out[2 * n + s : 2 * n + 2 * s] = laws.residual(v_s, x.i)[:, 0]
     out[2 * n + 2 * s :] = np.where(power.shore, m, v[at.reference_bus].imag)
     return out
-
-
-def _column(demand: Demand) -> Demand:
-    return Demand(constant=demand.constant[:, 0], impedance=demand.impedance[:, 0])
 
 
 def jacobian(problem: Problem, x: Point) -> SuperLU:
@@ -262,7 +238,7 @@ def jacobian_values(problem: Problem, x: Point) -> FloatArray:
     """Return the Jacobian's entries in the order of `structure`."""
     at, laws, power = problem.at, problem.laws, problem.power
     v_s, i_s = x.v[at.source_bus, 0], x.i[:, 0]
-    by_load = load_gradient(x.v[at.load_bus, 0], _column(problem.demand))
+    by_load = drawn_gradient(at.ports, x.v[at.ports.bus], problem.demand)
     by_power = np.stack([i_s.real, i_s.imag, v_s.real, v_s.imag])
     b = power.b[:, 0].copy()
     behind = laws.code == Law.BEHIND_IMPEDANCE
@@ -281,24 +257,5 @@ def jacobian_values(problem: Problem, x: Point) -> FloatArray:
             by_law.transpose(1, 0, 2).ravel(),
             np.where(power.shore, 0.0, 1.0),
             np.where(power.shore, 1.0, 0.0),
-        ]
-    )
-
-
-def load_gradient(v: ComplexArray, demand: Demand) -> FloatArray:
-    """Return the gradient of `load_current`, [4, port]: Re by e, Re by f, Im by e, Im by f.
-
-    With ``I = (P - jQ)/(e - jf)``: ``Re I = (P e + Q f)/V^2``, ``Im I = (P f - Q e)/V^2``.
-    """
-    e, f = v.real, v.imag
-    p, q, square = demand.constant.real, demand.constant.imag, e * e + f * f
-    re, im = (p * e + q * f) / square, (p * f - q * e) / square
-    pz, qz = demand.impedance.real, demand.impedance.imag
-    return np.stack(
-        [
-            (p - 2.0 * e * re) / square + pz,
-            (q - 2.0 * f * re) / square + qz,
-            (-q - 2.0 * e * im) / square - qz,
-            (p - 2.0 * f * im) / square + pz,
         ]
     )

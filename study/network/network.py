@@ -12,7 +12,7 @@ from scipy.sparse import csr_array
 from study.issues import SolveError
 from study.model.modes import Mode
 from study.model.plant import Plant
-from study.network.admittance import branch_admittances, filter_admittance, nodal_admittance
+from study.network.admittance import branch_admittances, filter_admittance
 from study.network.arrays import (
     BranchArrays,
     LoadArrays,
@@ -22,6 +22,7 @@ from study.network.arrays import (
     transformer_ratio,
 )
 from study.network.equations import Structure, structure
+from study.network.pruning import prune
 from study.network.refusals import refusal
 from study.network.sources import Source, sources_of
 from study.network.topology import Topology, build_topology
@@ -47,7 +48,8 @@ class Network:
 class ModeNetwork:
     """The network of one mode.
 
-    ``bus_of_node`` [node] and ``load_bus`` [load] are -1 where dead or switched off. ``live`` lists the
+    ``bus_of_node`` [node] and ``load_bus`` [load] are -1 where dead or switched off; leaves (see `consumers`)
+    are the last buses. ``live`` lists the
     closed branches with impedance (places in the topology); ``two_port``, ``ratio`` and ``units`` are [live].
     ``order`` [island] is frequency over rated: not 1 on a shore supply of another frequency.
     ``filter_pu`` [filter] is 0 where the filter is off or dead. ``motor_kva`` [synchronous motor] likewise.
@@ -154,28 +156,33 @@ def mode_network(network: Network, mode: Mode | str) -> ModeNetwork:
         _some(network.branches, live), ratio, units, order[island[from_node]] if len(live) else 1.0
     )
     filter_pu = _filters(network, mode, view, order)
-    filter_bus = bus_of_node[np.array(topology.filter_node, np.int64)]
-    admittance = nodal_admittance(
+    filter_on = filter_pu != 0.0
+    source_node = np.array([s.node for s in sources], np.int64)
+    tree = prune(
+        bus_of_node,
         buses,
-        bus_of_node[from_node],
-        bus_of_node[to_node],
-        two_port,
-        shunt_bus=filter_bus[filter_pu != 0.0],
-        shunt_pu=filter_pu[filter_pu != 0.0],
+        from_bus=bus_of_node[from_node],
+        to_bus=bus_of_node[to_node],
+        two_port=two_port,
+        source_bus=bus_of_node[source_node],
     )
+    bus_of_node = tree.bus_of_node
+    filter_bus = bus_of_node[np.array(topology.filter_node, np.int64)[filter_on]]
     load_bus = np.where(view.load_fed, bus_of_node[np.array(view.load_node, np.int64)], DEAD)
     motor_bus, motor_kva = _motors(network, mode, view, bus_of_node)
-    ports = np.unique(np.concatenate([load_bus[load_bus >= 0], motor_bus[motor_kva != 0.0]]))
+    used = np.unique(np.concatenate([load_bus[load_bus >= 0], motor_bus[motor_kva != 0.0]]))
+    direct = used[used < tree.buses]
+    places = np.concatenate([direct, np.arange(tree.buses, buses)])
     return ModeNetwork(
         network=network,
         mode=mode,
         view=view,
         sources=sources,
         structure=structure(
-            admittance,
-            bus_of_node[np.array([s.node for s in sources], np.int64)],
+            tree.admittance(filter_bus, filter_pu[filter_on]),
+            bus_of_node[source_node],
             np.array([s.island for s in sources], np.int64),
-            ports,
+            tree.ports(direct, filter_bus, filter_pu[filter_on]),
             len(view.islands),
         ),
         bus_of_node=bus_of_node,
@@ -188,8 +195,8 @@ def mode_network(network: Network, mode: Mode | str) -> ModeNetwork:
         units=units,
         order=order,
         filter_pu=filter_pu,
-        port_sum=_sum_at_ports(load_bus, ports),
-        port_constant=_sum_at_ports(motor_bus, ports) @ (motor_kva / network.s_base_kva),
+        port_sum=_sum_at(load_bus, places),
+        port_constant=_sum_at(motor_bus, places) @ (motor_kva / network.s_base_kva),
         refusals=tuple(
             island.refusal or refusal([s for s in sources if s.island == n])
             for n, island in enumerate(view.islands)
@@ -286,11 +293,11 @@ def _motors(network: Network, mode: Mode, view: View, bus_of_node: IntArray) -> 
     return bus, power
 
 
-def _sum_at_ports(bus: IntArray, ports: IntArray) -> csr_array:
-    """Return the matrix that adds up what stands at each port."""
-    on = np.flatnonzero(np.isin(bus, ports) & (bus >= 0))
-    rows = np.searchsorted(ports, bus[on])
-    return csr_array((np.ones(len(on)), (rows, on)), shape=(len(ports), len(bus)))
+def _sum_at(bus: IntArray, places: IntArray) -> csr_array:
+    """Return the matrix that adds up what stands at each place, places ascending."""
+    on = np.flatnonzero(np.isin(bus, places) & (bus >= 0))
+    rows = np.searchsorted(places, bus[on])
+    return csr_array((np.ones(len(on)), (rows, on)), shape=(len(places), len(bus)))
 
 
 def checked_loads(at: ModeNetwork, p_kw: ArrayLike, q_kvar: ArrayLike) -> tuple[FloatArray, FloatArray]:

@@ -32,7 +32,8 @@ class Solved:
 
 def tolerance(at: Structure) -> float:
     """Return the residual accepted: 1e-10 pu, or what rounding leaves beside very small impedances."""
-    largest = float(np.abs(at.admittance.data).max()) if at.admittance.nnz else 0.0
+    entries = np.concatenate([at.admittance.data, at.ports.own[:, 0]])
+    largest = float(np.abs(entries).max(initial=0.0))
     return max(TOLERANCE, ROUNDING * largest)
 
 

@@ -14,15 +14,8 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.sparse.linalg import SuperLU
 
-from study.network.equations import (
-    Demand,
-    Point,
-    Problem,
-    Structure,
-    jacobian,
-    load_current,
-    load_gradient,
-)
+from study.network.consumers import drawn_current, drawn_gradient, leaf_voltage
+from study.network.equations import Point, Problem, Structure, jacobian
 from study.network.newton import Solved, flat_start, solve_one, tolerance
 from study.network.sources import Law
 
@@ -39,7 +32,7 @@ DENSE_UP_TO = 700_000  # entries of the inverse beyond which the sparse factors 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Solutions:
-    """Scenarios solved: ``v`` [bus, scenario], ``i`` [source, scenario], ``m`` [island, scenario]."""
+    """Scenarios solved: ``v`` [bus, scenario] with leaves last, ``i`` [source, ..], ``m`` [island, ..]."""
 
     v: ComplexArray
     i: ComplexArray
@@ -68,7 +61,7 @@ def solve_scenarios(problem: Problem, count: int, start: Point | None = None) ->
     """
     base = _base(problem.column(None), start)
     if count == 1:
-        return _from_one(base)
+        return _from_one(problem, base)
     out = _empty(problem.at, count)
     if base.converged:
         frame = _Frame(problem.column(None), base.point, count)
@@ -87,9 +80,9 @@ def _base(problem: Problem, start: Point | None) -> Solved:
     return base
 
 
-def _from_one(base: Solved) -> Solutions:
+def _from_one(problem: Problem, base: Solved) -> Solutions:
     return Solutions(
-        v=base.point.v,
+        v=_with_leaves(problem, base.point.v),
         i=base.point.i,
         m=base.point.m,
         residual_pu=np.array([base.residual_pu]),
@@ -100,7 +93,7 @@ def _from_one(base: Solved) -> Solutions:
 
 def _empty(at: Structure, count: int) -> Solutions:
     return Solutions(
-        v=np.full((at.buses, count), np.nan, complex),
+        v=np.full((at.all_buses, count), np.nan, complex),
         i=np.full((at.sources, count), np.nan, complex),
         m=np.full((at.islands, count), np.nan),
         residual_pu=np.full(count, np.inf),
@@ -109,12 +102,20 @@ def _empty(at: Structure, count: int) -> Solutions:
     )
 
 
+def _with_leaves(problem: Problem, v: ComplexArray) -> ComplexArray:
+    """Return the voltages of all buses, those of the leaves behind the others."""
+    ports = problem.at.ports
+    with np.errstate(all="ignore"):  # where the branch cannot carry the load, the scenario is not solved
+        return np.concatenate([v, leaf_voltage(ports, v[ports.bus], problem.demand)])
+
+
 def _one_by_one(out: Solutions, k: int, problem: Problem, base: Solved) -> None:
     """Solve one scenario by Newton's method, from the mean scenario and from rated voltage."""
     starts = [base.point, flat_start(problem)] if base.converged else [flat_start(problem)]
     for start in starts:
         one = solve_one(problem, start)
-        out.v[:, k], out.i[:, k], out.m[:, k] = one.point.v[:, 0], one.point.i[:, 0], one.point.m[:, 0]
+        out.v[:, k] = _with_leaves(problem, one.point.v)[:, 0]
+        out.i[:, k], out.m[:, k] = one.point.i[:, 0], one.point.m[:, 0]
         out.residual_pu[k], out.converged[k] = one.residual_pu, one.converged
         out.iterations[k] += one.iterations
         if one.converged:
@@ -128,17 +129,17 @@ class _Frame:
         at = self.at = mean.at
         n, s = at.buses, at.sources
         v_s = base.v[at.source_bus, 0]
-        one = Demand(constant=mean.demand.constant[:, 0], impedance=mean.demand.impedance[:, 0])
-        self.by_load = load_gradient(base.v[at.load_bus, 0], one)[:, :, None]
+        self.by_load = drawn_gradient(at.ports, base.v[at.ports.bus], mean.demand)[:, :, None]
+        self.base = base
         self.by_law = mean.laws.gradient(v_s, base.i[:, 0]).reshape(s, 4 * s)
         self.v0, self.i0 = v_s[:, None], base.i
         self.behind = (mean.laws.code == Law.BEHIND_IMPEDANCE)[:, None]
         self.b0 = np.where(self.behind, 0.0, mean.power.b)
         self.accept = tolerance(at)
-        b = at.load_bus
+        b = at.ports.bus
         self.rows = np.concatenate([b, n + b, np.arange(2 * n, 2 * n + 2 * s)])
-        self.local = np.union1d(at.load_bus, at.source_bus)
-        self.load_place = np.searchsorted(self.local, at.load_bus)
+        self.local = np.union1d(b, at.source_bus)
+        self.load_place = np.searchsorted(self.local, b)
         self.source_place = np.searchsorted(self.local, at.source_bus)
         local_rows = np.concatenate([self.local, n + self.local, np.arange(2 * n, at.size)])
         self.step, self.whole = _steps(at, jacobian(mean, base), self.rows, local_rows, count)
@@ -161,7 +162,7 @@ class _Frame:
                 right = new
             x = self.whole(right)
         n, s = self.at.buses, self.at.sources
-        out.v[:, k] = x[:n] + 1j * x[n : 2 * n]
+        out.v[:, k] = _with_leaves(problem, x[:n] + 1j * x[n : 2 * n])
         out.i[:, k] = x[2 * n : 2 * n + s] + 1j * x[2 * n + s : 2 * n + 2 * s]
         out.m[:, k] = x[2 * n + 2 * s :]
         out.residual_pu[k], out.iterations[k] = residual, sweeps
@@ -169,11 +170,9 @@ class _Frame:
 
     def _first_right(self, problem: Problem, count: int) -> FloatArray:
         """Return the right-hand side at the base point."""
-        shape = (len(self.local), count)
-        v = np.ones(shape, complex)
-        v[self.source_place] = self.v0
+        v = np.broadcast_to(self.base.v[self.local], (len(self.local), count))
         i = np.broadcast_to(self.i0, (self.at.sources, count))
-        return self._right(v, i, np.zeros((self.at.islands, count)), problem)
+        return self._right(v, i, np.broadcast_to(self.base.m, (self.at.islands, count)), problem)
 
     def _split(self, x: FloatArray) -> tuple[ComplexArray, ComplexArray, FloatArray]:
         n, s = len(self.local), self.at.sources
@@ -184,7 +183,7 @@ class _Frame:
     def _right(self, v: ComplexArray, i: ComplexArray, m: FloatArray, problem: Problem) -> FloatArray:
         v_l, v_s = v[self.load_place], v[self.source_place]
         laws, power = problem.laws, problem.power
-        drawn = load_current(v_l, problem.demand)
+        drawn = drawn_current(self.at.ports, v_l, problem.demand)
         p, s = len(v_l), len(v_s)
         out = np.empty((2 * p + 2 * s, v.shape[1]))
         re_e, re_f, im_e, im_f = self.by_load

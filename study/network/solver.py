@@ -141,7 +141,7 @@ class _Found:
     """What the islands' load flows gave, gathered over the islands of a mode."""
 
     def __init__(self, at: ModeNetwork) -> None:
-        self.v_bus: ComplexArray = np.full(at.structure.buses, np.nan, complex)
+        self.v_bus: ComplexArray = np.full(at.structure.all_buses, np.nan, complex)
         self.source_s: ComplexArray = np.full(len(at.sources), np.nan, complex)
         self.load_s_kva = np.zeros(len(at.network.plant.loads), complex)
         self.branch_s_kva = np.zeros((2, len(at.network.topology.branches)), complex)
