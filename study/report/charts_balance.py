@@ -123,9 +123,9 @@ def load_by_service(outcome: StudyOutcome) -> Drawing | None:
     labels = [*services, "capacity on line", "capacity with the largest set lost"]
     legend = 0.17 * legend_rows(labels) + 0.05
     height = 0.65 + 0.27 * len(rows) + legend
-    left = min(2.9, 0.35 + 0.062 * max(len(label) for label, _, _ in rows))
+    left = min(3.4, 0.35 + 0.062 * max(len(label) for label, _, _ in rows))
     figure = canvas(height)
-    axes = figure.add_axes(frame(figure, left=left, right=0.7, bottom=0.45 + legend, top=0.1))
+    axes = figure.add_axes(frame(figure, left=left, right=0.3, bottom=0.45 + legend, top=0.1))
     handles: dict[str, Any] = {}
     for y, (_, mode, island) in enumerate(rows):
         if mode is not None:
@@ -156,9 +156,15 @@ _Row = tuple[str, ModeBalance | None, IslandBalance | None]
 def _service_rows(mode: ModeBalance) -> list[_Row]:
     """Return one row for a mode, with its island; and one for each island where there are several."""
     if len(mode.islands) == 1:
-        return [(mode.mode, mode, mode.islands[0])]
-    split: list[_Row] = [(f"of it {island.boards[0]}", None, island) for island in mode.islands]
-    return [(mode.mode, mode, None), *split]
+        return [(_label(mode.mode, mode.p_total_kw), mode, mode.islands[0])]
+    split: list[_Row] = [
+        (_label(f"of it {island.boards[0]}", island.p_load_kw), None, island) for island in mode.islands
+    ]
+    return [(_label(mode.mode, mode.p_total_kw), mode, None), *split]
+
+
+def _label(name: str, p_kw: float) -> str:
+    return f"{name}  {quantity(p_kw, 'kW')}"
 
 
 def _stack(axes: Any, y: int, mode: ModeBalance, services: Sequence[str], handles: dict[str, Any]) -> None:
@@ -179,28 +185,11 @@ def _stack(axes: Any, y: int, mode: ModeBalance, services: Sequence[str], handle
         )
         handles.setdefault(service, bar)
         start += value
-    axes.annotate(
-        quantity(mode.p_total_kw, "kW"),
-        (start, y),
-        (4, 0),
-        textcoords="offset points",
-        va="center",
-        fontsize=SMALL,
-        color=INK,
-    )
 
 
 def _island(axes: Any, y: int, island: IslandBalance, handles: dict[str, Any], *, own_bar: bool) -> None:
     if own_bar:
         axes.barh(y, island.p_load_kw, height=0.45, color=RULE)
-        axes.annotate(
-            quantity(island.p_load_kw, "kW"),
-            (island.p_load_kw, y),
-            (4, 0),
-            textcoords="offset points",
-            va="center",
-            fontsize=SMALL,
-        )
     marks: list[tuple[str, float, Any]] = [("capacity on line", island.p_capacity_kw, "-")]
     at_once = [loss for loss in island.loss if loss.stage == "at once"]
     if at_once:

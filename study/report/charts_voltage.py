@@ -23,6 +23,7 @@ from study.report.plotting import (
 )
 from study.report.plotting import place as frame
 from study.report.style import ACCENT, INK, QUIET, RULE, TINT
+from study.report.tables_regulation import power_factor
 from study.results.load_flow import ModeLoadFlow
 from study.results.regulation import SetRegulation
 
@@ -197,9 +198,9 @@ def _alike(a: SetRegulation, b: SetRegulation) -> bool:
 
 def _regulation(group: Sequence[SetRegulation], number: int) -> Drawing:
     row = group[0]
-    figure = canvas(3.3)
-    left = figure.add_axes(frame(figure, left=0.6, right=4.55, bottom=0.95, top=0.3))
-    right = figure.add_axes(frame(figure, left=4.85, right=0.2, bottom=0.95, top=0.3))
+    figure = canvas(3.4)
+    left = figure.add_axes(frame(figure, left=0.6, right=4.55, bottom=1.05, top=0.3))
+    right = figure.add_axes(frame(figure, left=4.85, right=0.2, bottom=1.05, top=0.3))
     handles, labels = [], []
     for k, label in enumerate(row.inherent.labels):
         (line,) = left.plot(
@@ -209,7 +210,7 @@ def _regulation(group: Sequence[SetRegulation], number: int) -> Drawing:
             linestyle=dash(k),
         )
         handles.append(line)
-        labels.append(f"power factor {label}")
+        labels.append(f"power factor {power_factor(label)}")
     left.set_title("Constant excitation of no load")
     left.set_xlabel("Load current [% of rated]")
     left.set_ylabel("Terminal voltage [% of rated]")

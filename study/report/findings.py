@@ -151,6 +151,8 @@ def statement(v: Verdict) -> str:
         return f"{name} is not assessed: {v.basis}."
     if is_plain_fact(v):
         return f"{name}."
+    if math.isinf(v.value):
+        return f"{name}: no source is left to carry it."
     value, limit = judged_pair(v.value, v.limit, exceeds=v.status == "exceeds")
     unit = f" {v.unit}" if v.unit not in ("", "-") else ""
     needed = "allowed" if v.sense == "at most" else "required"

@@ -23,7 +23,7 @@ from study.report.tables import (
 from study.results.load_flow import BranchState, ModeLoadFlow
 
 _SHEET = "R Load flow"
-_SHOWN = 15
+_SHOWN = 10
 
 
 def branch_tables(outcome: StudyOutcome) -> tuple[Table, ...]:

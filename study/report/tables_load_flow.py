@@ -24,7 +24,7 @@ from study.results.arrays import FloatArray
 from study.results.load_flow import LoadFlowResult, ModeLoadFlow
 
 _SHEET = "R Load flow"
-_SHOWN = 15
+_SHOWN = 10
 
 
 def load_flow_tables(outcome: StudyOutcome) -> tuple[Table, ...]:

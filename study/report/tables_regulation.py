@@ -109,6 +109,11 @@ def _worked(result: RegulationResult) -> Worked | None:
     return Worked(row=s.genset, lines=(line,))
 
 
+def power_factor(label: str) -> str:
+    """Return the name of a curve without the words that stand in the heading or before it."""
+    return label.removeprefix("power factor ")
+
+
 def inherent_table(result: RegulationResult) -> Table:
     """Return the rise of voltage when rated load is thrown off with the field left as it was."""
     columns = [
@@ -118,7 +123,7 @@ def inherent_table(result: RegulationResult) -> Table:
         Column(key="field_pu", heading="Field", unit="x rated-load field"),
     ]
     rows = [
-        (s.genset, label, percent(s.inherent.regulation_pu[k]), s.inherent.field_pu[k])
+        (s.genset, power_factor(label), percent(s.inherent.regulation_pu[k]), s.inherent.field_pu[k])
         for s in result.sets
         for k, label in enumerate(s.inherent.labels)
     ]
@@ -170,7 +175,7 @@ def inherent_curves_table(result: RegulationResult) -> Table:
         percent_column("u_percent", "Voltage of rated", most_decimals=2),
     ]
     rows: list[tuple[Value, ...]] = [
-        (s.genset, label, percent(s.inherent.current_pu[k, i]), percent(s.inherent.u_pu[k, i]))
+        (s.genset, power_factor(label), percent(s.inherent.current_pu[k, i]), percent(s.inherent.u_pu[k, i]))
         for s in result.sets
         for k, label in enumerate(s.inherent.labels)
         for i in range(s.inherent.current_pu.shape[1])

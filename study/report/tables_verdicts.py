@@ -39,7 +39,7 @@ SUBJECTS: Final = (
 _OF_LOAD_FLOW: Final = ("voltage", "frequency", "cables")
 VESSEL: Final = "vessel"
 _SHEET = "R Summary"
-_SHOWN = 5
+_SHOWN = 3
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -173,6 +173,8 @@ def figure_text(v: Verdict) -> str:
     """
     if is_plain_fact(v):
         return v.quantity if v.status == "exceeds" else "none"
+    if math.isinf(v.value):
+        return "no source left"
     if v.status == "exceeds":
         value, limit = judged_pair(v.value, v.limit, exceeds=True)
     else:
@@ -187,7 +189,7 @@ def _decimals(v: Verdict) -> int | None:
 
 
 _JUDGED = (
-    Column(key="value", heading="Value", kind="judged"),
+    Column(key="value", heading="Value", kind="judged", infinite="no source left"),
     Column(key="limit", heading="Limit", kind="judged"),
     text_column("unit", "Unit"),
     text_column("sense", "Limit is"),
@@ -200,7 +202,7 @@ def _judged_values(v: Verdict) -> tuple[Value, ...]:
     factor, unit = (100.0, "%") if v.unit == "pu" else (1.0, v.unit)
     if is_plain_fact(v):
         return None, None, None, v.sense, None, v.status
-    margin = percent(v.margin) if v.limit != 0.0 else None
+    margin = percent(v.margin) if v.limit != 0.0 and not math.isinf(v.margin) else None
     return factor * v.value, factor * v.limit, unit, v.sense, margin, v.status
 
 
