@@ -161,7 +161,7 @@ def _percent(value: float, match: Match) -> float | Refused:
     column = match.column
     if column.is_percent:
         return float(f"{value * 100.0:.15g}")
-    if column.is_ratio or column.unit == "pu":
+    if column.ratio or column.unit == "pu":
         return float(value)
     found = f"{column.name} is shown as {value * 100.0:.10g} %"
     return Refused(code="percent-format", found=found, wanted="format the cell as a plain number")

@@ -149,6 +149,8 @@ class Column:
         One line for the engineer, with the base of the number.
     older : tuple of str
         Other forms of the name that are still taken.
+    ratio : bool
+        A plain number from 0 to about 1, whose heading may also carry ``[%]`` or ``[pu]``.
     """
 
     name: str
@@ -166,16 +168,12 @@ class Column:
     when: tuple[tuple[str, tuple[str, ...]], ...] = ()
     hint: str = ""
     older: tuple[str, ...] = ()
+    ratio: bool = False
 
     @property
     def heading(self) -> str:
         """The heading as the blank workbook writes it."""
         return f"{self.name} [{self.unit}]" if self.unit else self.name
-
-    @property
-    def is_ratio(self) -> bool:
-        """True for a plain number between or around 0 and 1 that may also be headed ``[%]`` or ``[pu]``."""
-        return self.kind == "number" and not self.unit
 
     @property
     def is_percent(self) -> bool:
@@ -285,6 +283,11 @@ def text(name: str, field: str, hint: str, **more: Any) -> Column:
 def number(name: str, unit: str, field: str, bounds: Bounds, hint: str, **more: Any) -> Column:
     """Return a column of numbers."""
     return Column(name=name, unit=unit, field=field, kind="number", bounds=bounds, hint=hint, **more)
+
+
+def ratio(name: str, field: str, bounds: Bounds, hint: str, **more: Any) -> Column:
+    """Return a column of plain numbers from 0 to about 1, such as a power factor."""
+    return Column(name=name, field=field, kind="number", bounds=bounds, hint=hint, ratio=True, **more)
 
 
 def integer(name: str, field: str, bounds: Bounds, hint: str, **more: Any) -> Column:

@@ -106,12 +106,12 @@ class Findings:
 
     def __init__(self) -> None:
         self._issues: list[Issue] = []
-        self._seen: set[tuple[str, str, str]] = set()
+        self._seen: set[tuple[str, str, str, str]] = set()
 
     def add(
         self, code: str, sheet: str, cell: str, found: str, wanted: str, *, severity: Severity = "fault"
     ) -> None:
-        """Add one issue; the same code on the same cell is added once.
+        """Add one issue; the same words on the same cell are added once.
 
         Raises
         ------
@@ -120,9 +120,9 @@ class Findings:
         """
         if code not in FAULTS:
             raise KeyError(code)
-        if (code, sheet, cell) in self._seen and cell:
+        if (code, sheet, cell, found) in self._seen:
             return
-        self._seen.add((code, sheet, cell))
+        self._seen.add((code, sheet, cell, found))
         self._issues.append(
             Issue(code=code, sheet=sheet, cell=cell, found=found, wanted=wanted, severity=severity)
         )

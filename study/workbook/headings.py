@@ -268,7 +268,7 @@ def unit_factor(column: Column, unit: str | None) -> float | Misfit:
         return _without_unit(column)
     if _plain_unit(unit) == _plain_unit(column.unit):
         return 1.0
-    if not column.unit and not column.is_ratio:
+    if not column.unit and not column.ratio:
         plain = f"write “{column.name}”"
         return Misfit(code="wrong-unit", found=f"the heading has the unit [{unit}]", wanted=plain)
     return _converted(column, unit)

@@ -15,6 +15,8 @@ from study.workbook.tables import Row
 
 RowsBySheet = Mapping[str, Sequence[Row]]
 LISTED_SHEETS: Final = ("Modes", "Curves", "Let-through", "Spectra")
+# A sheet of five thousand wrong references is told in seconds, without the closest names of the last ones.
+COMPARISONS: Final = 100_000
 _SEPARATORS: Final = re.compile(r"[,;\n]")
 # Texts that only group rows: the first spelling stands for all that differ in case and blanks.
 GROUPING_FIELDS: Final = ("service", "redundancy_group", "cross_current_group", "case", "curve", "spectrum")
@@ -28,6 +30,8 @@ class Names:
 
     def __init__(self) -> None:
         self._by_sheet: dict[str, dict[str, str]] = {}
+        self._comparisons_left = COMPARISONS
+        self._near: dict[tuple[str, tuple[str, ...]], tuple[str, ...]] = {}
         self.rows: dict[str, Row] = {}
 
     def enter(self, sheet: str, name: str, row: Row | None = None) -> None:
@@ -49,6 +53,15 @@ class Names:
         """Return the sheet of a piece of equipment; an empty text where there is none."""
         row = self.rows.get(name)
         return "" if row is None else row.sheet
+
+    def near(self, text: str, sheets: Iterable[str]) -> tuple[str, ...]:
+        """Return the names that look most like `text`; none once thousands of references have been wrong."""
+        wanted = (folded(text), tuple(sheets))
+        if wanted not in self._near:
+            names = self.all(sheets)
+            self._comparisons_left -= len(names)
+            self._near[wanted] = nearest(text, names) if self._comparisons_left >= 0 else ()
+        return self._near[wanted]
 
     def all(self, sheets: Iterable[str]) -> list[str]:
         """Return every name of some sheets."""
@@ -154,7 +167,7 @@ def _report(row: Row, column: Column, text: str, names: Names, found: Findings) 
 
 def _report_unknown(row: Row, column: Column, text: str, names: Names, found: Findings) -> None:
     known = names.all(column.target)
-    near = nearest(text, known)
+    near = names.near(text, column.target)
     if near:
         wanted = f"closest names are {', '.join(near)}"
     elif known:

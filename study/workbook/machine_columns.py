@@ -23,6 +23,7 @@ from study.workbook.columns import (
     choice,
     derived,
     number,
+    ratio,
     text,
     typical,
 )
@@ -51,7 +52,7 @@ RATING_COLUMNS: tuple[Column, ...] = (
         "Rated apparent power", "kVA", "s_rated_kva", above(0.0, 200_000.0), "name-plate, at the terminals",
         **REQUIRED,
     ),
-    number("Rated power factor", "", "cos_phi_rated", POWER_FACTOR, "name-plate, 0 to 1", **REQUIRED),
+    ratio("Rated power factor", "cos_phi_rated", POWER_FACTOR, "name-plate, 0 to 1", **REQUIRED),
     number(
         "Rated voltage", "V", "u_rated_v", above(0.0, 36_000.0), "name-plate, line to line",
         **REQUIRED,

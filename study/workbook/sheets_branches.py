@@ -21,6 +21,7 @@ from study.workbook.columns import (
     integer,
     key,
     number,
+    ratio,
     reference,
     text,
     typical,
@@ -216,8 +217,8 @@ CABLES = SheetSpec(
             "Overall diameter", "mm", "overall_diameter_mm", between(1.0, 200.0),
             "for short-time duty; blank: unknown", **UNKNOWN,
         ),
-        number(
-            "Further derating", "", "further_derating", above(0.0, 1.5), "factor on the rating; blank: 1",
+        ratio(
+            "Further derating", "further_derating", above(0.0, 1.5), "factor on the rating; blank: 1",
             absent=1.0,
         ),
         number(

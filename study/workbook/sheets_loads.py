@@ -21,6 +21,7 @@ from study.workbook.columns import (
     integer,
     key,
     number,
+    ratio,
     reference,
     text,
     typical,
@@ -51,12 +52,12 @@ CONSUMER_COLUMNS: tuple[Column, ...] = (
         "Absorbed power", "kW", "p_absorbed_kw", above(0.0, 200_000.0),
         "of one unit at its duty point, same side as the rated output; the load factor refers to it",
     ),
-    number(
-        "Efficiency", "", "efficiency", above(0.2, 1.0), "of a motor at rated output, 0 to 1",
+    ratio(
+        "Efficiency", "efficiency", above(0.2, 1.0), "of a motor at rated output, 0 to 1",
         when=MOTOR, **derived(rule.motor_efficiency, "by rated output", rule.EFFICIENCY_SOURCE),
     ),
-    number(
-        "Power factor", "", "cos_phi", POWER_FACTOR, "at rated output, 0 to 1",
+    ratio(
+        "Power factor", "cos_phi", POWER_FACTOR, "at rated output, 0 to 1",
         **derived(rule.load_power_factor, "by kind, rated output and poles", PRACTICE),
     ),
     number("Running current", "A", "running_current_a", POSITIVE, "of one unit at rated output, name-plate"),
@@ -85,8 +86,8 @@ MOTOR_COLUMNS: tuple[Column, ...] = (
         usual=between(3.0, 10.0), when=BY_LINE,
         **derived(rule.starting_current, "by rated output", CAGE),
     ),
-    number(
-        "Starting power factor", "", "starting_cos_phi", above(0.0, 1.0), "locked rotor",
+    ratio(
+        "Starting power factor", "starting_cos_phi", above(0.0, 1.0), "locked rotor",
         when=BY_LINE, **derived(rule.starting_cos_phi, "by rated output", CAGE),
     ),
     number(
@@ -152,8 +153,8 @@ CONVERTER_COLUMNS: tuple[Column, ...] = (
         "Phase shift", "deg", "phase_shift_deg", between(-180.0, 180.0),
         "of the converter's own transformer; blank: none", absent=0.0,
     ),
-    number(
-        "Displacement power factor", "", "displacement_cos_phi", POWER_FACTOR, "of the fundamental",
+    ratio(
+        "Displacement power factor", "displacement_cos_phi", POWER_FACTOR, "of the fundamental",
         when=FED_BY_CONVERTER,
         **derived(rule.displacement_power_factor, "1.00 active front end, else 0.95", PRACTICE),
     ),

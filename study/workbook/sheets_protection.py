@@ -21,6 +21,7 @@ from study.workbook.columns import (
     derived,
     key,
     number,
+    ratio,
     reference,
     text,
     typical,
@@ -66,8 +67,8 @@ RATING_COLUMNS: tuple[Column, ...] = (
     number("Icw", "kA", "icw_ka", POSITIVE, "short-time withstand, rms; blank: unknown", **UNKNOWN),
     number("Icm", "kA", "icm_ka", POSITIVE, "making, peak; blank: unknown", **UNKNOWN),
     number("Icw duration", "s", "icw_duration_s", above(0.0, 10.0), "blank: unknown", **UNKNOWN),
-    number(
-        "Test power factor", "", "test_cos_phi", POWER_FACTOR, "of the breaking test; blank: unknown",
+    ratio(
+        "Test power factor", "test_cos_phi", POWER_FACTOR, "of the breaking test; blank: unknown",
         **UNKNOWN,
     ),
     choice("Category", "category", ("A", "B"), "IEC 60947-2; blank: unknown", **UNKNOWN),

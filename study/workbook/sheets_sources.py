@@ -18,6 +18,7 @@ from study.workbook.columns import (
     choice,
     key,
     number,
+    ratio,
     reference,
     typical,
 )
@@ -169,8 +170,8 @@ SYNCHRONOUS_MOTORS = SheetSpec(
         *MACHINE_COLUMNS,
         *EXCITATION_COLUMNS,
         number("Rated output", "kW", "p_output_kw", POSITIVE, "at the shaft", **REQUIRED),
-        number(
-            "Efficiency", "", "efficiency", between(0.3, 1.0),
+        ratio(
+            "Efficiency", "efficiency", between(0.3, 1.0),
             "at rated output, 0 to 1; head the column [%] for per cent",
             **typical(0.95, "large synchronous motors, 0.94 to 0.97; common practice, no source"),
         ),

@@ -80,6 +80,9 @@ SHEETS = [
 ]
 
 HEADINGS = [
+    renamed("a unit on a pick-up", "wrong-unit", "Protection functions", "Pick-up", "Pick-up [%]"),
+    renamed("a unit on an order", "wrong-unit", "Spectra", "Order", "Order [%]"),
+    renamed("a unit on a size", "wrong-unit", "Events", "Size", "Size [kW]"),
     added("doubled", "doubled-heading", "Cables", "LENGTH [m]"),
     added("doubled by an older form", "doubled-heading", "Gensets", "X″d [pu]"),
     renamed(

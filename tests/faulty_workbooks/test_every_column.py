@@ -95,7 +95,7 @@ def _is_text(column: Column) -> bool:
 
 
 def _is_plain(column: Column) -> bool:
-    return not column.unit and not column.is_ratio
+    return not column.unit and not column.ratio
 
 
 def _has_known_unit(column: Column) -> bool:
