@@ -174,12 +174,13 @@ def _case(case: MaladjustedCase, number: int) -> Drawing:
         axes.grid(axis="y", visible=False)
         axes.set_xlabel({"kW": "Active power [kW]", "kvar": "Reactive power [kvar]"}[unit])
     legend_below(figure, list(handles.values()), list(handles))
-    before, after = (quantity(percent(u), "%", 2) for u in (case.u_before_pu, case.u_after_pu))
+    first, then = (quantity(percent(u), "%", 2) for u in (case.u_before_pu, case.u_after_pu))
     was, now = quantity(percent(case.was_pu), "%"), quantity(percent(case.value_pu), "%")
     return drawing(
         figure,
         key=f"fig-case-{number + 1}",
         title=f"{case.case} ({case.mode})",
         caption=case.sentence,
-        description=f"{case.genset}: {case.setting} from {was} to {now}. Voltage {before} before, {after} after.",
+        description=f"{case.genset}: {case.setting} from {was} to {now}. "
+        f"Voltage {first} before and {then} after.",
     )
