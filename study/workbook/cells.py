@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from datetime import datetime
@@ -214,6 +215,9 @@ def _read_text(value: Any, match: Match) -> str | Refused:
             found=f"{match.column.name} is {shown(value)}",
             wanted="type it as text, with an apostrophe in front where Excel changes it",
         )
+    if match.column.pattern and re.fullmatch(match.column.pattern, text) is None:
+        found = f"{match.column.name} is {shown(value)}"
+        return Refused(code="unknown-choice", found=found, wanted=f"write it {match.column.hint}")
     return text
 
 

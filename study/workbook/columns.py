@@ -151,6 +151,8 @@ class Column:
         Other forms of the name that are still taken.
     ratio : bool
         A plain number from 0 to about 1, whose heading may also carry ``[%]`` or ``[pu]``.
+    pattern : str
+        Regular expression that a text must match as a whole; the hint says it in words.
     """
 
     name: str
@@ -169,6 +171,7 @@ class Column:
     hint: str = ""
     older: tuple[str, ...] = ()
     ratio: bool = False
+    pattern: str = ""
 
     @property
     def heading(self) -> str:

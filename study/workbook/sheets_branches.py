@@ -71,8 +71,6 @@ BOARDS = SheetSpec(
     ),
 )  # fmt: skip
 
-VECTOR_GROUP_NOTE = "common practice, no source"
-
 TRANSFORMERS = SheetSpec(
     name="Transformers",
     row_is="a two-winding transformer, or several equal ones in parallel",
@@ -97,7 +95,10 @@ TRANSFORMERS = SheetSpec(
             "Iron loss", "kW", "iron_loss_kw", NOT_NEGATIVE, "of one unit, at rated voltage",
             **derived(rule.iron_loss, "1.1 % x kVA^-0.22", DRY_TYPE),
         ),
-        text("Vector group", "vector_group", "for example Dyn11", **typical("Dyn11", VECTOR_GROUP_NOTE)),
+        text(
+            "Vector group", "vector_group", "like Dyn11: windings with capitals first, then the clock number",
+            pattern=r"[DYZ]N?[dyz]n?\d{1,2}", **typical("Dyn11", PRACTICE),
+        ),
         integer("Units in parallel", "units", between(1, 50), "equal transformers", absent=1),
         number(
             "Tap", "%", "tap_pu", between(-20.0, 20.0),
@@ -163,7 +164,10 @@ THREE_WINDING = SheetSpec(
             "Iron loss", "kW", "iron_loss_kw", NOT_NEGATIVE, "at rated voltage",
             **derived(rule.iron_loss_three_winding, "1.1 % x kVA^-0.22", DRY_TYPE),
         ),
-        text("Vector group", "vector_group", "for example Dd0y11", **typical("Dd0y11", VECTOR_GROUP_NOTE)),
+        text(
+            "Vector group", "vector_group", "like Dd0y11: each secondary winding with its clock number",
+            pattern=r"[DYZ]N?(?:[dyz]n?\d{1,2}){2}", **typical("Dd0y11", PRACTICE),
+        ),
         number(
             "Tap", "%", "tap_pu", between(-20.0, 20.0), "+ : more primary turns, lower secondary voltages",
             absent=0.0,

@@ -147,6 +147,14 @@ ITEMS = [
 ]
 
 CELLS = [
+    cell("a vector group without clock", "unknown-choice", ("Transformers", 0, "Vector group"), "Dyn"),
+    cell("a vector group turned round", "unknown-choice", ("Transformers", 0, "Vector group"), "dYN11"),
+    cell(
+        "a vector group of two windings",
+        "unknown-choice",
+        ("Three-winding transformers", 0, "Vector group"),
+        "Dyn11",
+    ),
     cell("a dash for nothing", "text-number", ("Cables", 0, "R0 [ohm/km]"), "-"),
     cell("n/a for nothing", "text-number", ("Boards", 0, "Peak withstand [kA]"), "n/a"),
     cell("a hard blank in a number", "text-number", ("Loads", 0, "Rated output [kW]"), "1\xa0500"),
