@@ -57,7 +57,7 @@ def spoilt_books(draw: st.DrawFn) -> Grids:
     return grids
 
 
-@settings(max_examples=120, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
+@settings(max_examples=80, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
 @given(spoilt_books())
 def test_a_plant_or_a_list_of_faults(grids: Grids) -> None:
     plant, issues = check(grids)
