@@ -155,12 +155,19 @@ EXCITATION_COLUMNS: tuple[Column, ...] = (
     number(
         "Unregulated voltage", "%", "unregulated_voltage_pu", between(80.0, 150.0),
         "of rated voltage; compounded set whose regulator takes nothing away",
-        when=COMPOUNDED, **typical(110.0, PRACTICE),
+        when=COMPOUNDED,
+        **derived(
+            rule.unregulated_voltage, "about 120 %; 100 % without regulator", "common practice, no source"
+        ),
     ),
     number(
         "Compound current share", "%", "compound_current_share", between(0.0, 100.0),
         "part of the rated-load field that the current transformers give",
-        when=COMPOUNDED, **typical(60.0, PRACTICE),
+        when=COMPOUNDED,
+        **derived(
+            rule.compound_current_share, "the same unregulated voltage at no load and at rated load",
+            "flat compounding; IEEE 421.5 compound source, from memory",
+        ),
     ),
     number(
         "Excitation ceiling", "x rated-load field", "ceiling", between(1.0, 10.0),

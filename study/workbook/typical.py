@@ -7,7 +7,7 @@ heading. Rows also hold two things that no column does: ``f_rated_hz`` of the pr
 
 from __future__ import annotations
 
-from math import log, pi
+from math import acos, log, pi
 from typing import TYPE_CHECKING, Final
 
 from study.formulas.cables import insulation_data, typical_reactance
@@ -328,3 +328,45 @@ def opening_time_min(row: Values) -> float:
 def breaking_time_max(row: Values) -> float:
     """Return the longest breaking time of a device [s]."""
     return 0.08 if row["kind"] in {"circuit breaker", "overcurrent relay"} else 0.0
+
+
+def unregulated_voltage(row: Values) -> float:
+    """Return the voltage of a compounded set at rated load with nothing taken away [% of rated].
+
+    With a regulator that can only take excitation away it has to lie well above rated voltage; without one it
+    is the set's own voltage.
+
+    Examples
+    --------
+    >>> unregulated_voltage({"field_supply": "compounded"})
+    120.0
+    """
+    return 100.0 if row["field_supply"] == "compounded without regulator" else 120.0
+
+
+def compound_current_share(row: Values) -> float:
+    """Return the current transformers' share of the field at rated load [%].
+
+    The share of a flat compounding: the same unregulated voltage at no load and at rated load.
+
+    Examples
+    --------
+    >>> machine = {"x_d_pu": 2.0, "x_q_pu": 2.0, "x_d1_pu": 0.25, "r_stator_pu": 0.0}
+    >>> field = {"saturation_10": 0.0, "saturation_12": 0.0, "cos_phi_rated": 0.8}
+    >>> round(compound_current_share(machine | field | {"unregulated_voltage_pu": 100.0}), 2)
+    73.52
+    """
+    from study.formulas.excitation import compound_from_two_loads
+    from study.formulas.saturation import saturation_curve
+    from study.formulas.synchronous import Machine, field_required
+
+    machine = Machine(
+        xd_pu=float(row["x_d_pu"]),
+        xq_pu=float(row["x_q_pu"]),
+        xd_transient_pu=float(row["x_d1_pu"]),
+        ra_pu=float(row["r_stator_pu"]),
+        saturation=saturation_curve(float(row["saturation_10"]), float(row["saturation_12"])),
+    )
+    v, cos_phi = float(row["unregulated_voltage_pu"]) / 100.0, float(row["cos_phi_rated"])
+    supply = compound_from_two_loads(v, v, cos_phi, machine)
+    return 100.0 * supply.current_gain / float(field_required(v, 1.0, acos(cos_phi), machine))
