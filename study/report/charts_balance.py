@@ -16,7 +16,10 @@ from study.report.plotting import place as frame
 from study.report.style import ACCENT, INK, RULE
 from study.results.balance import IslandBalance, ModeBalance, SetBalance
 
-_BARS_IN_A_ROW = 32
+_PLACES_IN_A_ROW = 32
+_FEWEST_PLACES = 14
+_PLACE_IN = (WIDTH_IN - 0.75) / (_PLACES_IN_A_ROW + 0.6)
+"""Width of a place [inch]."""
 _HATCHES = ("", "////", "....", "xxxx")
 
 
@@ -45,11 +48,13 @@ def set_loading(outcome: StudyOutcome) -> Drawing | None:
     names = 0.06 * (7 + max(len(s.name) for _, sets in groups for s in sets)) + 0.1
     height = 0.45 + len(rows) * (1.75 + names + 0.4)
     figure = canvas(height)
+    # One scale for every row; a place is never narrower than what the names are wrapped for.
+    places = max(_FEWEST_PLACES, *(sum(_places(group) for group in row) for row in rows))
     top = 0.1
     for row in rows:
         bottom = height - top - 0.35 - 1.75
         axes = figure.add_axes(frame(figure, left=0.6, right=0.15, bottom=bottom, top=top + 0.35))
-        _loading_row(axes, row, least)
+        _loading_row(axes, row, least, places)
         top += 1.75 + names + 0.4
     highest = max((s for _, sets in groups for s in sets), key=lambda s: s.engine_loading)
     lowest = min((s for _, sets in groups for s in sets), key=lambda s: s.engine_loading)
@@ -69,33 +74,40 @@ _Group = tuple[str, list[SetBalance]]
 
 
 def _rows_of_groups(groups: Sequence[_Group]) -> list[list[_Group]]:
-    """Return modes in rows of at most so many bars."""
+    """Return modes in rows of at most so many bars, a mode counting for the width of its name too."""
     rows: list[list[_Group]] = [[]]
     for group in groups:
-        bars = sum(len(sets) + 1 for _, sets in rows[-1])
-        if rows[-1] and bars + len(group[1]) > _BARS_IN_A_ROW:
+        taken = sum(_places(g) for g in rows[-1])
+        if rows[-1] and taken + _places(group) > _PLACES_IN_A_ROW:
             rows.append([])
         rows[-1].append(group)
     return rows
 
 
-def _loading_row(axes: Any, row: list[_Group], least: dict[str, float]) -> None:
+def _places(group: _Group) -> int:
+    """Return the places on the axis that a mode takes: its bars and a gap, or its name in two lines."""
+    mode, sets = group
+    longest = max(len(mode) // 2 + 2, *(len(word) for word in mode.split()))
+    return max(len(sets) + 1, math.ceil((0.08 * longest + 0.1) / _PLACE_IN))
+
+
+def _loading_row(axes: Any, row: list[_Group], least: dict[str, float], places: int) -> None:
     at, names = 0.0, []
     highest = max([100.0, *(percent(s.engine_loading) for _, sets in row for s in sets)])
-    room = (WIDTH_IN - 0.75) / sum(len(sets) + 1 for _, sets in row)
-    for mode, sets in row:
+    for group in row:
+        mode, sets = group
         x = at + np.arange(len(sets))
         values = [percent(s.engine_loading) for s in sets]
         axes.bar(x, values, width=0.7, color=ACCENT)
         marks = [least[s.name] for s in sets]
         axes.hlines(marks, x - 0.42, x + 0.42, colors=colour(1), linewidth=2.0)
-        lines = textwrap.wrap(mode, max(9, int(room * (len(sets) + 1) / 0.068)))
-        label = "\n".join(lines[:2])
+        lines = textwrap.wrap(mode, max(6, int((_places(group) * _PLACE_IN - 0.1) / 0.078)))
+        label = "\n".join(lines[:2]) + ("…" if len(lines) > 2 else "")
         axes.text(at - 0.4, highest * 1.08, label, fontsize=SMALL + 0.5, fontweight="bold", va="bottom")
         names += [(float(p), f"{s.name}  {v:.0f} %") for p, s, v in zip(x, sets, values, strict=True)]
-        at += len(sets) + 1
+        at += _places(group)
     axes.axhline(100.0, color=INK, linewidth=0.8, linestyle=(0, (4, 2)))
-    axes.set_xlim(-0.8, max(at - 1 - 0.2, 7.5))
+    axes.set_xlim(-0.8, places - 0.2)
     axes.set_ylim(0.0, highest * 1.06)
     axes.set_xticks([p for p, _ in names], [n for _, n in names], rotation=90)
     axes.grid(axis="x", visible=False)

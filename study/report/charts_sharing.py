@@ -48,14 +48,14 @@ def _island(island: IslandSharing, number: int) -> Drawing:
     legend = 0.17 * legend_rows(labels) + 0.1
     height = 4.2 + legend
     figure = canvas(height)
-    lines = figure.add_axes(frame(figure, left=0.6, right=5.65, bottom=0.45 + legend, top=0.3))
+    lines = figure.add_axes(frame(figure, left=0.75, right=5.6, bottom=0.45 + legend, top=0.3))
     handles = _setting_lines(lines, island)
     half = (height - 0.45 - legend - 0.3 - 0.62) / 2
     for row, curve in enumerate((island.as_set, island.trimmed)):
         bottom = 0.45 + legend + (1 - row) * (half + 0.62)
         top = height - bottom - half
         for column, (word, unit) in enumerate((("kW", "kW"), ("kvar", "kvar"))):
-            left = 3.72 + 2.68 * column
+            left = 3.75 + 2.67 * column
             axes = figure.add_axes(frame(figure, left=left, right=8.6 - left - 2.05, bottom=bottom, top=top))
             handles = _deviations(axes, island, curve, unit) | handles
             axes.set_title(f"{word}, {adjusted(curve)}")

@@ -27,6 +27,17 @@ _SECTIONS: Final = (
     ("control", "Document control"),
 )
 _LISTED = 40
+_NOT_ON_THE_PAGE = (
+    "findings",
+    "governing_verdicts",
+    "mode_figures",
+    "load_by_board",
+    "sharing_curves",
+    "setting_lines",
+    "regulation_curves",
+    "inherent_curves",
+)
+"""Tables that the page shows as sentences, grid or figures, or leaves to the result sheets."""
 _ON_SHEET_ONLY = ("board", "input_cell")
 
 
@@ -119,7 +130,7 @@ def _views(tables: dict[str, Table], outcome: StudyOutcome) -> dict[str, TableVi
     """Return the tables that have a row, by key; the page asks for them by name."""
     views = {}
     for key, table in tables.items():
-        if table.n_rows:
+        if table.n_rows and key not in _NOT_ON_THE_PAGE:
             anchors = _proofs(table, outcome) if key == "verdicts" else ()
             without = _ON_SHEET_ONLY if key == "load_balance" else ()
             views[key] = table_view(table, anchors=anchors, without=without)

@@ -65,9 +65,16 @@ def _run(tmp_path: Path, page: Path, *arguments: str) -> str:
     return subprocess.run(command, capture_output=True, text=True, timeout=240, check=True).stdout
 
 
-@pytest.fixture(scope="module", params=["small", "large"])
+_OUTCOMES = {
+    "small": made_up.outcome,
+    "large": made_up.large_outcome,
+    "one set in each mode": lambda: made_up.outcome(made_up.Size(modes=10, sets=1)),
+}
+
+
+@pytest.fixture(scope="module", params=_OUTCOMES)
 def page(request: pytest.FixtureRequest, tmp_path_factory: pytest.TempPathFactory) -> Path:
-    outcome = made_up.outcome() if request.param == "small" else made_up.large_outcome()
+    outcome = _OUTCOMES[request.param]()
     path = tmp_path_factory.mktemp("page") / f"{request.param}.html"
     path.write_text(report_page(outcome) + _MEASURE, encoding="utf-8")
     return path
