@@ -7,7 +7,7 @@ from types import MappingProxyType
 from typing import Final
 
 from study.issues import Issue, Severity
-from study.workbook.package_cells import address, split_address
+from study.workbook.package.cells import address, split_address
 from study.workbook.sheets import SHEET_ORDER
 
 FAULTS: Final[Mapping[str, str]] = MappingProxyType(

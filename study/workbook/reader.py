@@ -9,9 +9,9 @@ from functools import partial
 from pathlib import Path
 from typing import Final
 
-from study.workbook.package_names import Sheet, defined_names, read_sheets
-from study.workbook.package_opc import Package, open_package, read_relations, rels_part
-from study.workbook.package_xml import Node, as_utf8, parse
+from study.workbook.package.names import Sheet, defined_names, read_sheets
+from study.workbook.package.opc import Package, open_package, read_relations, rels_part
+from study.workbook.package.xml import Node, as_utf8, parse
 from study.workbook.result_formulas import Place, dependent_formulas, mentions_results
 from study.workbook.sheet_xml import (
     BookTables,

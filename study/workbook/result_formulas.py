@@ -11,7 +11,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from typing import Final
 
-from study.workbook.package_cells import Area, area
+from study.workbook.package.cells import Area, area
 from study.workbook.sheet_xml import LAST_COLUMN, LAST_ROW
 
 Place = tuple[str, int, int]

@@ -14,8 +14,8 @@ from typing import Final
 from xml.parsers import expat
 
 from study.issues import PackageError
-from study.workbook.package_cells import split_address
-from study.workbook.package_xml import MAIN
+from study.workbook.package.cells import split_address
+from study.workbook.package.xml import MAIN
 
 MAX_CELLS: Final = 4_000_000
 LAST_COLUMN: Final = 16_384

@@ -10,7 +10,7 @@ from study.workbook.cells import Refused, is_blank, plain, read_cell, shown
 from study.workbook.columns import Column, SheetSpec
 from study.workbook.faults import Findings, place
 from study.workbook.headings import REMARK, HeadingIndex, Match, Misfit, edit_distance, heading_key
-from study.workbook.package_cells import address
+from study.workbook.package.cells import address
 from study.workbook.reader import Rows
 from study.workbook.sheet_xml import ErrorValue, NoStoredValue, Percent, ResultFormula
 

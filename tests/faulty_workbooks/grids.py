@@ -14,7 +14,7 @@ from study.issues import Issue
 from study.model.plant import Plant
 from study.workbook.blank import sheet_headings
 from study.workbook.build import check_raw
-from study.workbook.package_cells import address
+from study.workbook.package.cells import address
 from study.workbook.reader import RawBook, RawSheet
 from study.workbook.sheet_xml import ErrorValue, NoStoredValue, Percent, ResultFormula
 from study.workbook.sheets import SHEETS

@@ -10,7 +10,7 @@ import openpyxl
 import pytest
 
 from study.workbook import check_workbook, write_workbook
-from study.workbook.package_checks import validate_package
+from study.workbook.package.checks import validate_package
 from study.workbook.sheets import SHEETS
 from tests.faulty_workbooks import good
 

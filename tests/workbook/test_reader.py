@@ -11,7 +11,7 @@ from typing import Any
 import pytest
 
 from study.issues import PackageError
-from study.workbook.package_opc import package_from_bytes
+from study.workbook.package.opc import package_from_bytes
 from study.workbook.reader import RawBook, read_package
 from study.workbook.sheet_xml import ErrorValue, NoStoredValue, Percent, ResultFormula
 from tests.workbook.sheet_samples import MAIN, package
@@ -56,7 +56,7 @@ def test_a_part_in_utf_16() -> None:
         '<c r="A1" t="inlineStr"><is><t>Größe</t></is></c></row></sheetData></worksheet>'
     )
     data = package({"Loads": "<row/>"})
-    from tests.workbook.package_samples import parts, rezip
+    from tests.workbook.package.samples import parts, rezip
 
     content = parts(data) | {"xl/worksheets/sheet1.xml": text.encode("utf-16")}
     book = read_package(package_from_bytes(rezip(content)), "book.xlsx")

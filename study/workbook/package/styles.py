@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
-from study.workbook.package_xml import (
+from study.workbook.package.xml import (
     COMPATIBILITY,
     MAIN,
     XML_LINE,

@@ -6,11 +6,11 @@ import re
 from collections.abc import Collection, Iterable
 from dataclasses import replace
 
-from study.workbook.package_cells import area
-from study.workbook.package_names import Sheet, defined_names
-from study.workbook.package_opc import Package
-from study.workbook.package_xml import Document, Node
-from study.workbook.package_zip import part_key
+from study.workbook.package.cells import area
+from study.workbook.package.names import Sheet, defined_names
+from study.workbook.package.opc import Package
+from study.workbook.package.xml import Document, Node
+from study.workbook.package.zip import part_key
 
 _NOTICE = "Not part of the latest run; the sheet is kept because other cells refer to it."
 

@@ -9,7 +9,7 @@ from dataclasses import dataclass, field
 from pathlib import Path
 
 from study.issues import PackageError
-from study.workbook.package_xml import (
+from study.workbook.package.xml import (
     CONTENT_TYPES,
     MAIN,
     OFFICE,
@@ -19,7 +19,7 @@ from study.workbook.package_xml import (
     check_prolog,
     parse,
 )
-from study.workbook.package_zip import MAX_FILE_BYTES, Member, inflate, part_key, read_members, verify
+from study.workbook.package.zip import MAX_FILE_BYTES, Member, inflate, part_key, read_members, verify
 
 TYPES_PART = "[Content_Types].xml"
 SPREADSHEET = "application/vnd.openxmlformats-officedocument.spreadsheetml."

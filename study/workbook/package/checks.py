@@ -8,9 +8,9 @@ from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
 
 from study.issues import PackageError
-from study.workbook.package_checks_sheets import cell_texts, check_sheet, check_tables
-from study.workbook.package_names import WORKBOOK_ORDER, Sheet, defined_names, read_sheets
-from study.workbook.package_opc import (
+from study.workbook.package.checks_sheets import cell_texts, check_sheet, check_tables
+from study.workbook.package.names import WORKBOOK_ORDER, Sheet, defined_names, read_sheets
+from study.workbook.package.opc import (
     SPREADSHEET,
     STYLES_TYPE,
     TYPES_PART,
@@ -21,11 +21,11 @@ from study.workbook.package_opc import (
     read_content_types,
     rels_part,
 )
-from study.workbook.package_parts import read_graph
-from study.workbook.package_styles import FIRST_CUSTOM_FORMAT, ORDER
-from study.workbook.package_tables import TABLE_TYPE, read_tables
-from study.workbook.package_xml import OFFICE, Node, as_utf8, effective, out_of_order, parse, whole_number
-from study.workbook.package_zip import part_key
+from study.workbook.package.parts import read_graph
+from study.workbook.package.styles import FIRST_CUSTOM_FORMAT, ORDER
+from study.workbook.package.tables import TABLE_TYPE, read_tables
+from study.workbook.package.xml import OFFICE, Node, as_utf8, effective, out_of_order, parse, whole_number
+from study.workbook.package.zip import part_key
 
 LONGEST_SHEET_NAME = 31
 _FORBIDDEN = re.compile(r"[\[\]:*?/\\]|^'|'$")

@@ -21,7 +21,7 @@ from lxml import etree
 
 from study.issues import PackageError
 from study.workbook.package import graft_result_sheets, validate_package
-from tests.workbook.package_samples import (
+from tests.workbook.package.samples import (
     MAIN,
     OFFICE,
     VBA,

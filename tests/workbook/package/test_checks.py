@@ -11,8 +11,8 @@ import re
 import pytest
 
 from study.workbook.package import graft_result_sheets, validate_package
-from study.workbook.package_cells import address, split_address
-from tests.workbook.package_samples import (
+from study.workbook.package.cells import address, split_address
+from tests.workbook.package.samples import (
     engineers_book,
     openpyxl_book,
     packed_book,

@@ -6,9 +6,9 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 
 from study.issues import PackageError
-from study.workbook.package_opc import Package, Relation, read_relations, rels_part
-from study.workbook.package_xml import OFFICE, Document, Node, escape, whole_number
-from study.workbook.package_zip import part_key
+from study.workbook.package.opc import Package, Relation, read_relations, rels_part
+from study.workbook.package.xml import OFFICE, Document, Node, escape, whole_number
+from study.workbook.package.zip import part_key
 
 MARK = "StudyResultSheet"
 """Hidden name, scoped to a sheet, whose value is that sheet's name as text.

@@ -9,8 +9,8 @@ from __future__ import annotations
 import pytest
 from lxml import etree
 
-from study.workbook.package_styles import EMPTY_STYLES, ORDER, merge_styles
-from tests.workbook.package_samples import MAIN, engineers_book, parts, result_book
+from study.workbook.package.styles import EMPTY_STYLES, ORDER, merge_styles
+from tests.workbook.package.samples import MAIN, engineers_book, parts, result_book
 
 NS = {"m": MAIN}
 NO_FILLS = "<fill><patternFill patternType='none'/></fill><fill><patternFill patternType='gray125'/></fill>"

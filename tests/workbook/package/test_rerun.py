@@ -15,7 +15,7 @@ from openpyxl.workbook.defined_name import DefinedName
 
 from study.issues import PackageError
 from study.workbook.package import graft_result_sheets, validate_package
-from tests.workbook.package_samples import (
+from tests.workbook.package.samples import (
     MAIN,
     OFFICE,
     edited,

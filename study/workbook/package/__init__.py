@@ -6,9 +6,9 @@ Read a workbook with `open_package`, join the result sheets to it with `graft_re
 
 from __future__ import annotations
 
-from study.workbook.package_checks import validate_package
-from study.workbook.package_graft import graft_result_sheets
-from study.workbook.package_opc import Package, open_package
-from study.workbook.package_write import write_atomically
+from study.workbook.package.checks import validate_package
+from study.workbook.package.graft import graft_result_sheets
+from study.workbook.package.opc import Package, open_package
+from study.workbook.package.write import write_atomically
 
 __all__ = ["Package", "graft_result_sheets", "open_package", "validate_package", "write_atomically"]

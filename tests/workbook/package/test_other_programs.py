@@ -12,7 +12,7 @@ import pytest
 import python_calamine
 
 from study.workbook.package import graft_result_sheets, validate_package
-from tests.workbook.package_samples import (
+from tests.workbook.package.samples import (
     VBA,
     engineers_book,
     openpyxl_book,

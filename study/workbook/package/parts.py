@@ -7,7 +7,7 @@ import re
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import replace
 
-from study.workbook.package_opc import (
+from study.workbook.package.opc import (
     TYPES_PART,
     Package,
     Relation,
@@ -15,8 +15,8 @@ from study.workbook.package_opc import (
     read_relations,
     rels_part,
 )
-from study.workbook.package_xml import RELATIONS, XML_LINE, Document, escape
-from study.workbook.package_zip import part_key
+from study.workbook.package.xml import RELATIONS, XML_LINE, Document, escape
+from study.workbook.package.zip import part_key
 
 Graph = Mapping[str, tuple[Relation, ...]]
 """Relations by the compared name of the part that has them; the package itself is ``""``."""

@@ -5,9 +5,9 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, replace
 
-from study.workbook.package_opc import SPREADSHEET, TYPES_PART, Package, read_content_types
-from study.workbook.package_xml import as_utf8, parse, whole_number
-from study.workbook.package_zip import part_key
+from study.workbook.package.opc import SPREADSHEET, TYPES_PART, Package, read_content_types
+from study.workbook.package.xml import as_utf8, parse, whole_number
+from study.workbook.package.zip import part_key
 
 TABLE_TYPE = SPREADSHEET + "table+xml"
 

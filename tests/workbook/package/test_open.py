@@ -19,10 +19,10 @@ from pathlib import Path
 import pytest
 
 from study.issues import PackageError
-from study.workbook import package_zip
 from study.workbook.package import graft_result_sheets, open_package, validate_package
-from study.workbook.package_opc import package_from_bytes
-from tests.workbook.package_samples import (
+from study.workbook.package import zip as zip_module
+from study.workbook.package.opc import package_from_bytes
+from tests.workbook.package.samples import (
     OFFICE,
     edited,
     engineers_book,
@@ -320,11 +320,11 @@ def test_members_that_share_bytes():
     with zipfile.ZipFile(io.BytesIO(outer + directory + end)) as package:
         assert package.namelist() == ["outer.bin", "inner.xml"]
     with pytest.raises(PackageError, match="zip directory does not hold together"):
-        package_zip.read_members(outer + directory + end)
+        zip_module.read_members(outer + directory + end)
     whole = outer + inner
     moved = directory[:-13] + struct.pack("<L", len(outer)) + b"inner.xml"
     end = struct.pack("<4s4H2LH", b"PK\5\6", 0, 0, 2, 2, len(moved), len(whole), 0)
-    assert [m.name for m in package_zip.read_members(whole + moved + end)] == ["outer.bin", "inner.xml"]
+    assert [m.name for m in zip_module.read_members(whole + moved + end)] == ["outer.bin", "inner.xml"]
 
 
 def zeros(size):
@@ -343,7 +343,7 @@ def test_a_part_that_says_less_than_it_holds(monkeypatch):
     """The directory claims a small size; not much more than that may be inflated."""
     summed = []
     real = zlib.crc32
-    monkeypatch.setattr(package_zip.zlib, "crc32", lambda c, s=0: (summed.append(len(c)), real(c, s))[1])
+    monkeypatch.setattr(zip_module.zlib, "crc32", lambda c, s=0: (summed.append(len(c)), real(c, s))[1])
     data = bytearray(zeros(50 * 2**20))
     summed.clear()
     at = list(headers(bytes(data)))[-1]
@@ -357,7 +357,7 @@ def test_a_part_that_says_less_than_it_holds(monkeypatch):
 
 
 def test_too_much_in_all(monkeypatch, book):
-    monkeypatch.setattr(package_zip, "MAX_TOTAL_BYTES", 2**14)
+    monkeypatch.setattr(zip_module, "MAX_TOTAL_BYTES", 2**14)
     refused(book, "unpacks to more than")
 
 
@@ -367,8 +367,8 @@ def test_too_many_parts():
 
 
 def test_a_file_too_large(monkeypatch, book, tmp_path):
-    monkeypatch.setattr("study.workbook.package_opc.MAX_FILE_BYTES", 1000)
-    monkeypatch.setattr(package_zip, "MAX_FILE_BYTES", 1000)
+    monkeypatch.setattr("study.workbook.package.opc.MAX_FILE_BYTES", 1000)
+    monkeypatch.setattr(zip_module, "MAX_FILE_BYTES", 1000)
     path = tmp_path / "BOOK.xlsx"
     path.write_bytes(book)
     with pytest.raises(PackageError, match=r"^BOOK\.xlsx: the file is larger than"):
@@ -378,13 +378,13 @@ def test_a_file_too_large(monkeypatch, book, tmp_path):
 def test_xml_with_too_many_elements(book, monkeypatch):
     flood = edited(book, workbook=lambda c: c.replace(b"<sheets>", b"<sheets>" + b"<sheet/>" * 1_000_000))
     refused(flood, "compressed more")
-    monkeypatch.setattr("study.workbook.package_xml.MAX_NODES", 10_000)
+    monkeypatch.setattr("study.workbook.package.xml.MAX_NODES", 10_000)
     noise = b"".join(b'<a b="%d"/>' % n for n in random.Random(2).choices(range(10**9), k=11_000))
     refused(edited(book, workbook=lambda c: c.replace(b"<sheets>", noise + b"<sheets>")), "larger or deeper")
 
 
 def test_an_xml_part_that_is_too_large(book, monkeypatch):
-    monkeypatch.setattr("study.workbook.package_xml.MAX_XML_BYTES", 1000)
+    monkeypatch.setattr("study.workbook.package.xml.MAX_XML_BYTES", 1000)
     refused(book, "larger than any workbook needs")
 
 
@@ -422,7 +422,7 @@ def test_64_bit_fields_of_a_member_are_read_and_not_carried_on(book):
     assert b"\x01\x00\x10\x00" in out.getvalue()[:200]
     joined = graft_result_sheets(out.getvalue(), result_book())
     assert parts(joined)["xl/sharedStrings.xml"] == parts(book)["xl/sharedStrings.xml"]
-    assert not any(m.local_extra for m in package_zip.read_members(joined))
+    assert not any(m.local_extra for m in zip_module.read_members(joined))
 
 
 def test_streamed_members_are_read_and_written_plainly(book):

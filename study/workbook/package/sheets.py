@@ -6,8 +6,8 @@ import re
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
-from study.workbook.package_styles import StyleMap
-from study.workbook.package_xml import MAIN, Document, Node, as_utf8, escape, parse
+from study.workbook.package.styles import StyleMap
+from study.workbook.package.xml import MAIN, Document, Node, as_utf8, escape, parse
 
 _CELL = re.compile(r'<c r="([A-Z]+\d+)"((?: [a-z]+="[^"]*")*)(?:/>|>(?:<v>(\d+)</v></c>)?)')
 _ROW = re.compile(r"<row\b[^>]*>")

@@ -7,7 +7,7 @@ from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass, field, replace
 
 from study.issues import PackageError
-from study.workbook.package_names import (
+from study.workbook.package.names import (
     MARK,
     Changes,
     DefinedName,
@@ -19,7 +19,7 @@ from study.workbook.package_names import (
     read_sheets,
     refuse_locked,
 )
-from study.workbook.package_opc import (
+from study.workbook.package.opc import (
     STYLES_TYPE,
     TYPES_PART,
     Package,
@@ -28,7 +28,7 @@ from study.workbook.package_opc import (
     read_content_types,
     rels_part,
 )
-from study.workbook.package_parts import (
+from study.workbook.package.parts import (
     Graph,
     edit_content_types,
     edit_relations,
@@ -39,12 +39,12 @@ from study.workbook.package_parts import (
     read_graph,
     relations_xml,
 )
-from study.workbook.package_sheets import OldSheet, old_sheet, rewrite_sheet, rewrite_table, shared_strings
-from study.workbook.package_stale import is_referred_to, stale_sheet
-from study.workbook.package_styles import EMPTY_STYLES, StyleMap, merge_styles
-from study.workbook.package_tables import TablePlace, place_tables, read_tables
-from study.workbook.package_xml import OFFICE, Document
-from study.workbook.package_zip import Member, inflate, new_member, part_key, write_members
+from study.workbook.package.sheets import OldSheet, old_sheet, rewrite_sheet, rewrite_table, shared_strings
+from study.workbook.package.stale import is_referred_to, stale_sheet
+from study.workbook.package.styles import EMPTY_STYLES, StyleMap, merge_styles
+from study.workbook.package.tables import TablePlace, place_tables, read_tables
+from study.workbook.package.xml import OFFICE, Document
+from study.workbook.package.zip import Member, inflate, new_member, part_key, write_members
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -15,12 +15,11 @@ from pathlib import Path
 import pytest
 
 from study.issues import PackageError
-from study.workbook import package_write
-from study.workbook.package import open_package, write_atomically
-from tests.workbook.package_samples import engineers_book
+from study.workbook.package import open_package, write, write_atomically
+from tests.workbook.package.samples import engineers_book
 
 OLD, NEW = b"the old file", b"the new file " * 1000
-ROOT = Path(__file__).parents[2]
+ROOT = Path(__file__).parents[3]
 
 
 @pytest.fixture
@@ -249,4 +248,4 @@ def test_the_flush_comes_before_the_rename(target, monkeypatch):
         monkeypatch.setattr(os, name, lambda *a, name=name, real=real: (steps.append(name), real(*a))[1])
     write_atomically(target, NEW)
     assert steps[:2] == ["fsync", "replace"]
-    assert package_write.os.replace is os.replace
+    assert write.os.replace is os.replace

@@ -6,10 +6,10 @@ import re
 from collections import Counter
 from collections.abc import Iterator, Mapping, Sequence
 
-from study.workbook.package_cells import address, area, split_address
-from study.workbook.package_sheets import SHEET_ORDER
-from study.workbook.package_tables import TablePlace
-from study.workbook.package_xml import Node, out_of_order, whole_number
+from study.workbook.package.cells import address, area, split_address
+from study.workbook.package.sheets import SHEET_ORDER
+from study.workbook.package.tables import TablePlace
+from study.workbook.package.xml import Node, out_of_order, whole_number
 
 _TABLE_NAME = re.compile(r"[^\W\d][\w.]*|\\[\w.]*")
 _CELL_LIKE = re.compile(r"[A-Za-z]{1,3}\d+|[rR]\d*[cC]\d*|[rRcC]")
