@@ -126,9 +126,13 @@ def field_supply_in_use(genset: Genset) -> FieldSupply:
 def compensation_reactance(genset: Genset) -> float:
     """Return the reactance of the set's droop circuit as its regulator sees it [pu of rated kVA].
 
+    0 where the circuit is not in use: no droop, kvar control, no regulator.
+
     Source: closed form of IEEE 421.5-2016 clause 4; see `study.formulas.load_compensation`.
     """
     setting = genset.regulator
+    if setting.mode not in ("droop", "cross-current") or not has_regulator(genset):
+        return 0.0
     xc = reactance_from_droop(
         setting.droop_pu,
         setting.droop_base,
@@ -181,7 +185,9 @@ def _regulate(genset: Genset) -> SetRegulation:
     machine, supply = machine_of(genset), field_supply_in_use(genset)
     p, q = _loads(genset)
     without = _held(genset, supply, _regulated_without_droop(genset, machine, p, q))
-    with_droop = _held(genset, supply, _regulated_with_droop(genset, p, q))
+    # Cross-current compensation compares a set with the others, so a set alone has no droop by it.
+    drooped = genset.regulator.mode == "droop" and compensation_reactance(genset) != 0.0
+    with_droop = _held_with_droop(genset, supply, p, q) if drooped else without
     field = field_required(without, LOADS_PU, np.arccos(genset.cos_phi_rated), machine)
     rated_field = rated_load_field(genset.cos_phi_rated, machine)
     return SetRegulation(
@@ -198,9 +204,9 @@ def _regulate(genset: Genset) -> SetRegulation:
         band_centred_pu=_half_range(without),
         band_as_set_with_droop_pu=_largest_distance(with_droop),
         droop_no_load_to_rated_pu=float(with_droop[0] - with_droop[-1]),
-        compensation_x_pu=compensation_reactance(genset) if has_regulator(genset) else 0.0,
+        compensation_x_pu=compensation_reactance(genset),
         reaches_ceiling_at_pu=_ceiling_load(genset, supply, machine),
-        findings=_findings(genset, supply, machine, without),
+        findings=(*_findings(genset, supply, machine, without), *_droop_findings(genset, with_droop)),
     )
 
 
@@ -225,6 +231,15 @@ def _held(genset: Genset, supply: FieldSupply, regulated: FloatArray) -> FloatAr
     top = regulated if has_regulator(genset) else np.full(p.shape, 2.0)
     machine = machine_of(genset)
     return held_voltage(p, q, exponent=1.0, v_top_pu=top, supply=supply, machine=machine)
+
+
+def _held_with_droop(genset: Genset, supply: FieldSupply, p: FloatArray, q: FloatArray) -> FloatArray:
+    """Return the drooped line within the field supply; NaN where the droop leaves no voltage at some load."""
+    try:
+        regulated = _regulated_with_droop(genset, p, q)
+    except ValueError:
+        return np.full(p.shape, np.nan)
+    return _held(genset, supply, regulated)
 
 
 def _loads(genset: Genset) -> tuple[FloatArray, FloatArray]:
@@ -266,6 +281,14 @@ def _findings(genset: Genset, supply: FieldSupply, machine: Machine, u_pu: Float
             "load even without droop."
         )
     return tuple(found)
+
+
+def _droop_findings(genset: Genset, with_droop: FloatArray) -> tuple[str, ...]:
+    if compensation_reactance(genset) < 0.0:
+        return (f"{genset.name}: its droop circuit is reversed; its voltage rises with reactive load.",)
+    if np.isnan(with_droop).any() and has_regulator(genset):
+        return (f"{genset.name}: with its droop it holds no voltage at some load up to rated.",)
+    return ()
 
 
 def _law(genset: Genset) -> str:

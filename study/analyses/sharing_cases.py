@@ -2,25 +2,111 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
 
 import numpy as np
 
-from study.analyses.sharing_curves import Group, share_of, solve_scaled, with_trim
+from study.analyses.sharing_change import SETTINGS, changed_network, own_value, why_not
+from study.analyses.sharing_group import Group, group_of, kvar_off, kw_off, solve_scaled, tolerances
 from study.analyses.sharing_options import SharingOptions
-from study.formulas.sharing import active_sharing_limit, reactive_sharing_limit
 from study.model.modes import Event
-from study.network.batch import BatchSolution, Settings
+from study.model.plant import Plant
+from study.network.batch import BatchSolution
+from study.network.solution import limit_words
 from study.results.arrays import FloatArray, read_only
-from study.results.sharing import MaladjustedCase
+from study.results.sharing import MaladjustedCase, NotStudied
 
-# unit word of the event -> (name of the setting, field of Settings, the source's own value)
-SETTINGS = {
-    "% no-load voltage": ("no-load voltage", "no_load_voltage_pu", "v_ref_pu"),
-    "% voltage droop": ("voltage droop", "voltage_droop_pu", "droop_pu"),
-    "% no-load frequency": ("no-load frequency", "no_load_frequency_pu", "f_no_load_pu"),
-    "% speed droop": ("speed droop", "speed_droop_pu", "speed_droop_pu"),
-}
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Parallel:
+    """Sets in parallel with the mode's solution as set, its first row."""
+
+    group: Group
+    own: BatchSolution
+
+
+def maladjusted_cases(
+    plant: Plant,
+    groups: dict[tuple[str, str], Parallel],
+    not_studied: Sequence[NotStudied],
+    options: SharingOptions,
+) -> tuple[MaladjustedCase, ...]:
+    """Return every maladjustment on the sheet Events as a case.
+
+    Rows of one case add up: each is reported with the rows before it in force.
+
+    Parameters
+    ----------
+    plant : Plant
+        Holds the events.
+    groups : dict
+        Sets in parallel by mode and source.
+    not_studied : sequence of NotStudied
+        Sets in parallel without a solution as set, for the reason.
+    options : SharingOptions
+        Tolerances.
+
+    Returns
+    -------
+    tuple of MaladjustedCase
+        In the order of the sheet; what cannot be solved says why.
+    """
+    found: list[MaladjustedCase] = []
+    rows: dict[tuple[str, str], list[Event]] = {}
+    for event in plant.events:
+        if event.kind != "maladjustment":
+            continue
+        known = groups.get((event.mode, event.equipment))
+        reason = _not_in_parallel(event, not_studied) if known is None else why_not(known.group.at, event)
+        if known is None or reason:
+            found.append(_unsolved(plant, event, reason, known))
+            continue
+        earlier = rows.setdefault((event.case, event.mode), [])
+        earlier.append(event)
+        found.append(maladjusted_case(known.group, tuple(earlier), known.own, options))
+    return tuple(found)
+
+
+def _not_in_parallel(event: Event, not_studied: Sequence[NotStudied]) -> str:
+    for group in not_studied:
+        if group.mode == event.mode and event.equipment in group.sets:
+            return group.reason
+    return f"{event.equipment} does not run in parallel with another set in {event.mode}."
+
+
+def _unsolved(plant: Plant, event: Event, reason: str, known: Parallel | None) -> MaladjustedCase:
+    sets = (event.equipment,) if known is None else known.group.names
+    none = np.full(len(sets), np.nan)
+    p = none if known is None else known.own.source_p_kw[0, known.group.places]
+    q = none if known is None else known.own.source_q_kvar[0, known.group.places]
+    name = SETTINGS.get(event.unit, str(event.unit))
+    empty = read_only(none)
+    return MaladjustedCase(
+        case=event.case,
+        mode=event.mode,
+        genset=event.equipment,
+        setting=name,
+        value_pu=float("nan") if event.size is None else event.size / 100.0,
+        was_pu=own_value(plant, event),
+        cell=event.cell,
+        solved=False,
+        sets=sets,
+        p_before_kw=read_only(p),
+        q_before_kvar=read_only(q),
+        p_after_kw=empty,
+        q_after_kvar=empty,
+        p_tolerance_kw=empty,
+        q_tolerance_kvar=empty,
+        p_share_kw=empty,
+        q_share_kvar=empty,
+        s_rated_kva=empty,
+        u_before_pu=float("nan"),
+        u_after_pu=float("nan"),
+        f_before_hz=float("nan"),
+        f_after_hz=float("nan"),
+        sentence=f"{event.case}: {event.equipment} in {event.mode} is not studied: {reason}",
+    )
 
 
 def maladjusted_case(
@@ -45,87 +131,116 @@ def maladjusted_case(
         The case; ``solved`` is False where the plant has no solution so adjusted.
     """
     event = events[-1]
-    settings = Settings()
-    for row in events:
-        place = group.at.source_names.index(row.equipment)
-        settings = with_trim(
-            settings, SETTINGS[str(row.unit)][1], place, (row.size or 0.0) / 100.0, group.at.sources
-        )
-    after = solve_scaled(group, np.ones(1), settings)
-    p_before, q_before = _powers(before, group)
-    p_after, q_after = _powers(after, group)
-    f_rated = group.at.network.plant.project.f_rated_hz
-    p_limit = active_sharing_limit(
-        group.p_rated_kw, of_largest=options.kw_of_largest, of_own=options.kw_of_own
+    changed = group_of(
+        changed_network(group.at, events),
+        group.island,
+        group.places.tolist(),
+        group.loads,
+        p_kw=group.p_kw,
+        q_kvar=group.q_kvar,
     )
-    q_limit = reactive_sharing_limit(
-        group.q_rated_kvar, of_largest=options.kvar_of_largest, of_smallest=options.kvar_of_smallest
-    )
-    name, _, own = SETTINGS[str(event.unit)]
-    was = float(getattr(group.at.sources[group.at.source_names.index(event.equipment)], own))
+    plant = group.at.network.plant
+    after = solve_scaled(changed, np.ones(1))
+    p, q = after.source_p_kw[0, group.places], after.source_q_kvar[0, group.places]
+    p_limit, q_limit = tolerances(group, options)
+    f_rated = plant.project.f_rated_hz
     case = MaladjustedCase(
         case=event.case,
         mode=event.mode,
         genset=event.equipment,
-        setting=name,
-        value_pu=(event.size or 0.0) / 100.0,
-        was_pu=was,
+        setting=SETTINGS[event.unit],
+        value_pu=float(event.size or 0.0) / 100.0,
+        was_pu=own_value(plant, event),
         cell=event.cell,
         solved=bool(after.solved[0]),
-        sets=tuple(s.name for s in group.sources),
-        p_before_kw=read_only(p_before),
-        q_before_kvar=read_only(q_before),
-        p_after_kw=read_only(p_after),
-        q_after_kvar=read_only(q_after),
+        sets=group.names,
+        p_before_kw=read_only(before.source_p_kw[0, group.places]),
+        q_before_kvar=read_only(before.source_q_kvar[0, group.places]),
+        p_after_kw=read_only(p),
+        q_after_kvar=read_only(q),
         p_tolerance_kw=read_only(p_limit),
-        q_tolerance_kvar=read_only(np.full(len(group.sources), q_limit)),
-        p_share_kw=read_only(share_of(p_after.sum(), group.p_rated_kw, p_after, group.shares_kw)),
-        q_share_kvar=read_only(share_of(q_after.sum(), group.q_rated_kvar, q_after, group.shares_kvar)),
-        s_rated_kva=read_only([s.s_rated_kva for s in group.sources]),
-        u_before_pu=float(before.source_u_pu[0, group.places[0]]),
-        u_after_pu=float(after.source_u_pu[0, group.places[0]]),
+        q_tolerance_kvar=read_only(q_limit),
+        p_share_kw=read_only(p - kw_off(changed, p)),
+        q_share_kvar=read_only(q - kvar_off(changed, q)),
+        s_rated_kva=read_only(group.s_rated_kva),
+        u_before_pu=float(before.source_u_pu[0, group.places].mean()),
+        u_after_pu=float(after.source_u_pu[0, group.places].mean()),
         f_before_hz=float(before.frequency_pu[0, group.island]) * f_rated,
         f_after_hz=float(after.frequency_pu[0, group.island]) * f_rated,
         sentence="",
     )
-    return _with_sentence(case, after.reason[0])
-
-
-def _powers(solution: BatchSolution, group: Group) -> tuple[FloatArray, FloatArray]:
-    return solution.source_p_kw[0, group.places], solution.source_q_kvar[0, group.places]
-
-
-def _with_sentence(case: MaladjustedCase, reason: str) -> MaladjustedCase:
-    opening = (
-        f"With the {case.setting} of {case.genset} at {100.0 * case.value_pu:.1f} % instead of "
-        f"{100.0 * case.was_pu:.1f} %"
-    )
     if not case.solved:
-        return replace(case, sentence=f"{opening} the plant has no operating point: {reason}")
-    voltage = case.setting in ("no-load voltage", "voltage droop")
-    unit = "kvar" if voltage else "kW"
-    now = case.q_after_kvar if voltage else case.p_after_kw
-    off = now - (case.q_share_kvar if voltage else case.p_share_kw)
-    tolerance = case.q_tolerance_kvar if voltage else case.p_tolerance_kw
-    most, least = int(off.argmax()), int(off.argmin())
-    beyond = bool((np.abs(off) > tolerance).any())
-    overload = [
-        f"{name} is loaded to {100.0 * s / rated:.0f} % of its kVA"
-        for name, s, rated in zip(
-            case.sets, np.hypot(case.p_after_kw, case.q_after_kvar), case.s_rated_kva, strict=True
+        return replace(
+            case,
+            sentence=f"{_opening(case, len(events))} the plant has no operating point: {after.reason[0]}",
         )
-        if s > rated
-    ]
+    words = limit_words(after, 0)
+    held = [(name, words[k]) for k, name in zip(group.places, group.names, strict=True) if words[k]]
     parts = [
-        f"{opening}, {case.sets[most]} takes {off[most]:.0f} {unit} more than its share "
-        f"({now[most]:.0f} {unit}) and {case.sets[least]} {-off[least]:.0f} {unit} less "
-        f"({now[least]:.0f} {unit}); the tolerance is {tolerance.min():.0f} {unit}, "
-        + ("so the sharing is out of tolerance." if beyond else "so the sharing still holds.")
+        f"{_opening(case, len(events))}, {_who_takes_what(case)}",
+        *_overloads(case, group.p_rated_kw),
+        *(f"{name} is held at its {word} limit." for name, word in held),
+        _cure(case, group),
     ]
-    if overload:
-        parts.append("; ".join(overload) + ".")
-    parts.append(
-        f"Set the {case.setting} of {case.genset} back to {100.0 * case.was_pu:.1f} %, then trim the "
-        f"{'no-load voltages' if voltage else 'no-load frequencies'} at 75 % load."
-    )
     return replace(case, sentence=" ".join(parts))
+
+
+def _opening(case: MaladjustedCase, rows: int) -> str:
+    before = ", after the rows of this case before it," if rows > 1 else ""
+    return (
+        f"With the {case.setting} of {case.genset} at {100.0 * case.value_pu:.1f} % instead of "
+        f"{100.0 * case.was_pu:.1f} %{before}"
+    ).rstrip(",")
+
+
+def _of_voltage(case: MaladjustedCase) -> bool:
+    return case.setting in ("no-load voltage", "voltage droop")
+
+
+def _who_takes_what(case: MaladjustedCase) -> str:
+    unit = "kvar" if _of_voltage(case) else "kW"
+    now = case.q_after_kvar if _of_voltage(case) else case.p_after_kw
+    off = now - (case.q_share_kvar if _of_voltage(case) else case.p_share_kw)
+    tolerance = case.q_tolerance_kvar if _of_voltage(case) else case.p_tolerance_kw
+    most, least = int(off.argmax()), int(off.argmin())
+    worst = _furthest(np.abs(off) / tolerance, case)
+    allowed = f"{case.sets[worst]} may be {tolerance[worst]:.0f} {unit} off"
+    if np.abs(off).max() < 0.5:
+        return f"every set keeps its share of {unit}; {allowed}."
+    verdict = "out of tolerance" if abs(off[worst]) > tolerance[worst] else "within tolerance"
+    return (
+        f"{case.sets[most]} takes {off[most]:.0f} {unit} more than its share ({now[most]:.0f} {unit}) and "
+        f"{case.sets[least]} {-off[least]:.0f} {unit} less ({now[least]:.0f} {unit}); {allowed}, so the "
+        f"sharing is {verdict}."
+    )
+
+
+def _furthest(used: FloatArray, case: MaladjustedCase) -> int:
+    """Return the set that uses most of its tolerance; of equal ones the one whose setting is off."""
+    equal = np.flatnonzero(used > used.max() - 1e-6)
+    return int(next((k for k in equal if case.sets[k] == case.genset), equal[0]))
+
+
+def _overloads(case: MaladjustedCase, p_rated_kw: FloatArray) -> list[str]:
+    loaded = (
+        ("kVA", np.hypot(case.p_after_kw, case.q_after_kvar) / case.s_rated_kva),
+        ("kW", case.p_after_kw / p_rated_kw),
+    )
+    out = [
+        f"{name} is loaded to {100.0 * part:.0f} % of its {unit}."
+        for unit, parts in loaded
+        for name, part in zip(case.sets, parts, strict=True)
+        if part > 1.0
+    ]
+    driven = [name for name, p in zip(case.sets, case.p_after_kw, strict=True) if p < -1e-6]
+    return out + [f"{name} is driven as a motor." for name in driven]
+
+
+def _cure(case: MaladjustedCase, group: Group) -> str:
+    voltage = _of_voltage(case)
+    trim = f"trim the {'no-load voltages' if voltage else 'no-load frequencies'} at 75 % load."
+    before = kvar_off(group, case.q_before_kvar) if voltage else kw_off(group, case.p_before_kw)
+    tolerance = case.q_tolerance_kvar if voltage else case.p_tolerance_kw
+    if (np.abs(before) > tolerance).any():
+        return f"As the workbook sets them the sets are out of tolerance too: {trim}"
+    return f"Set the {case.setting} of {case.genset} back to {100.0 * case.was_pu:.1f} %, then {trim}"

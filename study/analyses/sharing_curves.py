@@ -1,278 +1,200 @@
-"""kW and kvar of sets in parallel over the load, as set and as trimmed at 75 % load."""
+"""kW and kvar of sets in parallel over the load: factors on the consumers, the sets as set, the curves.
+
+Consumers are scaled together at their own power factors; synchronous motors, filters and supplies at a set
+power keep theirs. Three scenarios show how the load on the sets goes with the factor; everything else is then
+solved at the factors that give round loads.
+"""
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from collections.abc import Iterator
+from dataclasses import dataclass
 
 import numpy as np
 
-from study.formulas.load_compensation import compensated_voltage, compensated_voltage_reactive_current
-from study.formulas.sharing import proportional_share
-from study.network.batch import BatchSolution, Settings, solve_batch
-from study.network.network import ModeNetwork
-from study.network.sources import Law, Source, Speed
-from study.results.arrays import BoolArray, FloatArray, IntArray, read_only
+from study.analyses.sharing_group import COMPENSATED, Group, kvar_off, kw_off, solve_scaled
+from study.network.batch import BatchSolution
+from study.network.settings import Settings
+from study.network.sources import Speed
+from study.results.arrays import FloatArray, read_only
 from study.results.sharing import SharingCurve
 
-LOADS_PU = np.linspace(0.20, 1.00, 17)
-_TRIM_AT = 11  # 75 % load, where the rules have the sets tuned
-_TRIMS = 4
+# of the sum of rated kW: the range over which the rules have sharing judged (ClassNK 2.4.14-3)
+LOADS_PU = np.array([0.20, 0.30, 0.40, 0.50, 0.60, 0.70, 0.75, 0.80, 0.90, 1.00])
+TRIMMED_AT_PU = 0.75  # where the rules have the sets tuned
+NUDGE = {"voltage": 0.003, "frequency": 0.0005}  # small against any droop, large against rounding
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Group:
-    """The sets of one island, in the mode's network.
+class Nudge:
+    """One set's no-load voltage or frequency moved a little at one load.
 
-    ``places`` are the sets' positions among the mode's sources. ``shares_kw`` and ``shares_kvar`` [set] are
-    False for a set that runs at a set power, or whose kvar is controlled: it takes no part in sharing.
+    ``quantity`` is a key of `NUDGE`, ``n`` the set's place in the group; ``row`` and ``base`` are the rows of
+    the solution with and without the nudge.
     """
 
-    at: ModeNetwork
-    island: int
-    places: IntArray
-    loads: BoolArray
-    p_kw: FloatArray
-    q_kvar: FloatArray
-
-    @property
-    def sources(self) -> tuple[Source, ...]:
-        """The sets."""
-        return tuple(self.at.sources[k] for k in self.places)
-
-    @property
-    def p_rated_kw(self) -> FloatArray:
-        """Rated kW of the sets [set]."""
-        return np.array([s.p_rated_kw for s in self.sources])
-
-    @property
-    def q_rated_kvar(self) -> FloatArray:
-        """Rated kvar of the sets [set]."""
-        return np.array([s.q_rated_kvar for s in self.sources])
-
-    @property
-    def shares_kw(self) -> BoolArray:
-        """Whether each set takes part in kW sharing [set]."""
-        return np.array([s.speed != Speed.FIXED for s in self.sources])
-
-    @property
-    def shares_kvar(self) -> BoolArray:
-        """Whether each set takes part in kvar sharing [set]."""
-        return np.array([s.law != Law.REACTIVE_POWER for s in self.sources])
+    quantity: str
+    n: int
+    base: int
+    row: int
 
 
-def solve_scaled(group: Group, scale: FloatArray, settings: Settings | None = None) -> BatchSolution:
-    """Solve the mode with the island's loads scaled, everything else left alone.
+@dataclass(frozen=True, slots=True, kw_only=True)
+class AsSet:
+    """The sets as the workbook sets them.
+
+    The first row of ``own`` is the mode's own load. ``solution`` has a row for each load in ``load_pu``
+    [load], at the factors ``scale`` [load], and behind them one for each of the ``nudges``.
+    """
+
+    own: BatchSolution
+    load_pu: FloatArray
+    scale: FloatArray
+    solution: BatchSolution
+    nudges: tuple[Nudge, ...]
+
+
+def solve_as_set(group: Group) -> AsSet | str:
+    """Solve the sets as set, over the range of load, and with every set nudged at its ends.
 
     Parameters
     ----------
     group : Group
         The island.
-    scale : ndarray, shape (scenario,)
-        Factor on every load of the island.
-    settings : Settings, optional
-        Trims of the sources.
 
     Returns
     -------
-    BatchSolution
-        One row for each factor.
+    AsSet or str
+        A sentence where the mode has no solution at its own load, or its load cannot be scaled.
     """
-    factor = np.where(group.loads, scale[:, None], 1.0)
-    return solve_batch(group.at, factor * group.p_kw, factor * group.q_kvar, settings)
+    if group.p_kw[group.loads].sum() <= 0.0:
+        return "no consumer that could be scaled is in use."
+    own = solve_scaled(group, np.append(1.0, _ends(group)))
+    if not own.solved[0]:
+        return own.reason[0]
+    load_pu, scale = _factors(group, own)
+    nudges = tuple(_nudges(group, len(scale)))
+    v_ref, f_ref = (
+        np.tile([getattr(s, name) for s in group.at.sources], (len(scale) + len(nudges), 1))
+        for name in ("v_ref_pu", "f_no_load_pu")
+    )
+    for nudge in nudges:
+        moved = v_ref if nudge.quantity == "voltage" else f_ref
+        moved[nudge.row, group.places[nudge.n]] += NUDGE[nudge.quantity]
+    solution = solve_scaled(
+        group,
+        np.append(scale, scale[[nudge.base for nudge in nudges]]),
+        Settings(no_load_voltage_pu=v_ref, no_load_frequency_pu=f_ref),
+    )
+    return AsSet(own=own, load_pu=load_pu, scale=scale, solution=solution, nudges=nudges)
 
 
-def scale_to(
-    group: Group, load_pu: FloatArray, settings: Settings | None = None
-) -> tuple[FloatArray, BatchSolution]:
-    """Return the factors on the island's loads that put a given load on its sets, and the solution there.
+def _nudges(group: Group, loads: int) -> Iterator[Nudge]:
+    """Yield what can be moved: nothing of the voltage beside a reversed droop circuit, which runs away."""
+    row = loads
+    by_voltage = [s.law in COMPENSATED for s in group.sources]
+    if any(s.xc_pu < 0.0 for s in group.sources):
+        by_voltage = [False] * len(by_voltage)
+    for base in (0, loads - 1):
+        for quantity, acts in (("voltage", by_voltage), ("frequency", group.shares_kw.tolist())):
+            for n in np.flatnonzero(acts):
+                yield Nudge(quantity=quantity, n=int(n), base=base, row=row)
+                row += 1
 
-    One correction for the losses: what remains is their change over that correction.
+
+def _ends(group: Group) -> FloatArray:
+    """Return factors on the consumers near both ends of the range of load."""
+    at = group.at
+    motors = at.network.plant.synchronous_motors
+    node = np.array([at.network.topology.node_of[m.name] for m in motors], np.int64)
+    here = np.array(at.view.island, np.int64)[node] == group.island
+    constant = float(at.motor_kva[here].real.sum())
+    constant -= sum(s.p_set_kw for s in group.beside if s.speed == Speed.FIXED)
+    wanted = LOADS_PU[[0, -1]] * group.p_rated_kw.sum() - constant
+    return np.asarray(np.maximum(wanted / group.p_kw[group.loads].sum(), 0.0))
+
+
+def _factors(group: Group, own: BatchSolution) -> tuple[FloatArray, FloatArray]:
+    """Return the loads that can be reached, and the factors on the consumers that give them.
+
+    The kW of the sets against the factor is a smooth line, bent only by losses: the parabola through the own
+    load and the two near the ends of the range gives the factors.
+    """
+    rated = group.p_rated_kw.sum()
+    k = np.append(1.0, _ends(group))[own.solved]
+    p = own.source_p_kw[own.solved][:, group.places].sum(axis=1)
+    line = _through(k, p, float(group.p_kw[group.loads].sum()))
+    least = float(line(0.0)) / rated
+    load_pu = LOADS_PU[least + 0.01 < LOADS_PU]
+    if len(load_pu) < len(LOADS_PU):
+        load_pu = np.concatenate([[least], load_pu])
+    scale = k[0] + (load_pu * rated - p[0]) / line.deriv()(k[0])
+    for _ in range(3):
+        scale = scale - (line(scale) - load_pu * rated) / line.deriv()(scale)
+    return load_pu, np.maximum(scale, 0.0)
+
+
+def _through(k: FloatArray, p: FloatArray, slope: float) -> np.poly1d:
+    """Return the parabola through points that are apart, or a line of the given slope through the first."""
+    apart = np.append(True, np.abs(k[1:] - k[0]) > 1e-3)
+    k, p = k[apart], p[apart]
+    if len(k) == 1:
+        return np.poly1d([slope, p[0] - slope * k[0]])
+    return np.poly1d(np.polyfit(k, p, len(k) - 1))
+
+
+def sharing_curve(
+    group: Group, load_pu: FloatArray, solution: BatchSolution, *, trimmed: bool
+) -> SharingCurve:
+    """Return kW and kvar of each set over the load.
 
     Parameters
     ----------
     group : Group
         The island.
-    load_pu : ndarray, shape (scenario,)
-        Wanted kW of all sets over the sum of their rated kW.
-    settings : Settings, optional
-        Trims of the sources.
-
-    Returns
-    -------
-    scale : ndarray, shape (scenario,)
-        Factors.
+    load_pu : ndarray, shape (load,)
+        Loads, of the sum of rated kW.
     solution : BatchSolution
-        At those factors.
-    """
-    wanted = load_pu * group.p_rated_kw.sum()
-    of_loads = float(group.p_kw[group.loads].sum())
-    scale = wanted / of_loads
-    solution = solve_scaled(group, scale, settings)
-    total = solution.source_p_kw[:, group.places].sum(axis=1)
-    better = scale * np.where(total > 0.0, wanted / np.where(total > 0.0, total, 1.0), 1.0)
-    scale = np.where(np.isfinite(better), better, scale)
-    return scale, solve_scaled(group, scale, settings)
-
-
-def share_of(total: FloatArray, rated: FloatArray, actual: FloatArray, takes_part: BoolArray) -> FloatArray:
-    """Return each set's proportional share; a set that takes no part keeps what it carries.
-
-    Parameters
-    ----------
-    total : ndarray, shape (...)
-        Power of all sets.
-    rated : ndarray, shape (set,)
-        Ratings.
-    actual : ndarray, shape (..., set)
-        What each set carries.
-    takes_part : ndarray of bool, shape (set,)
-        Sets that share.
-
-    Returns
-    -------
-    ndarray, shape (..., set)
-        Shares, in the unit of `total`.
-    """
-    if not takes_part.any():
-        return actual
-    rest = total - actual[..., ~takes_part].sum(axis=-1)
-    share = np.array(actual)
-    share[..., takes_part] = proportional_share(rest, rated[takes_part])
-    return share
-
-
-def sharing_curve(group: Group, solution: BatchSolution, *, trimmed: bool) -> SharingCurve:
-    """Return kW and kvar of each set from 20 to 100 % of the combined rating.
-
-    Parameters
-    ----------
-    group : Group
-        The island.
-    solution : BatchSolution
-        From `scale_to` over `LOADS_PU`.
+        Its first rows are those loads.
     trimmed : bool
         What to call the curve.
 
     Returns
     -------
     SharingCurve
-        At the mode's own power factor, losses included.
+        With deviations from the proportional share.
     """
-    p, q = solution.source_p_kw[:, group.places], solution.source_q_kvar[:, group.places]
-    p_total, q_total = p.sum(axis=1), q.sum(axis=1)
-    board = group.sources[0].node
-    u_v = np.abs(solution.v_bus_pu[:, group.at.bus_of_node[board]]) * group.at.network.u_base_v[board]
+    rows = slice(0, len(load_pu))
+    p, q = solution.source_p_kw[rows, group.places], solution.source_q_kvar[rows, group.places]
     return SharingCurve(
         trimmed=trimmed,
-        load_pu=read_only(LOADS_PU),
-        p_total_kw=read_only(p_total),
-        q_total_kvar=read_only(q_total),
+        load_pu=read_only(load_pu),
+        p_total_kw=read_only(p.sum(axis=1)),
+        q_total_kvar=read_only(q.sum(axis=1)),
         p_kw=read_only(p),
         q_kvar=read_only(q),
-        dp_kw=read_only(p - share_of(p_total, group.p_rated_kw, p, group.shares_kw)),
-        dq_kvar=read_only(q - share_of(q_total, group.q_rated_kvar, q, group.shares_kvar)),
-        u_pu=read_only(u_v / group.sources[0].u_rated_v),
-        f_hz=read_only(solution.frequency_pu[:, group.island] * group.at.network.plant.project.f_rated_hz),
-        solved=read_only(solution.solved, bool),
+        dp_kw=read_only(kw_off(group, p)),
+        dq_kvar=read_only(kvar_off(group, q)),
+        u_pu=read_only(solution.source_u_pu[rows, group.places].mean(axis=1)),
+        f_hz=read_only(solution.frequency_pu[rows, group.island] * group.at.network.plant.project.f_rated_hz),
+        solved=read_only(solution.solved[rows], bool),
     )
 
 
-def trimmed_settings(group: Group, scale: FloatArray, as_set: BatchSolution) -> Settings | None:
-    """Return the set-points that make the sets share in proportion at 75 % of their combined rating.
-
-    The no-load frequency of a set with speed droop becomes ``f + droop P*/Pr``; the no-load voltage becomes
-    the compensated voltage at its terminals with its share of kW and kvar, found by repetition since the
-    sets' terminals move a little with it. The bus keeps the voltage and frequency that it has as set.
-
-    Source: class rules tune the sets at 75 % load before the sharing test (ClassNK 2.4.14-3); IEEE 421.5
-    load compensation for the voltage.
-
-    Parameters
-    ----------
-    group : Group
-        The island.
-    scale : ndarray, shape (load,)
-        Factors of `scale_to` over `LOADS_PU`, as set.
-    as_set : BatchSolution
-        The solution there.
-
-    Returns
-    -------
-    Settings or None
-        Trims for every source of the mode; None where there is no solution at 75 % load.
-    """
-    sources = group.at.sources
-    v_ref = np.array([s.v_ref_pu for s in sources])
-    f_ref = np.array([s.f_no_load_pu for s in sources])
-    solution, row = as_set, _TRIM_AT
-    u_wanted = float(solution.source_u_pu[row, group.places].mean())
-    settings = None
-    for _ in range(_TRIMS):
-        if not solution.solved[row]:
-            return None
-        _trim_speed(group, solution, row, f_ref)
-        _trim_voltage(group, solution, row, v_ref, u_wanted)
-        settings = Settings(no_load_voltage_pu=v_ref[None, :], no_load_frequency_pu=f_ref[None, :])
-        solution, row = solve_scaled(group, scale[[_TRIM_AT]], settings), 0
-    return settings
-
-
-def _trim_speed(group: Group, solution: BatchSolution, row: int, f_ref: FloatArray) -> None:
-    p = solution.source_p_kw[row, group.places]
-    share = share_of(p.sum(), group.p_rated_kw, p, group.shares_kw)
-    f = float(solution.frequency_pu[row, group.island])
-    for k, s, wanted in zip(group.places, group.sources, share, strict=True):
-        if s.speed == Speed.DROOP:
-            f_ref[k] = f + s.speed_droop_pu * wanted / s.p_rated_kw
-
-
-def _trim_voltage(
-    group: Group, solution: BatchSolution, row: int, v_ref: FloatArray, u_wanted: float
-) -> None:
-    p = solution.source_p_kw[row, group.places]
-    q = solution.source_q_kvar[row, group.places]
-    p_share = share_of(p.sum(), group.p_rated_kw, p, group.shares_kw)
-    q_share = share_of(q.sum(), group.q_rated_kvar, q, group.shares_kvar)
-    u = solution.source_u_pu[row, group.places]
-    u = u + u_wanted - u.mean()
-    for n, (k, s) in enumerate(zip(group.places, group.sources, strict=True)):
-        at = (p_share[n] / s.s_rated_kva, q_share[n] / s.s_rated_kva)
-        if s.law == Law.PHASOR and s.xc_pu > 0.0:
-            v_ref[k] = compensated_voltage(u[n], at[0], at[1], 0.0, s.xc_pu)
-        elif s.law == Law.REACTIVE_CURRENT:
-            v_ref[k] = compensated_voltage_reactive_current(u[n], at[1], s.xc_pu)
-
-
-def with_trim(
-    settings: Settings, name: str, place: int, value: float, sources: tuple[Source, ...]
-) -> Settings:
-    """Return settings in which one trim of one source has another value.
-
-    Parameters
-    ----------
-    settings : Settings
-        To start from.
-    name : str
-        Field of `Settings`.
-    place : int
-        Position of the source among the mode's sources.
-    value : float
-        The new value, per unit.
-    sources : tuple of Source
-        The mode's sources, whose own values stand where `settings` has none.
-
-    Returns
-    -------
-    Settings
-        A copy.
-    """
-    own = {
-        "no_load_voltage_pu": "v_ref_pu",
-        "voltage_droop_pu": "droop_pu",
-        "no_load_frequency_pu": "f_no_load_pu",
-        "speed_droop_pu": "speed_droop_pu",
-    }[name]
-    known: FloatArray | None = getattr(settings, name)
-    values = np.array([[getattr(s, own) for s in sources]]) if known is None else known.copy()
-    values[:, place] = value
-    return replace(settings, **{name: values})
+def no_curve(group: Group, load_pu: FloatArray) -> SharingCurve:
+    """Return the trimmed curve of sets that could not be trimmed: no load has a solution."""
+    none = np.full(len(load_pu), np.nan)
+    table = np.full((len(load_pu), len(group.sources)), np.nan)
+    return SharingCurve(
+        trimmed=True,
+        load_pu=read_only(load_pu),
+        p_total_kw=read_only(none),
+        q_total_kvar=read_only(none),
+        p_kw=read_only(table),
+        q_kvar=read_only(table),
+        dp_kw=read_only(table),
+        dq_kvar=read_only(table),
+        u_pu=read_only(none),
+        f_hz=read_only(none),
+        solved=read_only(np.zeros(len(load_pu)), bool),
+    )

@@ -12,6 +12,7 @@ class SharingCurve:
     """kW and kvar of every set over total load, arrays [load, set]; totals and frequency [load].
 
     ``load_pu`` is of the sum of rated kW. Deviations are from the proportional share; tolerances [set].
+    ``u_pu`` [load] is the mean of the sets' terminal voltages, each of the set's own rated voltage.
     ``solved`` [load] is False where the plant has no solution at that load.
     """
 
@@ -61,7 +62,9 @@ class IslandSharing:
     """One island with two or more sets in parallel.
 
     ``p_tolerance_kw`` and ``q_tolerance_kvar`` are [set]; operating arrays [set] are at the mode's own load.
+    ``u_operating_pu`` is the mean of the sets' terminal voltages, each of the set's own rated voltage.
     ``circulating_kvar`` is half the sum of the distances from the proportional share.
+    ``apart_kw`` and ``apart_kvar`` name the sets that take no part in sharing: set power, controlled kvar.
     """
 
     mode: str
@@ -82,11 +85,26 @@ class IslandSharing:
     lines: tuple[SettingLine, ...]
     margins: tuple[AdjustingMargin, ...]
     findings: tuple[str, ...]
+    apart_kw: tuple[str, ...] = ()
+    apart_kvar: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class NotStudied:
+    """Sets in parallel whose sharing could not be studied, and why."""
+
+    mode: str
+    sets: tuple[str, ...]
+    reason: str
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class MaladjustedCase:
-    """A maladjustment event solved as a case of its own; arrays [set]."""
+    """A maladjustment event solved as a case of its own; arrays [set].
+
+    Where ``solved`` is False ``sentence`` says why; the numbers after the change are then NaN, and where the
+    set does not run in parallel ``sets`` names it alone and all numbers are NaN.
+    """
 
     case: str
     mode: str
@@ -119,3 +137,4 @@ class SharingResult:
 
     islands: tuple[IslandSharing, ...]
     cases: tuple[MaladjustedCase, ...]
+    not_studied: tuple[NotStudied, ...] = ()
