@@ -24,6 +24,15 @@
       cell.classList.toggle("hidden", !all && wanted.indexOf(cell.dataset.mode) < 0);
     });
   }
+  function unfold() {
+    var target = location.hash && document.getElementById(location.hash.slice(1));
+    for (var fold = target && target.closest("details"); fold; fold = fold.parentElement.closest("details")) {
+      fold.open = true;
+      target.scrollIntoView();
+    }
+  }
+  window.addEventListener("hashchange", unfold);
+  unfold();
   window.addEventListener("beforeprint", function () {
     document.querySelectorAll("details").forEach(function (fold) { fold.open = true; });
   });

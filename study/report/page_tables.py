@@ -13,6 +13,8 @@ from study.report.tables import Column, Table, Worked
 _MODES_SIDE_BY_SIDE: Final = 2
 _PORTRAIT: Final = 125
 """Characters that fit across a portrait page."""
+_OPEN_ROWS: Final = 24
+"""Rows up to which a table stands open; longer ones are folded and unfold in one click."""
 _LINE: Final = 20
 """Characters after which words may break in a narrow column."""
 _FIGURE_SPACE, _POINT_SPACE = "\u2007", "\u2008"
@@ -53,6 +55,14 @@ class Part:
     head: tuple[HeadCell, ...]
     rows: tuple[Row, ...]
     footers: tuple[FooterLine, ...]
+
+    @property
+    def fold(self) -> str:
+        """What the fold of a long part says; empty where the part stands open."""
+        if len(self.rows) <= _OPEN_ROWS:
+            return ""
+        modes = ", ".join(group for group, _ in self.groups)
+        return f"{modes + ': ' if modes else ''}{len(self.rows)} rows"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
