@@ -13,6 +13,7 @@ from study.results.balance import BalanceResult
 from study.results.load_flow import LoadFlowResult
 from study.results.regulation import RegulationResult
 from study.results.sharing import SharingResult
+from study.results.short_circuit import ShortCircuitResult
 
 CAUTION: Final = (
     "These results support, and do not replace, class approval, flag rules, local codes and the judgement of "
@@ -25,7 +26,7 @@ class StudyOutcome:
     """Everything that one run found.
 
     ``methods`` holds one sentence for each method, with its standard, clause and range of use; a verdict
-    with an empty mode is about the vessel itself.
+    with an empty mode is about the vessel itself. ``short_circuit`` is None in a study without it.
     """
 
     plant: Plant
@@ -37,6 +38,7 @@ class StudyOutcome:
     limits: tuple[LimitUsed, ...]
     methods: tuple[str, ...]
     tool_version: str
+    short_circuit: ShortCircuitResult | None = None
 
     @property
     def modes(self) -> tuple[str, ...]:
@@ -75,7 +77,7 @@ class StatusLookup:
 
 
 def cells_by_name(plant: Plant) -> dict[str, str]:
-    """Return the cell of every piece of equipment, load and mode by its name; empty cells are left out.
+    """Return the cell of every piece of equipment and load by its name; empty cells are left out.
 
     Parameters
     ----------
@@ -100,7 +102,6 @@ def cells_by_name(plant: Plant) -> dict[str, str]:
         plant.reactors,
         plant.filters,
         plant.loads,
-        plant.modes,
     )
     found = {}
     for group in groups:

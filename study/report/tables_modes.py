@@ -8,7 +8,7 @@ from collections.abc import Iterable
 import numpy as np
 
 from study.checks.verdict import worst
-from study.report.content import StudyOutcome, cells_by_name
+from study.report.content import StudyOutcome
 from study.report.numbers import percent
 from study.report.tables import Column, Table, Value, cell_column, make_table, percent_column, text_column
 from study.report.tables_sources import NO_SET
@@ -56,7 +56,7 @@ def modes_table(outcome: StudyOutcome) -> Table:
         cell_column(),
     ]
     flows = {mode.mode: mode for mode in outcome.load_flow.modes}
-    cells = cells_by_name(outcome.plant)
+    cells = {mode.name: mode.cell for mode in outcome.plant.modes}
     descriptions = {mode.name: mode.description for mode in outcome.plant.modes}
     rows = [
         (
