@@ -10,7 +10,7 @@ from numpy.typing import ArrayLike, NDArray
 from study.issues import SolveError
 from study.network.consumers import Demand
 from study.network.equations import Point, Problem
-from study.network.laws import VoltageLaws, some, voltage_laws
+from study.network.laws import VoltageLaws, some, take, voltage_laws
 from study.network.limits import (
     CEILING,
     LARGEST_CURRENT,
@@ -22,7 +22,7 @@ from study.network.limits import (
 )
 from study.network.network import ModeNetwork, checked_loads
 from study.network.power import PowerLaws, power_laws
-from study.network.scenarios import Solutions, solve_scenarios
+from study.network.scenarios import Solutions, no_solutions, solve_scenarios
 from study.network.settings import Settings, column_wise, or_own, reactances
 from study.network.sources import Law, Source
 from study.network.stability import most_reversed, runaway
@@ -42,12 +42,14 @@ class BatchSolution:
     ``v_bus_pu`` [scenario, bus] is complex, per unit of the level's base voltage. Sources' kW and kvar are
     those at their terminals. ``excitation_state`` and ``power_state`` [scenario, source] are 0 within limits
     (see `limits`). ``field_pu`` is a multiple of the field at rated load. Where ``solved`` is False the
-    numbers are NaN and ``reason`` says why. ``laws`` and ``power`` are those within limits.
+    numbers are NaN and ``reason`` says why. ``laws`` are those within limits; ``f_no_load_pu`` and
+    ``speed_droop_pu`` [source, scenario or 1] the governors' settings.
     """
 
     at: ModeNetwork
     laws: VoltageLaws
-    power: PowerLaws
+    f_no_load_pu: FloatArray
+    speed_droop_pu: FloatArray
     solved: BoolArray
     reason: tuple[str, ...]
     residual_pu: FloatArray
@@ -135,22 +137,23 @@ class _Batch:
         shape = (len(self.sources), self.count)
         self.state, self.power_state = np.zeros(shape, np.int64), np.zeros(shape, np.int64)
         self.pinned = np.zeros(shape, bool)
+        self.found = no_solutions(at.structure, 0)
+        self.frequency = np.full((at.structure.islands, self.count), np.nan)
 
     def solve(self) -> BatchSolution:
         reasons = np.full(self.count, "", object)
         refused = " ".join(r for r in self.at.refusals if r)
         if refused or not self.sources:
             reasons[:] = refused or "no source is on line."
-            return self._result(self._nothing(), reasons)
-        found = self._nothing()
+            return self._result(reasons)
         todo = np.arange(self.count)
         for _ in range(4 * len(self.sources) + 4):
             if not len(todo):
                 break
-            todo = np.concatenate([self._pass(found, k, reasons) for k in self._alike(todo)])
+            todo = np.sort(np.concatenate([self._pass(k, reasons) for k in self._alike(todo)]))
         for k in todo:
             reasons[k] = "the sources' limits lead from one to the other without end: no steady state found."
-        return self._result(found, reasons)
+        return self._result(reasons)
 
     def _alike(self, todo: IntArray) -> list[IntArray]:
         """Return scenarios grouped by the state of their sources."""
@@ -160,7 +163,7 @@ class _Batch:
         _, group = np.unique(both, axis=1, return_inverse=True)
         return [todo[group == g] for g in range(group.max() + 1)]
 
-    def _pass(self, found: Solutions, k: IntArray, reasons: NDArray[np.object_]) -> IntArray:
+    def _pass(self, k: IntArray, reasons: NDArray[np.object_]) -> IntArray:
         """Solve scenarios in one state; return those in which a source then changes its state."""
         state, power_state = self.state[:, k[0]], self.power_state[:, k[0]]
         problem = self._problem(k, state, power_state)
@@ -168,14 +171,16 @@ class _Batch:
             reasons[k] = f"the load exceeds what the engines of {_names(self.sources, int(n))} can give."
         if problem.power.short.any():
             return np.zeros(0, np.int64)
-        solved = solve_scenarios(problem, len(k), _mean_point(found, k, self.at.structure.buses))
-        _store(found, k, solved)
-        ran = self._let_run_away(k, found, state, power_state)
+        solved = solve_scenarios(problem, len(k), self._mean_point(k))
+        self._store(k, solved)
+        self.frequency[:, k] = problem.power.frequency(solved.m)
+        ran = self._let_run_away(k, state, power_state)
         lost = k[~solved.converged]
         for n in np.setdiff1d(lost, ran):
-            reasons[n] = self._no_point(n, found)
-        moved = self._change_states(np.setdiff1d(k, np.union1d(lost, ran)), found, state, power_state)
-        return np.asarray(np.union1d(moved, ran))
+            reasons[n] = self._no_point(n)
+        stays = ~np.isin(k, np.concatenate([lost, ran]))
+        moved = self._change_states(k[stays], problem.power.columns(np.flatnonzero(stays)))
+        return np.asarray(np.concatenate([moved, ran]))
 
     def _problem(self, k: IntArray, state: IntArray, power_state: IntArray) -> Problem:
         return Problem(
@@ -185,7 +190,8 @@ class _Batch:
             demand=Demand(constant=some(self.demand.constant, k), impedance=some(self.demand.impedance, k)),
         )
 
-    def _no_point(self, n: int, found: Solutions) -> str:
+    def _no_point(self, n: int) -> str:
+        found = self.found
         tried = f"(residual {found.residual_pu[n]:.1e} pu after {found.iterations[n]} iterations)."
         if self.pinned[:, n].any():
             names = " and ".join(self.sources[j].name for j in np.flatnonzero(self.pinned[:, n]))
@@ -196,30 +202,25 @@ class _Batch:
         return f"no operating point: the load exceeds what sources and network can carry {tried}"
 
     def _power(self, k: IntArray, power_state: IntArray) -> PowerLaws:
-        f_no_load, droop = self.f_no_load, self.speed_droop
         return power_laws(
             self.sources,
             self.at.structure.islands,
             self.s_base,
-            f_no_load_pu=f_no_load if f_no_load.shape[1] == 1 else f_no_load[:, k],
-            speed_droop_pu=droop if droop.shape[1] == 1 else droop[:, k],
+            f_no_load_pu=some(self.f_no_load, k),
+            speed_droop_pu=some(self.speed_droop, k),
             at_limit=power_state,
         )
 
-    def _change_states(
-        self, k: IntArray, found: Solutions, state: IntArray, power_state: IntArray
-    ) -> IntArray:
+    def _change_states(self, k: IntArray, power: PowerLaws) -> IntArray:
         """Let the source that is furthest from its limit, or from needing it, change its state."""
         if not len(k):
             return k
-        v, i = found.v[self.at.structure.source_bus][:, k], found.i[:, k]
-        power = self._power(k, power_state)
-        f = np.broadcast_to(power.frequency(found.m[:, k]), (self.at.structure.islands, len(k)))
+        v, i = some(self.found.v[self.at.structure.source_bus], k), some(self.found.i, k)
+        state, power_state = self.state[:, k[0]], self.power_state[:, k[0]]
         wanted, by = excitation_steps(self.laws.columns(k), self.sources, state, v, i)
         by[self.pinned[:, k]] = 0.0
-        p_wanted, p_by = power_steps(
-            power, self.sources, power_state, p=(v * np.conj(i)).real, f=f, s_base_kva=self.s_base
-        )
+        p, f = (v * np.conj(i)).real, self.frequency[:, k]
+        p_wanted, p_by = power_steps(power, self.sources, power_state, p=p, f=f, s_base_kva=self.s_base)
         distance = np.concatenate([by, p_by])
         most = distance.argmax(axis=0)
         moves = distance[most, np.arange(len(k))] > 0.0
@@ -230,15 +231,13 @@ class _Batch:
         self.power_state[j, k[by_engine]] = p_wanted[j, by_engine]
         return np.asarray(k[moves])
 
-    def _let_run_away(
-        self, k: IntArray, found: Solutions, state: IntArray, power_state: IntArray
-    ) -> IntArray:
+    def _let_run_away(self, k: IntArray, state: IntArray, power_state: IntArray) -> IntArray:
         """Send sets whose regulators do not hold the point to the limit that they run to.
 
         Where reversed and normal droop cancel there is no point at all: then the reversed set with the most
         droop runs. Returns the scenarios in which a set has been sent.
         """
-        ran = []
+        found, ran = self.found, []
         for n in k if (self.laws.x < 0.0).any() else k[:0]:
             one = np.array([n])
             problem = self._problem(one, state, power_state)
@@ -260,35 +259,48 @@ class _Batch:
         laws = problem.laws
         code, q_set, q_per_p = laws.code.copy(), laws.q_set.copy(), laws.q_per_p.copy()
         code[j], q_set[j], q_per_p[j] = Law.REACTIVE_POWER, 0.0, 0.0
-        idle = replace(laws, code=code, q_set=q_set, q_per_p=q_per_p)
+        idle = replace(laws.with_code(code), q_set=q_set, q_per_p=q_per_p)
         at_rest = solve_scenarios(replace(problem, laws=idle), 1, x)
         bus = self.at.structure.source_bus
         error = regulator_error(laws, at_rest.v[bus], at_rest.i)
         return CEILING if error[j, 0] > 0.0 else NO_EXCITATION
 
-    def _nothing(self) -> Solutions:
-        at = self.at.structure
-        return Solutions(
-            v=np.full((at.all_buses, self.count), np.nan, complex),
-            i=np.full((at.sources, self.count), np.nan, complex),
-            m=np.full((at.islands, self.count), np.nan),
-            residual_pu=np.full(self.count, np.inf),
-            iterations=np.zeros(self.count, np.int64),
-            converged=np.zeros(self.count, bool),
+    def _mean_point(self, k: IntArray) -> Point | None:
+        """Return the mean of what was found before for these scenarios, as a first point."""
+        found, buses = self.found, self.at.structure.buses
+        known = k[found.converged[k]] if len(found.converged) else k[:0]
+        if not len(known):
+            return None
+        return Point(
+            v=found.v[:buses, known].mean(axis=1, keepdims=True),
+            i=found.i[:, known].mean(axis=1, keepdims=True),
+            m=found.m[:, known].mean(axis=1, keepdims=True),
         )
 
-    def _result(self, found: Solutions, reasons: NDArray[np.object_]) -> BatchSolution:
-        solved = np.array([r == "" for r in reasons], bool)
+    def _store(self, k: IntArray, solved: Solutions) -> None:
+        if not len(self.found.converged):  # the first pass, over all scenarios
+            self.found = solved
+            return
+        found = self.found
+        found.v[:, k], found.i[:, k], found.m[:, k] = solved.v, solved.i, solved.m
+        found.residual_pu[k], found.converged[k] = solved.residual_pu, solved.converged
+        found.iterations[k] += solved.iterations
+
+    def _result(self, reasons: NDArray[np.object_]) -> BatchSolution:
+        solved = reasons == ""
         lost = ~solved
-        found.v[:, lost], found.i[:, lost], found.m[:, lost] = np.nan, np.nan, np.nan
+        found = self.found if len(self.found.converged) else no_solutions(self.at.structure, self.count)
+        if lost.any():
+            found.v[:, lost], found.i[:, lost], found.m[:, lost] = np.nan, np.nan, np.nan
         v_s = found.v[self.at.structure.source_bus]
         s = v_s * np.conj(found.i) * self.s_base
         return BatchSolution(
             at=self.at,
             laws=self.laws,
-            power=self._power(np.arange(self.count), np.zeros(len(self.sources), np.int64)),
+            f_no_load_pu=self.f_no_load,
+            speed_droop_pu=self.speed_droop,
             solved=solved,
-            reason=tuple(str(r) for r in reasons),
+            reason=tuple(reasons.tolist()),
             residual_pu=found.residual_pu,
             iterations=found.iterations,
             v_bus_pu=found.v.T,
@@ -297,7 +309,7 @@ class _Batch:
             source_q_kvar=s.imag.T,
             source_u_pu=(np.abs(v_s) * self.laws.to_own_v).T,
             field_pu=self._field(v_s, found.i).T,
-            frequency_pu=self._frequency(found.m).T,
+            frequency_pu=np.where(solved, self.frequency, np.nan).T,
             excitation_state=self.state.T,
             power_state=self.power_state.T,
             ran_away=self.pinned.T,
@@ -309,12 +321,6 @@ class _Batch:
             if s.machine is not None:
                 out[j] = self.laws.field(j, v[j], i[j]) / s.rated_field_pu
         return out
-
-    def _frequency(self, m: FloatArray) -> FloatArray:
-        out = np.full(m.shape, np.nan)
-        for k in self._alike(np.arange(self.count)):
-            out[:, k] = self._power(k, self.power_state[:, k[0]]).frequency(m[:, k])
-        return np.where(np.isnan(m), np.nan, out)
 
 
 def laws_in_force(batch: BatchSolution, k: int = 0) -> VoltageLaws:
@@ -350,13 +356,12 @@ def power_in_force(batch: BatchSolution, k: int = 0) -> PowerLaws:
     PowerLaws
         One column.
     """
-    own = batch.power.column(k)
     return power_laws(
         batch.at.sources,
         batch.at.structure.islands,
         batch.at.network.s_base_kva,
-        f_no_load_pu=own.f_no_load,
-        speed_droop_pu=own.speed_droop,
+        f_no_load_pu=take(batch.f_no_load_pu, k),
+        speed_droop_pu=take(batch.speed_droop_pu, k),
         at_limit=batch.power_state[k],
     )
 
@@ -365,28 +370,21 @@ def _names(sources: tuple[Source, ...], island: int) -> str:
     return " and ".join(s.name for s in sources if s.island == island)
 
 
-def _mean_point(found: Solutions, k: IntArray, buses: int) -> Point | None:
-    """Return the mean of what was found before for these scenarios, as a first point."""
-    known = k[found.converged[k]]
-    if not len(known):
-        return None
-    return Point(
-        v=found.v[:buses, known].mean(axis=1, keepdims=True),
-        i=found.i[:, known].mean(axis=1, keepdims=True),
-        m=found.m[:, known].mean(axis=1, keepdims=True),
-    )
-
-
-def _store(found: Solutions, k: IntArray, some: Solutions) -> None:
-    found.v[:, k], found.i[:, k], found.m[:, k] = some.v, some.i, some.m
-    found.residual_pu[k], found.converged[k] = some.residual_pu, some.converged
-    found.iterations[k] += some.iterations
-
-
 def _demand(at: ModeNetwork, p_kw: FloatArray, q_kvar: FloatArray) -> Demand:
     """Return the consumers' power at their places, [place, scenario]."""
-    s = (p_kw + 1j * q_kvar).T / at.network.s_base_kva
-    share = at.load_arrays.constant_power[:, None]
-    constant = at.port_sum @ (s * share) + at.port_constant[:, None]
-    impedance = at.port_sum @ (s * (1.0 - share) * at.load_arrays.v_scale[:, None] ** 2)
-    return Demand(constant=np.asarray(constant), impedance=np.asarray(impedance))
+    share = at.load_arrays.constant_power
+    base = at.network.s_base_kva
+    p, q = np.ascontiguousarray(p_kw.T), np.ascontiguousarray(q_kvar.T)
+    constant = _at_places(at, share / base, p, q) + at.port_constant[:, None]
+    follows = (1.0 - share) * at.load_arrays.v_scale**2 / base
+    return Demand(constant=constant, impedance=_at_places(at, follows, p, q))
+
+
+def _at_places(at: ModeNetwork, factor: FloatArray, p_kw: FloatArray, q_kvar: FloatArray) -> ComplexArray:
+    """Return a part of the consumers' power, [place, scenario], or one column of zeros for none."""
+    if not factor.any():
+        return np.zeros((at.port_sum.shape[0], 1), complex)
+    weights = (at.port_sum * factor[None, :]).tocsr()
+    out = np.empty((at.port_sum.shape[0], p_kw.shape[1]), complex)
+    out.real, out.imag = weights @ p_kw, weights @ q_kvar
+    return out

@@ -140,7 +140,7 @@ def drawn_current(ports: Ports, v: ComplexArray, demand: Demand) -> ComplexArray
         Current. [pu]
     """
     n = len(ports.direct)
-    width = max(v.shape[1], demand.constant.shape[1])
+    width = max(v.shape[1], demand.constant.shape[1], demand.impedance.shape[1])
     out = np.zeros((len(v), width), complex)
     here = v[ports.direct]
     out[ports.direct] = np.conj(demand.constant[:n] / here) + np.conj(demand.impedance[:n]) * here

@@ -28,8 +28,9 @@ STEP = 1e-6  # of voltage and current, for the gradient of the field equation
 class VoltageLaws:
     """The voltage law of each source, per unit of the network's base.
 
-    ``code`` [source]; ``e_ref`` and ``x`` [source, scenario or 1]; ``cross`` [source, source] reactances that
-    other sets' currents act through. ``to_own_v`` and ``to_own_i`` turn network per unit into the source's.
+    ``code`` [source], and ``groups`` its kinds with their sources; ``e_ref`` and ``x`` [source, scenario or
+    1]; ``cross`` [source, source] reactances that other sets' currents act through. ``to_own_v`` and
+    ``to_own_i`` turn network per unit into the source's.
     """
 
     code: IntArray
@@ -44,6 +45,11 @@ class VoltageLaws:
     to_own_i: FloatArray
     machines: tuple[Machine | None, ...]
     supplies: tuple[FieldSupply, ...]
+    groups: tuple[tuple[int, IntArray], ...]
+
+    def with_code(self, code: IntArray) -> VoltageLaws:
+        """Return the laws with other kinds of law."""
+        return replace(self, code=code, groups=_groups(code))
 
     def column(self, k: int | None) -> VoltageLaws:
         """Return the laws of one scenario, or of the mean of all where k is None."""
@@ -56,9 +62,8 @@ class VoltageLaws:
     def residual(self, v: ComplexArray, i: ComplexArray) -> FloatArray:
         """Return the residual of every law, [source, scenario]; the first of the two for an impedance."""
         out = np.empty(v.shape)
-        for code in np.unique(self.code):
-            k = np.flatnonzero(self.code == code)
-            out[k] = self._residual_of(int(code), k, v, i)
+        for code, k in self.groups:
+            out[k] = self._residual_of(code, k, v, i)
         return out
 
     def compensated(self, v: ComplexArray, i: ComplexArray) -> ComplexArray:
@@ -152,8 +157,9 @@ def take(values: NDArray[_Number], k: int | None) -> NDArray[_Number]:
 
 
 def some(values: NDArray[_Number], k: IntArray) -> NDArray[_Number]:
-    """Return some columns; one column stands for all scenarios."""
-    return values if values.shape[1] == 1 else values[:, k]
+    """Return some columns, `k` ascending; one column stands for all scenarios."""
+    width = values.shape[1]
+    return values if width == 1 or len(k) == width else values[:, k]
 
 
 def voltage_laws(
@@ -201,7 +207,14 @@ def voltage_laws(
         to_own_i=1.0 / (rating * own_v),
         machines=tuple(s.machine for s in sources),
         supplies=tuple(s.field for s in sources),
+        groups=_groups(code),
     )
+
+
+def _groups(code: IntArray) -> tuple[tuple[int, IntArray], ...]:
+    """Return each kind of law with the places of the sources under it."""
+    kinds = sorted(set(code.tolist()))
+    return tuple((kind, np.flatnonzero(code == kind)) for kind in kinds)
 
 
 def _cross_matrix(

@@ -51,7 +51,7 @@ def limited_laws(laws: VoltageLaws, sources: tuple[Source, ...], state: IntArray
         {CEILING: s.ceiling, NO_EXCITATION: NO_FIELD}.get(int(k), own)
         for s, k, own in zip(sources, state, laws.supplies, strict=True)
     )
-    return replace(laws, code=code, supplies=supplies)
+    return replace(laws.with_code(code), supplies=supplies)
 
 
 def excitation_steps(

@@ -18,7 +18,10 @@ FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
 BoolArray = NDArray[np.bool_]
 
-VARYING = ("a", "b", "gain", "f_no_load", "speed_droop", "held_f")
+# Plain integers: comparing an array with a member of an enumeration is slow.
+DROOP, ISOCHRONOUS, LOAD_SHARING, FIXED, SHORE = (int(kind) for kind in Speed)
+
+VARYING = ("a", "b", "gain", "f_no_load", "held_f")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -34,7 +37,6 @@ class PowerLaws:
     b: FloatArray
     gain: FloatArray
     f_no_load: FloatArray
-    speed_droop: FloatArray
     held_f: FloatArray
     shore: BoolArray
     short: BoolArray
@@ -95,20 +97,20 @@ def power_laws(
     for n in range(islands):
         here = island == n
         free = here & (at_limit == 0)
-        masters = here & (speed == Speed.SHORE)
+        masters = here & (speed == SHORE)
         shore[n] = bool(masters.any())
         if not shore[n]:
-            masters = free & np.isin(speed, (Speed.ISOCHRONOUS, Speed.LOAD_SHARING))
-        droops = free & (speed == Speed.DROOP)
+            masters = free & ((speed == ISOCHRONOUS) | (speed == LOAD_SHARING))
+        droops = free & (speed == DROOP)
         if masters.any():
             held_f[n] = _common(f_no_load_pu, masters, rated)
             a[droops] = (gain * (f_no_load_pu - held_f[n]))[droops]
         else:
             a[droops], b[droops] = (gain * f_no_load_pu)[droops], np.broadcast_to(-gain, shape)[droops]
-        b[free & (speed == Speed.ISOCHRONOUS)] = 1.0
-        b[free & (speed == Speed.LOAD_SHARING)] = rated[free & (speed == Speed.LOAD_SHARING)]
+        b[free & (speed == ISOCHRONOUS)] = 1.0
+        b[free & (speed == LOAD_SHARING)] = rated[free & (speed == LOAD_SHARING)]
         short[n] = not shore[n] and not (b[here] != 0.0).any()
-    fixed = (speed == Speed.FIXED) & (at_limit == 0)
+    fixed = (speed == FIXED) & (at_limit == 0)
     a[fixed] = np.broadcast_to(p_set, shape)[fixed]
     held = at_limit != 0
     a[held] = limit[held] * at_limit[held, None]
@@ -117,7 +119,6 @@ def power_laws(
         b=b,
         gain=gain,
         f_no_load=f_no_load_pu,
-        speed_droop=speed_droop_pu,
         held_f=held_f,
         shore=shore,
         short=short,

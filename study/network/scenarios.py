@@ -25,6 +25,7 @@ IntArray = NDArray[np.int64]
 BoolArray = NDArray[np.bool_]
 
 MOST_SWEEPS = 40
+COMPILED_FROM = 3_000_000  # scenarios times buses: some seconds of numpy
 BLOCK = 1024  # scenarios handled together, so that the working arrays stay in the cache
 DENSE_FROM = 64  # scenarios from which the inverse is worth building
 DENSE_UP_TO = 700_000  # entries of the inverse beyond which the sparse factors are quicker
@@ -42,7 +43,9 @@ class Solutions:
     converged: BoolArray
 
 
-def solve_scenarios(problem: Problem, count: int, start: Point | None = None) -> Solutions:
+def solve_scenarios(
+    problem: Problem, count: int, start: Point | None = None, *, compiled: bool | None = None
+) -> Solutions:
     """Solve scenarios that share structure and kinds of law.
 
     Parameters
@@ -53,6 +56,8 @@ def solve_scenarios(problem: Problem, count: int, start: Point | None = None) ->
         Number of scenarios.
     start : Point, optional
         First point for the mean scenario.
+    compiled : bool, optional
+        Whether the compiled sweep is used; by the size of the task where left out.
 
     Returns
     -------
@@ -62,15 +67,27 @@ def solve_scenarios(problem: Problem, count: int, start: Point | None = None) ->
     base = _base(problem.column(None), start)
     if count == 1:
         return _from_one(problem, base)
-    out = _empty(problem.at, count)
+    out = _to_be_filled(problem.at, count)
     if base.converged:
-        frame = _Frame(problem.column(None), base.point, count)
-        for first in range(0, count, BLOCK):
-            k = np.arange(first, min(first + BLOCK, count))
-            frame.solve_block(out, k, problem.columns(k))
+        if _pays(problem, count) if compiled is None else compiled:
+            from study.network.compiled import solve_compiled
+
+            solve_compiled(problem, base.point, out, MOST_SWEEPS)
+        else:
+            frame = _Frame(problem.column(None), base.point, count)
+            for first in range(0, count, BLOCK):
+                k = np.arange(first, min(first + BLOCK, count))
+                frame.solve_block(out, k, problem.columns(k))
     for lost in np.flatnonzero(~out.converged):
         _one_by_one(out, int(lost), problem.column(int(lost)), base)
     return out
+
+
+def _pays(problem: Problem, count: int) -> bool:
+    """Return True where compiling, or loading what was compiled, costs less than it saves."""
+    at = problem.at
+    places = len(at.ports.direct) + at.ports.leaves + at.buses
+    return count * places > COMPILED_FROM and not (problem.laws.code == Law.FIELD).any()
 
 
 def _base(problem: Problem, start: Point | None) -> Solved:
@@ -91,11 +108,37 @@ def _from_one(problem: Problem, base: Solved) -> Solutions:
     )
 
 
-def _empty(at: Structure, count: int) -> Solutions:
+def no_solutions(at: Structure, count: int) -> Solutions:
+    """Return scenarios without a solution.
+
+    Parameters
+    ----------
+    at : Structure
+        Of the mode.
+    count : int
+        Number of scenarios.
+
+    Returns
+    -------
+    Solutions
+        NaN, not converged.
+    """
     return Solutions(
         v=np.full((at.all_buses, count), np.nan, complex),
         i=np.full((at.sources, count), np.nan, complex),
         m=np.full((at.islands, count), np.nan),
+        residual_pu=np.full(count, np.inf),
+        iterations=np.zeros(count, np.int64),
+        converged=np.zeros(count, bool),
+    )
+
+
+def _to_be_filled(at: Structure, count: int) -> Solutions:
+    """Return arrays that every path fills; writing them twice would cost as much as solving."""
+    return Solutions(
+        v=np.empty((at.all_buses, count), complex),
+        i=np.empty((at.sources, count), complex),
+        m=np.empty((at.islands, count)),
         residual_pu=np.full(count, np.inf),
         iterations=np.zeros(count, np.int64),
         converged=np.zeros(count, bool),

@@ -76,7 +76,7 @@ def _sensitivity(problem: Problem, x: Point, regulated: IntArray) -> FloatArray:
     n, s = at.buses, at.sources
     code = laws.code.copy()
     code[regulated] = Law.FIELD
-    factors = jacobian(replace(problem, laws=replace(laws, code=code)), x)
+    factors = jacobian(replace(problem, laws=laws.with_code(code)), x)
     unit = np.zeros((at.size, len(regulated)))
     unit[2 * n + s + regulated, np.arange(len(regulated))] = 1.0
     moved = factors.solve(unit)
