@@ -66,6 +66,8 @@ FAULTS: Final[Mapping[str, str]] = MappingProxyType(
         "two-voltages": "boards of different voltage joined without a transformer",
         "turned-round": "a transformer whose windings are the wrong way round",
         "wrong-voltage": "a rated voltage that does not fit the board",
+        "ring-phase": "transformers of different clock number that close a ring",
+        "ring-ratio": "transformers of different ratio or tap that close a ring",
         "no-source": "a board that no source can reach",
         "no-sources": "a plant without any source",
         # operation

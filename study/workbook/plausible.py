@@ -10,6 +10,7 @@ from typing import Final
 from study.workbook.plausible_cables import check_cables
 from study.workbook.plausible_operation import check_events, check_interlocks, check_modes
 from study.workbook.plausible_protection import check_protection
+from study.workbook.plausible_rings import check_rings
 from study.workbook.plausible_voltage import check_voltages
 from study.workbook.sheets import SOURCE_SHEETS
 from study.workbook.tables import Row
@@ -41,6 +42,7 @@ def check_plausible(plan: Plan, modes: Sequence[str]) -> None:
     check_cables(plan)
     check_modes(plan, modes)
     check_interlocks(plan, modes)
+    check_rings(plan, modes)
     check_events(plan)
     check_protection(plan)
 

@@ -110,8 +110,14 @@ def _check_device(plan: Plan, row: Row) -> None:
     boards = at or boards_of(plan, row.values["equipment"])
     levels = [level for level in (nominal_v(plan, board) for board in boards) if level is not None]
     # Without an end the device may stand on the low side.
-    if levels and rated < min(levels):
-        said = f"{row.name} is rated {rated:.5g} V, and its board has {min(levels):.5g} V"
-        plan.report(
-            "device-voltage", row, "u_rated_v", said, "choose a device for that voltage", warning=True
-        )
+    if not levels or rated >= min(levels):
+        return
+    needed = min(levels)
+    if plan.names.rows[row.values["equipment"]].values.get("phases") == "1":
+        needed /= sqrt(3.0)
+    plan.report(
+        "device-voltage", row, "u_rated_v",
+        f"{row.name} is rated {rated:.5g} V, and its board has {min(levels):.5g} V",
+        "choose a device for that voltage",
+        warning=rated >= (1.0 - WARNING_BEYOND) * needed,
+    )  # fmt: skip

@@ -133,7 +133,25 @@ TOPOLOGY = [
         "Normal supply",
         row("Transfers", Board_or_load="MSB A", Normal_supply="ESB", Other_supply="MSB B"),
     ),
-    odd_cell("device below its board", "device-voltage", ("Devices", 0, "Rated voltage [V]"), 440.0),
+    odd_cell("device just below its board", "device-voltage", ("Devices", 0, "Rated voltage [V]"), 440.0),
+    cell("device far below its board", "device-voltage", ("Devices", 0, "Rated voltage [V]"), 230.0),
+    fault(
+        "transformers of two clock numbers in parallel",
+        "ring-phase",
+        "Transformers",
+        1,
+        "Vector group",
+        again("Transformers", 0, Transformer="T2", Vector_group="Dyn5"),
+    ),
+    warning(
+        "transformers of two ratios in parallel",
+        "ring-ratio",
+        "Transformers",
+        1,
+        "Tap [%]",
+        again("Transformers", 0, Transformer="T2"),
+        put("Transformers", -1, "Tap [%]", 0.0),
+    ),
 ]
 
 OPERATION = [
@@ -283,6 +301,8 @@ PLAUSIBILITY = [
     odd_cell("large stator resistance", "resistance-ratio", ("Gensets", 0, "Stator resistance [pu]"), 0.08),
     cell("stator resistance in per cent", "resistance-ratio", ("Gensets", 0, "Stator resistance [pu]"), 0.4),
     odd_cell("engine too small", "engine-power", ("Gensets", 0, "Engine power [kW]"), 250.0),
+    odd_cell("engine too large", "engine-power", ("Gensets", 0, "Engine power [kW]"), 600.0),
+    cell("engine of another machine", "engine-power", ("Gensets", 0, "Engine power [kW]"), 4250.0),
     cell("engine in MW", "engine-power", ("Gensets", 0, "Engine power [kW]"), 0.425),
     warning(
         "loads of another size",
