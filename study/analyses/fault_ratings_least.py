@@ -1,0 +1,154 @@
+"""The least fault at the far end of what each device protects, and whether it is cleared in time."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from study.analyses.fault_ratings_clearing import STAGES, Clearing, clear
+from study.analyses.fault_ratings_history import Histories, case_histories, knots_s
+from study.analyses.fault_ratings_series import Stacked
+from study.analyses.fault_ratings_sides import PlantDevices
+from study.model.plant import Plant
+from study.results.arrays import read_only
+from study.results.fault_ratings import ClearingRatings
+from study.results.short_circuit import FaultCase, ModeShortCircuit, ShortCircuitResult
+
+FloatArray = NDArray[np.float64]
+IntArray = NDArray[np.int64]
+BoolArray = NDArray[np.bool_]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class LeastFaults:
+    """The least fault at the far end of each device in one mode, [device], and how it is cleared."""
+
+    judged: BoolArray
+    history: Histories
+    clearing: Clearing
+    heat_a2s: FloatArray
+
+
+def least_faults(plant: Plant, devices: PlantDevices, mode: ModeShortCircuit, f_hz: float) -> LeastFaults:
+    """Return the least fault that each device must clear in one mode, while its source keeps it up.
+
+    The three-phase current through the device, by the minimum case, times the ratio of the least kind of
+    fault to the three-phase one at that place; fitted to the device's own least current where its setting
+    gives a time.
+
+    Parameters
+    ----------
+    plant : Plant
+        Devices.
+    devices : PlantDevices
+        Releases.
+    mode : ModeShortCircuit
+        The mode.
+    f_hz : float
+        Rated frequency. [Hz]
+
+    Returns
+    -------
+    LeastFaults
+        In workbook order of the devices.
+    """
+    case, faults = mode.minimum, mode.devices
+    place = np.where(faults.place >= 0, faults.far_place, -1)
+    share = _shares(devices, case, place)
+    knots = knots_s(f_hz, case.parts.ends_s)
+    _, through = case_histories(case, place, share, knots)
+    least = through.times(_least_over_three_phase(case, place, through.time_s))
+    own = least.ac_at_a(np.nan_to_num(faults.operating_s, nan=0.0))
+    fits = np.isfinite(faults.operating_s) & np.isfinite(faults.least_a) & (own > 0.0)
+    least = least.times(np.where(fits, faults.least_a / np.where(fits, own, 1.0), 1.0)[:, None, None])
+    cleared = clear(devices.releases, least, 0.5 / f_hz, _holds_s(case, place, share))
+    counts = [
+        d.kind != "thermal overload" and not (d.kind == "circuit breaker" and r.by_relay)
+        for d, r in zip(plant.devices, devices.releases, strict=True)
+    ]
+    known = np.array([r.known for r in devices.releases], bool)
+    return LeastFaults(
+        judged=np.array(counts, bool) & known & (place >= 0) & np.isfinite(faults.least_a),
+        history=least,
+        clearing=cleared,
+        heat_a2s=least.heat_a2s(cleared.time_s),
+    )
+
+
+def clearing_ratings(plant: Plant, least: list[LeastFaults], result: ShortCircuitResult) -> ClearingRatings:
+    """Return whether every device clears its least fault in every mode.
+
+    Parameters
+    ----------
+    plant : Plant
+        Devices.
+    least : list of LeastFaults
+        One for each mode.
+    result : ShortCircuitResult
+        Kinds of the least faults.
+
+    Returns
+    -------
+    ClearingRatings
+        In workbook order.
+    """
+    table = Stacked([_columns(x) for x in least], len(plant.devices))
+    kinds = [mode.devices.least_kind for mode in result.modes]
+    return ClearingRatings(
+        names=tuple(d.name for d in plant.devices),
+        stages=STAGES,
+        judged=read_only(table["judged"], np.bool_),
+        least_a=read_only(table["least_a"]),
+        first_a=read_only(table["first_a"]),
+        pick_up_a=read_only(table["pick_up_a"]),
+        stage=read_only(table["stage"], np.int64),
+        clears=read_only(table["clears"], np.bool_),
+        clearing_s=read_only(table["clearing_s"]),
+        kinds=tuple(tuple(kind[k] for kind in kinds) for k in range(len(plant.devices))),
+    )
+
+
+def _columns(least: LeastFaults) -> dict[str, NDArray[np.generic]]:
+    dark = np.where(least.judged, 1.0, np.nan)
+    clears = np.isfinite(least.clearing.time_s)
+    return {
+        "judged": least.judged,
+        "least_a": least.clearing.seen_a * dark,
+        "first_a": least.history.ac_a[:, 0, 0] * dark,
+        "pick_up_a": least.clearing.pick_up_a * dark,
+        "stage": least.clearing.meant,
+        "clears": clears & least.judged,
+        "clearing_s": least.clearing.time_s * dark,
+    }
+
+
+def _shares(devices: PlantDevices, case: FaultCase, place: IntArray) -> FloatArray:
+    """Return the part of each source that flows through each device into a fault at its far end."""
+    row_of = {
+        (int(p), name): k for k, (p, name) in enumerate(zip(case.ends.place, case.ends.branches, strict=True))
+    }
+    share = np.ones((len(place), len(case.sources.names)))
+    for k, branch in enumerate(devices.branch):
+        row = row_of.get((int(place[k]), branch), -1) if branch else -1
+        if row >= 0:
+            share[k] = case.ends.share[row]
+    return share
+
+
+def _least_over_three_phase(case: FaultCase, place: IntArray, knots: FloatArray) -> FloatArray:
+    """Return the ratio of the least kind of fault to the three-phase one, [row, interval, 3]."""
+    samples = np.stack([knots[:-1], 0.5 * (knots[1:] + knots[:-1]), knots[1:]], axis=1)
+    there = np.isfinite(case.iac_a) & (case.iac_a > 0.0) & np.isfinite(case.least_a)
+    ratio = np.where(there, case.least_a, 1.0) / np.where(there, case.iac_a, 1.0)
+    found = np.ones((len(place), *samples.shape))
+    for at in np.unique(place[place >= 0]):
+        found[place == at] = np.interp(samples, case.time_s, ratio[at])
+    return found
+
+
+def _holds_s(case: FaultCase, place: IntArray, share: FloatArray) -> FloatArray:
+    """Return how long the current through each device is kept up: until the first of its sources ends."""
+    kept = (case.parts.sustained_a[place] * share > 0.0) & (case.sources.holds_s > 0.0)[None, :]
+    return np.asarray(np.where(kept, case.sources.holds_s[None, :], np.inf).min(axis=1, initial=np.inf))
