@@ -11,6 +11,7 @@ from study.report.tables_load_flow import load_flow_tables
 from study.report.tables_modes import modes_table
 from study.report.tables_regulation import regulation_tables
 from study.report.tables_sharing import sharing_tables
+from study.report.tables_short_circuit import short_circuit_tables
 from study.report.tables_sources import source_tables
 from study.report.tables_verdicts import verdict_tables
 
@@ -42,6 +43,7 @@ def all_tables(outcome: StudyOutcome) -> dict[str, Table]:
         *branch_tables(outcome),
         *sharing_tables(outcome),
         *regulation_tables(outcome),
+        *short_circuit_tables(outcome),
         *assumption_tables(outcome),
     )
     found = {table.key: table for table in tables}

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 from study.report.charts_balance import load_by_service, set_loading
 from study.report.charts_sharing import case_figures, sharing_figures
+from study.report.charts_short_circuit import short_circuit_figures
 from study.report.charts_voltage import board_voltages, regulation_figures, voltages_by_board
 from study.report.content import StudyOutcome
 from study.report.plotting import Drawing, house_style
@@ -20,11 +21,19 @@ class Figures:
     sharing: tuple[Drawing, ...]
     cases: tuple[Drawing, ...]
     regulation: tuple[Drawing, ...]
+    short_circuit: tuple[Drawing, ...]
 
     @property
     def every(self) -> tuple[Drawing, ...]:
         """All figures."""
-        return (*self.balance, *self.voltages, *self.sharing, *self.cases, *self.regulation)
+        return (
+            *self.balance,
+            *self.voltages,
+            *self.sharing,
+            *self.cases,
+            *self.regulation,
+            *self.short_circuit,
+        )
 
 
 def draw_figures(outcome: StudyOutcome) -> Figures:
@@ -47,6 +56,7 @@ def draw_figures(outcome: StudyOutcome) -> Figures:
             sharing=sharing_figures(outcome),
             cases=case_figures(outcome),
             regulation=regulation_figures(outcome),
+            short_circuit=short_circuit_figures(outcome),
         )
 
 

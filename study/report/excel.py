@@ -52,7 +52,8 @@ def result_workbook(outcome: StudyOutcome) -> bytes:
     tables = all_tables(outcome)
     for name in SHEETS:
         on_sheet = [table for table in tables.values() if table.sheet == name]
-        _sheet(book, formats, name, on_sheet, outcome)
+        if on_sheet:
+            _sheet(book, formats, name, on_sheet, outcome)
     book.close()
     return buffer.getvalue()
 

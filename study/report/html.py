@@ -13,7 +13,7 @@ from study.report.findings import Finding, findings
 from study.report.page_tables import TableView, table_view, turned, verdict_css, verdict_text
 from study.report.style import ACCENT, INK, QUIET, RULE, TINT, VERDICTS
 from study.report.tables import Table
-from study.report.tables_assumptions import NOT_COVERED
+from study.report.tables_assumptions import not_covered
 from study.report.tables_verdicts import VESSEL, VerdictGrid, verdict_grid
 from study.resources import resource_dir
 
@@ -21,6 +21,7 @@ _SECTIONS: Final = (
     ("verdicts", "Verdicts"),
     ("load-balance", "Load balance"),
     ("voltage", "Voltage and sharing"),
+    ("short-circuit", "Short-circuit"),
     ("comparing", "Comparing modes"),
     ("assumptions", "Assumptions, limits and methods"),
     ("not-covered", "Not covered"),
@@ -36,9 +37,16 @@ _NOT_ON_THE_PAGE = (
     "setting_lines",
     "regulation_curves",
     "inherent_curves",
+    "short_circuit_by_mode",
+    "fault_decay",
 )
 """Tables that the page shows as sentences, grid or figures, or leaves to the result sheets."""
-_ON_SHEET_ONLY = ("board", "input_cell")
+_ON_SHEET_ONLY: Final[dict[str, tuple[str, ...]]] = {
+    "load_balance": ("board", "input_cell"),
+    "short_circuit_boards": ("ik_nominal_ka", "ip_nominal_ka"),
+    "short_circuit_places": ("idc_half_ka", "input_cell"),
+}
+"""Columns that the page leaves to the result sheets."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -105,7 +113,7 @@ def _context(outcome: StudyOutcome, figures: Figures) -> dict[str, Any]:
         "caution": CAUTION,
         "sections": [
             {"key": key, "title": title, "number": number}
-            for number, (key, title) in enumerate(_SECTIONS, start=1)
+            for number, (key, title) in enumerate(_sections(outcome), start=1)
         ],
         "tables": _views(tables, outcome),
         "figures": figures,
@@ -118,12 +126,18 @@ def _context(outcome: StudyOutcome, figures: Figures) -> dict[str, Any]:
         "modes": names,
         "mode_lines": lines,
         "mode_verdicts": _mode_verdicts(grid, len(names)),
-        "not_covered": NOT_COVERED,
+        "not_covered": not_covered(outcome),
         "looks": VERDICTS,
         "colours": {"accent": ACCENT, "ink": INK, "quiet": QUIET, "rule": RULE, "tint": TINT},
         "print_document": css_text(f"{project.document_number} rev. {project.revision}"),
         "print_vessel": css_text(project.vessel),
     }
+
+
+def _sections(outcome: StudyOutcome) -> list[tuple[str, str]]:
+    """Return key and title of every section that the study fills."""
+    absent = ("short-circuit",) if outcome.short_circuit is None else ()
+    return [(key, title) for key, title in _SECTIONS if key not in absent]
 
 
 def _views(tables: dict[str, Table], outcome: StudyOutcome) -> dict[str, TableView]:
@@ -132,8 +146,7 @@ def _views(tables: dict[str, Table], outcome: StudyOutcome) -> dict[str, TableVi
     for key, table in tables.items():
         if table.n_rows and key not in _NOT_ON_THE_PAGE:
             anchors = _proofs(table, outcome) if key == "verdicts" else ()
-            without = _ON_SHEET_ONLY if key == "load_balance" else ()
-            views[key] = table_view(table, anchors=anchors, without=without)
+            views[key] = table_view(table, anchors=anchors, without=_ON_SHEET_ONLY.get(key, ()))
     return views
 
 

@@ -31,6 +31,8 @@ SHEETS: Final = (
     "R Capacity",
     "R Load flow",
     "R Sharing",
+    "R Short-circuit",
+    "R Fault ratings",
     "R Assumptions",
 )
 

@@ -9,9 +9,13 @@ from study.report.tables import Column, Table, cell_column, make_table, text_col
 
 _SHEET = "R Assumptions"
 
+_SHORT_CIRCUIT: Final = (
+    "Short-circuit currents",
+    "Not computed yet; ratings of boards and devices are not judged.",
+)
 NOT_COVERED: Final = (
     ("One-line diagram", "Not drawn yet."),
-    ("Short-circuit currents", "Not computed yet; ratings of boards and devices are not judged."),
+    _SHORT_CIRCUIT,
     ("Grading of protective devices", "Not computed yet; settings are not judged."),
     ("Voltage and frequency dips", "Starting of large motors and load steps is not simulated yet."),
     ("Harmonic distortion", "Not computed yet."),
@@ -46,7 +50,7 @@ def assumption_tables(outcome: StudyOutcome) -> tuple[Table, ...]:
         limits_table(outcome),
         methods_table(outcome),
         not_read_table(outcome),
-        not_covered_table(),
+        not_covered_table(outcome),
     )
 
 
@@ -120,12 +124,28 @@ def not_read_table(outcome: StudyOutcome) -> Table:
     )
 
 
-def not_covered_table() -> Table:
+def not_covered(outcome: StudyOutcome) -> tuple[tuple[str, str], ...]:
+    """Return the subjects that a study does not answer, with a remark on each.
+
+    Parameters
+    ----------
+    outcome : StudyOutcome
+        The study.
+
+    Returns
+    -------
+    tuple of (str, str)
+        Subject and remark.
+    """
+    return tuple(row for row in NOT_COVERED if outcome.short_circuit is None or row is not _SHORT_CIRCUIT)
+
+
+def not_covered_table(outcome: StudyOutcome) -> Table:
     """Return what the study does not answer."""
     return make_table(
         key="not_covered",
         title="Not covered",
         sheet=_SHEET,
         columns=[text_column("subject", "Subject"), text_column("remark", "Remark", kind="long text")],
-        rows=NOT_COVERED,
+        rows=not_covered(outcome),
     )

@@ -135,7 +135,7 @@ def _case(plant: Plant, where: Places, m: int, *, motors: bool, strength: float)
     sustained = parts["sustained_a"].sum(axis=1) * dark
     behind = np.array([kind != "board" for kind in where.kinds])
     return FaultCase(
-        sources=_sources(names, kinds, boards, initial, ip, parts["sustained_a"]),
+        sources=_sources(names, kinds, boards, initial=initial, ip=ip, sustained=parts["sustained_a"]),
         live=read_only(live, bool),
         parallel_paths=read_only(np.arange(len(live)) == 2, bool),
         ik_initial_a=read_only(initial.sum(axis=1) * dark),
@@ -166,7 +166,7 @@ def _case(plant: Plant, where: Places, m: int, *, motors: bool, strength: float)
         source_initial_a=read_only(initial),
         source_half_a=read_only(half),
         source_ip_a=read_only(ip),
-        ends=_ends(where, boards, kinds, initial, half, ip),
+        ends=_ends(where, boards, kinds, initial=initial, half=half, ip=ip),
     )
 
 
@@ -203,7 +203,7 @@ def _dc(p: dict[str, Any], times_s: Any) -> Any:
 
 
 def _sources(
-    names: list[str], kinds: list[str], boards: list[str], initial: Any, ip: Any, sustained: Any
+    names: list[str], kinds: list[str], boards: list[str], *, initial: Any, ip: Any, sustained: Any
 ) -> FaultSources:
     n = len(names)
     sets = np.array([kind == "genset" for kind in kinds])
@@ -223,7 +223,9 @@ def _sources(
     )
 
 
-def _ends(where: Places, boards: list[str], kinds: list[str], initial: Any, half: Any, ip: Any) -> BranchEnds:
+def _ends(
+    where: Places, boards: list[str], kinds: list[str], *, initial: Any, half: Any, ip: Any
+) -> BranchEnds:
     """Return the generators' cables and a tie between the first two boards."""
     place, branches, far, share = [], [], [], []
     for s, board in enumerate(boards):
