@@ -1,0 +1,564 @@
+"""What feeds a fault in one mode and case, as arrays [source] per unit of the network's base.
+
+Currents are per unit of base power over sqrt3 times base voltage of the source's own level, so that the
+formulas of IEC 61363-1 serve with a line voltage of sqrt3: phase voltage 1. Each source stands on its board
+behind its own cable, which is part of it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, fields, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from study.formulas.fault_current import SQRT2, SQRT3, FaultCurrent, FloatArray
+from study.formulas.fault_iec61363 import (
+    Source,
+    dc_time_constant_s,
+    load_phasor_a,
+    synchronous_source,
+    through_impedance,
+)
+from study.formulas.fault_iec61363_motors import LARGE_MOTOR_KW, TYPICAL_MOTOR, asynchronous_source
+from study.formulas.fault_iec61363_plant import starred
+from study.formulas.induction import rated_current
+from study.model.loads import Load
+from study.model.modes import Mode
+from study.model.plant import Plant
+from study.model.sources import ConverterSupply, Genset, ShoreSupply, SynchronousMotor
+from study.network.fault_holding import Holding, holding_of
+from study.network.network import Network
+from study.network.view import View
+
+ComplexArray = NDArray[np.complex128]
+IntArray = NDArray[np.int64]
+BoolArray = NDArray[np.bool_]
+
+LARGE = 1e12  # stands for an impedance through which nothing comes [pu]
+# A regenerating drive counts as a motor with ILR/IrM 3 and R/X 0.10: IEC 60909-0:2016, from memory.
+DRIVE_STARTING_CURRENT, DRIVE_R_OVER_X = 3.0, 0.10
+MOTOR_R_OVER_X_SPLIT = TYPICAL_MOTOR.rs_pu / (TYPICAL_MOTOR.rs_pu + TYPICAL_MOTOR.rr_pu)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class CaseOptions:
+    """What makes a case: its name, the step of the reactances' tolerance (-1, 0, 1), load and motors."""
+
+    maximum: bool
+    tolerance_sign: float
+    preloaded: bool
+    motors: bool
+
+
+MAXIMUM = CaseOptions(maximum=True, tolerance_sign=-1.0, preloaded=True, motors=True)
+NOMINAL = replace(MAXIMUM, tolerance_sign=0.0)
+MINIMUM = CaseOptions(maximum=False, tolerance_sign=1.0, preloaded=False, motors=False)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Supply:
+    """One source as the workbook has it, before it becomes a row of arrays.
+
+    ``item`` is its record, or for motors the consumers lumped in it; ``units`` how many equal ones stand for
+    it; ``node`` its node and ``lead`` the impedance of its own cable(s) to the board [pu]. ``pu`` is network
+    base over own rating: what an own per-unit impedance is multiplied by.
+    """
+
+    name: str
+    kind: str
+    board: str
+    node: int
+    lead: complex
+    units: float
+    item: Genset | SynchronousMotor | ShoreSupply | ConverterSupply | Load | None
+    voltage: float
+    pu: float
+    rated_a: float
+    starting: float = 0.0
+    r_over_x: float = 0.0
+    poles: int = 0
+    p_rated_kw: float = 0.0
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class FaultSources:
+    """Sources of one case, arrays [source] per unit.
+
+    ``bare`` are the sources at their own terminals, ``at_board`` behind their own cables with starred
+    impedances: the load before the fault is inside them. ``voltage`` drives them, ``negative`` is the
+    negative-sequence impedance behind the cable. ``limit`` is the current of a converter supply (0 for all
+    else) and ``ends_s`` how long it lasts. ``field_limit`` is the e.m.f. of a shunt set at rated voltage and
+    full field (0 for others). ``asynchronous`` marks motors that have no transient part.
+    """
+
+    supplies: tuple[Supply, ...]
+    bus: IntArray
+    island: IntArray
+    units: FloatArray
+    lead: ComplexArray
+    voltage: FloatArray
+    bare: Source
+    at_board: Source
+    negative: ComplexArray
+    limit: FloatArray
+    ends_s: FloatArray
+    field_limit: FloatArray
+    asynchronous: BoolArray
+    preload: FloatArray
+    holdings: tuple[Holding, ...]
+
+
+def supplies_of(
+    network: Network,
+    mode: Mode,
+    view: View,
+    options: CaseOptions,
+    leads: dict[int, tuple[int, complex]],
+) -> tuple[tuple[Supply, ...], tuple[str, ...]]:
+    """Return what feeds a fault in a case, and what was found about it.
+
+    Parameters
+    ----------
+    network : Network
+        Of the plant.
+    mode : Mode
+        The mode.
+    view : View
+        What is energised in the case.
+    options : CaseOptions
+        The case.
+    leads : dict of int to (int, complex)
+        For each terminal node that ends a single path: the node of the board end and the impedance of one
+        unit's run. [pu]
+
+    Returns
+    -------
+    tuple
+        The sources; sentences.
+    """
+    plant = network.plant
+    machines = [x for x in plant.gensets if x.name in view.sources]
+    rows = [_machine(network, x, "genset", leads) for x in machines]
+    found: list[str] = []
+    for shore in plant.shore_supplies:
+        if shore.name not in view.sources:
+            continue
+        level = _fault_level(shore, options)
+        if level is None:
+            found.append(f"{shore.name} has no fault level: its short-circuit current is not known.")
+            continue
+        rows.append(_shore(network, shore, level, leads))
+    for converter in plant.converter_supplies:
+        if converter.name not in view.sources:
+            continue
+        if converter.short_circuit_current is None:
+            found.append(f"{converter.name} has no short-circuit current given: nothing of it is counted.")
+            continue
+        rows.append(_converter(network, converter, leads))
+    if options.motors:
+        rows += [
+            _machine(network, x, "synchronous motor", leads)
+            for x in plant.synchronous_motors
+            if x.name in view.motors_on
+        ]
+        rows += _motors(network, mode, view, leads)
+    return tuple(rows), tuple(found)
+
+
+def _fault_level(shore: ShoreSupply, options: CaseOptions) -> float | None:
+    given = (shore.fault_level_max_mva, shore.fault_level_min_mva)
+    first, second = given if options.maximum else given[::-1]
+    return first if first is not None else second
+
+
+def _place(network: Network, name: str, leads: dict[int, tuple[int, complex]]) -> tuple[int, complex]:
+    node = network.topology.node_of[name]
+    return node, leads[node][1] if node in leads else 0j
+
+
+def _machine(
+    network: Network, item: Genset | SynchronousMotor, kind: str, leads: dict[int, tuple[int, complex]]
+) -> Supply:
+    node, lead = _place(network, item.name, leads)
+    u = network.u_base_v[node]
+    return Supply(
+        name=item.name,
+        kind=kind,
+        board=item.board,
+        node=node,
+        lead=lead,
+        units=1.0,
+        item=item,
+        voltage=item.u_rated_v / u,
+        pu=network.s_base_kva / item.s_rated_kva * (item.u_rated_v / u) ** 2,
+        rated_a=1000.0 * item.s_rated_kva / (SQRT3 * item.u_rated_v),
+    )
+
+
+def _shore(
+    network: Network, item: ShoreSupply, level_mva: float, leads: dict[int, tuple[int, complex]]
+) -> Supply:
+    node, lead = _place(network, item.name, leads)
+    u = network.u_base_v[node]
+    return Supply(
+        name=item.name,
+        kind="shore supply",
+        board=item.board,
+        node=node,
+        lead=lead,
+        units=1.0,
+        item=item,
+        voltage=item.u_rated_v / u,
+        pu=network.s_base_kva / (1000.0 * level_mva) * (item.u_rated_v / u) ** 2,
+        rated_a=item.i_rated_a,
+        r_over_x=item.r_over_x,
+    )
+
+
+def _converter(network: Network, item: ConverterSupply, leads: dict[int, tuple[int, complex]]) -> Supply:
+    node, lead = _place(network, item.name, leads)
+    u_rated = network.plant.board(item.board).u_nominal_v
+    u = network.u_base_v[node]
+    return Supply(
+        name=item.name,
+        kind="converter supply",
+        board=item.board,
+        node=node,
+        lead=lead,
+        units=1.0,
+        item=item,
+        voltage=u_rated / u,
+        pu=network.s_base_kva / item.s_rated_kva * (u_rated / u) ** 2,
+        rated_a=1000.0 * item.s_rated_kva / (SQRT3 * u_rated),
+    )
+
+
+def _motors(network: Network, mode: Mode, view: View, leads: dict[int, tuple[int, complex]]) -> list[Supply]:
+    """Return the motors in use: large ones by name, small ones as one for each board."""
+    large: list[Supply] = []
+    small: dict[int, list[Supply]] = {}
+    for k, item in enumerate(network.plant.loads):
+        demand = mode.demand.get(item.name)
+        if not view.load_fed[k] or demand is None or demand.in_use <= 0.0 or not _feeds_back(item):
+            continue
+        one = _motor(network, item, demand.in_use, view.load_node[k], leads)
+        if item.p_rated_kw > LARGE_MOTOR_KW:
+            large.append(one)
+        else:
+            board_node = leads[one.node][0] if one.node in leads else one.node
+            small.setdefault(view.bus[board_node], []).append(replace(one, node=board_node, lead=0j))
+    return large + [_lump(network, parts) for parts in small.values()]
+
+
+def _feeds_back(item: Load) -> bool:
+    """Return True for a motor on the line, and for a drive that can return power."""
+    if item.kind == "motor":
+        motor = item.motor
+        return motor is not None and (motor.starting_method != "converter" or motor.regenerates)
+    return item.motor is not None and item.motor.regenerates
+
+
+def _motor(
+    network: Network, item: Load, in_use: float, node: int, leads: dict[int, tuple[int, complex]]
+) -> Supply:
+    u = network.u_base_v[node]
+    motor = item.motor
+    assert motor is not None  # `_feeds_back` has seen to it
+    drive = item.kind != "motor" or motor.starting_method == "converter"
+    current = float(
+        rated_current(item.p_rated_kw, item.u_rated_v, item.efficiency, item.cos_phi, item.phases)
+    )
+    line_v = item.u_rated_v if item.phases == 3 else u
+    rated_kva = SQRT3 * line_v * current / 1000.0
+    return Supply(
+        name=item.name,
+        kind="regenerating drive" if drive else "motor",
+        board=item.board,
+        node=node,
+        lead=leads[node][1] / in_use if node in leads else 0j,
+        units=in_use,
+        item=item,
+        voltage=0.0,
+        pu=network.s_base_kva / (rated_kva * in_use) * (line_v / u) ** 2,
+        rated_a=current * in_use,
+        starting=DRIVE_STARTING_CURRENT if drive else motor.starting_current,
+        r_over_x=DRIVE_R_OVER_X if drive else 0.0,
+        poles=motor.poles,
+        p_rated_kw=item.p_rated_kw,
+    )
+
+
+def _lump(network: Network, parts: Sequence[Supply]) -> Supply:
+    """Return small motors of one board as one: rated currents added, typical data."""
+    admittance = sum(1.0 / p.pu for p in parts)
+    first = parts[0]
+    board = network.topology.nodes[first.node].board
+    return replace(
+        first,
+        name=f"small motors of {board}",
+        kind="small motors",
+        board=board,
+        units=1.0,
+        item=None,
+        pu=1.0 / admittance,
+        rated_a=sum(p.rated_a for p in parts),
+        starting=sum(p.starting / p.pu for p in parts) / admittance,
+        r_over_x=0.0,
+        p_rated_kw=sum(p.p_rated_kw * p.units for p in parts) / sum(p.units for p in parts),
+    )
+
+
+def fault_sources(
+    plant: Plant,
+    supplies: Sequence[Supply],
+    stand: tuple[IntArray, IntArray],
+    options: CaseOptions,
+    before: FloatArray,
+) -> FaultSources:
+    """Return the arrays of a case.
+
+    Parameters
+    ----------
+    plant : Plant
+        Holds the rated frequency.
+    supplies : sequence of Supply
+        What feeds the fault.
+    stand : tuple of ndarray of int, shape (source,)
+        Bus and island of each.
+    options : CaseOptions
+        The case.
+    before : ndarray, shape (source,)
+        Voltage at each source's board before the fault; drives motors. [pu]
+
+    Returns
+    -------
+    FaultSources
+        In the order of the supplies.
+    """
+    hz = plant.project.f_rated_hz
+    voltage = np.array(
+        [s.voltage if s.voltage else before[k] for k, s in enumerate(supplies)], float
+    ).reshape(-1)
+    holdings = tuple(holding_of(s.item, s.kind) for s in supplies)
+    rows = [_row(s, voltage[k], holdings[k], options, hz) for k, s in enumerate(supplies)]
+    table = np.array(rows, float).reshape(-1, len(_ROW))
+    bare = _joined_source(dict(zip(_ROW, table.T, strict=True)))
+    lead = np.array([s.lead for s in supplies], complex)
+    behind = through_impedance(bare, r_ohm=lead.real, x_ohm=lead.imag, frequency_hz=hz)
+    asynchronous = np.array([s.kind in _ASYNCHRONOUS for s in supplies], bool)
+    behind = _own_cable_of_motors(bare, behind, asynchronous)
+    at_board = starred(behind, SQRT3 * voltage)
+    limit = np.where([s.kind == "converter supply" for s in supplies], bare.current.sustained_a, 0.0)
+    return FaultSources(
+        supplies=tuple(supplies),
+        bus=stand[0],
+        island=stand[1],
+        units=np.array([s.units for s in supplies], float),
+        lead=lead,
+        voltage=voltage,
+        bare=bare,
+        at_board=at_board,
+        negative=_negative(supplies, bare, limit) + lead,
+        limit=limit,
+        ends_s=np.array(
+            [
+                h.lasts_s if s.kind == "converter supply" else np.inf
+                for s, h in zip(supplies, holdings, strict=True)
+            ],
+            float,
+        ),
+        field_limit=np.array([h.field_limit for h in holdings], float),
+        asynchronous=asynchronous,
+        preload=np.array(
+            [1.0 if options.preloaded and s.kind in _SYNCHRONOUS else 0.0 for s in supplies], float
+        ),
+        holdings=holdings,
+    )
+
+
+_SYNCHRONOUS = ("genset", "synchronous motor")
+_ASYNCHRONOUS = ("motor", "small motors", "regenerating drive")
+_ROW = (
+    *(f.name for f in fields(FaultCurrent)),
+    "r_ohm",
+    "x_sub_ohm",
+    "x_trans_ohm",
+    "x_sustained_ohm",
+    "r_dc_ohm",
+    "x_dc_ohm",
+)
+
+
+def _row(s: Supply, voltage: float, holding: Holding, options: CaseOptions, hz: float) -> list[float]:
+    """Return one source at its own terminals, in the order of `_ROW`."""
+    if isinstance(s.item, Genset | SynchronousMotor):
+        source = _machine_source(s, s.item, voltage, options, sustained_in=holding.current_in, hz=hz)
+    elif s.kind == "shore supply":
+        source = _stiff_source(voltage, s.pu, s.r_over_x, hz)
+    elif isinstance(s.item, ConverterSupply):
+        limit = (s.item.short_circuit_current or 0.0) * voltage / s.pu
+        source = _limited_source(voltage, limit)
+    else:
+        source = _motor_source(s, voltage, hz)
+    current = [float(getattr(source.current, f.name)) for f in fields(FaultCurrent)]
+    return current + [float(getattr(source, name)) for name in _ROW[len(current) :]]
+
+
+def pick_sources(sources: FaultSources, rows: IntArray) -> FaultSources:
+    """Return some of the sources.
+
+    Parameters
+    ----------
+    sources : FaultSources
+        All of them.
+    rows : ndarray of int
+        Which.
+
+    Returns
+    -------
+    FaultSources
+        In the order of the rows.
+    """
+    values: dict[str, object] = {}
+    for f in fields(FaultSources):
+        value = getattr(sources, f.name)
+        if isinstance(value, tuple):
+            values[f.name] = tuple(value[k] for k in rows)
+        else:
+            values[f.name] = pick_source(value, rows) if isinstance(value, Source) else value[rows]
+    return FaultSources(**values)  # type: ignore[arg-type]
+
+
+def pick_source(source: Source, rows: NDArray[np.generic]) -> Source:
+    """Return some rows of a source's arrays.
+
+    Parameters
+    ----------
+    source : Source
+        Shape (source,).
+    rows : ndarray
+        Indices or a mask.
+
+    Returns
+    -------
+    Source
+        In the order of the rows.
+    """
+    current = FaultCurrent(**{f.name: getattr(source.current, f.name)[rows] for f in fields(FaultCurrent)})
+    own = {f.name: getattr(source, f.name)[rows] for f in fields(Source) if f.name != "current"}
+    return Source(current=current, **own)
+
+
+def _joined_source(columns: dict[str, FloatArray]) -> Source:
+    current = FaultCurrent(**{f.name: columns[f.name] for f in fields(FaultCurrent)})
+    own = {f.name: columns[f.name] for f in fields(Source) if f.name != "current"}
+    return Source(current=current, **own)
+
+
+def _machine_source(
+    s: Supply,
+    item: Genset | SynchronousMotor,
+    voltage: float,
+    options: CaseOptions,
+    *,
+    sustained_in: float,
+    hz: float,
+) -> Source:
+    m = item.machine
+    tolerance = 1.0 + options.tolerance_sign * m.reactance_tolerance
+    rated = voltage / s.pu
+    load = load_phasor_a(rated if options.preloaded else 0.0, item.cos_phi_rated)
+    if s.kind == "synchronous motor":
+        load = -np.conj(load)  # draws kW, over-excited: delivers kvar
+    x_sub = m.x_d2_saturated_pu * tolerance * s.pu
+    return synchronous_source(
+        voltage_v=SQRT3 * voltage,
+        load_a=load,
+        ra_ohm=m.r_stator_pu * s.pu,
+        x_sub_ohm=x_sub,
+        x_trans_ohm=max(m.x_d1_saturated_pu * tolerance * s.pu, x_sub),
+        xd_ohm=m.x_d_pu * s.pu,
+        t_sub_s=m.t_d2_s,
+        t_trans_s=m.t_d1_s,
+        t_dc_s=m.t_armature_s,
+        sustained_a=sustained_in * rated,
+        frequency_hz=hz,
+    )
+
+
+def _stiff_source(voltage: float, z: float, r_over_x: float, hz: float) -> Source:
+    """Return a supply of constant voltage behind a constant impedance."""
+    x = z / float(np.hypot(1.0, r_over_x))
+    r = x * r_over_x
+    current = voltage / z
+    return _constant(current, SQRT2 * current, float(dc_time_constant_s(x, r, hz)), r, x)
+
+
+def _limited_source(voltage: float, limit: float) -> Source:
+    """Return a converter as the reactance that lets its limit through at its own terminals."""
+    return _constant(limit, 0.0, np.inf, 0.0, voltage / limit)
+
+
+def _constant(current: float, dc: float, t_dc_s: float, r: float, x: float) -> Source:
+    """Return a source whose symmetrical current does not decay."""
+    i, endless = np.asarray(current), np.asarray(np.inf)
+    return Source(
+        current=FaultCurrent(
+            subtransient_a=i,
+            transient_a=i,
+            sustained_a=i,
+            dc_a=np.asarray(dc),
+            t_sub_s=endless,
+            t_trans_s=endless,
+            t_dc_s=np.asarray(t_dc_s),
+        ),
+        r_ohm=np.asarray(r),
+        x_sub_ohm=np.asarray(x),
+        x_trans_ohm=np.asarray(x),
+        x_sustained_ohm=np.asarray(x),
+        r_dc_ohm=np.asarray(r),
+        x_dc_ohm=np.asarray(x),
+    )
+
+
+def _motor_source(s: Supply, voltage: float, hz: float) -> Source:
+    """Return motors without load before the fault: typical data, those of large ones by their own start."""
+    z = TYPICAL_MOTOR
+    if s.kind == "small motors":
+        rs, rr, x = z.rs_pu, z.rr_pu, z.x_pu
+    elif s.kind == "motor":
+        scale = 1.0 / (s.starting * float(np.hypot(z.rs_pu + z.rr_pu, z.x_pu)))
+        rs, rr, x = z.rs_pu * scale, z.rr_pu * scale, z.x_pu * scale
+    else:
+        x = 1.0 / s.starting / float(np.hypot(1.0, s.r_over_x))
+        rs = MOTOR_R_OVER_X_SPLIT * s.r_over_x * x
+        rr = s.r_over_x * x - rs
+    return asynchronous_source(
+        voltage_v=SQRT3 * voltage,
+        load_a=0.0,
+        rs_ohm=rs * s.pu,
+        rr_ohm=rr * s.pu,
+        x_ohm=x * s.pu,
+        frequency_hz=hz,
+    )
+
+
+def _own_cable_of_motors(bare: Source, behind: Source, asynchronous: BoolArray) -> Source:
+    """Return the sources with the standard's own rule for a motor's cable: T''M = (XM + Xc)/(w RR)."""
+    t_sub = np.where(
+        asynchronous,
+        bare.current.t_sub_s * behind.x_sub_ohm / bare.x_sub_ohm,
+        behind.current.t_sub_s,
+    )
+    return replace(behind, current=replace(behind.current, t_sub_s=t_sub))
+
+
+def _negative(supplies: Sequence[Supply], bare: Source, limit: FloatArray) -> ComplexArray:
+    """Return negative-sequence impedances at the terminals; a converter has none."""
+    out = bare.r_ohm + 1j * bare.x_sub_ohm
+    for k, s in enumerate(supplies):
+        if isinstance(s.item, Genset | SynchronousMotor):
+            out[k] = complex(s.item.machine.r_stator_pu, s.item.machine.x_2_pu) * s.pu
+    return np.where(limit > 0.0, LARGE, out)
