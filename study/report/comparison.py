@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import dataclasses
 from collections.abc import Iterable, Iterator, Mapping, Sequence
+from functools import cache
 from typing import Any
 
 from study.checks.verdict import Verdict, worst
@@ -12,9 +13,24 @@ from study.model.plant import Plant
 from study.report.content import StudyOutcome
 from study.report.tables_modes import modes_table
 from study.report.tables_verdicts import VESSEL, figure_text, subjects_of
+from study.workbook.sheets import SHEETS
 
 _PLACE_FIELDS = frozenset({"cell"})
 _MOST_LINES = 200
+# fields whose column has a longer name than the part of the model that holds them
+_OWN_NAMES = {
+    "RegulatorSettings": {
+        "droop_pu": "voltage_droop_pu",
+        "mode": "regulator_mode",
+        "reversed_polarity": "polarity",
+    },
+    "GovernorSettings": {
+        "droop_pu": "speed_droop_pu",
+        "mode": "governor_mode",
+        "time_constant_s": "governor_time_constant_s",
+        "dead_time_s": "governor_dead_time_s",
+    },
+}
 
 
 def verdict_summary(outcome: StudyOutcome) -> str:
@@ -59,7 +75,7 @@ def modes_side_by_side(outcome: StudyOutcome, one: str, other: str) -> str:
     at = [table.column("mode").index(name) for name in (one, other)]
     rows = [["", one, other]]
     for i, column in enumerate(table.columns):
-        if column.key not in ("mode", "description", "cell"):
+        if column.key not in ("mode", "description") and column.kind != "cell":
             texts = table.texts(i)
             rows.append([column.title, *(texts[k] or "-" for k in at)])
     for subject in subjects_of(outcome):
@@ -150,11 +166,26 @@ def _field_changes(old: Any, new: Any, prefix: str = "") -> Iterator[str]:
         a, b = getattr(old, field.name), getattr(new, field.name)
         if field.name in _PLACE_FIELDS or a == b or isinstance(b, Mapping):
             continue
-        words = f"{prefix}{field.name.replace('_', ' ')}"
         if dataclasses.is_dataclass(a) and dataclasses.is_dataclass(b):
-            yield from _field_changes(a, b, f"{words}, ")
+            yield from _field_changes(a, b, prefix)
         else:
-            yield f"{words} {a} -> {b}"
+            known = _OWN_NAMES.get(type(new).__name__, {}).get(field.name, field.name)
+            heading, per_cent = _headings().get(known, (field.name.replace("_", " "), False))
+            yield f"{prefix}{heading} {_shown(a, per_cent)} -> {_shown(b, per_cent)}"
+
+
+@cache
+def _headings() -> Mapping[str, tuple[str, bool]]:
+    """Return the workbook's own heading of every field of the model, and whether it is in per cent."""
+    return {c.field: (c.heading, c.is_percent) for spec in SHEETS for c in spec.columns}
+
+
+def _shown(value: Any, per_cent: bool) -> str:
+    if value is None:
+        return "blank"
+    if isinstance(value, float):
+        return f"{value * (100.0 if per_cent else 1.0):.6g}"
+    return str(value)
 
 
 def _mapping_changes(old: Mapping[Any, Any], new: Mapping[Any, Any], what: str) -> Iterator[str]:
@@ -168,9 +199,7 @@ def _mapping_changes(old: Mapping[Any, Any], new: Mapping[Any, Any], what: str) 
 
 
 def _plain(value: Any) -> str:
-    if value is None:
-        return "none"
-    return "given" if dataclasses.is_dataclass(value) else str(value)
+    return "given" if dataclasses.is_dataclass(value) else _shown(value, False)
 
 
 def _verdict_changes(old: Iterable[Verdict], new: Iterable[Verdict]) -> Iterator[str]:
