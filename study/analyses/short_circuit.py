@@ -23,7 +23,7 @@ from study.analyses.short_circuit_general import GeneralCase, compared, general_
 from study.analyses.short_circuit_options import ShortCircuitOptions
 from study.model.modes import Mode, State
 from study.network.fault_network import FaultNetwork, FaultPlant, fault_network, fault_plant
-from study.network.fault_sources import MAXIMUM, MINIMUM, NOMINAL
+from study.network.fault_supplies import MAXIMUM, MINIMUM, NOMINAL
 from study.network.network import Network
 from study.network.solver_faults import library_currents
 from study.results.arrays import read_only

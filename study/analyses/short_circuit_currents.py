@@ -18,8 +18,9 @@ from study.formulas.fault_current import SQRT3, FaultCurrent
 from study.formulas.fault_iec61363 import Source, through_impedance
 from study.formulas.fault_iec61363_motors import limited_current_behind_impedance_a
 from study.formulas.fault_iec61363_plant import starred
-from study.network.fault_network import FaultNetwork, Stage, solve_stage
+from study.network.fault_network import FaultNetwork
 from study.network.fault_sources import pick_source
+from study.network.fault_stages import Stage, solve_stage
 
 FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
@@ -222,7 +223,7 @@ def _seen(current: ComplexArray, voltage: FloatArray, z: ComplexArray) -> Comple
     """Return the impedance that each source sees beyond its own; 0 where it gives nothing."""
     gives = np.abs(current) > 0.0
     seen = np.where(gives, voltage / np.where(gives, current, 1.0) - z, 0.0)
-    return np.maximum(seen.real, 0.0) + 1j * np.maximum(seen.imag, 0.0)
+    return np.asarray(np.maximum(seen.real, 0.0) + 1j * np.maximum(seen.imag, 0.0))
 
 
 def _behind(

@@ -8,7 +8,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from study.formulas.fault_current import SQRT2
-from study.network.fault_network import FaultNetwork, Stage
+from study.network.fault_network import FaultNetwork
+from study.network.fault_stages import Stage
 from study.network.topology import Branch
 from study.network.union_find import UnionFind
 from study.network.view import DEAD

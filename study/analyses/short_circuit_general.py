@@ -21,7 +21,8 @@ from study.formulas.fault_iec60909_decay import (
 )
 from study.formulas.fault_iec60909_nodal import at_equivalent_frequency
 from study.network.fault_general import GeneralSources, general_network, general_sources
-from study.network.fault_network import FaultNetwork, Stage, solve_stage
+from study.network.fault_network import FaultNetwork
+from study.network.fault_stages import Stage, solve_stage
 from study.network.fault_zero_sequence import zero_sequence
 from study.results.arrays import read_only
 from study.results.short_circuit import Iec60909Case

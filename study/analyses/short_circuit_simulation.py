@@ -30,7 +30,7 @@ from study.formulas.park_plant import (
 from study.issues import SolveError
 from study.model.sources import Genset, MachineData, SynchronousMotor
 from study.network.fault_network import FaultNetwork, fault_network, fault_plant, only_sources
-from study.network.fault_sources import MAXIMUM
+from study.network.fault_supplies import MAXIMUM
 from study.network.network import Network
 from study.results.arrays import read_only
 from study.results.short_circuit import SimulatedFault

@@ -19,7 +19,8 @@ from study.formulas.fault_iec60909_nodal import admittance_matrix
 from study.model.branches import ThreeWindingTransformer
 from study.model.sources import Genset, SynchronousMotor
 from study.network.fault_network import FaultNetwork
-from study.network.fault_sources import DRIVE_R_OVER_X, LARGE, Supply
+from study.network.fault_sources import LARGE
+from study.network.fault_supplies import DRIVE_R_OVER_X, Supply
 
 FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]

@@ -7,26 +7,21 @@ minimum.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
 from study.formulas.cables import resistance_at, skin_effect_factor
-from study.formulas.fault_iec60909_nodal import admittance_matrix, impedance_matrix
+from study.formulas.fault_iec60909_nodal import admittance_matrix
 from study.model.modes import Mode
 from study.model.plant import Plant
 from study.network.arrays import transformer_ratio
 from study.network.cable_data import cable_ohm_per_km
-from study.network.fault_sources import (
-    CaseOptions,
-    FaultSources,
-    Supply,
-    fault_sources,
-    pick_sources,
-    supplies_of,
-)
+from study.network.fault_inverse import inverse
+from study.network.fault_sources import FaultSources, fault_sources, pick_sources
+from study.network.fault_supplies import CaseOptions, Supply, supplies_of
 from study.network.network import Network
 from study.network.view import DEAD, View, view_of
 
@@ -86,20 +81,6 @@ class FaultNetwork:
     admittance: ComplexArray
     sources: FaultSources
     findings: tuple[str, ...]
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Stage:
-    """What each source gives to a bolted fault at each place, as phasors.
-
-    ``current`` [place, source] and ``z_place`` [place], the impedance at the place, are per unit; ``fed``
-    [place] is False where no source of this stage reaches. ``z_bus`` [bus, bus].
-    """
-
-    current: ComplexArray
-    z_place: ComplexArray
-    fed: BoolArray
-    z_bus: ComplexArray
 
 
 def fault_plant(network: Network) -> FaultPlant:
@@ -340,19 +321,10 @@ def _before(
     driving = np.array([bool(s.voltage) for s in supplies], bool)
     y = np.array([1.0 / (1j * s.pu) if s.voltage else 0.0 for s in supplies], complex)
     e = np.array([s.voltage for s in supplies], float)
-    z = _inverse(admittance, bus[driving], y[driving], bus_island)
+    z = inverse(admittance, bus[driving], y[driving], bus_island)
     injected = np.zeros(len(bus_island), complex)
     np.add.at(injected, bus, y * e)
     return np.abs(z @ injected)
-
-
-def _inverse(admittance: ComplexArray, bus: IntArray, y: ComplexArray, bus_island: IntArray) -> ComplexArray:
-    """Return the impedance matrix; buses of islands without a source get 1 pu to the reference."""
-    matrix = admittance.copy()
-    np.add.at(matrix, (bus, bus), y)
-    unfed = np.flatnonzero(~np.isin(bus_island, bus_island[bus]))
-    matrix[unfed, unfed] += 1.0
-    return impedance_matrix(matrix)
 
 
 def only_sources(net: FaultNetwork, keep: BoolArray) -> FaultNetwork:
@@ -374,82 +346,3 @@ def only_sources(net: FaultNetwork, keep: BoolArray) -> FaultNetwork:
     number = np.full(len(keep) + 1, -1, np.int64)
     number[rows] = np.arange(len(rows))
     return replace(net, sources=pick_sources(net.sources, rows), place_own=number[net.place_own])
-
-
-def solve_stage(
-    net: FaultNetwork,
-    z_board: ComplexArray,
-    z_bare: ComplexArray,
-    active: BoolArray,
-    *,
-    voltage: FloatArray | None = None,
-    transform: Callable[[ComplexArray], ComplexArray] | None = None,
-) -> Stage:
-    """Return what each source gives to a fault at each place, in one stage of the fault.
-
-    A source at its own terminals gives ``U / z_bare``; all else comes through the network, in which sources
-    are voltages behind `z_board`.
-
-    Source: nodal analysis.
-
-    Parameters
-    ----------
-    net : FaultNetwork
-        The network.
-    z_board, z_bare : ndarray, shape (source,)
-        Impedances of the sources at their boards, cable included, and at their terminals. [pu]
-    active : ndarray of bool, shape (source,)
-        Sources that take part.
-    voltage : ndarray, shape (source,), optional
-        What drives each source in this stage, where it is not its voltage before the fault. [pu]
-    transform : callable, optional
-        Applied to every impedance: to another frequency.
-
-    Returns
-    -------
-    Stage
-        Phasors per unit.
-    """
-    s = net.sources
-    drive = s.voltage if voltage is None else voltage
-    if transform is None:
-        branches, place_z = net.admittance, net.place_z
-    else:
-        z_board, z_bare, place_z = (transform(z) for z in (z_board, z_bare, net.place_z))
-        branches = admittance_matrix(
-            len(net.bus_island),
-            branch_from=net.from_bus,
-            branch_to=net.to_bus,
-            branch_impedance=transform(net.z),
-            branch_ratio=net.ratio,
-            source_bus=np.zeros(0, np.int64),
-            source_impedance=np.zeros(0),
-        )
-    y = np.where(active, 1.0 / np.where(active, z_board, 1.0), 0.0)
-    y_bare = np.where(active, 1.0 / np.where(active, z_bare, 1.0), 0.0) / s.units
-    z_bus = _inverse(branches, s.bus[active], y[active], net.bus_island)
-    fed_islands = np.unique(s.island[active])
-    fed = (net.place_bus >= 0) & np.isin(net.place_island, fed_islands)
-    bus = np.where(fed, net.place_bus, 0)
-    if not len(net.bus_island):
-        empty = np.zeros((len(bus), len(s.bus)), complex)
-        return Stage(current=empty, z_place=np.full(len(bus), np.inf, complex), fed=fed, z_bus=z_bus)
-    z_at = z_bus[bus, bus]
-    own = net.place_own
-    has_own = fed & (own >= 0)
-    y_own = np.where(has_own, (y / s.units)[own], 0.0)
-    others = 1.0 / z_at - y_own
-    series = 1.0 + place_z * others
-    current = z_bus[bus[:, None], s.bus[None, :]] * ((y * drive)[None, :] / (z_at * series)[:, None])
-    at = np.flatnonzero(has_own)
-    row = own[at]
-    current[at, row] *= 1.0 - 1.0 / s.units[row]
-    current[at, row] += (y_bare * drive)[row]
-    current[~fed] = 0.0
-    y_direct = np.where(has_own, y_bare[own], 0.0)
-    return Stage(
-        current=current,
-        z_place=np.where(fed, 1.0 / (others / series + y_direct), np.inf),
-        fed=fed,
-        z_bus=z_bus,
-    )

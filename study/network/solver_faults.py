@@ -21,7 +21,7 @@ from study.model.branches import ThreeWindingTransformer
 from study.model.sources import Genset, SynchronousMotor
 from study.network.fault_general import motor_ratio, three_winding_factor
 from study.network.fault_network import FaultNetwork
-from study.network.fault_sources import Supply
+from study.network.fault_supplies import Supply
 
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
