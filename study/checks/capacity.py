@@ -1,16 +1,18 @@
-"""Load balance against capacity: sets on line, loss of a set, one set out, load steps, emergency, shore."""
+"""Load balance against capacity: sets on line, loss of a set, one set out, load steps, shore, restart."""
 
 from __future__ import annotations
 
 from collections.abc import Iterator
 
+from study.checks.emergency import judge_emergency
 from study.checks.limits import Limits
 from study.checks.verdict import Verdict, make_verdict
 from study.model.plant import Plant
 from study.results.balance import BalanceResult, IslandBalance, LossOfSet, ModeBalance
 
 _SUBJECT = "capacity"
-_SOURCES_HEADING = "Rated apparent power"
+_RATED = "Rated apparent power"
+UNDER_WAY = ("sea", "manoeuvring", "station keeping")
 
 
 def judge_capacity(plant: Plant, result: BalanceResult, limits: Limits) -> tuple[Verdict, ...]:
@@ -33,20 +35,20 @@ def judge_capacity(plant: Plant, result: BalanceResult, limits: Limits) -> tuple
     verdicts: list[Verdict] = []
     for mode in result.modes:
         verdicts += _mode(plant, mode, limits)
-    verdicts += _emergency(plant, result, limits)
+    verdicts += judge_emergency(plant, result, limits)
     return tuple(verdicts)
 
 
 def _mode(plant: Plant, mode: ModeBalance, limits: Limits) -> Iterator[Verdict]:
-    yield from _unfed(mode, limits)
+    yield from _unfed(mode)
     for island in mode.islands:
         yield from _island(plant, mode, island, limits)
     yield from _one_out(plant, mode, limits)
     yield from _minimum_load(plant, mode, limits)
-    yield from _restart(mode, limits)
+    yield from _restart(plant, mode, limits)
 
 
-def _unfed(mode: ModeBalance, limits: Limits) -> Iterator[Verdict]:
+def _unfed(mode: ModeBalance) -> Iterator[Verdict]:
     if mode.p_unfed_kw > 0:
         yield make_verdict(
             mode=mode.mode,
@@ -63,74 +65,115 @@ def _unfed(mode: ModeBalance, limits: Limits) -> Iterator[Verdict]:
 
 
 def _island(plant: Plant, mode: ModeBalance, island: IslandBalance, limits: Limits) -> Iterator[Verdict]:
-    where = _place(mode, island)
     if island.shore is None:
-        for word, value in (("kW", island.kw_loading), ("kVA", island.kva_loading)):
-            yield make_verdict(
-                mode=mode.mode,
-                subject=_SUBJECT,
-                equipment=where,
-                quantity=f"{word} on the sets on line",
-                value=100.0 * value,
-                limit=limits.number("set_loading"),
-                unit="%",
-                close_margin=limits.fraction("close_margin"),
-                basis=limits.basis("set_loading"),
-                data_tolerance=limits.fraction("load_data_tolerance"),
-                cell=_first_set_cell(plant, mode, island),
-                remedy=f"Run {island.fewest_sets_text}, or shed load.",
-            )
+        yield from _sets(plant, mode, island, limits)
+        yield from _step(plant, mode, island, limits)
     else:
+        yield from _shore(plant, mode, island, limits)
+    yield from _loss(plant, mode, island, limits)
+
+
+def _sets(plant: Plant, mode: ModeBalance, island: IslandBalance, limits: Limits) -> Iterator[Verdict]:
+    remedy = f"Run {island.fewest_sets_text}, or shed load."
+    if mode.kind == "emergency":
+        remedy = "Shed load, or feed fewer boards in this mode."
+    for word, value in (("kW", island.kw_loading), ("kVA", island.kva_loading)):
         yield make_verdict(
             mode=mode.mode,
             subject=_SUBJECT,
-            equipment=island.shore,
-            quantity="current of the shore supply",
-            value=island.shore_current_a,
-            limit=island.shore_rated_a * limits.fraction("supply_loading"),
-            unit="A",
+            equipment=_place(mode, island),
+            quantity=f"{word} on the sets on line",
+            value=100.0 * value,
+            limit=limits.number("set_loading"),
+            unit="%",
             close_margin=limits.fraction("close_margin"),
-            basis=limits.basis("supply_loading"),
+            basis=limits.basis("set_loading"),
             data_tolerance=limits.fraction("load_data_tolerance"),
-            cell=plant.cell_of(island.shore, "Rated current"),
-            remedy="Shed load in port or ask for a stronger shore connection.",
+            cell=_first_set_cell(plant, mode, island),
+            remedy=remedy,
         )
-    yield from _loss(plant, mode, island, limits)
-    yield from _step(plant, mode, island, limits)
 
 
-def _loss(plant: Plant, mode: ModeBalance, island: IslandBalance, limits: Limits) -> Iterator[Verdict]:
-    governing = _governing_loss(island)
-    if governing is None:
-        return
+def _shore(plant: Plant, mode: ModeBalance, island: IslandBalance, limits: Limits) -> Iterator[Verdict]:
     yield make_verdict(
         mode=mode.mode,
         subject=_SUBJECT,
-        equipment=governing.lost,
-        quantity=f"loading after loss of the largest set, {governing.stage}",
-        value=100.0 * max(governing.kw_loading, governing.kva_loading),
+        equipment=str(island.shore),
+        quantity="current of the shore supply",
+        value=island.shore_current_a,
+        limit=island.shore_rated_a * limits.fraction("supply_loading"),
+        unit="A",
+        close_margin=limits.fraction("close_margin"),
+        basis=limits.basis("supply_loading"),
+        data_tolerance=limits.fraction("load_data_tolerance"),
+        cell=plant.cell_of(str(island.shore), "Rated current"),
+        remedy="Shed load in port or ask for a stronger shore connection.",
+    )
+    f_hz = {s.name: s.f_hz for s in plant.shore_supplies}.get(str(island.shore), float("nan"))
+    yield make_verdict(
+        mode=mode.mode,
+        subject="frequency",
+        equipment=str(island.shore),
+        quantity="frequency of the shore supply off rated",
+        value=100.0 * abs(f_hz / plant.project.f_rated_hz - 1.0),
+        limit=limits.number("frequency_deviation"),
+        unit="%",
+        close_margin=limits.fraction("close_margin"),
+        basis=limits.basis("frequency_deviation"),
+        cell=plant.cell_of(str(island.shore), "Frequency"),
+        remedy="Take a frequency converter, or a connection of the vessel's frequency.",
+    )
+
+
+def _loss(plant: Plant, mode: ModeBalance, island: IslandBalance, limits: Limits) -> Iterator[Verdict]:
+    governing = _governing_loss(mode, island)
+    if governing is None:
+        return
+    stage, words = governing
+    yield make_verdict(
+        mode=mode.mode,
+        subject=_SUBJECT,
+        equipment=stage.lost,
+        quantity=f"loading after loss of the largest set, {words}",
+        value=100.0 * max(stage.kw_loading, stage.kva_loading),
         limit=limits.number("set_loss_loading"),
         unit="%",
         close_margin=limits.fraction("close_margin"),
         basis=limits.basis("set_loss_loading"),
         data_tolerance=limits.fraction("load_data_tolerance"),
-        cell=plant.cell_of(governing.lost, _SOURCES_HEADING),
-        remedy="Run one more set, or put more load on the preferential trips.",
+        cell=plant.cell_of(stage.lost, _RATED),
+        remedy="Run one more set, let one stand by, or put more load on the preferential trips.",
     )
 
 
-def _governing_loss(island: IslandBalance) -> LossOfSet | None:
-    """Return the stage that decides: the last shedding stage, or the standby's start after a blackout."""
-    shed = [stage for stage in island.loss if stage.stage != "standby started"]
-    if not shed:
+def _governing_loss(mode: ModeBalance, island: IslandBalance) -> tuple[LossOfSet, str] | None:
+    """Return the stage that decides, and what it is called; None where nothing is asked.
+
+    Where sets are left, the preferential trips have to save them: the stage with the least loading, the first
+    of equal ones, before any standby has started. After a blackout the standby sets carry what the trips
+    leave. A set that runs alone without a standby is no fault in port, where propulsion and steering do not
+    hang on it (SOLAS II-1/41.5.1.1, from memory).
+    """
+    alone = [stage for stage in island.loss if stage.stage != "standby started"]
+    if not alone:
         return None
-    if shed[-1].sets_left:
-        return shed[-1]
-    return island.loss[-1]
+    if alone[0].sets_left:
+        stage = min(alone, key=_loading)
+        return stage, stage.stage
+    if island.loss_with_standby:
+        stage = min(island.loss_with_standby, key=_loading)
+        return stage, f"standby started, {stage.stage}"
+    if mode.kind not in UNDER_WAY:
+        return None
+    return alone[0], "no set left"
+
+
+def _loading(stage: LossOfSet) -> float:
+    return max(stage.kw_loading, stage.kva_loading)
 
 
 def _step(plant: Plant, mode: ModeBalance, island: IslandBalance, limits: Limits) -> Iterator[Verdict]:
-    if island.largest_step_load and island.shore is None:
+    if island.largest_step_load:
         yield make_verdict(
             mode=mode.mode,
             subject=_SUBJECT,
@@ -160,13 +203,21 @@ def _one_out(plant: Plant, mode: ModeBalance, limits: Limits) -> Iterator[Verdic
             close_margin=limits.fraction("close_margin"),
             basis=limits.basis("one_out_loading"),
             data_tolerance=limits.fraction("load_data_tolerance"),
-            cell=plant.cell_of(row.out, _SOURCES_HEADING),
+            cell=plant.cell_of(row.out, _RATED),
             remedy="Install larger sets, or review which loads are essential (sheet Loads).",
         )
 
 
 def _minimum_load(plant: Plant, mode: ModeBalance, limits: Limits) -> Iterator[Verdict]:
-    minimum = {g.name: g.min_engine_load for g in plant.gensets}
+    """Yield the engines on line against their least load in continuous running.
+
+    An emergency set in an emergency is not in continuous running.
+    """
+    minimum = {
+        g.name: g.min_engine_load
+        for g in plant.gensets
+        if not (g.service == "emergency" and mode.kind == "emergency")
+    }
     for row in mode.sets:
         if row.state != "on" or row.name not in minimum:
             continue
@@ -187,39 +238,37 @@ def _minimum_load(plant: Plant, mode: ModeBalance, limits: Limits) -> Iterator[V
         )
 
 
-def _restart(mode: ModeBalance, limits: Limits) -> Iterator[Verdict]:
+def _restart(plant: Plant, mode: ModeBalance, limits: Limits) -> Iterator[Verdict]:
+    started: set[int] = set()
     for step in mode.restart:
+        name = f"restart step {step.step}"
         yield make_verdict(
             mode=mode.mode,
             subject=_SUBJECT,
-            equipment=f"restart step {step.step}",
+            equipment=name,
             quantity="load connected in one step after a blackout",
             value=step.p_step_kw,
             limit=step.step_capability_kw,
             unit="kW",
-            close_margin=0.0,
+            close_margin=limits.fraction("close_margin"),
             basis="largest engine load step of the sets that start (sheet Gensets)",
             data_tolerance=limits.fraction("load_data_tolerance"),
+            cell=plant.cell_of(step.loads[0], "Restart delay after blackout") if step.loads else "",
             remedy="Spread the restart delays of " + ", ".join(step.loads[:3]) + " (sheet Loads).",
         )
-
-
-def _emergency(plant: Plant, result: BalanceResult, limits: Limits) -> Iterator[Verdict]:
-    for row in result.emergency:
-        for word, value in (("kW", row.kw_loading), ("kVA", row.kva_loading)):
+        if step.island not in started and mode.kind in UNDER_WAY:
+            started.add(step.island)
             yield make_verdict(
-                mode=row.mode,
+                mode=mode.mode,
                 subject=_SUBJECT,
-                equipment=row.genset,
-                quantity=f"{word} of the emergency list",
-                value=100.0 * value,
-                limit=limits.number("set_loading"),
-                unit="%",
+                equipment=name,
+                quantity="first set on the board after a blackout",
+                value=step.at_s,
+                limit=limits.number("emergency_start"),
+                unit="s",
                 close_margin=limits.fraction("close_margin"),
-                basis=f"SOLAS II-1/42, 43: {row.hours_required:g} h",
-                data_tolerance=limits.fraction("load_data_tolerance"),
-                cell=plant.cell_of(row.genset, _SOURCES_HEADING),
-                remedy="Take a larger emergency set, or shorten the emergency list.",
+                basis="SOLAS II-1/41.5.1.1, from memory: within the time of the emergency supply",
+                remedy="Let a set with a shorter start delay stand by (sheets Running, Gensets).",
             )
 
 
@@ -230,5 +279,5 @@ def _place(mode: ModeBalance, island: IslandBalance) -> str:
 def _first_set_cell(plant: Plant, mode: ModeBalance, island: IslandBalance) -> str:
     for row in mode.sets:
         if row.island == island.island and row.state == "on":
-            return plant.cell_of(row.name, _SOURCES_HEADING)
+            return plant.cell_of(row.name, _RATED)
     return ""

@@ -2,20 +2,39 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
+from dataclasses import dataclass
 
 import numpy as np
 
 from study.checks.limits import Limits
 from study.checks.verdict import Verdict, make_verdict
 from study.model.plant import Plant
+from study.model.sources import Genset
 from study.results.arrays import FloatArray
 from study.results.regulation import RegulationResult
-from study.results.sharing import IslandSharing, SharingCurve, SharingResult
+from study.results.sharing import IslandSharing, NotStudied, SharingCurve, SharingResult
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Power:
+    """kW or kvar: where its results stand, what limits it, what governs it."""
+
+    unit: str
+    by_rule: tuple[str, str]
+    set_point: str
+    heading: str
+    apart: tuple[str, ...]
+    deviation: FloatArray
+    tolerance: FloatArray
+    by_own: FloatArray
 
 
 def judge_sharing(plant: Plant, result: SharingResult, limits: Limits) -> tuple[Verdict, ...]:
     """Judge sharing over the range of load, as set in the workbook and as trimmed at 75 % load.
+
+    A load without a solution is no pass: a set that holds its tolerance elsewhere is then not assessed.
 
     Parameters
     ----------
@@ -29,13 +48,15 @@ def judge_sharing(plant: Plant, result: SharingResult, limits: Limits) -> tuple[
     Returns
     -------
     tuple of Verdict
-        Subjects ``kW sharing`` and ``kvar sharing``, one for each set, island and adjustment.
+        Subjects ``kW sharing`` and ``kvar sharing``, one for each set that takes part, island and adjustment.
     """
     verdicts: list[Verdict] = []
     for island in result.islands:
         for curve in (island.as_set, island.trimmed):
-            verdicts += _kw(plant, island, curve, limits)
-            verdicts += _kvar(plant, island, curve, limits)
+            for power in (_kw(island, curve, limits), _kvar(island, curve, limits)):
+                verdicts += _judge(plant, island, curve, power, limits)
+    for left in result.not_studied:
+        verdicts += _not_studied(left, limits)
     return tuple(verdicts)
 
 
@@ -80,12 +101,13 @@ def judge_regulation(plant: Plant, result: RegulationResult, limits: Limits) -> 
 
 def _speed(plant: Plant, limits: Limits) -> Iterator[Verdict]:
     for genset in plant.gensets:
+        drooped = genset.governor.mode == "droop"
         yield make_verdict(
             mode="",
             subject="regulation",
             equipment=genset.name,
             quantity="speed fall from no load to rated load",
-            value=0.0 if genset.governor.mode == "isochronous" else 100.0 * genset.governor.droop_pu,
+            value=100.0 * genset.governor.droop_pu if drooped else 0.0,
             limit=limits.number("speed_variation"),
             unit="%",
             close_margin=limits.fraction("close_margin"),
@@ -95,47 +117,100 @@ def _speed(plant: Plant, limits: Limits) -> Iterator[Verdict]:
         )
 
 
-def _kw(plant: Plant, island: IslandSharing, curve: SharingCurve, limits: Limits) -> Iterator[Verdict]:
-    worst_kw = _worst(curve.dp_kw, curve)
-    for i, name in enumerate(island.sets):
+def _kw(island: IslandSharing, curve: SharingCurve, limits: Limits) -> _Power:
+    return _Power(
+        unit="kW",
+        by_rule=("kw_sharing_largest", "kw_sharing_own"),
+        set_point="no_load_frequency_pu",
+        heading="Speed droop",
+        apart=island.apart_kw,
+        deviation=curve.dp_kw,
+        tolerance=island.p_tolerance_kw,
+        by_own=limits.fraction("kw_sharing_own") * island.p_rated_kw,
+    )
+
+
+def _kvar(island: IslandSharing, curve: SharingCurve, limits: Limits) -> _Power:
+    rated = island.q_rated_kvar
+    smallest = rated[rated > 0.0].min(initial=np.inf)
+    return _Power(
+        unit="kvar",
+        by_rule=("kvar_sharing_largest", "kvar_sharing_smallest"),
+        set_point="no_load_voltage_pu",
+        heading="No-load voltage",
+        apart=island.apart_kvar,
+        deviation=curve.dq_kvar,
+        tolerance=island.q_tolerance_kvar,
+        by_own=np.full(len(rated), limits.fraction("kvar_sharing_smallest") * smallest),
+    )
+
+
+def _judge(
+    plant: Plant, island: IslandSharing, curve: SharingCurve, power: _Power, limits: Limits
+) -> Iterator[Verdict]:
+    sharing = [i for i, name in enumerate(island.sets) if name not in power.apart]
+    if len(sharing) < 2:
+        return
+    for i in sharing:
+        name, tolerance = island.sets[i], float(power.tolerance[i])
+        worst, missing = _worst(power.deviation[:, i], curve)
+        rule = power.by_rule[int(math.isclose(tolerance, float(power.by_own[i]), rel_tol=1e-9))]
+        known = not missing or worst > tolerance
         yield make_verdict(
             mode=island.mode,
-            subject="kW sharing",
+            subject=f"{power.unit} sharing",
             equipment=name,
-            quantity=f"kW off its share, {_adjusted(curve)}",
-            value=float(worst_kw[i]),
-            limit=float(island.p_tolerance_kw[i]),
-            unit="kW",
+            quantity=f"{power.unit} off its share, {_adjusted(curve)}",
+            value=worst if known else math.nan,
+            limit=tolerance,
+            unit=power.unit,
             close_margin=limits.fraction("close_margin"),
-            basis=limits.basis("kw_sharing_largest"),
-            cell=plant.cell_of(name, "Speed droop"),
-            remedy="Set equal speed droops, then trim the no-load frequencies at 75 % load.",
+            basis=limits.basis(rule) if known else missing,
+            cell=_cell(plant, island.mode, name, power),
+            remedy=_remedy(plant.genset(name), power.unit),
         )
 
 
-def _kvar(plant: Plant, island: IslandSharing, curve: SharingCurve, limits: Limits) -> Iterator[Verdict]:
-    worst_kvar = _worst(curve.dq_kvar, curve)
-    for i, name in enumerate(island.sets):
-        yield make_verdict(
-            mode=island.mode,
-            subject="kvar sharing",
-            equipment=name,
-            quantity=f"kvar off its share, {_adjusted(curve)}",
-            value=float(worst_kvar[i]),
-            limit=float(island.q_tolerance_kvar[i]),
-            unit="kvar",
-            close_margin=limits.fraction("close_margin"),
-            basis=limits.basis("kvar_sharing_largest"),
-            cell=plant.cell_of(name, "No-load voltage"),
-            remedy="Set equal voltage droops, then trim the no-load voltages at 75 % load.",
-        )
+def _worst(deviation: FloatArray, curve: SharingCurve) -> tuple[float, str]:
+    """Return the largest distance over the loads that have a solution, and which loads have none."""
+    worst = float(np.abs(deviation[curve.solved]).max(initial=-math.inf))
+    lost = 100.0 * curve.load_pu[~curve.solved]
+    if not lost.size:
+        return worst, ""
+    loads = ", ".join(f"{load:.0f}" for load in lost)
+    return worst, f"no operating point at {loads} % load"
 
 
-def _worst(deviation: FloatArray, curve: SharingCurve) -> FloatArray:
-    """Return the largest distance of each set over the loads that have a solution; NaN where none has."""
-    if not curve.solved.any():
-        return np.full(deviation.shape[1], np.nan)
-    return np.asarray(np.abs(deviation[curve.solved]).max(axis=0))
+def _cell(plant: Plant, mode: str, genset: str, power: _Power) -> str:
+    """Return the mode's own set-point where it has one, else the set's setting."""
+    point = plant.mode(mode).set_points.get(genset)
+    if point is not None and getattr(point, power.set_point) is not None:
+        return point.cell
+    return plant.cell_of(genset, power.heading)
+
+
+def _remedy(genset: Genset, unit: str) -> str:
+    if unit == "kW":
+        return "Set equal speed droops, then trim the no-load frequencies at 75 % load."
+    if genset.regulator.reversed_polarity:
+        return "Turn the current transformer of its droop circuit round."
+    return "Set equal voltage droops, then trim the no-load voltages at 75 % load."
+
+
+def _not_studied(left: NotStudied, limits: Limits) -> Iterator[Verdict]:
+    for unit in ("kW", "kvar"):
+        for name in left.sets:
+            yield make_verdict(
+                mode=left.mode,
+                subject=f"{unit} sharing",
+                equipment=name,
+                quantity=f"{unit} off its share, as set",
+                value=math.nan,
+                limit=math.nan,
+                unit=unit,
+                close_margin=limits.fraction("close_margin"),
+                basis=left.reason.rstrip("."),
+            )
 
 
 def _adjusted(curve: SharingCurve) -> str:

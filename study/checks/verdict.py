@@ -71,7 +71,7 @@ def judge(value: float, limit: float, sense: Sense, close_margin: float) -> tupl
         The word of the verdict.
     margin : float
         (limit - value) / |limit| for an upper limit, the reverse for a lower one; the plain difference
-        where the limit is zero.
+        where the limit is zero, and 1 or -1 where it is infinite.
 
     Examples
     --------
@@ -85,8 +85,11 @@ def judge(value: float, limit: float, sense: Sense, close_margin: float) -> tupl
     if math.isnan(value) or math.isnan(limit):
         return "not assessed", math.nan
     distance = limit - value if sense == "at most" else value - limit
-    margin = distance / abs(limit) if limit else distance
-    if distance < 0:
+    if math.isinf(limit):
+        margin = math.copysign(1.0, distance) if not math.isnan(distance) else -1.0
+    else:
+        margin = distance / abs(limit) if limit else distance
+    if margin < 0:
         return "exceeds", margin
     return ("close" if margin < close_margin else "within"), margin
 

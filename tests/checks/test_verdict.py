@@ -79,3 +79,18 @@ def test_not_assessed_weighs_more_than_close() -> None:
     governing = worst((a_verdict(99.0), a_verdict(math.nan)))
     assert governing is not None
     assert governing.status == "not assessed"
+
+
+@pytest.mark.parametrize(
+    ("value", "limit", "sense", "status", "margin"),
+    [
+        (math.inf, 100.0, "at most", "exceeds", -math.inf),
+        (5.0, math.inf, "at most", "within", 1.0),
+        (5.0, math.inf, "at least", "exceeds", -1.0),
+        (math.inf, math.inf, "at most", "exceeds", -1.0),
+    ],
+)
+def test_what_has_no_end_is_judged_all_the_same(
+    value: float, limit: float, sense: str, status: str, margin: float
+) -> None:
+    assert judge(value, limit, sense, 0.05) == (status, margin)  # type: ignore[arg-type]
