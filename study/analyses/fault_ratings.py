@@ -42,7 +42,7 @@ def fault_ratings(plant: Plant, short_circuit: ShortCircuitResult) -> FaultRatin
         branch=branch_of_devices(plant),
     )
     sides = [sides_of(plant, devices, mode, f_hz) for mode in short_circuit.modes]
-    least = [least_faults(plant, devices, mode, f_hz) for mode in short_circuit.modes]
+    least = [least_faults(plant, devices, mode, short_circuit) for mode in short_circuit.modes]
     rated = RatedDevices(plant, short_circuit)
     return FaultRatingsResult(
         modes=tuple(mode.mode for mode in short_circuit.modes),

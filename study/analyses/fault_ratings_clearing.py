@@ -27,7 +27,7 @@ STAGES: Final = (
     "maker's curve",
     "no setting given",
 )
-DOES_NOT_CLEAR, INSTANTANEOUS, SHORT_TIME, UNKNOWN = 0, 1, 2, len(STAGES) - 1
+DOES_NOT_CLEAR, INSTANTANEOUS, SHORT_TIME, LONG_TIME, UNKNOWN = 0, 1, 2, 3, len(STAGES) - 1
 DELAYED: Final = (SHORT_TIME, STAGES.index("relay curve"))
 
 
@@ -53,7 +53,8 @@ def clear(
 
     The instantaneous stage looks at Iac at T/2, a delayed one at Iac when its delay ends; for one that
     depends on the current the parts ``dt/t(I)`` of its time add up, as IEC 60255-151 has it for currents that
-    change. The earliest stage clears.
+    change. The earliest stage clears; but where the short-time delay of a breaker takes hold, its long-time
+    curve is not counted on: many releases end it there.
 
     Parameters
     ----------
@@ -78,7 +79,9 @@ def clear(
     half = faults.ac_at_a(np.full(n, half_cycle_s))
     short_end = _short_time_s(devices, faults, short_a)
     slow_end, slow_stage, slow_a = _slow_time_s(devices, faults, half < at_once)
+    superseded = np.isfinite(short_end) & (slow_stage == LONG_TIME)
     ends = np.stack([np.where(half >= at_once, 0.0, np.inf), short_end, slow_end]) + fixed
+    ends[2] = np.where(superseded, np.inf, ends[2])
     ends = np.where(ends <= holds_s, ends, np.inf)
     first = np.argmin(ends, axis=0)
     rows = np.arange(n)

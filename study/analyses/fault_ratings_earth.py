@@ -61,13 +61,8 @@ def _tripping(
 ) -> list[int]:
     """Return the devices with an earth-fault setting that stand in a system."""
     place = mode.devices.place
-    return [
-        k
-        for k, device in enumerate(plant.devices)
-        if device.earth_fault_a is not None
-        and place[k] >= 0
-        and result.places.boards[place[k]] in system.boards
-    ]
+    set_for_it = [k for k, device in enumerate(plant.devices) if device.earth_fault_a is not None]
+    return [k for k in set_for_it if place[k] >= 0 and result.places.boards[place[k]] in system.boards]
 
 
 def resistor_ratings(plant: Plant, result: ShortCircuitResult) -> ResistorRatings:

@@ -11,6 +11,7 @@ from study.results.short_circuit import FaultCase
 
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
+BoolArray = NDArray[np.bool_]
 
 # Steps of a quarter follow decays of a few milliseconds to 1e-4 of the heat; past 10 s hardly any is left.
 _FIRST_S, _FINE_TO_S, _FINE, _LAST_S, _COARSE = 0.0005, 10.0, 1.25, 7200.0, 1.6
@@ -40,6 +41,10 @@ class Histories:
     def times(self, factor: FloatArray) -> Histories:
         """Return the currents times a factor that broadcasts against [row, interval, 3]."""
         return Histories(time_s=self.time_s, ac_a=self.ac_a * factor, dc_a=self.dc_a * factor)
+
+    def row(self, row: int) -> Histories:
+        """Return one row."""
+        return Histories(time_s=self.time_s, ac_a=self.ac_a[row : row + 1], dc_a=self.dc_a[row : row + 1])
 
     def ac_at_a(self, time_s: FloatArray) -> FloatArray:
         """Return Iac of each row at its own time [row]."""
@@ -99,39 +104,62 @@ def case_histories(
     tuple of Histories
         All of it, [row]; the part, [row].
     """
-    shape = (len(place), len(knots) - 1, 3)
-    total, part = (tuple(np.zeros(shape) for _ in range(2)) for _ in range(2))
-    for at in np.unique(place[place >= 0]):
-        rows = np.flatnonzero(place == at)
-        fed = np.flatnonzero(case.parts.subtransient_a[at] + case.parts.dc_a[at] > 0.0)
-        weight = share[rows][:, fed]
-        for whole, own, each in zip(total, part, _components(case, int(at), fed, knots), strict=True):
-            whole[rows] = each.sum(axis=0)
-            own[rows] = np.tensordot(weight, each, axes=1)
+    used, index = np.unique(place[place >= 0], return_inverse=True)
+    fed = np.flatnonzero(_gives(case)[used].any(axis=0))
+    samples = np.empty(2 * len(knots) - 1)
+    samples[::2], samples[1::2] = knots, 0.5 * (knots[1:] + knots[:-1])
+    each = _components(case, used, fed, samples)
+    rows, weight = np.flatnonzero(place >= 0), share[place >= 0][:, fed]
+    some = np.flatnonzero(weight.any(axis=1))
+    runs = (samples[1::2] < case.parts.ends_s[fed][:, None]).astype(float)
+    totals, parts = [], []
+    for component in each:
+        whole = _expanded(component, runs)
+        total, part = (np.zeros((len(place), len(knots) - 1, 3)) for _ in range(2))
+        total[rows] = whole[index]
+        seen = component[index[some]] * weight[some][:, :, None]
+        part[rows[some]] = _expanded(seen, runs)
+        totals.append(total)
+        parts.append(part)
     return (
-        Histories(time_s=knots, ac_a=total[0], dc_a=total[1]),
-        Histories(time_s=knots, ac_a=part[0], dc_a=part[1]),
+        Histories(time_s=knots, ac_a=totals[0], dc_a=totals[1]),
+        Histories(time_s=knots, ac_a=parts[0], dc_a=parts[1]),
     )
+
+
+def _gives(case: FaultCase) -> BoolArray:
+    """Return which source gives anything at each place, [place, source]."""
+    parts = case.parts
+    given = parts.subtransient_a + parts.transient_a + parts.sustained_a + parts.dc_a
+    return np.asarray(given > 0.0)
 
 
 def _components(
-    case: FaultCase, place: int, fed: IntArray, knots: FloatArray
+    case: FaultCase, places: IntArray, fed: IntArray, samples: FloatArray
 ) -> tuple[FloatArray, FloatArray]:
-    """Return Iac and idc of the sources that feed a place, [source, interval, 3]."""
+    """Return Iac and idc of the sources that feed places, [place, source, sample]."""
+    at = np.ix_(places, fed)
     parts = case.parts
-    samples = np.empty(2 * len(knots) - 1)
-    samples[::2], samples[1::2] = knots, 0.5 * (knots[1:] + knots[:-1])
     initial, transient, lasting, direct = (
-        x[place, fed][:, None]
-        for x in (parts.subtransient_a, parts.transient_a, parts.sustained_a, parts.dc_a)
+        x[at][:, :, None] for x in (parts.subtransient_a, parts.transient_a, parts.sustained_a, parts.dc_a)
     )
-    falls = [
-        np.exp(-samples / x[place, fed][:, None]) for x in (parts.t_sub_s, parts.t_trans_s, parts.t_dc_s)
-    ]
-    ac = (initial - transient) * falls[0] + (transient - lasting) * falls[1] + lasting
-    points = 2 * np.arange(len(knots) - 1)[:, None] + np.arange(3)
-    runs = (samples[1::2] < parts.ends_s[fed][:, None]).astype(float)[:, :, None]
-    return ac[:, points] * runs, (direct * falls[2])[:, points] * runs
+    t_sub, t_trans, t_dc = (x[at][:, :, None] for x in (parts.t_sub_s, parts.t_trans_s, parts.t_dc_s))
+    ac = (initial - transient) * np.exp(-samples / t_sub)
+    # Motors have no transient part, and they are most of the sources.
+    slow = np.flatnonzero((transient + lasting).any(axis=(0, 2)))
+    kept = lasting[:, slow]
+    ac[:, slow] += (transient[:, slow] - kept) * np.exp(-samples / t_trans[:, slow]) + kept
+    return ac, direct * np.exp(-samples / t_dc)
+
+
+def _expanded(component: FloatArray, runs: FloatArray) -> FloatArray:
+    """Return the sum over sources, [row, source, sample], as [row, interval, 3]; each stops when it ends."""
+    points = 2 * np.arange(runs.shape[1])[:, None] + np.arange(3)
+    stops = ~runs.all(axis=1)
+    whole = component[:, ~stops].sum(axis=1)[:, points]
+    for source in np.flatnonzero(stops):
+        whole = whole + component[:, source][:, points] * runs[source][:, None]
+    return np.asarray(whole)
 
 
 def value_at(knots: FloatArray, values: FloatArray, time_s: FloatArray) -> FloatArray:

@@ -7,8 +7,9 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from study.analyses.fault_ratings_backup import Backup, Step
 from study.analyses.fault_ratings_clearing import STAGES, Clearing, clear
-from study.analyses.fault_ratings_history import Histories, case_histories, knots_s
+from study.analyses.fault_ratings_history import case_histories, knots_s
 from study.analyses.fault_ratings_series import Stacked
 from study.analyses.fault_ratings_sides import PlantDevices
 from study.model.plant import Plant
@@ -23,15 +24,21 @@ BoolArray = NDArray[np.bool_]
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class LeastFaults:
-    """The least fault at the far end of each device in one mode, [device], and how it is cleared."""
+    """The least fault at the far end of each device in one mode, [device], and how it is cleared.
+
+    ``by`` is the device that clears it: itself, one nearer to the sources, or -1 for none.
+    """
 
     judged: BoolArray
-    history: Histories
+    first_a: FloatArray
     clearing: Clearing
+    by: IntArray
     heat_a2s: FloatArray
 
 
-def least_faults(plant: Plant, devices: PlantDevices, mode: ModeShortCircuit, f_hz: float) -> LeastFaults:
+def least_faults(
+    plant: Plant, devices: PlantDevices, mode: ModeShortCircuit, places: ShortCircuitResult
+) -> LeastFaults:
     """Return the least fault that each device must clear in one mode, while its source keeps it up.
 
     The three-phase current through the device, by the minimum case, times the ratio of the least kind of
@@ -46,8 +53,8 @@ def least_faults(plant: Plant, devices: PlantDevices, mode: ModeShortCircuit, f_
         Releases.
     mode : ModeShortCircuit
         The mode.
-    f_hz : float
-        Rated frequency. [Hz]
+    places : ShortCircuitResult
+        Places and frequency.
 
     Returns
     -------
@@ -57,24 +64,50 @@ def least_faults(plant: Plant, devices: PlantDevices, mode: ModeShortCircuit, f_
     case, faults = mode.minimum, mode.devices
     place = np.where(faults.place >= 0, faults.far_place, -1)
     share = _shares(devices, case, place)
-    knots = knots_s(f_hz, case.parts.ends_s)
+    knots = knots_s(places.f_hz, case.parts.ends_s)
     _, through = case_histories(case, place, share, knots)
     least = through.times(_least_over_three_phase(case, place, through.time_s))
     own = least.ac_at_a(np.nan_to_num(faults.operating_s, nan=0.0))
     fits = np.isfinite(faults.operating_s) & np.isfinite(faults.least_a) & (own > 0.0)
     least = least.times(np.where(fits, faults.least_a / np.where(fits, own, 1.0), 1.0)[:, None, None])
-    cleared = clear(devices.releases, least, 0.5 / f_hz, _holds_s(case, place, share))
-    counts = [
-        d.kind != "thermal overload" and not (d.kind == "circuit breaker" and r.by_relay)
-        for d, r in zip(plant.devices, devices.releases, strict=True)
-    ]
-    known = np.array([r.known for r in devices.releases], bool)
+    holds = _holds_s(case, place, share)
+    cleared = clear(devices.releases, least, 0.5 / places.f_hz, holds)
+    judged = _counts(plant, devices) & (place >= 0) & np.isfinite(faults.least_a)
+    judged &= ~_open(places, case, place)
+    by = np.where(np.isfinite(cleared.time_s), np.arange(len(judged)), -1)
+    backup = Backup(devices, mode, places)
+    for row in np.flatnonzero(judged & (by < 0)):
+        current = case.source_initial_a[place[row]] * share[row]
+        step = Step(device=int(row), far=int(place[row]), current=current > 0.0)
+        by[row], cleared = backup.instead(step, least.row(int(row)), holds[row], cleared)
     return LeastFaults(
-        judged=np.array(counts, bool) & known & (place >= 0) & np.isfinite(faults.least_a),
-        history=least,
+        judged=judged,
+        first_a=least.ac_a[:, 0, 0],
         clearing=cleared,
+        by=by,
         heat_a2s=least.heat_a2s(cleared.time_s),
     )
+
+
+def _counts(plant: Plant, devices: PlantDevices) -> BoolArray:
+    """Return which devices have settings of their own to judge."""
+    return np.array(
+        [
+            d.kind != "thermal overload" and not (d.kind == "circuit breaker" and r.by_relay) and r.known
+            for d, r in zip(plant.devices, devices.releases, strict=True)
+        ],
+        bool,
+    )
+
+
+def _open(places: ShortCircuitResult, case: FaultCase, place: IntArray) -> BoolArray:
+    """Return where the far end is a source that does not run: its breaker is open then."""
+    running = set(case.sources.names)
+    idle = [
+        kind == "source terminals" and name not in running
+        for name, kind in zip(places.places.names, places.places.kinds, strict=True)
+    ]
+    return np.asarray(np.array([*idle, False], bool)[place])
 
 
 def clearing_ratings(plant: Plant, least: list[LeastFaults], result: ShortCircuitResult) -> ClearingRatings:
@@ -105,6 +138,7 @@ def clearing_ratings(plant: Plant, least: list[LeastFaults], result: ShortCircui
         pick_up_a=read_only(table["pick_up_a"]),
         stage=read_only(table["stage"], np.int64),
         clears=read_only(table["clears"], np.bool_),
+        by=read_only(table["by"], np.int64),
         clearing_s=read_only(table["clearing_s"]),
         kinds=tuple(tuple(kind[k] for kind in kinds) for k in range(len(plant.devices))),
     )
@@ -116,10 +150,11 @@ def _columns(least: LeastFaults) -> dict[str, NDArray[np.generic]]:
     return {
         "judged": least.judged,
         "least_a": least.clearing.seen_a * dark,
-        "first_a": least.history.ac_a[:, 0, 0] * dark,
+        "first_a": least.first_a * dark,
         "pick_up_a": least.clearing.pick_up_a * dark,
         "stage": least.clearing.meant,
         "clears": clears & least.judged,
+        "by": np.where(least.judged, least.by, -1),
         "clearing_s": least.clearing.time_s * dark,
     }
 

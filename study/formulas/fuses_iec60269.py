@@ -14,13 +14,17 @@ FloatArray = NDArray[np.float64]
 GATES: Final = "fuse_gates_iec60269"
 # aM: melts within these times at these multiples of rated current; IEC 60269-2, gates of aM, from memory.
 AM_LATEST: Final = ((6.3, 60.0), (12.5, 0.5), (19.0, 0.1))
+# gG: melts at 1.6 times rated current within the conventional time [s] of its size, up to each rated current;
+# IEC 60269-1, conventional times, from memory.
+FUSING_MULTIPLE: Final = 1.6
+CONVENTIONAL_S: Final = ((63.0, 3600.0), (160.0, 7200.0), (400.0, 10800.0), (1250.0, 14400.0))
 
 
 def latest_melting_points(rated_a: float, fuse_class: str) -> tuple[tuple[float, float], ...]:
     """Return currents and the times within which a fuse-link has melted, longest time first.
 
-    Source: IEC 60269-1, gates of gG fuse-links; IEC 60269-2, gates of aM; both from memory. The last point of
-    gG comes from the greatest I2t, its time being 0.01 s.
+    Source: IEC 60269-1, conventional fusing current and gates of gG fuse-links; IEC 60269-2, gates of aM; both
+    from memory. The last point of gG comes from the greatest I2t, its time being 0.01 s.
 
     Parameters
     ----------
@@ -42,7 +46,7 @@ def latest_melting_points(rated_a: float, fuse_class: str) -> tuple[tuple[float,
     Examples
     --------
     >>> latest_melting_points(100.0, "gG")[:2], latest_melting_points(100.0, "aM")[-1]
-    (((580.0, 5.0), (1450.0, 0.1)), (1900.0, 0.1))
+    (((160.0, 7200.0), (580.0, 5.0)), (1900.0, 0.1))
     """
     if fuse_class == "aM":
         return tuple((multiple * rated_a, time_s) for multiple, time_s in AM_LATEST)
@@ -51,8 +55,10 @@ def latest_melting_points(rated_a: float, fuse_class: str) -> tuple[tuple[float,
     row = numeric_table(GATES, "rated_a").get(float(rated_a))
     if row is None:
         raise ValueError(f"no gates for a gG fuse of {rated_a:g} A")
-    last = float(np.sqrt(row["i2t_max_a2s"] / 0.01))
-    return ((row["imax_5s_a"], 5.0), (row["imax_01s_a"], 0.1), (last, 0.01))
+    slowest_s = next(time_s for up_to_a, time_s in CONVENTIONAL_S if rated_a <= up_to_a)
+    last_a = float(np.sqrt(row["i2t_max_a2s"] / 0.01))
+    first = (FUSING_MULTIPLE * rated_a, slowest_s)
+    return (first, (row["imax_5s_a"], 5.0), (row["imax_01s_a"], 0.1), (last_a, 0.01))
 
 
 def latest_melting_time_s(current_a: ArrayLike, points: tuple[tuple[float, float], ...]) -> FloatArray:
@@ -78,7 +84,7 @@ def latest_melting_time_s(current_a: ArrayLike, points: tuple[tuple[float, float
     Examples
     --------
     >>> points = latest_melting_points(100.0, "gG")
-    >>> [round(float(t), 3) for t in latest_melting_time_s([500.0, 580.0, 1450.0], points)]
+    >>> [round(float(t), 3) for t in latest_melting_time_s([150.0, 580.0, 1450.0], points)]
     [inf, 5.0, 0.1]
     """
     current = np.maximum(np.asarray(current_a, float), 1e-9)

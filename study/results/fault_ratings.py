@@ -108,10 +108,12 @@ class DeviceRatings:
 class ClearingRatings:
     """Devices against the least fault at the far end of what they protect.
 
-    [device, mode]: ``least_a`` through the device when the stage that should clear is due, ``pick_up_a`` that
-    stage's pick-up at the far end of its tolerance, ``stage`` (numbers ``stages``), ``clears`` False where no
-    stage opens while the current is kept up, ``clearing_s`` inf then. ``first_a`` is the least current at the
-    start of the fault: it shows a current that collapses. ``judged`` False: dead, or nothing known.
+    [device, mode]: ``by`` is the device that clears, by its place in the workbook's order: itself, one nearer
+    to the sources where it does not, -1 (``clears`` False) where nothing clears while the current is kept up.
+    ``least_a`` is the current through that device when its stage is due, ``pick_up_a`` this stage's pick-up at
+    the far end of its tolerance, ``stage`` which it is (numbers ``stages``), ``clearing_s`` the time, inf for
+    never; where nothing clears, all are those of the stage that should. ``first_a`` is the least current at the
+    start of the fault: it shows one that collapses. ``judged`` False: dead, or nothing known.
     """
 
     names: tuple[str, ...]
@@ -122,6 +124,7 @@ class ClearingRatings:
     pick_up_a: FloatArray
     stage: IntArray
     clears: BoolArray
+    by: IntArray
     clearing_s: FloatArray
     kinds: tuple[tuple[str, ...], ...]
 
