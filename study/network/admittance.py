@@ -73,12 +73,13 @@ def nodal_admittance(
     Returns
     -------
     csr_array, shape (size, size)
-        Admittance. [pu]
+        Admittance; every row has an entry on the diagonal. [pu]
     """
     yff, yft, ytf, ytt = two_port
-    rows = np.concatenate([from_bus, from_bus, to_bus, to_bus, shunt_bus])
-    cols = np.concatenate([from_bus, to_bus, from_bus, to_bus, shunt_bus])
-    values = np.concatenate([yff, yft, ytf, ytt, shunt_pu])
+    diagonal = np.arange(size)  # kept in every row, be it zero
+    rows = np.concatenate([from_bus, from_bus, to_bus, to_bus, shunt_bus, diagonal])
+    cols = np.concatenate([from_bus, to_bus, from_bus, to_bus, shunt_bus, diagonal])
+    values = np.concatenate([yff, yft, ytf, ytt, shunt_pu, np.zeros(size)])
     return csr_array(coo_array((values, (rows, cols)), shape=(size, size)))
 
 

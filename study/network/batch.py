@@ -6,10 +6,12 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
+from scipy.sparse import csr_array
 
 from study.issues import SolveError
 from study.network.consumers import Demand
 from study.network.equations import Point, Problem
+from study.network.fields import field_state
 from study.network.laws import VoltageLaws, some, take, voltage_laws
 from study.network.limits import (
     CEILING,
@@ -76,7 +78,12 @@ class BatchSolution:
 
 
 def solve_batch(
-    at: ModeNetwork, p_kw: ArrayLike, q_kvar: ArrayLike, settings: Settings | None = None
+    at: ModeNetwork,
+    p_kw: ArrayLike,
+    q_kvar: ArrayLike,
+    settings: Settings | None = None,
+    *,
+    compiled: bool | None = None,
 ) -> BatchSolution:
     """Solve scenarios of a mode.
 
@@ -88,6 +95,9 @@ def solve_batch(
         Power of each consumer, all its units in use, at its rated voltage. [kW], [kvar]
     settings : Settings, optional
         Trims other than those of the workbook.
+    compiled : bool, optional
+        Whether to use the compiled sweep, which costs some ten seconds the first time; by the size of the task
+        where left out.
 
     Returns
     -------
@@ -99,7 +109,9 @@ def solve_batch(
     SolveError
         Loads or settings that are not numbers or not of the right shape.
     """
-    return _Batch(at, p_kw, q_kvar, settings or Settings()).solve()
+    batch = _Batch(at, p_kw, q_kvar, settings or Settings())
+    batch.compiled = compiled
+    return batch.solve()
 
 
 class _Batch:
@@ -107,6 +119,7 @@ class _Batch:
 
     def __init__(self, at: ModeNetwork, p_kw: ArrayLike, q_kvar: ArrayLike, settings: Settings) -> None:
         self.at, self.sources = at, at.sources
+        self.compiled: bool | None = None
         self.s_base = at.network.s_base_kva
         p, q = checked_loads(at, p_kw, q_kvar)
         trims = [
@@ -138,6 +151,7 @@ class _Batch:
         self.state, self.power_state = np.zeros(shape, np.int64), np.zeros(shape, np.int64)
         self.pinned = np.zeros(shape, bool)
         self.found = no_solutions(at.structure, 0)
+        self.field = np.full(shape, np.nan)
         self.frequency = np.full((at.structure.islands, self.count), np.nan)
 
     def solve(self) -> BatchSolution:
@@ -171,7 +185,7 @@ class _Batch:
             reasons[k] = f"the load exceeds what the engines of {_names(self.sources, int(n))} can give."
         if problem.power.short.any():
             return np.zeros(0, np.int64)
-        solved = solve_scenarios(problem, len(k), self._mean_point(k))
+        solved = solve_scenarios(problem, len(k), self._mean_point(k), compiled=self.compiled)
         self._store(k, solved)
         self.frequency[:, k] = problem.power.frequency(solved.m)
         ran = self._let_run_away(k, state, power_state)
@@ -217,7 +231,10 @@ class _Batch:
             return k
         v, i = some(self.found.v[self.at.structure.source_bus], k), some(self.found.i, k)
         state, power_state = self.state[:, k[0]], self.power_state[:, k[0]]
-        wanted, by = excitation_steps(self.laws.columns(k), self.sources, state, v, i)
+        laws = self.laws.columns(k)
+        field = field_state(self.at.set_groups, *laws.own(v, i))
+        self.field[:, k] = field.needed
+        wanted, by = excitation_steps(laws, self.sources, state, field, v=v, i=i)
         by[self.pinned[:, k]] = 0.0
         p, f = (v * np.conj(i)).real, self.frequency[:, k]
         p_wanted, p_by = power_steps(power, self.sources, power_state, p=p, f=f, s_base_kva=self.s_base)
@@ -308,19 +325,12 @@ class _Batch:
             source_p_kw=s.real.T,
             source_q_kvar=s.imag.T,
             source_u_pu=(np.abs(v_s) * self.laws.to_own_v).T,
-            field_pu=self._field(v_s, found.i).T,
+            field_pu=np.where(solved, self.field, np.nan).T,
             frequency_pu=np.where(solved, self.frequency, np.nan).T,
             excitation_state=self.state.T,
             power_state=self.power_state.T,
             ran_away=self.pinned.T,
         )
-
-    def _field(self, v: ComplexArray, i: ComplexArray) -> FloatArray:
-        out = np.full(v.shape, np.nan)
-        for j, s in enumerate(self.sources):
-            if s.machine is not None:
-                out[j] = self.laws.field(j, v[j], i[j]) / s.rated_field_pu
-        return out
 
 
 def laws_in_force(batch: BatchSolution, k: int = 0) -> VoltageLaws:
@@ -372,19 +382,15 @@ def _names(sources: tuple[Source, ...], island: int) -> str:
 
 def _demand(at: ModeNetwork, p_kw: FloatArray, q_kvar: FloatArray) -> Demand:
     """Return the consumers' power at their places, [place, scenario]."""
-    share = at.load_arrays.constant_power
-    base = at.network.s_base_kva
     p, q = np.ascontiguousarray(p_kw.T), np.ascontiguousarray(q_kvar.T)
-    constant = _at_places(at, share / base, p, q) + at.port_constant[:, None]
-    follows = (1.0 - share) * at.load_arrays.v_scale**2 / base
-    return Demand(constant=constant, impedance=_at_places(at, follows, p, q))
+    constant = _at_places(at.constant_sum, p, q) + at.port_constant[:, None]
+    return Demand(constant=constant, impedance=_at_places(at.square_sum, p, q))
 
 
-def _at_places(at: ModeNetwork, factor: FloatArray, p_kw: FloatArray, q_kvar: FloatArray) -> ComplexArray:
+def _at_places(weights: csr_array, p_kw: FloatArray, q_kvar: FloatArray) -> ComplexArray:
     """Return a part of the consumers' power, [place, scenario], or one column of zeros for none."""
-    if not factor.any():
-        return np.zeros((at.port_sum.shape[0], 1), complex)
-    weights = (at.port_sum * factor[None, :]).tocsr()
-    out = np.empty((at.port_sum.shape[0], p_kw.shape[1]), complex)
+    if not weights.nnz:
+        return np.zeros((weights.shape[0], 1), complex)
+    out = np.empty((weights.shape[0], p_kw.shape[1]), complex)
     out.real, out.imag = weights @ p_kw, weights @ q_kvar
     return out

@@ -98,12 +98,9 @@ class VoltageLaws:
             v_own, i_own, phi, self.supplies[j]
         )
 
-    def field(self, j: int, v: ComplexArray, i: ComplexArray) -> FloatArray:
-        """Return the field that source j needs, per unit of its air-gap-line field; NaN without a machine."""
-        machine = self.machines[j]
-        if machine is None:
-            return np.full(v.shape, np.nan)
-        return field_required(*self._own(j, v, i), machine)
+    def own(self, v: ComplexArray, i: ComplexArray) -> tuple[FloatArray, FloatArray, FloatArray]:
+        """Return voltage, current and angle of lag of all sources, per unit of their own rating."""
+        return np.abs(v) * self.to_own_v, np.abs(i) * self.to_own_i, np.angle(v * np.conj(i))
 
     def _own(self, j: int, v: ComplexArray, i: ComplexArray) -> tuple[FloatArray, FloatArray, FloatArray]:
         phi = np.angle(v * np.conj(i))

@@ -11,7 +11,7 @@ from dataclasses import replace
 import numpy as np
 from numpy.typing import NDArray
 
-from study.formulas.excitation import available_field
+from study.network.fields import FieldState
 from study.network.laws import VoltageLaws
 from study.network.machines import NO_FIELD
 from study.network.power import PowerLaws
@@ -55,7 +55,13 @@ def limited_laws(laws: VoltageLaws, sources: tuple[Source, ...], state: IntArray
 
 
 def excitation_steps(
-    laws: VoltageLaws, sources: tuple[Source, ...], state: IntArray, v: ComplexArray, i: ComplexArray
+    laws: VoltageLaws,
+    sources: tuple[Source, ...],
+    state: IntArray,
+    field: FieldState,
+    *,
+    v: ComplexArray,
+    i: ComplexArray,
 ) -> tuple[IntArray, FloatArray]:
     """Return the state each source wants in each scenario, and how far it is from where it is.
 
@@ -67,6 +73,8 @@ def excitation_steps(
         Sources on line.
     state : ndarray of int, shape (source,)
         Excitation state solved for.
+    field : FieldState
+        Field of the sets at the point.
     v, i : ndarray, shape (source, scenario)
         Terminal voltage and current found.
 
@@ -78,17 +86,20 @@ def excitation_steps(
     wanted = np.repeat(state[:, None], v.shape[1], axis=1)
     distance = np.zeros(v.shape)
     error = regulator_error(laws, v, i)
+    # Past a quarter turn the field counts as one against the present one: below nothing.
+    under = np.where(field.in_step, -field.needed, field.needed)
+    over = field.needed - field.most
     for j, s in enumerate(sources):
         if s.law in (Law.FIELD, Law.BEHIND_IMPEDANCE):
             continue
+        steps: list[tuple[int, FloatArray]] = []
         if s.machine is not None:
-            steps = _machine_steps(laws, s, j, int(state[j]), (v[j], i[j], error[j]))
+            steps = _machine_steps(int(state[j]), error[j], over[j], under[j])
         elif np.isfinite(s.i_max_pu):
             steps = _converter_steps(laws, j, int(state[j]), (v[j], i[j], error[j]))
-        else:
-            continue
         for new_state, by in steps:
-            wanted[j, by > SLACK], distance[j, by > SLACK] = new_state, by[by > SLACK]
+            beyond = by > SLACK
+            wanted[j, beyond], distance[j, beyond] = new_state, by[beyond]
     return wanted, distance
 
 
@@ -104,36 +115,14 @@ def regulator_error(laws: VoltageLaws, v: ComplexArray, i: ComplexArray) -> Floa
 
 
 def _machine_steps(
-    laws: VoltageLaws,
-    source: Source,
-    j: int,
-    state: int,
-    point: tuple[ComplexArray, ComplexArray, FloatArray],
+    state: int, error: FloatArray, over: FloatArray, under: FloatArray
 ) -> list[tuple[int, FloatArray]]:
     """Return the states that a set may go to, each with how far it is past what keeps it where it is."""
-    v, i, error = point
     if state == CEILING:
         return [(0, -error)]
     if state == NO_EXCITATION:
         return [(0, error)]
-    needed = laws.field(j, v, i)
-    v_own, i_own = np.abs(v) * laws.to_own_v[j], np.abs(i) * laws.to_own_i[j]
-    most = available_field(v_own, i_own, np.angle(v * np.conj(i)), source.ceiling)
-    assert source.machine is not None
-    # Past a quarter turn of load angle the field found is one that pushes the rotor out of step: as a field
-    # against the present one it counts as negative.
-    inside = (
-        (v_own + (source.machine.ra_pu + 1j * source.machine.xq_pu) * _lagging(v, i) * i_own).real
-    ) >= 0.0
-    return [
-        (CEILING, (needed - most) / source.rated_field_pu),
-        (NO_EXCITATION, np.where(inside, -needed, needed) / source.rated_field_pu),
-    ]
-
-
-def _lagging(v: ComplexArray, i: ComplexArray) -> ComplexArray:
-    """Return the direction of the current against the voltage."""
-    return np.asarray(np.exp(-1j * np.angle(v * np.conj(i))))
+    return [(CEILING, over), (NO_EXCITATION, under)]
 
 
 def _converter_steps(

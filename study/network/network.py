@@ -22,6 +22,7 @@ from study.network.arrays import (
     transformer_ratio,
 )
 from study.network.equations import Structure, structure
+from study.network.fields import SetGroup, set_groups
 from study.network.pruning import prune
 from study.network.refusals import refusal
 from study.network.sources import Source, sources_of
@@ -52,7 +53,9 @@ class ModeNetwork:
     are the last buses. ``live`` lists the
     closed branches with impedance (places in the topology); ``two_port``, ``ratio`` and ``units`` are [live].
     ``order`` [island] is frequency over rated: not 1 on a shore supply of another frequency.
-    ``filter_pu`` [filter] is 0 where the filter is off or dead. ``motor_kva`` [synchronous motor] likewise.
+    ``constant_sum`` and ``square_sum`` [place, load] add up the consumers' power at their places, the part
+    that is constant and the part that follows the square of the voltage. ``filter_pu`` [filter] is 0 where
+    the filter is off or dead, ``motor_kva`` [synchronous motor] likewise.
     ``refusals`` [island] say why an island cannot be solved, or are empty.
     """
 
@@ -71,8 +74,10 @@ class ModeNetwork:
     units: FloatArray
     order: FloatArray
     filter_pu: ComplexArray
-    port_sum: csr_array
+    constant_sum: csr_array
+    square_sum: csr_array
     port_constant: ComplexArray
+    set_groups: tuple[SetGroup, ...]
     refusals: tuple[str, ...]
 
     @property
@@ -173,6 +178,8 @@ def mode_network(network: Network, mode: Mode | str) -> ModeNetwork:
     used = np.unique(np.concatenate([load_bus[load_bus >= 0], motor_bus[motor_kva != 0.0]]))
     direct = used[used < tree.buses]
     places = np.concatenate([direct, np.arange(tree.buses, buses)])
+    arrays = load_arrays(plant, network.u_base_v[np.array(view.load_node, np.int64)])
+    share, follows = arrays.constant_power, (1.0 - arrays.constant_power) * arrays.v_scale**2
     return ModeNetwork(
         network=network,
         mode=mode,
@@ -187,7 +194,7 @@ def mode_network(network: Network, mode: Mode | str) -> ModeNetwork:
         ),
         bus_of_node=bus_of_node,
         load_bus=load_bus,
-        load_arrays=load_arrays(plant, network.u_base_v[np.array(view.load_node, np.int64)]),
+        load_arrays=arrays,
         motor_kva=motor_kva,
         live=live,
         two_port=two_port,
@@ -195,8 +202,11 @@ def mode_network(network: Network, mode: Mode | str) -> ModeNetwork:
         units=units,
         order=order,
         filter_pu=filter_pu,
-        port_sum=_sum_at(load_bus, places),
-        port_constant=_sum_at(motor_bus, places) @ (motor_kva / network.s_base_kva),
+        constant_sum=_sum_at(load_bus, places, share / network.s_base_kva),
+        square_sum=_sum_at(load_bus, places, follows / network.s_base_kva),
+        port_constant=_sum_at(motor_bus, places, np.full(len(motor_bus), 1.0 / network.s_base_kva))
+        @ motor_kva,
+        set_groups=set_groups(sources),
         refusals=tuple(
             island.refusal or refusal([s for s in sources if s.island == n])
             for n, island in enumerate(view.islands)
@@ -293,11 +303,11 @@ def _motors(network: Network, mode: Mode, view: View, bus_of_node: IntArray) -> 
     return bus, power
 
 
-def _sum_at(bus: IntArray, places: IntArray) -> csr_array:
-    """Return the matrix that adds up what stands at each place, places ascending."""
-    on = np.flatnonzero(np.isin(bus, places) & (bus >= 0))
+def _sum_at(bus: IntArray, places: IntArray, weight: FloatArray) -> csr_array:
+    """Return the matrix that adds up, with weights, what stands at each place; places ascending."""
+    on = np.flatnonzero(np.isin(bus, places) & (bus >= 0) & (weight != 0.0))
     rows = np.searchsorted(places, bus[on])
-    return csr_array((np.ones(len(on)), (rows, on)), shape=(len(places), len(bus)))
+    return csr_array((weight[on], (rows, on)), shape=(len(places), len(bus)))
 
 
 def checked_loads(at: ModeNetwork, p_kw: ArrayLike, q_kvar: ArrayLike) -> tuple[FloatArray, FloatArray]:

@@ -69,7 +69,7 @@ def solve_scenarios(
         return _from_one(problem, base)
     out = _to_be_filled(problem.at, count)
     if base.converged:
-        if _pays(problem, count) if compiled is None else compiled:
+        if _pays(problem, count) if compiled is None else compiled and _can_compile(problem):
             from study.network.compiled import solve_compiled
 
             solve_compiled(problem, base.point, out, MOST_SWEEPS)
@@ -87,7 +87,11 @@ def _pays(problem: Problem, count: int) -> bool:
     """Return True where compiling, or loading what was compiled, costs less than it saves."""
     at = problem.at
     places = len(at.ports.direct) + at.ports.leaves + at.buses
-    return count * places > COMPILED_FROM and not (problem.laws.code == Law.FIELD).any()
+    return count * places > COMPILED_FROM and _can_compile(problem)
+
+
+def _can_compile(problem: Problem) -> bool:
+    return not (problem.laws.code == Law.FIELD).any()
 
 
 def _base(problem: Problem, start: Point | None) -> Solved:

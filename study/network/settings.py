@@ -77,11 +77,11 @@ def reactances(
     v_all, d_all = np.broadcast_arrays(v_ref, base)
     out = np.repeat(own, v_all.shape[1], axis=1)
     for j, s in enumerate(sources):
-        if s.machine is not None and s.law in (Law.PHASOR, Law.REACTIVE_CURRENT, Law.CROSS_CURRENT):
+        if s.droop_base == "rated kVA" and s.law == Law.PHASOR:
+            out[j] = np.where(s.reversed_polarity, -d_all[j], d_all[j])  # the droop is the reactance
+        elif s.machine is not None and s.law in (Law.PHASOR, Law.REACTIVE_CURRENT, Law.CROSS_CURRENT):
             pairs, place = np.unique(np.stack([v_all[j], d_all[j]]), axis=1, return_inverse=True)
             out[j] = np.array([_reactance(s, v, d) for v, d in pairs.T])[place]
-        elif droop is not None and s.law == Law.PHASOR:
-            out[j] = d_all[j]
     return out
 
 
