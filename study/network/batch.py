@@ -96,8 +96,8 @@ def solve_batch(
     settings : Settings, optional
         Trims other than those of the workbook.
     compiled : bool, optional
-        Whether to use the compiled sweep, which costs some ten seconds the first time; by the size of the task
-        where left out.
+        Whether to use the compiled sweep, which costs some ten seconds the first time; by the size of the
+        task where left out.
 
     Returns
     -------

@@ -7,10 +7,9 @@ from concurrent.futures import ThreadPoolExecutor
 
 import numpy as np
 
-from study.network.consumers import drawn_gradient
+from study.network.consumers import drawn_by
 from study.network.equations import Point, Problem, jacobian
 from study.network.kernel import LANES, Fixed, Found, Varying, sweep, triangles
-from study.network.newton import tolerance
 from study.network.scenarios import Solutions
 from study.network.sources import Law
 
@@ -37,7 +36,7 @@ def solve_compiled(problem: Problem, base: Point, out: Solutions, most_sweeps: i
     if (problem.laws.code == Law.FIELD).any():
         raise ValueError("the compiled sweep has no law of a constant field")
     mean, at = problem.column(None), problem.at
-    fixed, accept = _fixed(mean, base), tolerance(at)
+    fixed, accept = _fixed(mean, base), at.accept
     laws, power, demand = problem.laws, problem.power, problem.demand
     varying = Varying(
         constant=np.ascontiguousarray(demand.constant),
@@ -81,7 +80,7 @@ def _fixed(mean: Problem, base: Point) -> Fixed:
         into=ports.into[:, 0].copy(),
         out=ports.out[:, 0].copy(),
         own=ports.own[:, 0].copy(),
-        by_load=drawn_gradient(ports, base.v[ports.bus], mean.demand),
+        by_load=drawn_by(ports, mean.demand).gradient(base.v[ports.bus]),
         source_bus=at.source_bus,
         source_island=at.source_island,
         code=laws.code,

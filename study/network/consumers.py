@@ -88,99 +88,91 @@ def ports_of(
     )
 
 
-def leaf_voltage(ports: Ports, v: ComplexArray, demand: Demand) -> ComplexArray:
-    """Return the voltage at every leaf.
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Drawn:
+    """Consumers of some scenarios, with what does not depend on the voltages worked out, [place, scenario].
 
-    Source: the two-bus quadratic, derived; for example in J. J. Grainger, W. D. Stevenson, *Power System
-    Analysis*, from memory. The upper root is taken; NaN where the branch cannot carry the load.
+    On buses ``s`` is conj(S) and ``y`` the conjugate admittance. On leaves ``ratio`` is V'/V and ``product``
+    z' conj(S), of which ``twice`` is twice the real part and ``fourfold`` four times the square.
+    """
+
+    ports: Ports
+    s: ComplexArray
+    y: ComplexArray
+    ratio: ComplexArray
+    product: ComplexArray
+    twice: FloatArray
+    fourfold: FloatArray
+
+    def leaf_voltage(self, v: ComplexArray) -> ComplexArray:
+        """Return the voltage at every leaf from those at the ports, [leaf, scenario], per unit.
+
+        Source: the two-bus quadratic, derived; for example in J. J. Grainger, W. D. Stevenson, *Power System
+        Analysis*, from memory. The upper root is taken; NaN where the branch cannot carry the load.
+        """
+        behind = self.ratio * v[self.ports.parent]
+        square = behind.real**2 + behind.imag**2
+        b = square - self.twice
+        u = 0.5 * (b + np.sqrt(b * b - self.fourfold))
+        return np.asarray((u + np.conj(self.product)) * (behind / square))
+
+    def current(self, v: ComplexArray) -> ComplexArray:
+        """Return what is drawn at every port but for the near ends of the leaves' branches, per unit."""
+        ports = self.ports
+        if not ports.leaves and len(ports.direct) == len(ports.bus):
+            return np.asarray(self.s / np.conj(v) + self.y * v)
+        out = np.zeros((len(v), max(v.shape[1], self.s.shape[1], self.product.shape[1])), complex)
+        if len(ports.direct):
+            here = v[ports.direct]
+            out[ports.direct] = self.s / np.conj(here) + self.y * here
+        if ports.leaves:
+            through = ports.into * self.leaf_voltage(v)
+            out[ports.parents] += np.add.reduceat(through, ports.first, axis=0)
+        return out
+
+    def gradient(self, v: ComplexArray) -> FloatArray:
+        """Return the gradient of `current` for one scenario, [4, port]: Re by e, Re by f, Im by e, Im by f.
+
+        With ``dI = A dV + B conj(dV)``: on a bus ``A = conj(y)``, ``B = -conj(S)/conj(V)^2``; through a leaf,
+        ``beta = -z' conj(S)/conj(v)^2``, ``V' = k V`` and ``dv = (k dV - beta conj(k dV))/(1 - |beta|^2)``.
+        """
+        ports = self.ports
+        a, b = np.zeros((2, len(v)), complex)
+        a[ports.direct] = self.y[:, 0]
+        b[ports.direct] = -self.s[:, 0] / np.conj(v[ports.direct, 0]) ** 2
+        if ports.leaves:
+            k = self.ratio[:, 0]
+            beta = -(self.product / np.conj(self.leaf_voltage(v)) ** 2)[:, 0]
+            slope = ports.into[:, 0] / (1.0 - np.abs(beta) ** 2)
+            a[ports.parents] += np.add.reduceat(slope * k, ports.first)
+            b[ports.parents] += np.add.reduceat(-slope * beta * np.conj(k), ports.first)
+        return np.stack([(a + b).real, (b - a).imag, (a + b).imag, (a - b).real])
+
+
+def drawn_by(ports: Ports, demand: Demand) -> Drawn:
+    """Return the consumers of some scenarios, ready to be evaluated at any voltage.
 
     Parameters
     ----------
     ports : Ports
         Of the mode.
-    v : ndarray, shape (port, scenario)
-        Voltages at the ports. [pu]
     demand : Demand
         Of the consumers.
 
     Returns
     -------
-    ndarray, shape (leaf, scenario)
-        Voltage. [pu]
+    Drawn
+        For the same scenarios.
     """
-    behind, a = _behind(ports, v, demand)
-    square = behind.real**2 + behind.imag**2
-    b = square - 2.0 * a.real
-    u = 0.5 * (b + np.sqrt(b * b - 4.0 * (a.real**2 + a.imag**2)))
-    return np.asarray((u + np.conj(a)) * (behind / square))
-
-
-def _behind(ports: Ports, v: ComplexArray, demand: Demand) -> tuple[ComplexArray, ComplexArray]:
-    """Return V' and z' conj(S) of every leaf."""
     n = len(ports.direct)
     z = 1.0 / (ports.own + np.conj(demand.impedance[n:]))
-    return -ports.out * z * v[ports.parent], z * np.conj(demand.constant[n:])
-
-
-def drawn_current(ports: Ports, v: ComplexArray, demand: Demand) -> ComplexArray:
-    """Return the current that goes to consumers at every port, without what is linear in its own voltage.
-
-    Parameters
-    ----------
-    ports : Ports
-        Of the mode.
-    v : ndarray, shape (port, scenario)
-        Voltages at the ports. [pu]
-    demand : Demand
-        Of the consumers.
-
-    Returns
-    -------
-    ndarray, shape (port, scenario)
-        Current. [pu]
-    """
-    n = len(ports.direct)
-    width = max(v.shape[1], demand.constant.shape[1], demand.impedance.shape[1])
-    out = np.zeros((len(v), width), complex)
-    here = v[ports.direct]
-    out[ports.direct] = np.conj(demand.constant[:n] / here) + np.conj(demand.impedance[:n]) * here
-    if ports.leaves:
-        through = ports.into * leaf_voltage(ports, v, demand)
-        out[ports.parents] += np.add.reduceat(through, ports.first, axis=0)
-    return out
-
-
-def drawn_gradient(ports: Ports, v: ComplexArray, demand: Demand) -> FloatArray:
-    """Return the gradient of `drawn_current` for one scenario, [4, port]: Re by e, Re by f, Im by e, Im by f.
-
-    With ``dI = A dV + B conj(dV)``: on a bus ``A = conj(y)``, ``B = -conj(S)/conj(V)^2``; through a leaf,
-    with ``beta = -z' conj(S)/conj(v)^2`` and ``V' = k V``, ``dv = (k dV - beta conj(k dV))/(1 - |beta|^2)``.
-
-    Parameters
-    ----------
-    ports : Ports
-        Of the mode.
-    v : ndarray, shape (port, 1)
-        Voltages at the ports. [pu]
-    demand : Demand
-        Of the consumers.
-
-    Returns
-    -------
-    ndarray, shape (4, port)
-        Gradient. [pu]
-    """
-    n = len(ports.direct)
-    a, b = np.zeros((2, len(v)), complex)
-    here = v[ports.direct, 0]
-    a[ports.direct] = np.conj(demand.impedance[:n, 0])
-    b[ports.direct] = -np.conj(demand.constant[:n, 0] / here**2)
-    if ports.leaves:
-        _, product = _behind(ports, v, demand)
-        z = 1.0 / (ports.own + np.conj(demand.impedance[n:]))
-        k = (-ports.out * z)[:, 0]
-        beta = -(product / np.conj(leaf_voltage(ports, v, demand)) ** 2)[:, 0]
-        slope = ports.into[:, 0] / (1.0 - np.abs(beta) ** 2)
-        a[ports.parents] += np.add.reduceat(slope * k, ports.first)
-        b[ports.parents] += np.add.reduceat(-slope * beta * np.conj(k), ports.first)
-    return np.stack([(a + b).real, (b - a).imag, (a + b).imag, (a - b).real])
+    product = z * np.conj(demand.constant[n:])
+    return Drawn(
+        ports=ports,
+        s=np.conj(demand.constant[:n]),
+        y=np.conj(demand.impedance[:n]),
+        ratio=-ports.out * z,
+        product=product,
+        twice=2.0 * product.real,
+        fourfold=4.0 * (product.real**2 + product.imag**2),
+    )

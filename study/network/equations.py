@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 from scipy.sparse import csc_matrix, csr_array
 from scipy.sparse.linalg import SuperLU, splu
 
-from study.network.consumers import Demand, Ports, drawn_current, drawn_gradient
+from study.network.consumers import Demand, Drawn, Ports, drawn_by
 from study.network.laws import VoltageLaws, some, take
 from study.network.power import PowerLaws
 from study.network.sources import Law
@@ -23,13 +23,17 @@ FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
 IntArray = NDArray[np.int64]
 
+TOLERANCE = 1e-10  # of node current and source laws, pu of the base power
+ROUNDING = 16.0 * float(np.finfo(float).eps)
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Structure:
     """Sizes and places that do not change while a mode is solved.
 
     ``admittance`` is that of the buses that are no leaves (see `consumers`). ``source_bus`` and
-    ``source_island`` are [source], ``reference_bus`` [island] the bus whose voltage has no imaginary part.
+    ``source_island`` are [source], ``reference_bus`` [island] the bus whose voltage has no imaginary part;
+    ``accept`` is the residual accepted, pu.
     ``rows`` and ``columns`` are those of the Jacobian's entries in the order `jacobian` fills them;
     ``slot`` their places in the sparse matrix, ``indices`` and ``indptr`` its pattern.
     """
@@ -41,6 +45,7 @@ class Structure:
     reference_bus: IntArray
     islands: int
     row_start: IntArray
+    accept: float
     fixed_values: FloatArray
     slot: IntArray
     indices: IntArray
@@ -121,11 +126,18 @@ def structure(
         reference_bus=ref_bus,
         islands=islands,
         row_start=admittance.indptr[:-1].astype(np.int64),
+        accept=_accepted(admittance, ports),
         fixed_values=fixed,
         slot=slot,
         indices=(unique % size).astype(np.int32),
         indptr=indptr.astype(np.int32),
     )
+
+
+def _accepted(admittance: csr_array, ports: Ports) -> float:
+    """Return the residual accepted: 1e-10 pu, or what rounding leaves beside very small impedances."""
+    entries = np.concatenate([admittance.data, ports.own[:, 0]])
+    return max(TOLERANCE, ROUNDING * float(np.abs(entries).max(initial=0.0)))
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -181,13 +193,15 @@ class Problem:
         )
 
 
-def residual(problem: Problem, x: Point) -> FloatArray:
+def residual(problem: Problem, drawn: Drawn, x: Point) -> FloatArray:
     """Return the residual of every row for one scenario.
 
     Parameters
     ----------
     problem : Problem
         One scenario.
+    drawn : Drawn
+        Its consumers.
     x : Point
         Arrays with one column.
 
@@ -202,7 +216,7 @@ def residual(problem: Problem, x: Point) -> FloatArray:
     # The sparse product by hand: the library's own costs more than the multiplications.
     current = np.add.reduceat(at.admittance.data * v[at.admittance.indices], at.row_start)
     np.subtract.at(current, at.source_bus, i)
-    current[at.ports.bus] += drawn_current(at.ports, x.v[at.ports.bus], problem.demand)[:, 0]
+    current[at.ports.bus] += drawn.current(x.v[at.ports.bus])[:, 0]
     out = np.empty(at.size)
     out[:n], out[n : 2 * n] = current.real, current.imag
     v_s = x.v[at.source_bus]
@@ -217,8 +231,10 @@ def jacobian(problem: Problem, x: Point) -> SuperLU:
 
     Parameters
     ----------
-    problem, x
-        As for `residual`.
+    problem : Problem
+        One scenario.
+    x : Point
+        Arrays with one column.
 
     Returns
     -------
@@ -241,7 +257,7 @@ def jacobian_values(problem: Problem, x: Point) -> FloatArray:
     """Return the Jacobian's entries in the order of `structure`."""
     at, laws, power = problem.at, problem.laws, problem.power
     v_s, i_s = x.v[at.source_bus, 0], x.i[:, 0]
-    by_load = drawn_gradient(at.ports, x.v[at.ports.bus], problem.demand)
+    by_load = drawn_by(at.ports, problem.demand).gradient(x.v[at.ports.bus])
     by_power = np.stack([i_s.real, i_s.imag, v_s.real, v_s.imag])
     b = power.b[:, 0].copy()
     behind = laws.code == Law.BEHIND_IMPEDANCE

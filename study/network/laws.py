@@ -6,7 +6,7 @@ Arrays are [source, scenario]; a source's current leaves it. Every equation is z
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from typing import TypeVar
+from typing import Any, TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -21,6 +21,7 @@ ComplexArray = NDArray[np.complex128]
 IntArray = NDArray[np.int64]
 _Number = TypeVar("_Number", np.float64, np.complex128)
 
+PHASOR, CROSS_CURRENT = int(Law.PHASOR), int(Law.CROSS_CURRENT)
 STEP = 1e-6  # of voltage and current, for the gradient of the field equation
 
 
@@ -111,32 +112,34 @@ class VoltageLaws:
         count = len(v)
         out = np.zeros((count, 4, count))
         vc = self.compensated(v[:, None], i[:, None])[:, 0]
-        for j in range(count):
-            out[j] = self._gradient_of(j, v, i, vc)
+        for code, k in self.groups:
+            if code in (PHASOR, CROSS_CURRENT):
+                # Of |Vc|^2: twice Vc times what each unknown does to it.
+                turned = 1j * self.cross[k] * np.conj(vc[k])[:, None]
+                turned[np.arange(len(k)), k] += (self.r[k, 0] + 1j * self.x[k, 0]) * np.conj(vc[k])
+                out[k, 0, k], out[k, 1, k] = 2.0 * vc[k].real, 2.0 * vc[k].imag
+                out[k, 2], out[k, 3] = 2.0 * turned.real, -2.0 * turned.imag
+            else:
+                for j in k:
+                    out[j, :, j] = self._gradient_of(j, v[j], i[j])
         return out
 
-    def _gradient_of(self, j: int, v: ComplexArray, i: ComplexArray, vc: ComplexArray) -> FloatArray:
-        out = np.zeros((4, len(v)))
-        e, f, re, im = v[j].real, v[j].imag, i[j].real, i[j].imag
+    def _gradient_of(self, j: int, v: complex, i: complex) -> Any:
+        e, f, re, im = v.real, v.imag, i.real, i.imag
         x, k = self.x[j, 0], self.q_per_p[j, 0]
         match self.code[j]:
-            case Law.PHASOR | Law.CROSS_CURRENT:
-                turned = 1j * self.cross[j] * np.conj(vc[j])
-                turned[j] += (self.r[j, 0] + 1j * x) * np.conj(vc[j])
-                out[0, j], out[1, j] = 2.0 * vc[j].real, 2.0 * vc[j].imag
-                out[2], out[3] = 2.0 * turned.real, -2.0 * turned.imag
             case Law.REACTIVE_CURRENT:
-                per_v = self.e_ref[j, 0] / abs(v[j])
-                out[:, j] = (2.0 * e - x * im - per_v * e, 2.0 * f + x * re - per_v * f, x * f, -x * e)
+                per_v = self.e_ref[j, 0] / abs(v)
+                return (2.0 * e - x * im - per_v * e, 2.0 * f + x * re - per_v * f, x * f, -x * e)
             case Law.REACTIVE_POWER:
-                out[:, j] = (-im - k * re, re - k * im, f - k * e, -e - k * f)
+                return (-im - k * re, re - k * im, f - k * e, -e - k * f)
             case Law.BEHIND_IMPEDANCE:
-                out[:, j] = (1.0, 0.0, self.r[j, 0], -x)
+                return (1.0, 0.0, self.r[j, 0], -x)
             case Law.CURRENT_LIMIT:
-                out[:, j] = (0.0, 0.0, 2.0 * re, 2.0 * im)
+                return (0.0, 0.0, 2.0 * re, 2.0 * im)
             case Law.FIELD:
-                out[:, j] = self._field_gradient(j, v[j], i[j])
-        return out
+                return self._field_gradient(j, v, i)
+        raise ValueError(f"unknown law {self.code[j]}")
 
     def _field_gradient(self, j: int, v: complex, i: complex) -> FloatArray:
         h_v, h_i = STEP, STEP / self.to_own_i[j, 0]

@@ -8,12 +8,11 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.sparse.linalg import SuperLU
 
+from study.network.consumers import drawn_by
 from study.network.equations import Point, Problem, Structure, jacobian, residual
 
 FloatArray = NDArray[np.float64]
 
-TOLERANCE = 1e-10  # of node current and source laws, pu of the base power
-ROUNDING = 16.0 * float(np.finfo(float).eps)
 MOST_ITERATIONS = 60
 SLOW = 0.1  # the factors are renewed when a step leaves more than this part of the residual
 SHORTEST_STEP = 1.0 / 64.0
@@ -28,13 +27,6 @@ class Solved:
     iterations: int
     converged: bool
     factors: SuperLU | None
-
-
-def tolerance(at: Structure) -> float:
-    """Return the residual accepted: 1e-10 pu, or what rounding leaves beside very small impedances."""
-    entries = np.concatenate([at.admittance.data, at.ports.own[:, 0]])
-    largest = float(np.abs(entries).max(initial=0.0))
-    return max(TOLERANCE, ROUNDING * largest)
 
 
 def flat_start(problem: Problem) -> Point:
@@ -80,9 +72,9 @@ def solve_one(problem: Problem, start: Point) -> Solved:
         Where ``converged`` is False the point is the best found.
     """
     at = problem.at
-    accept = tolerance(at)
+    accept, drawn = at.accept, drawn_by(at.ports, problem.demand)
     x = _pack(start)
-    f = residual(problem, start)
+    f = residual(problem, drawn, start)
     size = float(np.abs(f).max())
     factors: SuperLU | None = None
     fresh = False
@@ -95,7 +87,7 @@ def solve_one(problem: Problem, start: Point) -> Solved:
             if factors is None:
                 break
         trial = x - step * factors.solve(f)
-        f_trial = _finite(residual(problem, _unpack(at, trial)))
+        f_trial = _finite(residual(problem, drawn, _unpack(at, trial)))
         size_trial = float(np.abs(f_trial).max())
         if size_trial < size:
             fresh = size_trial < SLOW * size
@@ -123,7 +115,7 @@ def _ended(at: Structure, x: FloatArray, size: float, count: int, factors: Super
         point=_unpack(at, x),
         residual_pu=size,
         iterations=count,
-        converged=size <= tolerance(at),
+        converged=size <= at.accept,
         factors=factors,
     )
 

@@ -14,9 +14,9 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.sparse.linalg import SuperLU
 
-from study.network.consumers import drawn_current, drawn_gradient, leaf_voltage
+from study.network.consumers import Drawn, drawn_by
 from study.network.equations import Point, Problem, Structure, jacobian
-from study.network.newton import Solved, flat_start, solve_one, tolerance
+from study.network.newton import Solved, flat_start, solve_one
 from study.network.sources import Law
 
 FloatArray = NDArray[np.float64]
@@ -153,7 +153,7 @@ def _with_leaves(problem: Problem, v: ComplexArray) -> ComplexArray:
     """Return the voltages of all buses, those of the leaves behind the others."""
     ports = problem.at.ports
     with np.errstate(all="ignore"):  # where the branch cannot carry the load, the scenario is not solved
-        return np.concatenate([v, leaf_voltage(ports, v[ports.bus], problem.demand)])
+        return np.concatenate([v, drawn_by(ports, problem.demand).leaf_voltage(v[ports.bus])])
 
 
 def _one_by_one(out: Solutions, k: int, problem: Problem, base: Solved) -> None:
@@ -176,13 +176,13 @@ class _Frame:
         at = self.at = mean.at
         n, s = at.buses, at.sources
         v_s = base.v[at.source_bus, 0]
-        self.by_load = drawn_gradient(at.ports, base.v[at.ports.bus], mean.demand)[:, :, None]
+        self.by_load = drawn_by(at.ports, mean.demand).gradient(base.v[at.ports.bus])[:, :, None]
         self.base = base
         self.by_law = mean.laws.gradient(v_s, base.i[:, 0]).reshape(s, 4 * s)
         self.v0, self.i0 = v_s[:, None], base.i
         self.behind = (mean.laws.code == Law.BEHIND_IMPEDANCE)[:, None]
         self.b0 = np.where(self.behind, 0.0, mean.power.b)
-        self.accept = tolerance(at)
+        self.accept = at.accept
         b = at.ports.bus
         self.rows = np.concatenate([b, n + b, np.arange(2 * n, 2 * n + 2 * s)])
         self.local = np.union1d(b, at.source_bus)
@@ -194,13 +194,14 @@ class _Frame:
     def solve_block(self, out: Solutions, k: IntArray, problem: Problem) -> None:
         """Sweep one block of scenarios until every one has converged or stopped converging."""
         count = len(k)
-        right = self._first_right(problem, count)
+        drawn = drawn_by(self.at.ports, problem.demand)
+        right = self._first_right(problem, drawn, count)
         residual = np.full(count, np.inf)
         sweeps = np.zeros(count, np.int64)
         with np.errstate(all="ignore"):  # a diverging scenario overflows; it is solved again by itself
             for _ in range(MOST_SWEEPS):
                 v, i, m = self._split(self.step(right))
-                new = self._right(v, i, m, problem)
+                new = self._right(problem, drawn, v, i, m)
                 change = np.abs(new - right).max(axis=0)
                 sweeps += residual > self.accept
                 residual = np.where(np.isnan(change), np.inf, change)
@@ -215,11 +216,11 @@ class _Frame:
         out.residual_pu[k], out.iterations[k] = residual, sweeps
         out.converged[k] = residual <= self.accept
 
-    def _first_right(self, problem: Problem, count: int) -> FloatArray:
+    def _first_right(self, problem: Problem, drawn: Drawn, count: int) -> FloatArray:
         """Return the right-hand side at the base point."""
         v = np.broadcast_to(self.base.v[self.local], (len(self.local), count))
         i = np.broadcast_to(self.i0, (self.at.sources, count))
-        return self._right(v, i, np.broadcast_to(self.base.m, (self.at.islands, count)), problem)
+        return self._right(problem, drawn, v, i, np.broadcast_to(self.base.m, (self.at.islands, count)))
 
     def _split(self, x: FloatArray) -> tuple[ComplexArray, ComplexArray, FloatArray]:
         n, s = len(self.local), self.at.sources
@@ -227,15 +228,17 @@ class _Frame:
         i = x[2 * n : 2 * n + s] + 1j * x[2 * n + s : 2 * n + 2 * s]
         return v, i, x[2 * n + 2 * s :]
 
-    def _right(self, v: ComplexArray, i: ComplexArray, m: FloatArray, problem: Problem) -> FloatArray:
+    def _right(
+        self, problem: Problem, drawn: Drawn, v: ComplexArray, i: ComplexArray, m: FloatArray
+    ) -> FloatArray:
         v_l, v_s = v[self.load_place], v[self.source_place]
         laws, power = problem.laws, problem.power
-        drawn = drawn_current(self.at.ports, v_l, problem.demand)
+        current = drawn.current(v_l)
         p, s = len(v_l), len(v_s)
         out = np.empty((2 * p + 2 * s, v.shape[1]))
         re_e, re_f, im_e, im_f = self.by_load
-        np.subtract(re_e * v_l.real + re_f * v_l.imag, drawn.real, out=out[:p])
-        np.subtract(im_e * v_l.real + im_f * v_l.imag, drawn.imag, out=out[p : 2 * p])
+        np.subtract(re_e * v_l.real + re_f * v_l.imag, current.real, out=out[:p])
+        np.subtract(im_e * v_l.real + im_f * v_l.imag, current.imag, out=out[p : 2 * p])
         m_s = m[self.at.source_island]
         linear = (v_s * np.conj(self.i0) + self.v0 * np.conj(i)).real
         law = linear - (v_s * np.conj(i)).real + power.a + (power.b - self.b0) * m_s
