@@ -15,7 +15,6 @@ from study.formulas.synchronous import (
     Machine,
     field_required,
     inherent_regulation,
-    open_circuit_voltage,
     rated_load_field,
     terminal_voltage_at_field,
 )
@@ -25,7 +24,7 @@ from study.network.machines import largest_field, machine_of, set_field
 from study.results.arrays import FloatArray, read_only
 from study.results.regulation import InherentCurve, RegulationResult, SetRegulation
 
-LABELS = ("power factor 0 lagging", "0.8 lagging", "1.0", "0.8 leading")
+LABELS = ("0 lagging", "0.8 lagging", "1.0", "0.8 leading")
 COS_PHI = np.array([0.0, 0.8, 1.0, 0.8])
 LAGGING = (True, True, True, False)
 WITHOUT_REGULATOR = ("fixed", "compounded without regulator")
@@ -265,7 +264,7 @@ def _findings(genset: Genset, supply: FieldSupply, machine: Machine, u_pu: Float
             f"{genset.name}: no regulator acts on its field; the voltage follows load and power factor."
         )
     elif genset.excitation.field_supply == "compounded":
-        no_load = open_circuit_voltage(supply.voltage_gain, machine.saturation)
+        no_load = held_voltage(0.0, 0.0, exponent=1.0, v_top_pu=2.0, supply=supply, machine=machine)
         found.append(
             f"{genset.name}: with its regulator out of action the compound source alone gives about "
             f"{100.0 * genset.excitation.unregulated_voltage_pu:.0f} % of rated voltage at rated load and "
