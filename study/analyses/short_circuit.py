@@ -22,7 +22,7 @@ from study.analyses.short_circuit_findings import (
 from study.analyses.short_circuit_general import GeneralCase, compared, general_case
 from study.analyses.short_circuit_options import ShortCircuitOptions
 from study.model.modes import Mode, State
-from study.network.fault_network import FaultNetwork, FaultPlant, fault_network, fault_plant
+from study.network.fault_network import FaultNetwork, FaultPlant, fault_network, fault_plant, with_tolerance
 from study.network.fault_supplies import MAXIMUM, MINIMUM, NOMINAL
 from study.network.network import Network
 from study.network.solver_faults import library_currents
@@ -128,7 +128,7 @@ def solve_mode(static: FaultPlant, mode: Mode, options: ShortCircuitOptions) -> 
         low = fault_network(static, _one_set(mode, low), MINIMUM)
     return SolvedMode(
         mode=mode,
-        maximum=solve_case(high, fault_network(static, mode, NOMINAL), options),
+        maximum=solve_case(high, with_tolerance(high, NOMINAL), options),
         minimum=solve_case(low, None, options),
         general=(general_case(high, options), general_case(low, options)),
     )

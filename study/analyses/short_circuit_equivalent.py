@@ -46,6 +46,8 @@ def behind_equivalent(net: FaultNetwork, rows: EndRows, parts: FaultCurrent) -> 
     """
     half, ip = np.full(len(net.place_bus), np.nan), np.full(len(net.place_bus), np.nan)
     s, hz = net.sources, net.plant.network.plant.project.f_rated_hz
+    if not len(s.bus):
+        return half, ip
     home, first, z, turns, _ = _paths(net)
     z = z[net.place_bus] + net.place_z / turns[net.place_bus] ** 2
     stub_rows = {(int(b), int(p)): n for n, (b, p) in enumerate(zip(rows.branch, rows.far_node, strict=True))}

@@ -30,6 +30,7 @@ ComplexArray = NDArray[np.complex128]
 IntArray = NDArray[np.int64]
 BoolArray = NDArray[np.bool_]
 
+_ROUNDS = 6  # to undo the skin effect; each gains two digits
 COLD_DEGC = 20.0  # conductor at the start of a maximum fault: IEC 60909-0:2016, cables, from memory
 _LINE_TO_NEUTRAL_AMPERES = 3.0  # `BranchArrays.ampere_factor` of a consumer between line and neutral
 _IMPEDANCE_FACTOR = {1.0: 1.0, 3.0**0.5: 2.0, 3.0: 6.0}
@@ -136,7 +137,7 @@ def _resistance_factors(network: Network) -> FloatArray:
 def _direct_resistance(r_ac: float, hz: float) -> float:
     """Return the d.c. resistance whose a.c. resistance is given; the skin effect is a small correction."""
     r = r_ac
-    for _ in range(20):
+    for _ in range(_ROUNDS):
         r = r_ac / float(skin_effect_factor(r, hz))
     return r
 
@@ -325,6 +326,26 @@ def _before(
     injected = np.zeros(len(bus_island), complex)
     np.add.at(injected, bus, y * e)
     return np.abs(z @ injected)
+
+
+def with_tolerance(net: FaultNetwork, options: CaseOptions) -> FaultNetwork:
+    """Return the network with its sources at another point of their reactances' tolerance.
+
+    Parameters
+    ----------
+    net : FaultNetwork
+        The network.
+    options : CaseOptions
+        Differs from that of the network in the tolerance alone.
+
+    Returns
+    -------
+    FaultNetwork
+        The same places and branches.
+    """
+    s = net.sources
+    sources = fault_sources(net.plant.network.plant, s.supplies, (s.bus, s.island), options, s.voltage)
+    return replace(net, options=options, sources=sources)
 
 
 def only_sources(net: FaultNetwork, keep: BoolArray) -> FaultNetwork:

@@ -67,6 +67,8 @@ def solve_stage(
         Phasors per unit.
     """
     s = net.sources
+    if not len(s.bus):
+        return _nothing(net)
     drive = s.voltage if voltage is None else voltage
     if transform is None:
         branches, place_z = net.admittance, net.place_z
@@ -87,9 +89,6 @@ def solve_stage(
     fed_islands = np.unique(s.island[active])
     fed = (net.place_bus >= 0) & np.isin(net.place_island, fed_islands)
     bus = np.where(fed, net.place_bus, 0)
-    if not len(net.bus_island):
-        empty = np.zeros((len(bus), len(s.bus)), complex)
-        return Stage(current=empty, z_place=np.full(len(bus), np.inf, complex), fed=fed, z_bus=z_bus)
     z_at = z_bus[bus, bus]
     own = net.place_own
     has_own = fed & (own >= 0)
@@ -108,4 +107,15 @@ def solve_stage(
         z_place=np.where(fed, 1.0 / (others / series + y_direct), np.inf),
         fed=fed,
         z_bus=z_bus,
+    )
+
+
+def _nothing(net: FaultNetwork) -> Stage:
+    """Return the stage of a network without sources."""
+    places, buses = len(net.place_bus), len(net.bus_island)
+    return Stage(
+        current=np.zeros((places, 0), complex),
+        z_place=np.full(places, np.inf, complex),
+        fed=np.zeros(places, bool),
+        z_bus=np.zeros((buses, buses), complex),
     )

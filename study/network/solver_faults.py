@@ -1,6 +1,6 @@
 """The fault network as a pandapower network, and its IEC 60909 currents beside ours.
 
-Every set, motor and supply has a bus of its own, behind its real cable or 0.1 µohm; boards joined by ties
+Every set, motor and supply has a bus of its own, behind its real cable or 1 nanoohm; boards joined by ties
 without impedance are one bus. Converter supplies are left out: the comparison is of the impedances.
 """
 
@@ -29,7 +29,7 @@ IntArray = NDArray[np.int64]
 _TABLES = ("bus", "impedance", "trafo", "trafo3w", "gen", "ext_grid", "motor")
 _PAIRS = (("primary", "secondary"), ("primary", "tertiary"), ("secondary", "tertiary"))
 _THREE_WINDING_C = 1.1
-LINK_OHM = 1e-7  # between a source without a cable and its board
+LINK_OHM = 1e-9  # between a source without a cable and its board
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
