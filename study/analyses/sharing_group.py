@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from study.analyses.sharing_options import SharingOptions
-from study.formulas.sharing import active_sharing_limit, proportional_share, reactive_sharing_limit
+from study.formulas.sharing import active_sharing_limit, reactive_sharing_limit
 from study.network.batch import BatchSolution, solve_batch
 from study.network.network import ModeNetwork
 from study.network.settings import Settings
@@ -146,32 +146,6 @@ def solve_scaled(group: Group, scale: FloatArray, settings: Settings | None = No
     return solve_batch(group.at, factor * group.p_kw, factor * group.q_kvar, settings)
 
 
-def share_of(total: FloatArray, rated: FloatArray, actual: FloatArray, takes_part: BoolArray) -> FloatArray:
-    """Return each set's proportional share; a set that takes no part keeps what it carries.
-
-    Parameters
-    ----------
-    total : ndarray, shape (...)
-        Power of all sets.
-    rated : ndarray, shape (set,)
-        Ratings.
-    actual : ndarray, shape (..., set)
-        What each set carries.
-    takes_part : ndarray of bool, shape (set,)
-        Sets that share.
-
-    Returns
-    -------
-    ndarray, shape (..., set)
-        Shares, in the unit of `total`.
-    """
-    share = np.array(actual)
-    if takes_part.any():
-        rest = total - actual[..., ~takes_part].sum(axis=-1)
-        share[..., takes_part] = proportional_share(rest, rated[takes_part])
-    return share
-
-
 def tolerances(group: Group, options: SharingOptions) -> tuple[FloatArray, FloatArray]:
     """Return how far each set may be from its share, kW and kvar, both [set]."""
     kw = active_sharing_limit(group.p_rated_kw, of_largest=options.kw_of_largest, of_own=options.kw_of_own)
@@ -185,10 +159,17 @@ def tolerances(group: Group, options: SharingOptions) -> tuple[FloatArray, Float
 
 
 def kw_off(group: Group, p_kw: FloatArray) -> FloatArray:
-    """Return how far each set's kW are from its share, [..., set]."""
-    return p_kw - share_of(p_kw.sum(axis=-1), group.p_rated_kw, p_kw, group.shares_kw)
+    """Return how far each set's kW are from its share, [..., set]; linear in the kW."""
+    return _off(p_kw, group.p_rated_kw, group.shares_kw)
 
 
 def kvar_off(group: Group, q_kvar: FloatArray) -> FloatArray:
-    """Return how far each set's kvar are from its share, [..., set]."""
-    return q_kvar - share_of(q_kvar.sum(axis=-1), group.q_rated_kvar, q_kvar, group.shares_kvar)
+    """Return how far each set's kvar are from its share, [..., set]; linear in the kvar."""
+    return _off(q_kvar, group.q_rated_kvar, group.shares_kvar)
+
+
+def _off(carried: FloatArray, rated: FloatArray, takes_part: BoolArray) -> FloatArray:
+    weight = rated * takes_part
+    if not takes_part.any():
+        return np.zeros(carried.shape)
+    return np.asarray(takes_part * carried - (carried @ takes_part)[..., None] * (weight / weight.sum()))

@@ -21,7 +21,7 @@ _REPEATS = 4  # the droop's reactance follows the no-load voltage by about 2 % o
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Held:
-    """What the sets of a group carry and hold, or changes of it; arrays [set].
+    """What the sets of a group carry and hold, or changes of it; arrays [..., set], frequency [..., 1].
 
     ``u_pu`` is the terminal voltage of the set's rated voltage, ``board_u_pu`` that of its board of the
     board's nominal voltage.
@@ -31,7 +31,27 @@ class Held:
     q_kvar: FloatArray
     u_pu: FloatArray
     board_u_pu: FloatArray
-    f_pu: float
+    f_pu: FloatArray
+
+    def moved(self, change: Held, steps: FloatArray | float) -> Held:
+        """Return the state after some steps of a change, [..., 1]."""
+        return Held(
+            p_kw=self.p_kw + steps * change.p_kw,
+            q_kvar=self.q_kvar + steps * change.q_kvar,
+            u_pu=self.u_pu + steps * change.u_pu,
+            board_u_pu=self.board_u_pu + steps * change.board_u_pu,
+            f_pu=self.f_pu + steps * change.f_pu,
+        )
+
+    def at(self, k: int) -> Held:
+        """Return one of several states."""
+        return Held(
+            p_kw=self.p_kw[k],
+            q_kvar=self.q_kvar[k],
+            u_pu=self.u_pu[k],
+            board_u_pu=self.board_u_pu[k],
+            f_pu=self.f_pu[k],
+        )
 
 
 def no_load_voltage_holding(group: Group, n: int, now: Held, then: Held) -> float:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -10,7 +10,7 @@ import numpy as np
 from study.analyses.sharing_group import Group, kvar_off, kw_off, tolerances
 from study.analyses.sharing_laws import Held
 from study.analyses.sharing_options import SharingOptions
-from study.results.arrays import FloatArray
+from study.results.arrays import BoolArray, FloatArray, IntArray
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -33,18 +33,18 @@ class LoadLimits:
     above: tuple[str, ...]
     broken: str
 
-    def ends(self, change: Held) -> Iterator[tuple[float, str]]:
-        """Yield how many times a change may be made, down and up, and what breaks there.
+    def ends(self, change: Held) -> tuple[Ends, Ends]:
+        """Return how many times changes may be made, down and up, and what breaks there.
 
         Parameters
         ----------
         change : Held
-            Differences of every quantity for one step.
+            Differences of every quantity for one step, [line, set].
 
-        Yields
-        ------
-        tuple of float and str
-            Steps and what breaks; nothing on a side where nothing does.
+        Returns
+        -------
+        tuple of Ends
+            Both [line].
         """
         slope = _quantities(self.group, change, own=self.own)
         rising, moves = slope > 0.0, slope != 0.0
@@ -52,15 +52,32 @@ class LoadLimits:
         to_low, to_high = (self.low - self.base) / step, (self.high - self.base) / step
         up = np.where(moves, np.where(rising, to_high, to_low), np.inf)
         down = np.where(moves, np.where(rising, to_low, to_high), -np.inf)
-        k, m = int(down.argmax()), int(up.argmin())
-        less: tuple[float, str] = (down[k], self.below[k] if rising[k] else self.above[k])
-        more: tuple[float, str] = (up[m], self.above[m] if rising[m] else self.below[m])
+        kva = tuple(f"rated kVA of {name}" for name in self.group.names)
+        above, below = (*self.above, *kva), (*self.below, *kva)
         if self.own:
-            first, last = _kva_ends(self.held, change, self.group.s_rated_kva)
-            k, m = int(first.argmax()), int(last.argmin())
-            less = max(less, (first[k], f"rated kVA of {self.group.names[k]}"))
-            more = min(more, (last[m], f"rated kVA of {self.group.names[m]}"))
-        yield from ((float(t), name) for t, name in (less, more) if np.isfinite(t))
+            less, more = _kva_ends(self.held, change, self.group.s_rated_kva)
+            down, up = np.concatenate([down, less], axis=-1), np.concatenate([up, more], axis=-1)
+            rising = np.concatenate([rising, np.ones(less.shape, bool)], axis=-1)
+        k, m = down.argmax(axis=-1), up.argmin(axis=-1)
+        line = np.arange(len(slope))
+        return (
+            Ends(steps=down[line, k], breaks=_named(k, rising[line, k], below, above)),
+            Ends(steps=up[line, m], breaks=_named(m, rising[line, m], above, below)),
+        )
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Ends:
+    """Where lines end, [line]: after how many steps (infinite: nowhere), and what breaks there."""
+
+    steps: FloatArray
+    breaks: tuple[str, ...]
+
+
+def _named(
+    k: IntArray, rising: BoolArray, names: tuple[str, ...], otherwise: tuple[str, ...]
+) -> tuple[str, ...]:
+    return tuple(names[n] if up else otherwise[n] for n, up in zip(k, rising, strict=True))
 
 
 def limits_at(
@@ -135,15 +152,15 @@ def _overloaded(group: Group, held: Held) -> str:
 
 
 def _quantities(group: Group, held: Held, *, own: bool) -> FloatArray:
-    """Return what is held against bounds, [quantity]; linear in the state, so it serves changes too."""
+    """Return what is held against bounds, [..., quantity]; linear in the state, so it serves changes too."""
     values = [kw_off(group, held.p_kw), kvar_off(group, held.q_kvar)]
     if own:
-        values += [held.p_kw, held.board_u_pu, np.array([held.f_pu])]
-    return np.concatenate(values)
+        values += [held.p_kw, held.board_u_pu, held.f_pu]
+    return np.concatenate(values, axis=-1)
 
 
 def _kva_ends(held: Held, change: Held, rated_kva: FloatArray) -> tuple[FloatArray, FloatArray]:
-    """Return the steps, down and up, at which each set reaches its kVA: ``|S + t dS| = Sr``, [set]."""
+    """Return the steps, down and up, at which each set reaches its kVA, ``|S + t dS| = Sr``: [line, set]."""
     a = change.p_kw**2 + change.q_kvar**2
     half = held.p_kw * change.p_kw + held.q_kvar * change.q_kvar
     rest = np.minimum(held.p_kw**2 + held.q_kvar**2 - rated_kva**2, 0.0)

@@ -16,7 +16,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from study.analyses.sharing_curves import NUDGE, AsSet
+from study.analyses.sharing_curves import NUDGE, AsSet, Nudge
 from study.analyses.sharing_group import Group
 from study.analyses.sharing_laws import (
     Held,
@@ -70,16 +70,18 @@ def adjusting_margins(group: Group, as_set: AsSet, options: SharingOptions) -> t
     boards = _Boards.of(group)
     loads = _loads(group, as_set, options, boards)
     broken = next((load.broken for load in loads if load.broken), "")
+    lines = _Lines.of(group, as_set, boards)
     found: dict[str, list[AdjustingMargin]] = {name: [] for names in _SETTINGS.values() for name in names}
-    for quantity, n in dict.fromkeys((x.quantity, x.n) for x in as_set.nudges):
-        line = _line(group, as_set, boards, quantity, n)
-        if not line.changes:
-            continue
-        ends = [end for load in loads for end in _ends(load, line.at(load.load_pu))]
+    ends = [end for load in loads for end in _ends(load, lines)] if lines.sets else []
+    for line, (quantity, n) in enumerate(lines.sets):
         for setting in _SETTINGS[quantity]:
             own = _own_value(group.sources[n], setting)
             if own > 0.0:
-                values = [(_value(group, n, setting, end), end.breaks) for end in ends]
+                values = [
+                    (_value(group, n, setting, end, line), end.breaks[line])
+                    for end in ends
+                    if not broken and np.isfinite(end.steps[line])
+                ]
                 found[setting].append(_margin(group.names[n], setting, own, values, broken))
     return tuple(margin for margins in found.values() for margin in margins)
 
@@ -101,55 +103,74 @@ class _Boards:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class _Line:
-    """The change of the sets' state for one nudge of one set, at the loads where it was measured."""
+class _Lines:
+    """The changes of the sets' state for one nudge of one set, at the two loads where they were measured.
 
-    loads_pu: list[float]
-    changes: list[Held]
+    ``sets`` [line] holds what was nudged, voltage or frequency, and of which set; ``loads_pu`` is
+    [end, line, 1]. Where only one load has a solution it stands for both.
+    """
+
+    sets: list[tuple[str, int]]
+    loads_pu: FloatArray
+    first: Held
+    last: Held
+
+    @classmethod
+    def of(cls, group: Group, as_set: AsSet, boards: _Boards) -> _Lines:
+        """Return the lines that have been measured."""
+        solved = as_set.solution.solved
+        known: dict[tuple[str, int], list[Nudge]] = {}
+        for nudge in as_set.nudges:
+            if solved[nudge.base] and solved[nudge.row]:
+                known.setdefault((nudge.quantity, nudge.n), []).append(nudge)
+        ends = [[pair[k] for pair in known.values()] for k in (0, -1)]
+        changes = [
+            _held(group, boards, as_set.solution, [x.row for x in end]).moved(
+                _held(group, boards, as_set.solution, [x.base for x in end]), -1.0
+            )
+            for end in ends
+        ]
+        loads_pu = np.array([[as_set.load_pu[x.base] for x in end] for end in ends])[:, :, None]
+        return cls(sets=list(known), loads_pu=loads_pu, first=changes[0], last=changes[1])
 
     def at(self, load_pu: float) -> Held:
-        """Return the change at another load, on the straight line through the two measured ones."""
-        first, last = self.changes[0], self.changes[-1]
-        span = self.loads_pu[-1] - self.loads_pu[0]
-        part = (load_pu - self.loads_pu[0]) / span if span else 0.0
-        return _moved(first, _moved(last, first, -1.0), part)
+        """Return the changes at another load, on the straight line through the two measured ones."""
+        low, high = self.loads_pu
+        part = np.where(high > low, (load_pu - low) / np.where(high > low, high - low, 1.0), 0.0)
+        return self.first.moved(self.last.moved(self.first, -1.0), part)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class _End:
-    """Where a line meets a limit: the state as set, the state there, how many nudges away, what breaks."""
+    """One end of every line at one load: the state as set, the states there, how many nudges away."""
 
     now: Held
     then: Held
-    nudges: float
-    breaks: str
+    steps: FloatArray
+    breaks: tuple[str, ...]
 
 
-def _ends(load: LoadLimits, change: Held) -> list[_End]:
+def _ends(load: LoadLimits, lines: _Lines) -> list[_End]:
+    change = lines.at(load.load_pu)
     return [
-        _End(now=load.held, then=_moved(load.held, change, t), nudges=t, breaks=name)
-        for t, name in load.ends(change)
+        _End(
+            now=load.held,
+            then=load.held.moved(change, np.where(np.isfinite(end.steps), end.steps, 0.0)[:, None]),
+            steps=end.steps,
+            breaks=end.breaks,
+        )
+        for end in load.ends(change)
     ]
 
 
-def _moved(held: Held, change: Held, t: float) -> Held:
-    """Return a state after t steps of a change."""
+def _held(group: Group, boards: _Boards, solution: BatchSolution, row: int | list[int]) -> Held:
+    """Return the state in one row of a solution, or in several."""
     return Held(
-        p_kw=held.p_kw + t * change.p_kw,
-        q_kvar=held.q_kvar + t * change.q_kvar,
-        u_pu=held.u_pu + t * change.u_pu,
-        board_u_pu=held.board_u_pu + t * change.board_u_pu,
-        f_pu=held.f_pu + t * change.f_pu,
-    )
-
-
-def _held(group: Group, boards: _Boards, solution: BatchSolution, row: int) -> Held:
-    return Held(
-        p_kw=solution.source_p_kw[row, group.places],
-        q_kvar=solution.source_q_kvar[row, group.places],
-        u_pu=solution.source_u_pu[row, group.places],
-        board_u_pu=np.abs(solution.v_bus_pu[row, boards.bus]) * boards.of_nominal,
-        f_pu=float(solution.frequency_pu[row, group.island]),
+        p_kw=solution.source_p_kw[row][..., group.places],
+        q_kvar=solution.source_q_kvar[row][..., group.places],
+        u_pu=solution.source_u_pu[row][..., group.places],
+        board_u_pu=np.abs(solution.v_bus_pu[row][..., boards.bus]) * boards.of_nominal,
+        f_pu=solution.frequency_pu[row][..., [group.island]],
     )
 
 
@@ -170,23 +191,6 @@ def _placed(group: Group) -> Iterator[tuple[int, Source]]:
     return zip(group.places.tolist(), group.sources, strict=True)
 
 
-def _line(group: Group, as_set: AsSet, boards: _Boards, quantity: str, n: int) -> _Line:
-    """Return the line of one set from its nudges that have a solution."""
-    solution = as_set.solution
-    known = [
-        x
-        for x in as_set.nudges
-        if (x.quantity, x.n) == (quantity, n) and solution.solved[[x.base, x.row]].all()
-    ]
-    return _Line(
-        loads_pu=[float(as_set.load_pu[x.base]) for x in known],
-        changes=[
-            _moved(_held(group, boards, solution, x.row), _held(group, boards, solution, x.base), -1.0)
-            for x in known
-        ],
-    )
-
-
 def _own_value(source: Source, setting: str) -> float:
     """Return what a setting is as set; 0 where the source has none."""
     return {
@@ -197,17 +201,17 @@ def _own_value(source: Source, setting: str) -> float:
     }[setting]
 
 
-def _value(group: Group, n: int, setting: str, end: _End) -> float:
-    """Return the setting that brings the plant to the end of its line; NaN where none does."""
+def _value(group: Group, n: int, setting: str, end: _End, line: int) -> float:
+    """Return the setting that brings the plant to the end of a line; NaN where none does."""
     source = group.sources[n]
     if setting == "no-load voltage":
-        return no_load_voltage_holding(group, n, end.now, end.then)
+        return no_load_voltage_holding(group, n, end.now, end.then.at(line))
     if setting == "voltage droop":
-        return droop_holding(group, n, end.now, end.then)
+        return droop_holding(group, n, end.now, end.then.at(line))
     if source.speed != Speed.DROOP:
-        return source.f_no_load_pu + NUDGE["frequency"] * end.nudges
+        return source.f_no_load_pu + NUDGE["frequency"] * float(end.steps[line])
     holding = no_load_frequency_holding if setting == "no-load frequency" else speed_droop_holding
-    return holding(source, float(end.then.p_kw[n]), end.then.f_pu)
+    return holding(source, float(end.then.p_kw[line, n]), float(end.then.f_pu[line, 0]))
 
 
 def _margin(

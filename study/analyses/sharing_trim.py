@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from study.analyses.sharing_curves import TRIMMED_AT_PU, AsSet
-from study.analyses.sharing_group import COMPENSATED, Group, share_of, solve_scaled
+from study.analyses.sharing_group import COMPENSATED, Group, kvar_off, kw_off, solve_scaled
 from study.network.batch import BatchSolution
 from study.network.limits import regulator_error
 from study.network.settings import Settings
@@ -83,11 +83,8 @@ class _Trim:
         """Return each set's share of kW and kvar; a set that cannot be trimmed keeps what it carries."""
         group = self.group
         p, q = solution.source_p_kw[row, group.places], solution.source_q_kvar[row, group.places]
-        takes = self.voltage & group.shares_kvar
-        return (
-            share_of(p.sum(), group.p_rated_kw, p, group.shares_kw),
-            share_of(q.sum(), group.q_rated_kvar, q, takes),
-        )
+        trimmed = replace(group, shares_kvar=self.voltage & group.shares_kvar)
+        return p - kw_off(group, p), q - kvar_off(trimmed, q)
 
     def settings(self, solution: BatchSolution, row: int) -> Settings:
         """Return the set-points that would hold each set at its share, from a solution near it."""

@@ -114,3 +114,28 @@ def test_a_shunt_fed_set_reaches_its_ceiling_no_later_than_one_with_its_own_supp
     assert np.isnan(short.u_without_droop_pu[-1]) or (
         short.u_without_droop_pu[-1] < held.u_without_droop_pu[-1] - 0.01
     )
+
+
+@pytest.mark.parametrize("mode", ["no droop", "cross-current", "kvar control"])
+def test_a_droop_that_is_not_in_use_lets_nothing_fall(mode: str) -> None:
+    """A set alone compares its current with nobody's: cross-current compensation gives it no droop either."""
+    row = regulation_of(genset("G", "MSB", regulator_mode=mode, voltage_droop_pu=0.04))
+    np.testing.assert_array_equal(row.u_with_droop_pu, row.u_without_droop_pu)
+    assert row.droop_no_load_to_rated_pu == 0.0
+    assert (row.compensation_x_pu > 0.0) == (mode == "cross-current")
+
+
+def test_a_reversed_droop_circuit_lets_the_voltage_rise_and_says_so() -> None:
+    row = regulation_of(genset("G", "MSB", reversed_polarity=True))
+    assert row.droop_no_load_to_rated_pu < 0.0
+    assert row.compensation_x_pu < 0.0
+    assert any("reversed" in text for text in row.findings)
+
+
+def test_a_droop_that_leaves_no_voltage_is_a_finding_and_no_crash() -> None:
+    """(V + Xq/V)^2 + (Xp/V)^2 = 0.36 has no root at rated load with X = 0.2."""
+    steep = {"no_load_voltage_pu": 0.6, "voltage_droop_pu": 0.2, "droop_base": "rated kVA"}
+    row = regulation_of(genset("G", "MSB", **steep))
+    assert np.isnan(row.u_with_droop_pu).all()
+    assert row.band_as_set_with_droop_pu == 1.0
+    assert any("holds no voltage at some load" in text for text in row.findings)
