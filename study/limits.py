@@ -216,6 +216,31 @@ _SPECS = (
         maximum=200.0,
     ),
     LimitSpec(
+        key="breaking_rating",
+        quantity="Breaking capacity judged by",
+        limit="Ics",
+        unit="",
+        basis="class practice for main and essential circuits, from memory",
+        choices=("Ics", "Icu"),
+    ),
+    LimitSpec(
+        key="earth_fault_standing",
+        quantity="Earth-fault current left standing",
+        limit=5.0,
+        unit="A",
+        basis="class practice above 1 kV: an alarm may do up to about 5 A, above it the fault is tripped; DNV"
+        " Pt.4 Ch.8 from memory; below 1 kV common practice, no source",
+        maximum=100.0,
+    ),
+    LimitSpec(
+        key="earth_fault_detection",
+        quantity="Earth fault detected from",
+        limit=1.0,
+        unit="A",
+        basis="common practice, no source: what a core-balance transformer tells for certain; above 1 kV",
+        maximum=100.0,
+    ),
+    LimitSpec(
         key="transient_low",
         quantity="Transient voltage below",
         limit=15.0,

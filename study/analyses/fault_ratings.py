@@ -9,7 +9,12 @@ from study.analyses.fault_ratings_earth import earth_fault_rows, resistor_rating
 from study.analyses.fault_ratings_least import clearing_ratings, least_faults
 from study.analyses.fault_ratings_limiting import let_through_sheets
 from study.analyses.fault_ratings_releases import releases
-from study.analyses.fault_ratings_sides import PlantDevices, branch_of_devices, sides_of
+from study.analyses.fault_ratings_sides import (
+    PlantDevices,
+    branch_of_devices,
+    sides_of,
+    source_of_devices,
+)
 from study.model.plant import Plant
 from study.results.fault_ratings import FaultRatingsResult
 from study.results.short_circuit import ShortCircuitResult
@@ -40,6 +45,7 @@ def fault_ratings(plant: Plant, short_circuit: ShortCircuitResult) -> FaultRatin
         releases=releases(plant),
         sheets=tuple(sheets.get(device.curve or "") for device in plant.devices),
         branch=branch_of_devices(plant),
+        source=source_of_devices(plant),
     )
     sides = [sides_of(plant, devices, mode, f_hz) for mode in short_circuit.modes]
     least = [least_faults(plant, devices, mode, short_circuit) for mode in short_circuit.modes]

@@ -36,7 +36,8 @@ class Clearing:
     """One row for each fault: ``time_s`` until the arc is out, inf for never, NaN where nothing is known.
 
     ``stage`` numbers `STAGES`; ``meant`` is the same, or the stage that should have cleared where none does.
-    ``pick_up_a`` is the current that this one needs at the far end of its tolerance, ``seen_a`` what it has.
+    ``pick_up_a`` is the current that this one needs at the far end of its tolerance, ``seen_a`` what it has,
+    and ``due_s`` when it would have cleared if the current were kept up (inf: never).
     """
 
     time_s: FloatArray
@@ -44,6 +45,7 @@ class Clearing:
     meant: IntArray
     pick_up_a: FloatArray
     seen_a: FloatArray
+    due_s: FloatArray
 
 
 def clear(
@@ -82,7 +84,8 @@ def clear(
     superseded = np.isfinite(short_end) & (slow_stage == LONG_TIME)
     ends = np.stack([np.where(half >= at_once, 0.0, np.inf), short_end, slow_end]) + fixed
     ends[2] = np.where(superseded, np.inf, ends[2])
-    ends = np.where(ends <= holds_s, ends, np.inf)
+    due = ends
+    ends = np.where(due <= holds_s, due, np.inf)
     first = np.argmin(ends, axis=0)
     rows = np.arange(n)
     time = ends[first, rows]
@@ -90,15 +93,16 @@ def clear(
     which = np.where(np.isfinite(time), first, meant)
     wait = np.where(which == 1, [d.short_s if d.short_s < np.inf else 0.0 for d in devices], 0.0)
     wait = np.where(which == 0, half_cycle_s, np.where(which == 2, np.minimum(slow_end, holds_s), wait))
-    due = np.select([which == 0, which == 1], [INSTANTANEOUS, SHORT_TIME], slow_stage)
+    stage_due = np.select([which == 0, which == 1], [INSTANTANEOUS, SHORT_TIME], slow_stage)
     known = np.array([d.known for d in devices], bool)
-    stage = np.where(np.isfinite(time), due, DOES_NOT_CLEAR)
+    stage = np.where(np.isfinite(time), stage_due, DOES_NOT_CLEAR)
     return Clearing(
         time_s=np.where(known, time, np.nan),
         stage=np.where(known, stage, UNKNOWN).astype(np.int64),
-        meant=np.where(known, due, UNKNOWN).astype(np.int64),
+        meant=np.where(known, stage_due, UNKNOWN).astype(np.int64),
         pick_up_a=np.where(known, np.stack([at_once, short_a, slow_a])[which, rows], np.nan),
         seen_a=faults.ac_at_a(wait),
+        due_s=due[which, rows],
     )
 
 

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from study.analyses.fault_ratings_backup import Backup, Step
+from study.analyses.fault_ratings_backup import ENDS_BY_ITSELF, Backup, Step, least_over_three_phase
 from study.analyses.fault_ratings_clearing import STAGES, Clearing, clear
 from study.analyses.fault_ratings_history import case_histories, knots_s
 from study.analyses.fault_ratings_series import Stacked
@@ -26,11 +26,13 @@ BoolArray = NDArray[np.bool_]
 class LeastFaults:
     """The least fault at the far end of each device in one mode, [device], and how it is cleared.
 
-    ``by`` is the device that clears it: itself, one nearer to the sources, or -1 for none.
+    ``by`` is the device that clears it: itself, one nearer to the sources, -1 for none, -2 where the sources
+    block by themselves.
     """
 
     judged: BoolArray
     first_a: FloatArray
+    holds_s: FloatArray
     clearing: Clearing
     by: IntArray
     heat_a2s: FloatArray
@@ -66,7 +68,7 @@ def least_faults(
     share = _shares(devices, case, place)
     knots = knots_s(places.f_hz, case.parts.ends_s)
     _, through = case_histories(case, place, share, knots)
-    least = through.times(_least_over_three_phase(case, place, through.time_s))
+    least = through.times(least_over_three_phase(case, place, through.time_s))
     own = least.ac_at_a(np.nan_to_num(faults.operating_s, nan=0.0))
     fits = np.isfinite(faults.operating_s) & np.isfinite(faults.least_a) & (own > 0.0)
     least = least.times(np.where(fits, faults.least_a / np.where(fits, own, 1.0), 1.0)[:, None, None])
@@ -83,6 +85,7 @@ def least_faults(
     return LeastFaults(
         judged=judged,
         first_a=least.ac_a[:, 0, 0],
+        holds_s=holds,
         clearing=cleared,
         by=by,
         heat_a2s=least.heat_a2s(cleared.time_s),
@@ -140,13 +143,15 @@ def clearing_ratings(plant: Plant, least: list[LeastFaults], result: ShortCircui
         clears=read_only(table["clears"], np.bool_),
         by=read_only(table["by"], np.int64),
         clearing_s=read_only(table["clearing_s"]),
+        due_s=read_only(table["due_s"]),
+        holds_s=read_only(table["holds_s"]),
         kinds=tuple(tuple(kind[k] for kind in kinds) for k in range(len(plant.devices))),
     )
 
 
 def _columns(least: LeastFaults) -> dict[str, NDArray[np.generic]]:
     dark = np.where(least.judged, 1.0, np.nan)
-    clears = np.isfinite(least.clearing.time_s)
+    clears = np.isfinite(least.clearing.time_s) | (least.by == ENDS_BY_ITSELF)
     return {
         "judged": least.judged,
         "least_a": least.clearing.seen_a * dark,
@@ -156,6 +161,8 @@ def _columns(least: LeastFaults) -> dict[str, NDArray[np.generic]]:
         "clears": clears & least.judged,
         "by": np.where(least.judged, least.by, -1),
         "clearing_s": least.clearing.time_s * dark,
+        "due_s": least.clearing.due_s * dark,
+        "holds_s": least.holds_s * dark,
     }
 
 
@@ -170,17 +177,6 @@ def _shares(devices: PlantDevices, case: FaultCase, place: IntArray) -> FloatArr
         if row >= 0:
             share[k] = case.ends.share[row]
     return share
-
-
-def _least_over_three_phase(case: FaultCase, place: IntArray, knots: FloatArray) -> FloatArray:
-    """Return the ratio of the least kind of fault to the three-phase one, [row, interval, 3]."""
-    samples = np.stack([knots[:-1], 0.5 * (knots[1:] + knots[:-1]), knots[1:]], axis=1)
-    there = np.isfinite(case.iac_a) & (case.iac_a > 0.0) & np.isfinite(case.least_a)
-    ratio = np.where(there, case.least_a, 1.0) / np.where(there, case.iac_a, 1.0)
-    found = np.ones((len(place), *samples.shape))
-    for at in np.unique(place[place >= 0]):
-        found[place == at] = np.interp(samples, case.time_s, ratio[at])
-    return found
 
 
 def _holds_s(case: FaultCase, place: IntArray, share: FloatArray) -> FloatArray:

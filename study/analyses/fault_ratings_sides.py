@@ -25,12 +25,14 @@ _BY_CURVE = (STAGES.index("fuse melting"), STAGES.index("maker's curve"))
 class PlantDevices:
     """What of the devices does not change from mode to mode, [device].
 
-    ``branch`` is the branch on which each stands ("" on a board, or on equipment without a cable).
+    ``branch`` is the branch on which each stands ("" on a board, or on equipment without a cable), ``source``
+    the source whose own device it is ("" for all else).
     """
 
     releases: tuple[Release, ...]
     sheets: tuple[LetThrough | None, ...]
     branch: tuple[str, ...]
+    source: tuple[str, ...]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -86,6 +88,29 @@ def branch_of_devices(plant: Plant) -> tuple[str, ...]:
     return tuple(
         d.equipment if d.equipment in branches else cable_to.get(d.equipment, "") for d in plant.devices
     )
+
+
+def source_of_devices(plant: Plant) -> tuple[str, ...]:
+    """Return the source whose own device each is: it stands on the source or on the cable from it.
+
+    Parameters
+    ----------
+    plant : Plant
+        The plant.
+
+    Returns
+    -------
+    tuple of str
+        "" for the other devices.
+    """
+    sources = {g.name for g in plant.gensets} | {s.name for s in plant.shore_supplies}
+    sources |= {c.name for c in plant.converter_supplies} | {m.name for m in plant.synchronous_motors}
+    fed = {name: name for name in sources}
+    for cable in plant.cables:
+        for end in (cable.from_end, cable.to_end):
+            if end in sources:
+                fed[cable.name] = end
+    return tuple(fed.get(d.equipment, "") for d in plant.devices)
 
 
 def sides_of(plant: Plant, devices: PlantDevices, mode: ModeShortCircuit, f_hz: float) -> Sides:

@@ -23,8 +23,8 @@ CONVENTIONAL_S: Final = ((63.0, 3600.0), (160.0, 7200.0), (400.0, 10800.0), (125
 def latest_melting_points(rated_a: float, fuse_class: str) -> tuple[tuple[float, float], ...]:
     """Return currents and the times within which a fuse-link has melted, longest time first.
 
-    Source: IEC 60269-1, conventional fusing current and gates of gG fuse-links; IEC 60269-2, gates of aM; both
-    from memory. The last point of gG comes from the greatest I2t, its time being 0.01 s.
+    Source: IEC 60269-1, conventional fusing current and gates of gG fuse-links; IEC 60269-2, gates of aM;
+    both from memory. The last point of gG comes from the greatest I2t, its time being 0.01 s.
 
     Parameters
     ----------

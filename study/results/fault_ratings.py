@@ -108,12 +108,14 @@ class DeviceRatings:
 class ClearingRatings:
     """Devices against the least fault at the far end of what they protect.
 
-    [device, mode]: ``by`` is the device that clears, by its place in the workbook's order: itself, one nearer
-    to the sources where it does not, -1 (``clears`` False) where nothing clears while the current is kept up.
-    ``least_a`` is the current through that device when its stage is due, ``pick_up_a`` this stage's pick-up at
-    the far end of its tolerance, ``stage`` which it is (numbers ``stages``), ``clearing_s`` the time, inf for
-    never; where nothing clears, all are those of the stage that should. ``first_a`` is the least current at the
-    start of the fault: it shows one that collapses. ``judged`` False: dead, or nothing known.
+    [device, mode]: ``by`` is the device that clears, by its place in the workbook's order: itself, or one
+    nearer to the sources where it does not; -2 where only sources feed the fault that block by themselves,
+    and -1 (``clears`` False) where nothing clears while the current is kept up. ``least_a`` is the current
+    through that device when its stage is due, ``pick_up_a`` this stage's pick-up at the far end of its
+    tolerance, ``stage`` which it is (numbers ``stages``), ``clearing_s`` the time, inf for never; where no
+    device clears, all are those of the stage that should, and ``due_s`` is when it would if the sources kept
+    the current up for longer than ``holds_s``. ``first_a`` is the least current at the start of
+    the fault: it shows one that collapses. ``judged`` False: dead, or nothing known.
     """
 
     names: tuple[str, ...]
@@ -126,6 +128,8 @@ class ClearingRatings:
     clears: BoolArray
     by: IntArray
     clearing_s: FloatArray
+    due_s: FloatArray
+    holds_s: FloatArray
     kinds: tuple[tuple[str, ...], ...]
 
 
