@@ -68,7 +68,10 @@ def limits_in_force(acceptance: Iterable[AcceptanceItem]) -> Limits:
 def _merge(spec: LimitSpec, item: AcceptanceItem | None) -> LimitUsed:
     limit = spec.limit if item is None else _in_unit_of(spec, item)
     changed = item is not None and limit != spec.limit
-    basis = item.basis if item is not None and changed and item.basis else spec.basis
+    basis = spec.basis
+    if item is not None and changed:
+        built_in = f"{spec.limit:g}" if isinstance(spec.limit, float) else spec.limit
+        basis = item.basis or f"no basis is given; built in is {built_in} {spec.unit}".rstrip()
     return LimitUsed(
         key=spec.key,
         quantity=spec.quantity,

@@ -73,3 +73,13 @@ def test_per_unit_is_taken_as_per_cent() -> None:
 def test_a_choice_keeps_the_sheet_s_own_words() -> None:
     limits = limits_in_force([an_item("Voltage reference", "Nominal of BOARD", unit="")])
     assert limits.text("voltage_reference") == "nominal of board"
+
+
+def test_a_changed_limit_does_not_borrow_the_rule_s_name() -> None:
+    """A rule that says 15 % is no basis for an agreed 20 %."""
+    limits = limits_in_force([an_item("kW sharing, of largest set", 20.0)])
+    assert (
+        limits.basis("kw_sharing_largest") == "agreed for this project: no basis is given; built in is 15 %"
+    )
+    limits = limits_in_force([an_item("Voltage reference", "nominal of board", unit="")])
+    assert limits.basis("voltage_reference").endswith("built in is rated voltage of consumer")
