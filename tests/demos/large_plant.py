@@ -34,7 +34,7 @@ def _boards(book: Book) -> None:
         )
         book.sheets["Boards"][-1] |= {
             "Earthing resistor [ohm]": 760,
-            "Resistor rating [A]": 5,
+            "Resistor rating [A]": 6,
             "Resistor time [s]": 10,
         }
     for side, (group, n) in (("P", ("Port", 1)), ("S", ("Starboard", 2))):

@@ -196,7 +196,12 @@ class Book:
             self.device(name, equipment, board, "circuit breaker", amps, **ratings | release)
             return
         self.device(
-            name, equipment, board, "circuit breaker", max(630, amps), **ratings | {"icw": breaking_ka}
+            name,
+            equipment,
+            board,
+            "circuit breaker",
+            max(630, amps),
+            **ratings | {"icw": breaking_ka, "icw_s": 1},
         )
         self._relay(f"R{name[1:]}", equipment, board, amps, settings)
 
