@@ -31,9 +31,10 @@ def earth_fault_rows(plant: Plant, result: ShortCircuitResult) -> tuple[EarthFau
         Modes in order, systems within.
     """
     rows = []
+    set_for_it = _set_for_earth_faults(plant)
     for mode in result.modes:
         for system in mode.earth:
-            trips = _tripping(plant, result, mode, system)
+            trips = _tripping(result, mode, system, set_for_it)
             pick_ups = [
                 (plant.devices[k].earth_fault_a or 0.0) * (1.0 + plant.devices[k].current_tolerance)
                 for k in trips
@@ -56,12 +57,16 @@ def earth_fault_rows(plant: Plant, result: ShortCircuitResult) -> tuple[EarthFau
     return tuple(rows)
 
 
+def _set_for_earth_faults(plant: Plant) -> list[int]:
+    """Return the devices with an earth-fault setting."""
+    return [k for k, device in enumerate(plant.devices) if device.earth_fault_a is not None]
+
+
 def _tripping(
-    plant: Plant, result: ShortCircuitResult, mode: ModeShortCircuit, system: EarthSystem
+    result: ShortCircuitResult, mode: ModeShortCircuit, system: EarthSystem, set_for_it: list[int]
 ) -> list[int]:
-    """Return the devices with an earth-fault setting that stand in a system."""
+    """Return those of the devices that stand in a system."""
     place = mode.devices.place
-    set_for_it = [k for k, device in enumerate(plant.devices) if device.earth_fault_a is not None]
     return [k for k in set_for_it if place[k] >= 0 and result.places.boards[place[k]] in system.boards]
 
 
@@ -103,9 +108,10 @@ def _lasts_s(
 ) -> FloatArray:
     """Return the longest earth-fault delay in each board's system; inf: nothing trips, NaN: dead."""
     found = np.full(len(boards), np.nan)
+    set_for_it = _set_for_earth_faults(plant)
     for system in mode.earth:
         delays = []
-        for k in _tripping(plant, result, mode, system):
+        for k in _tripping(result, mode, system, set_for_it):
             device = plant.devices[k]
             if device.earth_fault_delay_s is not None:
                 more = 1.0 + device.time_tolerance

@@ -13,8 +13,8 @@ FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
 BoolArray = NDArray[np.bool_]
 
-# Steps of a quarter follow decays of a few milliseconds to 1e-4 of the heat; past 10 s hardly any is left.
-_FIRST_S, _FINE_TO_S, _FINE, _LAST_S, _COARSE = 0.0005, 10.0, 1.25, 7200.0, 1.6
+# Steps of a third follow decays of a few milliseconds to 1e-4 of the heat; past 10 s hardly any is left.
+_FIRST_S, _FINE_TO_S, _FINE, _LAST_S, _COARSE = 0.0005, 10.0, 1.35, 7200.0, 2.0
 _SIMPSON = np.array([1.0, 4.0, 1.0]) / 6.0
 
 
