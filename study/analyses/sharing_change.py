@@ -10,9 +10,8 @@ from typing import Final
 from study.model.modes import Event, Mode, SetPoint
 from study.model.plant import Plant
 from study.model.sources import ConverterSupply, Genset
-from study.network.network import ModeNetwork
-from study.network.refusals import refusal
-from study.network.sources import Law, Source, Speed, sources_of
+from study.network.network import ModeNetwork, mode_network
+from study.network.sources import Law, Source, Speed
 
 # unit word of an event -> the setting
 SETTINGS: Final[Mapping[str | None, str]] = MappingProxyType(
@@ -59,17 +58,7 @@ def changed_network(at: ModeNetwork, events: Sequence[Event]) -> ModeNetwork:
     plant = network.plant
     for event in events:
         plant, mode = _with_setting(plant, mode, event)
-    sources = sources_of(plant, mode, network.topology, at.view)
-    return replace(
-        at,
-        network=replace(network, plant=plant),
-        mode=mode,
-        sources=sources,
-        refusals=tuple(
-            island.refusal or refusal([s for s in sources if s.island == n])
-            for n, island in enumerate(at.view.islands)
-        ),
-    )
+    return mode_network(replace(network, plant=plant), mode)
 
 
 def _with_setting(plant: Plant, mode: Mode, event: Event) -> tuple[Plant, Mode]:
