@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from study.report.charts_balance import load_by_service, set_loading
+from study.report.charts_fault_ratings import fault_rating_figures
 from study.report.charts_sharing import case_figures, sharing_figures
 from study.report.charts_short_circuit import short_circuit_figures
 from study.report.charts_voltage import board_voltages, regulation_figures, voltages_by_board
@@ -22,6 +23,7 @@ class Figures:
     cases: tuple[Drawing, ...]
     regulation: tuple[Drawing, ...]
     short_circuit: tuple[Drawing, ...]
+    fault_ratings: tuple[Drawing, ...]
 
     @property
     def every(self) -> tuple[Drawing, ...]:
@@ -33,6 +35,7 @@ class Figures:
             *self.cases,
             *self.regulation,
             *self.short_circuit,
+            *self.fault_ratings,
         )
 
 
@@ -57,6 +60,7 @@ def draw_figures(outcome: StudyOutcome) -> Figures:
             cases=case_figures(outcome),
             regulation=regulation_figures(outcome),
             short_circuit=short_circuit_figures(outcome),
+            fault_ratings=fault_rating_figures(outcome),
         )
 
 

@@ -1,4 +1,4 @@
-"""Figures of the short-circuit study: current against time at the leading boards, peaks over the modes."""
+"""Figures of the short-circuit study: current against time at the leading boards, by component and source."""
 
 from __future__ import annotations
 
@@ -9,7 +9,6 @@ import numpy as np
 
 from study.report.content import StudyOutcome
 from study.report.fault_view import (
-    board_places,
     curves,
     governing_mode,
     instant,
@@ -22,8 +21,6 @@ from study.report.fault_view import (
 from study.report.findings import listed
 from study.report.numbers import quantity
 from study.report.plotting import (
-    SMALL,
-    TALLEST_IN,
     Drawing,
     canvas,
     colour,
@@ -32,7 +29,7 @@ from study.report.plotting import (
     legend_rows,
 )
 from study.report.plotting import place as frame
-from study.report.style import ACCENT, INK, QUIET, RULE
+from study.report.style import ACCENT, INK, QUIET
 from study.results.arrays import FloatArray
 from study.results.short_circuit import FaultCase, ModeShortCircuit, ShortCircuitResult
 
@@ -40,18 +37,17 @@ _SHORT_S: Final = np.concatenate([np.arange(0.0, 0.02, 0.0005), np.arange(0.02, 
 _LONG_S: Final = np.geomspace(0.001, 10.0, 61)
 _MOST_SOURCES: Final = 7
 _COMPONENTS: Final = (
-    "envelope √2 Iac + idc",
-    "a.c. component √2 Iac",
-    "d.c. component idc",
-    "ip at half a cycle",
+    "envelope of both",
+    "a.c., √2 Iac",
+    "d.c., idc",
+    "ip at half cycle",
     "greatest peak",
 )
 _MOST_FIGURES: Final = 12
-_MOST_BOARDS: Final = 60
 
 
 def short_circuit_figures(outcome: StudyOutcome) -> tuple[Drawing, ...]:
-    """Draw current against time at the leading boards, and the peak of every board over the modes.
+    """Draw current against time at the main, emergency and propulsion boards.
 
     Parameters
     ----------
@@ -67,9 +63,7 @@ def short_circuit_figures(outcome: StudyOutcome) -> tuple[Drawing, ...]:
     if result is None or not solved_modes(result):
         return ()
     groups = one_busbar(result, leading_boards(outcome, result))[:_MOST_FIGURES]
-    drawn = [_board(result, group, i) for i, group in enumerate(groups)]
-    peaks = _peaks(outcome, result)
-    return tuple(drawn if peaks is None else [*drawn, peaks])
+    return tuple(_board(result, group, i) for i, group in enumerate(groups))
 
 
 def _board(result: ShortCircuitResult, group: Sequence[int], number: int) -> Drawing:
@@ -128,7 +122,7 @@ def _leading_sources(case: FaultCase, place: int) -> list[tuple[str, Sequence[in
     ranked = [int(s) for s in np.argsort(-given, kind="stable") if given[s] > 0.0]
     many = len(ranked) > _MOST_SOURCES + 1
     first = ranked[:_MOST_SOURCES] if many else ranked
-    shown: list[tuple[str, Sequence[int]]] = [(_clipped(case.sources.names[s], 34), [s]) for s in first]
+    shown: list[tuple[str, Sequence[int]]] = [(clipped(case.sources.names[s], 34), [s]) for s in first]
     if many:
         shown.append((f"{len(ranked) - _MOST_SOURCES} others", ranked[_MOST_SOURCES:]))
     return shown
@@ -185,76 +179,12 @@ def _contributions(
 
 def _least(axes: Any, case: FaultCase, place: int) -> list[Any]:
     later = case.time_s >= _LONG_S[0]
-    return list(
-        axes.plot(
-            case.time_s[later],
-            case.least_a[place, later] / 1000.0,
-            color=INK,
-            linestyle=(0, (4, 2)),
-            linewidth=1.1,
-        )
-    )
+    times, values = case.time_s[later], case.least_a[place, later] / 1000.0
+    # A light line under the dashes, so that they stand out from every colour.
+    axes.plot(times, values, color="white", linewidth=2.6, alpha=0.75)
+    return list(axes.plot(times, values, color=INK, linestyle=(0, (4, 2)), linewidth=1.1))
 
 
-def _peaks(outcome: StudyOutcome, result: ShortCircuitResult) -> Drawing | None:
-    """Draw the range of every board's peak over the modes against its rated peak withstand current."""
-    found = {p: _peaks_of(result, p) for p in board_places(result)}
-    rated = {b.name: b.peak_withstand_ka for b in outcome.plant.boards}
-    live = [p for p in found if found[p]]
-    if not live:
-        return None
-    names = result.places.names
-    shown = sorted(live, key=lambda p: _distance(max(found[p]), rated.get(names[p])), reverse=True)
-    shown = shown[:_MOST_BOARDS]
-    step = min(0.2, (TALLEST_IN - 1.0) / len(shown))
-    height = 0.95 + max(0.8, step * len(shown))
-    left = min(2.9, 0.3 + 0.06 * max(len(_clipped(names[p], 42)) for p in shown))
-    figure = canvas(height)
-    axes = figure.add_axes(frame(figure, left=left, right=0.2, bottom=0.7, top=0.12))
-    handles: dict[str, Any] = {}
-    for y, p in enumerate(shown):
-        axes.hlines(y, min(found[p]), max(found[p]), color=ACCENT, linewidth=1.2)
-        (handles["ip, one dot for each mode"],) = axes.plot(
-            found[p], [y] * len(found[p]), "o", color=ACCENT, markersize=3.4, markeredgewidth=0
-        )
-        limit = rated.get(names[p])
-        if limit is not None:
-            (handles["rated peak withstand current"],) = axes.plot(
-                [limit], [y], "|", color=colour(1), markersize=9, markeredgewidth=2.2
-            )
-    axes.set_yticks(range(len(shown)), [_clipped(names[p], 42) for p in shown], fontsize=SMALL)
-    axes.set_ylim(len(shown) - 0.4, -0.6)
-    axes.set_xlim(left=0.0)
-    axes.set_xlabel("Peak current ip [kA]")
-    axes.axvline(0.0, color=RULE, linewidth=0.6)
-    legend_below(figure, list(handles.values()), list(handles))
-    unrated = sum(rated.get(names[p]) is None for p in live)
-    rest = len(live) - len(shown)
-    more = f" The {rest} others are in the tables." if rest else ""
-    worst = shown[0]
-    return drawing(
-        figure,
-        key="fig-fault-peaks",
-        title="Peak of each board over the modes against its rating",
-        caption="Maximum case. The board nearest to its rating, or farthest beyond it, first; boards "
-        f"without a rating last ({unrated}).{more}",
-        description=f"{len(shown)} boards. First {names[worst]}, {quantity(max(found[worst]), 'kA')} at most"
-        f"{_rated_words(rated.get(names[worst]))}.",
-    )
-
-
-def _rated_words(limit: float | None) -> str:
-    return ", no rating given" if limit is None else f", rated {quantity(limit, 'kA')}"
-
-
-def _distance(peak_ka: float, limit: float | None) -> tuple[bool, float]:
-    return (False, peak_ka) if limit is None else (True, peak_ka / limit)
-
-
-def _peaks_of(result: ShortCircuitResult, place: int) -> list[float]:
-    modes = solved_modes(result)
-    return [ka(m.maximum.ip_a[place]) for m in modes if m.maximum.live[place]]
-
-
-def _clipped(name: str, most: int) -> str:
+def clipped(name: str, most: int) -> str:
+    """Return a name, cut where it is too long for a figure."""
     return name if len(name) <= most else name[: most - 1] + "…"

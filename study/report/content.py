@@ -10,6 +10,7 @@ from study.checks.limits import LimitUsed
 from study.checks.verdict import STATUS_ORDER, Status, Verdict
 from study.model.plant import Plant
 from study.results.balance import BalanceResult
+from study.results.fault_ratings import FaultRatingsResult
 from study.results.load_flow import LoadFlowResult
 from study.results.regulation import RegulationResult
 from study.results.sharing import SharingResult
@@ -26,7 +27,8 @@ class StudyOutcome:
     """Everything that one run found.
 
     ``methods`` holds one sentence for each method, with its standard, clause and range of use; a verdict
-    with an empty mode is about the vessel itself. ``short_circuit`` is None in a study without it.
+    with an empty mode is about the vessel itself. ``short_circuit`` and ``fault_ratings``
+    are None in a study without them.
     """
 
     plant: Plant
@@ -39,6 +41,7 @@ class StudyOutcome:
     methods: tuple[str, ...]
     tool_version: str
     short_circuit: ShortCircuitResult | None = None
+    fault_ratings: FaultRatingsResult | None = None
 
     @property
     def modes(self) -> tuple[str, ...]:

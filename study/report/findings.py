@@ -133,6 +133,14 @@ def is_plain_fact(v: Verdict) -> bool:
     return v.unit == "-" and v.limit == 0.0
 
 
+NEVER_CLEARED = "never cleared"
+
+
+def is_fault(v: Verdict) -> bool:
+    """Return whether a verdict is about a fault, where a value without end is a fault that stays."""
+    return v.subject == "fault ratings"
+
+
 def statement(v: Verdict) -> str:
     """Return a verdict as a sentence without its equipment.
 
@@ -152,7 +160,7 @@ def statement(v: Verdict) -> str:
     if is_plain_fact(v):
         return f"{name}."
     if math.isinf(v.value):
-        return f"{name}: no source is left to carry it."
+        return f"{name}: {NEVER_CLEARED if is_fault(v) else 'no source is left to carry it'}."
     value, limit = judged_pair(v.value, v.limit, exceeds=v.status == "exceeds")
     unit = f" {v.unit}" if v.unit not in ("", "-") else ""
     needed = "allowed" if v.sense == "at most" else "required"

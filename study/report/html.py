@@ -44,6 +44,7 @@ _NOT_ON_THE_PAGE = (
 _ON_SHEET_ONLY: Final[dict[str, tuple[str, ...]]] = {
     "load_balance": ("board", "input_cell"),
     "short_circuit_boards": ("ik_nominal_ka", "ip_nominal_ka"),
+    "short_circuit_general": ("ik_2ph_library_ka",),
     "short_circuit_places": ("idc_half_ka", "input_cell"),
 }
 """Columns that the page leaves to the result sheets."""

@@ -1,4 +1,4 @@
-"""Tables of IEC 60909 beside IEC 61363-1, its comparison with the library, and earth faults."""
+"""Tables of IEC 60909 beside IEC 61363-1, and its comparison with the library."""
 
 from __future__ import annotations
 
@@ -8,7 +8,7 @@ from collections.abc import Iterable
 import numpy as np
 
 from study.report.content import StudyOutcome
-from study.report.fault_view import SHEET, CaseView, cases, ka, ka_column, mode_words, ranked_boards
+from study.report.fault_view import SHEET, CaseView, cases, ka, ka_column, ranked_boards
 from study.report.numbers import figure, percent, quantity
 from study.report.tables import (
     Column,
@@ -20,10 +20,9 @@ from study.report.tables import (
     percent_column,
     text_column,
 )
-from study.results.short_circuit import EarthSystem, ShortCircuitResult
+from study.results.short_circuit import ShortCircuitResult
 
 _SHOWN = 8
-_EARTH_SHOWN = 20
 _SQRT2 = math.sqrt(2.0)
 
 
@@ -158,94 +157,3 @@ def agreement_table(result: ShortCircuitResult) -> Table:
             for view in cases(result)
         ],
     )
-
-
-def earth_table(outcome: StudyOutcome, result: ShortCircuitResult) -> Table:
-    """Return the earth-fault current of every system with one neutral, equal rows of modes drawn together."""
-    columns = [
-        text_column("boards", "Boards of the system", kind="long text"),
-        text_column("modes", "Modes"),
-        Column(key="u_nominal_v", heading="Nominal", unit="V", most_decimals=0),
-        text_column("earthing", "Neutral"),
-        Column(key="capacitance_uf", heading="Capacitance of a phase", unit="µF", most_decimals=3, digits=3),
-        text_column("capacitance_data", "Capacitance is"),
-        Column(key="capacitive_a", heading="Capacitive current", unit="A", most_decimals=3, digits=3),
-        Column(
-            key="resistor_a", heading="Resistor current", unit="A", most_decimals=2, digits=3, missing="none"
-        ),
-        Column(
-            key="fault_a",
-            heading="Earth-fault current",
-            unit="A",
-            most_decimals=3,
-            digits=3,
-            missing="see I''k1",
-        ),
-        Column(
-            key="largest_resistor_ohm",
-            heading="Largest damping resistor",
-            unit="Ω",
-            most_decimals=1,
-            missing="none",
-        ),
-        Column(key="resistor_power_kw", heading="Heat of the resistor", unit="kW", most_decimals=2,
-               missing="none"),
-    ]  # fmt: skip
-    found: dict[tuple[Value, ...], list[str]] = {}
-    for mode in result.modes:
-        for system in mode.earth:
-            found.setdefault(_earth_row(system), []).append(mode.mode)
-    rows = [
-        (row[0], mode_words(modes, outcome.modes), *(math.nan if v is None else v for v in row[1:]))
-        for row, modes in found.items()
-    ]
-    return make_table(
-        key="earth_faults",
-        title="Earth faults",
-        sheet=SHEET,
-        columns=columns,
-        rows=rows,
-        notes=(
-            "Boards joined without a transformer have one neutral. In an insulated system an earth fault "
-            "draws the capacitive current of all that is energised; a resistor no larger than that shown "
-            "keeps an arcing fault from raising the voltage. A typical capacitance is to be replaced by the "
-            "maker's before an earth-fault setting is chosen.",
-        ),
-        worked=_worked_earth(result),
-        group_by=("earthing",),
-        shown_per_group=_EARTH_SHOWN,
-    )
-
-
-def _earth_row(system: EarthSystem) -> tuple[Value, ...]:
-    values = (
-        system.capacitive_a,
-        system.resistor_a,
-        system.fault_a,
-        system.largest_resistor_ohm,
-        system.resistor_power_w / 1000.0,
-    )
-    return (
-        ", ".join(system.boards),
-        system.u_nominal_v,
-        system.earthing,
-        1e6 * system.capacitance_f,
-        "by data" if system.capacitance_given else "typical",
-        # NaN is not equal to itself, so that rows with it would never be drawn together.
-        *(None if math.isnan(v) else v for v in values),
-    )
-
-
-def _worked_earth(result: ShortCircuitResult) -> Worked | None:
-    for mode in result.modes:
-        for system in mode.earth:
-            if math.isfinite(system.capacitive_a) and system.capacitive_a > 0:
-                c, u = figure(system.capacitance_f * 1e6, ""), figure(system.u_nominal_v, "V")
-                line = WorkedLine(
-                    label="Capacitive current",
-                    formula="√3 · 2π · f · C · U",
-                    figures=f"√3 × 2 × π × {figure(result.f_hz, '')} × {c} / 1000000 × {u}",
-                    result=quantity(system.capacitive_a, "A"),
-                )
-                return Worked(row=f"{', '.join(system.boards)}, {mode.mode}", lines=(line,))
-    return None

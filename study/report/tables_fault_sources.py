@@ -63,7 +63,7 @@ def sources_table(outcome: StudyOutcome, result: ShortCircuitResult) -> Table:
     ]
     found: dict[tuple[Value, ...], list[str]] = {}
     for view in cases(result):
-        for s in range(len(view.ship.sources.names)):
+        for s in _standing(view.ship.sources):
             found.setdefault(_source_row(view, s), []).append(view.mode)
     ranked = sorted(found.items(), key=lambda item: (item[0][0] != "maximum", _kind_rank(item[0][2])))
     rows = [(*row[:4], mode_words(modes, outcome.modes), *row[4:]) for row, modes in ranked]
@@ -81,6 +81,11 @@ def sources_table(outcome: StudyOutcome, result: ShortCircuitResult) -> Table:
         group_by=("case",),
         shown_per_group=_SOURCES_SHOWN,
     )
+
+
+def _standing(at: FaultSources) -> list[int]:
+    """Return the sources that stand somewhere, without what others take over from motors."""
+    return [s for s in range(len(at.names)) if at.rated_a[s] > 0.0 or at.initial_a[s] > 0.0]
 
 
 def _kind_rank(kind: Value) -> int:
@@ -164,7 +169,10 @@ def contributions_table(outcome: StudyOutcome, result: ShortCircuitResult) -> Ta
         sheet=SHEET,
         columns=columns,
         rows=rows,
-        notes=("They add up to the current of the board; the greatest first.",),
+        notes=(
+            "They add up to the current of the board; the greatest first. Where motors share a feeder with "
+            "other sources, these give more as the motors die away: that is shown as taken over from motors.",
+        ),
         worked=_worked_contribution(result, leading),
         group_by=("mode", "case", "board"),
         shown_per_group=_PARTS_SHOWN,
@@ -177,7 +185,7 @@ def _contributions(
     case = view.ship
     total = float(case.ip_a[place])
     for s in np.argsort(-case.source_ip_a[place], kind="stable").tolist():
-        if case.source_initial_a[place, s] <= 0.0:
+        if case.source_ip_a[place, s] <= 0.0:
             continue
         yield (
             view.mode,

@@ -8,7 +8,8 @@ from study.report.methods_short_circuit import SHORT_CIRCUIT_BASIS
 from study.report.tables import Table, make_table, text_column
 from study.report.tables_fault_boards import boards_table, by_mode_table, governing_table
 from study.report.tables_fault_branches import branches_table, decay_table, quick_table
-from study.report.tables_fault_general import earth_table, general_tables
+from study.report.tables_fault_earth import earth_table
+from study.report.tables_fault_general import general_tables
 from study.report.tables_fault_places import places_table
 from study.report.tables_fault_sources import contributions_table, sources_table
 from study.results.short_circuit import ShortCircuitResult

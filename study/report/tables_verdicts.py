@@ -9,7 +9,7 @@ from typing import Final
 
 from study.checks.verdict import STATUS_ORDER, Status, Verdict, worst
 from study.report.content import StudyOutcome
-from study.report.findings import findings, is_plain_fact, remarks
+from study.report.findings import NEVER_CLEARED, findings, is_fault, is_plain_fact, remarks
 from study.report.numbers import judged_pair, percent, quantity
 from study.report.tables import (
     Column,
@@ -174,7 +174,7 @@ def figure_text(v: Verdict) -> str:
     if is_plain_fact(v):
         return v.quantity if v.status == "exceeds" else "none"
     if math.isinf(v.value):
-        return "no source left"
+        return NEVER_CLEARED if is_fault(v) else "no source left"
     if v.status == "exceeds":
         value, limit = judged_pair(v.value, v.limit, exceeds=True)
     else:
@@ -188,7 +188,7 @@ def _decimals(v: Verdict) -> int | None:
     return 1 if math.isfinite(v.value) and 10 <= abs(v.value) < 1000 else None
 
 
-_JUDGED = (
+JUDGED_COLUMNS = (
     Column(key="value", heading="Value", kind="judged", infinite="no source left"),
     Column(key="limit", heading="Limit", kind="judged"),
     text_column("unit", "Unit"),
@@ -196,14 +196,17 @@ _JUDGED = (
     percent_column("margin_percent", "Margin", against=0.0),
     verdict_column(),
 )
+"""Columns of a judged quantity, for tables of verdicts."""
 
 
-def _judged_values(v: Verdict) -> tuple[Value, ...]:
+def judged_values(v: Verdict) -> tuple[Value, ...]:
+    """Return the cells of `JUDGED_COLUMNS` of one verdict."""
     factor, unit = (100.0, "%") if v.unit == "pu" else (1.0, v.unit)
     if is_plain_fact(v):
         return None, None, None, v.sense, None, v.status
     margin = percent(v.margin) if v.limit != 0.0 and not math.isinf(v.margin) else None
-    return factor * v.value, factor * v.limit, unit, v.sense, margin, v.status
+    value = NEVER_CLEARED if math.isinf(v.value) and is_fault(v) else factor * v.value
+    return value, factor * v.limit, unit, v.sense, margin, v.status
 
 
 def verdicts_table(outcome: StudyOutcome) -> Table:
@@ -213,7 +216,7 @@ def verdicts_table(outcome: StudyOutcome) -> Table:
         text_column("mode", "Mode"),
         text_column("equipment", "Equipment"),
         text_column("quantity", "Quantity", kind="long text"),
-        *_JUDGED,
+        *JUDGED_COLUMNS,
         Column(key="depends_on_data", heading="Depends on data", kind="text"),
         text_column("basis", "Basis", kind="long text"),
         cell_column(),
@@ -224,7 +227,7 @@ def verdicts_table(outcome: StudyOutcome) -> Table:
             mode or VESSEL,
             v.equipment,
             v.quantity,
-            *_judged_values(v),
+            *judged_values(v),
             v.depends_on_data,
             v.basis,
             v.cell,
@@ -254,7 +257,7 @@ def governing_table(outcome: StudyOutcome) -> Table:
         text_column("mode", "Mode"),
         text_column("equipment", "Equipment"),
         text_column("quantity", "Quantity", kind="long text"),
-        *_JUDGED,
+        *JUDGED_COLUMNS,
         Column(key="judged_count", heading="Judged", kind="count"),
         Column(key="exceeding_count", heading="Exceeding", kind="count"),
         Column(key="not_assessed_count", heading="Not assessed", kind="count"),
@@ -270,7 +273,7 @@ def governing_table(outcome: StudyOutcome) -> Table:
                 mode or VESSEL,
                 v.equipment,
                 v.quantity,
-                *_judged_values(v),
+                *judged_values(v),
                 len(found),
                 sum(x.status == "exceeds" for x in found),
                 sum(x.status == "not assessed" for x in found),
