@@ -123,7 +123,8 @@ def solve_mode(static: FaultPlant, mode: Mode, options: ShortCircuitOptions) -> 
     SolvedMode
         Before the comparison with pandapower.
     """
-    high, low = fault_network(static, mode, MAXIMUM), fault_network(static, mode, MINIMUM)
+    high = fault_network(static, mode, MAXIMUM)
+    low = fault_network(static, mode, MINIMUM, None if mode.changeover_sets else high.view)
     if options.one_set:
         low = fault_network(static, _one_set(mode, low), MINIMUM)
     return SolvedMode(

@@ -166,7 +166,9 @@ def case_mode(mode: Mode, plant: Plant, options: CaseOptions) -> Mode:
     return replace(mode, states={**mode.states, **on})  # type: ignore[dict-item]
 
 
-def fault_network(static: FaultPlant, mode: Mode, options: CaseOptions) -> FaultNetwork:
+def fault_network(
+    static: FaultPlant, mode: Mode, options: CaseOptions, view: View | None = None
+) -> FaultNetwork:
     """Return the network of one mode and case.
 
     Parameters
@@ -177,6 +179,8 @@ def fault_network(static: FaultPlant, mode: Mode, options: CaseOptions) -> Fault
         As the workbook has it.
     options : CaseOptions
         The case.
+    view : View, optional
+        What is energised in the case, where it is known already.
 
     Returns
     -------
@@ -186,7 +190,7 @@ def fault_network(static: FaultPlant, mode: Mode, options: CaseOptions) -> Fault
     network = static.network
     topology, plant = network.topology, network.plant
     mode = case_mode(mode, plant, options)
-    view = view_of(plant, mode, topology)
+    view = view or view_of(plant, mode, topology)
     island = np.array(view.island, np.int64)
     closed = np.array(
         [

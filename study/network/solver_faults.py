@@ -1,6 +1,6 @@
 """The fault network as a pandapower network, and its IEC 60909 currents beside ours.
 
-Every set, motor and supply has a bus of its own, behind its real cable or 1 nanoohm; boards joined by ties
+Every set, motor and supply has a bus of its own, behind its real cable or 10 nanoohm; boards joined by ties
 without impedance are one bus. Converter supplies are left out: the comparison is of the impedances.
 """
 
@@ -29,7 +29,7 @@ IntArray = NDArray[np.int64]
 _TABLES = ("bus", "impedance", "trafo", "trafo3w", "gen", "ext_grid", "motor")
 _PAIRS = (("primary", "secondary"), ("primary", "tertiary"), ("secondary", "tertiary"))
 _THREE_WINDING_C = 1.1
-LINK_OHM = 1e-9  # between a source without a cable and its board
+LINK_OHM = 1e-8  # between a source without a cable and its board
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -86,6 +86,34 @@ def library_currents(
         return tuple(_currents(grid) for grid in grids)
     finally:
         log.setLevel(level)
+
+
+def library_network(net: FaultNetwork, lv_tolerance_percent: LvTolerance, *, all_places: bool) -> Any:
+    """Return a case as a pandapower network, ready for `calc_sc`, generators with their real resistance.
+
+    Parameters
+    ----------
+    net : FaultNetwork
+        The network of the ship method.
+    lv_tolerance_percent : {6, 10}
+        Chooses the voltage factors.
+    all_places : bool
+        Also with the terminals of consumers without a motor.
+
+    Returns
+    -------
+    pandapowerNet
+        Its buses are named by number.
+    """
+    import pandapower
+
+    network = net.plant.network
+    blank = pandapower.create_empty_network(
+        f_hz=network.plant.project.f_rated_hz, sn_mva=network.s_base_kva / 1000.0
+    )
+    grid = _Grid(blank, {}, net, all_places=all_places, tolerance=lv_tolerance_percent)
+    grid.set_resistance(fictitious=False)
+    return grid.net
 
 
 def _currents(grid: _Grid) -> LibraryCurrents:

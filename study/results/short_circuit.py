@@ -34,8 +34,10 @@ class Places:
 class FaultSources:
     """What feeds a fault in one case of one mode, tuples and arrays [source].
 
-    ``kinds`` is genset, shore supply, converter supply, synchronous motor, motor, or small motors (the
-    motors up to 100 kW of one board as one). ``boards`` is where it stands. ``rated_a`` is its rated current
+    ``kinds`` is genset, shore supply, converter supply, synchronous motor, motor, regenerating drive, small
+    motors (the motors up to 100 kW of one board as one), or taken over from motors: a last row, in cases with
+    motors, for what the lasting sources give more behind a common impedance as motors die away; it is nothing
+    at t = 0. ``boards`` is where it stands. ``rated_a`` is its rated current
     at its own voltage, ``initial_a``, ``peak_a`` and ``sustained_a`` what it gives into a fault at its own
     terminals. ``holds`` says in words what it keeps up and why; ``holds_s`` for how long (inf: no end is
     known; 0: nothing is kept). ``sustained_known`` is False where the workbook gives no sustained current
@@ -110,7 +112,7 @@ class FaultCase:
     Iac(T/2) + idc(T/2); ``peak_a`` the greatest instantaneous current over all times and angles;
     ``ik_initial_nominal_a`` and ``ip_nominal_a`` without the tolerance of the reactances; ``r_over_x`` and
     ``cos_phi`` of the fault from its direct time constant at T/2; ``sustained_reach_a`` the low and
-    ``sustained_duty_a`` the high estimate of the sustained current; ``parallel_paths`` True where a source
+    ``sustained_duty_a`` the high estimate of the sustained current, for as long as each source holds it; ``parallel_paths`` True where a source
     reaches the place by parallel paths: outside the scope of IEC 61363-1, solved by nodal reduction.
     ``equivalent_half_a`` and ``equivalent_ip_a`` come from the standard's equivalent generator behind an
     impedance (NaN on boards that sources feed directly, where contributions are added one by one).

@@ -201,7 +201,7 @@ def test_reach_never_exceeds_duty():
 
 
 def test_two_phase_is_less_at_once_and_more_when_sustained():
-    """With X2 = X''d the initial two-phase current is sqrt3/2 of the three-phase one: symmetrical components."""
+    """With X2 = X''d the initial two-phase current is sqrt3/2 of the three-phase: symmetrical components."""
     k, mode = at(study(one_board(a_set("G1", x_2_pu=0.15))), "MSB")
     case = mode.minimum
     assert case.iac_2ph_a[k][0] == pytest.approx(case.iac_a[k][0] * SQRT3 / 2.0, rel=1e-9)
