@@ -136,14 +136,18 @@ class _Batch:
         if widths - {1, self.count}:
             raise SolveError(f"{at.mode.name}: loads and settings are given for {sorted(widths)} scenarios")
         self.demand = _demand(at, p, q)
-        u_base = at.network.u_base_v[np.array([s.node for s in self.sources], np.int64)]
+        self.own = all(t is None for t in trims)
         v_ref = or_own(trims[0], self.sources, "v_ref_pu")
-        self.laws = voltage_laws(
-            self.sources,
-            u_base,
-            self.s_base,
-            v_ref_pu=v_ref,
-            xc_pu=reactances(self.sources, v_ref, trims[0], trims[1]),
+        self.laws = (
+            at.laws
+            if self.own
+            else voltage_laws(
+                self.sources,
+                at.source_u_base_v,
+                self.s_base,
+                v_ref_pu=v_ref,
+                xc_pu=reactances(self.sources, v_ref, trims[0], trims[1]),
+            )
         )
         self.f_no_load = or_own(trims[2], self.sources, "f_no_load_pu")
         self.speed_droop = or_own(trims[3], self.sources, "speed_droop_pu")
@@ -216,6 +220,8 @@ class _Batch:
         return f"no operating point: the load exceeds what sources and network can carry {tried}"
 
     def _power(self, k: IntArray, power_state: IntArray) -> PowerLaws:
+        if self.own and not power_state.any():
+            return self.at.power
         return power_laws(
             self.sources,
             self.at.structure.islands,
@@ -237,7 +243,7 @@ class _Batch:
         wanted, by = excitation_steps(laws, self.sources, state, field, v=v, i=i)
         by[self.pinned[:, k]] = 0.0
         p, f = (v * np.conj(i)).real, self.frequency[:, k]
-        p_wanted, p_by = power_steps(power, self.sources, power_state, p=p, f=f, s_base_kva=self.s_base)
+        p_wanted, p_by = power_steps(power, self.sources, power_state, p=p, f=f)
         distance = np.concatenate([by, p_by])
         most = distance.argmax(axis=0)
         moves = distance[most, np.arange(len(k))] > 0.0

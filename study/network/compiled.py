@@ -8,7 +8,7 @@ from concurrent.futures import ThreadPoolExecutor
 import numpy as np
 
 from study.network.consumers import drawn_by
-from study.network.equations import Point, Problem, jacobian
+from study.network.equations import Point, Problem, sparse_jacobian
 from study.network.kernel import LANES, Fixed, Found, Varying, sweep, triangles
 from study.network.scenarios import Solutions
 from study.network.sources import Law
@@ -49,7 +49,7 @@ def solve_compiled(problem: Problem, base: Point, out: Solutions, most_sweeps: i
     parts = (base.v.real, base.v.imag, base.i.real, base.i.imag, base.m)
     start = np.concatenate([part[:, 0] for part in parts])
     found = Found(out.v, out.i, out.m, out.residual_pu, out.iterations, start)
-    factors = triangles(jacobian(mean, base))
+    factors = triangles(sparse_jacobian(mean, base))
     count, threads = out.v.shape[1], len(os.sched_getaffinity(0)) if hasattr(os, "sched_getaffinity") else 1
     share = -(-count // (4 * threads * LANES)) * LANES
     with ThreadPoolExecutor(threads) as pool:

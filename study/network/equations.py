@@ -8,22 +8,24 @@ each island either the angle of its first source's bus or, on shore supply, m it
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from typing import Protocol
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.linalg.lapack import dgetrf, dgetrs
 from scipy.sparse import csc_matrix, csr_array
 from scipy.sparse.linalg import SuperLU, splu
 
 from study.network.consumers import Demand, Drawn, Ports, drawn_by
 from study.network.laws import VoltageLaws, some, take
 from study.network.power import PowerLaws
-from study.network.sources import Law
 
 FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
 IntArray = NDArray[np.int64]
 
 TOLERANCE = 1e-10  # of node current and source laws, pu of the base power
+DENSE_UP_TO = 110  # unknowns
 ROUNDING = 16.0 * float(np.finfo(float).eps)
 
 
@@ -35,7 +37,8 @@ class Structure:
     ``source_island`` are [source], ``reference_bus`` [island] the bus whose voltage has no imaginary part;
     ``accept`` is the residual accepted, pu.
     ``rows`` and ``columns`` are those of the Jacobian's entries in the order `jacobian` fills them;
-    ``slot`` their places in the sparse matrix, ``indices`` and ``indptr`` its pattern.
+    ``slot`` their places in the sparse matrix with pattern ``indices`` and ``indptr``, ``flat`` in the dense
+    one.
     """
 
     admittance: csr_array
@@ -48,6 +51,7 @@ class Structure:
     accept: float
     fixed_values: FloatArray
     slot: IntArray
+    flat: IntArray
     indices: IntArray
     indptr: IntArray
 
@@ -129,6 +133,7 @@ def structure(
         accept=_accepted(admittance, ports),
         fixed_values=fixed,
         slot=slot,
+        flat=key,
         indices=(unique % size).astype(np.int32),
         indptr=indptr.astype(np.int32),
     )
@@ -159,9 +164,8 @@ def power_residual(
 ) -> FloatArray:
     """Return P - a - b m of each source, or the second equation of a shore supply; [source, scenario]."""
     out = (v * np.conj(i)).real - power.a - power.b * m[at.source_island]
-    behind = laws.code == Law.BEHIND_IMPEDANCE
-    if behind.any():
-        out[behind] = shore_row(laws, v, i)[behind]
+    if laws.any_behind:
+        out[laws.behind] = shore_row(laws, v, i)[laws.behind]
     return np.asarray(out)
 
 
@@ -226,7 +230,38 @@ def residual(problem: Problem, drawn: Drawn, x: Point) -> FloatArray:
     return out
 
 
-def jacobian(problem: Problem, x: Point) -> SuperLU:
+class Factors(Protocol):
+    """A factorised matrix, dense or sparse."""
+
+    def solve(self, right: FloatArray) -> FloatArray:
+        """Return the solution for one or more right-hand sides."""
+
+
+class DenseFactors:
+    """Factors of a small Jacobian: below a hundred or so unknowns LAPACK is quicker than a sparse method.
+
+    Parameters
+    ----------
+    matrix : ndarray, shape (size, size)
+        The Jacobian.
+
+    Raises
+    ------
+    RuntimeError
+        Singular matrix.
+    """
+
+    def __init__(self, matrix: FloatArray) -> None:
+        self._factors, self._pivots, info = dgetrf(matrix, overwrite_a=True)
+        if info > 0:
+            raise RuntimeError("singular Jacobian")
+
+    def solve(self, right: FloatArray) -> FloatArray:
+        """Return the solution for one or more right-hand sides."""
+        return np.asarray(dgetrs(self._factors, self._pivots, right)[0])
+
+
+def jacobian(problem: Problem, x: Point) -> Factors:
     """Return the factorised Jacobian at a point of one scenario.
 
     Parameters
@@ -238,19 +273,29 @@ def jacobian(problem: Problem, x: Point) -> SuperLU:
 
     Returns
     -------
-    SuperLU
-        Factors.
+    Factors
+        Dense for few unknowns.
 
     Raises
     ------
     RuntimeError
-        Singular matrix (from SuperLU).
+        Singular matrix.
     """
+    at = problem.at
+    if at.size > DENSE_UP_TO:
+        sparse: Factors = sparse_jacobian(problem, x)
+        return sparse
+    values = jacobian_values(problem, x)
+    flat = np.asarray(np.bincount(at.flat, weights=values, minlength=at.size**2), float)
+    return DenseFactors(flat.reshape((at.size, at.size), order="F"))
+
+
+def sparse_jacobian(problem: Problem, x: Point) -> SuperLU:
+    """Return the sparse factors of the Jacobian, whatever its size; see `jacobian`."""
     at = problem.at
     values = jacobian_values(problem, x)
     data = np.bincount(at.slot, weights=values, minlength=len(at.indices))
-    matrix = csc_matrix((data, at.indices, at.indptr), shape=(at.size, at.size))
-    return splu(matrix)
+    return splu(csc_matrix((data, at.indices, at.indptr), shape=(at.size, at.size)))
 
 
 def jacobian_values(problem: Problem, x: Point) -> FloatArray:
@@ -260,8 +305,8 @@ def jacobian_values(problem: Problem, x: Point) -> FloatArray:
     by_load = drawn_by(at.ports, problem.demand).gradient(x.v[at.ports.bus])
     by_power = np.stack([i_s.real, i_s.imag, v_s.real, v_s.imag])
     b = power.b[:, 0].copy()
-    behind = laws.code == Law.BEHIND_IMPEDANCE
-    if behind.any():
+    if laws.any_behind:
+        behind = laws.behind
         by_power[:, behind] = np.stack(
             [0 * laws.r[:, 0], 0 * laws.r[:, 0] + 1.0, laws.x[:, 0], laws.r[:, 0]]
         )[:, behind]

@@ -5,6 +5,7 @@ Arrays are [source, scenario]; a source's current leaves it. Every equation is z
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass, replace
 from typing import Any, TypeVar
 
@@ -19,9 +20,13 @@ from study.network.sources import Law, Source
 FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
 IntArray = NDArray[np.int64]
+BoolArray = NDArray[np.bool_]
 _Number = TypeVar("_Number", np.float64, np.complex128)
 
+# Plain integers: members of an enumeration are slow to look up and to compare.
 PHASOR, CROSS_CURRENT = int(Law.PHASOR), int(Law.CROSS_CURRENT)
+BEHIND_IMPEDANCE = int(Law.BEHIND_IMPEDANCE)
+EVERY = slice(None)
 STEP = 1e-6  # of voltage and current, for the gradient of the field equation
 
 
@@ -31,7 +36,8 @@ class VoltageLaws:
 
     ``code`` [source], and ``groups`` its kinds with their sources; ``e_ref`` and ``x`` [source, scenario or
     1]; ``cross`` [source, source] reactances that other sets' currents act through. ``to_own_v`` and
-    ``to_own_i`` turn network per unit into the source's.
+    ``to_own_i`` turn network per unit into the source's. ``z`` is r + jx; ``behind`` [source] marks supplies
+    behind an impedance, ``crossed`` and ``any_behind`` say whether there are any reactances or supplies such.
     """
 
     code: IntArray
@@ -47,48 +53,41 @@ class VoltageLaws:
     machines: tuple[Machine | None, ...]
     supplies: tuple[FieldSupply, ...]
     groups: tuple[tuple[int, IntArray], ...]
+    z: ComplexArray
+    crossed: bool
+    behind: BoolArray
+    any_behind: bool
 
     def with_code(self, code: IntArray) -> VoltageLaws:
         """Return the laws with other kinds of law."""
-        return replace(self, code=code, groups=_groups(code))
+        return replace(self, code=code, **_of_code(code))
 
     def column(self, k: int | None) -> VoltageLaws:
         """Return the laws of one scenario, or of the mean of all where k is None."""
-        return replace(self, e_ref=take(self.e_ref, k), x=take(self.x, k))
+        if self.e_ref.shape[1] == self.x.shape[1] == 1:
+            return self
+        return replace(self, e_ref=take(self.e_ref, k), x=take(self.x, k), z=take(self.z, k))
 
     def columns(self, k: IntArray) -> VoltageLaws:
         """Return the laws of some scenarios."""
-        return replace(self, e_ref=some(self.e_ref, k), x=some(self.x, k))
+        if self.e_ref.shape[1] == self.x.shape[1] == 1:
+            return self
+        return replace(self, e_ref=some(self.e_ref, k), x=some(self.x, k), z=some(self.z, k))
 
     def residual(self, v: ComplexArray, i: ComplexArray) -> FloatArray:
         """Return the residual of every law, [source, scenario]; the first of the two for an impedance."""
+        if len(self.groups) == 1:
+            code, k = self.groups[0]
+            return _RESIDUAL[code](self, EVERY, v, i)
         out = np.empty(v.shape)
         for code, k in self.groups:
-            out[k] = self._residual_of(code, k, v, i)
+            out[k] = _RESIDUAL[code](self, k, v, i)
         return out
 
     def compensated(self, v: ComplexArray, i: ComplexArray) -> ComplexArray:
         """Return V + jX I and what cross-current compensation adds, [source, scenario]."""
-        out = v + (self.r + 1j * self.x) * i
-        return out + 1j * (self.cross @ i) if self.cross.any() else out
-
-    def _residual_of(self, code: int, k: IntArray, v: ComplexArray, i: ComplexArray) -> FloatArray:
-        s = v[k] * np.conj(i[k])
-        match code:
-            case Law.PHASOR | Law.CROSS_CURRENT:
-                return np.abs(self.compensated(v, i)[k]) ** 2 - self.e_ref[k] ** 2
-            case Law.REACTIVE_CURRENT:
-                v_mag = np.abs(v[k])
-                return v_mag**2 + self.x[k] * s.imag - self.e_ref[k] * v_mag
-            case Law.REACTIVE_POWER:
-                return s.imag - self.q_set[k] - self.q_per_p[k] * s.real
-            case Law.BEHIND_IMPEDANCE:
-                return self.compensated(v, i)[k].real - self.e_ref[k]
-            case Law.CURRENT_LIMIT:
-                return np.abs(i[k]) ** 2 - self.i_max[k] ** 2
-            case Law.FIELD:
-                return np.stack([self.field_surplus(j, v[j], i[j]) for j in k])
-        raise ValueError(f"unknown law {code}")
+        out = v + self.z * i
+        return out + 1j * (self.cross @ i) if self.crossed else out
 
     def field_surplus(self, j: int, v: ComplexArray, i: ComplexArray) -> FloatArray:
         """Return field required less field available of source j, per unit of its air-gap-line field."""
@@ -116,7 +115,7 @@ class VoltageLaws:
             if code in (PHASOR, CROSS_CURRENT):
                 # Of |Vc|^2: twice Vc times what each unknown does to it.
                 turned = 1j * self.cross[k] * np.conj(vc[k])[:, None]
-                turned[np.arange(len(k)), k] += (self.r[k, 0] + 1j * self.x[k, 0]) * np.conj(vc[k])
+                turned[np.arange(len(k)), k] += self.z[k, 0] * np.conj(vc[k])
                 out[k, 0, k], out[k, 1, k] = 2.0 * vc[k].real, 2.0 * vc[k].imag
                 out[k, 2], out[k, 3] = 2.0 * turned.real, -2.0 * turned.imag
             else:
@@ -147,6 +146,44 @@ class VoltageLaws:
         di = np.array([0, 0, 0, 0, h_i, -h_i, 1j * h_i, -1j * h_i])
         g = self.field_surplus(j, v + dv, i + di)
         return (g[0::2] - g[1::2]) / (2.0 * np.array([h_v, h_v, h_i, h_i]))
+
+
+def _of_phasor(laws: VoltageLaws, k: Any, v: ComplexArray, i: ComplexArray) -> FloatArray:
+    seen = laws.compensated(v, i)[k]
+    return np.asarray(seen.real**2 + seen.imag**2 - laws.e_ref[k] ** 2)
+
+
+def _of_reactive_current(laws: VoltageLaws, k: Any, v: ComplexArray, i: ComplexArray) -> FloatArray:
+    v_mag, q = np.abs(v[k]), (v[k] * np.conj(i[k])).imag
+    return np.asarray(v_mag**2 + laws.x[k] * q - laws.e_ref[k] * v_mag)
+
+
+def _of_reactive_power(laws: VoltageLaws, k: Any, v: ComplexArray, i: ComplexArray) -> FloatArray:
+    s = v[k] * np.conj(i[k])
+    return np.asarray(s.imag - laws.q_set[k] - laws.q_per_p[k] * s.real)
+
+
+def _of_impedance(laws: VoltageLaws, k: Any, v: ComplexArray, i: ComplexArray) -> FloatArray:
+    return np.asarray(laws.compensated(v, i)[k].real - laws.e_ref[k])
+
+
+def _of_current_limit(laws: VoltageLaws, k: Any, v: ComplexArray, i: ComplexArray) -> FloatArray:
+    return np.asarray(np.abs(i[k]) ** 2 - laws.i_max[k] ** 2)
+
+
+def _of_field(laws: VoltageLaws, k: Any, v: ComplexArray, i: ComplexArray) -> FloatArray:
+    return np.stack([laws.field_surplus(j, v[j], i[j]) for j in np.arange(len(v))[k]])
+
+
+_RESIDUAL: dict[int, Callable[[VoltageLaws, Any, ComplexArray, ComplexArray], FloatArray]] = {
+    PHASOR: _of_phasor,
+    CROSS_CURRENT: _of_phasor,
+    int(Law.REACTIVE_CURRENT): _of_reactive_current,
+    int(Law.REACTIVE_POWER): _of_reactive_power,
+    BEHIND_IMPEDANCE: _of_impedance,
+    int(Law.CURRENT_LIMIT): _of_current_limit,
+    int(Law.FIELD): _of_field,
+}
 
 
 def take(values: NDArray[_Number], k: int | None) -> NDArray[_Number]:
@@ -194,21 +231,30 @@ def voltage_laws(
     code = np.array([s.law for s in sources], np.int64)
     cross = _cross_matrix(sources, np.asarray(xc_pu)[:, 0], to_network[:, 0], own_v[:, 0], rating[:, 0])
     own_x = np.where((code == Law.CROSS_CURRENT)[:, None], 0.0, xc_pu)
+    x, r = own_x * to_network, np.array([s.r_pu for s in sources]).reshape(-1, 1) * to_network
     return VoltageLaws(
         code=code,
         e_ref=v_ref_pu / own_v,
-        x=own_x * to_network,
-        r=np.array([s.r_pu for s in sources])[:, None] * to_network,
-        q_set=np.array([s.q_set_pu for s in sources])[:, None] * rating,
-        q_per_p=np.array([s.q_per_p for s in sources])[:, None],
+        x=x,
+        r=r,
+        q_set=np.array([s.q_set_pu for s in sources]).reshape(-1, 1) * rating,
+        q_per_p=np.array([s.q_per_p for s in sources]).reshape(-1, 1),
         cross=cross,
-        i_max=np.array([s.i_max_pu for s in sources])[:, None] * rating * own_v,
+        i_max=np.array([s.i_max_pu for s in sources]).reshape(-1, 1) * rating * own_v,
         to_own_v=own_v,
         to_own_i=1.0 / (rating * own_v),
         machines=tuple(s.machine for s in sources),
         supplies=tuple(s.field for s in sources),
-        groups=_groups(code),
+        z=r + 1j * x,
+        crossed=bool(cross.any()),
+        **_of_code(code),
     )
+
+
+def _of_code(code: IntArray) -> dict[str, Any]:
+    """Return what follows from the kinds of law alone."""
+    behind = code == BEHIND_IMPEDANCE
+    return {"groups": _groups(code), "behind": behind, "any_behind": bool(behind.any())}
 
 
 def _groups(code: IntArray) -> tuple[tuple[int, IntArray], ...]:

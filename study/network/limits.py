@@ -85,10 +85,12 @@ def excitation_steps(
     """
     wanted = np.repeat(state[:, None], v.shape[1], axis=1)
     distance = np.zeros(v.shape)
-    error = regulator_error(laws, v, i)
     # Past a quarter turn the field counts as one against the present one: below nothing.
     under = np.where(field.in_step, -field.needed, field.needed)
     over = field.needed - field.most
+    if not state.any() and _within(laws, np.fmax(over, under), i):
+        return wanted, distance
+    error = regulator_error(laws, v, i)
     for j, s in enumerate(sources):
         if s.law in (Law.FIELD, Law.BEHIND_IMPEDANCE):
             continue
@@ -101,6 +103,13 @@ def excitation_steps(
             beyond = by > SLACK
             wanted[j, beyond], distance[j, beyond] = new_state, by[beyond]
     return wanted, distance
+
+
+def _within(laws: VoltageLaws, beyond: FloatArray, i: ComplexArray) -> bool:
+    """Return True where every regulated source is inside its limits in every scenario."""
+    free = (laws.code == Law.FIELD) | (laws.code == Law.BEHIND_IMPEDANCE)
+    worst = np.fmax(beyond, np.abs(i) / laws.i_max - 1.0)
+    return not np.any(worst[~free] > SLACK)
 
 
 def regulator_error(laws: VoltageLaws, v: ComplexArray, i: ComplexArray) -> FloatArray:
@@ -141,7 +150,6 @@ def power_steps(
     *,
     p: FloatArray,
     f: FloatArray,
-    s_base_kva: float,
 ) -> tuple[IntArray, FloatArray]:
     """Return the power state each source wants, and how far it is from where it is.
 
@@ -157,8 +165,6 @@ def power_steps(
         Active power found. [pu]
     f : ndarray, shape (island, scenario)
         Frequency found. [pu]
-    s_base_kva : float
-        Base power. [kVA]
 
     Returns
     -------
@@ -167,8 +173,10 @@ def power_steps(
     """
     wanted = np.repeat(state[:, None], p.shape[1], axis=1)
     distance = np.zeros(p.shape)
+    if not state.any() and np.all(np.abs(p) <= power.limit):
+        return wanted, distance
     for j, s in enumerate(sources):
-        limit, rated = s.p_max_kw / s_base_kva, s.p_rated_kw / s_base_kva
+        limit, rated = float(power.limit[j, 0]), float(power.rated[j, 0])
         if not np.isfinite(limit) or s.speed == Speed.FIXED:
             continue
         steps: list[tuple[int, FloatArray]]

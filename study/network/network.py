@@ -23,6 +23,8 @@ from study.network.arrays import (
 )
 from study.network.equations import Structure, structure
 from study.network.fields import SetGroup, set_groups
+from study.network.laws import VoltageLaws, voltage_laws
+from study.network.power import PowerLaws, power_laws
 from study.network.pruning import prune
 from study.network.refusals import refusal
 from study.network.sources import Source, sources_of
@@ -56,6 +58,7 @@ class ModeNetwork:
     ``constant_sum`` and ``square_sum`` [place, load] add up the consumers' power at their places, the part
     that is constant and the part that follows the square of the voltage. ``filter_pu`` [filter] is 0 where
     the filter is off or dead, ``motor_kva`` [synchronous motor] likewise.
+    ``laws`` and ``power`` are those of the sources as set in the workbook, within their limits.
     ``refusals`` [island] say why an island cannot be solved, or are empty.
     """
 
@@ -78,6 +81,9 @@ class ModeNetwork:
     square_sum: csr_array
     port_constant: ComplexArray
     set_groups: tuple[SetGroup, ...]
+    source_u_base_v: FloatArray
+    laws: VoltageLaws
+    power: PowerLaws
     refusals: tuple[str, ...]
 
     @property
@@ -207,11 +213,31 @@ def mode_network(network: Network, mode: Mode | str) -> ModeNetwork:
         port_constant=_sum_at(motor_bus, places, np.full(len(motor_bus), 1.0 / network.s_base_kva))
         @ motor_kva,
         set_groups=set_groups(sources),
+        source_u_base_v=network.u_base_v[source_node],
+        laws=voltage_laws(
+            sources,
+            network.u_base_v[source_node],
+            network.s_base_kva,
+            v_ref_pu=_column(sources, "v_ref_pu"),
+            xc_pu=_column(sources, "xc_pu"),
+        ),
+        power=power_laws(
+            sources,
+            len(view.islands),
+            network.s_base_kva,
+            f_no_load_pu=_column(sources, "f_no_load_pu"),
+            speed_droop_pu=_column(sources, "speed_droop_pu"),
+            at_limit=np.zeros(len(sources), np.int64),
+        ),
         refusals=tuple(
             island.refusal or refusal([s for s in sources if s.island == n])
             for n, island in enumerate(view.islands)
         ),
     )
+
+
+def _column(sources: Sequence[Source], name: str) -> FloatArray:
+    return np.array([getattr(s, name) for s in sources], float).reshape(-1, 1)
 
 
 def _number_buses(view: View) -> tuple[IntArray, int]:

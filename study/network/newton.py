@@ -6,10 +6,9 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.sparse.linalg import SuperLU
 
 from study.network.consumers import drawn_by
-from study.network.equations import Point, Problem, Structure, jacobian, residual
+from study.network.equations import Factors, Point, Problem, Structure, jacobian, residual
 
 FloatArray = NDArray[np.float64]
 
@@ -26,7 +25,7 @@ class Solved:
     residual_pu: float
     iterations: int
     converged: bool
-    factors: SuperLU | None
+    factors: Factors | None
 
 
 def flat_start(problem: Problem) -> Point:
@@ -76,7 +75,7 @@ def solve_one(problem: Problem, start: Point) -> Solved:
     x = _pack(start)
     f = residual(problem, drawn, start)
     size = float(np.abs(f).max())
-    factors: SuperLU | None = None
+    factors: Factors | None = None
     fresh = False
     step = 1.0
     for count in range(1, MOST_ITERATIONS + 1):
@@ -103,14 +102,14 @@ def solve_one(problem: Problem, start: Point) -> Solved:
     return _ended(at, x, size, count, factors)
 
 
-def _factors(problem: Problem, x: Point) -> SuperLU | None:
+def _factors(problem: Problem, x: Point) -> Factors | None:
     try:
         return jacobian(problem, x)
     except RuntimeError:  # singular: SuperLU's own word for it
         return None
 
 
-def _ended(at: Structure, x: FloatArray, size: float, count: int, factors: SuperLU | None) -> Solved:
+def _ended(at: Structure, x: FloatArray, size: float, count: int, factors: Factors | None) -> Solved:
     return Solved(
         point=_unpack(at, x),
         residual_pu=size,

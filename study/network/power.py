@@ -28,7 +28,8 @@ VARYING = ("a", "b", "gain", "f_no_load", "held_f")
 class PowerLaws:
     """Active power of the sources, per unit of the network's base; ``gain`` is 1/droop on that base.
 
-    ``a`` and ``b`` [source, scenario or 1]; ``held_f`` [island] is NaN where the frequency is the unknown.
+    ``a`` and ``b`` [source, scenario or 1]; ``rated`` and ``limit`` [source, 1] are rated and largest power;
+    ``held_f`` [island] is NaN where the frequency is the unknown.
     ``shore`` [island] marks islands that hang on a shore supply; ``short`` [island] those in which no source
     can take a change.
     """
@@ -36,6 +37,8 @@ class PowerLaws:
     a: FloatArray
     b: FloatArray
     gain: FloatArray
+    rated: FloatArray
+    limit: FloatArray
     f_no_load: FloatArray
     held_f: FloatArray
     shore: BoolArray
@@ -118,6 +121,8 @@ def power_laws(
         a=a,
         b=b,
         gain=gain,
+        rated=rated,
+        limit=limit,
         f_no_load=f_no_load_pu,
         held_f=held_f,
         shore=shore,

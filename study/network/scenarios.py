@@ -12,10 +12,9 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.sparse.linalg import SuperLU
 
 from study.network.consumers import Drawn, drawn_by
-from study.network.equations import Point, Problem, Structure, jacobian
+from study.network.equations import Factors, Point, Problem, Structure, jacobian
 from study.network.newton import Solved, flat_start, solve_one
 from study.network.sources import Law
 
@@ -249,7 +248,7 @@ class _Frame:
 
 
 def _steps(
-    at: Structure, factors: SuperLU, rows: IntArray, local_rows: IntArray, count: int
+    at: Structure, factors: Factors, rows: IntArray, local_rows: IntArray, count: int
 ) -> tuple[Callable[[FloatArray], FloatArray], Callable[[FloatArray], FloatArray]]:
     """Return the functions from right-hand side to the unknowns it depends on, and to all unknowns."""
     if count < DENSE_FROM or len(rows) * len(local_rows) > DENSE_UP_TO:
