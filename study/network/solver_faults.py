@@ -17,18 +17,22 @@ from numpy.typing import NDArray
 
 from study.formulas.fault_iec60909 import LvTolerance
 from study.formulas.fault_iec60909_equipment import generator_fictitious_resistance_ohm
-from study.model.branches import ThreeWindingTransformer
+from study.model.branches import ThreeWindingTransformer, Transformer
 from study.model.sources import Genset, SynchronousMotor
-from study.network.fault_general import motor_ratio, three_winding_factor
 from study.network.fault_network import FaultNetwork
 from study.network.fault_supplies import Supply
+from study.network.fault_tables import (
+    generator_columns,
+    motor_columns,
+    shore_columns,
+    three_winding_columns,
+    two_winding_columns,
+)
 
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
 
 _TABLES = ("bus", "impedance", "trafo", "trafo3w", "gen", "ext_grid", "motor")
-_PAIRS = (("primary", "secondary"), ("primary", "tertiary"), ("secondary", "tertiary"))
-_THREE_WINDING_C = 1.1
 LINK_OHM = 1e-8  # between a source without a cable and its board
 
 
@@ -202,7 +206,8 @@ class _Grid:
             branch = topology.branches[net.stub[p]]
             board = branch.to_node if branch.from_node == node else branch.from_node
             self.links.append((int(self.bus_of[board]), int(self.bus_of[node]), complex(net.place_z[p])))
-        two, three = [], []
+        two: list[tuple[Transformer, tuple[int, int], float]] = []
+        three: list[tuple[ThreeWindingTransformer, tuple[int, int, int], float]] = []
         for n, k in enumerate(net.live):
             b = topology.branches[k]
             ends = int(self.bus_of[b.from_node]), int(self.bus_of[b.to_node])
@@ -213,84 +218,14 @@ class _Grid:
             elif b.winding == "primary":
                 t3, tap = plant.three_winding[b.index], net.mode.set_points.get(b.name)
                 change = t3.tap_pu if tap is None or tap.tap_pu is None else tap.tap_pu
-                others = [int(self.bus_of[topology.branches[j].to_node]) for j in (k + 1, k + 2)]
-                three.append((t3, ends[0], others, change))
+                mv, lv = (int(self.bus_of[topology.branches[j].to_node]) for j in (k + 1, k + 2))
+                three.append((t3, (ends[0], mv, lv), change))
             elif not b.winding:
                 self.links.append((*ends, complex(net.z[n])))
-        self._two_winding(two)
-        self._three_winding(three)
-
-    def _two_winding(self, rows: list[Any]) -> None:
-        if not rows:
-            return
-        self._put(
-            "trafo",
-            {
-                "name": [t.name for t, _, _ in rows],
-                "hv_bus": [e[0] for _, e, _ in rows],
-                "lv_bus": [e[1] for _, e, _ in rows],
-                "sn_mva": [t.s_rated_kva / 1000.0 for t, _, _ in rows],
-                "vn_hv_kv": [t.u_primary_v / 1000.0 * (1.0 + tap) for t, _, tap in rows],
-                "vn_lv_kv": [t.u_secondary_v / 1000.0 for t, _, _ in rows],
-                "vk_percent": [100.0 * t.u_k_pu for t, _, _ in rows],
-                "vkr_percent": [100.0 * t.copper_loss_kw / t.s_rated_kva for t, _, _ in rows],
-                "pfe_kw": [0.0] * len(rows),
-                "i0_percent": [0.0] * len(rows),
-                "shift_degree": [0.0] * len(rows),
-                "tap_pos": [0.0] * len(rows),
-                "parallel": [t.units for t, _, _ in rows],
-                "df": [1.0] * len(rows),
-                "in_service": [True] * len(rows),
-            },
-        )
-
-    def _three_winding(self, rows: list[Any]) -> None:
-        if not rows:
-            return
-        items = [t for t, _, _, _ in rows]
-        columns: dict[str, Any] = {
-            "name": [t.name for t in items],
-            "hv_bus": [hv for _, hv, _, _ in rows],
-            "mv_bus": [o[0] for _, _, o, _ in rows],
-            "lv_bus": [o[1] for _, _, o, _ in rows],
-            "vn_hv_kv": [t.u_primary_v / 1000.0 * (1.0 + tap) for t, _, _, tap in rows],
-            "vn_mv_kv": [t.u_secondary_v / 1000.0 for t in items],
-            "vn_lv_kv": [t.u_tertiary_v / 1000.0 for t in items],
-            "sn_hv_mva": [t.s_primary_kva / 1000.0 for t in items],
-            "sn_mv_mva": [t.s_secondary_kva / 1000.0 for t in items],
-            "sn_lv_mva": [t.s_tertiary_kva / 1000.0 for t in items],
-        }
-        pairs = {
-            "hv": ("primary", "secondary"),
-            "mv": ("secondary", "tertiary"),
-            "lv": ("primary", "tertiary"),
-        }
-        for side, (one, other) in pairs.items():
-            rows_of = [self._pair(t, one, other) for t in items]
-            columns[f"vk_{side}_percent"] = [100.0 * abs(z) for z in rows_of]
-            columns[f"vkr_{side}_percent"] = [100.0 * z.real for z in rows_of]
-        zero = [0.0] * len(rows)
-        columns |= {"pfe_kw": zero, "i0_percent": zero, "shift_mv_degree": zero, "shift_lv_degree": zero}
-        columns |= {
-            "tap_pos": zero,
-            "tap_at_star_point": [False] * len(rows),
-            "in_service": [True] * len(rows),
-        }
-        self._put("trafo3w", columns)
-
-    def _pair(self, t: ThreeWindingTransformer, one: str, other: str) -> complex:
-        """Return the short-circuit impedance of a pair, so that the library's correction gives ours.
-
-        It takes c = 1.1 for every three-winding transformer, whatever the voltage of its lower side.
-        """
-        r = getattr(t, f"copper_loss_{one}_{other}_kw") / min(
-            getattr(t, f"s_{one}_kva"), getattr(t, f"s_{other}_kva")
-        )
-        z = complex(r, (getattr(t, f"u_k_{one}_{other}_pu") ** 2 - r * r) ** 0.5)
-        if not self.fault.options.maximum:
-            return z
-        c = dict(zip(_PAIRS, three_winding_factor(self.fault, t, self.tolerance), strict=True))[one, other]
-        return z * c / (_THREE_WINDING_C * (1.0 + 0.6 * z.imag) - 0.6 * z.imag * c)
+        if two:
+            self._put("trafo", two_winding_columns(two))
+        if three:
+            self._put("trafo3w", three_winding_columns(net, three, self.tolerance))
 
     def _sources(self) -> None:
         shores: list[tuple[int, Supply]] = []
@@ -316,9 +251,14 @@ class _Grid:
                     self.links.append((board, rest, s.lead * s.units / (s.units - 1.0)))
                     motors.append((rest, 1.0 - 1.0 / s.units, s))
         self.feeds = bool(self.gens or shores or motors)
-        self._put_gens()
-        self._put_shores(shores)
-        self._put_motors(motors)
+        items = [s.item for s in self.gens if isinstance(s.item, Genset | SynchronousMotor)]
+        if items:
+            self._put("gen", generator_columns(items, self.gen_bus))
+        if shores:
+            self._put("ext_grid", shore_columns(shores, self.s_base))
+        if motors:
+            u_v = [float(self.fault.plant.network.u_base_v[s.node]) for _, _, s in motors]
+            self._put("motor", motor_columns(motors, u_v, self.s_base))
 
     def _beside(self, s: Supply) -> int:
         board = int(self.bus_of[s.node])
@@ -326,33 +266,6 @@ class _Grid:
         bus = self._new_bus(vn)
         self.links.append((board, bus, 1j * LINK_OHM * self.s_base / vn**2))
         return bus
-
-    def _put_gens(self) -> None:
-        if not self.gens:
-            return
-        items: list[Genset | SynchronousMotor] = [
-            s.item for s in self.gens if isinstance(s.item, Genset | SynchronousMotor)
-        ]
-        self._put(
-            "gen",
-            {
-                "name": [s.name for s in self.gens],
-                "bus": self.gen_bus,
-                "p_mw": [0.0] * len(items),
-                "vm_pu": [1.0] * len(items),
-                "sn_mva": [x.s_rated_kva / 1000.0 for x in items],
-                "scaling": [1.0] * len(items),
-                "slack": [False] * len(items),
-                "in_service": [True] * len(items),
-                "slack_weight": [0.0] * len(items),
-                "vn_kv": [x.u_rated_v / 1000.0 for x in items],
-                "xdss_pu": [x.machine.x_d2_saturated_pu for x in items],
-                "rdss_ohm": [0.0] * len(items),
-                "cos_phi": [x.cos_phi_rated for x in items],
-                "pg_percent": [0.0] * len(items),
-                "power_station_trafo": [np.nan] * len(items),
-            },
-        )
 
     def set_resistance(self, *, fictitious: bool) -> None:
         """Set the generators' resistance, real or fictitious."""
@@ -367,49 +280,6 @@ class _Grid:
             values.append(assumed if fictitious else own)
         if values:
             self.net.gen["rdss_ohm"] = values
-
-    def _put_shores(self, rows: list[tuple[int, Supply]]) -> None:
-        if not rows:
-            return
-        level = [self.s_base / s.pu * s.voltage**2 for _, s in rows]
-        ratio = [s.r_over_x for _, s in rows]
-        self._put(
-            "ext_grid",
-            {
-                "name": [s.name for _, s in rows],
-                "bus": [b for b, _ in rows],
-                "vm_pu": [1.0] * len(rows),
-                "va_degree": [0.0] * len(rows),
-                "in_service": [True] * len(rows),
-                "s_sc_max_mva": level,
-                "s_sc_min_mva": level,
-                "rx_max": ratio,
-                "rx_min": ratio,
-            },
-        )
-
-    def _put_motors(self, rows: list[tuple[int, float, Supply]]) -> None:
-        if not rows:
-            return
-        u_v = [float(self.fault.plant.network.u_base_v[s.node]) for _, _, s in rows]
-        self._put(
-            "motor",
-            {
-                "name": [s.name for _, _, s in rows],
-                "bus": [b for b, _, _ in rows],
-                "pn_mech_mw": [self.s_base / s.pu * part for _, part, s in rows],
-                "loading_percent": [100.0] * len(rows),
-                "cos_phi": [1.0] * len(rows),
-                "cos_phi_n": [1.0] * len(rows),
-                "efficiency_percent": [100.0] * len(rows),
-                "efficiency_n_percent": [100.0] * len(rows),
-                "lrc_pu": [s.starting for _, _, s in rows],
-                "rx": [motor_ratio(s, u) for (_, _, s), u in zip(rows, u_v, strict=True)],
-                "vn_kv": [u / 1000.0 for u in u_v],
-                "scaling": [1.0] * len(rows),
-                "in_service": [True] * len(rows),
-            },
-        )
 
     def _fill_buses(self) -> None:
         vn = np.concatenate([self.vn, self.extra_vn])

@@ -112,8 +112,9 @@ class FaultCase:
     Iac(T/2) + idc(T/2); ``peak_a`` the greatest instantaneous current over all times and angles;
     ``ik_initial_nominal_a`` and ``ip_nominal_a`` without the tolerance of the reactances; ``r_over_x`` and
     ``cos_phi`` of the fault from its direct time constant at T/2; ``sustained_reach_a`` the low and
-    ``sustained_duty_a`` the high estimate of the sustained current, for as long as each source holds it; ``parallel_paths`` True where a source
-    reaches the place by parallel paths: outside the scope of IEC 61363-1, solved by nodal reduction.
+    ``sustained_duty_a`` the high estimate of the sustained current, for as long as each source holds it;
+    ``parallel_paths`` True where a source reaches the place by parallel paths: outside the scope of
+    IEC 61363-1, solved by nodal reduction.
     ``equivalent_half_a`` and ``equivalent_ip_a`` come from the standard's equivalent generator behind an
     impedance (NaN on boards that sources feed directly, where contributions are added one by one).
 

@@ -101,7 +101,7 @@ def test_change_over_turns_on_the_sets_and_their_breakers():
 
 
 def test_single_phase_runs_count_once_for_the_maximum_and_there_and_back_for_the_minimum():
-    """Between line and neutral the minimum goes there and back, 2 Z; between lines the two-phase fault does."""
+    """Between line and neutral the minimum goes there and back, 2 Z; the two-phase fault does so itself."""
     loads = [
         plants.load("L-N", "DB", kind="general", phases=1, u_rated_v=254.0, p_rated_kw=2.0),
         plants.load("L-L", "DB", kind="general", phases=2, u_rated_v=440.0, p_rated_kw=2.0),
