@@ -9,27 +9,34 @@ from functools import partial
 from pathlib import Path
 from typing import Final
 
+from study.workbook.package.cells import area
 from study.workbook.package.names import Sheet, defined_names, read_sheets
 from study.workbook.package.opc import Package, open_package, read_relations, rels_part
+from study.workbook.package.parts import read_graph
+from study.workbook.package.tables import read_tables
 from study.workbook.package.xml import Node, as_utf8, parse
-from study.workbook.result_formulas import Place, dependent_formulas, mentions_results
+from study.workbook.package.zip import part_key
+from study.workbook.result_formulas import Place, dependent_formulas, mentions_results, shifted
 from study.workbook.sheet_xml import (
     BookTables,
     ResultFormula,
     SheetCells,
     Value,
+    plain_text,
     read_cells,
     read_shared_strings,
 )
 from study.workbook.sheets import RESULT_PREFIX
+from study.workbook.table_formulas import BookTable, with_cells
 
 _PERCENT_FORMATS: Final = frozenset({9, 10})
 _DATE_FORMATS: Final = frozenset({*range(14, 23), *range(27, 37), *range(45, 48), *range(50, 59)})
 _QUOTED = re.compile(r'"[^"]*"|\\.|\[[^\]]*\]|_.|\*.')
 
 
-# An apostrophe, a book in brackets perhaps, and the prefix of result sheets, in whatever encoding of XML.
-_RESULT_MENTION = re.compile(rb"(?:'|&apos;|&#39;|\])\x00?[Rr]\x00? ")
+# An apostrophe, a book in brackets perhaps, and the prefix of result sheets.
+_RESULT_MENTION = re.compile(rb"(?:'|&apos;|&#39;|\])[Rr] ")
+_MAY_NAME_A_TABLE = re.compile(rb"<(?:\w+:)?f\b[^<]*\[")
 
 Rows = Mapping[int, Mapping[int, Value]]
 
@@ -175,16 +182,38 @@ def _dependent(
 ) -> Collection[Place]:
     """Return the cells whose formulas depend on a result sheet; formulas are read only where one may."""
     names = {d.name.casefold(): d.value for _, d in defined_names(root)}
-    result_names = any(mentions_results(value) for value in names.values())
-    if not result_names and not any(_may_mention_results(package.read(s.part)) for s in sheets):
+    parts = [as_utf8(package.read(sheet.part), sheet.part) for sheet in sheets]
+    by_table = any("[" in value for value in names.values())
+    by_table = by_table or any(_MAY_NAME_A_TABLE.search(part) for part in parts)
+    tables = _tables_by_name(package, root) if by_table else {}
+    names = {name: with_cells(value, 1, tables) for name, value in names.items()}
+    if not (
+        any(mentions_results(value) for value in names.values())
+        or any(_RESULT_MENTION.search(part) for part in parts)
+        or any(is_result(table.sheet) for table in tables.values())
+    ):
         return ()
-    formulas = {
-        (sheet.name.casefold(), row, column): formula
-        for sheet in sheets
-        for (row, column), formula in load(sheet).formulas.items()
-    }
+    formulas = {}
+    for sheet in sheets:
+        cells = load(sheet)
+        for place, formula in cells.formulas.items():
+            text = shifted(formula, *cells.moved[place]) if place in cells.moved else formula
+            formulas[sheet.name.casefold(), *place] = with_cells(text, place[0], tables)
     return dependent_formulas(formulas, names)
 
 
-def _may_mention_results(data: bytes) -> bool:
-    return _RESULT_MENTION.search(data) is not None
+def _tables_by_name(package: Package, root: Node) -> dict[str, BookTable]:
+    """Return the tables of all sheets by their names in small letters."""
+    places = {part_key(table.part): table for table in read_tables(package)}
+    graph = read_graph(package)
+    tables: dict[str, BookTable] = {}
+    for sheet in read_sheets(package, root, RESULT_PREFIX):
+        for relation in graph.get(part_key(sheet.part), ()):
+            table = None if relation.external else places.get(part_key(relation.target))
+            if table is not None:
+                tables[table.name.casefold()] = BookTable(
+                    sheet=sheet.name,
+                    cells=area(table.ref),
+                    columns=tuple(plain_text(name).casefold() for name in table.columns),
+                )
+    return tables

@@ -1,7 +1,6 @@
 """Which formulas depend on a result sheet, by themselves or by way of other cells and names.
 
-Such a value would come from the run before, and the next run would change it again. References by table and
-column name are not followed.
+Such a value would come from the run before, and the next run would change it again.
 """
 
 from __future__ import annotations
@@ -11,7 +10,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from typing import Final
 
-from study.workbook.package.cells import Area, area
+from study.workbook.package.cells import Area, address, area, split_address
 from study.workbook.sheet_xml import LAST_COLUMN, LAST_ROW
 
 Place = tuple[str, int, int]
@@ -24,6 +23,8 @@ _REFERENCE: Final = re.compile(
     r"(\$?[A-Za-z]{1,3}\$?\d{1,7}(?::\$?[A-Za-z]{1,3}\$?\d{1,7})?"
     r"|\$?[A-Za-z]{1,3}:\$?[A-Za-z]{1,3}|\$?\d{1,7}:\$?\d{1,7})(?![\w(.])"
 )
+_STRINGS_APART: Final = re.compile(r'("[^"]*")')
+_COORDINATE: Final = re.compile(r"(\$?)([A-Za-z]{0,3})(\$?)(\d{0,7})(?=:|$)")
 _NAME: Final = re.compile(r"(?<![\w.!'])([A-Za-z_\\][\w.]*)(?![\w.(!\[])")
 
 
@@ -57,6 +58,34 @@ def references(formula: str, own_sheet: str) -> Iterator[Reference]:
     for quoted, plain, cells in _REFERENCE.findall(_STRING.sub("", formula)):
         sheet = quoted.replace("''", "'") or plain or own_sheet
         yield Reference(sheet=sheet.casefold(), cells=_area(cells))
+
+
+def shifted(formula: str, rows: int, columns: int) -> str:
+    """Return a formula as it reads when it is filled down and across: references without $ move along.
+
+    Examples
+    --------
+    >>> shifted("SUM(A1:$B2)*Cables!$C$4+D:D", 2, 1)
+    'SUM(B3:$B4)*Cables!$C$4+E:E'
+    """
+    pieces = _STRINGS_APART.split(formula)
+    # Every second piece is a text in quotes.
+    pieces[::2] = [_REFERENCE.sub(lambda found: _moved(found, rows, columns), piece) for piece in pieces[::2]]
+    return "".join(pieces)
+
+
+def _moved(found: re.Match[str], rows: int, columns: int) -> str:
+    cells = _COORDINATE.sub(lambda part: _moved_part(part, rows, columns), found[3])
+    return found[0].removesuffix(found[3]) + cells
+
+
+def _moved_part(part: re.Match[str], rows: int, columns: int) -> str:
+    column_mark, letters, row_mark, digits = part.groups()
+    if letters and not column_mark:
+        letters = address(max(1, split_address(f"{letters}1")[0] + columns), 1)[:-1]
+    if digits and not row_mark:
+        digits = str(max(1, int(digits) + rows))
+    return f"{column_mark}{letters}{row_mark}{digits}"
 
 
 def _area(text: str) -> Area:

@@ -1,8 +1,7 @@
 """The cells of one worksheet part: addresses, values, and which formulas and formats stand behind them.
 
-A streaming parser of our own. Of the ready readers, one is three times slower and the other, twice as fast,
-does not tell a formula without a stored value from an empty cell, and fills a rectangle up to a stray cell in
-the last row and column of the sheet.
+A streaming parser of our own on the standard library's expat. The ready readers lose errors and uncalculated
+formulas, or refuse a workbook for its looks; each reason is a test in tests/workbook/test_reader_choice.py.
 """
 
 from __future__ import annotations
@@ -58,11 +57,13 @@ class ResultFormula(str):
 class SheetCells:
     """The cells of a sheet that hold something, by row and column number from 1.
 
-    ``formulas`` holds the text of every formula by row and column.
+    ``formulas`` holds the text of every formula by row and column; ``moved`` how many rows and columns a
+    cell lies behind the one for which its text was written, where a formula was filled down or across.
     """
 
     rows: dict[int, dict[int, Value]] = field(default_factory=dict)
     formulas: dict[tuple[int, int], str] = field(default_factory=dict)
+    moved: dict[tuple[int, int], tuple[int, int]] = field(default_factory=dict)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -163,7 +164,7 @@ class _CellReader:
         self.value: list[str] = []
         self.formula: list[str] = []
         self.has_formula = self.has_value = False
-        self.shared: dict[str, str] = {}
+        self.shared: dict[str, tuple[str, int, int]] = {}
         self.shared_index: str | None = None
         self.letters: dict[str, int] = {}
 
@@ -242,7 +243,10 @@ class _CellReader:
         text = "".join(self.formula)
         if self.shared_index is None:
             return text
-        return self.shared.setdefault(self.shared_index, text)
+        text, row, column = self.shared.setdefault(self.shared_index, (text, self.row, self.column))
+        if (self.row, self.column) != (row, column):
+            self.sheet.moved[self.row, self.column] = self.row - row, self.column - column
+        return text
 
     def _value(self, text: str) -> Value:
         kind = self.attributes.get("t", "n")

@@ -32,12 +32,12 @@ LIBRARIES: dict[str, set[str]] = {
     "results": {"numpy"},
     "formulas": {"numpy", "scipy"},
     "model": set(),
-    "workbook": {"openpyxl", "pandas", "xlsxwriter", "python_calamine", "lxml", "numpy"},
+    "workbook": {"xlsxwriter"},
     "network": {"numpy", "scipy", "numba"},
     "network/solver": {"numpy", "scipy", "pandapower", "pandas"},
     "analyses": {"numpy", "scipy", "numba"},
     "checks": {"numpy"},
-    "report": {"pandas", "jinja2", "matplotlib", "openpyxl", "xlsxwriter", "numpy", "markupsafe"},
+    "report": {"jinja2", "matplotlib", "xlsxwriter", "numpy", "markupsafe"},
 }
 FREE = {"pipeline", "cli", "__main__", "__init__"}
 SUBJECTS_APART = "analyses"

@@ -5,14 +5,18 @@ What a cell of each type holds: ECMA-376-1, clauses 18.3.1.4, 18.3.1.40 and 18.1
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from datetime import datetime
+from pathlib import Path
 from typing import Any
 
 import pytest
+import xlsxwriter
 
 from study.issues import PackageError
 from study.workbook.package.opc import package_from_bytes
 from study.workbook.reader import RawBook, read_package
+from study.workbook.result_formulas import shifted
 from study.workbook.sheet_xml import ErrorValue, NoStoredValue, Percent, ResultFormula
 from tests.workbook.sheet_samples import MAIN, package
 
@@ -134,6 +138,37 @@ def test_a_shared_formula_is_one_formula() -> None:
     assert type(cells[1][1]) is type(cells[2][1]) is ResultFormula
 
 
+def test_a_formula_that_is_filled_down_refers_to_its_own_row() -> None:
+    """Only the first row of the second column reads a result; the file holds the text of its formula once."""
+    content = (
+        '<row r="1"><c r="A1"><f>\'R Cables\'!B1</f><v>1</v></c>'
+        '<c r="B1"><f t="shared" ref="B1:B3" si="0">2*A1</f><v>2</v></c></row>'
+        '<row r="2"><c r="A2"><v>1</v></c><c r="B2"><f t="shared" si="0"/><v>2</v></c></row>'
+        '<row r="3"><c r="A3"><f>\'R Cables\'!B3</f><v>1</v></c>'
+        '<c r="B3"><f t="shared" si="0"/><v>2</v></c></row>'
+    )
+    cells = _cells(content)
+    assert [type(cells[row][2]) for row in (1, 2, 3)] == [ResultFormula, float, ResultFormula]
+
+
+@pytest.mark.parametrize(
+    ("formula", "rows", "columns"),
+    [
+        ("A1+$A1+A$1+$A$1", 3, 2),
+        ("SUM(B2:C9)*Cables!D4", 5, 0),
+        ("SUM('R It''s'!A:C)+SUM(2:3)", 4, 1),
+        ('IF(A1="A1",LOG10(B2),Rating)', 1, 1),
+        ("AZ9+XFC1+Rating_2", 1, 1),
+    ],
+)
+def test_filled_formulas_read_as_openpyxl_translates_them(formula: str, rows: int, columns: int) -> None:
+    from openpyxl.formula.translate import Translator
+
+    target = f"{chr(ord('F') + columns)}{50 + rows}"
+    wanted = Translator(f"={formula}", origin="F50").translate_formula(target)
+    assert f"={shifted(formula, rows, columns)}" == wanted
+
+
 @pytest.mark.parametrize(
     "formula",
     [
@@ -189,6 +224,53 @@ def test_dependence_over_several_steps() -> None:
     )
     read = _read({"Loads": steps, "R Cables": "<row/>"}).sheets[0].read()
     assert [type(read[n][1]) for n in (1, 2, 3, 4)] == [ResultFormula, ResultFormula, ResultFormula, float]
+
+
+def _with_tables(formula: str, path: Path, names: Mapping[str, str] | None = None) -> type:
+    """Return what the reader makes of a formula beside a table of results and one of the engineer's.
+
+    In the second one, column b takes its value of row 3 from a result sheet.
+    """
+    with xlsxwriter.Workbook(path) as book:
+        loads, own, result = (book.add_worksheet(name) for name in ("Loads", "Own", "R Cables"))
+        result.add_table("B3:C5", {"name": "R_cables", "columns": [{"header": "Cable"}, {"header": "A [A]"}]})
+        own.add_table("A1:C4", {"name": "Mine", "columns": [{"header": h} for h in ("a", "b", "c [#]")]})
+        own.write_formula("B3", "='R Cables'!C4", None, 7)
+        own.write_formula("C2", formula if "@" in formula or "This Row" in formula else "=1", None, 7)
+        loads.write_formula("A1", formula, None, 7)
+        for name, value in (names or {}).items():
+            book.define_name(name, value)
+    sheets = read_package(package_from_bytes(path.read_bytes()), path.name).sheets
+    cells = {(sheet.name, row, column): value for sheet in sheets for row, line in sheet.read().items()
+             for column, value in line.items()}  # fmt: skip
+    return type(cells["Own", 2, 3] if "This Row" in formula else cells["Loads", 1, 1])
+
+
+@pytest.mark.parametrize(
+    ("formula", "kind"),
+    [
+        ("=SUM(R_cables[A '[A']])", ResultFormula),
+        ("=INDEX(r_CABLES[[#All],[Cable]],2)", ResultFormula),
+        ("=ROWS(R_cables[])", ResultFormula),
+        ("=SUM(Mine[b])", ResultFormula),
+        ("=SUM(Mine[[a]:[c '['#']]])", ResultFormula),
+        ("=SUM(Mine[])", ResultFormula),
+        ("=SUM(Mine[a])", float),
+        ("=SUM(Mine[c '['#']])", float),
+        ("=SUM(Yours[b])", float),
+        ('="R_cables[Cable]"', float),
+        ("=SUM(Mine[[#This Row],[b]])", float),
+        ("=SUM(Mine[[#This Row],[a]])", float),
+    ],
+)
+def test_dependence_by_table_name(formula: str, kind: type, tmp_path: Path) -> None:
+    assert _with_tables(formula, tmp_path / "book.xlsx") is kind
+
+
+def test_dependence_by_a_name_for_a_column(tmp_path: Path) -> None:
+    names = {"Result_amperes": "=R_cables[A '[A']]", "Own_a": "=Mine[a]"}
+    assert _with_tables("=SUM(Result_amperes)", tmp_path / "one.xlsx", names) is ResultFormula
+    assert _with_tables("=SUM(Own_a)", tmp_path / "two.xlsx", names) is float
 
 
 def test_result_sheets_are_not_listed() -> None:

@@ -6,7 +6,7 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, replace
 
 from study.workbook.package.opc import SPREADSHEET, TYPES_PART, Package, read_content_types
-from study.workbook.package.xml import as_utf8, parse, whole_number
+from study.workbook.package.xml import Node, as_utf8, parse, whole_number
 from study.workbook.package.zip import part_key
 
 TABLE_TYPE = SPREADSHEET + "table+xml"
@@ -28,6 +28,8 @@ class TablePlace:
         Its cells.
     headed : bool
         Whether the first row holds headings.
+    columns : tuple of str
+        Headings, as formulas write them.
     """
 
     part: str
@@ -35,6 +37,7 @@ class TablePlace:
     name: str
     ref: str
     headed: bool
+    columns: tuple[str, ...] = ()
 
 
 def read_tables(package: Package) -> list[TablePlace]:
@@ -53,9 +56,15 @@ def read_tables(package: Package) -> list[TablePlace]:
                     name=name,
                     ref=attributes.get("ref", ""),
                     headed=attributes.get("headerRowCount", "1") != "0",
+                    columns=_columns(root),
                 )
             )
     return tables
+
+
+def _columns(root: Node) -> tuple[str, ...]:
+    container = root.find("tableColumns")
+    return tuple(c.attributes.get("name", "") for c in container.all("tableColumn")) if container else ()
 
 
 def place_tables(
