@@ -128,32 +128,34 @@ def _mode(
     least: LeastFaults,
     mode: ModeShortCircuit,
 ) -> dict[str, NDArray[np.generic]]:
-    known = np.where(np.isnan(sides.limited_a2s), -1.0, sides.limited_a2s)
-    worse_side = known.argmax(axis=0)
-    column = np.arange(len(worse_side))
-    heat = known[worse_side, column]
-    live = np.array([any(sides.live[d] for d in found) for found in devices], bool)
-    live |= np.array(
-        [not found and _is_closed(c.name, mode) for c, found in zip(plant.cables, devices, strict=True)]
+    limited = np.nan_to_num(sides.limited_a2s, nan=-1.0)
+    worse = np.stack([limited.argmax(axis=0), np.arange(limited.shape[1])])
+    # The last column stands for no device, which -1 picks.
+    heat = np.append(limited[*worse], -1.0)
+    stage = np.append(sides.stage[*worse], UNKNOWN)
+    clearing_s = np.append(sides.time_s[*worse], np.nan)
+    by_maker = np.append(sides.let_through[*worse], False)
+    place = np.append(sides.place, -1)
+    closed = set(mode.maximum.ends.branches)
+    live = np.array(
+        [
+            any(sides.live[d] for d in found) if found else cable.name in closed
+            for cable, found in zip(plant.cables, devices, strict=True)
+        ],
+        bool,
     )
     device = np.array([_hottest(found, sides, heat) for found in devices], np.int64)
     there = device >= 0
-    side = worse_side[device]
-    stage = np.where(there, sides.stage[side, device], UNKNOWN)
     return {
         "live": live,
         "device": device,
         "heat_a2s": np.where(there, heat[device], np.nan),
-        "clearing_s": np.where(there, sides.time_s[side, device], np.nan),
-        "cleared_by": stage,
-        "let_through": there & sides.let_through[side, device],
-        "nominal_initial": nominal_ratios(mode.maximum, sides.place[device])[1],
+        "clearing_s": clearing_s[device],
+        "cleared_by": stage[device],
+        "let_through": by_maker[device],
+        "nominal_initial": nominal_ratios(mode.maximum, place[device])[1],
         "far_heat_a2s": _far_heat(devices, least),
     }
-
-
-def _is_closed(cable: str, mode: ModeShortCircuit) -> bool:
-    return cable in mode.maximum.ends.branches
 
 
 def _hottest(found: tuple[int, ...], sides: Sides, heat_a2s: FloatArray) -> int:

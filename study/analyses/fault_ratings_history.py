@@ -22,7 +22,7 @@ _SIMPSON = np.array([1.0, 4.0, 1.0]) / 6.0
 class Histories:
     """Currents of many faults, [row, interval, 3]: at the start, middle and end of each interval.
 
-    ``time_s`` [interval + 1] bounds the intervals; between the three points everything is a parabola. An
+    ``time_s`` [interval + 1] bounds the intervals; integrals take a parabola through the three points. An
     instant at which a source stops bounds two intervals, so that both sides of it are kept apart.
     """
 
@@ -163,7 +163,7 @@ def _expanded(component: FloatArray, runs: FloatArray) -> FloatArray:
 
 
 def value_at(knots: FloatArray, values: FloatArray, time_s: FloatArray) -> FloatArray:
-    """Return the value of each row at its own time.
+    """Return the value of each row at its own time: the logarithm is a parabola, exact for one exponential.
 
     Parameters
     ----------
@@ -180,8 +180,11 @@ def value_at(knots: FloatArray, values: FloatArray, time_s: FloatArray) -> Float
         In the unit of the values.
     """
     k, u = _position(knots, time_s)
-    a, b, c = (values[np.arange(len(k)), k, i] for i in range(3))
+    points = values[np.arange(len(k)), k]
+    falls = np.all(points > 0.0, axis=1)
+    a, b, c = np.where(falls[:, None], np.log(np.where(falls[:, None], points, 1.0)), points).T
     there = a + u * (4.0 * b - 3.0 * a - c) + u**2 * (2.0 * a - 4.0 * b + 2.0 * c)
+    there = np.where(falls, np.exp(np.where(falls, there, 0.0)), there)
     return np.asarray(np.where(np.isnan(time_s), np.nan, there))
 
 
