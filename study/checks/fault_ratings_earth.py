@@ -46,7 +46,8 @@ def judge_earth_faults(plant: Plant, result: FaultRatingsResult, limits: Limits)
 
 def _system(plant: Plant, row: EarthFaultRow, limits: Limits) -> Iterator[Verdict]:
     current = row.capacitive_a if math.isnan(row.fault_a) else row.fault_a
-    tolerance = 0.0 if row.capacitance_given else _TYPICAL_CAPACITANCE * row.capacitive_a / current
+    typical = not row.capacitance_given and current > 0.0
+    tolerance = _TYPICAL_CAPACITANCE * row.capacitive_a / current if typical else 0.0
     quantity, limit, sense, basis, cell, remedy = _standing(plant, row, limits)
     yield make_verdict(
         mode=row.mode,

@@ -1,0 +1,128 @@
+"""Fault ratings from plants through the whole chain: network, short-circuit currents, ratings, verdicts."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+from study.analyses.fault_ratings import fault_ratings
+from study.analyses.fault_ratings_limiting import let_through_sheets
+from study.analyses.fault_ratings_releases import releases
+from study.analyses.fault_ratings_sides import (
+    PlantDevices,
+    Sides,
+    branch_of_devices,
+    sides_of,
+    source_of_devices,
+)
+from study.analyses.short_circuit import short_circuit
+from study.analyses.short_circuit_options import ShortCircuitOptions
+from study.checks.fault_ratings import judge_fault_ratings
+from study.checks.limits import limits_in_force
+from study.checks.verdict import Verdict
+from study.model.plant import Plant
+from study.network.network import build_network
+from study.results.short_circuit import ShortCircuitResult
+from study.workbook import read_plant
+from tests import plants
+
+WORKBOAT = Path(__file__).parents[2] / "workbooks" / "workboat.xlsx"
+ALONE = ShortCircuitOptions(compare=False)
+
+
+@pytest.fixture(scope="module")
+def workboat() -> tuple[Plant, ShortCircuitResult]:
+    plant = read_plant(WORKBOAT)
+    return plant, short_circuit(build_network(plant), ALONE)
+
+
+def both_sides(plant: Plant, result: ShortCircuitResult, mode: int) -> Sides:
+    sheets = let_through_sheets(plant)
+    devices = PlantDevices(
+        releases=releases(plant),
+        sheets=tuple(sheets.get(d.curve or "") for d in plant.devices),
+        branch=branch_of_devices(plant),
+        source=source_of_devices(plant),
+    )
+    return sides_of(plant, devices, result.modes[mode], result.f_hz)
+
+
+def test_both_sides_over_time_are_those_of_the_short_circuit_study(
+    workboat: tuple[Plant, ShortCircuitResult],
+) -> None:
+    plant, result = workboat
+    half_s = np.full(len(plant.devices), 0.5 / result.f_hz)
+    for number, mode in enumerate(result.modes):
+        sides = both_sides(plant, result, number)
+        live = sides.live
+        ac = np.stack([h.ac_at_a(half_s) for h in sides.histories])
+        dc = np.stack([h.dc_at_a(half_s) for h in sides.histories])
+        peak = (np.sqrt(2.0) * ac + dc).max(axis=0)
+        # Half a cycle is a point of the time grid: equal to the digits of the machine.
+        assert ac.max(axis=0)[live] == pytest.approx(mode.devices.duty_half_a[live], rel=1e-9)
+        assert peak[live] == pytest.approx(mode.devices.duty_ip_a[live], rel=1e-9)
+        assert sides.initial_a.max(axis=0)[live] == pytest.approx(mode.devices.duty_initial_a[live], rel=1e-9)
+
+
+def test_the_least_current_falls_as_in_the_short_circuit_study(
+    workboat: tuple[Plant, ShortCircuitResult],
+) -> None:
+    plant, result = workboat
+    clearing = fault_ratings(plant, result).clearing
+    for number, mode in enumerate(result.modes):
+        own = clearing.judged[:, number] & (clearing.by[:, number] == np.arange(len(plant.devices)))
+        delayed = own & (clearing.stage[:, number] == clearing.stages.index("short-time delay"))
+        # Devices with an instantaneous stage as well are given their current at its earlier moment.
+        delayed &= mode.devices.operating_s > 0.1
+        assert delayed.any()
+        # Seen when the delay ends, one breaking time before the moment of the short-circuit study.
+        seen, later = clearing.least_a[delayed, number], mode.devices.least_a[delayed]
+        assert (seen >= later * (1.0 - 1e-9)).all()
+        assert seen == pytest.approx(later, rel=0.05)
+
+
+def test_the_workboat_survives_its_faults(workboat: tuple[Plant, ShortCircuitResult]) -> None:
+    plant, result = workboat
+    verdicts = judge_fault_ratings(plant, fault_ratings(plant, result), limits_in_force(plant.acceptance))
+    assert {v.status for v in verdicts} == {"within"}
+    assert {v.subject for v in verdicts} == {"fault ratings"}
+    assert all(v.cell for v in verdicts)
+    judged = {v.equipment for v in verdicts}
+    assert {b.name for b in plant.boards} | {c.name for c in plant.cables} <= judged
+    assert {d.name for d in plant.devices if d.kind != "thermal overload"} <= judged
+
+
+def one_set_under_a_delay(field_supply: str) -> list[Verdict]:
+    """Return what is said of one set whose breaker waits 0.5 s, with nothing else on the board."""
+    plant = plants.plant(
+        boards=[plants.board("MSB")],
+        gensets=[plants.genset("G1", "MSB", field_supply=field_supply)],
+        cables=[plants.cable("C-G1", "G1", "MSB", runs=4, section_mm2=240.0, length_m=10.0)],
+        devices=[
+            plants.device(
+                "Q1", "C-G1", end="MSB", short_time_a=2500.0, short_time_delay_s=0.5, long_time_a=1400.0,
+                long_time_delay_s=15.0, long_time_delay_at=1.5, icu_ka=50.0, ics_ka=50.0, icw_ka=30.0,
+                icw_duration_s=1.0,
+            )
+        ],
+    )  # fmt: skip
+    result = fault_ratings(plant, short_circuit(build_network(plant), ALONE))
+    verdicts = judge_fault_ratings(plant, result, limits_in_force([]))
+    return [v for v in verdicts if "least fault" in v.quantity and v.equipment == "Q1"]
+
+
+def test_a_shunt_excited_set_under_a_long_delay_does_not_clear() -> None:
+    (verdict,) = one_set_under_a_delay("shunt")
+    assert verdict.status == "exceeds"
+    assert verdict.quantity == "does not clear: least fault at the far end against the pick-up"
+    assert verdict.value < verdict.limit == pytest.approx(2750.0)
+    assert verdict.remedy.startswith("Does not clear: the current falls from ")
+
+
+def test_the_same_set_with_a_permanent_magnet_exciter_clears() -> None:
+    (verdict,) = one_set_under_a_delay("permanent magnet")
+    # holds three times 1283 A
+    assert verdict.status == "within"
+    assert verdict.value == pytest.approx(3.0 * 1283.0, rel=0.1)
