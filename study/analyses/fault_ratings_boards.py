@@ -14,12 +14,12 @@ from study.analyses.fault_ratings_series import (
     given,
     greatest,
     next_usual,
+    peak_factor_above_1_kv,
     ratio,
     worst_mode,
 )
 from study.analyses.fault_ratings_sides import PlantDevices
 from study.formulas.fault_duty import equivalent_short_time_current_a
-from study.formulas.fault_duty_mv import STANDARD_TIME_CONSTANT_S, rated_peak_factor
 from study.model.branches import Board, Tie
 from study.model.plant import Plant
 from study.results.arrays import read_only
@@ -61,7 +61,7 @@ def board_ratings(plant: Plant, devices: PlantDevices, result: ShortCircuitResul
     rated_peak = given([b.peak_withstand_ka for b in boards])
     rated_short = given([b.short_time_withstand_ka for b in boards])
     high = np.array([b.u_nominal_v > MEDIUM_VOLTAGE_V for b in boards], bool)
-    factor = rated_peak_factor(result.f_hz, STANDARD_TIME_CONSTANT_S)
+    factor = peak_factor_above_1_kv(result.f_hz)
     peaks, shorts = greatest(limited_ka), greatest(short_ka)
     live = table["live"] > 0.0
     return BoardRatings(

@@ -16,6 +16,7 @@ from study.analyses.fault_ratings_series import (
     given,
     greatest,
     next_usual,
+    peak_factor_above_1_kv,
     worst_mode,
 )
 from study.analyses.fault_ratings_sides import PlantDevices, Sides, cut_off_peaks_a
@@ -31,7 +32,6 @@ from study.formulas.fault_duty_mv import (
     STANDARD_TIME_CONSTANT_S,
     asymmetrical_breaking_current_a,
     rated_dc_component,
-    rated_peak_factor,
 )
 from study.formulas.fault_iec60909 import kappa_factor
 from study.model.plant import Plant
@@ -59,7 +59,7 @@ class RatedDevices:
         self.fuse = np.array([rule == "fuse" for rule in self.rules], bool)
         self.high = np.array([rule == "medium-voltage breaker" for rule in self.rules], bool)
         self.low = ~(self.fuse | self.high)
-        self.factor = rated_peak_factor(f_hz, STANDARD_TIME_CONSTANT_S)
+        self.factor = peak_factor_above_1_kv(f_hz)
         self.icu, self.ics = (given([getattr(d, x) for d in self.devices]) for x in ("icu_ka", "ics_ka"))
         self.icw = given([d.icw_ka for d in self.devices])
         self.icw_s = given([d.icw_duration_s for d in self.devices])

@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from study.formulas.fault_duty import assembly_peak_ratio
+from study.formulas.fault_duty_mv import STANDARD_TIME_CONSTANT_S, rated_peak_factor
 
 FloatArray = NDArray[np.float64]
 
@@ -55,6 +56,27 @@ def next_usual(needed: ArrayLike, series: tuple[float, ...]) -> FloatArray:
     value = np.asarray(needed, float)
     place = np.searchsorted(np.array(series), np.nan_to_num(value, nan=np.inf), side="left")
     return np.asarray(np.append(np.array(series), np.nan)[place])
+
+
+def peak_factor_above_1_kv(f_hz: float) -> float:
+    """Return the peak factor of switchgear above 1 kV, which is rated for 50 or 60 Hz: the nearer of both.
+
+    Parameters
+    ----------
+    f_hz : float
+        Frequency of the plant. [Hz]
+
+    Returns
+    -------
+    float
+        Rated peak over rated r.m.s. current.
+
+    Examples
+    --------
+    >>> peak_factor_above_1_kv(58.0)
+    2.6
+    """
+    return rated_peak_factor(50.0 if f_hz < 55.0 else 60.0, STANDARD_TIME_CONSTANT_S)
 
 
 def greatest(values: FloatArray) -> FloatArray:

@@ -204,6 +204,20 @@ def test_a_breaker_above_1_kv_when_its_contacts_part() -> None:
     assert devices.enough_breaking_ka[0] == 10.0
 
 
+@pytest.mark.parametrize(("f_hz", "factor"), [(50.0, 2.5), (51.0, 2.5), (58.0, 2.6), (60.0, 2.6)])
+def test_peak_factor_at_the_nearer_of_the_rated_frequencies(f_hz: float, factor: float) -> None:
+    where = made.places(Place(name="MV", u_nominal_v=6600.0))
+    plant = plants.plant(
+        boards=[plants.board("MV", 6600.0)],
+        devices=[plants.device("Q1", "MV", icu_ka=20.0)],
+    )
+    rows = [DeviceRow(name="Q1", place="MV")]
+    feeds = [Feed(place="MV", source="G1", initial_a=1e4)]
+    mode = made.mode("At sea", where, [Source(name="G1")], feeds, rows, f_hz=f_hz)
+    devices = fault_ratings(plant, made.result(where, mode, f_hz=f_hz)).devices
+    assert devices.making_peak_ka[0] == pytest.approx(factor * 20.0)
+
+
 def test_up_to_a_fifth_of_direct_component_the_symmetrical_rating_covers() -> None:
     feed = Feed(place="MV", source="G1", initial_a=9900.0, dc_a=0.0)
     plant = plants.plant(
