@@ -74,9 +74,11 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
         Plant, results and verdicts.
     """
     from study.analyses.balance import load_balance
+    from study.analyses.fault_ratings import fault_ratings
     from study.analyses.load_flow import load_flow
     from study.analyses.regulation import voltage_regulation
     from study.analyses.sharing import sharing_study
+    from study.analyses.short_circuit import short_circuit
     from study.checks.limits import limits_in_force
     from study.network.network import build_network, mode_network
     from study.report.content import StudyOutcome
@@ -93,12 +95,17 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     _tell(progress, "regulation and sharing")
     regulation = voltage_regulation(plant)
     sharing = sharing_study(networks, p_kw, q_kvar, _sharing_options(limits))
+    _tell(progress, "short-circuit currents and fault ratings")
+    faults = short_circuit(network)
+    ratings = fault_ratings(plant, faults)
     outcome = StudyOutcome(
         plant=plant,
         balance=balance,
         load_flow=flow,
         regulation=regulation,
         sharing=sharing,
+        short_circuit=faults,
+        fault_ratings=ratings,
         verdicts=(),
         limits=tuple(limits.by_key[key] for key in USED_LIMITS),
         methods=METHODS,
@@ -133,6 +140,9 @@ USED_LIMITS = (
     "transformer_loading",
     "busbar_loading",
     "supply_loading",
+    "breaking_rating",
+    "earth_fault_standing",
+    "earth_fault_detection",
 )
 
 
@@ -140,11 +150,12 @@ def _judged(outcome: StudyOutcome, limits: Limits) -> StudyOutcome:
     from dataclasses import replace
 
     from study.checks.capacity import judge_capacity
+    from study.checks.fault_ratings import judge_fault_ratings
     from study.checks.loading import judge_loading
     from study.checks.sharing import judge_regulation, judge_sharing
     from study.checks.voltage import judge_voltage
 
-    plant = outcome.plant
+    plant, ratings = outcome.plant, outcome.fault_ratings
     return replace(
         outcome,
         verdicts=(
@@ -153,6 +164,7 @@ def _judged(outcome: StudyOutcome, limits: Limits) -> StudyOutcome:
             *judge_voltage(plant, outcome.load_flow, limits),
             *judge_sharing(plant, outcome.sharing, limits),
             *judge_regulation(plant, outcome.regulation, limits),
+            *(judge_fault_ratings(plant, ratings, limits) if ratings is not None else ()),
         ),
     )
 
@@ -179,6 +191,7 @@ def _sharing_options(limits: Limits) -> SharingOptions:
         kvar_of_smallest=limits.fraction("kvar_sharing_smallest"),
         voltage_low=limits.fraction("voltage_low"),
         voltage_high=limits.fraction("voltage_high"),
+        frequency=limits.fraction("frequency_deviation"),
     )
 
 
@@ -272,6 +285,7 @@ def write_results(
     PackageError
         A file cannot be written; what stood there before is whole.
     """
+    from study.report.catalogue import all_tables
     from study.report.excel import result_workbook
     from study.report.html import report_page
     from study.report.json_out import json_text
@@ -280,17 +294,17 @@ def write_results(
     book = Path(book)
     folder = _folder(book, out)
     _tell(progress, "writing the result sheets")
-    package = open_package(book)
+    package, tables = open_package(book), all_tables(outcome)
     try:
-        data = graft_result_sheets(package.data, result_workbook(outcome))
+        data = graft_result_sheets(package.data, result_workbook(outcome, tables))
     except PackageError as error:
         raise PackageError(f"{book.name}: {error}") from error
     target, notes = _write_book(book, folder / book.name, data, package.digest)
     paths = [target]
     _tell(progress, "writing the report")
     for name, text in (
-        (f"{book.stem}-report.html", report_page(outcome)),
-        (f"{book.stem}-results.json", json_text(outcome)),
+        (f"{book.stem}-report.html", report_page(outcome, tables)),
+        (f"{book.stem}-results.json", json_text(outcome, tables)),
     ):
         write_atomically(folder / name, text.encode("utf-8"))
         paths.append(folder / name)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from datetime import datetime
 from io import BytesIO
 from typing import Any
@@ -21,13 +21,15 @@ _A3 = 8
 _CHARACTERS_ON_A_PAGE = 270.0
 
 
-def result_workbook(outcome: StudyOutcome) -> bytes:
+def result_workbook(outcome: StudyOutcome, tables: Mapping[str, Table] | None = None) -> bytes:
     """Return every table as result sheets, with native charts beside the numbers.
 
     Parameters
     ----------
     outcome : StudyOutcome
         The study.
+    tables : mapping of str to Table, optional
+        `all_tables` of the study, where they have been made already.
 
     Returns
     -------
@@ -49,7 +51,7 @@ def result_workbook(outcome: StudyOutcome) -> bytes:
     )
     book.set_properties({"title": "Study results", "author": "", "created": _FIXED_DATE})
     formats = Formats(book)
-    tables = all_tables(outcome)
+    tables = all_tables(outcome) if tables is None else tables
     for name in SHEETS:
         on_sheet = [table for table in tables.values() if table.sheet == name]
         if on_sheet:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Iterator
 from itertools import groupby
 from typing import Any, Final
@@ -13,6 +14,7 @@ from study.report.tables import Table
 _HEIGHT = 300
 _ROWS = 17
 _MOST_CATEGORIES = 120
+_DECAY_S = 0.2
 _DASHES = ("solid", "dash", "round_dot", "long_dash_dot")
 _MARKERS = ("circle", "square", "triangle", "diamond")
 
@@ -33,6 +35,9 @@ def chart_rows(table: Table) -> int:
     if table.n_rows == 0 or table.key not in _CHARTS:
         return 0
     if table.key in _SHORT and table.n_rows > _MOST_CATEGORIES:
+        return 0
+    whole = _WITHOUT_GAPS.get(table.key)
+    if whole and any(isinstance(v, float) and math.isnan(v) for v in table.column(whole)):
         return 0
     blocks = _blocks(table, _BLOCK_KEYS[table.key]) if table.key in _BLOCK_KEYS else [(0, 0)]
     return _ROWS * len(list(blocks))
@@ -219,6 +224,21 @@ def _inherent(book: Any, sheet: Any, place: Place) -> None:
         _insert(sheet, chart, place, width=560, down=number)
 
 
+def _decay(book: Any, sheet: Any, place: Place) -> None:
+    table = place.table
+    for number, (first, last) in enumerate(_blocks(table, _BLOCK_KEYS[table.key])):
+        shown = sum(float(t) <= _DECAY_S for t in table.column("time_s")[first : last + 1])  # type: ignore[arg-type]
+        chart = book.add_chart({"type": "scatter", "subtype": "straight"})
+        for i, (key, name) in enumerate(
+            (("envelope_ka", "envelope"), ("iac_ka", "a.c. component, r.m.s."), ("idc_ka", "d.c. component"))
+        ):
+            _line(chart, place, (first, first + shown - 1), ("time_s", key), name=name, i=i)
+        title = f"{table.column('board')[first]}: current against time ({table.column('mode')[first]})"
+        _dress(chart, title, "Time [s]", "Current [kA]")
+        chart.set_x_axis({**_axis("Time [s]"), "min": 0, "max": _DECAY_S, "label_position": "low"})
+        _insert(sheet, chart, place, width=560, down=number)
+
+
 def _line(
     chart: Any,
     place: Place,
@@ -296,8 +316,11 @@ _BLOCK_KEYS: Final[dict[str, tuple[str, ...]]] = {
     "sharing_curves": ("mode", "island", "adjusted"),
     "setting_lines": ("mode", "island"),
     "inherent_curves": ("genset",),
+    "fault_decay": ("board",),
 }
-_SHORT: Final = ("load_balance_islands", "set_loading", "boards")
+_SHORT: Final = ("load_balance_islands", "set_loading", "boards", "board_ratings")
+_WITHOUT_GAPS: Final = {"board_ratings": "rated_peak_ka"}
+"""Columns that a chart would show as nought where they hold words."""
 _CHARTS: Final[dict[str, Callable[[Any, Any, Place], None]]] = {
     "mode_figures": _voltages,
     "load_balance_islands": _bars(
@@ -313,4 +336,8 @@ _CHARTS: Final[dict[str, Callable[[Any, Any, Place], None]]] = {
     "setting_lines": _lines,
     "regulation_curves": _regulation,
     "inherent_curves": _inherent,
+    "fault_decay": _decay,
+    "board_ratings": _bars(
+        "Peak current [kA]", ("limited_peak_ka", "greatest peak"), ("rated_peak_ka", "rated peak withstand")
+    ),
 }

@@ -212,6 +212,10 @@ def remarks(outcome: StudyOutcome) -> tuple[Remark, ...]:
         found += _remarks("Regulation", row.genset, row.findings)
     for island in outcome.sharing.islands:
         found += _remarks("Sharing", island.mode, island.findings)
+    for left in outcome.sharing.not_studied:
+        found.append(Remark(source="Sharing", where=left.mode, text=f"{', '.join(left.sets)}: {left.reason}"))
+    for case in outcome.sharing.cases:
+        found += _remarks("Maladjusted set", case.mode, [f"Case {case.case}: {case.sentence}"])
     return tuple(dict.fromkeys(found))
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any, Final
 
@@ -70,13 +71,15 @@ class FindingView:
     finding: Finding
 
 
-def report_page(outcome: StudyOutcome) -> str:
+def report_page(outcome: StudyOutcome, tables: Mapping[str, Table] | None = None) -> str:
     """Return the report as one HTML page without anything external.
 
     Parameters
     ----------
     outcome : StudyOutcome
         The study.
+    tables : mapping of str to Table, optional
+        `all_tables` of the study, where they have been made already.
 
     Returns
     -------
@@ -95,13 +98,13 @@ def report_page(outcome: StudyOutcome) -> str:
     )
     figures = draw_figures(outcome)
     page = environment.get_template("report.html.j2").render(
-        **_context(outcome, figures), drawn={d.key: Markup(d.svg) for d in figures.every}
+        **_context(outcome, figures, all_tables(outcome) if tables is None else tables),
+        drawn={d.key: Markup(d.svg) for d in figures.every},
     )
     return str(page)
 
 
-def _context(outcome: StudyOutcome, figures: Figures) -> dict[str, Any]:
-    tables = all_tables(outcome)
+def _context(outcome: StudyOutcome, figures: Figures, tables: Mapping[str, Table]) -> dict[str, Any]:
     grid = verdict_grid(outcome)
     shown = [_finding_view(f) for f in findings(outcome)]
     acting = [f for f in shown if f.finding.status != "close"]
@@ -141,7 +144,7 @@ def _sections(outcome: StudyOutcome) -> list[tuple[str, str]]:
     return [(key, title) for key, title in _SECTIONS if key not in absent]
 
 
-def _views(tables: dict[str, Table], outcome: StudyOutcome) -> dict[str, TableView]:
+def _views(tables: Mapping[str, Table], outcome: StudyOutcome) -> dict[str, TableView]:
     """Return the tables that have a row, by key; the page asks for them by name."""
     views = {}
     for key, table in tables.items():

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import math
+from collections.abc import Mapping
 from dataclasses import asdict
 from typing import Any
 
@@ -14,7 +15,7 @@ from study.report.tables import Column, Table, Value
 FORMAT = "vessel-study-results/1"
 
 
-def json_document(outcome: StudyOutcome) -> dict[str, Any]:
+def json_document(outcome: StudyOutcome, tables: Mapping[str, Table] | None = None) -> dict[str, Any]:
     """Return the whole study as dictionaries, lists, texts and numbers.
 
     NaN and infinite values become null. A table with columns for each mode has them under ``modes``, by the
@@ -24,12 +25,15 @@ def json_document(outcome: StudyOutcome) -> dict[str, Any]:
     ----------
     outcome : StudyOutcome
         The study.
+    tables : mapping of str to Table, optional
+        `all_tables` of the study, where they have been made already.
 
     Returns
     -------
     dict
         Ready for `json.dumps`.
     """
+    tables = all_tables(outcome) if tables is None else tables
     return {
         "format": FORMAT,
         "tool_version": outcome.tool_version,
@@ -39,24 +43,26 @@ def json_document(outcome: StudyOutcome) -> dict[str, Any]:
         },
         "project": {key: _json_value(value) for key, value in asdict(outcome.plant.project).items()},
         "modes": list(outcome.modes),
-        "tables": {key: table_document(table) for key, table in all_tables(outcome).items()},
+        "tables": {key: table_document(table) for key, table in tables.items()},
     }
 
 
-def json_text(outcome: StudyOutcome) -> str:
+def json_text(outcome: StudyOutcome, tables: Mapping[str, Table] | None = None) -> str:
     """Return the study as JSON text.
 
     Parameters
     ----------
     outcome : StudyOutcome
         The study.
+    tables : mapping of str to Table, optional
+        `all_tables` of the study, where they have been made already.
 
     Returns
     -------
     str
         The text, the same for the same study.
     """
-    return json.dumps(json_document(outcome), ensure_ascii=False, allow_nan=False, indent=1) + "\n"
+    return json.dumps(json_document(outcome, tables), ensure_ascii=False, allow_nan=False) + "\n"
 
 
 def table_document(table: Table) -> dict[str, Any]:

@@ -40,19 +40,18 @@ def governing_table(outcome: StudyOutcome, result: ShortCircuitResult) -> Table:
     columns = [
         text_column("board", "Board"),
         text_column("role", "Role"),
+        text_column("mode", "Greatest peak in"),
+        text_column("iac_mode", "Greatest Iac(T/2) in"),
+        text_column("least_mode", "Least fault in"),
         Column(key="u_nominal_v", heading="Nominal", unit="V", most_decimals=0),
-        text_column("mode", "Mode of greatest peak"),
         ka_column("ik_initial_ka", "I''k"),
         ka_column("iac_half_ka", "Iac(T/2)"),
         ka_column("idc_half_ka", "idc(T/2)"),
         ka_column("ip_ka", "ip"),
         ka_column("peak_ka", "Greatest peak"),
         Column(key="cos_phi", heading="cos\u00a0φ", most_decimals=3, digits=3),
-        text_column("iac_mode", "Mode of greatest Iac(T/2)"),
         ka_column("iac_highest_ka", "Greatest Iac(T/2)"),
-        text_column("lowest_mode", "Mode of smallest peak"),
         ka_column("ip_lowest_ka", "Smallest ip"),
-        text_column("least_mode", "Mode of least fault"),
         ka_column("least_ka", LEAST_HEADING, 3, digits=3),
         text_column("dead_in", "Dead in"),
         cell_column(),
@@ -80,12 +79,11 @@ def _governing_row(
     result: ShortCircuitResult, place: int, role: dict[str, str], cells: dict[str, str]
 ) -> tuple[Value, ...]:
     name, modes = result.places.names[place], solved_modes(result)
-    lead = (name, role.get(name, ""), float(result.places.u_nominal_v[place]))
-    dead = [m.mode for m in modes if not m.maximum.live[place]]
-    dead_words = mode_words(dead, [m.mode for m in result.modes])
+    u_nominal_v, cell = float(result.places.u_nominal_v[place]), cells.get(name, "")
+    dead = mode_words([m.mode for m in modes if not m.maximum.live[place]], [m.mode for m in result.modes])
     governing = governing_mode(result, place)
     if governing is None:
-        return (*lead, "none", *(None,) * 12, dead_words, cells.get(name, ""))
+        return (name, role.get(name, ""), "none", "", "", u_nominal_v, *(None,) * 9, dead, cell)
     names = [m.mode for m in modes]
     case = governing.maximum
     ip = [float(m.maximum.ip_a[place]) for m in modes]
@@ -93,21 +91,20 @@ def _governing_row(
     iac = greatest(names, [float(m.maximum.iac_half_a[place]) for m in modes])
     minimum = least(names, [least_a(m.minimum, place) for m in modes])
     return (
-        *lead,
+        name,
+        role.get(name, ""),
         top.words if top else governing.mode,
+        iac.words if iac else "",
+        minimum.words if minimum else "no fault current",
+        u_nominal_v,
         *(
             ka(v[place])
             for v in (case.ik_initial_a, case.iac_half_a, case.idc_half_a, case.ip_a, case.peak_a)
         ),
         float(case.cos_phi[place]),
-        iac.words if iac else "",
-        ka(iac.value) if iac else math.nan,
-        low.words if low else "",
-        ka(low.value) if low else math.nan,
-        minimum.words if minimum else "no fault current",
-        ka(minimum.value) if minimum else math.nan,
-        dead_words,
-        cells.get(name, ""),
+        *(ka(found.value) if found else math.nan for found in (iac, low, minimum)),
+        dead,
+        cell,
     )
 
 

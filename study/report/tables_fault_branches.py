@@ -104,12 +104,12 @@ def quick_table(result: ShortCircuitResult) -> Table:
         text_column("island", "Boards from"),
         text_column("rule", "Rule of thumb"),
         text_column("quantity", "Estimates", kind="long text"),
+        text_column("basis", "Basis", kind="long text"),
         ka_column("estimate_ka", "Estimate"),
         ka_column("ik_initial_ka", "I''k in detail"),
         ka_column("iac_half_ka", "Iac(T/2) in detail"),
         ka_column("ip_ka", "ip in detail"),
         Column(key="estimate_multiple", heading="Estimate / I''k", most_decimals=2, digits=3),
-        text_column("basis", "Basis", kind="long text"),
     ]
     rows = [row for mode in solved_modes(result) for row in _quick_rows(result, mode)]
     return make_table(
@@ -141,10 +141,10 @@ def _quick_rows(result: ShortCircuitResult, mode: ModeShortCircuit) -> Iterable[
             quick.boards[0] if quick.boards else "",
             quick.rule,
             quick.quantity,
+            quick.basis,
             value,
             *detail,
             value / detail[0] if detail[0] > 0 else math.nan,
-            quick.basis,
         )
 
 
@@ -160,7 +160,7 @@ def _strongest(result: ShortCircuitResult, case: FaultCase, boards: Sequence[str
 
 def _worked_quick(rows: Sequence[tuple[Value, ...]]) -> Worked | None:
     for row in rows:
-        estimate, detail, multiple = row[4], row[5], row[8]
+        estimate, detail, multiple = row[5], row[6], row[9]
         if isinstance(multiple, float) and math.isfinite(multiple):
             line = WorkedLine(
                 label="Estimate / I''k",

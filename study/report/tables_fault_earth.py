@@ -32,10 +32,10 @@ def earth_table(outcome: StudyOutcome, result: ShortCircuitResult) -> Table:
     columns = [
         text_column("boards", "Boards of the system", kind="long text"),
         text_column("modes", "Modes"),
-        Column(key="u_nominal_v", heading="Nominal", unit="V", most_decimals=0),
         text_column("earthing", "Neutral"),
-        Column(key="capacitance_uf", heading="Capacitance of a phase", unit="µF", most_decimals=3, digits=3),
         text_column("capacitance_data", "Capacitance is"),
+        Column(key="u_nominal_v", heading="Nominal", unit="V", most_decimals=0),
+        Column(key="capacitance_uf", heading="Capacitance of a phase", unit="µF", most_decimals=3, digits=3),
         Column(key="capacitive_a", heading="Capacitive current", unit="A", most_decimals=3, digits=3),
         Column(
             key="resistor_a", heading="Resistor current", unit="A", most_decimals=2, digits=3, missing="none"
@@ -94,10 +94,10 @@ def _earth_row(system: EarthSystem) -> tuple[Value, ...]:
     )
     return (
         ", ".join(system.boards),
-        system.u_nominal_v,
         system.earthing,
-        1e6 * system.capacitance_f,
         "by data" if system.capacitance_given else "typical",
+        system.u_nominal_v,
+        1e6 * system.capacitance_f,
         # NaN is not equal to itself, so that rows with it would never be drawn together.
         *(None if math.isnan(v) else v for v in values),
     )
@@ -166,10 +166,10 @@ def detection_table(outcome: StudyOutcome, ratings: FaultRatingsResult) -> Table
     columns = [
         text_column("boards", "Boards of the system", kind="long text"),
         text_column("modes", "Modes"),
-        Column(key="u_nominal_v", heading="Nominal", unit="V", most_decimals=0),
         text_column("earthing", "Neutral"),
-        Column(key="capacitive_a", heading="Capacitive current", unit="A", most_decimals=3, digits=3),
         text_column("capacitance_data", "Capacitance is"),
+        Column(key="u_nominal_v", heading="Nominal", unit="V", most_decimals=0),
+        Column(key="capacitive_a", heading="Capacitive current", unit="A", most_decimals=3, digits=3),
         Column(
             key="fault_a",
             heading="Earth-fault current",
@@ -210,10 +210,10 @@ def detection_table(outcome: StudyOutcome, ratings: FaultRatingsResult) -> Table
 def _detection_row(row: EarthFaultRow) -> tuple[Value, ...]:
     return (
         ", ".join(row.boards),
-        row.u_nominal_v,
         row.earthing,
-        _known(row.capacitive_a),
         "by data" if row.capacitance_given else "typical",
+        row.u_nominal_v,
+        _known(row.capacitive_a),
         _known(row.fault_a),
         _known(row.pick_up_a),
         row.pick_up_device,

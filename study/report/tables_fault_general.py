@@ -145,15 +145,11 @@ def agreement_table(result: ShortCircuitResult) -> Table:
         columns=[
             text_column("mode", "Mode"),
             text_column("case", "Case"),
-            Column(
-                key="largest_difference_pu",
-                heading="Largest relative difference",
-                kind="tiny",
-            ),
             text_column("compared", "What was compared", kind="long text"),
+            Column(key="largest_difference_pu", heading="Largest relative difference", kind="tiny"),
         ],
         rows=[
-            (view.mode, view.name, view.general.largest_difference, view.general.comparison)
+            (view.mode, view.name, view.general.comparison, view.general.largest_difference)
             for view in cases(result)
         ],
     )

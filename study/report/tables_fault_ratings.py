@@ -163,10 +163,10 @@ def boards_table(ratings: FaultRatingsResult, cells: Mapping[str, str]) -> Table
     columns = [
         text_column("board", "Board"),
         text_column("mode", "Worst mode"),
+        text_column("limited_by", "Peak limited by"),
         ka_column("ip_ka", "ip"),
         ka_column("greatest_peak_ka", "Greatest peak"),
         ka_column("limited_peak_ka", "Peak, limited", against="rated_peak_ka"),
-        text_column("limited_by", "Limited by"),
         ka_column("rated_peak_ka", "Rated Ipk", exact=True, missing=NOT_GIVEN),
         percent_column("peak_percent", "Peak, of rated", against=100.0, missing="not assessed"),
         ka_column("enough_peak_ka", "Enough Ipk would be", missing="none usual"),
@@ -207,8 +207,8 @@ def _board_row(b: BoardRatings, i: int, m: int, words: str, cells: Mapping[str, 
     return (
         b.names[i],
         words,
-        *(shown(live, v[i, m]) for v in (b.ip_peak_ka, b.greatest_peak_ka, b.limited_peak_ka)),
         b.limited_by[i],
+        *(shown(live, v[i, m]) for v in (b.ip_peak_ka, b.greatest_peak_ka, b.limited_peak_ka)),
         float(b.rated_peak_ka[i]),
         shown(live, of_rating(float(b.limited_peak_ka[i, m]), float(b.rated_peak_ka[i]))),
         shown(live, b.enough_peak_ka[i]),
@@ -237,9 +237,10 @@ def ties_table(ratings: FaultRatingsResult, cells: Mapping[str, str]) -> Table:
     columns = [
         text_column("tie", "Tie"),
         text_column("mode", "Worst mode"),
+        text_column("rated_by", "Ipk is of board"),
+        text_column("rated_heat_by", "Icw is of board"),
         ka_column("peak_ka", "Peak through it", against="rated_peak_ka"),
-        ka_column("rated_peak_ka", "Rated Ipk of the weaker board", exact=True, missing=NOT_GIVEN),
-        text_column("rated_by", "Of board"),
+        ka_column("rated_peak_ka", "Rated Ipk", exact=True, missing=NOT_GIVEN),
         percent_column("peak_percent", "Peak, of rated", against=100.0, missing="not assessed"),
         ka_column("heat_ka", "Equal heating", against="rated_short_time_ka"),
         Column(
@@ -250,8 +251,7 @@ def ties_table(ratings: FaultRatingsResult, cells: Mapping[str, str]) -> Table:
             exact=True,
             missing=NOT_GIVEN,
         ),
-        ka_column("rated_short_time_ka", "Rated Icw of the weaker board", exact=True, missing=NOT_GIVEN),
-        text_column("rated_heat_by", "Icw of board"),
+        ka_column("rated_short_time_ka", "Rated Icw", exact=True, missing=NOT_GIVEN),
         percent_column("heat_percent", "Heating, of rated", against=100.0, missing="not assessed"),
         cell_column(),
     ]
@@ -262,7 +262,10 @@ def ties_table(ratings: FaultRatingsResult, cells: Mapping[str, str]) -> Table:
         sheet=SHEET,
         columns=columns,
         rows=rows,
-        notes=("The larger of what flows through the tie into a fault on either side.",),
+        notes=(
+            "The larger of what flows through the tie into a fault on either side, against the weaker of "
+            "both boards.",
+        ),
     )
 
 
@@ -272,14 +275,14 @@ def _tie_row(t: TieRatings, i: int, m: int, words: str, cells: Mapping[str, str]
     return (
         t.names[i],
         words,
+        t.rated_by[i],
+        t.rated_heat_by[i],
         shown(live, peak),
         float(t.rated_peak_ka[i]),
-        t.rated_by[i],
         shown(live, of_rating(peak, float(t.rated_peak_ka[i]))),
         shown(live, heat),
         float(t.rated_duration_s[i]),
         float(t.rated_short_time_ka[i]),
-        t.rated_heat_by[i],
         shown(live, of_rating(heat, float(t.rated_short_time_ka[i]))),
         cells.get(t.names[i], ""),
     )

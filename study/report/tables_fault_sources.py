@@ -56,10 +56,10 @@ def sources_table(outcome: StudyOutcome, result: ShortCircuitResult) -> Table:
         ka_column("ip_ka", "ip", 3, digits=3),
         ka_column("sustained_ka", "Sustained", 3, digits=3),
         Column(key="sustained_multiple", heading="Sustained, times rated", most_decimals=2, digits=3),
+        Column(key="holds_s", heading="Kept up for", unit="s", most_decimals=2, digits=2, infinite=NO_END),
+        percent_column("preload_percent", "Load before the fault", most_decimals=0),
         text_column("sustained_data", "Sustained current is"),
         text_column("holds", "What it keeps up", kind="long text"),
-        Column(key="holds_s", heading="For", unit="s", most_decimals=2, digits=2, infinite=NO_END),
-        percent_column("preload_percent", "Load before the fault", most_decimals=0),
     ]
     found: dict[tuple[Value, ...], list[str]] = {}
     for view in cases(result):
@@ -107,10 +107,10 @@ def _source_row(view: CaseView, s: int) -> tuple[Value, ...]:
         _rounded(ka(at.peak_a[s])),
         _rounded(ka(sustained)),
         _rounded(sustained / rated) if rated > 0 else None,
-        _sustained_words(at, s),
-        at.holds[s],
         float(at.holds_s[s]),
         _rounded(percent(at.preload[s])),
+        _sustained_words(at, s),
+        at.holds[s],
     )
 
 
@@ -148,13 +148,12 @@ def contributions_table(outcome: StudyOutcome, result: ShortCircuitResult) -> Ta
         text_column("case", "Case"),
         text_column("board", "Board"),
         text_column("source", "Source"),
-        text_column("kind", "Kind"),
+        text_column("through", "Arrives through"),
         ka_column("ik_initial_ka", "I''k", 3, digits=3),
         ka_column("iac_half_ka", "Iac(T/2)", 3, digits=3),
         ka_column("ip_ka", "ip", 3, digits=3),
         percent_column("ip_share_percent", "Part of ip", digits=3),
         ka_column("sustained_ka", "Sustained", 3, digits=3),
-        text_column("through", "Arrives through"),
     ]
     leading = leading_boards(outcome, result)
     rows: list[tuple[Value, ...]] = []
@@ -192,13 +191,12 @@ def _contributions(
             view.name,
             result.places.names[place],
             case.sources.names[s],
-            case.sources.kinds[s],
+            _through(case, ends, s, result.places.names[place]),
             ka(case.source_initial_a[place, s]),
             ka(case.source_half_a[place, s]),
             ka(case.source_ip_a[place, s]),
             percent(case.source_ip_a[place, s] / total),
             ka(case.parts.sustained_a[place, s]),
-            _through(case, ends, s, result.places.names[place]),
         )
 
 

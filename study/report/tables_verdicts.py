@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Final
@@ -40,6 +41,7 @@ _OF_LOAD_FLOW: Final = ("voltage", "frequency", "cables")
 VESSEL: Final = "vessel"
 _SHEET = "R Summary"
 _SHOWN = 3
+_NEAREST = 3  # verdicts within their limit that are listed for each quantity, mode and subject
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -233,7 +235,7 @@ def verdicts_table(outcome: StudyOutcome) -> Table:
             v.cell,
         )
         for (subject, mode), found in _by_place(outcome).items()
-        for v in found
+        for v in _listed(found)
     ]
     return make_table(
         key="verdicts",
@@ -244,10 +246,24 @@ def verdicts_table(outcome: StudyOutcome) -> Table:
         notes=(
             "Margin is the distance to the limit in % of it, positive inside. 'Depends on data': the verdict "
             "flips within the tolerance of the data behind it.",
+            f"Of {len(outcome.verdicts)} judged quantities {len(rows)} are listed: all that are not within "
+            f"their limit, and of the others the {_NEAREST} nearest to it for each quantity. Other tables "
+            "hold every value with its verdict.",
         ),
         group_by=("subject", "mode"),
         shown_per_group=_SHOWN,
     )
+
+
+def _listed(found: Sequence[Verdict]) -> list[Verdict]:
+    """Return what is listed of the verdicts of one subject and mode, which are in order, worst first."""
+    within: Counter[str] = Counter()
+    listed = []
+    for v in found:
+        within[v.quantity] += v.status == "within"
+        if v.status != "within" or within[v.quantity] <= _NEAREST:
+            listed.append(v)
+    return listed
 
 
 def governing_table(outcome: StudyOutcome) -> Table:
