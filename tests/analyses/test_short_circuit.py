@@ -435,3 +435,90 @@ def test_quick_estimates_of_the_rules():
     rated = 75e3 / (SQRT3 * 450.0 * 0.93 * 0.86)
     assert rows["46 CFR maximum asymmetrical"] == pytest.approx(10.0 * RATED_A + 4.0 * rated)
     assert rows["ClassNK"] == pytest.approx(10.0 * RATED_A + 3.0 * rated)
+
+
+# ---- what decays, and what is carried further
+
+
+def test_when_the_motors_have_died_away_the_sets_give_what_they_give_without_them():
+    """Behind a common impedance the sets take over; the transient network has no motors in it."""
+    far = plants.cable("C6", "MSB", "Far", length_m=100.0)
+    heater = plants.load("Far", "MSB", kind="heating", p_rated_kw=5.0)
+    plant = replace(distributed(), cables=(*distributed().cables, far))
+    with_motors = study(replace(plant, loads=(*plant.loads, heater)))
+    bare = [c for c in plant.cables if c.name not in ("C4", "C5")]
+    without = study(replace(plant, loads=(heater,), cables=tuple(bare)))
+    late = np.flatnonzero(with_motors.modes[0].maximum.time_s > 0.8)[0]
+    for name in ("Far", "DB"):
+        k, mode = at(with_motors, name)
+        j, other = at(without, name)
+        assert mode.maximum.iac_a[k][late] == pytest.approx(other.maximum.iac_a[j][late], rel=3e-3)
+        assert mode.maximum.iac_a[k][0] > 1.05 * other.maximum.iac_a[j][0] or name == "Far"
+
+
+def test_a_motors_own_cable_lengthens_its_decay_by_reactance_alone():
+    """T''M = (XM + Xc)/(w RR), TdcM = (XM + Xc)/(w (RS + Rc)): IEC 61363-1, from memory, typical data."""
+    result = study(distributed())
+    case = result.modes[0].maximum
+    k, row = result.places.names.index("MSB"), case.sources.names.index("Thruster")
+    base = 440.0 / (SQRT3 * 300e3 / (SQRT3 * 440.0 * 0.93 * 0.86))
+    scale = 1.0 / (6.5 * math.hypot(0.055, 0.15))
+    x = 0.15 * scale * base + 0.0045
+    x4 = (8.0 * math.pi * HZ * 1e-4 / 0.193) ** 2
+    r_cable = 0.193 * 0.05 * (1.0 + x4 / (192.0 + 0.8 * x4))
+    omega = 2.0 * math.pi * HZ
+    assert case.parts.t_sub_s[k, row] == pytest.approx(x / (omega * 0.021 * scale * base), rel=1e-6)
+    assert case.parts.t_dc_s[k, row] == pytest.approx(
+        x / (omega * (0.034 * scale * base + r_cable)), rel=1e-6
+    )
+
+
+def test_breaking_current_falls_with_mu_and_q():
+    """Ib = |sum of I (1 - jX''/Z (1 - mu q))|, mu = 0.71 + 0.51 e^(-0.30 r), q = 0.79 + 0.12 ln m at 0.05 s.
+
+    IEC 60909-0, from memory; the rule of meshed networks at one board, in plain arithmetic.
+    """
+    motor = plants.load("Pump", "MSB", p_rated_kw=75.0, u_rated_v=450.0, poles=4)
+    case = study(one_board(a_set("G1"), loads=[motor])).modes[0].iec60909_maximum
+    c, base_ohm = 1.05, 450.0**2 / 1000e3
+    z_set = c / (1.0 + 0.15 * 0.6) * complex(0.01, 0.15) * base_ohm
+    rated = 75e3 / (SQRT3 * 450.0 * 0.93 * 0.86)
+    z_motor = 450.0 / (SQRT3 * rated * 6.5) * complex(0.42, 1.0) / math.hypot(0.42, 1.0)
+    total = 0j
+    for z, in_a, q in ((z_set, RATED_A, 1.0), (z_motor, rated, 0.79 + 0.12 * math.log(0.0375))):
+        current = c * 450.0 / SQRT3 / z
+        mu = 0.71 + 0.51 * math.exp(-0.30 * abs(current) / in_a)
+        total += current * (1.0 - 1j * z.imag / z * (1.0 - mu * q))
+    assert case.ib_a[0] == pytest.approx(abs(total), rel=1e-6)
+
+
+def test_a_device_that_acts_at_once_sees_more_than_one_that_waits():
+    plant = distributed()
+    fast = plants.device("Q3", "C3", end="MSB", instantaneous_a=4000.0, breaking_time_max_s=0.05)
+    result = study(replace(plant, devices=(plant.devices[0], fast)))
+    mode, db = result.modes[0], result.places.names.index("DB")
+    row = mode.devices.names.index("Q3")
+    assert mode.devices.operating_s[row] == 0.05
+    instant = np.flatnonzero(mode.minimum.time_s == 0.05)[0]
+    assert mode.devices.least_a[row] == pytest.approx(mode.minimum.least_a[db][instant])
+    own = mode.maximum.ends
+    msb = result.places.names.index("MSB")
+    end = next(n for n, b in enumerate(own.branches) if b == "C3" and own.place[n] == msb)
+    assert mode.devices.duty_half_a[row] == pytest.approx(max(own.through_half_a[end], own.rest_half_a[end]))
+
+
+def test_the_equivalent_generator_agrees_with_every_source_by_itself():
+    """Both carry the sources through one impedance (IEC 61363-1, clause 7, from memory); within 3 %."""
+    result = study(distributed())
+    k, mode = at(result, "DB")
+    assert mode.maximum.equivalent_half_a[k] == pytest.approx(mode.maximum.iac_half_a[k], rel=0.03)
+    step_up = plants.plant(
+        boards=[plants.board("MSB", 450.0), plants.board("LB", 230.0)],
+        gensets=[a_set("G1")],
+        transformers=[plants.transformer("T1", "MSB", "LB", u_primary_v=450.0, u_secondary_v=250.0)],
+    )
+    result = study(step_up)
+    k, mode = at(result, "LB")
+    assert mode.maximum.equivalent_half_a[k] == pytest.approx(mode.maximum.iac_half_a[k], rel=0.03)
+    board, _ = at(result, "MSB")
+    assert math.isnan(mode.maximum.equivalent_half_a[board])
