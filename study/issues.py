@@ -2,11 +2,44 @@
 
 from __future__ import annotations
 
+import unicodedata
 from collections.abc import Iterable
 from dataclasses import dataclass
-from typing import Literal
+from typing import Final, Literal
 
 Severity = Literal["fault", "warning", "note"]
+
+LONGEST_SENTENCE: Final = 400
+_HEAD: Final = 280
+_TAIL: Final = 100
+
+
+def one_line(text: str) -> str:
+    r"""Return a text as one line that a terminal can show.
+
+    Names from a workbook may hold line breaks and characters that steer a terminal or turn its writing round.
+
+    Parameters
+    ----------
+    text : str
+        Any text.
+
+    Returns
+    -------
+    str
+        The text with a blank for each control and format character and each line break.
+
+    Examples
+    --------
+    >>> one_line("Pump\nNo. 1\x1b[2J")
+    'Pump No. 1 [2J'
+    """
+    if text.isprintable():
+        return text
+    return "".join(" " if unicodedata.category(c) in _NOT_SHOWN else c for c in text)
+
+
+_NOT_SHOWN: Final = frozenset({"Cc", "Cf", "Cs", "Zl", "Zp"})
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -45,7 +78,7 @@ class Issue:
     def __str__(self) -> str:
         """Return the one-line form: address, found, wanted, code."""
         where = f"{self.address}: " if self.address else ""
-        return f"{where}{self.found}; {self.wanted} [{self.code}]"
+        return one_line(f"{where}{self.found}; {self.wanted} [{self.code}]")
 
 
 class StudyError(Exception):
@@ -67,7 +100,17 @@ class WorkbookError(StudyError):
 
 
 class PackageError(StudyError):
-    """The workbook file itself cannot be opened or written; the message is one sentence for the user."""
+    """The workbook file itself cannot be opened or written; the message is one sentence for the user.
+
+    Parameters
+    ----------
+    sentence : str
+        What is wrong and what to do; names in it may come from a damaged file and be of any length.
+    """
+
+    def __init__(self, sentence: str) -> None:
+        text = one_line(sentence)
+        super().__init__(text if len(text) <= LONGEST_SENTENCE else f"{text[:_HEAD]} ... {text[-_TAIL:]}")
 
 
 class SolveError(StudyError):

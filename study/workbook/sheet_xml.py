@@ -19,6 +19,7 @@ from study.workbook.package.xml import MAIN
 MAX_CELLS: Final = 4_000_000
 LAST_COLUMN: Final = 16_384
 LAST_ROW: Final = 1_048_576
+LONGEST_NUMBER: Final = 12
 _ROW, _CELL, _VALUE, _FORMULA = (f"{MAIN}}}{name}" for name in ("row", "c", "v", "f"))
 _TEXT, _INLINE, _PHONETIC, _ITEM = (f"{MAIN}}}{name}" for name in ("t", "is", "rPh", "si"))
 _EPOCH_1900: Final = datetime(1899, 12, 30)
@@ -167,6 +168,7 @@ class _CellReader:
         self.shared: dict[str, tuple[str, int, int]] = {}
         self.shared_index: str | None = None
         self.letters: dict[str, int] = {}
+        self.shown: dict[str, str] = {}
 
     def start(self, tag: str, attributes: Mapping[str, str]) -> None:
         if tag == _CELL:
@@ -191,7 +193,8 @@ class _CellReader:
             self._new_row(attributes.get("r"))
 
     def _new_row(self, number: str | None) -> None:
-        self.row = int(number) if number and number.isdigit() else self.row + 1
+        given = None if number is None else _whole(number)
+        self.row = self.row + 1 if given is None else given
         self.column = 0
         self.ref = None
         self.cells = self.sheet.rows.setdefault(self.row, {})
@@ -259,12 +262,27 @@ class _CellReader:
             number = float(text)
         except ValueError:
             return text
-        shown = self.tables.shown_as
-        style = int(self.attributes.get("s", "0"))
-        how = shown[style] if style < len(shown) else ""
+        if "_" in text or not text.isascii():
+            # Python takes these for numbers; no spreadsheet does.
+            return text
+        style = self.attributes.get("s", "0")
+        how = self.shown.get(style)
+        if how is None:
+            how = self.shown[style] = self._shown_as(style)
         if not how:
             return number
         return Percent(number) if how == "percent" else _date(number, self.tables)
+
+    def _shown_as(self, style: str) -> str:
+        number = _whole(style)
+        if number is None:
+            raise PackageError(f"part {self.part} has a cell of the style {style!r}; the file is damaged")
+        return self.tables.shown_as[number] if number < len(self.tables.shown_as) else ""
+
+
+def _whole(text: str) -> int | None:
+    text = text.strip()
+    return int(text) if text.isascii() and text.isdigit() and len(text) < LONGEST_NUMBER else None
 
 
 def _date(serial: float, tables: BookTables) -> Value:
@@ -278,8 +296,8 @@ def _text(text: str, _: BookTables) -> Value:
 
 
 def _shared(text: str, tables: BookTables) -> Value:
-    place = int(text) if text.strip().isdigit() else -1
-    if not 0 <= place < len(tables.strings):
+    place = _whole(text)
+    if place is None or place >= len(tables.strings):
         raise PackageError("a cell refers to a shared text that is not there; the file is damaged")
     return tables.strings[place]
 

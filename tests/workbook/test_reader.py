@@ -304,3 +304,15 @@ def test_an_address_that_no_sheet_has(content: str) -> None:
 def test_xml_that_breaks_off() -> None:
     with pytest.raises(PackageError, match="damaged"):
         _cells(f'<worksheet xmlns="{MAIN}"><sheetData><row r="1"><c r="A1">')
+
+
+@pytest.mark.parametrize("style", ["-1", "s", "", "1.0", "²", "99999999999999999999"])
+def test_a_style_that_is_no_number(style: str) -> None:
+    """A style counted from the end would show a plain number as a percentage."""
+    with pytest.raises(PackageError, match="style"):
+        _one(f'<c r="A1" s="{style}"><v>1</v></c>')
+
+
+@pytest.mark.parametrize("text", ["1_000", "１２", "0x10", "1,5", "12 kW"])
+def test_what_no_spreadsheet_takes_for_a_number_stays_text(text: str) -> None:
+    assert _one(f'<c r="A1"><v>{text}</v></c>') == text

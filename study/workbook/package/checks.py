@@ -216,8 +216,9 @@ def _check_xf(
     where: str, xf: Node, limits: dict[str, int], styles: int, declared: list[str]
 ) -> Iterator[str]:
     for name, limit in (limits | {"xfId": max(1, styles)}).items():
-        if whole_number(xf, name) >= limit:
-            yield f"styles: {where} refers to {name} {xf.attributes[name]} of {limit}"
+        number = whole_number(xf, name)
+        if number >= limit:
+            yield f"styles: {where} refers to {name} {number} of {limit}"
     number = whole_number(xf, "numFmtId")
     if number >= FIRST_CUSTOM_FORMAT and str(number) not in declared:
         yield f"styles: {where} refers to the number format {number}, which is not declared"
