@@ -67,6 +67,14 @@ def _source_impedance_ohm(voltage_v: ArrayLike, current_a: FloatArray) -> FloatA
     )
 
 
+def _reactance_ohm(z_ohm: FloatArray, r_ohm: FloatArray) -> FloatArray:
+    """Return the reactance of an impedance; 0 where the resistance, which X'' fixes, is more than all of it.
+
+    That happens where regulators hold nearly the subtransient current at a place of high resistance.
+    """
+    return np.asarray(np.sqrt(np.maximum(z_ohm**2 - r_ohm**2, 0.0)))
+
+
 def equivalent_generator(
     currents: FaultCurrent,
     *,
@@ -133,8 +141,8 @@ def equivalent_generator(
         ),
         r_ohm=r,
         x_sub_ohm=x_sub,
-        x_trans_ohm=np.sqrt(_source_impedance_ohm(voltage_v, transient) ** 2 - r**2),
-        x_sustained_ohm=np.sqrt(_source_impedance_ohm(voltage_v, sustained) ** 2 - r**2),
+        x_trans_ohm=_reactance_ohm(_source_impedance_ohm(voltage_v, transient), r),
+        x_sustained_ohm=_reactance_ohm(_source_impedance_ohm(voltage_v, sustained), r),
         r_dc_ohm=r,
         x_dc_ohm=x_sub,
     )
