@@ -9,7 +9,7 @@ from numpy.typing import ArrayLike, NDArray
 from scipy.sparse import csr_array
 
 from study.issues import SolveError
-from study.network.consumers import Demand
+from study.network.consumers import Demand, drawn_by
 from study.network.equations import Point, Problem
 from study.network.fields import field_state
 from study.network.laws import VoltageLaws, some, take, voltage_laws
@@ -217,7 +217,35 @@ class _Batch:
                 f"the droop circuit of {names} is reversed: the regulators run apart to their limits, and "
                 f"the sets cannot stay in step there {tried}"
             )
+        beyond = self._beyond_their_runs(n)
+        if beyond:
+            asks = "ask" if " and " in beyond else "asks"
+            return (
+                f"no operating point: {beyond} {asks} for more than the run there can carry at any voltage."
+            )
+        without = np.flatnonzero(self.state[:, n] == NO_EXCITATION)
+        if len(without):
+            names = " and ".join(self.sources[j].name for j in without)
+            return (
+                f"no operating point: the other sources hold the voltage so high that {names} would run "
+                f"without field, and cannot stay in step so {tried}"
+            )
         return f"no operating point: the load exceeds what sources and network can carry {tried}"
+
+    def _beyond_their_runs(self, n: int) -> str:
+        """Return the consumers at the end of a run that cannot carry their load from rated voltage."""
+        at = self.at.structure
+        one = np.array([n])
+        demand = Demand(constant=some(self.demand.constant, one), impedance=some(self.demand.impedance, one))
+        with np.errstate(invalid="ignore"):
+            v = drawn_by(at.ports, demand).leaf_voltage(np.ones((len(at.ports.bus), 1), complex))
+        buses = at.buses + np.flatnonzero(np.isnan(v[:, 0]))
+        names = [
+            x.name
+            for x, bus in zip(self.at.network.plant.loads, self.at.load_bus, strict=True)
+            if bus in buses
+        ]
+        return " and ".join(names)
 
     def _power(self, k: IntArray, power_state: IntArray) -> PowerLaws:
         if self.own and not power_state.any():

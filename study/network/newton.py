@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from study.network.consumers import drawn_by
+from study.network.consumers import Drawn, drawn_by
 from study.network.equations import Factors, Point, Problem, Structure, jacobian, residual
 
 FloatArray = NDArray[np.float64]
@@ -73,20 +73,20 @@ def solve_one(problem: Problem, start: Point) -> Solved:
     at = problem.at
     accept, drawn = at.accept, drawn_by(at.ports, problem.demand)
     x = _pack(start)
-    f = residual(problem, drawn, start)
+    f = _residual(problem, drawn, start)
     size = float(np.abs(f).max())
     factors: Factors | None = None
     fresh = False
     step = 1.0
     for count in range(1, MOST_ITERATIONS + 1):
-        if size <= accept:
+        if size <= accept or not np.isfinite(size):
             return _ended(at, x, size, count - 1, factors)
         if factors is None or not fresh:
             factors = _factors(problem, _unpack(at, x))
             if factors is None:
                 break
         trial = x - step * factors.solve(f)
-        f_trial = _finite(residual(problem, drawn, _unpack(at, trial)))
+        f_trial = _residual(problem, drawn, _unpack(at, trial))
         size_trial = float(np.abs(f_trial).max())
         if size_trial < size:
             fresh = size_trial < SLOW * size
@@ -119,7 +119,10 @@ def _ended(at: Structure, x: FloatArray, size: float, count: int, factors: Facto
     )
 
 
-def _finite(f: FloatArray) -> FloatArray:
+def _residual(problem: Problem, drawn: Drawn, x: Point) -> FloatArray:
+    """Return the residual, infinite where a leaf's branch cannot carry its load at that point."""
+    with np.errstate(invalid="ignore", over="ignore", divide="ignore"):
+        f = residual(problem, drawn, x)
     return np.where(np.isfinite(f), f, np.inf)
 
 

@@ -408,9 +408,8 @@ def main() -> None:
         print(f"{name:18s} {boards:4d} boards {rate:10.0f} /s  {apart:.1e} pu")
     for boards in SIZES:
         own, theirs = one_mode(boards)
-        print(
-            f"one mode, {boards} boards: {1e3 * own:.2f} ms, runpp {1e3 * theirs:.1f} ms, ratio {theirs / own:.0f}"
-        )
+        times = f"{1e3 * own:.2f} ms, runpp {1e3 * theirs:.1f} ms, ratio {theirs / own:.0f}"
+        print(f"one mode, {boards} boards: {times}")
     total, bare = whole_study()
     times = f"{total:.2f} s, of it pandapower {bare:.2f} s, ratio {total / bare:.2f}"
     print(f"ten modes of the large vessel: {times}")

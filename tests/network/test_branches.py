@@ -52,7 +52,7 @@ R_OHM, X_OHM = 0.24608 * 1.00195 * 0.05, 0.090 * 0.05
 
 
 def test_a_cable_drops_what_a_hand_calculation_says() -> None:
-    """Two buses, exact quadratic: V2^4 + V2^2 (2(RP + XQ) - V1^2) + (R^2 + X^2) S^2 = 0, in V, W and ohm."""
+    """Two buses, exact: V2^4 + V2^2 (2(RP + XQ) - V1^2) + (R^2 + X^2) S^2 = 0, in V, W and ohm."""
     p, q = 100e3, 60e3
     b = 2.0 * (R_OHM * p + X_OHM * q) - 440.0**2
     v2 = (0.5 * (-b + (b * b - 4.0 * (R_OHM**2 + X_OHM**2) * (p * p + q * q)) ** 0.5)) ** 0.5
@@ -63,6 +63,30 @@ def test_a_cable_drops_what_a_hand_calculation_says() -> None:
     assert s.i_to_a[k] == pytest.approx(current, rel=1e-5)
     loss_kw = 3.0 * current**2 * R_OHM / 1000.0
     assert (s.s_from_kva[k] + s.s_to_kva[k]).real == pytest.approx(loss_kw, rel=1e-3)
+
+
+@pytest.mark.parametrize("boards", [0, 1])
+def test_no_load_beyond_the_nose_is_carried(boards: int) -> None:
+    """Largest load at power factor 1 behind R + jX: V^2/(2 (R + |Z|)), where the quadratic loses its root.
+
+    With a board half-way the voltage there is iterated; without one it is closed form.
+    """
+    half = {"length_m": 500.0}
+    runs = [cable("C", "M", "L", length_m=1000.0)]
+    extra = []
+    if boards:
+        runs = [cable("C1", "M", "N", **half), cable("C2", "N", "L", **half)]
+        extra = [board("N", 440.0)]
+    consumer = load("L", "N" if boards else "M", kind="converter")
+    g = genset("G", "M", u_rated_v=440.0, voltage_droop_pu=0.0)
+    p = plant(boards=[board("M", 440.0), *extra], gensets=[g], cables=runs, loads=[consumer])
+    r, x = 20.0 * R_OHM, 20.0 * X_OHM
+    nose_kw = 440.0**2 / (2.0 * (r + np.hypot(r, x))) / 1000.0
+    below, above = solve(p, [0.998 * nose_kw], [0.0]), solve(p, [1.002 * nose_kw], [0.0])
+    assert below.solved
+    assert abs(below.terminal_v_pu[0]) == pytest.approx(0.54, abs=0.02)  # upper root, just above the nose
+    assert not above.solved
+    assert ("exceeds what sources" in above.reason) if boards else ("L asks for more" in above.reason)
 
 
 def test_each_unit_in_use_has_its_own_run() -> None:
