@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import fields
+from dataclasses import dataclass, fields
 
 import numpy as np
 from numpy.typing import NDArray
@@ -25,8 +25,8 @@ TX_TRANSIENT_S = 0.1  # instant at which T'* is formed; not confirmed by the sta
 def behind_equivalent(net: FaultNetwork, rows: EndRows, parts: FaultCurrent) -> tuple[FloatArray, FloatArray]:
     """Return Iac(T/2) and ip of the equivalent generator behind the impedance to each place.
 
-    The sources are condensed at the nearest board that one of them feeds directly, without what comes from
-    the place's own side; that is added as it is.
+    The sources are condensed at the board above the place, without what comes from the place's own side;
+    that is added as it is.
 
     Source: IEC 61363-1:1998, clause 7, from memory.
 
@@ -48,48 +48,79 @@ def behind_equivalent(net: FaultNetwork, rows: EndRows, parts: FaultCurrent) -> 
     s, hz = net.sources, net.plant.network.plant.project.f_rated_hz
     if not len(s.bus):
         return half, ip
-    home, first, z, turns, _ = _paths(net)
-    z = z[net.place_bus] + net.place_z / turns[net.place_bus] ** 2
-    stub_rows = {(int(b), int(p)): n for n, (b, p) in enumerate(zip(rows.branch, rows.far_node, strict=True))}
-    row = np.array(
-        [
-            -1
-            if net.place_bus[p] < 0
-            else first[net.place_bus[p]]
-            if first[net.place_bus[p]] >= 0
-            else stub_rows.get((int(net.stub[p]), int(net.plant.place_node[p])), -1)
-            for p in range(len(half))
-        ],
-        np.int64,
-    )
-    places = np.flatnonzero((row >= 0) & (np.abs(z) > 0.0))
+    steps = _steps(net, rows)
+    places = np.flatnonzero((steps.row >= 0) & (np.abs(steps.z) > 0.0))
     if not len(places):
         return half, ip
-    at_home = home[net.place_bus[places]]
-    own_side = rows.share[row[places]]
-    own_side = np.where(row[places][:, None] >= 0, own_side, 0.0)
+    own_side = rows.share[steps.row[places]]
     columns = slice(0, len(s.bus))
     weight = (1.0 - own_side).T
+    at_home = steps.home[places]
     values = {f.name: getattr(parts, f.name)[at_home, columns].T for f in fields(FaultCurrent)}
     masked = {k: v * weight if k.endswith("_a") else v for k, v in values.items()}
+    # Held voltage may sustain more than a source gave at first; the equivalent has no impedance for that.
+    masked["sustained_a"] = np.minimum(masked["sustained_a"], masked["transient_a"])
     fed = masked["subtransient_a"].sum(axis=0) > 0.0
     places, own_side = places[fed], own_side[fed]
     upstream = FaultCurrent(**{k: v[:, fed] for k, v in masked.items()})
-    voltage = np.array([s.voltage[s.island == i].max(initial=1.0) for i in range(net.place_island.max() + 1)])
+    islands = range(int(net.place_island.max()) + 1)
+    voltage = np.array([s.voltage[s.island == i].max(initial=1.0) for i in islands])
     one = equivalent_generator(
         upstream,
-        voltage_v=SQRT3 * voltage[net.place_island[places]],
+        voltage_v=SQRT3 * voltage[net.place_island[places]] * steps.turns_home[places],
         frequency_hz=hz,
         tx_sub_s=0.5 / hz,
         tx_trans_s=TX_TRANSIENT_S,
     ).source
-    behind = through_impedance(one, r_ohm=z[places].real, x_ohm=z[places].imag, frequency_hz=hz).current
+    z = steps.z[places]
+    behind = through_impedance(one, r_ohm=z.real, x_ohm=z.imag, frequency_hz=hz).current
     ac, dc = half_cycle(behind, hz)
-    k = turns[net.place_bus[places]]
+    k = steps.ratio[places]
     own_ac, own_dc = half_cycle(_rows(parts, places, columns), hz)
     half[places] = ac / k + (own_ac * own_side).sum(axis=1)
     ip[places] = (SQRT2 * ac + dc) / k + ((SQRT2 * own_ac + own_dc) * own_side).sum(axis=1)
     return half, ip
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Steps:
+    """The last step to each place, [place]: from which place, by which end row, through what.
+
+    ``z`` and ``turns_home`` are of the home's level; ``ratio`` is the voltage of the place at 1 pu there.
+    """
+
+    home: IntArray
+    row: IntArray
+    z: ComplexArray
+    ratio: FloatArray
+    turns_home: FloatArray
+
+
+def _steps(net: FaultNetwork, rows: EndRows) -> _Steps:
+    """Return the last step to each place: from the board above it, past star points."""
+    paths = _paths(net)
+    place_of_bus = {int(b): p for p, b in reversed(list(enumerate(net.place_bus))) if net.stub[p] < 0}
+    end_of = _first_rows(net)
+    at = {(int(b), int(n)): k for k, (b, n) in enumerate(zip(rows.branch, rows.far_node, strict=True))}
+    count = len(net.place_bus)
+    home, row = np.full(count, -1, np.int64), np.full(count, -1, np.int64)
+    z, ratio, turns_home = np.zeros(count, complex), np.ones(count), np.ones(count)
+    for p in np.flatnonzero(net.place_bus >= 0):
+        bus = int(net.place_bus[p])
+        if net.stub[p] >= 0:
+            home[p] = place_of_bus[bus]
+            row[p] = at.get((int(net.stub[p]), int(net.plant.place_node[p])), -1)
+            z[p], turns_home[p] = net.place_z[p], paths.turns[bus]
+            continue
+        child, above = bus, int(paths.parent[bus])
+        while above >= 0 and above not in place_of_bus:
+            child, above = above, int(paths.parent[above])
+        if above < 0:
+            continue
+        home[p], row[p] = place_of_bus[above], end_of[int(paths.branch[child]), above]
+        z[p] = (paths.z[bus] - paths.z[above]) * paths.turns[above] ** 2
+        ratio[p], turns_home[p] = paths.turns[bus] / paths.turns[above], paths.turns[above]
+    return _Steps(home=home, row=row, z=z, ratio=ratio, turns_home=turns_home)
 
 
 def path_from_home(net: FaultNetwork, place: int) -> tuple[int, complex, NDArray[np.bool_]]:
@@ -113,7 +144,8 @@ def path_from_home(net: FaultNetwork, place: int) -> tuple[int, complex, NDArray
     downstream : ndarray of bool, shape (source,)
         True for sources that stand on the place's side of the home board.
     """
-    _, _, z, turns, parent = _paths(net)
+    paths = _paths(net)
+    z, turns, parent = paths.z, paths.turns, paths.parent
     bus, s = int(net.place_bus[place]), net.sources
     path = [bus]
     while parent[path[-1]] >= 0:
@@ -144,37 +176,42 @@ def _rows(parts: FaultCurrent, places: IntArray, columns: slice) -> FaultCurrent
     return FaultCurrent(**{f.name: getattr(parts, f.name)[places, columns] for f in fields(FaultCurrent)})
 
 
-def _paths(net: FaultNetwork) -> tuple[IntArray, IntArray, ComplexArray, FloatArray, IntArray]:
-    """Return, [bus]: home board's place, end row of the first branch, impedance from home, turns, parent.
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Paths:
+    """The way to each bus from the nearest bus that a lasting source feeds directly, [bus].
 
-    The impedance is on the home's level; ``turns`` is the voltage of the bus at 1 pu on the home.
+    ``parent`` (-1: fed directly) and ``branch``, the place in ``live`` of what leads there; ``z`` the
+    impedance on the level of the start; ``turns`` the voltage of the bus at 1 pu there.
     """
+
+    parent: IntArray
+    branch: IntArray
+    z: ComplexArray
+    turns: FloatArray
+
+
+def _paths(net: FaultNetwork) -> _Paths:
     count = len(net.bus_island)
-    home, first = np.full(count, -1, np.int64), np.full(count, -1, np.int64)
+    parent, branch = np.full(count, -1, np.int64), np.full(count, -1, np.int64)
     z, turns = np.zeros(count, complex), np.ones(count)
-    parent = np.full(count, -1, np.int64)
-    place_of_bus = {int(b): p for p, b in reversed(list(enumerate(net.place_bus))) if net.stub[p] < 0}
     lasting = [int(b) for k, b in enumerate(net.sources.bus) if not net.sources.asynchronous[k]]
     queue = list(dict.fromkeys(lasting))
-    for b in queue:
-        home[b] = place_of_bus.get(b, -1)
+    seen = set(queue)
     around: dict[int, list[tuple[int, int]]] = {}
     for n, (a, b) in enumerate(zip(net.from_bus, net.to_bus, strict=True)):
         around.setdefault(int(a), []).append((n, int(b)))
         around.setdefault(int(b), []).append((n, int(a)))
-    end_of = _first_rows(net)
     for b in queue:
         for n, other in around.get(b, []):
-            if home[other] >= 0:
+            if other in seen:
                 continue
-            home[other], parent[other] = home[b], b
+            seen.add(other)
+            parent[other], branch[other] = b, n
             forward = net.to_bus[n] == other
             turns[other] = turns[b] / net.ratio[n] if forward else turns[b] * net.ratio[n]
-            on_to_side = turns[other] if forward else turns[b]
-            z[other] = z[b] + net.z[n] / on_to_side**2
-            first[other] = first[b] if first[b] >= 0 else end_of[n, b]
+            z[other] = z[b] + net.z[n] / (turns[other] if forward else turns[b]) ** 2
             queue.append(other)
-    return home, first, z, turns, parent
+    return _Paths(parent=parent, branch=branch, z=z, turns=turns)
 
 
 def _first_rows(net: FaultNetwork) -> dict[tuple[int, int], int]:
