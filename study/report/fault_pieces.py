@@ -14,6 +14,7 @@ from study.results.arrays import IntArray
 SHEET: Final = "R Fault ratings"
 NOT_GIVEN: Final = "not given"
 DEAD: Final = "dead in every mode"
+_TOO_NEAR_PERCENT = 0.1
 
 
 def piece_cells(outcome: StudyOutcome) -> dict[str, str]:
@@ -30,6 +31,11 @@ def worst_rows(worst_mode: IntArray, modes: Sequence[str]) -> list[tuple[int, in
 def of_rating(value: float, rating: float) -> float:
     """Return a value in percent of its rating; NaN where one is not known."""
     return percent(value / rating) if rating > 0 else math.nan
+
+
+def tells(part_percent: float) -> bool:
+    """Return whether a part of a rating is known and far enough from all of it to be worked by hand."""
+    return math.isfinite(part_percent) and abs(part_percent - 100.0) > _TOO_NEAR_PERCENT
 
 
 def worked_part(row: str, label: str, value: float, rating: float, unit: str) -> Worked:

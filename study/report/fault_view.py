@@ -10,7 +10,6 @@ from typing import Any, Final, Literal
 import numpy as np
 
 from study.report.content import StudyOutcome
-from study.report.findings import listed
 from study.report.tables import Column
 from study.results.arrays import FloatArray, IntArray
 from study.results.short_circuit import FaultCase, Iec60909Case, ModeShortCircuit, ShortCircuitResult
@@ -109,7 +108,9 @@ class Extreme:
     @property
     def words(self) -> str:
         """The modes in words."""
-        return listed(self.modes, _MODES_NAMED)
+        rest = len(self.modes) - _MODES_NAMED
+        named = "; ".join(self.modes[:_MODES_NAMED])
+        return f"{named} and {rest} more" if rest > 0 else named
 
 
 def greatest(names: Sequence[str], values: Sequence[float]) -> Extreme | None:
@@ -232,7 +233,7 @@ def ends_at(case: FaultCase) -> dict[int, IntArray]:
 
 
 def mode_words(modes: Sequence[str], every: Sequence[str]) -> str:
-    """Return modes in words: all of them as one phrase.
+    """Return modes in words: all of them as one phrase; names may hold commas.
 
     Parameters
     ----------
@@ -252,4 +253,4 @@ def mode_words(modes: Sequence[str], every: Sequence[str]) -> str:
     """
     if len(every) > 1 and set(modes) == set(every):
         return "every mode"
-    return ", ".join(modes)
+    return "; ".join(modes)

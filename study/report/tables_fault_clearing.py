@@ -8,7 +8,7 @@ from typing import Final
 
 import numpy as np
 
-from study.report.fault_pieces import DEAD, SHEET, of_rating, shown, worked_part, worst_rows
+from study.report.fault_pieces import DEAD, SHEET, of_rating, shown, tells, worked_part, worst_rows
 from study.report.numbers import figure, quantity
 from study.report.tables import (
     Column,
@@ -159,7 +159,7 @@ def cables_table(ratings: FaultRatingsResult, cells: Mapping[str, str]) -> Table
                missing="unknown"),
         text_column("data", "I²t is"),
         Column(key="far_heat_ka2s", heading="I²t of the least fault", unit="kA²s", most_decimals=3,
-               digits=3, missing="above 5 s"),
+               digits=3, missing="not in 5 s"),
         Column(key="enough_mm2", heading="Enough would be", unit="mm²", most_decimals=1,
                missing=_NONE_USUAL),
         cell_column(),
@@ -215,6 +215,6 @@ def _cable_row(
 def _worked_cable(k: CableRatings, rows: Sequence[tuple[int, int, str]]) -> Worked | None:
     for i, m, words in rows:
         heat, withstand = float(k.heat_a2s[i, m]) / 1e6, float(k.withstand_a2s[i]) / 1e6
-        if words != DEAD and math.isfinite(of_rating(heat, withstand)):
+        if words != DEAD and tells(of_rating(heat, withstand)):
             return worked_part(f"{k.names[i]}, {words}", "I²t, of k²S²", heat, withstand, "kA²s")
     return None

@@ -6,7 +6,7 @@ import math
 from collections.abc import Mapping, Sequence
 from typing import Final
 
-from study.report.fault_pieces import DEAD, NOT_GIVEN, SHEET, of_rating, shown, worked_part, worst_rows
+from study.report.fault_pieces import DEAD, NOT_GIVEN, SHEET, of_rating, shown, tells, worked_part, worst_rows
 from study.report.fault_view import ka_column
 from study.report.numbers import figure, percent, quantity
 from study.report.tables import (
@@ -144,7 +144,7 @@ def _breaker_row(d: DeviceRatings, i: int, m: int, words: str, cells: Mapping[st
 def _worked_breaker(d: DeviceRatings, rows: Sequence[tuple[int, int, str]]) -> Worked | None:
     for i, m, words in rows:
         needed, icu, peak = float(d.needed_ka[i, m]), float(d.icu_ka[i]), float(d.peak_ka[i, m])
-        if words == DEAD or not math.isfinite(of_rating(needed, icu)) or needed <= 0:
+        if words == DEAD or not tells(of_rating(needed, icu)) or needed <= 0:
             continue
         lines = worked_part("", "Needed, of Icu", needed, icu, "kA").lines
         if d.peak_governs[i, m]:
@@ -225,7 +225,7 @@ def _high_row(d: DeviceRatings, i: int, m: int, words: str, cells: Mapping[str, 
 def _worked_high(d: DeviceRatings, rows: Sequence[tuple[int, int, str]]) -> Worked | None:
     for i, m, words in rows:
         both, rated = float(d.asymmetrical_ka[i, m]), float(d.rated_asymmetrical_ka[i])
-        if words != DEAD and math.isfinite(of_rating(both, rated)):
+        if words != DEAD and tells(of_rating(both, rated)):
             return worked_part(f"{d.names[i]}, {words}", "Asymmetrical, of rated", both, rated, "kA")
     return None
 

@@ -16,6 +16,7 @@ from study.report.fault_pieces import (
     of_rating,
     piece_cells,
     shown,
+    tells,
     worked_part,
     worst_rows,
 )
@@ -144,7 +145,7 @@ def duties_table(outcome: StudyOutcome) -> Table:
 
 def _worked_margin(verdicts: Sequence[Verdict]) -> Worked | None:
     for v in verdicts:
-        if all(math.isfinite(x) for x in (v.value, v.limit, v.margin)) and v.limit > 0:
+        if math.isfinite(v.value) and v.limit > 0 and tells(100.0 + percent(v.margin)):
             value, limit = figure(v.value, v.unit), figure(v.limit, v.unit)
             upper = v.sense == "at most"
             line = WorkedLine(
@@ -226,7 +227,7 @@ def _worked_board(ratings: FaultRatingsResult) -> Worked | None:
     b = ratings.boards
     for i, m, words in worst_rows(b.worst_mode, ratings.modes):
         value, rating = float(b.limited_peak_ka[i, m]), float(b.rated_peak_ka[i])
-        if words != DEAD and math.isfinite(of_rating(value, rating)):
+        if words != DEAD and tells(of_rating(value, rating)):
             return worked_part(f"{b.names[i]}, {words}", "Peak, of rated", value, rating, "kA")
     return None
 

@@ -28,6 +28,7 @@ from study.results.short_circuit import (
     ShortCircuitResult,
 )
 from tests.report import made_up
+from tests.report.made_up_fault_ratings import fault_ratings, fault_verdicts
 
 F_HZ = 60.0
 HALF_S = 0.5 / F_HZ
@@ -53,7 +54,14 @@ def _with_faults(outcome: StudyOutcome, *, all_solved: bool = False) -> StudyOut
     role = {2: "emergency", 3: "propulsion"}
     boards = tuple(replace(b, role=role.get(i, b.role)) for i, b in enumerate(plant.boards))
     plant = replace(plant, boards=boards)
-    return replace(outcome, plant=plant, short_circuit=short_circuit(plant, all_solved=all_solved))
+    ratings = fault_ratings(plant)
+    return replace(
+        outcome,
+        plant=plant,
+        short_circuit=short_circuit(plant, all_solved=all_solved),
+        fault_ratings=ratings,
+        verdicts=(*outcome.verdicts, *fault_verdicts(ratings)),
+    )
 
 
 def short_circuit(plant: Plant, *, all_solved: bool = False) -> ShortCircuitResult:
