@@ -12,7 +12,7 @@ from study.issues import SolveError
 from study.network.consumers import Demand, drawn_by
 from study.network.equations import Point, Problem
 from study.network.fields import field_state
-from study.network.laws import VoltageLaws, some, take, voltage_laws
+from study.network.laws import VoltageLaws, some, voltage_laws
 from study.network.limits import (
     CEILING,
     LARGEST_CURRENT,
@@ -365,49 +365,6 @@ class _Batch:
             power_state=self.power_state.T,
             ran_away=self.pinned.T,
         )
-
-
-def laws_in_force(batch: BatchSolution, k: int = 0) -> VoltageLaws:
-    """Return the voltage laws of one scenario, with limited sources at their limits.
-
-    Parameters
-    ----------
-    batch : BatchSolution
-        Solved scenarios.
-    k : int
-        Which.
-
-    Returns
-    -------
-    VoltageLaws
-        One column.
-    """
-    return limited_laws(batch.laws.column(k), batch.at.sources, batch.excitation_state[k])
-
-
-def power_in_force(batch: BatchSolution, k: int = 0) -> PowerLaws:
-    """Return the active-power laws of one scenario, with limited sources at their limits.
-
-    Parameters
-    ----------
-    batch : BatchSolution
-        Solved scenarios.
-    k : int
-        Which.
-
-    Returns
-    -------
-    PowerLaws
-        One column.
-    """
-    return power_laws(
-        batch.at.sources,
-        batch.at.structure.islands,
-        batch.at.network.s_base_kva,
-        f_no_load_pu=take(batch.f_no_load_pu, k),
-        speed_droop_pu=take(batch.speed_droop_pu, k),
-        at_limit=batch.power_state[k],
-    )
 
 
 def _names(sources: tuple[Source, ...], island: int) -> str:

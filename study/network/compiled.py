@@ -9,7 +9,8 @@ import numpy as np
 
 from study.network.consumers import drawn_by
 from study.network.equations import Point, Problem, sparse_jacobian
-from study.network.kernel import LANES, Fixed, Found, Varying, sweep, triangles
+from study.network.kernel import LANES, sweep
+from study.network.kernel_data import Fixed, Found, Varying, triangles
 from study.network.scenarios import Solutions
 from study.network.sources import Law
 

@@ -7,7 +7,8 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from study.network.batch import BatchSolution, laws_in_force, power_in_force
+from study.network.batch import BatchSolution
+from study.network.in_force import laws_in_force, power_in_force
 from study.network.laws import VoltageLaws
 from study.network.network import ModeNetwork
 from study.network.power import PowerLaws

@@ -13,8 +13,9 @@ class UnionFind:
 
     Examples
     --------
-    >>> u = UnionFind(3); u.join(2, 1); u.root(2), u.root(0)
-    (1, 0)
+    >>> u = UnionFind(3)
+    >>> u.join(2, 1), u.root(2), u.root(0)
+    (True, 1, 0)
     """
 
     def __init__(self, size: int) -> None:
