@@ -72,7 +72,7 @@ def genset(
         f"C-{name}",
         board,
         sizing.next_size(1.1 * amps, sizing.SUPPLY_BREAKERS_A),
-        icw_ka=book.breaking_ka[board] if amps > 500 else 0.5 * book.breaking_ka[board],
+        icw_ka=book.breaking_ka[board] if amps > 500 else 0.8 * book.breaking_ka[board],
         ir=round(1.1 * amps),
         tr=15,
         tr_at=1.5,
@@ -159,7 +159,7 @@ def winding(
         f"C-{label}",
         board,
         sizing.next_size(setting, sizing.SUPPLY_BREAKERS_A),
-        icw_ka=0.5 * book.breaking_ka[board],
+        icw_ka=0.8 * book.breaking_ka[board],
         ir=setting,
         tr=10,
         tr_at=2,
@@ -179,6 +179,7 @@ def feeder(
     short: tuple[float, float] = (6.0, 0.1),
     switch_at_end: bool = False,
     max_drop_percent: float = 1.5,
+    least_mm2: float = 10,
 ) -> None:
     """Add the run from one board to another, with its breaker and, where asked, one at the far end."""
     label = name or ends[1]
@@ -191,7 +192,7 @@ def feeder(
         board=ends[0],
         cores="3 single" if amps > 300 else "3",
         max_drop_percent=max_drop_percent,
-        least_mm2=10,
+        least_mm2=least_mm2,
     )
     places = ((f"Q-{label}", ends[0]), (f"Q-{label}-E", ends[1]))
     for device, board in places if switch_at_end else places[:1]:
@@ -200,7 +201,7 @@ def feeder(
             f"C-{label}",
             board,
             sizing.next_size(setting, sizing.SUPPLY_BREAKERS_A),
-            icw_ka=0.5 * book.breaking_ka[board],
+            icw_ka=0.8 * book.breaking_ka[board],
             ir=setting,
             tr=10,
             tr_at=2,

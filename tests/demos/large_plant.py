@@ -263,13 +263,13 @@ def _distribution(book: Book) -> None:
     )
     for side, _ in SIDES:
         feeder(book, (f"SWB-{side}", f"ER1-{side}"), 720, 30, short=(5, 0.2))
-        feeder(book, (f"SWB-{side}", f"ER2-{side}"), 320, 34, short=(6, 0.2))
-        feeder(book, (f"SWB-{side}", f"PROP-{side}"), 160, 40, short=(6, 0.2))
+        feeder(book, (f"SWB-{side}", f"ER2-{side}"), 320, 34, short=(6, 0.2), least_mm2=150)
+        feeder(book, (f"SWB-{side}", f"PROP-{side}"), 160, 40, short=(6, 0.2), least_mm2=150)
         feeder(book, (f"SWB-{side}", f"PUMP-{side}"), 520, 44, short=(5, 0.2))
     feeder(book, ("SWB-P", "ESB"), 900, 62, short=(5, 0.25), switch_at_end=True)
     # second feeds of the thruster rooms, normally open
-    feeder(book, ("SWB-S", "THR-F"), 200, 74, name="THR-F-2", short=(6, 0.2))
-    feeder(book, ("SWB-P", "THR-A"), 200, 68, name="THR-A-2", short=(6, 0.2))
+    feeder(book, ("SWB-S", "THR-F"), 200, 74, name="THR-F-2", short=(6, 0.2), least_mm2=150)
+    feeder(book, ("SWB-P", "THR-A"), 200, 68, name="THR-A-2", short=(6, 0.2), least_mm2=150)
     for n in (1, 2, 3, 4):
         feeder(book, ("SWB-P" if n in (1, 3) else "SWB-S", f"HVAC-{n}"), 420, 50 + 6 * n, short=(6, 0.2))
     for board, to, amps, length_m in (
@@ -282,7 +282,7 @@ def _distribution(book: Book) -> None:
         ("SWB-P", "THR-F", 200, 72),
         ("SWB-S", "THR-A", 200, 64),
     ):
-        feeder(book, (board, to), amps, length_m, short=(6, 0.2))
+        feeder(book, (board, to), amps, length_m, short=(6, 0.2), least_mm2=150)
 
 
 def _low_distribution(book: Book) -> None:
@@ -316,4 +316,4 @@ def _low_distribution(book: Book) -> None:
     panels += [("L-THR-A", "LDB-2", 80, 66), ("L-DECK-A", "LDB-2", 120, 70), ("L-SWB", "LDB-2", 80, 24)]
     panels += [("NAV", "ELDB", 125, 40), ("RADIO", "ELDB", 63, 42)]
     for to, board, amps, length_m in panels:
-        feeder(book, (board, to), amps, length_m, short=(5, 0.08), max_drop_percent=2.0)
+        feeder(book, (board, to), amps, length_m, short=(5, 0.08), max_drop_percent=2.0, least_mm2=50)

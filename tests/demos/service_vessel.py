@@ -131,7 +131,7 @@ def _sources(book: Book) -> None:
     book.add("Shore supplies", SHORE_HEADINGS, ("Shore", "MSB-S", 455, 60, 600, 20, 14, 0.5))
     book.cable("C-Shore", ("Shore", "MSB-S"), 630, 35, board="MSB-S", cores="3 single")
     book.breaker(
-        "Q-Shore", "C-Shore", "MSB-S", 630, icw_ka=25, ir=600, tr=10, tr_at=2, isd=2400, tsd=0.3, ii="off"
+        "Q-Shore", "C-Shore", "MSB-S", 630, icw_ka=40, ir=600, tr=10, tr_at=2, isd=2400, tsd=0.3, ii="off"
     )
     book.add(
         "Ties",
@@ -151,7 +151,7 @@ def _distribution(book: Book) -> None:
     feeder(book, ("MSB-S", "DECK"), 260, 46)
     feeder(book, ("MSB-P", "CARGO"), 800, 32, short=(5, 0.2))
     feeder(book, ("MSB-S", "HVAC"), 330, 38)
-    feeder(book, ("MSB-P", "GALLEY"), 130, 42)
+    feeder(book, ("MSB-P", "GALLEY"), 130, 42, least_mm2=70)
     for name, board, to in (("T-LV1", "MSB-P", "LDB-P"), ("T-LV2", "MSB-S", "LDB-S")):
         transformer(
             book,

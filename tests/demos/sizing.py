@@ -95,7 +95,7 @@ def choose_cable(
     drop_amps: float | None = None,
 ) -> tuple[int, float]:
     """Return runs in parallel and section [mm2] that carry `amps` and hold the fall of voltage."""
-    largest = 300 if cores == "3 single" else 120
+    largest = 300 if cores == "3 single" else max(120, least_mm2)
     for runs in range(1, 13):
         for section in SECTIONS_MM2:
             if section < least_mm2 or section > largest or (runs > 1 and section < 50):
