@@ -28,6 +28,7 @@ from study.results.short_circuit import ShortCircuitResult
 
 _MOST_BOARDS: Final = 60
 _MOST_DUTIES: Final = 30
+_LONGEST_PERCENT: Final = 200.0
 _NAME: Final = 42
 _DUTY_NAME: Final = 58
 
@@ -62,10 +63,12 @@ def _duties(outcome: StudyOutcome) -> Drawing | None:
     left = min(3.9, 0.3 + 0.06 * max(len(name) for name in names))
     figure = canvas(height)
     axes = figure.add_axes(frame(figure, left=left, right=1.35, bottom=0.5, top=0.12))
-    widest = max(*parts, 100.0)
+    widest = min(max(*parts, 100.0), _LONGEST_PERCENT)
     for y, (v, part) in enumerate(zip(shown, parts, strict=True)):
         look = VERDICTS[v.status]
-        axes.barh(y, part, height=0.62, color=look.ground, edgecolor=look.ink, linewidth=0.9)
+        axes.barh(
+            y, min(part, 1.1 * widest), height=0.62, color=look.ground, edgecolor=look.ink, linewidth=0.9
+        )
         axes.text(
             1.01,
             y,
@@ -89,8 +92,8 @@ def _duties(outcome: StudyOutcome) -> Drawing | None:
         figure,
         key="fig-fault-duties",
         title="The heaviest duties against their ratings",
-        caption=f"Each duty in its worst mode; dashed: the rating.{more} Not assessed for want of a "
-        f"rating or of data: {missing}.",
+        caption=f"Each duty in its worst mode; dashed: the rating; bars end at 200 %.{more} Not assessed "
+        f"for want of a rating or of data: {missing}.",
         description=f"{len(shown)} duties. The heaviest is {worst.equipment}, {_short(worst.quantity)}, at "
         f"{quantity(parts[0], '%', 1)} of its rating; {sum(p > 100.0 for p in parts)} are beyond it.",
     )
@@ -102,7 +105,7 @@ def _is_part(v: Verdict) -> bool:
 
 
 def _short(text: str) -> str:
-    return text.removesuffix(", at most")
+    return text.removesuffix(" until it is cleared")
 
 
 def _peaks(outcome: StudyOutcome) -> Drawing | None:

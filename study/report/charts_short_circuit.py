@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import Any, Final
 
 import numpy as np
 
 from study.report.content import StudyOutcome
 from study.report.fault_view import (
+    SHEET,
     curves,
     governing_mode,
     instant,
@@ -43,7 +45,7 @@ _COMPONENTS: Final = (
     "ip at half cycle",
     "greatest peak",
 )
-_MOST_FIGURES: Final = 12
+_MOST_FIGURES: Final = 20
 
 
 def short_circuit_figures(outcome: StudyOutcome) -> tuple[Drawing, ...]:
@@ -62,8 +64,13 @@ def short_circuit_figures(outcome: StudyOutcome) -> tuple[Drawing, ...]:
     result = outcome.short_circuit
     if result is None or not solved_modes(result):
         return ()
-    groups = one_busbar(result, leading_boards(outcome, result))[:_MOST_FIGURES]
-    return tuple(_board(result, group, i) for i, group in enumerate(groups))
+    groups = one_busbar(result, leading_boards(outcome, result))
+    drawn = [_board(result, group, i) for i, group in enumerate(groups[:_MOST_FIGURES])]
+    rest = len(groups) - len(drawn)
+    if rest:
+        more = f" The curves of {rest} further boards are on sheet {SHEET} of the workbook."
+        drawn[-1] = replace(drawn[-1], caption=drawn[-1].caption + more)
+    return tuple(drawn)
 
 
 def _board(result: ShortCircuitResult, group: Sequence[int], number: int) -> Drawing:
@@ -92,8 +99,9 @@ def _board(result: ShortCircuitResult, group: Sequence[int], number: int) -> Dra
         key=f"fig-fault-{number + 1}",
         title=f"Short circuit on {names} ({mode.mode})",
         caption="Maximum case in the mode with the greatest peak. Left: the first 0.1 s, instantaneous. "
-        f"Right: the a.c. component by source, r.m.s.{_minimum_words(minimum)} Beyond 0.1 s the formulas "
-        "hold only on the board that the sets feed directly.",
+        "Right: the a.c. component by source, r.m.s., up to the high estimate of the sustained current"
+        f"{_minimum_words(minimum)} Beyond 0.1 s the formulas hold only on the board that the sets feed "
+        "directly.",
         description=_words(case, place, shown),
     )
 

@@ -23,6 +23,7 @@ from study.report.tables import (
 from study.results.fault_ratings import DeviceRatings, FaultRatingsResult
 
 _SHOWN: Final = 25
+_NOISE: Final = 1e-9
 NO_END: Final = "does not clear"
 _NONE_USUAL: Final = "none usual"
 _OPEN: Final = "not assessed"
@@ -142,21 +143,25 @@ def _breaker_row(d: DeviceRatings, i: int, m: int, words: str, cells: Mapping[st
 
 
 def _worked_breaker(d: DeviceRatings, rows: Sequence[tuple[int, int, str]]) -> Worked | None:
+    """Return a row worked by hand, rather one whose need follows from the peak and a ratio n."""
+    plain = None
     for i, m, words in rows:
         needed, icu, peak = float(d.needed_ka[i, m]), float(d.icu_ka[i]), float(d.peak_ka[i, m])
         if words == DEAD or not tells(of_rating(needed, icu)) or needed <= 0:
             continue
-        lines = worked_part("", "Needed, of Icu", needed, icu, "kA").lines
-        if d.peak_governs[i, m]:
+        found = worked_part(f"{d.names[i]}, {words}", "Needed, of Icu", needed, icu, "kA")
+        ratio = peak / needed
+        # A need at the very end of a range of capacities is set by the range and by no ratio.
+        if d.peak_governs[i, m] and abs(ratio - round(ratio, 2)) < _NOISE:
             need = WorkedLine(
                 label="Capacity needed",
                 formula="ip / n of its range",
-                figures=f"{figure(peak, 'kA')} / {figure(peak / needed, '')}",
+                figures=f"{figure(peak, 'kA')} / {figure(ratio, '')}",
                 result=quantity(needed, "kA"),
             )
-            lines = (need, *lines)
-        return Worked(row=f"{d.names[i]}, {words}", lines=lines)
-    return None
+            return Worked(row=found.row, lines=(need, *found.lines))
+        plain = plain or found
+    return plain
 
 
 def high_voltage_table(ratings: FaultRatingsResult, cells: Mapping[str, str]) -> Table:

@@ -25,6 +25,7 @@ from study.report.html import report_page
 from study.report.json_out import json_text
 from study.report.tables import Table
 from study.report.tables_assumptions import NOT_COVERED, not_covered
+from study.report.tables_fault_devices import breakers_table
 from study.report.tables_verdicts import verdict_grid
 from study.results.short_circuit import FaultCase, ShortCircuitResult
 from tests.report import made_up, made_up_faults, test_page
@@ -362,6 +363,20 @@ def test_devices_of_each_rule_have_their_own_table() -> None:
     assert (set(names[0]), set(names[1])) == ({"Q1", "Q2", "Q5"}, {"Q3"})
     assert TABLES["fuse_ratings"].column("device") == ("Q4",)
     assert TABLES["short_time_ratings"].column("device") == ("Q1",)
+
+
+def test_need_at_the_end_of_a_range_is_not_explained_by_a_ratio_of_none() -> None:
+    ratings = OUTCOME.fault_ratings
+    assert ratings is not None
+    peak, needed = (np.array(v) for v in (ratings.devices.peak_ka, ratings.devices.needed_ka))
+    peak[0], needed[0] = 106.521, 50.0
+    devices = replace(ratings.devices, peak_ka=peak, needed_ka=needed)
+    worked = breakers_table(replace(ratings, devices=devices), {}).worked
+    assert worked is not None
+    assert [line.label for line in worked.lines] == ["Needed, of Icu"]
+    before = TABLES["breaker_ratings"].worked
+    assert before is not None
+    assert before.lines[0].figures == "48.4 kA / 2.1"
 
 
 def test_json_holds_both_sheets_without_nan() -> None:
