@@ -9,7 +9,7 @@ from dataclasses import dataclass
 from study.workbook.package.styles import StyleMap
 from study.workbook.package.xml import MAIN, Document, Node, as_utf8, escape, parse
 
-_CELL = re.compile(r'<c r="([A-Z]+\d+)"((?: [a-z]+="[^"]*")*)(?:/>|>(?:<v>(\d+)</v></c>)?)')
+_CELL = re.compile(r'<c r="([A-Z]+\d+)"(?: s="(\d+)")?(?: t="s"><v>(\d+)</v></c>|( t="\w+")?(/?>))')
 _ROW = re.compile(r"<row\b[^>]*>")
 _COLUMN = re.compile(r"<col\b[^>]*>")
 _DIFFERENTIAL_TAG = re.compile(r"<(?:cfRule|colorFilter|sortCondition|table|tableColumn)\b[^>]*>")
@@ -101,7 +101,8 @@ def rewrite_sheet(
     body = _DIFFERENTIAL_TAG.sub(lambda m: _move_differential(m[0], styles), body)
     body = _FORMULA.sub(lambda m: _rename_tables(m[0], tables), body)
     cells = body.count("<c ")
-    body, moved = _CELL.subn(lambda m: _cell(m, strings, styles), body)
+    marks = [f' s="{number}"' if number else "" for number in styles.cells]
+    body, moved = _CELL.subn(lambda m: _cell(m, strings, marks), body)
     if moved != cells:
         raise ValueError("result sheets hold cells in an unknown form")
     return (head + opening + body).encode()
@@ -116,18 +117,13 @@ def _move_differential(tag: str, styles: StyleMap) -> str:
     return _DIFFERENTIAL.sub(lambda m: f'{m[1]}{styles.differential[int(m[2])]}"', tag)
 
 
-def _cell(found: re.Match[str], strings: Sequence[str], styles: StyleMap) -> str:
-    """Return the cell with its new format; a shared string becomes an inline one."""
-    place, attributes, value = found[1], found[2], found[3]
-    if " cm=" in attributes or " vm=" in attributes:
-        raise ValueError("result sheets may not hold dynamic arrays")
-    style = _STYLE.search(attributes)
-    number = styles.cells[int(style[1]) if style else 0]
-    mark = f' s="{number}"' if number else ""
-    if ' t="s"' in attributes and value is not None:
-        return f'<c r="{place}"{mark} t="inlineStr"><is>{strings[int(value)]}</is></c>'
-    rest = _STYLE.sub("", attributes).rstrip()
-    return f'<c r="{place}"{mark}{rest}' + found[0][len(f'<c r="{place}"{attributes}') :]
+def _cell(found: re.Match[str], strings: Sequence[str], marks: Sequence[str]) -> str:
+    """Return the start of a cell with its new format; a shared string becomes an inline one, whole."""
+    place, style, shared, kind, end = found.groups()
+    mark = marks[int(style or 0)]
+    if shared is not None:
+        return f'<c r="{place}"{mark} t="inlineStr"><is>{strings[int(shared)]}</is></c>'
+    return f'<c r="{place}"{mark}{kind or ""}{end}'
 
 
 def _rename_tables(formula: str, tables: Mapping[str, str]) -> str:
