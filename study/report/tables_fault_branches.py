@@ -103,8 +103,8 @@ def quick_table(result: ShortCircuitResult) -> Table:
         text_column("mode", "Mode"),
         text_column("island", "Boards from"),
         text_column("rule", "Rule of thumb"),
-        text_column("quantity", "Estimates", kind="long text"),
-        text_column("basis", "Basis", kind="long text"),
+        text_column("quantity", "Estimates"),
+        text_column("basis", "Basis"),
         ka_column("estimate_ka", "Estimate"),
         ka_column("ik_initial_ka", "I''k in detail"),
         ka_column("iac_half_ka", "Iac(T/2) in detail"),
@@ -119,8 +119,9 @@ def quick_table(result: ShortCircuitResult) -> Table:
         columns=columns,
         rows=rows,
         notes=(
-            "In detail: the board of that voltage with the greatest I''k, maximum case. The estimates "
-            "stand for plants without data and lie well above a detailed result.",
+            "In detail: the board of that voltage with the greatest I''k, maximum case. The estimates stand "
+            "for plants without data; a detailed result of quite another size asks for a second look at the "
+            "data.",
         ),
         worked=_worked_quick(rows),
         group_by=("mode",),

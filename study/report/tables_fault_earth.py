@@ -30,7 +30,7 @@ _EARTH_SHOWN: Final = 20
 def earth_table(outcome: StudyOutcome, result: ShortCircuitResult) -> Table:
     """Return the earth-fault current of every system with one neutral, equal rows of modes drawn together."""
     columns = [
-        text_column("boards", "Boards of the system", kind="long text"),
+        text_column("boards", "Boards of the system"),
         text_column("modes", "Modes"),
         text_column("earthing", "Neutral"),
         text_column("capacitance_data", "Capacitance is"),
@@ -164,7 +164,7 @@ def resistors_table(ratings: FaultRatingsResult, cells: Mapping[str, str]) -> Ta
 def detection_table(outcome: StudyOutcome, ratings: FaultRatingsResult) -> Table:
     """Return earth-fault currents against what detects them, equal rows of several modes drawn together."""
     columns = [
-        text_column("boards", "Boards of the system", kind="long text"),
+        text_column("boards", "Boards of the system"),
         text_column("modes", "Modes"),
         text_column("earthing", "Neutral"),
         text_column("capacitance_data", "Capacitance is"),

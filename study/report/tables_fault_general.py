@@ -145,7 +145,7 @@ def agreement_table(result: ShortCircuitResult) -> Table:
         columns=[
             text_column("mode", "Mode"),
             text_column("case", "Case"),
-            text_column("compared", "What was compared", kind="long text"),
+            text_column("compared", "What was compared"),
             Column(key="largest_difference_pu", heading="Largest relative difference", kind="tiny"),
         ],
         rows=[

@@ -59,7 +59,7 @@ def sources_table(outcome: StudyOutcome, result: ShortCircuitResult) -> Table:
         Column(key="holds_s", heading="Kept up for", unit="s", most_decimals=2, digits=2, infinite=NO_END),
         percent_column("preload_percent", "Load before the fault", most_decimals=0),
         text_column("sustained_data", "Sustained current is"),
-        text_column("holds", "What it keeps up", kind="long text"),
+        text_column("holds", "What it keeps up"),
     ]
     found: dict[tuple[Value, ...], list[str]] = {}
     for view in cases(result):
