@@ -8,7 +8,7 @@ from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any, Final, TypeVar
 
-from study.issues import Issue, StudyError, WorkbookError
+from study.issues import Issue, PackageError, StudyError, WorkbookError
 from study.model.plant import AcceptanceItem, Assumption, Plant
 from study.workbook import build_branches as branches
 from study.workbook import build_loads as loads
@@ -20,9 +20,10 @@ from study.workbook.fill import fill_rows, set_context
 from study.workbook.headings import edit_distance, folded, heading_key
 from study.workbook.items import project, read_acceptance, read_project
 from study.workbook.links import Names, check_references, check_unique, enter_names, settle_spellings
+from study.workbook.package import open_package
 from study.workbook.places import CellPlaces
 from study.workbook.plausible import check_plausible
-from study.workbook.reader import RawBook, RawSheet, read_raw
+from study.workbook.reader import RawBook, RawSheet, read_package
 from study.workbook.sheets import BY_NAME, SHEETS
 from study.workbook.tables import Row, Table, find_table, read_rows
 from study.workbook.topology import Plan
@@ -99,7 +100,12 @@ def check_workbook(path: Path | str) -> tuple[Plant | None, tuple[Issue, ...]]:
     PackageError
         The file cannot be opened.
     """
-    return check_raw(read_raw(path))
+    package = open_package(path)
+    name = Path(path).name
+    try:
+        return check_raw(read_package(package, name))
+    except PackageError as error:
+        raise PackageError(f"{name}: {error}") from error
 
 
 def check_raw(book: RawBook) -> tuple[Plant | None, tuple[Issue, ...]]:

@@ -6,21 +6,22 @@ import re
 from collections.abc import Callable, Collection, Mapping, Sequence
 from dataclasses import dataclass
 from functools import partial
-from pathlib import Path
 from typing import Final
 
+from study.issues import PackageError
 from study.workbook.package.cells import area
 from study.workbook.package.names import Sheet, defined_names, read_sheets
-from study.workbook.package.opc import Package, open_package, read_relations, rels_part
+from study.workbook.package.opc import Package, read_relations, rels_part
 from study.workbook.package.parts import read_graph
 from study.workbook.package.tables import read_tables
-from study.workbook.package.xml import Node, as_utf8, parse
+from study.workbook.package.xml import Node, as_utf8, number_in, parse
 from study.workbook.package.zip import part_key
 from study.workbook.result_formulas import Place, dependent_formulas, mentions_results, shifted
 from study.workbook.sheet_xml import (
     BookTables,
     ResultFormula,
     SheetCells,
+    TooManyRowsError,
     Value,
     plain_text,
     read_cells,
@@ -28,6 +29,9 @@ from study.workbook.sheet_xml import (
 )
 from study.workbook.sheets import RESULT_PREFIX
 from study.workbook.table_formulas import BookTable, with_cells
+
+MOST_ROWS: Final = 20_000
+"""Of a sheet of input; four times the largest plant that is meant to be studied."""
 
 _PERCENT_FORMATS: Final = frozenset({9, 10})
 _DATE_FORMATS: Final = frozenset({*range(14, 23), *range(27, 37), *range(45, 48), *range(50, 59)})
@@ -57,13 +61,15 @@ class RawBook:
     sheets: Sequence[RawSheet]
 
 
-def read_raw(path: Path | str) -> RawBook:
-    """Open a workbook file and list the sheets that are not results.
+def read_package(package: Package, file_name: str) -> RawBook:
+    """List the sheets of a workbook that are not results.
 
     Parameters
     ----------
-    path : path
-        An .xlsx or .xlsm file.
+    package : Package
+        The workbook.
+    file_name : str
+        Its name.
 
     Returns
     -------
@@ -73,14 +79,8 @@ def read_raw(path: Path | str) -> RawBook:
     Raises
     ------
     PackageError
-        The file cannot be opened safely.
+        The file is damaged.
     """
-    package = open_package(path)
-    return read_package(package, Path(path).name)
-
-
-def read_package(package: Package, file_name: str) -> RawBook:
-    """List the sheets of an opened workbook that are not results."""
     root = _xml(package, package.workbook_part)
     load = partial(_cells, package, _tables(package, root))
     sheets = [
@@ -144,7 +144,7 @@ def shown_as(styles: Node) -> list[str]:
 def _format_kind(number: str, codes: Mapping[str, str]) -> str:
     if number in codes:
         return code_kind(codes[number])
-    known = int(number) if number.isdigit() else 0
+    known = number_in(number)
     if known in _PERCENT_FORMATS:
         return "percent"
     return "date" if known in _DATE_FORMATS else ""
@@ -164,12 +164,18 @@ def code_kind(code: str) -> str:
     return "date" if any(letter in bare for letter in "ymdhs") and "general" not in bare else ""
 
 
-def _cells(package: Package, tables: BookTables, sheet: Sheet) -> SheetCells:
-    return read_cells(as_utf8(package.read(sheet.part), sheet.part), sheet.part, tables)
+def _cells(package: Package, tables: BookTables, sheet: Sheet, most_rows: int | None = None) -> SheetCells:
+    return read_cells(as_utf8(package.read(sheet.part), sheet.part), sheet.part, tables, most_rows)
 
 
-def _rows(load: Callable[[Sheet], SheetCells], sheet: Sheet, refused: Collection[Place]) -> Rows:
-    cells = load(sheet)
+def _rows(load: Callable[..., SheetCells], sheet: Sheet, refused: Collection[Place]) -> Rows:
+    try:
+        cells = load(sheet, MOST_ROWS)
+    except TooManyRowsError as error:
+        raise PackageError(
+            f"the sheet {sheet.name} holds more than the {MOST_ROWS} rows that are read; let one row stand "
+            "for equal items, or take out rows that are not needed"
+        ) from error
     folded = sheet.name.casefold()
     for (row, column), formula in cells.formulas.items():
         if (folded, row, column) in refused:
@@ -178,7 +184,7 @@ def _rows(load: Callable[[Sheet], SheetCells], sheet: Sheet, refused: Collection
 
 
 def _dependent(
-    package: Package, root: Node, sheets: Sequence[Sheet], load: Callable[[Sheet], SheetCells]
+    package: Package, root: Node, sheets: Sequence[Sheet], load: Callable[..., SheetCells]
 ) -> Collection[Place]:
     """Return the cells whose formulas depend on a result sheet; formulas are read only where one may."""
     names = {d.name.casefold(): d.value for _, d in defined_names(root)}

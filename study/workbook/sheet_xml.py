@@ -14,12 +14,11 @@ from xml.parsers import expat
 
 from study.issues import PackageError
 from study.workbook.package.cells import split_address
-from study.workbook.package.xml import MAIN
+from study.workbook.package.xml import MAIN, number_in
 
 MAX_CELLS: Final = 4_000_000
 LAST_COLUMN: Final = 16_384
 LAST_ROW: Final = 1_048_576
-LONGEST_NUMBER: Final = 12
 _ROW, _CELL, _VALUE, _FORMULA = (f"{MAIN}}}{name}" for name in ("row", "c", "v", "f"))
 _TEXT, _INLINE, _PHONETIC, _ITEM = (f"{MAIN}}}{name}" for name in ("t", "is", "rPh", "si"))
 _EPOCH_1900: Final = datetime(1899, 12, 30)
@@ -28,6 +27,10 @@ _EPOCH_1904: Final = datetime(1904, 1, 1)
 _LAST_SERIAL: Final = 2_958_466.0
 
 Value = float | str | bool | datetime | None
+
+
+class TooManyRowsError(Exception):
+    """A sheet holds more rows than are read."""
 
 
 class Percent(float):
@@ -152,8 +155,11 @@ def plain_text(text: str) -> str:
 class _CellReader:
     """Collects the cells of one sheet while its XML streams past."""
 
-    def __init__(self, parser: expat.XMLParserType, tables: BookTables, part: str) -> None:
+    def __init__(
+        self, parser: expat.XMLParserType, tables: BookTables, part: str, most_rows: int | None
+    ) -> None:
         self.parser = parser
+        self.most_rows = most_rows
         self.tables = tables
         self.part = part
         self.sheet = SheetCells()
@@ -169,6 +175,7 @@ class _CellReader:
         self.shared_index: str | None = None
         self.letters: dict[str, int] = {}
         self.shown: dict[str, str] = {}
+        self.filled_rows = 0
 
     def start(self, tag: str, attributes: Mapping[str, str]) -> None:
         if tag == _CELL:
@@ -193,7 +200,7 @@ class _CellReader:
             self._new_row(attributes.get("r"))
 
     def _new_row(self, number: str | None) -> None:
-        given = None if number is None else _whole(number)
+        given = None if number is None else number_in(number)
         self.row = self.row + 1 if given is None else given
         self.column = 0
         self.ref = None
@@ -220,8 +227,16 @@ class _CellReader:
             self.parser.CharacterDataHandler = None
         elif tag == _CELL and (self.has_value or self.has_formula):
             self._keep()
-        elif tag == _ROW and not self.cells:
+        elif tag == _ROW:
+            self._end_row()
+
+    def _end_row(self) -> None:
+        if not self.cells:
             self.sheet.rows.pop(self.row, None)
+            return
+        self.filled_rows += 1
+        if self.most_rows is not None and self.filled_rows > self.most_rows:
+            raise TooManyRowsError
 
     def _keep(self) -> None:
         if self.ref is not None:
@@ -274,15 +289,10 @@ class _CellReader:
         return Percent(number) if how == "percent" else _date(number, self.tables)
 
     def _shown_as(self, style: str) -> str:
-        number = _whole(style)
+        number = number_in(style)
         if number is None:
             raise PackageError(f"part {self.part} has a cell of the style {style!r}; the file is damaged")
         return self.tables.shown_as[number] if number < len(self.tables.shown_as) else ""
-
-
-def _whole(text: str) -> int | None:
-    text = text.strip()
-    return int(text) if text.isascii() and text.isdigit() and len(text) < LONGEST_NUMBER else None
 
 
 def _date(serial: float, tables: BookTables) -> Value:
@@ -296,7 +306,7 @@ def _text(text: str, _: BookTables) -> Value:
 
 
 def _shared(text: str, tables: BookTables) -> Value:
-    place = _whole(text)
+    place = number_in(text)
     if place is None or place >= len(tables.strings):
         raise PackageError("a cell refers to a shared text that is not there; the file is damaged")
     return tables.strings[place]
@@ -317,7 +327,7 @@ _KINDS: Final[Mapping[str, Callable[[str, BookTables], Value]]] = {
 }
 
 
-def read_cells(data: bytes, part: str, tables: BookTables) -> SheetCells:
+def read_cells(data: bytes, part: str, tables: BookTables, most_rows: int | None = None) -> SheetCells:
     """Return the cells of a worksheet part that hold a value or a formula.
 
     Parameters
@@ -328,14 +338,18 @@ def read_cells(data: bytes, part: str, tables: BookTables) -> SheetCells:
         Its name, for messages.
     tables : BookTables
         Shared texts and styles of the workbook.
+    most_rows : int, optional
+        How many rows may hold something.
 
     Raises
     ------
     PackageError
         The part is damaged or absurdly large.
+    TooManyRowsError
+        More than `most_rows` rows hold something.
     """
     parser = _parser(part)
-    reader = _CellReader(parser, tables, part)
+    reader = _CellReader(parser, tables, part, most_rows)
     parser.StartElementHandler = reader.start
     parser.EndElementHandler = reader.end
     _run(parser, data, part)

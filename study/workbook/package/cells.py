@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 from dataclasses import dataclass
 
-_PLACE = re.compile(r"\$?([A-Za-z]{1,3})\$?(\d+)")
+_PLACE = re.compile(r"\$?([A-Za-z]{1,3})\$?([0-9]{1,9})")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

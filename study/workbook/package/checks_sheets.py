@@ -9,7 +9,7 @@ from collections.abc import Iterator, Mapping, Sequence
 from study.workbook.package.cells import address, area, split_address
 from study.workbook.package.sheets import SHEET_ORDER
 from study.workbook.package.tables import TablePlace
-from study.workbook.package.xml import Node, out_of_order, whole_number
+from study.workbook.package.xml import Node, number_in, out_of_order, whole_number
 
 _TABLE_NAME = re.compile(r"[^\W\d][\w.]*|\\[\w.]*")
 _CELL_LIKE = re.compile(r"[A-Za-z]{1,3}\d+|[rR]\d*[cC]\d*|[rRcC]")
@@ -57,10 +57,16 @@ def _check_cells(part: str, row: Node, number: int, formats: int, strings: int) 
         last = column
         yield from _check_number(part, f"cell {place}", whole_number(cell, "s"), formats)
         kind, value = cell.attributes.get("t", "n"), cell.find("v")
-        if kind == "s" and (value is None or not value.text.isdigit() or int(value.text) >= strings):
+        if kind == "s" and _string_number(value, strings) is None:
             yield f"{part}: cell {place} refers to a shared string that is not there"
         if kind == "inlineStr" and cell.find("is") is None:
             yield f"{part}: cell {place} holds no text"
+
+
+def _string_number(value: Node | None, strings: int) -> int | None:
+    """Return the number of a shared string, None where there is no such string."""
+    number = number_in(value.text) if value is not None else None
+    return number if number is not None and number < strings else None
 
 
 def cell_texts(root: Node, strings: Sequence[str]) -> dict[str, str]:
@@ -72,10 +78,8 @@ def cell_texts(root: Node, strings: Sequence[str]) -> dict[str, str]:
             kind, value = cell.attributes.get("t", "n"), cell.find("v")
             if kind == "inlineStr":
                 text = "".join(n.text for n in cell.walk() if n.name == "t")
-            elif (
-                kind == "s" and value is not None and value.text.isdigit() and int(value.text) < len(strings)
-            ):
-                text = strings[int(value.text)]
+            elif kind == "s" and (shared := _string_number(value, len(strings))) is not None:
+                text = strings[shared]
             else:
                 text = value.text if value is not None else ""
             texts[cell.attributes.get("r", "")] = text

@@ -43,7 +43,7 @@ from study.workbook.package.sheets import OldSheet, old_sheet, rewrite_sheet, re
 from study.workbook.package.stale import is_referred_to, stale_sheet
 from study.workbook.package.styles import EMPTY_STYLES, StyleMap, merge_styles
 from study.workbook.package.tables import TablePlace, place_tables, read_tables
-from study.workbook.package.xml import OFFICE, Document
+from study.workbook.package.xml import OFFICE, Document, number_in
 from study.workbook.package.zip import Member, inflate, new_member, part_key, write_members
 
 
@@ -209,7 +209,7 @@ def _tables_on(base: _Side, sheet: Sheet, tables: list[TablePlace]) -> list[Tabl
 
 def _names_a_sheet(chain: bytes, numbers: set[int]) -> bool:
     """Return whether a chain of calculation names one of these sheets."""
-    return bool(numbers & {int(i) for i in re.findall(rb"""\bi=["'](\d+)["']""", chain)})
+    return bool(numbers & {number_in(i.decode()) for i in re.findall(rb"""\bi=["'](\d+)["']""", chain)})
 
 
 def _joined_styles(base: _Side, result: _Side) -> tuple[bytes, StyleMap]:
@@ -288,8 +288,8 @@ def _new_lists(
 
 def _free_ids(relations: Iterable[Relation]) -> Iterator[str]:
     """Yield relation ids above every numbered one."""
-    numbers = [int(found[1]) for r in relations if (found := re.fullmatch(r"rId(\d+)", r.id, re.IGNORECASE))]
-    number = max(numbers, default=0)
+    found = [re.fullmatch(r"rId(\d+)", r.id, re.IGNORECASE) for r in relations]
+    number = max((number_in(id_[1]) or 0 for id_ in found if id_), default=0)
     while True:
         number += 1
         yield f"rId{number}"

@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 
 from study.issues import PackageError
 from study.workbook.package.opc import Package, Relation, read_relations, rels_part
-from study.workbook.package.xml import OFFICE, Document, Node, escape, whole_number
+from study.workbook.package.xml import OFFICE, Document, Node, escape, number_in, whole_number
 from study.workbook.package.zip import part_key
 
 MARK = "StudyResultSheet"
@@ -251,7 +251,7 @@ def _edit_views(book: Document, sheets: Sequence[Sheet], positions: Mapping[int,
     shown = [positions[s.index] for s in sheets if s.index in positions and not s.hidden]
     for view in views.all("workbookView"):
         for name in ("firstSheet", "activeTab"):
-            old = view.attributes.get(name)
-            if old is not None and old.isdigit():
-                place = positions.get(int(old), shown[0] if shown else 0)
+            old = number_in(view.attributes.get(name, ""))
+            if old is not None:
+                place = positions.get(old, shown[0] if shown else 0)
                 book.set_attribute(view, name, str(place))

@@ -11,6 +11,7 @@ from xml.sax.saxutils import escape as _escape
 from study.issues import PackageError
 
 MAX_XML_BYTES = 64 * 2**20
+LONGEST_NUMBER = 10
 MAX_NODES = 600_000
 MAX_DEPTH = 200
 
@@ -76,6 +77,18 @@ class Node:
             waiting.extend(reversed(node.children))
 
 
+def number_in(text: str) -> int | None:
+    """Return the whole number that a text holds, None where it holds none or an absurdly long one.
+
+    Examples
+    --------
+    >>> number_in(" 12 "), number_in("-1"), number_in("²"), number_in("1" * 5000)
+    (12, None, None, None)
+    """
+    text = text.strip()
+    return int(text) if text.isascii() and text.isdigit() and len(text) <= LONGEST_NUMBER else None
+
+
 def whole_number(node: Node, name: str, default: int = 0) -> int:
     """Return an attribute that is a number not below zero.
 
@@ -85,9 +98,10 @@ def whole_number(node: Node, name: str, default: int = 0) -> int:
         It is something else.
     """
     text = node.attributes.get(name, str(default))
-    if not text.isascii() or not text.isdigit() or len(text) > 10:
+    number = number_in(text)
+    if number is None:
         raise PackageError(f"an element {node.name} says {name}={text[:20]!r}; the file is damaged")
-    return int(text)
+    return number
 
 
 def escape(text: str) -> str:
