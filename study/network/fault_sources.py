@@ -7,6 +7,7 @@ behind its own cable, which is part of it.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass, fields, replace
 
@@ -96,12 +97,16 @@ def fault_sources(
         [s.voltage if s.voltage else before[k] for k, s in enumerate(supplies)], float
     ).reshape(-1)
     holdings = tuple(holding_of(s.item, s.kind) for s in supplies)
-    rows = [_row(s, voltage[k], holdings[k], options, hz) for k, s in enumerate(supplies)]
-    table = np.array(rows, float).reshape(-1, len(_ROW))
+    asynchronous = np.array([s.kind in _ASYNCHRONOUS for s in supplies], bool)
+    table = np.zeros((len(supplies), len(_ROW)))
+    for k in np.flatnonzero(~asynchronous).tolist():
+        table[k] = _columns(_lasting_source(supplies[k], voltage[k], holdings[k], options, hz)).T
+    if asynchronous.any():
+        motors = [s for s in supplies if s.kind in _ASYNCHRONOUS]
+        table[asynchronous] = _columns(_motor_sources(motors, voltage[asynchronous], hz)).T
     bare = _joined_source(dict(zip(_ROW, table.T, strict=True)))
     lead = np.array([s.lead for s in supplies], complex)
     behind = through_impedance(bare, r_ohm=lead.real, x_ohm=lead.imag, frequency_hz=hz)
-    asynchronous = np.array([s.kind in _ASYNCHRONOUS for s in supplies], bool)
     behind = _own_cable_of_motors(bare, behind, asynchronous)
     at_board = starred(behind, SQRT3 * voltage)
     limit = np.where([s.kind == "converter supply" for s in supplies], bare.current.sustained_a, 0.0)
@@ -145,19 +150,19 @@ _ROW = (
 )
 
 
-def _row(s: Supply, voltage: float, holding: Holding, options: CaseOptions, hz: float) -> list[float]:
-    """Return one source at its own terminals, in the order of `_ROW`."""
+def _lasting_source(s: Supply, voltage: float, holding: Holding, options: CaseOptions, hz: float) -> Source:
+    """Return a source that is no asynchronous motor, at its own terminals."""
     if isinstance(s.item, Genset | SynchronousMotor):
-        source = _machine_source(s, s.item, voltage, options, sustained_in=holding.current_in, hz=hz)
-    elif s.kind == "shore supply":
-        source = _stiff_source(voltage, s.pu, s.r_over_x, hz)
-    elif isinstance(s.item, ConverterSupply):
-        limit = (s.item.short_circuit_current or 0.0) * voltage / s.pu
-        source = _limited_source(voltage, limit)
-    else:
-        source = _motor_source(s, voltage, hz)
-    current = [float(getattr(source.current, f.name)) for f in fields(FaultCurrent)]
-    return current + [float(getattr(source, name)) for name in _ROW[len(current) :]]
+        return _machine_source(s, s.item, voltage, options, sustained_in=holding.current_in, hz=hz)
+    if isinstance(s.item, ConverterSupply):
+        return _limited_source(voltage, (s.item.short_circuit_current or 0.0) * voltage / s.pu)
+    return _stiff_source(voltage, s.pu, s.r_over_x, hz)
+
+
+def _columns(source: Source) -> FloatArray:
+    """Return the arrays of a source in the order of `_ROW`, (column, source)."""
+    current = [getattr(source.current, f.name) for f in fields(FaultCurrent)]
+    return np.array(current + [getattr(source, name) for name in _ROW[len(current) :]], float)
 
 
 def pick_sources(sources: FaultSources, rows: IntArray) -> FaultSources:
@@ -277,26 +282,25 @@ def _constant(current: float, dc: float, t_dc_s: float, r: float, x: float) -> S
     )
 
 
-def _motor_source(s: Supply, voltage: float, hz: float) -> Source:
+def _motor_sources(motors: Sequence[Supply], voltage: FloatArray, hz: float) -> Source:
     """Return motors without load before the fault: typical data, those of large ones by their own start."""
+    rs, rr, x = np.array([_motor_circuit(s) for s in motors], float).T * np.array([s.pu for s in motors])
+    return asynchronous_source(
+        voltage_v=SQRT3 * voltage, load_a=0.0, rs_ohm=rs, rr_ohm=rr, x_ohm=x, frequency_hz=hz
+    )
+
+
+def _motor_circuit(s: Supply) -> tuple[float, float, float]:
+    """Return RS, RR and XS + XR per unit of the motors' own rating."""
     z = TYPICAL_MOTOR
     if s.kind == "small motors":
-        rs, rr, x = z.rs_pu, z.rr_pu, z.x_pu
-    elif s.kind == "motor":
-        scale = 1.0 / (s.starting * float(np.hypot(z.rs_pu + z.rr_pu, z.x_pu)))
-        rs, rr, x = z.rs_pu * scale, z.rr_pu * scale, z.x_pu * scale
-    else:
-        x = 1.0 / s.starting / float(np.hypot(1.0, s.r_over_x))
-        rs = MOTOR_R_OVER_X_SPLIT * s.r_over_x * x
-        rr = s.r_over_x * x - rs
-    return asynchronous_source(
-        voltage_v=SQRT3 * voltage,
-        load_a=0.0,
-        rs_ohm=rs * s.pu,
-        rr_ohm=rr * s.pu,
-        x_ohm=x * s.pu,
-        frequency_hz=hz,
-    )
+        return z.rs_pu, z.rr_pu, z.x_pu
+    if s.kind == "motor":
+        scale = 1.0 / (s.starting * math.hypot(z.rs_pu + z.rr_pu, z.x_pu))
+        return z.rs_pu * scale, z.rr_pu * scale, z.x_pu * scale
+    x = 1.0 / s.starting / math.hypot(1.0, s.r_over_x)
+    rs = MOTOR_R_OVER_X_SPLIT * s.r_over_x * x
+    return rs, s.r_over_x * x - rs, x
 
 
 def _own_cable_of_motors(bare: Source, behind: Source, asynchronous: BoolArray) -> Source:
