@@ -1,8 +1,8 @@
 """Time every cell of a workbook read by our reader, by openpyxl (read-only) and by python-calamine.
 
 Run with ``python -m tests.benchmarks.bench_reading``. Ratios are what counts: machines differ. The peers do
-not give the same: python-calamine takes errors and formulas without a value for blanks, and openpyxl needs two
-passes for values and formulas (tests/workbook/test_reader_choice.py). That all three find the same number of
+not give the same: python-calamine takes errors and formulas without a value for blanks, and openpyxl needs
+two passes for values and formulas (tests/workbook/test_reader_choice.py). That all three find the same number of
 cells with a value is checked here.
 """
 
