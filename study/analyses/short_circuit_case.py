@@ -18,7 +18,7 @@ from study.analyses.short_circuit_currents import (
 from study.analyses.short_circuit_ends import EndRows, branch_ends, end_rows, with_taken_over
 from study.analyses.short_circuit_equivalent import behind_equivalent
 from study.analyses.short_circuit_options import ShortCircuitOptions
-from study.analyses.short_circuit_totals import greatest_peaks, sums_at, time_grid
+from study.analyses.short_circuit_totals import ac_sums_at, greatest_peaks, sums_at, time_grid
 from study.formulas.fault_current import SQRT2, SQRT3, FaultCurrent
 from study.network.fault_network import FaultNetwork
 from study.network.fault_zero_sequence import zero_sequence
@@ -82,7 +82,7 @@ def solve_case(net: FaultNetwork, nominal: FaultNetwork | None, options: ShortCi
     case = _Assembler(net, stages, parts, ends_s, options).case(
         own=own,
         sustained=sustained,
-        nominal=_nominal(nominal, hz),
+        nominal=_nominal(nominal, stages, hz),
         two_phase=two_phase,
         earth=earth,
         rows=rows,
@@ -101,10 +101,10 @@ def solve_case(net: FaultNetwork, nominal: FaultNetwork | None, options: ShortCi
     )
 
 
-def _nominal(net: FaultNetwork | None, hz: float) -> tuple[FloatArray, FloatArray] | None:
+def _nominal(net: FaultNetwork | None, lasting: Stages, hz: float) -> tuple[FloatArray, FloatArray] | None:
     if net is None:
         return None
-    parts = in_amperes(net, fault_parts(net, solve_stages(net), None, 1.0)[0])
+    parts = in_amperes(net, fault_parts(net, solve_stages(net, lasting), None, 1.0)[0])
     ac, dc = half_cycle(parts, hz)
     return parts.subtransient_a.sum(axis=1), (SQRT2 * ac + dc).sum(axis=1)
 
@@ -143,10 +143,10 @@ class _Assembler:
         half, dc_half = half_cycle(parts, hz)
         initial = parts.subtransient_a
         ac, dc = sums_at(parts, self.ends_s, times)
-        ac2 = sums_at(two_phase, self.ends_s, times)[0]
+        ac2 = ac_sums_at(two_phase, self.ends_s, times)
         ac1 = np.full_like(ac, np.nan)
         if earth is not None:
-            ac1 = sums_at(earth, self.ends_s, times)[0]
+            ac1 = ac_sums_at(earth, self.ends_s, times)
             ac1[~(earth.subtransient_a.sum(axis=1) > 0.0)] = np.nan
         ip = (SQRT2 * half + dc_half).sum(axis=1)
         total_initial = initial.sum(axis=1)

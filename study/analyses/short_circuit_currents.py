@@ -71,13 +71,16 @@ def terminal_source(net: FaultNetwork) -> Source:
     return starred(net.sources.bare, SQRT3 * net.sources.voltage)
 
 
-def solve_stages(net: FaultNetwork) -> Stages:
+def solve_stages(net: FaultNetwork, lasting: Stages | None = None) -> Stages:
     """Return every stage of a fault.
 
     Parameters
     ----------
     net : FaultNetwork
         The network.
+    lasting : Stages, optional
+        Stages of the same network at another tolerance, whose sustained and negative-sequence stages serve
+        here too: they do not hang on X''d and X'd.
 
     Returns
     -------
@@ -94,10 +97,15 @@ def solve_stages(net: FaultNetwork) -> Stages:
         z = [x.r_ohm + 1j * np.where(active, component(x), 1.0) for x in (board, bare)]
         return solve_stage(net, z[0], z[1], active, **how)  # type: ignore[arg-type]
 
+    first = stage(lambda x: x.x_sub_ohm, everyone)
+    mixed = stage(lambda x: np.where(s.asynchronous, x.x_sub_ohm, x.x_trans_ohm), everyone)
+    transient = stage(lambda x: x.x_trans_ohm, ~s.asynchronous)
+    if lasting is not None:
+        return replace(lasting, subtransient=first, mixed=mixed, transient=transient)
     return Stages(
-        subtransient=stage(lambda x: x.x_sub_ohm, everyone),
-        mixed=stage(lambda x: np.where(s.asynchronous, x.x_sub_ohm, x.x_trans_ohm), everyone),
-        transient=stage(lambda x: x.x_trans_ohm, ~s.asynchronous),
+        subtransient=first,
+        mixed=mixed,
+        transient=transient,
         reach=stage(lambda x: _reach_reactance(x, s.voltage), holds),
         held_field=stage(
             lambda x: x.x_sustained_ohm,

@@ -12,8 +12,9 @@ from study.formulas.fault_current import SQRT2, FaultCurrent
 
 FloatArray = NDArray[np.float64]
 
-_NODES = 12  # Chebyshev points in half a cycle; the decays are smooth, twelve leave 1e-9
-_COARSE, _PASSES, _FINE = 64, 3, 17
+_NODES = 10  # Chebyshev points in half a cycle; the decays are smooth, ten leave 1e-7
+_COARSE, _PASSES, _FINE = 16, 4, 9
+_EARLIEST = -0.2  # of half a cycle, -1 to 1: resistance alone puts the peak at 0, a quarter cycle
 _DIED_AWAY = -30.0  # exponent: 1e-13 of the start
 
 
@@ -36,15 +37,42 @@ def sums_at(current: FaultCurrent, ends_s: FloatArray, time_s: FloatArray) -> tu
     tuple of ndarray
         Both (place, time). [A]
     """
+    return ac_sums_at(current, ends_s, time_s), _decays(
+        current.dc_a, current.t_dc_s, _runs(ends_s, time_s), time_s
+    )
+
+
+def ac_sums_at(current: FaultCurrent, ends_s: FloatArray, time_s: FloatArray) -> FloatArray:
+    """Return Iac of all sources together at given times; see `sums_at`.
+
+    Parameters
+    ----------
+    current : FaultCurrent
+        Shape (place, source). [A]
+    ends_s : ndarray, shape (source,)
+        When each source stops. [s]
+    time_s : ndarray, shape (time,)
+        From the start of the fault. [s]
+
+    Returns
+    -------
+    ndarray, shape (place, time)
+        [A]
+    """
     lasting = (current.transient_a > 0.0).any(axis=0) | (current.sustained_a > 0.0).any(axis=0)
-    runs = (time_s[None, :] <= ends_s[:, None]).astype(float)
+    runs = _runs(ends_s, time_s)
     fast = _decays(current.subtransient_a - current.transient_a, current.t_sub_s, runs, time_s)
     few = np.flatnonzero(lasting)
     slow = _decays(
         (current.transient_a - current.sustained_a)[:, few], current.t_trans_s[:, few], runs[few], time_s
     )
     kept = current.sustained_a[:, few] @ runs[few]
-    return fast + slow + kept, _decays(current.dc_a, current.t_dc_s, runs, time_s)
+    return np.asarray(fast + slow + kept)
+
+
+def _runs(ends_s: FloatArray, time_s: FloatArray) -> FloatArray:
+    """Return 1 while a source runs and 0 after, (source, time)."""
+    return np.asarray((time_s[None, :] <= ends_s[:, None]).astype(float))
 
 
 def _decays(start: FloatArray, constant_s: FloatArray, runs: FloatArray, time_s: FloatArray) -> FloatArray:
@@ -92,8 +120,8 @@ def greatest_peaks(current: FaultCurrent, ends_s: FloatArray, frequency_hz: floa
     ac, dc = sums_at(current, ends_s, (points + 1.0) * 0.25 / frequency_hz)
     fit = np.linalg.inv(chebyshev.chebvander(points, _NODES - 1))
     series_ac, series_dc = fit @ ac.T, fit @ dc.T  # (order, place)
-    best = np.full(ac.shape[0], 0.0)
-    step = 1.0
+    middle, step = 0.5 * (1.0 + _EARLIEST), 0.5 * (1.0 - _EARLIEST)
+    best = np.full(ac.shape[0], middle)
     offsets = np.linspace(-1.0, 1.0, _COARSE)
     value = np.zeros_like(best)
     for _ in range(_PASSES + 1):
@@ -105,7 +133,7 @@ def greatest_peaks(current: FaultCurrent, ends_s: FloatArray, frequency_hz: floa
         at = np.argmax(size, axis=1)[:, None]
         best = np.take_along_axis(x, at, axis=1)[:, 0]
         value = np.take_along_axis(size, at, axis=1)[:, 0]
-        step, offsets = step * 2.0 / len(offsets), np.linspace(-1.0, 1.0, _FINE)
+        step, offsets = step * 2.0 / (len(offsets) - 1), np.linspace(-1.0, 1.0, _FINE)
     return value
 
 

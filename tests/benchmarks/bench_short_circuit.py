@@ -5,11 +5,11 @@ Run as a script for the table, or with pytest for the claims behind it::
     python tests/benchmarks/bench_short_circuit.py
     pytest tests/benchmarks/bench_short_circuit.py
 
-Only ratios of one run mean anything; every time is the best of several, both sides in turn. Ours is everything that the study
-computes: both cases of every mode by IEC 61363-1 (currents, decay, contributions of every source, minimum
-faults) and by IEC 60909, at every live place of the large demonstration vessel. The library computes I''k and
-ip of the maximum case alone, its networks built beforehand. The loop over buses is timed once on a
-sample of them.
+Only ratios of one run mean anything; every time is the best of several, both sides in turn. Ours is
+everything that the study computes: both cases of every mode by IEC 61363-1 (currents, decay, contributions
+of every source, minimum faults) and by IEC 60909, at every live place of the large demonstration vessel. The
+library computes I''k and ip of the maximum case alone, its networks built beforehand. The loop over buses is
+timed once, on a sample of them.
 """
 
 from __future__ import annotations
