@@ -113,5 +113,9 @@ class PackageError(StudyError):
         super().__init__(text if len(text) <= LONGEST_SENTENCE else f"{text[:_HEAD]} ... {text[-_TAIL:]}")
 
 
+class ChangedFileError(PackageError):
+    """The workbook was saved, moved or deleted by someone else while the study ran."""
+
+
 class SolveError(StudyError):
     """A formula or a network has no solution; the message says which and why."""

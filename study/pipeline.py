@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from study.issues import Issue, PackageError, StudyError
+from study.issues import ChangedFileError, Issue, PackageError, StudyError
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -17,6 +17,7 @@ if TYPE_CHECKING:
     from study.checks.limits import Limits
     from study.model.plant import Plant
     from study.report.content import StudyOutcome
+    from study.workbook.package import Package
 
 Progress = Callable[[str], None]
 DEMOS = ("workboat", "service-vessel", "large-vessel")
@@ -295,22 +296,40 @@ def write_results(
     folder = _folder(book, out)
     _tell(progress, "writing the result sheets")
     package, tables = open_package(book), all_tables(outcome)
+    if outcome.plant.file_digest not in ("", package.digest):
+        raise ChangedFileError(
+            f"{book.name}: the file was changed while the study ran, nothing was written; run again"
+        )
     try:
         data = graft_result_sheets(package.data, result_workbook(outcome, tables))
     except PackageError as error:
         raise PackageError(f"{book.name}: {error}") from error
+    _tell(progress, "writing the report")
+    texts = {
+        f"{book.stem}-report.html": report_page(outcome, tables),
+        f"{book.stem}-results.json": json_text(outcome, tables),
+    }
     target, notes = _write_book(book, folder / book.name, data, package.digest)
     paths = [target]
-    _tell(progress, "writing the report")
-    for name, text in (
-        (f"{book.stem}-report.html", report_page(outcome, tables)),
-        (f"{book.stem}-results.json", json_text(outcome, tables)),
-    ):
+    for name, text in texts.items():
         write_atomically(folder / name, text.encode("utf-8"))
         paths.append(folder / name)
     if networks:
         paths += _write_networks(outcome, folder, book.stem)
-    return Written(paths=tuple(paths), notes=notes)
+    return Written(paths=tuple(paths), notes=(*notes, *_note_formulas(package)))
+
+
+def _note_formulas(package: Package) -> tuple[str, ...]:
+    """Return a note where formulas of the engineer's read result sheets: their values are of the last run."""
+    from study.workbook import sheets_that_show_results
+
+    sheets = sheets_that_show_results(package)
+    if not sheets:
+        return ()
+    return (
+        f"formulas on {', '.join(sheets)} read result sheets; they show the new results when the workbook is "
+        "next opened in a spreadsheet program",
+    )
 
 
 def _folder(book: Path, out: Path | None) -> Path:
@@ -334,13 +353,27 @@ def _write_book(book: Path, target: Path, data: bytes, digest: str) -> tuple[Pat
     in_place = target.resolve() == book.resolve()
     try:
         write_atomically(target, data, read_digest=digest if in_place else None)
+    except ChangedFileError:
+        raise
     except PackageError as error:
         if not in_place:
             raise
-        copy = book.with_name(f"{book.stem}-with-results{book.suffix}")
-        write_atomically(copy, data)
+        copy = _free_copy(book)
+        try:
+            write_atomically(copy, data)
+        except PackageError:
+            raise PackageError(f"{error}; give another folder with --out FOLDER") from error
         return copy, (f"{error}; the result sheets are in {copy.name} instead",)
     return target, ()
+
+
+def _free_copy(book: Path) -> Path:
+    """Return a name beside the workbook that no file has: an earlier copy may hold the engineer's changes."""
+    copy, number = book.with_name(f"{book.stem}-with-results{book.suffix}"), 1
+    while copy.exists():
+        number += 1
+        copy = book.with_name(f"{book.stem}-with-results-{number}{book.suffix}")
+    return copy
 
 
 def _write_networks(outcome: StudyOutcome, folder: Path, stem: str) -> list[Path]:

@@ -78,7 +78,8 @@ class Plant:
     """Everything about the vessel.
 
     ``cells`` maps (equipment, heading without unit) to ``Sheet!A1``; it also holds blanks that were filled.
-    ``input_digest`` is the SHA-256 over the input cells. ``findings`` are warnings and notes, never faults.
+    ``input_digest`` is the SHA-256 over the input cells, ``file_digest`` that of the whole file, empty where
+    the plant was not read from one. ``findings`` are warnings and notes, never faults.
     """
 
     project: Project
@@ -112,6 +113,7 @@ class Plant:
     cells: Mapping[tuple[str, str], str]
     file_name: str
     input_digest: str
+    file_digest: str = ""
 
     def cell_of(self, equipment: str, heading: str) -> str:
         """Return the address of a cell as ``Sheet!A1``, or an empty text where there is none."""

@@ -103,12 +103,12 @@ def check_workbook(path: Path | str) -> tuple[Plant | None, tuple[Issue, ...]]:
     package = open_package(path)
     name = Path(path).name
     try:
-        return check_raw(read_package(package, name))
+        return check_raw(read_package(package, name), package.digest)
     except PackageError as error:
         raise PackageError(f"{name}: {error}") from error
 
 
-def check_raw(book: RawBook) -> tuple[Plant | None, tuple[Issue, ...]]:
+def check_raw(book: RawBook, file_digest: str = "") -> tuple[Plant | None, tuple[Issue, ...]]:
     """Check raw cells and return the plant, where they can be used, and everything found."""
     reading = Reading(file_name=book.file_name)
     _read_tables(book, reading)
@@ -124,7 +124,7 @@ def check_raw(book: RawBook) -> tuple[Plant | None, tuple[Issue, ...]]:
     ]
     if broken:
         raise StudyError(f"{broken[0]} was refused without a reason; please report this workbook")
-    plant = _plant(reading, modes.build_modes(reading.rows, states, asked))
+    plant = _plant(reading, modes.build_modes(reading.rows, states, asked), file_digest)
     return plant, reading.found.in_order()
 
 
@@ -214,7 +214,7 @@ def _each(reading: Reading, sheet: str, build: Callable[[Row], _Made]) -> tuple[
     return tuple(build(row) for row in reading.rows.get(sheet, ()))
 
 
-def _plant(reading: Reading, its_modes: tuple[Any, ...]) -> Plant:
+def _plant(reading: Reading, its_modes: tuple[Any, ...], file_digest: str) -> Plant:
     rows = reading.rows
     return Plant(
         project=project(reading.project),
@@ -248,6 +248,7 @@ def _plant(reading: Reading, its_modes: tuple[Any, ...]) -> Plant:
         cells=CellPlaces(rows, reading.places),
         file_name=reading.file_name,
         input_digest=input_digest(reading.tables),
+        file_digest=file_digest,
     )
 
 

@@ -83,16 +83,40 @@ def read_package(package: Package, file_name: str) -> RawBook:
     """
     root = _xml(package, package.workbook_part)
     load = partial(_cells, package, _tables(package, root))
-    sheets = [
-        sheet
-        for sheet in read_sheets(package, root, RESULT_PREFIX)
-        if sheet.relation.is_a("worksheet") and not is_result(sheet.name)
-    ]
+    sheets = _own_sheets(package, root)
     refused = _dependent(package, root, sheets, load)
     return RawBook(
         file_name=file_name,
         sheets=tuple(RawSheet(name=s.name, read=partial(_rows, load, s, refused)) for s in sheets),
     )
+
+
+def sheets_that_show_results(package: Package) -> tuple[str, ...]:
+    """Return the names of the engineer's sheets with a formula that depends on a result sheet.
+
+    Parameters
+    ----------
+    package : Package
+        The workbook.
+
+    Returns
+    -------
+    tuple of str
+        In the order of the tabs.
+    """
+    root = _xml(package, package.workbook_part)
+    sheets = _own_sheets(package, root)
+    load = partial(_cells, package, _tables(package, root))
+    found = {place[0] for place in _dependent(package, root, sheets, load)}
+    return tuple(sheet.name for sheet in sheets if sheet.name.casefold() in found)
+
+
+def _own_sheets(package: Package, root: Node) -> list[Sheet]:
+    return [
+        sheet
+        for sheet in read_sheets(package, root, RESULT_PREFIX)
+        if sheet.relation.is_a("worksheet") and not is_result(sheet.name)
+    ]
 
 
 def is_result(name: str) -> bool:

@@ -2,8 +2,8 @@
 
 Run with ``python -m tests.benchmarks.bench_reading``. Ratios are what counts: machines differ. The peers do
 not give the same: python-calamine takes errors and formulas without a value for blanks, and openpyxl needs
-two passes for values and formulas (tests/workbook/test_reader_choice.py). That all three find the same number of
-cells with a value is checked here.
+two passes for values and formulas (tests/workbook/test_reader_choice.py). That all three find the same number
+of cells with a value is checked here.
 """
 
 from __future__ import annotations

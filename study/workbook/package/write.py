@@ -10,7 +10,7 @@ import stat
 import tempfile
 from pathlib import Path
 
-from study.issues import PackageError
+from study.issues import ChangedFileError, PackageError
 
 _REASONS = {
     errno.ENOSPC: "the disk is full",
@@ -103,11 +103,11 @@ def _refuse_changed(target: Path, read_digest: str | None) -> None:
     try:
         found = hashlib.sha256(target.read_bytes()).hexdigest()
     except FileNotFoundError:
-        raise PackageError(
+        raise ChangedFileError(
             f"{target.name}: the file was moved or deleted while the study ran, nothing was written"
         ) from None
     if found != read_digest:
-        raise PackageError(
+        raise ChangedFileError(
             f"{target.name}: the file was changed while the study ran, nothing was written; run again"
         )
 
