@@ -133,12 +133,15 @@ def _run(options: argparse.Namespace) -> int:
 
 
 def _check(options: argparse.Namespace) -> int:
+    from study.issues import one_line
     from study.pipeline import check_study
 
     plant, issues = check_study(options.book)
     _print_issues(options.book, issues)
     if plant is None:
         return EXIT_UNUSABLE
+    for text in plant.not_read:
+        print(f"not read: {one_line(text)}")
     print(f"{options.book}: can be used; {len(plant.assumptions)} typical values stand in for blanks")
     return EXIT_WITHIN
 

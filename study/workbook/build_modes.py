@@ -24,7 +24,7 @@ def check_mode_headings(tables: Mapping[str, Table], modes: Sequence[str], found
         for repeated in table.spec.mode_columns if table is not None else ():
             for mode in modes:
                 name = repeated.column.field
-                if table is None or name not in wanted or (mode, name) in table.at:
+                if table is None or name not in wanted or (mode, name) in table.at.keys() | table.misread:
                     continue
                 heading = repeated.heading(mode)
                 found.add(

@@ -14,6 +14,7 @@ from study.workbook.headings import Match, folded, nearest
 from study.workbook.sheet_xml import ErrorValue, NoStoredValue, Percent, ResultFormula
 
 SHOWN_LENGTH: Final = 60
+_WITH_UNIT: Final = re.compile(r"[-+]?[0-9]+(\.[0-9]+)?\s*[^\s0-9.,].{0,11}")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -142,19 +143,20 @@ def _other_number(value: Any, match: Match) -> float | Refused:
     found = f"{column.name} is the text {shown(text)}"
     if _is_comma_number(text):
         return Refused(
-            code="decimal-comma", found=found, wanted="type it as a number, so that Excel aligns it right"
+            code="decimal-comma",
+            found=found,
+            wanted="type it again as a number; Excel aligns numbers to the right",
         )
     if _is_number(text):
         return Refused(
             code="text-number", found=f"{found}, not a number", wanted="convert the cell to a number in Excel"
         )
-    return Refused(
-        code="text-number",
-        found=found,
-        wanted=f"{_wanted(column)}, or leave the cell blank"
-        if column.blank != "required"
-        else _wanted(column),
-    )
+    wanted = _wanted(column)
+    if _WITH_UNIT.fullmatch(text):
+        wanted = "write the number alone" + (", in the unit of the heading" if column.unit else "")
+    elif column.blank != "required":
+        wanted = f"{wanted}, or leave the cell blank"
+    return Refused(code="text-number", found=found, wanted=wanted)
 
 
 def _percent(value: float, match: Match) -> float | Refused:

@@ -159,6 +159,8 @@ def _report_unused(row: Row, column: Column, found: Findings) -> None:
 
 def _check_groups(row: Row, found: Findings) -> None:
     for group in row.table.spec.one_of:
+        if any((None, name) in row.table.misread for name in group):
+            continue
         if not row.broken & set(group) and not any(row.has(name) for name in group):
             headings = [row.table.spec.column(name).heading for name in group]
             row.broken.add(group[0])

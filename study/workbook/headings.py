@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 import unicodedata
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 from types import MappingProxyType
 from typing import Final
@@ -75,25 +75,30 @@ def split_heading(text: str) -> tuple[str, str | None]:
 
 
 def edit_distance(a: str, b: str, limit: int) -> int:
-    """Return the number of insertions, deletions and replacements between two texts, at most `limit` + 1.
+    """Return the number of slips between two texts, at most `limit` + 1.
 
-    Source: V. I. Levenshtein, Soviet Physics Doklady 10 (1966) 707, by the usual row-wise recurrence.
+    A slip is a letter too many, one too few, another letter, or two neighbours exchanged.
+
+    Source: F. J. Damerau, Communications of the ACM 7 (1964) 171; V. I. Levenshtein, Soviet Physics Doklady
+    10 (1966) 707; by the usual row-wise recurrence, in which no letter is touched twice.
 
     Examples
     --------
     >>> edit_distance("kitten", "sitting", 5)
     3
-    >>> edit_distance("kitten", "sitting", 1)
-    2
+    >>> edit_distance("kitten", "sitting", 1), edit_distance("End", "Edn", 2)
+    (2, 1)
     """
     if abs(len(a) - len(b)) > limit:
         return limit + 1
-    row = list(range(len(b) + 1))
+    before, row = [0] * (len(b) + 1), list(range(len(b) + 1))
     for i, left in enumerate(a, 1):
-        above, row[0] = row[0], i
+        before, above, row = row, before, [i] + [0] * len(b)
         for j, right in enumerate(b, 1):
-            above, row[j] = row[j], min(row[j] + 1, row[j - 1] + 1, above + (left != right))
-        if min(row) > limit:
+            row[j] = min(before[j] + 1, row[j - 1] + 1, before[j - 1] + (left != right))
+            if i > 1 and j > 1 and left == b[j - 2] and a[i - 2] == right:
+                row[j] = min(row[j], above[j - 2] + 1)
+        if min(row) > limit and min(before) > limit:
             return limit + 1
     return min(row[-1], limit + 1)
 
@@ -108,8 +113,10 @@ def nearest(text: str, names: Iterable[str], count: int = 3) -> tuple[str, ...]:
     """
     wanted = heading_key(text)
     limit = max(NEAR, len(wanted) // 3)
-    scored = [(edit_distance(wanted, heading_key(name), limit), name) for name in names]
-    return tuple(name for distance, name in sorted(scored) if distance <= limit)[:count]
+    scored = sorted((edit_distance(wanted, heading_key(name), limit), name) for name in names)
+    # Where one is much like it, those that are less so only distract.
+    limit = min(limit, scored[0][0] + 1) if scored else limit
+    return tuple(name for distance, name in scored if distance <= limit)[:count]
 
 
 @lru_cache(maxsize=512)
@@ -162,11 +169,15 @@ class Match:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Misfit:
-    """A heading that cannot be read: what is wrong and what is wanted."""
+    """A heading that cannot be read: what is wrong and what is wanted.
+
+    ``meant`` holds the mode (None for a plain column) and field of each column that it may stand for.
+    """
 
     code: str
     found: str
     wanted: str
+    meant: tuple[tuple[str | None, str], ...] = ()
 
 
 class HeadingIndex:
@@ -207,28 +218,37 @@ class HeadingIndex:
         name, unit = split_heading(text)
         found = heading_key(name)
         if found in self._modes:
-            mode, repeated = self._modes[found]
-            factor = unit_factor(repeated.column, unit)
-            return (
-                factor
-                if isinstance(factor, Misfit)
-                else Match(column=repeated.column, factor=factor, mode=mode)
-            )
+            return _of_mode(*self._modes[found], unit)
         if found in self._columns:
             return _by_unit(self._columns[found], unit)
-        return self._unbracketed(name) or self._near(found)
+        return self._unbracketed(name) or self._near(found, unit)
 
-    def _near(self, found: str) -> Misfit | None:
-        for known, shown in self._shown.items():
-            # Two letters apart says nothing about a name of three: Tag is no misspelt Td'.
-            limit = NEAR if len(known) > SHORT else 1
-            if edit_distance(found, known, limit) <= limit:
-                return Misfit(
-                    code="near-miss-heading",
-                    found=f"the heading is nearly “{shown}”",
-                    wanted=f"write “{shown}”, or start the heading with {REMARK} if it is your own remark",
-                )
-        return None
+    def _near(self, found: str, unit: str | None) -> Misfit | None:
+        distances = {known: edit_distance(found, known, _most_slips(known)) for known in self._shown}
+        near = [known for known, distance in distances.items() if distance <= _most_slips(known)]
+        if not near:
+            return None
+        known = min(near, key=distances.__getitem__)
+        shown = self._heading(known, unit)
+        return Misfit(
+            code="near-miss-heading",
+            found=f"the heading is nearly “{shown}”",
+            wanted=f"write “{shown}”, or start the heading with {REMARK} if it is your own remark",
+            meant=self._meant(known),
+        )
+
+    def _heading(self, known: str, unit: str | None) -> str:
+        """Return a heading as the sheet writes it; of two with one name, that with the unit."""
+        for column in self._columns.get(known, ()):
+            if unit is not None and not isinstance(unit_factor(column, unit), Misfit):
+                return column.heading
+        return self._shown[known]
+
+    def _meant(self, known: str) -> tuple[tuple[str | None, str], ...]:
+        if known in self._modes:
+            mode, repeated = self._modes[known]
+            return ((mode, repeated.column.field),)
+        return tuple((None, column.field) for column in self._columns[known])
 
     def _unbracketed(self, name: str) -> Misfit | None:
         for known in self._numbers:
@@ -238,8 +258,22 @@ class HeadingIndex:
                     code="unit-without-brackets",
                     found="the unit is not in square brackets",
                     wanted=f"write “{self._shown[known]}”",
+                    meant=self._meant(known),
                 )
         return None
+
+
+def _most_slips(known: str) -> int:
+    # Two letters apart says nothing about a name of three: Tag is no misspelt Td'.
+    return NEAR if len(known) > SHORT else 1
+
+
+def _of_mode(mode: str, repeated: ModeColumn, unit: str | None) -> Match | Misfit:
+    factor = unit_factor(repeated.column, unit)
+    if not isinstance(factor, Misfit):
+        return Match(column=repeated.column, factor=factor, mode=mode)
+    wanted = factor.wanted.replace(f"“{repeated.column.heading}”", f"“{repeated.heading(mode)}”")
+    return replace(factor, wanted=wanted, meant=((mode, repeated.column.field),))
 
 
 def _by_unit(columns: list[Column], unit: str | None) -> Match | Misfit:
@@ -249,10 +283,11 @@ def _by_unit(columns: list[Column], unit: str | None) -> Match | Misfit:
         if not isinstance(factor, Misfit):
             return Match(column=column, factor=factor)
         misfits.append(factor)
+    meant = tuple((None, column.field) for column in columns)
     if len(misfits) == 1:
-        return misfits[0]
+        return replace(misfits[0], meant=meant)
     wanted = " or ".join(f"“{column.heading}”" for column in columns)
-    return Misfit(code=misfits[0].code, found=misfits[0].found, wanted=f"write {wanted}")
+    return Misfit(code=misfits[0].code, found=misfits[0].found, wanted=f"write {wanted}", meant=meant)
 
 
 def unit_factor(column: Column, unit: str | None) -> float | Misfit:

@@ -168,7 +168,9 @@ def _report(row: Row, column: Column, text: str, names: Names, found: Findings) 
 def _report_unknown(row: Row, column: Column, text: str, names: Names, found: Findings) -> None:
     known = names.all(column.target)
     near = names.near(text, column.target)
-    if near:
+    if len(near) == 1:
+        wanted = f"the closest name is {near[0]}"
+    elif near:
         wanted = f"closest names are {', '.join(near)}"
     elif known:
         wanted = f"give a name from {', '.join(column.target)}"
@@ -186,7 +188,7 @@ def _report_unknown(row: Row, column: Column, text: str, names: Names, found: Fi
 def check_unique(rows: RowsBySheet, found: Findings) -> None:
     """Report rows that describe what another row of their sheet describes already."""
     for its_rows in rows.values():
-        unique = its_rows[0].table.spec.unique if its_rows else ()
+        unique = _unique_fields(its_rows)
         seen: dict[tuple[Any, ...], Row] = {}
         for row in its_rows if unique else ():
             if row.broken & set(unique):
@@ -199,6 +201,17 @@ def check_unique(rows: RowsBySheet, found: Findings) -> None:
                     "doubled-row", row.sheet, row.cell(unique[0]),
                     f"{shown(row.name)} stands in row {first.number} already", "keep one of the two rows",
                 )  # fmt: skip
+
+
+def _unique_fields(rows: Sequence[Row]) -> tuple[str, ...]:
+    """Return the fields that tell rows apart; none where the heading of one is at fault."""
+    if not rows:
+        return ()
+    table = rows[0].table
+    unheaded = {
+        f for f in table.spec.unique if (None, f) not in table.at and table.spec.column(f).blank == "required"
+    }
+    return () if unheaded else table.spec.unique
 
 
 def _identity(value: Any) -> Any:

@@ -8,7 +8,7 @@ from math import sqrt
 from typing import Final
 
 from study.workbook.plausible_cables import check_cables
-from study.workbook.plausible_operation import check_events, check_interlocks, check_modes
+from study.workbook.plausible_operation import check_events, check_interlocks, check_modes, known_modes
 from study.workbook.plausible_protection import check_protection
 from study.workbook.plausible_rings import check_rings
 from study.workbook.plausible_voltage import check_voltages
@@ -40,9 +40,10 @@ def check_plausible(plan: Plan, modes: Sequence[str]) -> None:
         _check_load(plan, row)
     _check_load_sum(plan)
     check_cables(plan)
-    check_modes(plan, modes)
-    check_interlocks(plan, modes)
-    check_rings(plan, modes)
+    known = known_modes(plan, modes)
+    check_modes(plan, known)
+    check_interlocks(plan, known)
+    check_rings(plan, known)
     check_events(plan)
     check_protection(plan)
 
@@ -85,13 +86,21 @@ def _rising(plan: Plan, row: Row, fields: tuple[str, ...], code: str, *, equal: 
 
 
 def _gate(
-    plan: Plan, row: Row, field: str, value: float, gates: tuple[Gate, Gate], *, code: str, said: str
+    plan: Plan,
+    row: Row,
+    field: str,
+    value: float,
+    gates: tuple[Gate, Gate],
+    *,
+    code: str,
+    said: str,
+    check: str = "check the data",
 ) -> None:
     """Report a value outside its usual range as a warning, outside the possible one as a fault."""
     (usual_low, usual_high), (low, high) = gates
     if usual_low <= value <= usual_high:
         return
-    wanted = f"usual is {usual_low:g} to {usual_high:g}; check the data"
+    wanted = f"usual is {usual_low:g} to {usual_high:g}; {check}"
     plan.report(code, row, field, said, wanted, warning=low <= value <= high)
 
 
@@ -103,9 +112,12 @@ def _check_engine(plan: Plan, row: Row) -> None:
     alternator_kw = values["s_rated_kva"] * values["cos_phi_rated"]
     said = (
         f"{row.name}: the engine gives {output_kw:.4g} kW at the terminals, the alternator is rated "
-        f"{alternator_kw:.4g} kW"
+        f"{alternator_kw:.4g} kW, a ratio of {output_kw / alternator_kw:.3g}"
     )
-    _gate(plan, row, "p_engine_kw", output_kw / alternator_kw, ENGINE_RATIO, code="engine-power", said=said)
+    _gate(
+        plan, row, "p_engine_kw", output_kw / alternator_kw, ENGINE_RATIO, code="engine-power", said=said,
+        check="check engine power, rated kVA and power factor",
+    )  # fmt: skip
 
 
 def _check_fault_levels(plan: Plan, row: Row) -> None:
@@ -159,8 +171,10 @@ def _check_slip(plan: Plan, row: Row) -> None:
 def _check_load_sum(plan: Plan) -> None:
     loads = [row for row in plan.of("Loads") if row.has("installed", "p_rated_kw")]
     sum_kw = sum(row.values["installed"] * row.values["p_rated_kw"] for row in loads)
-    capacity_kw = sum(_capacity_kw(row) for row in plan.of(*SOURCE_SHEETS))
-    if capacity_kw > 0.0 and sum_kw > LOAD_SUM * capacity_kw:
+    capacities_kw = [_capacity_kw(row) for row in plan.of(*SOURCE_SHEETS)]
+    capacity_kw = sum(capacities_kw)
+    # A source whose rating is at fault has none, and the sum says nothing.
+    if all(capacities_kw) and capacity_kw > 0.0 and sum_kw > LOAD_SUM * capacity_kw:
         largest = max(loads, key=lambda row: float(row.values["installed"] * row.values["p_rated_kw"]))
         said = f"all loads together are {sum_kw:.4g} kW, all sources {capacity_kw:.4g} kW"
         wanted = f"usual is below {LOAD_SUM:g} times; check the units, first those of {largest.name}"

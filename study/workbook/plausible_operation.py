@@ -27,9 +27,18 @@ EVENT_SHEETS: Final = {
 SIZED_EVENTS: Final = ("load step", "set-point step", "droop changed", "maladjustment")
 
 
+def known_modes(plan: Plan, modes: Sequence[str]) -> list[str]:
+    """Return the modes that have a column on the sheet Running; all, where the sheet has no rows."""
+    tables = [row.table for row in plan.of("Running")][:1]
+    return [mode for mode in modes if all((mode, "state") in table.at for table in tables)]
+
+
 def check_modes(plan: Plan, modes: Sequence[str]) -> None:
     """Report modes in which nothing feeds the plant."""
     rows = [row for row in plan.of("Running") if plan.names.sheet_of(row.name) in SOURCE_SHEETS]
+    # A source that is not listed is a fault of its own, and may be the one that is on.
+    if len({row.name for row in rows}) < len(plan.names.all(SOURCE_SHEETS)):
+        return
     for mode in modes:
         states = [row.modes.get(mode, {}).get("state") for row in rows]
         if states and None not in states and "on" not in states:
@@ -46,7 +55,7 @@ def check_interlocks(plan: Plan, modes: Sequence[str]) -> None:
             continue
         pair = (row.values["equipment_a"], row.values["equipment_b"])
         for mode in modes:
-            if all(_is_on(running.get(name), mode) for name in pair):
+            if all(_is_on(plan, name, running.get(name), mode) for name in pair):
                 listed = next((running[name] for name in pair if name in running), row)
                 plan.found.add(
                     "interlocked", listed.sheet, listed.cell("state", mode),
@@ -56,8 +65,10 @@ def check_interlocks(plan: Plan, modes: Sequence[str]) -> None:
                 )  # fmt: skip
 
 
-def _is_on(row: Row | None, mode: str) -> bool:
-    return row is None or row.modes.get(mode, {}).get("state", "on") == "on"
+def _is_on(plan: Plan, name: str, row: Row | None, mode: str) -> bool:
+    # What is not listed is on, but for sources: these need a state.
+    usual = "" if plan.names.sheet_of(name) in SOURCE_SHEETS else "on"
+    return (usual if row is None else row.modes.get(mode, {}).get("state", usual)) == "on"
 
 
 def check_events(plan: Plan) -> None:

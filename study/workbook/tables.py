@@ -32,7 +32,7 @@ class Table:
     """The data of one sheet: where its headings are, and its rows as raw cells.
 
     ``at`` gives the column number by mode (None for a plain column) and field, ``heading_columns`` by the
-    heading without its unit.
+    heading without its unit. ``misread`` holds the modes and fields whose headings are at fault.
     """
 
     spec: SheetSpec
@@ -41,6 +41,7 @@ class Table:
     raw: Mapping[int, Mapping[int, Any]]
     at: dict[tuple[str | None, str], int] = field(default_factory=dict)
     heading_columns: dict[str, int] = field(default_factory=dict)
+    misread: set[tuple[str | None, str]] = field(default_factory=set)
 
     @property
     def key_column(self) -> int:
@@ -135,6 +136,8 @@ def find_table(
         match = None if text is None else _heading(table, column, text, index, found)
         if match is None and text is not None:
             _report_unknown(table, column, text, found, not_read)
+        if isinstance(match, Misfit):
+            table.misread.update(match.meant)
         if isinstance(match, Match):
             placed.append(Placed(column_number=column, match=match, text=str(value)))
             table.at[match.mode, match.column.field] = column
@@ -228,7 +231,9 @@ def _report_unknown(table: Table, column: int, text: str, found: Findings, not_r
 def _report_missing(table: Table, found: Findings) -> None:
     headed = {field for _, field in table.at}
     for column in table.spec.columns:
-        if column.blank == "required" and not column.when and column.field not in headed:
+        if column.blank != "required" or column.when or (None, column.field) in table.misread:
+            continue
+        if column.field not in headed:
             found.add(
                 "missing-heading", table.spec.name, address(table.key_column, table.header_row),
                 f"there is no heading “{column.heading}”", f"add the column “{column.heading}”",
@@ -250,7 +255,8 @@ def _read_row(table: Table, number: int, cells: Mapping[int, Any], found: Findin
         read = read_cell(value, match)
         if type(read) is Refused:
             cell = address(placed.column_number, number)
-            found.add(read.code, table.spec.name, cell, read.found, read.wanted)
+            said = read.found if match.mode is None else f"{match.mode}: {read.found}"
+            found.add(read.code, table.spec.name, cell, said, read.wanted)
             row.broken.add(
                 match.column.field if match.mode is None else f"{match.mode}: {match.column.field}"
             )

@@ -104,6 +104,8 @@ def _check_cables(plan: Plan) -> None:
             continue
         other = ends[1] if ends[0] == boards[0] else ends[0]
         field = "to_end" if ends[0] == boards[0] else "from_end"
+        if _has_unknown_board(plan, other):
+            continue
         allowed = boards_of(plan, other) | other_feeds.get(other, set())
         if allowed and boards[0] not in allowed:
             said = f"{row.name} joins {shown(other)} to {shown(boards[0])}"
@@ -124,6 +126,15 @@ def boards_of(plan: Plan, name: str) -> set[str]:
     fields = BRANCH_BOARDS.get(row.sheet, ("board",))
     ends = {row.values[field] for field in fields if row.values.get(field) is not None}
     return {end for end in ends if plan.names.sheet_of(end) == "Boards"}
+
+
+def _has_unknown_board(plan: Plan, name: str) -> bool:
+    """Return True where a board of a piece of equipment is at fault itself."""
+    row = plan.names.rows.get(name)
+    if row is None or row.sheet == "Boards":
+        return False
+    fields = BRANCH_BOARDS.get(row.sheet, ("board",))
+    return any(row.values.get(field) is None for field in fields)
 
 
 def _other_feeds(plan: Plan) -> dict[str, set[str]]:
