@@ -49,6 +49,7 @@ _VALUE = re.compile(rb'(?<==")[^"<]*(?=")|(?<=>)[^<]+(?=<)')
 _VALUE_SPOILERS = (b"&bomb;", b"&#0;", b"<script>", b"\xff\xfe", b"\x00", b'"')
 _ELEMENT = re.compile(rb"<([\w:]+)[^<>]*/>|<([\w:]+)\b[^<>]*>[^<>]*</\2>")
 _TAG = re.compile(rb"</?[\w:]+[^<>]*>")
+_MOMENT = re.compile(rb"20[0-9]{2}-[0-9]{2}-[0-9]{2}T[0-9:]+Z")
 _AFTER_PROLOG = re.compile(rb"^(<\?[^>]*\?>)?\s*<[^>]*>")
 
 Change = Callable[[Random, bytes], bytes]
@@ -164,7 +165,11 @@ def _bases() -> tuple[Mapping[str, bytes], ...]:
         path = Path(folder) / "good.xlsx"
         write_workbook(path, good.tables())
         whole = path.read_bytes()
-    return tuple(parts(data) for data in (small, small, small, engineers_book(), packed_book(), whole))
+    books = (small, small, small, engineers_book(), packed_book(), whole)
+    return tuple(
+        {name: _MOMENT.sub(b"2000-01-01T00:00:00Z", data) for name, data in parts(book).items()}
+        for book in books
+    )
 
 
 def _changed_parts(dice: Random, content: dict[str, bytes]) -> None:

@@ -196,6 +196,7 @@ def _check_styles(root: Node | None) -> Iterator[str]:
     declared = [n.attributes.get("numFmtId", "") for n in _formats(root)]
     for number in _repeated(declared):
         yield f"styles: the number format {number} stands twice"
+    yield from _check_named_styles(root, sizes.get("cellStyleXfs", 0))
     limits = {
         "fontId": sizes.get("fonts", 0),
         "fillId": sizes.get("fills", 0),
@@ -205,6 +206,14 @@ def _check_styles(root: Node | None) -> Iterator[str]:
         formats = root.find(name)
         for place, xf in enumerate(formats.children if formats else ()):
             yield from _check_xf(f"{name}[{place}]", xf, limits, sizes.get("cellStyleXfs", 0), declared)
+
+
+def _check_named_styles(root: Node, formats: int) -> Iterator[str]:
+    container = root.find("cellStyles")
+    for style in container.children if container else ():
+        number = whole_number(style, "xfId")
+        if number >= max(1, formats):
+            yield f"styles: {style.attributes.get('name', '')} refers to xfId {number} of {formats}"
 
 
 def _formats(root: Node) -> list[Node]:

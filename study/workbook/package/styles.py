@@ -203,7 +203,7 @@ def _normal_style(root: Node) -> str:
     """Return the number of the style called Normal."""
     for style in _items(root, "cellStyles"):
         if style.attributes.get("builtinId") == "0":
-            return style.attributes.get("xfId", "0")
+            return str(whole_number(style, "xfId"))
     return "0"
 
 

@@ -40,6 +40,18 @@ def test_no_workbook_is_one_sentence():
 
 
 FAULTS = {
+    "a named style of no format": (
+        "xl/styles.xml",
+        rb'(<cellStyle name="Normal") xfId="0"',
+        rb'\1 xfId="7"',
+        r"Normal refers to xfId 7 of \d+",
+    ),
+    "a named style of what is no number": (
+        "xl/styles.xml",
+        rb'(<cellStyle name="Normal") xfId="0"',
+        rb'\1 xfId="none"',
+        "cellStyle says xfId='none'",
+    ),
     "a part of no type": (
         TYPES,
         rb'<Override PartName="/xl/tables/table2.xml"[^>]*/>',
