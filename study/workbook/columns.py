@@ -73,8 +73,12 @@ class Bounds:
 
 
 ANY = Bounds()
-POSITIVE = Bounds(low=0.0, low_open=True)
-NOT_NEGATIVE = Bounds(low=0.0)
+AMPERES = Bounds(low=0.0, high=100_000.0, low_open=True)
+KILOAMPERES = Bounds(low=0.0, high=1_000.0, low_open=True)
+"""No short-circuit current is larger; what is, was typed in ampere."""
+KILOWATTS = Bounds(low=0.0, high=200_000.0, low_open=True)
+LARGE = Bounds(low=0.0, high=1_000_000.0, low_open=True)
+"""For quantities without a natural end: keeps out what can only be a slip."""
 POWER_FACTOR = Bounds(low=0.0, high=1.0, low_open=True)
 
 

@@ -7,8 +7,10 @@ from typing import get_args
 from study.model.branches import BoardRole, CableCores, Duty, Earthing, FilterKind
 from study.workbook import typical as rule
 from study.workbook.columns import (
-    NOT_NEGATIVE,
-    POSITIVE,
+    AMPERES,
+    KILOAMPERES,
+    KILOWATTS,
+    LARGE,
     REQUIRED,
     UNKNOWN,
     Bounds,
@@ -47,13 +49,13 @@ BOARDS = SheetSpec(
         key("Board", "name, unique over all equipment"),
         number("Nominal voltage", "V", "u_nominal_v", VOLTAGE, "line to line", **REQUIRED),
         choice("Role", "role", get_args(BoardRole), "what the board is for", **REQUIRED),
-        number("Busbar rated current", "A", "busbar_rated_a", POSITIVE, "blank: unknown", **UNKNOWN),
+        number("Busbar rated current", "A", "busbar_rated_a", AMPERES, "blank: unknown", **UNKNOWN),
         number(
-            "Peak withstand", "kA", "peak_withstand_ka", POSITIVE, "Ipk, maker's figure; blank: unknown",
+            "Peak withstand", "kA", "peak_withstand_ka", KILOAMPERES, "Ipk, maker's figure; blank: unknown",
             **UNKNOWN,
         ),
         number(
-            "Short-time withstand", "kA", "short_time_withstand_ka", POSITIVE,
+            "Short-time withstand", "kA", "short_time_withstand_ka", KILOAMPERES,
             "Icw, maker's figure; blank: unknown", **UNKNOWN,
         ),
         number(
@@ -64,9 +66,9 @@ BOARDS = SheetSpec(
             "System earthing", "earthing", get_args(Earthing), "of the neutral of this system",
             **typical("insulated", "usual on ships below 1 kV; common practice, no source"),
         ),
-        number("Earthing resistor", "ohm", "earthing_resistor_ohm", POSITIVE, "blank: none"),
-        number("Resistor rating", "A", "resistor_rating_a", POSITIVE, "blank: unknown", **UNKNOWN),
-        number("Resistor time", "s", "resistor_time_s", POSITIVE, "of the rating; blank: unknown", **UNKNOWN),
+        number("Earthing resistor", "ohm", "earthing_resistor_ohm", LARGE, "blank: none"),
+        number("Resistor rating", "A", "resistor_rating_a", AMPERES, "blank: unknown", **UNKNOWN),
+        number("Resistor time", "s", "resistor_time_s", LARGE, "of the rating; blank: unknown", **UNKNOWN),
         text("Redundancy group", "redundancy_group", "name of the group that is lost together; blank: none"),
     ),
 )  # fmt: skip
@@ -88,11 +90,11 @@ TRANSFORMERS = SheetSpec(
             usual=between(1.0, 20.0), **REQUIRED,
         ),
         number(
-            "Copper loss", "kW", "copper_loss_kw", POSITIVE, "of one unit, at rated current and 75 °C",
+            "Copper loss", "kW", "copper_loss_kw", KILOWATTS, "of one unit, at rated current and 75 °C",
             **derived(rule.copper_loss, "4.5 % x kVA^-0.2, at most 0.8 of uk", DRY_TYPE),
         ),
         number(
-            "Iron loss", "kW", "iron_loss_kw", NOT_NEGATIVE, "of one unit, at rated voltage",
+            "Iron loss", "kW", "iron_loss_kw", between(0.0, 100_000.0), "of one unit, at rated voltage",
             **derived(rule.iron_loss, "1.1 % x kVA^-0.22", DRY_TYPE),
         ),
         text(
@@ -149,19 +151,19 @@ THREE_WINDING = SheetSpec(
         _uk("Short-circuit voltage primary-tertiary", "u_k_primary_tertiary_pu"),
         _uk("Short-circuit voltage secondary-tertiary", "u_k_secondary_tertiary_pu"),
         number(
-            "Copper loss primary-secondary", "kW", "copper_loss_primary_secondary_kw", POSITIVE, "",
+            "Copper loss primary-secondary", "kW", "copper_loss_primary_secondary_kw", KILOWATTS, "",
             **derived(rule.copper_loss_primary_secondary, "4.5 % x kVA^-0.2, at most 0.8 of uk", DRY_TYPE),
         ),
         number(
-            "Copper loss primary-tertiary", "kW", "copper_loss_primary_tertiary_kw", POSITIVE, "",
+            "Copper loss primary-tertiary", "kW", "copper_loss_primary_tertiary_kw", KILOWATTS, "",
             **derived(rule.copper_loss_primary_tertiary, "4.5 % x kVA^-0.2, at most 0.8 of uk", DRY_TYPE),
         ),
         number(
-            "Copper loss secondary-tertiary", "kW", "copper_loss_secondary_tertiary_kw", POSITIVE, "",
+            "Copper loss secondary-tertiary", "kW", "copper_loss_secondary_tertiary_kw", KILOWATTS, "",
             **derived(rule.copper_loss_secondary_tertiary, "4.5 % x kVA^-0.2, at most 0.8 of uk", DRY_TYPE),
         ),
         number(
-            "Iron loss", "kW", "iron_loss_kw", NOT_NEGATIVE, "at rated voltage",
+            "Iron loss", "kW", "iron_loss_kw", between(0.0, 100_000.0), "at rated voltage",
             **derived(rule.iron_loss_three_winding, "1.1 % x kVA^-0.22", DRY_TYPE),
         ),
         text(
@@ -240,7 +242,7 @@ CABLES = SheetSpec(
             **UNKNOWN,
         ),
         number(
-            "Current rating", "A", "rating_a", POSITIVE,
+            "Current rating", "A", "rating_a", AMPERES,
             "of one run, as installed; blank: by IEC 60092-352",
         ),
     ),
@@ -255,7 +257,7 @@ TIES = SheetSpec(
         key("Tie", "name, unique over all equipment"),
         reference("Board A", "board_a", BOARD, "", **REQUIRED),
         reference("Board B", "board_b", BOARD, "", **REQUIRED),
-        number("Rated current", "A", "rated_current_a", POSITIVE, "blank: unknown", **UNKNOWN),
+        number("Rated current", "A", "rated_current_a", AMPERES, "blank: unknown", **UNKNOWN),
         number("Reactance", "ohm", "x_ohm", between(0.0, 100.0), "blank: none", absent=0.0),
         number("Resistance", "ohm", "r_ohm", between(0.0, 100.0), "blank: none", absent=0.0),
     ),
@@ -270,7 +272,7 @@ REACTORS = SheetSpec(
         key("Reactor", "name, unique over all equipment"),
         reference("From", "from_board", BOARD, "", **REQUIRED),
         reference("To", "to_board", BOARD, "", **REQUIRED),
-        number("Rated current", "A", "rated_current_a", POSITIVE, "", **REQUIRED),
+        number("Rated current", "A", "rated_current_a", AMPERES, "", **REQUIRED),
         number("Reactance", "ohm", "x_ohm", above(0.0, 100.0), "of one phase", **REQUIRED),
         number(
             "Resistance", "ohm", "r_ohm", between(0.0, 100.0), "of one phase",
@@ -290,7 +292,7 @@ FILTERS = SheetSpec(
         key("Filter", "name, unique over all equipment"),
         reference("Board", "board", BOARD, "board that it is on", **REQUIRED),
         choice("Kind", "kind", get_args(FilterKind), "", **REQUIRED),
-        number("Rated reactive power", "kvar", "q_rated_kvar", POSITIVE, "at rated voltage", **REQUIRED),
+        number("Rated reactive power", "kvar", "q_rated_kvar", KILOWATTS, "at rated voltage", **REQUIRED),
         number("Rated voltage", "V", "u_rated_v", VOLTAGE, "line to line", **REQUIRED),
         number(
             "Tuning order", "", "tuning_order", above(1.0, 50.0), "multiple of rated frequency",

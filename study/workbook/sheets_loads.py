@@ -7,7 +7,8 @@ from typing import get_args
 from study.model.loads import ConverterKind, EssentialTo, LoadKind, StartingMethod, TorqueLaw
 from study.workbook import typical as rule
 from study.workbook.columns import (
-    POSITIVE,
+    AMPERES,
+    LARGE,
     POWER_FACTOR,
     REQUIRED,
     UNKNOWN,
@@ -60,7 +61,7 @@ CONSUMER_COLUMNS: tuple[Column, ...] = (
         "Power factor", "cos_phi", POWER_FACTOR, "at rated output, 0 to 1",
         **derived(rule.load_power_factor, "by kind, rated output and poles", PRACTICE),
     ),
-    number("Running current", "A", "running_current_a", POSITIVE, "of one unit at rated output, name-plate"),
+    number("Running current", "A", "running_current_a", AMPERES, "of one unit at rated output, name-plate"),
     number(
         "Rated voltage", "V", "u_rated_v", above(0.0, 36_000.0), "name-plate",
         **derived(rule.nominal_voltage, "nominal voltage of its board", "Boards sheet"),
@@ -103,7 +104,7 @@ MOTOR_COLUMNS: tuple[Column, ...] = (
         when=MOTOR, **typical("fan", "most ship motors drive pumps and fans; common practice, no source"),
     ),
     number(
-        "Moment of inertia", "kgm2", "inertia_kgm2", POSITIVE, "motor and driven machine; blank: unknown",
+        "Moment of inertia", "kgm2", "inertia_kgm2", LARGE, "motor and driven machine; blank: unknown",
         **UNKNOWN,
     ),
     number("Starting time", "s", "starting_time_s", above(0.0, 600.0), "blank: unknown", **UNKNOWN),

@@ -7,7 +7,7 @@ from typing import get_args
 from study.model.modes import DutyKind, EventKind, ModeKind, State
 from study.model.sources import RegulatorMode
 from study.workbook.columns import (
-    POSITIVE,
+    LARGE,
     REQUIRED,
     Bounds,
     Column,
@@ -226,6 +226,6 @@ EVENTS = SheetSpec(
         number("Size", "", "size", between(-1e6, 1e6), "in the unit beside it; blank: the whole"),
         text("Unit", "unit", "of the size, for example kW or %"),
         number("At", "s", "at_s", between(0.0, 3600.0), "from the start of the case", absent=0.0),
-        number("Duration", "s", "duration_s", POSITIVE, "blank: to the end"),
+        number("Duration", "s", "duration_s", LARGE, "blank: to the end"),
     ),
 )

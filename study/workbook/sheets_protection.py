@@ -7,9 +7,10 @@ from typing import get_args
 from study.model.protection import DeviceKind, FunctionKind
 from study.workbook import typical as rule
 from study.workbook.columns import (
+    AMPERES,
     GIVEN,
-    NOT_NEGATIVE,
-    POSITIVE,
+    KILOAMPERES,
+    LARGE,
     POWER_FACTOR,
     REQUIRED,
     UNKNOWN,
@@ -62,10 +63,10 @@ RATING_COLUMNS: tuple[Column, ...] = (
     choice("Kind", "kind", get_args(DeviceKind), "", **REQUIRED),
     number("Rated current", "A", "i_rated_a", above(0.0, 100_000.0), "In", **REQUIRED),
     number("Rated voltage", "V", "u_rated_v", above(0.0, 52_000.0), "Ue; blank: unknown", **UNKNOWN),
-    number("Icu", "kA", "icu_ka", POSITIVE, "ultimate breaking, rms; blank: unknown", **UNKNOWN),
-    number("Ics", "kA", "ics_ka", POSITIVE, "service breaking, rms; blank: unknown", **UNKNOWN),
-    number("Icw", "kA", "icw_ka", POSITIVE, "short-time withstand, rms; blank: unknown", **UNKNOWN),
-    number("Icm", "kA", "icm_ka", POSITIVE, "making, peak; blank: unknown", **UNKNOWN),
+    number("Icu", "kA", "icu_ka", KILOAMPERES, "ultimate breaking, rms; blank: unknown", **UNKNOWN),
+    number("Ics", "kA", "ics_ka", KILOAMPERES, "service breaking, rms; blank: unknown", **UNKNOWN),
+    number("Icw", "kA", "icw_ka", KILOAMPERES, "short-time withstand, rms; blank: unknown", **UNKNOWN),
+    number("Icm", "kA", "icm_ka", KILOAMPERES, "making, peak; blank: unknown", **UNKNOWN),
     number("Icw duration", "s", "icw_duration_s", above(0.0, 10.0), "blank: unknown", **UNKNOWN),
     ratio(
         "Test power factor", "test_cos_phi", POWER_FACTOR, "of the breaking test; blank: unknown",
@@ -77,7 +78,7 @@ RATING_COLUMNS: tuple[Column, ...] = (
 SETTING_COLUMNS: tuple[Column, ...] = (
     choice("Setting source", "setting_source", ("fixed", "adjustable"), "", absent="adjustable"),
     reference("Curve", "curve", ("Curves", "Let-through"), "maker's curve; blank: none"),
-    number("Long-time current", "A", "long_time_a", POSITIVE, "Ir; blank: none"),
+    number("Long-time current", "A", "long_time_a", AMPERES, "Ir; blank: none"),
     number("Long-time delay", "s", "long_time_delay_s", above(0.0, 3600.0), "at the multiple beside it"),
     number(
         "Long-time delay at", "x Ir", "long_time_delay_at", between(1.05, 20.0), "",
@@ -87,11 +88,11 @@ SETTING_COLUMNS: tuple[Column, ...] = (
         "Long-time law", "long_time_law", ("I2t", "I4t"), "",
         when=(*BREAKER, ("long_time_a", GIVEN)), **typical("I2t", PRACTICE),
     ),
-    number("Short-time current", "A", "short_time_a", POSITIVE, "Isd, or off; blank: none", words=("off",)),
+    number("Short-time current", "A", "short_time_a", LARGE, "Isd, or off; blank: none", words=("off",)),
     number("Short-time delay", "s", "short_time_delay_s", between(0.0, 60.0), "blank: none"),
     choice("Short-time law", "short_time_law", ("definite", "I2t"), "", absent="definite"),
     number(
-        "Instantaneous current", "A", "instantaneous_a", POSITIVE, "Ii, or off; blank: not given",
+        "Instantaneous current", "A", "instantaneous_a", LARGE, "Ii, or off; blank: not given",
         words=("off",),
     ),
     choice(
@@ -100,7 +101,7 @@ SETTING_COLUMNS: tuple[Column, ...] = (
         when=RELEASE,
         **typical("peak", "magnetic releases see the peak; the worse case for discrimination"),
     ),
-    number("Earth-fault current", "A", "earth_fault_a", POSITIVE, "blank: none"),
+    number("Earth-fault current", "A", "earth_fault_a", AMPERES, "blank: none"),
     number("Earth-fault delay", "s", "earth_fault_delay_s", between(0.0, 60.0), "blank: none"),
     number(
         "Current tolerance", "%", "current_tolerance", between(0.0, 50.0), "plus and minus",
@@ -121,7 +122,7 @@ SETTING_COLUMNS: tuple[Column, ...] = (
 )  # fmt: skip
 
 RELAY_COLUMNS: tuple[Column, ...] = (
-    number("CT primary", "A", "ct_primary_a", POSITIVE, "blank: none"),
+    number("CT primary", "A", "ct_primary_a", AMPERES, "blank: none"),
     number("CT secondary", "A", "ct_secondary_a", above(0.0, 10.0), "blank: none"),
     choice("Relay curve", "relay_curve", RELAY_CURVES, "IEC 60255-151; blank: none"),
     number("Time multiplier", "", "time_multiplier", above(0.0, 100.0), "blank: none"),
@@ -152,7 +153,7 @@ PROTECTION_FUNCTIONS = SheetSpec(
         text("Function", "name", "name", **REQUIRED),
         reference("Equipment", "equipment", ANY_EQUIPMENT, "what it watches", **REQUIRED),
         choice("Kind", "kind", get_args(FunctionKind), "", **REQUIRED),
-        number("Pick-up", "", "pick_up", NOT_NEGATIVE, "in the unit beside it", **REQUIRED),
+        number("Pick-up", "", "pick_up", between(0.0, 1_000_000.0), "in the unit beside it", **REQUIRED),
         text("Unit", "unit", "for example %, kW, V, Hz, A", **REQUIRED),
         number("Delay", "s", "delay_s", between(0.0, 3600.0), "", **REQUIRED),
         text("Trips", "trips", "what it opens"),
@@ -167,9 +168,9 @@ SETTING_RANGES = SheetSpec(
     columns=(
         reference("Device", "device", ("Devices",), "", **REQUIRED),
         choice("Setting", "setting", SETTINGS, "as headed on the sheet Devices", **REQUIRED),
-        number("Min", "", "minimum", NOT_NEGATIVE, "", **REQUIRED),
-        number("Max", "", "maximum", NOT_NEGATIVE, "", **REQUIRED),
-        number("Step", "", "step", POSITIVE, "blank: without steps"),
+        number("Min", "", "minimum", between(0.0, 1_000_000.0), "", **REQUIRED),
+        number("Max", "", "maximum", between(0.0, 1_000_000.0), "", **REQUIRED),
+        number("Step", "", "step", LARGE, "blank: without steps"),
     ),
 )
 
@@ -197,7 +198,7 @@ LET_THROUGH = SheetSpec(
         text("Curve", "curve", "name that Devices refer to", **REQUIRED),
         number("Prospective current", "kA", "prospective_ka", above(0.0, 1000.0), "rms", **REQUIRED),
         number("Cut-off peak", "kA", "cut_off_peak_ka", above(0.0, 2500.0), "peak"),
-        number("Let-through I2t", "A2s", "let_through_a2s", above(0.0, 1e12), ""),
+        number("Let-through I2t", "A2s", "let_through_a2s", above(0.0, 1e11), ""),
     ),
 )
 

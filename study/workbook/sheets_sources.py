@@ -9,7 +9,9 @@ from study.model.sources import (
     GensetService,
 )
 from study.workbook.columns import (
-    POSITIVE,
+    AMPERES,
+    KILOWATTS,
+    LARGE,
     REQUIRED,
     UNKNOWN,
     SheetSpec,
@@ -44,7 +46,7 @@ GENSETS = SheetSpec(
         key("Genset", "name, unique over all equipment"),
         reference("Board", "board", BOARDS, "board that the set feeds", **REQUIRED),
         *RATING_COLUMNS,
-        number("Engine power", "kW", "p_engine_kw", POSITIVE, "rated, at the coupling", **REQUIRED),
+        number("Engine power", "kW", "p_engine_kw", KILOWATTS, "rated, at the coupling", **REQUIRED),
         number(
             "Alternator efficiency", "%", "alternator_efficiency", between(50.0, 100.0), "at rated load",
             usual=between(80.0, 99.0), **typical(95.0, LV_SET),
@@ -92,13 +94,13 @@ SHORE_SUPPLIES = SheetSpec(
             "Rated voltage", "V", "u_rated_v", above(0.0, 36_000.0), "line to line", **REQUIRED,
         ),
         number("Frequency", "Hz", "f_hz", between(40.0, 70.0), "of the port's network", **REQUIRED),
-        number("Rated current", "A", "i_rated_a", POSITIVE, "of the connection", **REQUIRED),
+        number("Rated current", "A", "i_rated_a", AMPERES, "of the connection", **REQUIRED),
         number(
-            "Fault level max", "MVA", "fault_level_max_mva", POSITIVE,
+            "Fault level max", "MVA", "fault_level_max_mva", LARGE,
             "initial three-phase, for ratings; blank: unknown", **UNKNOWN,
         ),
         number(
-            "Fault level min", "MVA", "fault_level_min_mva", POSITIVE,
+            "Fault level min", "MVA", "fault_level_min_mva", LARGE,
             "initial three-phase, for protection; blank: unknown", **UNKNOWN,
         ),
         number(
@@ -141,7 +143,7 @@ CONVERTER_SUPPLIES = SheetSpec(
             when=GRID_FORMING, **typical(4.0, "as the sets; common practice, no source"),
         ),
         number(
-            "Stored energy", "kWh", "stored_energy_kwh", POSITIVE, "usable; blank: unknown or none",
+            "Stored energy", "kWh", "stored_energy_kwh", LARGE, "usable; blank: unknown or none",
             **UNKNOWN,
         ),
         number(
@@ -149,7 +151,7 @@ CONVERTER_SUPPLIES = SheetSpec(
             "maker's figure; blank: unknown", **UNKNOWN,
         ),
         number(
-            "Short-circuit duration", "s", "short_circuit_duration_s", POSITIVE, "blank: unknown",
+            "Short-circuit duration", "s", "short_circuit_duration_s", LARGE, "blank: unknown",
             **UNKNOWN,
         ),
         reference(
@@ -169,7 +171,7 @@ SYNCHRONOUS_MOTORS = SheetSpec(
         *RATING_COLUMNS,
         *MACHINE_COLUMNS,
         *EXCITATION_COLUMNS,
-        number("Rated output", "kW", "p_output_kw", POSITIVE, "at the shaft", **REQUIRED),
+        number("Rated output", "kW", "p_output_kw", KILOWATTS, "at the shaft", **REQUIRED),
         ratio(
             "Efficiency", "efficiency", between(0.3, 1.0),
             "at rated output, 0 to 1; head the column [%] for per cent",

@@ -1,7 +1,7 @@
 """Seconds and peak memory by the size of the workbook, and how they grow with it.
 
-Run with ``python -m tests.benchmarks.bench_size [--study]``. Each size is measured in a process of its own, in
-seconds of the processor. Without ``--study`` the workbooks are read and checked, and result sheets in
+Run with ``python -m tests.benchmarks.bench_size [--study]``. Each size is measured in a process of its own,
+in seconds of the processor. Without ``--study`` the workbooks are read and checked, and result sheets in
 proportion are put into them; with it the whole study is done and its own result sheets, report and JSON are
 written, which takes minutes at 5 000 loads. The exponent is that of a power law between neighbouring sizes:
 1 is in proportion.

@@ -115,6 +115,8 @@ WAYS = {
     "error": Way("error-value", lambda c: True, _put(ErrorValue("#DIV/0!"))),
     "formula without value": Way("no-stored-value", lambda c: True, _put(NoStoredValue("A1*2"))),
     "formula of a result": Way("result-formula", lambda c: True, _put(ResultFormula("'R Load flow'!B2"))),
+    "huge": Way("out-of-range", _is_number, _put(1e12)),
+    "hugely negative": Way("out-of-range", _is_number, _put(-1e12)),
     "below": Way("out-of-range", lambda c: _is_number(c) and c.bounds.low is not None, _below),
     "above": Way("out-of-range", lambda c: _is_number(c) and c.bounds.high is not None, _above),
     "percent format": Way(

@@ -11,7 +11,7 @@ from hypothesis import strategies as st
 
 from study.workbook.cells import Refused, is_blank, plain, read_cell, shown
 from study.workbook.columns import (
-    POSITIVE,
+    LARGE,
     Bounds,
     Column,
     above,
@@ -27,9 +27,9 @@ from study.workbook.sheet_xml import Percent
 
 LENGTH = number("Length", "m", "length_m", above(0.0, 5000.0), "one way")
 DROOP = number("Voltage droop", "%", "droop_pu", between(0.0, 20.0), "of rated voltage")
-REACTANCE = number("Xd", "pu", "x_d_pu", POSITIVE, "")
+REACTANCE = number("Xd", "pu", "x_d_pu", LARGE, "")
 COS_PHI = ratio("Power factor", "cos_phi", above(0.0, 1.0), "")
-SETTING = number("Instantaneous current", "A", "i_a", POSITIVE, "", words=("off",))
+SETTING = number("Instantaneous current", "A", "i_a", LARGE, "", words=("off",))
 COUNT = integer("Installed", "installed", between(1, 100), "")
 ROLE = choice("Role", "role", ("main", "emergency"), "")
 PHASES = choice("Phases", "phases", ("3", "2", "1"), "")
