@@ -183,3 +183,91 @@ def test_a_file_that_is_no_workbook(spoil: Callable[[Path], None], tmp_path: Pat
 def test_a_file_that_is_not_there(tmp_path: Path) -> None:
     with pytest.raises(PackageError, match="no such file"):
         check_workbook(tmp_path / "none.xlsx")
+
+
+def _laid_out(path: Path, change: Callable[[Any, dict[str, Any]], None]) -> None:
+    """Write the good workbook with openpyxl, changed in what only a file has: merged cells, hidden rows."""
+    write(good_grids(), path)
+    book = openpyxl.load_workbook(path)
+    change(book, {name: book[name] for name in book.sheetnames})
+    book.save(path)
+
+
+def test_merged_cells_above_the_headings_are_the_engineers(tmp_path: Path) -> None:
+    def change(_: Any, sheets: dict[str, Any]) -> None:
+        sheets["Loads"]["A2"] = "Consumers of the vessel"
+        sheets["Loads"].merge_cells("A2:H3")
+
+    path = tmp_path / "merged.xlsx"
+    _laid_out(path, change)
+    plant, issues = check_workbook(path)
+    assert plant is not None, listing(issues)
+    assert issues == ()
+
+
+def test_a_heading_merged_over_two_columns_leaves_one_without(tmp_path: Path) -> None:
+    """Only the first of merged cells holds the text."""
+
+    def change(_: Any, sheets: dict[str, Any]) -> None:
+        sheets["Loads"].merge_cells("F4:G4")
+
+    path = tmp_path / "merged.xlsx"
+    _laid_out(path, change)
+    plant, issues = check_workbook(path)
+    assert plant is None
+    assert [(i.code, i.address) for i in issues] == [("missing-heading", "Loads!A4")], listing(issues)
+    assert "Rated output [kW]" in issues[0].found
+
+
+def test_a_heading_merged_over_two_rows_is_one_heading(tmp_path: Path) -> None:
+    def change(_: Any, sheets: dict[str, Any]) -> None:
+        sheets["Filters"].insert_rows(5)
+        for column in range(1, 8):
+            sheets["Filters"].merge_cells(start_row=4, end_row=5, start_column=column, end_column=column)
+
+    path = tmp_path / "merged.xlsx"
+    _laid_out(path, change)
+    plant, issues = check_workbook(path)
+    assert plant is not None, listing(issues)
+    assert len(plant.filters) == 1
+
+
+def test_names_merged_over_rows_are_missed(tmp_path: Path) -> None:
+    """A name merged over two rows names the first alone."""
+
+    def change(_: Any, sheets: dict[str, Any]) -> None:
+        sheets["Loads"].merge_cells("A5:A6")
+
+    path = tmp_path / "merged.xlsx"
+    _laid_out(path, change)
+    plant, issues = check_workbook(path)
+    assert plant is None
+    assert has(issues, "missing-name", "Loads", "A6"), listing(issues)
+
+
+def test_hidden_rows_columns_and_sheets_are_read_like_any_other(tmp_path: Path) -> None:
+    """A filter hides rows; the plant does not lose them by it."""
+
+    def change(book: Any, sheets: dict[str, Any]) -> None:
+        sheets["Loads"].row_dimensions[6].hidden = True
+        sheets["Loads"].column_dimensions["G"].hidden = True
+        sheets["Cables"].sheet_state = "hidden"
+        book["Devices"].sheet_state = "veryHidden"
+
+    path = tmp_path / "hidden.xlsx"
+    _laid_out(path, change)
+    plant, issues = check_workbook(path)
+    assert plant is not None, listing(issues)
+    grids = good_grids()
+    assert len(plant.loads) == len(grids["Loads"].rows)
+    assert len(plant.cables) == len(grids["Cables"].rows)
+    assert len(plant.devices) == len(grids["Devices"].rows)
+
+    def spoil(book: Any, sheets: dict[str, Any]) -> None:
+        change(book, sheets)
+        sheets["Loads"]["G6"] = -1
+
+    _laid_out(path, spoil)
+    plant, issues = check_workbook(path)
+    assert plant is None
+    assert has(issues, "out-of-range", "Loads", "G6"), listing(issues)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import io
+import posixpath
 import shutil
 import subprocess
 import warnings
@@ -10,9 +11,12 @@ import warnings
 import openpyxl
 import pytest
 import python_calamine
+from lxml import etree
 
 from study.workbook.package import graft_result_sheets, validate_package
 from tests.workbook.package.samples import (
+    MAIN,
+    OFFICE,
     VBA,
     engineers_book,
     openpyxl_book,
@@ -72,6 +76,54 @@ def test_a_save_by_libreoffice_in_between(converted, book):
             (first["R Load flow"][cell].font, first["R Load flow"][cell].fill)
         )
         assert twin.number_format == first["R Load flow"][cell].number_format
+
+
+def parts_of_result_sheets(content):
+    """Result sheets and what hangs on them, by the relations as lxml reads them."""
+    book = etree.fromstring(content["xl/workbook.xml"])
+    targets = relation_targets(content, "xl/workbook.xml")
+    ours = [
+        targets[sheet.get(f"{{{OFFICE}}}id")]
+        for sheet in book.iter(f"{{{MAIN}}}sheet")
+        if sheet.get("name").startswith("R ")
+    ]
+    for part in ours:
+        ours += [target for target in relation_targets(content, part).values() if target not in ours]
+    return {*ours, *map(rels_of, ours)}
+
+
+def rels_of(part):
+    folder, _, name = part.rpartition("/")
+    return f"{folder}/_rels/{name}.rels"
+
+
+def relation_targets(content, part):
+    if rels_of(part) not in content:
+        return {}
+    folder = part.rpartition("/")[0]
+    return {
+        row.get("Id"): posixpath.normpath(posixpath.join(f"/{folder}", row.get("Target"))).lstrip("/")
+        for row in etree.fromstring(content[rels_of(part)])
+        if row.get("TargetMode") != "External"
+    }
+
+
+@pytest.mark.parametrize("book", BOOKS)
+def test_every_part_that_libreoffice_wrote_for_the_engineer_keeps_its_bytes(converted, book):
+    """Pictures, charts, comments, tables, conditional formats, checks, names and properties among them."""
+    before = parts((converted / "saved" / f"{book}.xlsx").read_bytes())
+    after = parts(
+        graft_result_sheets((converted / "saved" / f"{book}.xlsx").read_bytes(), result_book(value=8))
+    )
+    may_change = parts_of_result_sheets(before) | {
+        "xl/workbook.xml", "xl/_rels/workbook.xml.rels", "[Content_Types].xml", "xl/styles.xml",
+    }  # fmt: skip
+    changed = {name for name, data in before.items() if after.get(name) != data}
+    assert changed <= may_change
+    kept = {name for name in before if name not in may_change}
+    assert any(name.startswith("xl/worksheets/sheet") for name in kept)
+    assert any(name.startswith("xl/drawings/") for name in kept)
+    assert "docProps/core.xml" in kept
 
 
 @pytest.mark.parametrize("book", BOOKS)
