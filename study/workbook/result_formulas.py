@@ -6,15 +6,21 @@ Such a value would come from the run before, and the next run would change it ag
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator, Mapping
+from bisect import bisect_left
+from collections.abc import Collection, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Final
 
+from study.issues import PackageError
 from study.workbook.package.cells import Area, address, area, split_address
 from study.workbook.sheet_xml import LAST_COLUMN, LAST_ROW
 
 Place = tuple[str, int, int]
 """Sheet in small letters, row and column."""
+
+FEW_CELLS: Final = 64
+MOST_CELLS: Final = 4_000_000
+MOST_STEPS: Final = 20_000_000
 
 _DIRECT: Final = re.compile(r"'(?:\[[^\]]*\])?R (?:[^']|'')*'!", re.IGNORECASE)
 _STRING: Final = re.compile(r'"[^"]*"')
@@ -112,6 +118,11 @@ def dependent_formulas(formulas: Mapping[Place, str], names: Mapping[str, str]) 
     set of Place
         Cells that name a result sheet, and those that refer to such cells over any number of steps.
 
+    Raises
+    ------
+    PackageError
+        Ranges refer to each other over more steps than can be followed in bounded time.
+
     Examples
     --------
     >>> chain = {("a", 1, 1): "'R Cables'!B2", ("b", 1, 1): "a!A1*2", ("b", 2, 1): "7"}
@@ -119,28 +130,75 @@ def dependent_formulas(formulas: Mapping[Place, str], names: Mapping[str, str]) 
     [('a', 1, 1), ('b', 1, 1)]
     """
     plain = {place: _with_names(formula, names) for place, formula in formulas.items()}
-    found = {place for place, formula in plain.items() if mentions_results(formula)}
-    waiting = {
-        place: tuple(references(text, place[0])) for place, text in plain.items() if place not in found
-    }
-    new = set(found)
-    while new:
-        by_sheet: dict[str, list[Place]] = {}
-        for place in new:
-            by_sheet.setdefault(place[0], []).append(place)
-        new = {place for place, refs in waiting.items() if any(_covers(ref, by_sheet) for ref in refs)}
-        found |= new
-        for place in new:
-            del waiting[place]
+    behind, wide = _sorted_by_width(plain)
+    found: set[Place] = set()
+    waiting = [place for place, formula in plain.items() if mentions_results(formula)]
+    steps = 0
+    while waiting:
+        new = _follow(waiting, behind, found)
+        steps += len(wide)
+        if steps > MOST_STEPS:
+            raise PackageError(
+                "the formulas depend on each other in more steps than are followed; take out those that read "
+                "result sheets"
+            )
+        waiting = _readers_of(new, wide)
+        for place in waiting:
+            del wide[place]
     return found
 
 
-def _covers(reference: Reference, by_sheet: Mapping[str, list[Place]]) -> bool:
+def _sorted_by_width(
+    formulas: Mapping[Place, str],
+) -> tuple[dict[Place, list[Place]], dict[Place, list[Reference]]]:
+    """Return the places behind each cell that small ranges refer to, and the wide ranges by place."""
+    behind: dict[Place, list[Place]] = {}
+    wide: dict[Place, list[Reference]] = {}
+    left = MOST_CELLS
+    for place, text in formulas.items():
+        for reference in references(text, place[0]):
+            cells = reference.cells
+            size = (cells.bottom - cells.top + 1) * (cells.right - cells.left + 1)
+            if size > FEW_CELLS or size > left:
+                wide.setdefault(place, []).append(reference)
+                continue
+            left -= size
+            for row in range(cells.top, cells.bottom + 1):
+                for column in range(cells.left, cells.right + 1):
+                    behind.setdefault((reference.sheet, row, column), []).append(place)
+    return behind, wide
+
+
+def _follow(waiting: list[Place], behind: Mapping[Place, Sequence[Place]], found: set[Place]) -> set[Place]:
+    """Add places and all that refer to them cell by cell to `found`; return what is new."""
+    new = set()
+    while waiting:
+        place = waiting.pop()
+        if place not in found:
+            found.add(place)
+            new.add(place)
+            waiting.extend(behind.get(place, ()))
+    return new
+
+
+def _readers_of(new: Collection[Place], wide: Mapping[Place, Sequence[Reference]]) -> list[Place]:
+    """Return the places that refer to a wide range with one of the new cells in it."""
+    rows: dict[str, dict[int, list[int]]] = {}
+    for sheet, row, column in sorted(new):
+        rows.setdefault(sheet, {}).setdefault(column, []).append(row)
+    return [
+        place for place, refs in wide.items() if any(_covers(ref, rows.get(ref.sheet, {})) for ref in refs)
+    ]
+
+
+def _covers(reference: Reference, rows: Mapping[int, Sequence[int]]) -> bool:
     cells = reference.cells
-    return any(
-        cells.top <= row <= cells.bottom and cells.left <= column <= cells.right
-        for _, row, column in by_sheet.get(reference.sheet, ())
-    )
+    for column, its_rows in rows.items():
+        if cells.left <= column <= cells.right:
+            place = bisect_left(its_rows, cells.top)
+            if place < len(its_rows) and its_rows[place] <= cells.bottom:
+                return True
+    return False
 
 
 def _with_names(formula: str, names: Mapping[str, str]) -> str:

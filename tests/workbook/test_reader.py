@@ -5,6 +5,7 @@ What a cell of each type holds: ECMA-376-1, clauses 18.3.1.4, 18.3.1.40 and 18.1
 
 from __future__ import annotations
 
+import time
 from collections.abc import Mapping
 from datetime import datetime
 from pathlib import Path
@@ -16,7 +17,7 @@ import xlsxwriter
 from study.issues import PackageError
 from study.workbook.package.opc import package_from_bytes
 from study.workbook.reader import RawBook, read_package
-from study.workbook.result_formulas import shifted
+from study.workbook.result_formulas import dependent_formulas, shifted
 from study.workbook.sheet_xml import ErrorValue, NoStoredValue, Percent, ResultFormula
 from tests.workbook.sheet_samples import MAIN, package
 
@@ -224,6 +225,24 @@ def test_dependence_over_several_steps() -> None:
     )
     read = _read({"Loads": steps, "R Cables": "<row/>"}).sheets[0].read()
     assert [type(read[n][1]) for n in (1, 2, 3, 4)] == [ResultFormula, ResultFormula, ResultFormula, float]
+
+
+@pytest.mark.parametrize("formula", ["A{before}+1", "SUM(A$1:A{before})", "SUM(A{before}:Z{before})"])
+def test_long_chains_take_time_in_proportion(formula: str) -> None:
+    chain = {("own", 1, 1): "'R Cables'!A1"}
+    chain |= {("own", row, 1): formula.format(before=row - 1) for row in range(2, 3001)}
+    apart = {("own", row, 9): f"SUM(K$1:K{row})" for row in range(1, 3001)}
+    start = time.process_time()
+    assert dependent_formulas(chain | apart, {}) == set(chain)
+    assert time.process_time() - start < 5.0
+
+
+def test_ranges_over_too_many_steps_are_refused(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("study.workbook.result_formulas.MOST_STEPS", 1000)
+    chain = {("own", 1, 1): "'R Cables'!A1"}
+    chain |= {("own", row, 1): f"SUM(A{row - 1}:CA{row - 1})" for row in range(2, 200)}
+    with pytest.raises(PackageError, match="more steps than are followed"):
+        dependent_formulas(chain, {})
 
 
 def _with_tables(formula: str, path: Path, names: Mapping[str, str] | None = None) -> type:
