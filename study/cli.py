@@ -6,12 +6,14 @@ Heavy libraries are imported inside the commands, so that ``--help`` answers at 
 from __future__ import annotations
 
 import argparse
+import io
 import os
 import sys
 
 TYPE_CHECKING = False  # the name tells the type checker; importing it from typing would slow --help
 if TYPE_CHECKING:
     from collections.abc import Callable, Sequence
+    from typing import TextIO
 
     from study.issues import Issue
     from study.report.content import StudyOutcome
@@ -39,6 +41,10 @@ def main(arguments: Sequence[str] | None = None) -> int:
         0, 1, 2 or 3 as the epilog of ``--help`` says.
     """
     options = _parser().parse_args(arguments)
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):
+            # a name that the terminal has no letters for is no reason to stop
+            stream.reconfigure(errors="replace")
     # the matrices are small: a second thread of the linear algebra library costs more than it gives
     os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
     command: Callable[[argparse.Namespace], int] = options.command
@@ -50,7 +56,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
         _print_issues(options.book, error.issues)
         return EXIT_UNUSABLE
     except StudyError as error:
-        print(f"study: {error}", file=sys.stderr)
+        _say(f"study: {error}", file=sys.stderr)
         return EXIT_UNUSABLE
     except KeyboardInterrupt:
         print("study: stopped; no file was changed by what had not been finished", file=sys.stderr)
@@ -126,14 +132,13 @@ def _run(options: argparse.Namespace) -> int:
         _end_progress()
         _print_summary(outcome)
         for note in written.notes:
-            print(note)
+            _say(note)
         for path in written.paths:
-            print(f"wrote {path}")
+            _say(f"wrote {path}")
     return _exit_status(outcome)
 
 
 def _check(options: argparse.Namespace) -> int:
-    from study.issues import one_line
     from study.pipeline import check_study
 
     plant, issues = check_study(options.book)
@@ -141,8 +146,8 @@ def _check(options: argparse.Namespace) -> int:
     if plant is None:
         return EXIT_UNUSABLE
     for text in plant.not_read:
-        print(f"not read: {one_line(text)}")
-    print(f"{options.book}: can be used; {len(plant.assumptions)} typical values stand in for blanks")
+        _say(f"not read: {text}")
+    _say(f"{options.book}: can be used; {len(plant.assumptions)} typical values stand in for blanks")
     return EXIT_WITHIN
 
 
@@ -153,7 +158,7 @@ def _new(options: argparse.Namespace) -> int:
     if options.book.exists():
         raise PackageError(f"{options.book} is there already; give the name of a file that is not")
     write_new(options.book, options.demo)
-    print(f"wrote {options.book}")
+    _say(f"wrote {options.book}")
     return EXIT_WITHIN
 
 
@@ -164,9 +169,9 @@ def _compare(options: argparse.Namespace) -> int:
     if bool(options.modes) == bool(options.other):
         raise StudyError("compare takes either another workbook, or --modes with two mode names")
     if options.modes:
-        print(compare_modes(options.book, *options.modes))
+        _say(compare_modes(options.book, *options.modes))
     else:
-        print(compare_workbooks(options.book, options.other))
+        _say(compare_workbooks(options.book, options.other))
     return EXIT_WITHIN
 
 
@@ -180,7 +185,7 @@ def _exit_status(outcome: StudyOutcome) -> int:
 def _print_summary(outcome: StudyOutcome) -> None:
     from study.pipeline import summary_text
 
-    print(summary_text(outcome))
+    _say(summary_text(outcome))
 
 
 def _print_issues(book: object, issues: Sequence[Issue]) -> None:
@@ -188,11 +193,19 @@ def _print_issues(book: object, issues: Sequence[Issue]) -> None:
     others = [issue for issue in issues if issue.severity != "fault"]
     if faults:
         count = f"{len(faults)} fault" + ("s" if len(faults) != 1 else "")
-        print(f"study: {book} cannot be used: {count}", file=sys.stderr)
+        _say(f"study: {book} cannot be used: {count}", file=sys.stderr)
     for issue in faults:
-        print(f"  {issue}", file=sys.stderr)
+        _say(f"  {issue}", file=sys.stderr)
     for issue in others:
-        print(f"{issue.severity}: {issue}")
+        _say(f"{issue.severity}: {issue}")
+
+
+def _say(text: str, *, file: TextIO | None = None) -> None:
+    """Print a text whose lines may hold names from a workbook, without what would steer the terminal."""
+    from study.issues import one_line
+
+    for line in text.split("\n"):
+        print(one_line(line), file=file)
 
 
 def _show_progress(text: str) -> None:

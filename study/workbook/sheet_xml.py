@@ -6,6 +6,7 @@ formulas, or refuse a workbook for its looks; each reason is a test in tests/wor
 
 from __future__ import annotations
 
+import unicodedata
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 from datetime import datetime, timedelta
@@ -136,8 +137,8 @@ def plain_text(text: str) -> str:
 
     Examples
     --------
-    >>> plain_text("a_x0020_b")
-    'a b'
+    >>> plain_text("a_x0020_b"), plain_text("_x001B_[2J"), plain_text("_xD83D__xDCA1_")
+    ('a b', '�[2J', '💡')
     """
     if "_x" not in text:
         return text
@@ -146,10 +147,17 @@ def plain_text(text: str) -> str:
     for piece in rest:
         code, mark, tail = piece[:4], piece[4:5], piece[5:]
         if mark == "_" and len(code) == 4 and all(c in "0123456789abcdefABCDEF" for c in code):
-            out.append(chr(int(code, 16)) + tail)
+            out.append(_escaped(int(code, 16)) + tail)
         else:
             out.append("_x" + piece)
-    return "".join(out)
+    # A sign beyond the first 65 536 is written as two halves; a half alone is no sign.
+    return "".join(out).encode("utf-16", "surrogatepass").decode("utf-16", "replace")
+
+
+def _escaped(code: int) -> str:
+    """Return the sign of an escape; one that steers a terminal shows as the sign for what cannot be shown."""
+    sign = chr(code)
+    return sign if sign in "\t\n\r" or unicodedata.category(sign) != "Cc" else "\ufffd"
 
 
 class _CellReader:

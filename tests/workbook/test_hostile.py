@@ -8,6 +8,7 @@ spreadsheet program or a browser would take for something to run.
 from __future__ import annotations
 
 import io
+import json
 import os
 import re
 import sys
@@ -15,6 +16,7 @@ import zipfile
 from collections.abc import Callable
 from html.parser import HTMLParser
 from pathlib import Path
+from xml.sax.saxutils import escape
 
 import openpyxl
 import pytest
@@ -373,3 +375,50 @@ def test_macros_stay_and_never_run(tmp_path: Path) -> None:
     assert ended.status == 0, ended.err
     assert parts(book.read_bytes())["xl/vbaProject.bin"] == VBA
     assert sorted(os.listdir(tmp_path)) == ["vessel-report.html", "vessel-results.json", "vessel.xlsm"]
+
+
+# ---- text that would steer a terminal, or that no letters exist for
+
+STEERING = (
+    "_x001B_[2J_x001B_]0;owned_x0007_",
+    "\u202egnp.exe",
+    "\x9b2J",
+    "_xD800_half a sign",
+    "Größe 发电机 💡",
+)
+
+
+@pytest.mark.parametrize("text", STEERING)
+def test_names_that_steer_a_terminal(text: str, tmp_path: Path) -> None:
+    book = tmp_path / "vessel.xlsx"
+    content = book_parts()
+    written = escape(text).encode()
+    for name in ("xl/sharedStrings.xml",):
+        content[name] = (
+            content[name]
+            .replace(b"<t>At sea</t>", b"<t>" + written + b"</t>")
+            .replace(b"<t>At sea: ", b"<t>" + written + b": ")
+        )
+    book.write_bytes(rezip(content))
+    ended = study("run", book)
+    assert ended.status == 0, ended.err
+    assert not re.search("[\x00-\x08\x0b-\x1f\x7f-\x9f\u202e\ud800-\udfff]", ended.out)
+    json.loads((tmp_path / "vessel-results.json").read_text("utf-8"))
+    assert "\x1b" not in (tmp_path / "vessel-report.html").read_text("utf-8")
+
+
+@pytest.mark.parametrize("encoding", ["ascii", "cp1252"])
+def test_a_terminal_without_the_letters(
+    encoding: str, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    book = tmp_path / "vessel.xlsx"
+    content = book_parts()
+    content["xl/sharedStrings.xml"] = content["xl/sharedStrings.xml"].replace(
+        b"<t>MSB</t>", "<t>Größe 发电机</t>".encode(), 1
+    )
+    book.write_bytes(rezip(content))
+    monkeypatch.setenv("PYTHONIOENCODING", encoding)
+    ended = study("check", book)
+    assert ended.status in {0, 2}
+    assert "Traceback" not in ended.err
+    assert "vessel.xlsx" in ended.out + ended.err
