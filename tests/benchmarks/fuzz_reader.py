@@ -1,8 +1,9 @@
 """Workbooks changed at random: the reader answers with a plant, a list of faults or a sentence, and in time.
 
-Run with ``python -m tests.benchmarks.fuzz_reader [COUNT] [FIRST]``. Case n is the same in every run; one that
-fails is kept as a file in the folder for temporary files. A few hundred cases run with the other tests
-(tests/workbook/test_fuzz.py).
+Run with ``python -m tests.benchmarks.fuzz_reader [COUNT] [FIRST]``. Most cases change bytes, values or
+elements inside the parts; one in seven changes the zip structure around them (fuzz_zip.py). Case n is the
+same in every run; one that fails is kept as a file in the folder for temporary files. A few hundred cases
+run with the other tests (tests/workbook/test_fuzz.py).
 """
 
 from __future__ import annotations
@@ -31,6 +32,7 @@ from study.workbook.faults import FAULTS
 from study.workbook.package import graft_result_sheets, validate_package
 from study.workbook.package.opc import package_from_bytes
 from study.workbook.reader import read_package
+from tests.benchmarks.fuzz_zip import STRUCTURE
 from tests.faulty_workbooks import good
 from tests.workbook.package.samples import engineers_book, packed_book, parts, result_book, rezip
 from tests.workbook.sheet_samples import package
@@ -38,6 +40,7 @@ from tests.workbook.sheet_samples import package
 SECONDS_PER_CASE = 10
 """Of the processor, so that a busy machine makes no case slow."""
 GRAFT_EVERY = 5
+STRUCTURE_EVERY = 7
 TOKENS = (
     b"0", b"-1", b"1E999", b"nan", b"4294967296", b"99999999999999999999", b"A1", b"XFD1048576", b"ZZZZ1",
     b"", b"&lt;", b"&amp;", b"&#10;", b"&#x10FFFF;", b"s", b"str", b"inlineStr", b"e", b"d", b"b", b"shared",
@@ -192,6 +195,9 @@ def made_case(number: int) -> bytes:
     """Return the file of a case."""
     dice = Random(number)
     content = dict(dice.choice(_bases()))
+    method = dice.choice((zipfile.ZIP_STORED, zipfile.ZIP_DEFLATED))
+    if number % STRUCTURE_EVERY == 0:
+        return dice.choice(STRUCTURE)(dice, rezip(content, method))
     what = dice.random()
     if what < 0.1:
         _changed_names(dice, content)
@@ -199,7 +205,7 @@ def made_case(number: int) -> bytes:
         _changed_parts(dice, content)
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")
-        data = rezip(content, dice.choice((zipfile.ZIP_STORED, zipfile.ZIP_DEFLATED)))
+        data = rezip(content, method)
     return dice.choice((_any_bytes, _cut, _splice))(dice, data) if dice.random() < 0.05 else data
 
 

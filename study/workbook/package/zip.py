@@ -176,6 +176,9 @@ def _read_entry(data: bytes, position: int, directory: int) -> tuple[Member, tup
         raise PackageError(
             f"part {name} is packed by a method that Excel does not use; save the file in Excel"
         )
+    if offset > directory:
+        # A 64-bit offset may be beyond what an index can be.
+        raise PackageError(_DAMAGED)
     local = _LOCAL.unpack_from(data, offset)
     body = offset + _LOCAL.size + local[9] + local[10]
     local_name_at = offset + _LOCAL.size

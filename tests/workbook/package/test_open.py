@@ -425,6 +425,21 @@ def test_64_bit_fields_of_a_member_are_read_and_not_carried_on(book):
     assert not any(m.local_extra for m in zip_module.read_members(joined))
 
 
+@pytest.mark.parametrize("offset", [2**63, 2**64 - 1, 2**40])
+def test_a_64_bit_offset_beyond_every_file(offset):
+    """The only entry of the directory says that its data stand where no index reaches."""
+    one = rezip({"a": b"1"})
+    at, end = one.index(b"PK\x01\x02"), one.index(b"PK\x05\x06")
+    wide = struct.pack("<HHQ", 1, 8, offset)
+    entry = bytearray(one[at:end] + wide)
+    struct.pack_into("<H", entry, 30, len(wide))
+    struct.pack_into("<L", entry, 42, 0xFFFFFFFF)
+    tail = bytearray(one[end:])
+    struct.pack_into("<LL", tail, 12, len(entry), at)
+    with pytest.raises(PackageError, match="the file is damaged"):
+        package_from_bytes(one[:at] + bytes(entry + tail))
+
+
 def test_streamed_members_are_read_and_written_plainly(book):
     """Sizes behind the data instead of before it, as programs write that cannot go back in the file."""
 
