@@ -75,7 +75,7 @@ def solve_case(net: FaultNetwork, nominal: FaultNetwork | None, options: ShortCi
     earth = None
     if np.isfinite(z0).any():
         earth = in_amperes(net, fault_parts(net, stages, z2 + z0, 3.0)[0])
-    rows = end_rows(net, stages.subtransient)
+    rows = end_rows(net)
     share = with_taken_over(rows, own.transient_a, own.subtransient_a.shape[1])
     parts = in_amperes(net, own)
     ends_s = np.append(net.sources.ends_s, [np.inf] * (parts.dc_a.shape[1] - len(net.sources.ends_s)))
@@ -183,15 +183,21 @@ class _Assembler:
             least_a=only(np.fmin(np.fmin(ac, ac2), ac1)),
             parting_s=read_only(parting),
             dc_part=only(dc_fraction),
-            parts=Exponentials(
-                **{f.name: read_only(getattr(parts, f.name)) for f in fields(FaultCurrent)},
-                ends_s=read_only(self.ends_s),
-            ),
+            parts=self._exponentials(parts),
+            parts_2ph=self._exponentials(two_phase),
+            parts_earth=self._exponentials(parts if earth is None else earth, none=earth is None),
             source_initial_a=read_only(initial),
             source_half_a=read_only(half),
             source_ip_a=read_only(SQRT2 * half + dc_half),
             ends=branch_ends(self.net, rows, share, (initial, half, dc_half)),
+            routes=rows.routes,
         )
+
+    def _exponentials(self, parts: FaultCurrent, *, none: bool = False) -> Exponentials:
+        values = {f.name: getattr(parts, f.name) for f in fields(FaultCurrent)}
+        if none:
+            values |= {k: 0.0 * v for k, v in values.items() if k.endswith("_a")}
+        return Exponentials(**{k: read_only(v) for k, v in values.items()}, ends_s=read_only(self.ends_s))
 
     def _r_over_x(self, dc_start: FloatArray, dc_half: FloatArray) -> FloatArray:
         """Return R/X from the fall of the direct component in half a cycle, else of the impedance."""

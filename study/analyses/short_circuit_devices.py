@@ -147,6 +147,8 @@ def device_faults(
         names=tuple(d.name for d in devices),
         place=read_only(np.where(live, place, -1), np.int64),
         end=read_only(np.where(live, end, -1), np.int64),
+        ends=read_only([end, _rows(minimum.rows, places)], np.int64),
+        own=read_only([_own_columns(x, places) for x in (maximum, minimum)], np.int64),
         duty_initial_a=only(np.maximum(through[0], rest[0]), live),
         duty_half_a=only(np.maximum(through[1], rest[1]), live),
         duty_ip_a=only(np.maximum(through[2], rest[2]), live),
@@ -166,6 +168,12 @@ def _rows(rows: EndRows, places: DevicePlaces, far: bool = False) -> IntArray:
     return np.array(
         [at.get((int(b), int(n)), -1) for b, n in zip(places.branch, node, strict=True)], np.int64
     )
+
+
+def _own_columns(solved: SolvedCase, places: DevicePlaces) -> IntArray:
+    """Return the source on which each device stands without a cable, -1 for none."""
+    column = {s.name: k for k, s in enumerate(solved.net.sources.supplies)}
+    return np.array([column.get(owner, -1) for owner in places.owner], np.int64)
 
 
 def _own(net: FaultNetwork, places: DevicePlaces, solved: SolvedCase) -> FloatArray:

@@ -7,13 +7,12 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from study.analyses.short_circuit_routes import fault_routes
 from study.formulas.fault_current import SQRT2
 from study.network.fault_network import FaultNetwork
-from study.network.fault_stages import Stage
 from study.network.topology import Branch
-from study.network.union_find import UnionFind
-from study.network.view import DEAD
 from study.results.arrays import read_only
+from study.results.fault_routes import FaultRoutes
 from study.results.short_circuit import BranchEnds
 
 FloatArray = NDArray[np.float64]
@@ -35,7 +34,12 @@ class EndRows:
     far_node: IntArray
     place: IntArray
     share: FloatArray
-    determined: BoolArray
+    routes: FaultRoutes
+
+    @property
+    def determined(self) -> BoolArray:
+        """Return False for ties in a closed ring of ties without impedance, [end]."""
+        return self.routes.determined
 
     def row(self, branch: int, node: int) -> int:
         """Return the row of a branch's end, -1 where it is not closed."""
@@ -43,132 +47,28 @@ class EndRows:
         return int(hit[0]) if len(hit) else -1
 
 
-def end_rows(net: FaultNetwork, stage: Stage) -> EndRows:
-    """Return the ends of all closed branches with what comes through them.
-
-    With the place's voltage at zero each source alone drives ``y (Z_jk - Z_jp Z_pk/Z_pp)`` through the branch
-    from bus j, of ``Z_pk/Z_pp`` in all.
-
-    Source: nodal analysis.
+def end_rows(net: FaultNetwork) -> EndRows:
+    """Return the ends of all closed branches with what comes through them to a fault where they end.
 
     Parameters
     ----------
     net : FaultNetwork
         The network.
-    stage : Stage
-        Its subtransient stage.
 
     Returns
     -------
     EndRows
         Branches between buses, then those to terminals, then ties without impedance.
     """
-    inner = _inner(net, stage)
-    stubs = _stubs(net)
-    ties = _ties(net, inner)
-    parts = [inner, stubs, ties]
-    branch, node, far = (np.concatenate([p[k] for p in parts]) for k in range(3))
-    share = np.concatenate([p[3] for p in parts])
-    keep = net.plant.place_of_node[node] >= 0
-    determined = np.concatenate([np.ones(len(inner[0]) + len(stubs[0]), bool), ties[4]])
+    ends, routes = fault_routes(net)
+    place = net.plant.place_of_node[ends.node]
+    leaves = routes.shares(np.arange(len(place)), place)
+    # Of a tie in a ring of ties no more is known than that all of it may come through.
+    share = np.clip(np.where(routes.determined[:, None], -leaves, leaves), 0.0, 1.0)
+    share = np.where(share < _EXACT, 0.0, np.where(share > 1.0 - _EXACT, 1.0, share))
     return EndRows(
-        branch=branch[keep],
-        node=node[keep],
-        far_node=far[keep],
-        place=net.plant.place_of_node[node[keep]],
-        share=share[keep],
-        determined=determined[keep],
+        branch=ends.branch, node=ends.node, far_node=ends.far_node, place=place, share=share, routes=routes
     )
-
-
-_Rows = tuple[IntArray, IntArray, IntArray, FloatArray, BoolArray]
-
-
-def _inner(net: FaultNetwork, stage: Stage) -> _Rows:
-    branches = net.plant.network.branches
-    a, b = branches.from_node[net.live], branches.to_node[net.live]
-    branch, node, far = (np.concatenate(x) for x in ((net.live, net.live), (a, b), (b, a)))
-    p, j = (np.concatenate(x) for x in ((net.from_bus, net.to_bus), (net.to_bus, net.from_bus)))
-    y = np.tile(1.0 / (net.z * net.ratio), 2)
-    z, k = stage.z_bus, net.sources.bus
-    if not len(branch) or not len(k):
-        return branch, node, far, np.zeros((len(branch), len(k))), np.ones(len(branch), bool)
-    to_fault = z[p[:, None], k[None, :]]
-    reaches = net.bus_island[p][:, None] == net.bus_island[k][None, :]
-    ratio = z[j[:, None], k[None, :]] * z[p, p][:, None] / np.where(reaches, to_fault, 1.0)
-    share = np.where(reaches, (y[:, None] * (ratio - z[j, p][:, None])).real, 0.0)
-    share = np.clip(np.where(np.abs(share) < _EXACT, 0.0, share), 0.0, 1.0)
-    return branch, node, far, np.where(share > 1.0 - _EXACT, 1.0, share), np.ones(len(branch), bool)
-
-
-def _stubs(net: FaultNetwork) -> _Rows:
-    """Return both ends of the paths to terminals: from the board's side the own source, else all others."""
-    s = net.sources
-    place = np.flatnonzero((net.stub >= 0) & (net.place_bus >= 0))
-    branch = net.stub[place]
-    terminal = net.plant.place_node[place]
-    branches = net.plant.network.branches
-    a, b = branches.from_node[branch], branches.to_node[branch]
-    board = np.where(a == terminal, b, a)
-    own = net.place_own[place]
-    near = np.zeros((len(place), len(s.bus)))
-    has = np.flatnonzero(own >= 0)
-    near[has, own[has]] = 1.0 / s.units[own[has]]
-    live = (net.place_island[place][:, None] == s.island[None, :]).astype(float)
-    share = np.concatenate([near, live * (1.0 - near)])
-    return (
-        np.concatenate([branch, branch]),
-        np.concatenate([board, terminal]),
-        np.concatenate([terminal, board]),
-        share,
-        np.ones(2 * len(place), bool),
-    )
-
-
-def _ties(net: FaultNetwork, inner: _Rows) -> _Rows:
-    """Return ties without impedance: what stands on the far side; all of it where a ring leaves it open."""
-    topology, view, s = net.plant.network.topology, net.view, net.sources
-    ties = [
-        k
-        for k, b in enumerate(topology.branches)
-        if b.without_impedance and view.closed[k] and view.island[b.from_node] != DEAD
-    ]
-    stands = np.array([_hang(net, x.node) for x in s.supplies], np.int64)
-    rows: list[tuple[int, int, int, FloatArray, bool]] = []
-    for k in ties:
-        rest = UnionFind(len(topology.nodes))
-        for other in ties:
-            if other != k:
-                rest.join(topology.branches[other].from_node, topology.branches[other].to_node)
-        roots = np.array(rest.roots())
-        ends = topology.branches[k].from_node, topology.branches[k].to_node
-        parted = roots[ends[0]] != roots[ends[1]]
-        for near, far in (ends, ends[::-1]):
-            share = (s.island == view.island[near]).astype(float)
-            if parted:
-                share = inner[3][roots[inner[1]] == roots[far]].sum(axis=0)
-                share = np.minimum(share + (roots[stands] == roots[far]), 1.0)
-            rows.append((k, near, far, share, bool(parted)))
-    if not rows:
-        empty = np.zeros(0, np.int64)
-        return empty, empty, empty, np.zeros((0, len(s.bus))), np.zeros(0, bool)
-    branch, near_node, far_node, shares, parts = zip(*rows, strict=True)
-    return (
-        np.array(branch, np.int64),
-        np.array(near_node, np.int64),
-        np.array(far_node, np.int64),
-        np.array(shares),
-        np.array(parts, bool),
-    )
-
-
-def _hang(net: FaultNetwork, node: int) -> int:
-    """Return the board node that a source's node hangs on."""
-    place = net.plant.place_of_node[node]
-    if place < 0 or net.stub[place] < 0:
-        return node
-    branch = net.plant.network.topology.branches[net.stub[place]]
-    return int(branch.to_node if branch.from_node == node else branch.from_node)
 
 
 def with_taken_over(rows: EndRows, transient_a: FloatArray, columns: int) -> FloatArray:

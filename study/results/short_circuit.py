@@ -10,7 +10,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Literal
 
+import numpy as np
+
 from study.results.arrays import BoolArray, FloatArray, IntArray
+from study.results.fault_routes import FaultRoutes
 
 PlaceKind = Literal["board", "transformer terminals", "source terminals", "consumer terminals"]
 
@@ -121,9 +124,10 @@ class FaultCase:
     [place, time]: ``iac_a`` and ``idc_a`` at ``time_s``; the two-phase and line-earth ``iac_2ph_a`` and
     ``iac_earth_a`` (NaN where the neutral is not earthed); ``least_a`` the least of the three.
     [place, parting]: ``dc_part`` is idc / (sqrt2 Iac) at ``parting_s`` (above 1: no current zero).
-    [place, source]: ``parts``, and what each source gives: ``source_initial_a``, ``source_half_a`` (Iac at
+    [place, source]: ``parts`` of the three-phase fault, ``parts_2ph`` and ``parts_earth`` of the others (all
+    0 where the neutral is not earthed), and what each source gives to the three-phase fault: ``source_initial_a``, ``source_half_a`` (Iac at
     T/2), ``source_ip_a``; they add up to the place's. A fault at the terminals of one of several equal
-    consumers has its own motor among that row's source.
+    consumers has its own motor among that row's source. ``routes`` tells what of it comes through any branch.
     """
 
     sources: FaultSources
@@ -151,10 +155,39 @@ class FaultCase:
     parting_s: FloatArray
     dc_part: FloatArray
     parts: Exponentials
+    parts_2ph: Exponentials
+    parts_earth: Exponentials
     source_initial_a: FloatArray
     source_half_a: FloatArray
     source_ip_a: FloatArray
     ends: BranchEnds
+    routes: FaultRoutes
+
+    def shares(self, end: IntArray, place: IntArray) -> FloatArray:
+        """Return `FaultRoutes.shares` for every column of ``parts``.
+
+        What is taken over from motors goes the ways of the lasting sources, by their transient currents.
+
+        Parameters
+        ----------
+        end : ndarray of int, shape (pair,)
+            Rows of `BranchEnds`; -1 gives nothing.
+        place : ndarray of int, shape (pair,)
+            Faulted place of each pair.
+
+        Returns
+        -------
+        ndarray, shape (pair, source)
+            A at the voltage of the end per A at that of the place; positive from the end into its branch.
+        """
+        shares = self.routes.shares(end, place)
+        if shares.shape[1] == self.parts.transient_a.shape[1]:
+            return shares
+        weight = self.parts.transient_a[place, : shares.shape[1]]
+        total = weight.sum(axis=1)
+        given = (weight * shares).sum(axis=1)
+        mean = np.divide(given, total, out=np.zeros_like(total), where=total > 0.0)
+        return np.concatenate([shares, mean[:, None]], axis=1)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -167,6 +200,9 @@ class DeviceFaults:
     rest: Iac(T/2), ip, I''k in A; ``duty_through`` says True where the own branch governs. ``dc_part`` is
     idc/(sqrt2 Iac) of that side at ``parting_s``, the device's least opening time plus half a cycle.
 
+    ``ends`` [case, device] (maximum, minimum) is the row of the device's end in the case's `BranchEnds`, and
+    ``own`` [case, device] the column of the source on which it stands without a cable; both -1 for none.
+
     Minimum case: ``operating_s`` is when the device has cleared by its own setting at high current
     (instantaneous, else short-time, with its breaking time; NaN where no such setting is given),
     ``far_place`` the far end of what it protects and ``least_a`` the least fault current there at that
@@ -177,6 +213,8 @@ class DeviceFaults:
     names: tuple[str, ...]
     place: IntArray
     end: IntArray
+    ends: IntArray
+    own: IntArray
     duty_initial_a: FloatArray
     duty_half_a: FloatArray
     duty_ip_a: FloatArray
@@ -274,6 +312,36 @@ class ModeShortCircuit:
     earth: tuple[EarthSystem, ...]
     quick: tuple[QuickRow, ...]
     findings: tuple[str, ...]
+
+    def device_shares(self, device: IntArray, place: IntArray, *, maximum: bool) -> FloatArray:
+        """Return what comes through devices, for 1 A that each source gives at a faulted place.
+
+        With the exponentials of the place (``parts``, ``parts_2ph``, ``parts_earth``) this is the current
+        through any device at any instant, for a fault at any place: of its own branch, of a board behind it,
+        or on its source's side.
+
+        Parameters
+        ----------
+        device : ndarray of int, shape (pair,)
+            Places in `DeviceFaults`.
+        place : ndarray of int, shape (pair,)
+            Faulted place of each pair.
+        maximum : bool
+            The maximum case, else the minimum.
+
+        Returns
+        -------
+        ndarray, shape (pair, source)
+            A at the device per A at the place; positive from the device's end into its branch (for a device
+            without a branch: from the board into its equipment). 0 for an open or dead device.
+        """
+        case, row = (self.maximum, 0) if maximum else (self.minimum, 1)
+        device, place = np.asarray(device, np.int64), np.asarray(place, np.int64)
+        out = case.shares(self.devices.ends[row, device], place)
+        own = self.devices.own[row, device]
+        stands = np.flatnonzero(own >= 0)
+        out[stands, own[stands]] = -case.routes.own_shares(own[stands], place[stands])
+        return out
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -14,6 +14,7 @@ from typing import Any
 import numpy as np
 
 from study.results.arrays import read_only
+from study.results.fault_routes import FaultRoutes
 from study.results.short_circuit import (
     BranchEnds,
     DeviceFaults,
@@ -177,10 +178,38 @@ def fault_case(
         parting_s=read_only(PARTINGS_S),
         dc_part=read_only(dc_part),
         parts=_exponentials(sources, at, shape),
+        parts_2ph=_exponentials(sources, at, shape, times=two_phase),
+        parts_earth=_exponentials(sources, at, shape, times=0.0),
         source_initial_a=read_only(table["initial"]),
         source_half_a=read_only(table["half"]),
         source_ip_a=read_only(table["ip"]),
         ends=_branch_ends(at, shape, table),
+        routes=no_routes(shape),
+    )
+
+
+def no_routes(shape: tuple[int, int]) -> FaultRoutes:
+    """Return ways of fault currents without any branch, for places and sources on one board."""
+    places, sources = shape
+    return FaultRoutes(
+        ends=(),
+        determined=read_only([], bool),
+        terminal=read_only([], np.int64),
+        inward=read_only([]),
+        line=read_only([], np.int64),
+        pull=read_only(np.zeros((1, 1))),
+        from_source=read_only(np.zeros((1, sources))),
+        to_place=read_only(np.zeros((1, places)), bool),
+        end_bus=read_only([], np.int64),
+        source_bus=read_only(np.zeros(sources), np.int64),
+        source_island=read_only(np.zeros(sources), np.int64),
+        place_bus=read_only(np.zeros(places), np.int64),
+        place_island=read_only(np.zeros(places), np.int64),
+        turns=read_only([1.0]),
+        hours=read_only([0], np.int64),
+        base_a=read_only([1000.0]),
+        own_source=read_only(np.full(places, -1), np.int64),
+        units=read_only(np.ones(sources)),
     )
 
 
@@ -277,6 +306,8 @@ def device_faults(
             [ends.index((p, r.own)) if (p, r.own) in ends else -1 for p, r in zip(place, rows, strict=True)],
             np.int64,
         ),
+        ends=read_only(np.full((2, len(rows)), -1), np.int64),
+        own=read_only(np.full((2, len(rows)), -1), np.int64),
         duty_initial_a=read_only([x[0] for x in duty]),
         duty_half_a=read_only([x[1] for x in duty]),
         duty_ip_a=read_only([x[2] for x in duty]),
@@ -336,7 +367,9 @@ def _over_time(
     return values
 
 
-def _exponentials(sources: Sequence[Source], at: _At, shape: tuple[int, int]) -> Exponentials:
+def _exponentials(
+    sources: Sequence[Source], at: _At, shape: tuple[int, int], *, times: float = 1.0
+) -> Exponentials:
     table = {f.name: np.zeros(shape) for f in fields(Exponentials) if f.name.endswith("_a")}
     table |= {name: np.ones(shape) for name in ("t_sub_s", "t_trans_s", "t_dc_s")}
     for index, feed in at.items():
@@ -346,7 +379,9 @@ def _exponentials(sources: Sequence[Source], at: _At, shape: tuple[int, int]) ->
         table["dc_a"][index] = feed.direct_a(0.0)
         for name in ("t_sub_s", "t_trans_s", "t_dc_s"):
             table[name][index] = getattr(feed, name)
-    arrays = {name: read_only(values) for name, values in table.items()}
+    arrays = {
+        name: read_only(times * values if name.endswith("_a") else values) for name, values in table.items()
+    }
     return Exponentials(**arrays, ends_s=read_only([source.ends_s for source in sources]))
 
 

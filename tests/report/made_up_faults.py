@@ -27,6 +27,7 @@ from study.results.short_circuit import (
     QuickRow,
     ShortCircuitResult,
 )
+from tests.analyses.made_up_short_circuit import no_routes
 from tests.report import made_up
 from tests.report.made_up_fault_ratings import fault_ratings, fault_verdicts
 
@@ -100,7 +101,8 @@ def _mode(plant: Plant, where: Places, m: int) -> ModeShortCircuit:
         iec60909_maximum=_general(maximum, 1.05),
         iec60909_minimum=_general(minimum, 0.95),
         devices=DeviceFaults(
-            names=(), place=read_only([], np.int64), end=read_only([], np.int64), duty_initial_a=none,
+            names=(), place=read_only([], np.int64), end=read_only([], np.int64),
+            ends=read_only([[], []], np.int64), own=read_only([[], []], np.int64), duty_initial_a=none,
             duty_half_a=none, duty_ip_a=none, duty_through=read_only([], bool), parting_s=none, dc_part=none,
             operating_s=none, far_place=read_only([], np.int64), least_a=none, least_kind=(),
         ),
@@ -167,14 +169,21 @@ def _case(plant: Plant, where: Places, m: int, *, motors: bool, strength: float)
         least_a=read_only(0.866 * iac),
         parting_s=read_only(PARTINGS_S),
         dc_part=read_only(dc_part * dark[:, None]),
-        parts=Exponentials(
-            **{name: read_only(values) for name, values in parts.items()},
-            ends_s=read_only(np.full(len(names), np.inf)),
-        ),
+        parts=_exponentials(parts, 1.0),
+        parts_2ph=_exponentials(parts, 0.866),
+        parts_earth=_exponentials(parts, 0.0),
         source_initial_a=read_only(initial),
         source_half_a=read_only(half),
         source_ip_a=read_only(ip),
         ends=_ends(where, boards, kinds, initial=initial, half=half, ip=ip),
+        routes=no_routes(initial.shape),
+    )
+
+
+def _exponentials(parts: dict[str, Any], times: float) -> Exponentials:
+    return Exponentials(
+        **{k: read_only(times * v if k.endswith("_a") else v) for k, v in parts.items()},
+        ends_s=read_only(np.full(parts["dc_a"].shape[1], np.inf)),
     )
 
 
