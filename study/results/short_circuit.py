@@ -125,9 +125,10 @@ class FaultCase:
     ``iac_earth_a`` (NaN where the neutral is not earthed); ``least_a`` the least of the three.
     [place, parting]: ``dc_part`` is idc / (sqrt2 Iac) at ``parting_s`` (above 1: no current zero).
     [place, source]: ``parts`` of the three-phase fault, ``parts_2ph`` and ``parts_earth`` of the others (all
-    0 where the neutral is not earthed), and what each source gives to the three-phase fault: ``source_initial_a``, ``source_half_a`` (Iac at
-    T/2), ``source_ip_a``; they add up to the place's. A fault at the terminals of one of several equal
-    consumers has its own motor among that row's source. ``routes`` tells what of it comes through any branch.
+    0 where the neutral is not earthed), and what each source gives to the three-phase fault:
+    ``source_initial_a``, ``source_half_a`` (Iac at T/2), ``source_ip_a``; they add up to the place's. A fault
+    at the terminals of one of several equal consumers has its own motor among that row's source. ``routes``
+    tells what of it comes through any branch.
     """
 
     sources: FaultSources

@@ -1,4 +1,4 @@
-"""The shares of fault currents in branches against the whole circuit, solved with every branch current unknown.
+"""The shares of fault currents in branches against the whole circuit, every branch current unknown.
 
 The circuit below is written from the impedances alone: bus voltages and branch currents are unknowns, sources
 are voltages behind impedances, the fault is a short. Its branch currents are what the shares must give with
@@ -59,7 +59,7 @@ def ship(**more):
 
 
 def circuit(net, place):
-    """Return each source's current at its own board and each branch's at both ends, for a short at a place."""
+    """Return each source's current at its board and each branch's at both ends, for a short at a place."""
     s, count, branches = net.sources, len(net.bus_island), len(net.live)
     size = count + branches + 1
     m, rhs = np.zeros((size, size), complex), np.zeros(size, complex)
@@ -85,7 +85,7 @@ def circuit(net, place):
 
 
 def at_one_angle(net):
-    """Return the network with every branch at 45 degrees, where shares are exact and not of a part in phase."""
+    """Return the network with every branch at 45 degrees, where shares are exact."""
     z = np.abs(net.z) * np.exp(0.25j * np.pi)
     admittance = admittance_matrix(
         len(net.bus_island),
