@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from study.analyses.load_flow_boards import board_state
-from study.analyses.load_flow_branches import branch_state
+from study.analyses.load_flow_branches import BranchTable, branch_state, branch_table
 from study.analyses.load_flow_terminals import terminal_state
 from study.network.cases import SolvedCase, case
 from study.network.network import ModeNetwork
@@ -56,11 +56,12 @@ def load_flow(networks: Sequence[ModeNetwork], p_kw: FloatArray, q_kvar: FloatAr
     if not networks:
         return LoadFlowResult(modes=())
     cases = [case(at, p_kw[k], q_kvar[k]) for k, at in enumerate(networks)]
-    solved = solve_reported(networks[0].network, cases)
-    return LoadFlowResult(modes=tuple(_mode(c) for c in solved))
+    network = networks[0].network
+    solved, table = solve_reported(network, cases), branch_table(network)
+    return LoadFlowResult(modes=tuple(_mode(c, table) for c in solved))
 
 
-def _mode(one: SolvedCase) -> ModeLoadFlow:
+def _mode(one: SolvedCase, table: BranchTable) -> ModeLoadFlow:
     s = one.reported
     own_findings = _source_findings(s)
     return ModeLoadFlow(
@@ -70,7 +71,7 @@ def _mode(one: SolvedCase) -> ModeLoadFlow:
         boards=board_state(s),
         terminals=terminal_state(s),
         sources=_sources(s),
-        branches=branch_state(s),
+        branches=branch_state(s, table),
         islands=_islands(s, own_findings),
         dead_boards=tuple(
             b.name for b, live in zip(s.at.network.plant.boards, s.energised, strict=True) if not live

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
-from numpy.typing import NDArray
+from numpy.typing import ArrayLike, NDArray
 
 from study.formulas.cable_ratings import (
     CORE_FACTOR,
@@ -18,111 +19,150 @@ from study.formulas.cable_ratings import (
 )
 from study.model.branches import Cable, ThreeWindingTransformer
 from study.model.plant import Plant
+from study.network.network import Network
 from study.network.solution import ModeSolution
 from study.network.topology import Branch
 from study.results.arrays import read_only
 from study.results.load_flow import BranchState
 
 FloatArray = NDArray[np.float64]
+IntArray = NDArray[np.int64]
+BoolArray = NDArray[np.bool_]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class _Row:
-    """One piece of equipment: its branch, or the three legs of a three-winding transformer."""
+class BranchTable:
+    """What the modes share of a plant's branches, [branch] in the topology's order: names, ends and ratings.
 
-    name: str
-    kind: str
-    from_end: str
-    to_end: str
-    s_from: complex
-    s_to: complex
-    current_a: float
-    rating_a: float
-    drop_pu: float
-    determined: bool
+    ``plain`` is False for the legs of three-winding transformers, of which ``windings`` holds the
+    equipment by name.
+    """
+
+    names: NDArray[np.object_]
+    kinds: NDArray[np.object_]
+    from_ends: NDArray[np.object_]
+    to_ends: NDArray[np.object_]
+    from_node: IntArray
+    to_node: IntArray
+    rating_a: FloatArray
+    transformer: BoolArray
+    plain: BoolArray
+    windings: Mapping[str, ThreeWindingTransformer]
 
 
-def branch_state(s: ModeSolution) -> BranchState:
+def branch_table(network: Network) -> BranchTable:
+    """Return what the modes of a plant share of its branches.
+
+    Parameters
+    ----------
+    network : Network
+        Of the plant.
+
+    Returns
+    -------
+    BranchTable
+        Serves every mode.
+    """
+    branches, plant = network.topology.branches, network.plant
+    return BranchTable(
+        names=np.array([b.name for b in branches], object),
+        kinds=np.array([b.kind for b in branches], object),
+        from_ends=np.array([b.from_end for b in branches], object),
+        to_ends=np.array([b.to_end for b in branches], object),
+        from_node=network.branches.from_node,
+        to_node=network.branches.to_node,
+        rating_a=np.array([_rating_a(plant, b) for b in branches], float),
+        transformer=np.array([b.kind == "transformer" for b in branches], bool),
+        plain=np.array([not b.winding for b in branches], bool),
+        windings={t.name: t for t in plant.three_winding},
+    )
+
+
+def _rating_a(plant: Plant, branch: Branch) -> float:
+    """Return the rated current, a transformer's on its primary side; NaN where there is none."""
+    match branch.kind:
+        case "cable":
+            return cable_rating_a(plant.cables[branch.index])
+        case "tie":
+            return plant.ties[branch.index].rated_current_a or float("nan")
+        case "reactor":
+            return plant.reactors[branch.index].rated_current_a
+        case "transformer":
+            t = plant.transformers[branch.index]
+            return 1000.0 * t.s_rated_kva * t.units / (3.0**0.5 * t.u_primary_v)
+    return float("nan")
+
+
+def branch_state(s: ModeSolution, table: BranchTable) -> BranchState:
     """Return the closed branches of a solved mode; empty where it is not solved.
 
     Parameters
     ----------
     s : ModeSolution
         Of the mode.
+    table : BranchTable
+        Of the plant.
 
     Returns
     -------
     BranchState
-        In the order transformers, three-winding transformers, ties, reactors, cables.
+        In the topology's order, three-winding transformers last.
     """
-    rows = _rows(s)
-    s_from, s_to = np.array([r.s_from for r in rows], complex), np.array([r.s_to for r in rows], complex)
-    current, rating = np.array([r.current_a for r in rows]), np.array([r.rating_a for r in rows])
+    n = np.flatnonzero(table.plain[s.branch])
+    k = s.branch[n]
+    windings = _three_winding_rows(s, table)
+    current = np.where(table.transformer[k], s.i_from_a[n], np.maximum(s.i_from_a[n], s.i_to_a[n]))
+    falls = np.abs(s.node_v_pu[table.from_node[k]]) - np.abs(s.node_v_pu[table.to_node[k]])
+
+    def joined(own: ArrayLike, name: str) -> NDArray[Any]:
+        return np.concatenate([np.asarray(own), np.array([getattr(r, name) for r in windings])])
+
+    s_from, s_to = joined(s.s_from_kva[n], "s_from"), joined(s.s_to_kva[n], "s_to")
+    amperes = joined(np.where(s.determined[n], current, np.nan), "current_a")
+    rating = joined(table.rating_a[k], "rating_a")
     loss = s_from + s_to
+    none = np.full(len(windings), np.nan)
     return BranchState(
-        names=tuple(r.name for r in rows),
-        kinds=tuple(r.kind for r in rows),
-        from_ends=tuple(r.from_end for r in rows),
-        to_ends=tuple(r.to_end for r in rows),
+        names=(*table.names[k], *(r.item.name for r in windings)),
+        kinds=(*table.kinds[k], *("three-winding transformer" for _ in windings)),
+        from_ends=(*table.from_ends[k], *(r.item.primary_board for r in windings)),
+        to_ends=(
+            *table.to_ends[k],
+            *(f"{r.item.secondary_board}, {r.item.tertiary_board}" for r in windings),
+        ),
         p_from_kw=read_only(s_from.real),
         q_from_kvar=read_only(s_from.imag),
         p_to_kw=read_only(s_to.real),
         q_to_kvar=read_only(s_to.imag),
-        current_a=read_only(current),
+        current_a=read_only(amperes),
         rating_a=read_only(rating),
-        loading=read_only(current / rating),
+        loading=read_only(amperes / rating),
         loss_kw=read_only(loss.real),
         loss_kvar=read_only(loss.imag),
-        drop_pu=read_only(np.array([r.drop_pu for r in rows])),
-        determined=read_only(np.array([r.determined for r in rows], bool), np.bool_),
+        drop_pu=read_only(np.concatenate([np.where(table.transformer[k], falls, np.abs(falls)), none])),
+        determined=read_only(np.concatenate([s.determined[n], np.ones(len(windings), bool)]), np.bool_),
     )
 
 
-def _rows(s: ModeSolution) -> list[_Row]:
-    branches, plant = s.at.network.topology.branches, s.at.network.plant
-    rows: list[_Row] = []
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _ThreeWinding:
+    """A three-winding transformer: its closed legs together."""
+
+    item: ThreeWindingTransformer
+    s_from: complex
+    s_to: complex
+    current_a: float
+    rating_a: float
+
+
+def _three_winding_rows(s: ModeSolution, table: BranchTable) -> list[_ThreeWinding]:
     legs: dict[str, list[int]] = {}
-    for n, k in enumerate(s.branch):
-        branch = branches[k]
-        if branch.winding:
-            legs.setdefault(branch.name, []).append(n)
-        else:
-            rows.append(_plain_row(s, n, branch))
-    for name, places in legs.items():
-        item = next(t for t in plant.three_winding if t.name == name)
-        rows.append(_three_winding_row(s, places, item))
-    return rows
+    for n in np.flatnonzero(~table.plain[s.branch]):
+        legs.setdefault(table.names[s.branch[n]], []).append(int(n))
+    return [_three_winding_row(s, places, table.windings[name]) for name, places in legs.items()]
 
 
-def _plain_row(s: ModeSolution, n: int, branch: Branch) -> _Row:
-    plant = s.at.network.plant
-    rating = np.nan
-    match branch.kind:
-        case "cable":
-            rating = cable_rating_a(plant.cables[branch.index])
-        case "tie":
-            rating = plant.ties[branch.index].rated_current_a or np.nan
-        case "reactor":
-            rating = plant.reactors[branch.index].rated_current_a
-        case "transformer":
-            t = plant.transformers[branch.index]
-            rating = 1000.0 * t.s_rated_kva * t.units / (3.0**0.5 * t.u_primary_v)
-    larger = s.i_from_a[n] if branch.kind == "transformer" else max(s.i_from_a[n], s.i_to_a[n])
-    return _Row(
-        name=branch.name,
-        kind=branch.kind,
-        from_end=branch.from_end,
-        to_end=branch.to_end,
-        s_from=complex(s.s_from_kva[n]),
-        s_to=complex(s.s_to_kva[n]),
-        current_a=float(larger) if s.determined[n] else np.nan,
-        rating_a=float(rating),
-        drop_pu=_drop(s, branch),
-        determined=bool(s.determined[n]),
-    )
-
-
-def _three_winding_row(s: ModeSolution, places: Sequence[int], t: ThreeWindingTransformer) -> _Row:
+def _three_winding_row(s: ModeSolution, places: Sequence[int], t: ThreeWindingTransformer) -> _ThreeWinding:
     """Return one row for the legs that are closed: the winding with the highest loading stands for all."""
     branches = s.at.network.topology.branches
     rated = {
@@ -137,25 +177,13 @@ def _three_winding_row(s: ModeSolution, places: Sequence[int], t: ThreeWindingTr
         current = s.i_from_a[n] if winding == "primary" else s.i_to_a[n]
         pairs.append((float(current), 1000.0 * kva / (3.0**0.5 * u)))
     current, rating = max(pairs, key=lambda pair: pair[0] / pair[1])
-    return _Row(
-        name=t.name,
-        kind="three-winding transformer",
-        from_end=t.primary_board,
-        to_end=f"{t.secondary_board}, {t.tertiary_board}",
+    return _ThreeWinding(
+        item=t,
         s_from=complex(s.s_from_kva[list(places)].sum()),
         s_to=complex(s.s_to_kva[list(places)].sum()),
         current_a=current,
         rating_a=rating,
-        drop_pu=np.nan,
-        determined=True,
     )
-
-
-def _drop(s: ModeSolution, branch: Branch) -> float:
-    """Return the fall of voltage from end to end, of the base voltage of each end."""
-    u_from, u_to = (abs(s.node_v_pu[n]) for n in (branch.from_node, branch.to_node))
-    falls = u_from - u_to
-    return float(abs(falls) if branch.kind != "transformer" else falls)
 
 
 def cable_rating_a(cable: Cable) -> float:
@@ -188,8 +216,3 @@ def cable_rating_a(cable: Cable) -> float:
     ambient = float(ambient_factor(cable.ambient_temperature_degc, cable.conductor_temperature_degc))
     factors = CORE_FACTOR[cable.cores] * metal * ambient * bunching_factor(cable.bunched) * duty
     return base * factors * cable.further_derating * cable.runs
-
-
-def rated_cables(plant: Plant) -> dict[str, float]:
-    """Return the rating of every cable by its name [A]; NaN where there is none."""
-    return {c.name: cable_rating_a(c) for c in plant.cables}

@@ -19,6 +19,7 @@ from study.network.emfs import Emfs, emfs_of
 from study.network.mode_tables import consumer_columns, mode_columns
 from study.network.network import ModeNetwork, Network
 from study.network.solution import Flows, assemble, solution_of, unsolved
+from study.network.solver_empty import empty_network
 from study.network.tables import fixed_tables, layout_of
 
 FloatArray = NDArray[np.float64]
@@ -165,13 +166,10 @@ class _Grid:
     """A pandapower network of the whole plant, and the rows of its tables."""
 
     def __init__(self, network: Network) -> None:
-        import pandapower
         import pandas as pd
 
         self.network, self.layout = network, layout_of(network)
-        self.net = pandapower.create_empty_network(
-            f_hz=network.plant.project.f_rated_hz, sn_mva=network.s_base_kva / 1000.0
-        )
+        self.net = empty_network(network.plant.project.f_rated_hz, network.s_base_kva)
         for table, columns in fixed_tables(network, self.layout).items():
             empty = self.net[table]
             count = len(columns["name"])

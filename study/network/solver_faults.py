@@ -28,6 +28,7 @@ from study.network.fault_tables import (
     three_winding_columns,
     two_winding_columns,
 )
+from study.network.solver_empty import empty_network
 
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
@@ -71,14 +72,10 @@ def library_currents(
     tuple of LibraryCurrents
         At the voltage of each place, in the order given.
     """
-    import pandapower
-
     if not nets:
         return ()
     network = nets[0].plant.network
-    template = pandapower.create_empty_network(
-        f_hz=network.plant.project.f_rated_hz, sn_mva=network.s_base_kva / 1000.0
-    )
+    template = empty_network(network.plant.project.f_rated_hz, network.s_base_kva)
     blank = {name: template[name] for name in _TABLES}
     log = logging.getLogger("pandapower.shortcircuit.calc_sc")
     level = log.level
@@ -109,12 +106,8 @@ def library_network(net: FaultNetwork, lv_tolerance_percent: LvTolerance, *, all
     pandapowerNet
         Its buses are named by number.
     """
-    import pandapower
-
     network = net.plant.network
-    blank = pandapower.create_empty_network(
-        f_hz=network.plant.project.f_rated_hz, sn_mva=network.s_base_kva / 1000.0
-    )
+    blank = empty_network(network.plant.project.f_rated_hz, network.s_base_kva)
     grid = _Grid(blank, {}, net, all_places=all_places, tolerance=lv_tolerance_percent)
     grid.set_resistance(fictitious=False)
     return grid.net
