@@ -121,7 +121,8 @@ def governor_open_loop(
     half = 0.5 * dead_time_s
     numerator = np.polymul(pid, [-half, 1.0])
     denominator = np.polymul([g.filter_s, 1.0, 0.0], [half, 1.0])
-    return numerator, np.polymul(np.polymul(denominator, [rack_lag_s, 1.0]), [2.0 * inertia_s, 0.0])
+    shaft = np.polymul([rack_lag_s, 1.0], [2.0 * inertia_s, 0.0])
+    return np.asarray(numerator, float), np.asarray(np.polymul(denominator, shaft), float)
 
 
 def acceptance_limit(
@@ -156,6 +157,5 @@ def acceptance_limit(
     0.7
     """
     engine = np.asarray(engine_pu, float)
-    return np.minimum(
-        overload * engine, np.asarray(turbo_pu, float) + np.asarray(largest_step, float) * engine
-    )
+    step = np.asarray(turbo_pu, float) + np.asarray(largest_step, float) * engine
+    return np.asarray(np.minimum(overload * engine, step))

@@ -1,4 +1,4 @@
-"""Running a motor up: torque of the driven machine, starters, inertia, time, and the overload relay meanwhile.
+"""Running a motor up: torque of the driven machine, starters, inertia, time, and the overload relay then.
 
 Speeds are per unit of synchronous speed, torques of the motor's rated torque, currents of its rated current.
 """
