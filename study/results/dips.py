@@ -38,9 +38,10 @@ class StartEstimates:
     Voltages of boards are per unit of nominal, of terminals per unit of the motor's rated voltage.
     ``set_board`` is the board of the largest set of the motor's island, ``worst_board`` the worst of the
     others that are not on the motor's path. ``u_set_board_pu`` and ``u_terminal_pu`` are [law, motor] in the
-    order of ``PRELOAD_LAWS``, with X'd (what a meter sees for 0.1 to 0.2 s); ``first_cycle`` is with X''d. ``u_*_running_pu`` are with the motor at rated speed. ``p_engine_*`` belong to the engine check:
-    kW before plus kW of the start against 110 % of the engines. NaN where there is none.
-    ``dip_pu`` is the fall at the set's board of its voltage before, the largest of the three laws.
+    order of ``PRELOAD_LAWS``, with X'd (what a meter sees for 0.1 to 0.2 s); ``first_cycle`` is with X''d.
+    ``u_*_running_pu`` are with the motor at rated speed. ``p_engine_*`` belong to the engine check: kW before
+    plus kW of the start against 110 % of the engines. NaN where there is none. ``dip_pu`` is the fall at the
+    set's board of its voltage before, the largest of the three laws.
     """
 
     mode: str
@@ -117,8 +118,8 @@ class MotorTrace:
     """One starting, or re-accelerating, motor in a simulated case; arrays [time] on the case's own times.
 
     ``speed_pu`` of synchronous, ``u_pu`` of its rated voltage at its terminals, ``i_line_pu`` what the
-    network carries over its rated current, torques over rated. ``run_up_s`` from the start to 95 % of its final speed
-    (inf: does not run up); ``run_up_known`` is False where the inertia is an assumption, said by
+    network carries over its rated current, torques over rated. ``run_up_s`` from the start to 95 % of its
+    final speed (inf: does not run up); ``run_up_known`` is False where the inertia is an assumption, said by
     ``inertia_basis``. ``relay_*``: heating at the end of the run-up over that at which the overload relay of
     the trip class trips, cold, for the quickest and the slowest relay of the class (NaN: no relay or no
     class); 1 or more trips.
@@ -204,9 +205,9 @@ class SimulatedCase:
     ``board`` is where the voltage is judged: the board of the largest set of the island. ``time_s`` [time]
     are the instants kept; an event stands twice, just before and just after. ``u_board_pu`` of nominal,
     ``f_hz`` of the island, ``u_worst_pu`` that of ``worst_board``. ``voltage`` is in pu of the board's
-    nominal voltage, ``frequency`` in Hz. ``iso_class_*`` is the strictest performance class of ISO 8528-5 whose transient
-    figures the event keeps, 'none' where it keeps none, empty where the class has none for such an event.
-    ``collapsed`` is True where voltage or speed broke down.
+    nominal voltage, ``frequency`` in Hz. ``iso_class_*`` is the strictest performance class of ISO 8528-5
+    whose transient figures the event keeps, 'none' where it keeps none, empty where the class has none for
+    such an event. ``collapsed`` is True where voltage or speed broke down.
     """
 
     case: str
