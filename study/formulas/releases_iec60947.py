@@ -15,7 +15,8 @@ CONVENTIONAL_UP_TO_A: Final = 63.0
 # Short-circuit releases: must hold at 80 % and trip at 120 % of the setting: IEC 60947-2, clause 8.3.3.1.2,
 # from memory.
 SHORT_CIRCUIT_TOLERANCE: Final = 0.20
-# An I2t ramp of the short-time stage ends in the delay set at this multiple of Ir; common practice, no source.
+# An I2t ramp of the short-time stage ends at this multiple of Ir in the delay set; common practice, no
+# source.
 RAMP_ENDS_AT: Final = 10.0
 EXPONENT: Final = {"I2t": 2.0, "I4t": 4.0}
 

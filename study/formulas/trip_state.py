@@ -90,6 +90,7 @@ def body_trips_s(edges: Sequence[Edge], time_s: FloatArray, seen_a: FloatArray) 
     """Return when the heated body of each stage reaches its tripping temperature; inf for never.
 
     ``tau dθ/dt = M² - θ`` from p² to k², solved exactly from sample to sample: M² is an exponential there.
+    A current above the range of the stage at that moment is not its to break: it never operates.
 
     Source: heating law of one body; IEC 60255-149, from memory.
 
@@ -108,16 +109,18 @@ def body_trips_s(edges: Sequence[Edge], time_s: FloatArray, seen_a: FloatArray) 
     tau, trips_at, preload = np.array([edge.figures for edge in edges]).T
     setting = np.array([edge.setting_a for edge in edges])
     squared = (seen_a / setting[:, None]) ** 2
+    most = (np.array([edge.up_to_a for edge in edges]) / setting) ** 2
     width = np.diff(time_s, axis=1)
-    theta, found = preload**2, np.full(len(edges), np.inf)
+    theta, found, hot = preload**2, np.full(len(edges), np.inf), np.zeros(len(edges), bool)
     for k in range(width.shape[1]):
         pair, step = squared[:, k : k + 2], width[:, k]
         after = _heated(theta, pair, step, tau, np.ones_like(tau))
-        now = np.isinf(found) & (after >= trips_at**2) & (step > 0.0)
+        now = ~hot & (after >= trips_at**2) & (step > 0.0)
         if now.any():
             share = _crossing(theta[now], pair[now], step[now], tau[now], trips_at[now] ** 2)
-            found[now] = time_s[now, k] + share * step[now]
-        theta = after
+            there = pair[now, 0] * (pair[now, 1] / pair[now, 0]) ** share
+            found[now] = np.where(there <= most[now], time_s[now, k] + share * step[now], np.inf)
+        theta, hot = after, hot | now
     return found
 
 
