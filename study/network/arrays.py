@@ -104,7 +104,8 @@ def branch_arrays(plant: Plant, topology: Topology, s_base_kva: float) -> Branch
     columns = {name: np.zeros(count) for name in ("r_pu", "x_pu", "g_pu", "b_pu", "ratio", "ampere_factor")}
     load_index = {x.name: i for i, x in enumerate(plant.loads)}
     for k, branch in enumerate(topology.branches):
-        row = _branch_row(plant, topology, branch, s_base_kva)
+        load = plant.loads[load_index[branch.load]] if branch.load in load_index else None
+        row = _branch_row(plant, topology, branch, load, s_base_kva)
         for name, value in zip(columns, row, strict=True):
             columns[name][k] = value
     return BranchArrays(
@@ -116,7 +117,7 @@ def branch_arrays(plant: Plant, topology: Topology, s_base_kva: float) -> Branch
 
 
 def _branch_row(
-    plant: Plant, topology: Topology, branch: Branch, s_base_kva: float
+    plant: Plant, topology: Topology, branch: Branch, load: Load | None, s_base_kva: float
 ) -> tuple[float, float, float, float, float, float]:
     """Return r, x, g, b, ratio and ampere factor of one branch."""
     u_from, u_to = topology.nodes[branch.from_node].u_base_v, topology.nodes[branch.to_node].u_base_v
@@ -127,7 +128,6 @@ def _branch_row(
         case "three-winding transformer":
             return _winding_row(plant.three_winding[branch.index], branch.winding, u_from, u_to, s_base_kva)
         case "cable":
-            load = next((x for x in plant.loads if x.name == branch.load), None)
             return _cable_row(plant.cables[branch.index], load, u_to, z_base, plant.project.f_rated_hz)
         case "tie" | "reactor":
             item = plant.ties[branch.index] if branch.kind == "tie" else plant.reactors[branch.index]

@@ -57,6 +57,8 @@ def resolve_feeds(plant: Plant, topology: Topology) -> tuple[Feed, ...]:
     tuple of Feed
         In workbook order.
     """
+    if not plant.transfers:
+        return ()
     load_index = {x.name: i for i, x in enumerate(plant.loads)}
     boards = {b.name for b in plant.boards}
     feeds = []
@@ -93,10 +95,9 @@ def _resolve(target: str, supply: str, is_load: bool, is_board: bool, topology: 
 
 
 def _branches_between(target: str, board: str, is_load: bool, topology: Topology) -> tuple[int, ...]:
+    pair = {(target, board), (board, target)}
     if is_load:
         return tuple(
-            k
-            for k, b in enumerate(topology.branches)
-            if b.kind == "cable" and {b.from_end, b.to_end} == {target, board}
+            k for k, b in enumerate(topology.branches) if b.kind == "cable" and (b.from_end, b.to_end) in pair
         )
-    return tuple(k for k, b in enumerate(topology.branches) if set(b.boards) == {target, board})
+    return tuple(k for k, b in enumerate(topology.branches) if b.boards in pair)

@@ -2,6 +2,40 @@
 
 from __future__ import annotations
 
+import numpy as np
+from numpy.typing import NDArray
+from scipy.sparse import csr_array
+from scipy.sparse.csgraph import connected_components
+
+IntArray = NDArray[np.int64]
+
+
+def roots_of(size: int, a: IntArray, b: IntArray) -> list[int]:
+    """Return the lowest node of every node's group, all pairs being joined at once.
+
+    Parameters
+    ----------
+    size : int
+        Number of nodes.
+    a, b : ndarray of int, shape (pair,)
+        Nodes that are joined.
+
+    Returns
+    -------
+    list of int
+        Root of each node.
+
+    Examples
+    --------
+    >>> roots_of(4, np.array([3, 2]), np.array([1, 2]))
+    [0, 1, 2, 1]
+    """
+    joined = csr_array((np.ones(len(a), np.int8), (a, b)), shape=(size, size))
+    group = connected_components(joined, directed=False)[1]
+    first = np.unique(group, return_index=True)[1]
+    lowest: list[int] = first[group].tolist()
+    return lowest
+
 
 class UnionFind:
     """Groups of nodes that are joined; the root of a group is its lowest node.

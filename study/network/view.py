@@ -4,12 +4,14 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+import numpy as np
+
 from study.model.modes import Mode
 from study.model.plant import Plant
 from study.network.rings import vector_group_clashes
 from study.network.topology import Topology, build_topology
 from study.network.transfers import Feed, FeedUse, resolve_feeds
-from study.network.union_find import UnionFind
+from study.network.union_find import roots_of
 
 DEAD = -1
 
@@ -104,8 +106,10 @@ def is_closed(mode: Mode, equipment: str, topology: Topology, end: str | None = 
     bool
         True where current can flow.
     """
-    devices = topology.breakers.get(equipment, ())
-    return mode.is_on(equipment) and all(
+    if not mode.is_on(equipment):
+        return False
+    devices = topology.breakers.get(equipment)
+    return devices is None or all(
         mode.is_on(name) for name, at in devices if end is None or at is None or at == end
     )
 
@@ -121,6 +125,10 @@ class _Viewer:
         names = [*(g.name for g in plant.gensets), *(s.name for s in plant.shore_supplies)]
         names += [c.name for c in plant.converter_supplies]
         self.on = [n for n in names if is_closed(mode, n, topology)]
+        self.load_node = [topology.node_of[x.name] for x in plant.loads]
+        self.from_node = np.array([b.from_node for b in topology.branches], np.int64)
+        self.to_node = np.array([b.to_node for b in topology.branches], np.int64)
+        self.known: dict[frozenset[int], _State] = {}
         self.base = [self._branch_closed(k) for k in range(len(topology.branches))]
         self.usable = [
             closed or self.mode.state(b.name) == "standby"
@@ -130,10 +138,7 @@ class _Viewer:
     def view(self) -> View:
         other = self._choose_feeds()
         state = self._connect(other)
-        bus = UnionFind(len(self.topology.nodes))
-        for k, b in enumerate(self.topology.branches):
-            if state.closed[k] and b.without_impedance:
-                bus.join(b.from_node, b.to_node)
+        ties = [k for k, b in enumerate(self.topology.branches) if state.closed[k] and b.without_impedance]
         islands, number = self._islands(state)
         island = [number.get(r, DEAD) for r in state.root]
         loads = self.plant.loads
@@ -146,7 +151,7 @@ class _Viewer:
                 c and island[b.from_node] != DEAD
                 for c, b in zip(state.closed, self.topology.branches, strict=True)
             ),
-            bus=tuple(bus.roots()),
+            bus=tuple(self._roots(ties)),
             island=tuple(island),
             islands=islands,
             sources=tuple(s for s in state.sources if island[self.topology.node_of[s]] != DEAD),
@@ -211,9 +216,19 @@ class _Viewer:
         node = feed.node if feed.load is None else state.load_node[feed.load]
         return state.root[node] in state.live
 
+    def _roots(self, branches: list[int]) -> list[int]:
+        """Return the lowest node that each node is joined to by some branches."""
+        return roots_of(len(self.topology.nodes), self.from_node[branches], self.to_node[branches])
+
     def _connect(self, other: set[int]) -> _State:
+        chosen = frozenset(other)
+        if chosen not in self.known:
+            self.known[chosen] = self._connected(chosen)
+        return self.known[chosen]
+
+    def _connected(self, other: frozenset[int]) -> _State:
         closed, sources = list(self.base), list(self.on)
-        load_node = [self.topology.node_of[x.name] for x in self.plant.loads]
+        load_node = list(self.load_node)
         for i, feed in enumerate(self.feeds):
             used, left = (feed.other, feed.normal) if i in other else (feed.normal, feed.other)
             for k in left.branches:
@@ -223,11 +238,7 @@ class _Viewer:
                 closed[k] = self.usable[k] if i in other else self.base[k]
             if feed.load is not None and used.node is not None:
                 load_node[feed.load] = used.node
-        group = UnionFind(len(self.topology.nodes))
-        for k, b in enumerate(self.topology.branches):
-            if closed[k]:
-                group.join(b.from_node, b.to_node)
-        root = group.roots()
+        root = self._roots([k for k, is_on in enumerate(closed) if is_on])
         boards = len(self.plant.boards)
         with_board = set(root[:boards])
         live = {root[self.topology.node_of[s]] for s in sources if s in self.forming} & with_board
