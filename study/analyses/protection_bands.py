@@ -7,7 +7,7 @@ from dataclasses import replace
 from typing import Final
 
 from study.formulas.curves_iec60255 import RESET_S
-from study.formulas.fuse_bands_iec60269 import Points, cleared_points, curve_edge, fuse_edges
+from study.formulas.fuse_bands_iec60269 import Points, curve_edge, fuse_edges
 from study.formulas.relays_iec60255 import DEFINITE, Reset, relay_edges
 from study.formulas.releases_iec60947 import instantaneous_edges, long_time_edges, short_time_edges
 from study.formulas.thermal_iec60947_4 import CONTACTOR_BREAKS, overload_relay_edges
@@ -146,8 +146,7 @@ def _curve_band(device: Device, curve: Sequence[CurvePoint]) -> TripBand:
         earliest = (replace(edge, from_a=begins, sees="peak" if peak else "heating"),)
     latest: tuple[Edge, ...] = ()
     if late:
-        cleared = cleared_points(late) if fuse else late
-        latest = (curve_edge(cleared, stage, early=False, beyond=2.0 if fuse else 0.0),)
+        latest = (curve_edge(late, stage, early=False, beyond=2.0 if fuse else 0.0),)
     return TripBand(
         earliest=earliest,
         latest=latest,

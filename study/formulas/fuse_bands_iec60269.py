@@ -14,11 +14,6 @@ from study.formulas.trip_law import Edge
 NO_FUSING_MULTIPLE: Final = 1.25
 # aM: does not melt sooner than these times at these multiples: IEC 60269-2, gates of aM, from memory.
 AM_EARLIEST: Final = ((4.0, 60.0), (8.0, 0.5), (10.0, 0.2))
-# An arc ends at the next zero of the current where the fuse does not limit it; at the I2t of 0.01 s the
-# greatest operating I2t stays within the corridor: discrimination limits of IEC 60269-2, from memory.
-ARC_S: Final = 0.01
-LIMITS_BELOW_S: Final = 0.1
-
 Points = tuple[tuple[float, float], ...]
 
 
@@ -63,33 +58,14 @@ def earliest_melting_points(rated_a: float, fuse_class: str) -> Points:
     return (first, (row["imin_10s_a"], 10.0), (row["imin_01s_a"], 0.1), (last_a, 0.01))
 
 
-def cleared_points(melting: Points) -> Points:
-    """Return the latest clearing: melting and half a cycle of arc where the fuse does not limit the current.
-
-    Source: common practice, no source; see `ARC_S`.
-
-    Parameters
-    ----------
-    melting : tuple of (float, float)
-        Current and latest melting time. [A], [s]
-
-    Returns
-    -------
-    tuple of (float, float)
-        Current and time. [A], [s]
-
-    Examples
-    --------
-    >>> cleared_points(((1450.0, 0.1), (2933.0, 0.01)))
-    ((1450.0, 0.11), (2933.0, 0.01))
-    """
-    return tuple((amps, time_s + (ARC_S if time_s >= LIMITS_BELOW_S else 0.0)) for amps, time_s in melting)
-
-
 def fuse_edges(rated_a: float, fuse_class: str) -> tuple[Edge, Edge]:
     """Return the edges of a standard fuse-link from its gates.
 
-    Source: IEC 60269-1 and -2, from memory.
+    The time of the arc is left out: from 0.1 s up it is negligible beside the melting, and below that the
+    greatest operating I2t stays within the corridor of the standard.
+
+    Source: IEC 60269-1 (gates, arcing from 0.1 s up) and IEC 60269-2 (operating I2t for discrimination); from
+    memory.
 
     Parameters
     ----------
@@ -112,10 +88,10 @@ def fuse_edges(rated_a: float, fuse_class: str) -> tuple[Edge, Edge]:
     --------
     >>> early, late = fuse_edges(100.0, "gG")
     >>> round(float(early.time_s(820.0)), 3), round(float(late.time_s(1450.0)), 3)
-    (0.1, 0.11)
+    (0.1, 0.1)
     """
     early = earliest_melting_points(rated_a, fuse_class)
-    late = cleared_points(latest_melting_points(rated_a, fuse_class))
+    late = latest_melting_points(rated_a, fuse_class)
     return (
         curve_edge(early, "fuse", early=True, beyond=2.0),
         curve_edge(late, "fuse", early=False, beyond=2.0),
