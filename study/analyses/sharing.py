@@ -9,11 +9,11 @@ import numpy as np
 
 from study.analyses.sharing_cases import Parallel, maladjusted_cases
 from study.analyses.sharing_curves import AsSet, no_curve, sharing_curve, solve_as_set
-from study.analyses.sharing_findings import curve_findings, group_findings
-from study.analyses.sharing_group import Group, groups_of, kvar_off, solve_scaled, tolerances
+from study.analyses.sharing_findings import curve_findings, group_findings, own_load_findings
+from study.analyses.sharing_group import Group, groups_of, kvar_off, tolerances
 from study.analyses.sharing_margins import adjusting_margins
 from study.analyses.sharing_options import SharingOptions
-from study.analyses.sharing_trim import trimmed_settings
+from study.analyses.sharing_trim import set_trims, trimmed_settings, trimmed_solution
 from study.formulas.load_compensation import terminal_voltage_phasor, terminal_voltage_reactive_current
 from study.network.network import ModeNetwork
 from study.network.sources import Law, Source
@@ -55,7 +55,7 @@ def sharing_study(
                 not_studied.append(NotStudied(mode=at.mode.name, sets=group.names, reason=as_set))
                 continue
             islands.append(_island(group, as_set, options))
-            here = Parallel(group=group, own=as_set.own)
+            here = Parallel(group=group, own=as_set.own, result=islands[-1])
             parallel |= {(at.mode.name, s.name): here for s in (*group.sources, *group.beside)}
     return SharingResult(
         islands=tuple(islands),
@@ -69,14 +69,16 @@ def sharing_study(
 def _island(group: Group, as_set: AsSet, options: SharingOptions) -> IslandSharing:
     own, places = as_set.own, group.places
     p, q = own.source_p_kw[0, places], own.source_q_kvar[0, places]
+    p_near, q_near = _near_own_load(group, as_set)
     settings = trimmed_settings(group, as_set)
-    trimmed = None if settings is None else solve_scaled(group, as_set.scale, settings)
+    trims = set_trims(group, settings)
+    trimmed = None if settings is None else trimmed_solution(group, as_set, settings)
     p_tolerance, q_tolerance = tolerances(group, options)
     return IslandSharing(
         mode=group.at.mode.name,
         island=group.island,
         sets=group.names,
-        cos_phi=float(p.sum() / np.hypot(p.sum(), q.sum())),
+        cos_phi=float(p_near.sum() / np.hypot(p_near.sum(), q_near.sum())),
         p_rated_kw=read_only(group.p_rated_kw),
         q_rated_kvar=read_only(group.q_rated_kvar),
         p_tolerance_kw=read_only(p_tolerance),
@@ -90,20 +92,34 @@ def _island(group: Group, as_set: AsSet, options: SharingOptions) -> IslandShari
         trimmed=no_curve(group, as_set.load_pu)
         if trimmed is None
         else sharing_curve(group, as_set.load_pu, trimmed, trimmed=True),
-        lines=tuple(_lines(group, p, q, own.source_u_pu[0, places])),
-        margins=adjusting_margins(group, as_set, options),
+        lines=tuple(_lines(group, p_near, q, own.source_u_pu[0, places])),
+        margins=adjusting_margins(group, as_set, trims, options),
         findings=(
+            *own_load_findings(group, own),
             *group_findings(group),
             *curve_findings(group, as_set.load_pu, as_set.solution, "as set"),
             *curve_findings(group, as_set.load_pu, trimmed, "trimmed at 75 % load"),
         ),
+        trims=trims,
         apart_kw=tuple(n for n, takes in zip(group.names, group.shares_kw, strict=True) if not takes),
         apart_kvar=tuple(n for n, takes in zip(group.names, group.shares_kvar, strict=True) if not takes),
     )
 
 
+def _near_own_load(group: Group, as_set: AsSet) -> tuple[FloatArray, FloatArray]:
+    """Return kW and kvar of the sets at the mode's own load, or at the highest of the range with a solution.
+
+    NaN where no load has one.
+    """
+    solved = np.flatnonzero(as_set.solution.solved[: len(as_set.load_pu)])
+    solution, row = (
+        (as_set.own, 0) if as_set.own.solved[0] or not solved.size else (as_set.solution, solved[-1])
+    )
+    return solution.source_p_kw[row, group.places], solution.source_q_kvar[row, group.places]
+
+
 def _lines(group: Group, p_kw: FloatArray, q_kvar: FloatArray, u_pu: FloatArray) -> Iterator[SettingLine]:
-    """Yield each set's voltage over its kvar, its kW being those of the operating point."""
+    """Yield each set's voltage over its kvar at given kW, and the operating point on it."""
     for n, source in enumerate(group.sources):
         q = np.linspace(0.0, _LINE_TO, _LINE_POINTS) * source.q_rated_kvar
         yield SettingLine(

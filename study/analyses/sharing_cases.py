@@ -15,15 +15,16 @@ from study.model.plant import Plant
 from study.network.batch import BatchSolution
 from study.network.solution import limit_words
 from study.results.arrays import FloatArray, read_only
-from study.results.sharing import MaladjustedCase, NotStudied
+from study.results.sharing import LEAST_TRIM_PU, IslandSharing, MaladjustedCase, NotStudied
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Parallel:
-    """Sets in parallel with the mode's solution as set, its first row."""
+    """Sets in parallel with the mode's solution as set, its first row, and what was found of them."""
 
     group: Group
     own: BatchSolution
+    result: IslandSharing
 
 
 def maladjusted_cases(
@@ -58,13 +59,16 @@ def maladjusted_cases(
         if event.kind != "maladjustment":
             continue
         known = groups.get((event.mode, event.equipment))
-        reason = _not_in_parallel(event, not_studied) if known is None else why_not(known.group.at, event)
+        if known is None:
+            reason = _not_in_parallel(event, not_studied)
+        else:
+            reason = why_not(known.group.at, event) or known.own.reason[0]
         if known is None or reason:
             found.append(_unsolved(plant, event, reason, known))
             continue
         earlier = rows.setdefault((event.case, event.mode), [])
         earlier.append(event)
-        found.append(maladjusted_case(known.group, tuple(earlier), known.own, options))
+        found.append(maladjusted_case(known, tuple(earlier), options))
     return tuple(found)
 
 
@@ -109,19 +113,15 @@ def _unsolved(plant: Plant, event: Event, reason: str, known: Parallel | None) -
     )
 
 
-def maladjusted_case(
-    group: Group, events: tuple[Event, ...], before: BatchSolution, options: SharingOptions
-) -> MaladjustedCase:
+def maladjusted_case(known: Parallel, events: tuple[Event, ...], options: SharingOptions) -> MaladjustedCase:
     """Solve the mode with the settings of one case, and compare with the settings of the workbook.
 
     Parameters
     ----------
-    group : Group
+    known : Parallel
         Sets of the island in which the last event's set runs.
     events : tuple of Event
         Rows of the case up to the one that is reported, which is the last; all their settings apply.
-    before : BatchSolution
-        The mode as set.
     options : SharingOptions
         Tolerances.
 
@@ -131,6 +131,7 @@ def maladjusted_case(
         The case; ``solved`` is False where the plant has no solution so adjusted.
     """
     event = events[-1]
+    group, before = known.group, known.own
     changed = group_of(
         changed_network(group.at, events),
         group.island,
@@ -180,7 +181,7 @@ def maladjusted_case(
         f"{_opening(case, len(events))}, {_who_takes_what(case)}",
         *_overloads(case, group.p_rated_kw),
         *(f"{name} is held at its {word} limit." for name, word in held),
-        _cure(case, group),
+        _cure(case, known.result),
     ]
     return replace(case, sentence=" ".join(parts))
 
@@ -188,9 +189,15 @@ def maladjusted_case(
 def _opening(case: MaladjustedCase, rows: int) -> str:
     before = ", after the rows of this case before it," if rows > 1 else ""
     return (
-        f"With the {case.setting} of {case.genset} at {100.0 * case.value_pu:.1f} % instead of "
-        f"{100.0 * case.was_pu:.1f} %{before}"
+        f"With the {case.setting} of {case.genset} at {_percent(case.value_pu)} % instead of "
+        f"{_percent(case.was_pu)} %{before}"
     ).rstrip(",")
+
+
+def _percent(value_pu: float) -> str:
+    """Return a setting in percent, with a second decimal only where it has one."""
+    text = f"{100.0 * value_pu:.2f}"
+    return text[:-1] if text.endswith("0") else text
 
 
 def _of_voltage(case: MaladjustedCase) -> bool:
@@ -236,11 +243,23 @@ def _overloads(case: MaladjustedCase, p_rated_kw: FloatArray) -> list[str]:
     return out + [f"{name} is driven as a motor." for name in driven]
 
 
-def _cure(case: MaladjustedCase, group: Group) -> str:
-    voltage = _of_voltage(case)
-    trim = f"trim the {'no-load voltages' if voltage else 'no-load frequencies'} at 75 % load."
-    before = kvar_off(group, case.q_before_kvar) if voltage else kw_off(group, case.p_before_kw)
-    tolerance = case.q_tolerance_kvar if voltage else case.p_tolerance_kw
-    if (np.abs(before) > tolerance).any():
-        return f"As the workbook sets them the sets are out of tolerance too: {trim}"
-    return f"Set the {case.setting} of {case.genset} back to {100.0 * case.was_pu:.1f} %, then {trim}"
+def _cure(case: MaladjustedCase, result: IslandSharing) -> str:
+    """Return what to adjust: back to the workbook's setting, unless that is out of tolerance itself."""
+    kvar = _of_voltage(case)
+    back = f"the {case.setting} of {case.genset} back to {_percent(case.was_pu)} %"
+    if not result.out_of_tolerance(result.as_set, kvar=kvar):
+        return f"Set {back}."
+    droop = "droop" in case.setting
+    steps = [back] if droop else []
+    setting = "no-load voltage" if kvar else "no-load frequency"
+    for trim in result.trims:
+        now, then = (trim.u_as_set_pu, trim.u_trimmed_pu) if kvar else (trim.f_as_set_pu, trim.f_trimmed_pu)
+        if abs(then - now) >= LEAST_TRIM_PU:
+            steps.append(f"the {setting} of {trim.genset} to {_percent(then)} %")
+        elif trim.genset == case.genset and not droop:
+            steps.append(back)
+    too = "As the workbook sets them the sets are out of tolerance too"
+    if result.out_of_tolerance(result.trimmed, kvar=kvar) or not steps:
+        word = "voltage" if kvar else "speed"
+        return f"{too}, trimmed at 75 % load as well. Set equal {word} droops, then trim the sets."
+    return f"{too}. Set {' and '.join(steps)}."

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from types import MappingProxyType
@@ -12,6 +13,7 @@ from study.model.plant import Plant
 from study.model.sources import ConverterSupply, Genset
 from study.network.network import ModeNetwork, mode_network
 from study.network.sources import Law, Source, Speed
+from study.results.sharing import SetTrim
 
 # unit word of an event -> the setting
 SETTINGS: Final[Mapping[str | None, str]] = MappingProxyType(
@@ -61,11 +63,36 @@ def changed_network(at: ModeNetwork, events: Sequence[Event]) -> ModeNetwork:
     return mode_network(replace(network, plant=plant), mode)
 
 
+def trimmed_network(at: ModeNetwork, trims: Sequence[SetTrim]) -> ModeNetwork:
+    """Return a mode's network with the trimmed set-points of its sets, as the sheet Set-points would have it.
+
+    Parameters
+    ----------
+    at : ModeNetwork
+        As it is.
+    trims : sequence of SetTrim
+        Sets in parallel; a set-point that was not trimmed stays as it is.
+
+    Returns
+    -------
+    ModeNetwork
+        With other sources.
+    """
+    mode = at.mode
+    points = dict(mode.set_points)
+    for trim in trims:
+        point = points.get(trim.genset) or _no_set_point(trim.genset, mode.name)
+        found = {"no_load_voltage_pu": trim.u_trimmed_pu, "no_load_frequency_pu": trim.f_trimmed_pu}
+        given = {name: value for name, value in found.items() if not math.isnan(value)}
+        points[trim.genset] = replace(point, **given)  # type: ignore[arg-type]
+    return mode_network(at.network, replace(mode, set_points=points))
+
+
 def _with_setting(plant: Plant, mode: Mode, event: Event) -> tuple[Plant, Mode]:
     """Return the plant with another droop, or the mode with another set-point."""
     setting, value = SETTINGS[event.unit], float(event.size or 0.0) / 100.0
     if setting in _SET_POINT:
-        point = mode.set_points.get(event.equipment) or _no_set_point(event)
+        point = mode.set_points.get(event.equipment) or _no_set_point(event.equipment, event.mode)
         point = replace(point, **{_SET_POINT[setting]: value})  # type: ignore[arg-type]
         return plant, replace(mode, set_points={**mode.set_points, event.equipment: point})
     part = _PART.get(setting, "governor")
@@ -150,10 +177,10 @@ def _converter_field(setting: str) -> str:
     return setting.replace(" ", "_") + "_pu"
 
 
-def _no_set_point(event: Event) -> SetPoint:
+def _no_set_point(equipment: str, mode: str) -> SetPoint:
     return SetPoint(
-        equipment=event.equipment,
-        mode=event.mode,
+        equipment=equipment,
+        mode=mode,
         cell="",
         no_load_voltage_pu=None,
         no_load_frequency_pu=None,

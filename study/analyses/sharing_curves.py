@@ -43,8 +43,9 @@ class Nudge:
 class AsSet:
     """The sets as the workbook sets them.
 
-    The first row of ``own`` is the mode's own load. ``solution`` has a row for each load in ``load_pu``
-    [load], at the factors ``scale`` [load], and behind them one for each of the ``nudges``.
+    The first row of ``own`` is the mode's own load, which may have no solution. ``solution`` has a row for
+    each load in ``load_pu`` [load], at the factors ``scale`` [load], and behind them one for each of the
+    ``nudges``.
     """
 
     own: BatchSolution
@@ -65,14 +66,18 @@ def solve_as_set(group: Group) -> AsSet | str:
     Returns
     -------
     AsSet or str
-        A sentence where the mode has no solution at its own load, or its load cannot be scaled.
+        A sentence where the mode has no solution, or its load cannot be scaled.
     """
     if group.p_kw[group.loads].sum() <= 0.0:
         return "no consumer that could be scaled is in use."
-    own = solve_scaled(group, np.append(1.0, _ends(group)))
-    if not own.solved[0]:
+    factors = np.append(1.0, _ends(group))
+    own = solve_scaled(group, factors)
+    if not own.solved.any():
         return own.reason[0]
-    load_pu, scale = _factors(group, own)
+    if not own.solved[0]:
+        factors = np.append(factors, factors[1:].mean())
+        own = solve_scaled(group, factors)
+    load_pu, scale = _factors(group, own, factors)
     nudges = tuple(_nudges(group, len(scale)))
     v_ref, f_ref = (
         np.tile([getattr(s, name) for s in group.at.sources], (len(scale) + len(nudges), 1))
@@ -114,14 +119,15 @@ def _ends(group: Group) -> FloatArray:
     return np.asarray(np.maximum(wanted / group.p_kw[group.loads].sum(), 0.0))
 
 
-def _factors(group: Group, own: BatchSolution) -> tuple[FloatArray, FloatArray]:
+def _factors(group: Group, own: BatchSolution, factors: FloatArray) -> tuple[FloatArray, FloatArray]:
     """Return the loads that can be reached, and the factors on the consumers that give them.
 
     The kW of the sets against the factor is a smooth line, bent only by losses: the parabola through the own
-    load and the two near the ends of the range gives the factors.
+    load and the two near the ends of the range gives the factors; the middle of the range stands in for an
+    own load without a solution.
     """
     rated = group.p_rated_kw.sum()
-    k = np.append(1.0, _ends(group))[own.solved]
+    k = factors[own.solved]
     p = own.source_p_kw[own.solved][:, group.places].sum(axis=1)
     line = _through(k, p, float(group.p_kw[group.loads].sum()))
     least = float(line(0.0)) / rated

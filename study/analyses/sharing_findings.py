@@ -72,6 +72,29 @@ def _not_scaled(group: Group) -> list[str]:
     return motors + filters
 
 
+def own_load_findings(group: Group, own: BatchSolution) -> Iterator[str]:
+    """Yield why the sets have no operating point at the mode's own load, where they have none.
+
+    Parameters
+    ----------
+    group : Group
+        The sets.
+    own : BatchSolution
+        Its first row is the mode's own load.
+
+    Yields
+    ------
+    str
+        A sentence.
+    """
+    if not own.solved[0]:
+        yield (
+            f"{_listed(group.names)} have no operating point at the mode's own load: {own.reason[0]} "
+            "Sharing is judged over the range of load that the sets can carry, at the power factor of the "
+            "mode's load."
+        )
+
+
 def curve_findings(
     group: Group, load_pu: FloatArray, solution: BatchSolution | None, adjusted: str
 ) -> Iterator[str]:

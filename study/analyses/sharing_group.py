@@ -75,7 +75,9 @@ def groups_of(at: ModeNetwork, p_kw: FloatArray, q_kvar: FloatArray) -> list[Gro
         on_shore = any(at.sources[k].speed == Speed.SHORE for k in here)
         if len(sets) > 1 and not on_shore:
             loads = (load_island == n) & (at.load_bus >= 0)
-            found.append(group_of(at, n, sets, loads, p_kw=p_kw, q_kvar=q_kvar))
+            # Islands have nothing to do with each other: an overload elsewhere must not hide this one.
+            p, q = np.where(loads, p_kw, 0.0), np.where(loads, q_kvar, 0.0)
+            found.append(group_of(at, n, sets, loads, p_kw=p, q_kvar=q))
     return found
 
 
@@ -101,7 +103,7 @@ def group_of(
     loads : ndarray of bool, shape (load,)
         Consumers of the island.
     p_kw, q_kvar : ndarray, shape (load,)
-        Power of all consumers.
+        Power of the consumers; 0 outside the island.
 
     Returns
     -------

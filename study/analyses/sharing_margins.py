@@ -12,12 +12,13 @@ then on the safe side.
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
-from study.analyses.sharing_curves import NUDGE, AsSet, Nudge
-from study.analyses.sharing_group import Group
+from study.analyses.sharing_change import trimmed_network
+from study.analyses.sharing_curves import NUDGE, AsSet, Nudge, solve_as_set
+from study.analyses.sharing_group import Group, group_of
 from study.analyses.sharing_laws import (
     Held,
     droop_holding,
@@ -31,7 +32,7 @@ from study.network.batch import BatchSolution
 from study.network.solution import limit_words
 from study.network.sources import Source, Speed
 from study.results.arrays import FloatArray, IntArray
-from study.results.sharing import AdjustingMargin
+from study.results.sharing import AdjustingMargin, SetTrim
 
 # how far each setting is followed, in pu of rated voltage or frequency
 RANGES = {
@@ -47,10 +48,13 @@ _SETTINGS = {
 }
 
 
-def adjusting_margins(group: Group, as_set: AsSet, options: SharingOptions) -> tuple[AdjustingMargin, ...]:
+def adjusting_margins(
+    group: Group, as_set: AsSet, trims: tuple[SetTrim, ...], options: SharingOptions
+) -> tuple[AdjustingMargin, ...]:
     """Return the margins of every voltage and speed setting that acts.
 
     They are taken at both ends of the range of load, where sharing is judged, and at the mode's own load.
+    Where something is broken as set and nothing is as trimmed, they are about the trimmed set-points.
 
     Parameters
     ----------
@@ -58,6 +62,8 @@ def adjusting_margins(group: Group, as_set: AsSet, options: SharingOptions) -> t
         The sets.
     as_set : AsSet
         The network's answer as set.
+    trims : tuple of SetTrim
+        Set-points as trimmed.
     options : SharingOptions
         Tolerances, voltage and frequency band.
 
@@ -67,9 +73,31 @@ def adjusting_margins(group: Group, as_set: AsSet, options: SharingOptions) -> t
         By setting, then by set. A set with controlled kvar, fixed field or set power has no margin there, nor
         has any voltage setting beside a reversed droop circuit.
     """
+    margins, broken = _margins(group, as_set, options)
+    if not broken or not any(t.u_trimmed_pu > 0.0 or t.f_trimmed_pu > 0.0 for t in trims):
+        return margins
+    trimmed = group_of(
+        trimmed_network(group.at, trims),
+        group.island,
+        group.places.tolist(),
+        group.loads,
+        p_kw=group.p_kw,
+        q_kvar=group.q_kvar,
+    )
+    solved = solve_as_set(trimmed)
+    if isinstance(solved, str):
+        return margins
+    about, still_broken = _margins(trimmed, solved, options)
+    return margins if still_broken else tuple(replace(m, trimmed=True) for m in about)
+
+
+def _margins(group: Group, as_set: AsSet, options: SharingOptions) -> tuple[tuple[AdjustingMargin, ...], str]:
+    """Return the margins about the sets as they are, and what is broken as they are."""
     boards = _Boards.of(group)
     loads = _loads(group, as_set, options, boards)
-    broken = next((load.broken for load in loads if load.broken), "")
+    broken = next((f"{load.broken}, broken as set" for load in loads if load.broken), "")
+    if not as_set.own.solved[0]:
+        broken = "no operating point at the mode's own load"
     lines = _Lines.of(group, as_set, boards)
     found: dict[str, list[AdjustingMargin]] = {name: [] for names in _SETTINGS.values() for name in names}
     ends = [end for load in loads for end in _ends(load, lines)] if lines.sets else []
@@ -83,7 +111,7 @@ def adjusting_margins(group: Group, as_set: AsSet, options: SharingOptions) -> t
                     if not broken and np.isfinite(end.steps[line])
                 ]
                 found[setting].append(_margin(group.names[n], setting, own, values, broken))
-    return tuple(margin for margins in found.values() for margin in margins)
+    return tuple(margin for margins in found.values() for margin in margins), broken
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -177,7 +205,8 @@ def _held(group: Group, boards: _Boards, solution: BatchSolution, row: int | lis
 def _loads(group: Group, as_set: AsSet, options: SharingOptions, boards: _Boards) -> list[LoadLimits]:
     """Return the ends of the range that have a solution, and the mode's own load."""
     ends = [k for k in (0, len(as_set.scale) - 1) if as_set.solution.solved[k]]
-    rows = [*((as_set.solution, k, False) for k in ends), (as_set.own, 0, True)]
+    rows = [(as_set.solution, k, False) for k in ends]
+    rows += [(as_set.own, 0, True)] if as_set.own.solved[0] else []
     loads = []
     for solution, row, own in rows:
         held, words = _held(group, boards, solution, row), limit_words(solution, row)
@@ -220,7 +249,7 @@ def _margin(
     """Return the nearest values either way, within the range that is followed."""
     none = (float("nan"), "")
     if broken:
-        low = high = (own, f"{broken}, broken as set")
+        low = high = (own, broken)
     else:
         least = max(own - RANGES[setting], LEAST_DROOP_PU if "droop" in setting else 0.0)
         low = max((v for v in values if least <= v[0] <= own), default=none)
@@ -228,7 +257,7 @@ def _margin(
     return AdjustingMargin(
         genset=name,
         setting=setting,
-        as_set_pu=own,
+        set_pu=own,
         low_pu=low[0],
         low_breaks=low[1],
         high_pu=high[0],

@@ -11,19 +11,24 @@ import numpy as np
 from study.checks.limits import Limits
 from study.checks.verdict import Verdict, make_verdict
 from study.model.plant import Plant
-from study.model.sources import Genset
 from study.results.arrays import FloatArray
 from study.results.regulation import RegulationResult
-from study.results.sharing import IslandSharing, NotStudied, SharingCurve, SharingResult
+from study.results.sharing import LEAST_TRIM_PU, IslandSharing, NotStudied, SharingCurve, SharingResult
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class _Power:
-    """kW or kvar: where its results stand, what limits it, what governs it."""
+    """kW or kvar: where its results stand, what limits it, what governs it.
+
+    ``trims`` are the set-points as set and as trimmed, ``heading`` that of the droop; ``trimmed_holds`` is
+    whether every set keeps its tolerance as trimmed.
+    """
 
     unit: str
     by_rule: tuple[str, str]
     set_point: str
+    trims: dict[str, tuple[float, float]]
+    trimmed_holds: bool
     heading: str
     apart: tuple[str, ...]
     deviation: FloatArray
@@ -121,7 +126,9 @@ def _kw(island: IslandSharing, curve: SharingCurve, limits: Limits) -> _Power:
     return _Power(
         unit="kW",
         by_rule=("kw_sharing_largest", "kw_sharing_own"),
-        set_point="no_load_frequency_pu",
+        set_point="No-load frequency",
+        trims={t.genset: (t.f_as_set_pu, t.f_trimmed_pu) for t in island.trims},
+        trimmed_holds=not island.out_of_tolerance(island.trimmed, kvar=False),
         heading="Speed droop",
         apart=island.apart_kw,
         deviation=curve.dp_kw,
@@ -136,8 +143,10 @@ def _kvar(island: IslandSharing, curve: SharingCurve, limits: Limits) -> _Power:
     return _Power(
         unit="kvar",
         by_rule=("kvar_sharing_largest", "kvar_sharing_smallest"),
-        set_point="no_load_voltage_pu",
-        heading="No-load voltage",
+        set_point="No-load voltage",
+        trims={t.genset: (t.u_as_set_pu, t.u_trimmed_pu) for t in island.trims},
+        trimmed_holds=not island.out_of_tolerance(island.trimmed, kvar=True),
+        heading="Voltage droop",
         apart=island.apart_kvar,
         deviation=curve.dq_kvar,
         tolerance=island.q_tolerance_kvar,
@@ -151,6 +160,7 @@ def _judge(
     sharing = [i for i, name in enumerate(island.sets) if name not in power.apart]
     if len(sharing) < 2:
         return
+    remedy, wrong = _trimming(plant, island, power)
     for i in sharing:
         name, tolerance = island.sets[i], float(power.tolerance[i])
         worst, missing = _worst(power.deviation[:, i], curve)
@@ -166,8 +176,8 @@ def _judge(
             unit=power.unit,
             close_margin=limits.fraction("close_margin"),
             basis=limits.basis(rule) if known else missing,
-            cell=_cell(plant, island.mode, name, power),
-            remedy=_remedy(plant.genset(name), power.unit),
+            cell=_cell(plant, island.mode, wrong or name, power, trimmed=bool(wrong)),
+            remedy=remedy or _equal_droops(plant, island, power),
         )
 
 
@@ -181,19 +191,36 @@ def _worst(deviation: FloatArray, curve: SharingCurve) -> tuple[float, str]:
     return worst, f"no operating point at {loads} % load"
 
 
-def _cell(plant: Plant, mode: str, genset: str, power: _Power) -> str:
-    """Return the mode's own set-point where it has one, else the set's setting."""
-    point = plant.mode(mode).set_points.get(genset)
-    if point is not None and getattr(point, power.set_point) is not None:
-        return point.cell
-    return plant.cell_of(genset, power.heading)
+def _cell(plant: Plant, mode: str, genset: str, power: _Power, *, trimmed: bool) -> str:
+    """Return the cell of the set-point to be trimmed, or of the droop."""
+    return (
+        plant.setting_cell(genset, mode, power.set_point) if trimmed else plant.cell_of(genset, power.heading)
+    )
 
 
-def _remedy(genset: Genset, unit: str) -> str:
-    if unit == "kW":
+def _trimming(plant: Plant, island: IslandSharing, power: _Power) -> tuple[str, str]:
+    """Return which set-points to change and from what to what, and the set that is furthest off.
+
+    Empty where trimming alone does not bring the sets into tolerance.
+    """
+    changes = {n: then - now for n, (now, then) in power.trims.items() if abs(then - now) >= LEAST_TRIM_PU}
+    if not changes or not power.trimmed_holds:
+        return "", ""
+    what = power.set_point.lower()
+    steps = []
+    for name in changes:
+        now, then = (f"{100.0 * value:.2f}" for value in power.trims[name])
+        cell = _cell(plant, island.mode, name, power, trimmed=True)
+        steps.append(f"the {what} of {name} from {now} to {then} %" + (f" ({cell})" if cell else ""))
+    return f"Set {' and '.join(steps)}.", max(changes, key=lambda n: abs(changes[n]))
+
+
+def _equal_droops(plant: Plant, island: IslandSharing, power: _Power) -> str:
+    turned = [n for n in island.sets if plant.genset(n).regulator.reversed_polarity]
+    if power.unit == "kvar" and turned:
+        return f"Turn the current transformer of the droop circuit of {' and '.join(turned)} round."
+    if power.unit == "kW":
         return "Set equal speed droops, then trim the no-load frequencies at 75 % load."
-    if genset.regulator.reversed_polarity:
-        return "Turn the current transformer of its droop circuit round."
     return "Set equal voltage droops, then trim the no-load voltages at 75 % load."
 
 

@@ -119,6 +119,30 @@ class Plant:
         """Return the address of a cell as ``Sheet!A1``, or an empty text where there is none."""
         return self.cells.get((equipment, heading), "")
 
+    def setting_cell(self, genset: str, mode: str, heading: str) -> str:
+        """Return the cell of a set-point in force in a mode: the mode's own trim, else the set's own cell.
+
+        Parameters
+        ----------
+        genset, mode : str
+            Names.
+        heading : str
+            Of the setting on the sheet Gensets.
+
+        Returns
+        -------
+        str
+            ``Sheet!A1``, or an empty text.
+        """
+        point = self.mode(mode).set_points.get(genset)
+        trimmed = {
+            "No-load voltage": point and point.no_load_voltage_pu,
+            "No-load frequency": point and point.no_load_frequency_pu,
+        }.get(heading)
+        if point is None or trimmed is None:
+            return self.cell_of(genset, heading)
+        return self.cell_of(f"{genset} in {mode}", heading) or point.cell
+
     def board(self, name: str) -> Board:
         """Return the board called `name` (exact); raises KeyError where there is none."""
         return _by_name(self.boards, name)

@@ -42,6 +42,7 @@ def sharing_tables(outcome: StudyOutcome) -> tuple[Table, ...]:
     return (
         operating_table(outcome.sharing),
         extremes_table(outcome),
+        trims_table(outcome),
         margins_table(outcome),
         cases_table(outcome.sharing),
         curves_table(outcome.sharing),
@@ -202,6 +203,49 @@ def _worked(result: SharingResult) -> Worked | None:
     return None
 
 
+def trims_table(outcome: StudyOutcome) -> Table:
+    """Return the set-points of each set as set, and as trimmed at 75 % load."""
+    columns = [
+        text_column("mode", "Mode"),
+        text_column("island", "Sets in parallel"),
+        text_column("genset", "Set"),
+        percent_column("u_as_set_percent", "No-load voltage as set", most_decimals=2, missing="none"),
+        percent_column("u_trimmed_percent", "No-load voltage as trimmed", most_decimals=2, missing="none"),
+        text_column("u_input_cell", "Cell of the voltage", kind="cell"),
+        percent_column("f_as_set_percent", "No-load frequency as set", most_decimals=2, missing="none"),
+        percent_column("f_trimmed_percent", "No-load frequency as trimmed", most_decimals=2, missing="none"),
+        text_column("f_input_cell", "Cell of the frequency", kind="cell"),
+    ]
+    rows = [
+        (
+            island.mode,
+            island_label(outcome.sharing, island),
+            trim.genset,
+            percent(trim.u_as_set_pu),
+            percent(trim.u_trimmed_pu),
+            outcome.plant.setting_cell(trim.genset, island.mode, "No-load voltage"),
+            percent(trim.f_as_set_pu),
+            percent(trim.f_trimmed_pu),
+            outcome.plant.setting_cell(trim.genset, island.mode, "No-load frequency"),
+        )
+        for island in outcome.sharing.islands
+        for trim in island.trims
+    ]
+    return make_table(
+        key="sharing_trims",
+        title="Set-points that share in proportion at 75 % load",
+        sheet=_SHEET,
+        columns=columns,
+        rows=rows,
+        notes=(
+            "In % of rated voltage and rated frequency, at no load; droops stay as set. One set is left "
+            "alone: the one that leaves most others alone too and brings the board nearest to rated voltage or "
+            "frequency. 'None': no such set-point is in use, or the sets cannot be trimmed.",
+        ),
+        group_by=("mode",),
+    )
+
+
 def margins_table(outcome: StudyOutcome) -> Table:
     """Return how far each setting may be off before something is broken."""
     headings = {
@@ -214,7 +258,8 @@ def margins_table(outcome: StudyOutcome) -> Table:
         text_column("mode", "Mode"),
         text_column("genset", "Set"),
         text_column("setting", "Setting"),
-        percent_column("as_set_percent", "As set", most_decimals=2, exact=True),
+        text_column("adjusted", "Adjusted"),
+        percent_column("set_percent", "Set at", most_decimals=2),
         percent_column("low_percent", "May fall to", most_decimals=2, missing="no bound"),
         text_column("low_breaks", "Below that breaks"),
         percent_column("high_percent", "May rise to", most_decimals=2, missing="no bound"),
@@ -226,12 +271,13 @@ def margins_table(outcome: StudyOutcome) -> Table:
             island.mode,
             margin.genset,
             margin.setting,
-            percent(margin.as_set_pu),
+            "trimmed at 75 % load" if margin.trimmed else "as set",
+            percent(margin.set_pu),
             percent(margin.low_pu),
             margin.low_breaks or None,
             percent(margin.high_pu),
             margin.high_breaks or None,
-            outcome.plant.cell_of(margin.genset, headings.get(margin.setting, "")),
+            outcome.plant.setting_cell(margin.genset, island.mode, headings.get(margin.setting, "")),
         )
         for island in outcome.sharing.islands
         for margin in island.margins
@@ -242,7 +288,10 @@ def margins_table(outcome: StudyOutcome) -> Table:
         sheet=_SHEET,
         columns=columns,
         rows=rows,
-        notes=("One setting of one set is changed, everything else stays as set.",),
+        notes=(
+            "One setting of one set is changed, everything else stays. Where the sets are out of tolerance "
+            "as set, the room is that about the trimmed set-points.",
+        ),
         group_by=("mode",),
     )
 

@@ -29,6 +29,10 @@ class CellPlaces(Mapping[tuple[str, str], str]):
         for sheet in _KEYED:
             for row in rows.get(sheet, ()):
                 self._rows.setdefault(row.name, []).append(row)
+        for row in rows.get("Set-points", ()):
+            for heading, column in row.table.heading_columns.items():
+                key = f"{row.values.get('equipment')} in {row.values.get('mode')}", heading
+                self._others[key] = place(row.sheet, column, row.number)
 
     def __getitem__(self, key: tuple[str, str]) -> str:
         """Return the address of a cell, blank or not."""

@@ -165,12 +165,55 @@ CROSS = {"regulator_mode": "cross-current"}
         one_bus({"droop_law": "reactive current", "no_load_voltage_pu": 1.02}, {}, {"s_rated_kva": 1500.0}),
     ],
 )
-def test_trimmed_sets_share_in_proportion_at_75_per_cent_and_keep_the_bus_voltage(p: Plant) -> None:
+def test_trimmed_sets_share_in_proportion_at_75_per_cent_and_one_is_left_alone(p: Plant) -> None:
     one = island(p)
     at = list(one.trimmed.load_pu).index(0.75)
     assert np.abs(one.trimmed.dp_kw[at] / one.p_rated_kw).max() < 1e-6
     assert np.abs(one.trimmed.dq_kvar[at] / one.q_rated_kvar).max() < 1e-6
-    assert one.trimmed.u_pu[at] == pytest.approx(one.as_set.u_pu[at], abs=1e-6)
+    assert any(t.u_trimmed_pu == t.u_as_set_pu for t in one.trims)
+    drooped = [t for t in one.trims if not np.isnan(t.f_as_set_pu)]
+    if len(drooped) == len(one.trims):
+        assert any(t.f_trimmed_pu == t.f_as_set_pu for t in drooped)
+
+
+def test_trimmed_set_points_put_into_the_workbook_give_the_trimmed_curves() -> None:
+    p = three_boards()
+    one = island(p)
+    trimmed = {
+        t.genset: set_point(t.genset, no_load_voltage_pu=t.u_trimmed_pu, no_load_frequency_pu=t.f_trimmed_pu)
+        for t in one.trims
+    }
+    again = island(replace(p, modes=(replace(p.modes[0], set_points=trimmed),)))
+    np.testing.assert_allclose(again.as_set.q_kvar, one.trimmed.q_kvar, atol=0.01)
+    np.testing.assert_allclose(again.as_set.p_kw, one.trimmed.p_kw, atol=0.01)
+    assert [t.u_trimmed_pu for t in again.trims] == pytest.approx(
+        [t.u_trimmed_pu for t in one.trims], abs=2e-6
+    )
+
+
+def test_sets_are_trimmed_to_those_that_are_right() -> None:
+    """Two of three equal sets agree: the third is brought to them, and they stay as they are."""
+    odd = {"no_load_voltage_pu": 1.05, "no_load_frequency_pu": 1.045}
+    one = island(one_bus({}, odd, {}, kw=1500.0))
+    assert [t.u_trimmed_pu for t in one.trims] == pytest.approx([one.trims[0].u_as_set_pu] * 3, abs=1e-6)
+    assert [t.f_trimmed_pu for t in one.trims] == pytest.approx([one.trims[0].f_as_set_pu] * 3, abs=1e-9)
+
+
+@pytest.mark.parametrize(("first", "second", "trimmed"), [(1.03, 1.06, 1.03), (0.99, 1.03, 1.03)])
+def test_of_two_sets_the_one_that_brings_the_bus_nearest_to_rated_is_kept(
+    first: float, second: float, trimmed: float
+) -> None:
+    one = island(one_bus({"no_load_voltage_pu": first}, {"no_load_voltage_pu": second}))
+    assert [t.u_trimmed_pu for t in one.trims] == pytest.approx([trimmed] * 2, abs=1e-6)
+
+
+def test_what_holds_its_own_voltage_or_speed_has_no_trim() -> None:
+    one = island(
+        one_bus({"field_supply": "fixed", "no_load_voltage_pu": 1.5}, {"governor_mode": "isochronous"})
+    )
+    assert np.isnan(one.trims[0].u_trimmed_pu)
+    assert np.isnan(one.trims[1].f_trimmed_pu)
+    assert one.trims[0].f_trimmed_pu == pytest.approx(1.04 + 0.75 * 0.04, abs=1e-9)
 
 
 def test_equal_droops_trimmed_share_in_proportion_at_every_load() -> None:
@@ -289,9 +332,24 @@ def test_two_zero_droop_sets_are_not_studied_and_it_says_why() -> None:
     assert "kvar is undetermined" in left.reason
 
 
-def test_an_overload_is_not_studied_and_it_says_why() -> None:
-    (left,) = study(one_bus({}, {}, kw=4000.0)).not_studied
-    assert "the load exceeds what the engines of G1 and G2 can give" in left.reason
+def test_an_overloaded_mode_has_its_sharing_judged_over_the_range() -> None:
+    """The range of load is that of the ratings, whatever the mode asks for."""
+    unequal = ({"no_load_voltage_pu": 1.02}, {})
+    over, within = (island(one_bus(*unequal, kw=kw)) for kw in (4000.0, 800.0))
+    assert any("no operating point at the mode's own load: the load exceeds" in x for x in over.findings)
+    assert np.isnan(over.p_operating_kw).all()
+    np.testing.assert_allclose(over.as_set.q_kvar, within.as_set.q_kvar, atol=0.01)
+    np.testing.assert_allclose(over.trimmed.dq_kvar, within.trimmed.dq_kvar, atol=0.01)
+    assert over.cos_phi == pytest.approx(within.cos_phi, abs=1e-6)
+    assert {m.low_breaks for m in over.margins} == {"no operating point at the mode's own load"}
+
+
+def test_an_overload_of_another_island_hides_nothing() -> None:
+    sets = [genset(f"G{k}", "A" if k < 3 else "B") for k in (1, 2, 3)]
+    loads = [load("Pumps", "A", p_rated_kw=900.0), load("Fans", "B", p_rated_kw=3000.0)]
+    p = plant(boards=[board("A"), board("B")], gensets=sets, loads=loads)
+    alone = island(replace(p, loads=p.loads[:1]))
+    np.testing.assert_allclose(island(p).as_set.q_kvar, alone.as_set.q_kvar, atol=1e-6)
 
 
 def test_sets_without_a_consumer_are_not_studied() -> None:
@@ -317,7 +375,7 @@ def test_an_engine_at_its_limit_at_full_load_is_said() -> None:
     )
     assert one.as_set.p_kw[-1, 0] == pytest.approx(1.1 * 860.0 * 0.95, rel=1e-9)
     assert any(text.startswith("G1 is held at its engine limit at ") for text in one.findings)
-    assert {m.low_breaks for m in one.margins} == {"engine limit of G1, broken as set"}
+    assert all(m.trimmed for m in one.margins)
 
 
 def test_what_cannot_be_scaled_is_kept_and_named() -> None:

@@ -104,9 +104,9 @@ def test_at_its_margin_the_network_has_the_stated_quantity_at_its_limit(p: Plant
         there = uses(p, k, m, value, OPTIONS)
         assert there[breaks] == pytest.approx(1.0, abs=0.01), (m.genset, m.setting, breaks)
         assert max(there.values()) < 1.01, (m.genset, m.setting, breaks)
-        half = uses(p, k, m, 0.5 * (value + m.as_set_pu), OPTIONS)
+        half = uses(p, k, m, 0.5 * (value + m.set_pu), OPTIONS)
         assert max(half.values()) < 1.0
-        beyond = uses(p, k, m, m.as_set_pu + 1.2 * (value - m.as_set_pu), OPTIONS)
+        beyond = uses(p, k, m, m.set_pu + 1.2 * (value - m.set_pu), OPTIONS)
         assert beyond[breaks] > 1.0
 
 
@@ -126,8 +126,8 @@ def test_speed_settings_follow_straight_lines() -> None:
     one = island(one_bus({}, {}))
     by_setting = {m.setting: m for m in one.margins if m.genset == "G1"}
     m = by_setting["no-load frequency"]
-    assert m.high_pu - m.as_set_pu == pytest.approx(2 * 0.15 * 0.04, rel=1e-3)
-    assert m.as_set_pu - m.low_pu == pytest.approx(2 * 0.15 * 0.04, rel=1e-3)
+    assert m.high_pu - m.set_pu == pytest.approx(2 * 0.15 * 0.04, rel=1e-3)
+    assert m.set_pu - m.low_pu == pytest.approx(2 * 0.15 * 0.04, rel=1e-3)
     # at full load the frequency is 1.04 - 0.04 x 0.85 where the other carries 85 %, and this set 115 %
     m = by_setting["speed droop"]
     assert m.low_pu == pytest.approx(0.04 * 0.85 / 1.15, rel=1e-3)
@@ -213,12 +213,23 @@ def test_a_stiff_set_has_a_margin_of_voltage_and_none_of_droop() -> None:
     }
 
 
-def test_what_is_broken_as_set_has_no_room() -> None:
-    one = island(one_bus({"no_load_voltage_pu": 1.02}, {}))
+def test_what_is_broken_as_set_and_as_trimmed_has_no_room() -> None:
+    one = island(one_bus({"voltage_droop_pu": 0.08}, {"voltage_droop_pu": 0.02}))
+    assert one.margins
     for m in one.margins:
-        assert m.low_pu == m.high_pu == m.as_set_pu
+        assert not m.trimmed
+        assert m.low_pu == m.high_pu == m.set_pu
         assert m.low_breaks == m.high_breaks
         assert m.low_breaks in {f"kvar sharing of {name}, broken as set" for name in one.sets}
+
+
+def test_margins_of_sets_out_of_tolerance_are_about_the_trimmed_set_points() -> None:
+    """The set that is off is brought to the other, and the room is that of two sets set alike."""
+    off, alike = (island(one_bus({"no_load_voltage_pu": u}, {})) for u in (1.02, 1.0))
+    assert all(m.trimmed for m in off.margins)
+    assert not any(m.trimmed for m in alike.margins)
+    for m, other in zip(off.margins, alike.margins, strict=True):
+        assert m.set_pu - m.low_pu == pytest.approx(other.set_pu - other.low_pu, rel=0.05)
 
 
 def test_near_full_load_the_engines_fuel_limit_leaves_the_margin_on_the_safe_side() -> None:
@@ -236,5 +247,5 @@ def test_near_full_load_the_engines_fuel_limit_leaves_the_margin_on_the_safe_sid
 def test_the_mode_s_set_points_are_the_values_as_set() -> None:
     point = set_point("G1", no_load_voltage_pu=1.003, no_load_frequency_pu=1.041)
     p = one_bus({}, {}, modes=[mode(set_points=[point])])
-    assert margin_of(p, "G1", "no-load voltage", OPTIONS).as_set_pu == 1.003
-    assert margin_of(p, "G1", "no-load frequency", OPTIONS).as_set_pu == 1.041
+    assert margin_of(p, "G1", "no-load voltage", OPTIONS).set_pu == 1.003
+    assert margin_of(p, "G1", "no-load frequency", OPTIONS).set_pu == 1.041

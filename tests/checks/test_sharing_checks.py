@@ -13,7 +13,7 @@ from study.checks.verdict import Verdict
 from study.model.plant import Plant
 from study.results.arrays import read_only
 from study.results.regulation import RegulationResult
-from study.results.sharing import IslandSharing, NotStudied, SharingCurve, SharingResult
+from study.results.sharing import IslandSharing, NotStudied, SetTrim, SharingCurve, SharingResult
 from tests.checks.results import LIMITS, MODE, NAN, agreed, find, with_cells
 from tests.plants import board, genset, mode, plant, set_point
 from tests.report.made_up import outcome
@@ -27,6 +27,9 @@ def a_plant(**changes: Any) -> Plant:
         plant(**{**given, **changes}),
         ("G1", "Speed droop"),
         ("G1", "No-load voltage"),
+        ("G1", "Voltage droop"),
+        ("G2", "No-load voltage"),
+        ("G2", "No-load frequency"),
         ("G1", "Field supply"),
     )
 
@@ -72,6 +75,7 @@ def an_island(as_set: SharingCurve, trimmed: SharingCurve | None = None, **chang
         lines=(),
         margins=(),
         findings=(),
+        trims=(),
     )
     return replace(start, **changes)
 
@@ -91,7 +95,7 @@ def test_the_largest_distance_over_the_range_decides() -> None:
     assert "no-load frequencies" in kw.remedy
     kvar = find(verdicts, "G1", "kvar off its share, as set")
     assert (kvar.value, kvar.limit, kvar.unit, kvar.status) == (58.0, 60.0, "kvar", "close")
-    assert kvar.cell == "G1!No-load voltage"
+    assert kvar.cell == "G1!Voltage droop"
     trimmed = find(verdicts, "G2", "kvar off its share, trimmed at 75 % load")
     assert (trimmed.value, trimmed.status) == (9.0, "within")
     assert len(verdicts) == 8
@@ -151,18 +155,45 @@ def test_a_set_that_takes_no_part_is_not_judged() -> None:
     assert {v.subject for v in verdicts} == {"kW sharing"}  # one set alone shares kvar with nobody
 
 
-def test_the_mode_s_set_point_is_the_cell() -> None:
-    points = [set_point("G1", cell="Set-points!C4", no_load_voltage_pu=1.02)]
-    verdicts = judged(an_island(a_curve([0, 130, 0], [0, 70, 0])), modes=[mode(set_points=points)])
-    assert find(verdicts, "G1", "kvar off its share, as set").cell == "Set-points!C4"
-    assert find(verdicts, "G1", "kW off its share, as set").cell == "G1!Speed droop"
-
-
 def test_a_reversed_droop_circuit_has_its_own_cure() -> None:
     sets = [genset("G1", "MSB", reversed_polarity=True), genset("G2", "MSB")]
     verdicts = judged(an_island(a_curve([0, 0, 0], [0, 700, 0])), gensets=sets)
     v = find(verdicts, "G1", "kvar off its share, as set")
-    assert v.remedy == "Turn the current transformer of its droop circuit round."
+    assert v.remedy == "Turn the current transformer of the droop circuit of G1 round."
+
+
+def trimmed(genset: str, **changes: float) -> SetTrim:
+    alike = {"u_as_set_pu": 1.02, "u_trimmed_pu": 1.02, "f_as_set_pu": 1.03, "f_trimmed_pu": 1.03}
+    return SetTrim(genset=genset, **{**alike, **changes})
+
+
+def test_the_cure_names_the_trimmed_set_point_and_its_cell() -> None:
+    off = trimmed("G2", u_as_set_pu=1.042, f_trimmed_pu=1.04)
+    island = an_island(a_curve([0, 130, 0], [0, 70, 0]), trims=(trimmed("G1"), off))
+    verdicts = judged(island)
+    v = find(verdicts, "G1", "kvar off its share, as set")
+    assert v.remedy == "Set the no-load voltage of G2 from 104.20 to 102.00 % (G2!No-load voltage)."
+    assert v.cell == "G2!No-load voltage"
+    v = find(verdicts, "G1", "kW off its share, as set")
+    assert v.remedy == "Set the no-load frequency of G2 from 103.00 to 104.00 % (G2!No-load frequency)."
+    points = [set_point("G2", cell="Set-points!A5", no_load_voltage_pu=1.042)]
+    v = find(judged(island, modes=[mode(set_points=points)]), "G1", "kvar off its share, as set")
+    assert v.cell == "Set-points!A5"
+    assert "(Set-points!A5)" in v.remedy
+
+
+def test_sets_that_trimming_does_not_cure_need_equal_droops() -> None:
+    curve = a_curve([0, 0, 0], [0, 70, 0])
+    island = an_island(
+        curve, replace(curve, trimmed=True), trims=(trimmed("G1"), trimmed("G2", u_as_set_pu=1.0))
+    )
+    for v in judged(island):
+        assert v.remedy == (
+            "Set equal voltage droops, then trim the no-load voltages at 75 % load."
+            if v.status == "exceeds"
+            else ""
+        )
+    assert find(judged(island), "G1", "kvar off its share, as set").cell == "G1!Voltage droop"
 
 
 def test_sets_in_parallel_without_a_solution_are_not_assessed() -> None:

@@ -47,6 +47,7 @@ from study.results.sharing import (
     IslandSharing,
     MaladjustedCase,
     SettingLine,
+    SetTrim,
     SharingCurve,
     SharingResult,
 )
@@ -598,7 +599,7 @@ def _island_sharing(plant: Plant, mode: str) -> IslandSharing:
             AdjustingMargin(
                 genset=name,
                 setting=setting,
-                as_set_pu=1.02,
+                set_pu=1.02,
                 low_pu=1.011,
                 low_breaks="kvar sharing of DG2",
                 high_pu=NAN,
@@ -608,6 +609,16 @@ def _island_sharing(plant: Plant, mode: str) -> IslandSharing:
             for setting in ("no-load voltage", "voltage droop")
         ),
         findings=(),
+        trims=tuple(
+            SetTrim(
+                genset=name,
+                u_as_set_pu=1.02 + 0.003 * i,
+                u_trimmed_pu=1.02,
+                f_as_set_pu=1.03,
+                f_trimmed_pu=1.03,
+            )
+            for i, name in enumerate(names)
+        ),
     )
 
 
