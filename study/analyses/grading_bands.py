@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -19,7 +19,7 @@ FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
 BoolArray = NDArray[np.bool_]
 
-SHORT_TIME = "short-time"
+SHORT_TIME, LONG_TIME = "short-time", "long-time"
 _SQRT2 = 2.0**0.5
 
 
@@ -62,7 +62,7 @@ def opener_of(members: Sequence[int], models: Sequence[DeviceModel]) -> Opener:
     opened = {models[k].opened_by for k in members if models[k].opened_by != models[k].name}
     own = tuple(k for k in members if models[k].name not in opened)
     bands = [models[k].band for k in own]
-    early = [edge for band in bands for edge in band.earliest]
+    early = [edge for band in bands for edge in _not_before_short_time(band.earliest)]
     late = [edge for band in bands for edge in band.latest]
     return Opener(
         members=own,
@@ -75,6 +75,17 @@ def opener_of(members: Sequence[int], models: Sequence[DeviceModel]) -> Opener:
         cleared_a2s=_last_a2s(late),
         sheet=next((models[k].let_through for k in own if models[k].let_through is not None), None),
     )
+
+
+def _not_before_short_time(edges: Sequence[Edge]) -> list[Edge]:
+    """Return the earliest edges with the overload release no sooner than the short-time stage.
+
+    Makers' curves end the overload release where the short-time stage begins; common practice, no source.
+    """
+    delay = [e.figures[0] if e.law == "constant" else e.least_s for e in edges if e.stage == SHORT_TIME]
+    return [
+        replace(e, least_s=max(e.least_s, min(delay))) if delay and e.stage == LONG_TIME else e for e in edges
+    ]
 
 
 def _is_at_once(edge: Edge) -> bool:

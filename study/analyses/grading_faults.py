@@ -30,7 +30,7 @@ LEVELS: Final = (
 )
 MAX_NEAR, MAX_FAR, MIN_NEAR, MIN_FAR = range(4)
 TWO_PHASE_NEAR, TWO_PHASE_FAR = 7, 8
-_BETWEEN: Final = {4: 0.25, 5: 0.5, 6: 0.75}
+BETWEEN: Final = {4: 0.25, 5: 0.5, 6: 0.75}
 _CORNER: Final = {MAX_NEAR: 0, MAX_FAR: 1, MIN_NEAR: 0, MIN_FAR: 1, TWO_PHASE_NEAR: 0, TWO_PHASE_FAR: 1}
 _MAXIMUM: Final = (MAX_NEAR, MAX_FAR, TWO_PHASE_NEAR)
 
@@ -38,10 +38,11 @@ _MAXIMUM: Final = (MAX_NEAR, MAX_FAR, TWO_PHASE_NEAR)
 class ModeFaults:
     """The faults of one mode, by the station that is to clear each.
 
-    ``feeds`` [feed] are the stations that feed a fault, each with the zone in which it lies. Rows [row] are the
-    currents to be looked at: ``feed``, ``station``, ``inward``; the first row of a feed, ``own`` [feed], is that
-    of its own station, the others are the stations behind it. ``place`` and ``inside`` are [near or far, feed].
-    ``there`` [feed] is False where the minimum case does not feed the fault.
+    ``feeds`` [feed] are the stations that feed a fault, each with the zone in which it lies. Rows [row] are
+    the currents to be looked at: ``feed``, ``station``, ``inward``; the first row of a feed, ``own`` [feed],
+    is that of its own station, the others are the stations behind it. ``place`` and ``inside`` are [near or
+    far, feed]. ``there`` [feed] is False where the minimum case does not feed the fault, ``turned`` [row]
+    True with a star-delta transformation between station and fault.
 
     Parameters
     ----------
@@ -100,12 +101,10 @@ class ModeFaults:
         self.station = np.array(
             [s for f in self.feeds for s in (f.station, *(b for b, _ in f.behind))], np.int64
         )
-        self.inward = np.array(
-            [i for f in self.feeds for i in (f.inward, *(b for _, b in f.behind))], bool
-        )
+        self.inward = np.array([i for f in self.feeds for i in (f.inward, *(b for _, b in f.behind))], bool)
 
     def _where(self) -> tuple[IntArray, IntArray]:
-        """Return place of the fault just behind each feed's station, and at the end with the least current."""
+        """Return where the faults lie: just behind each feed's station, and where the current is least."""
         at = [self._near(f) for f in self.feeds]
         options = [self._options(f) for f in self.feeds]
         far = [o[0] for o in options]
@@ -133,7 +132,7 @@ class ModeFaults:
         return [(int(self.stations.place[s]), s) for s in others] or [self._near(feed)]
 
     def _start_a(self, feed: IntArray, place: IntArray, inside: IntArray) -> FloatArray:
-        """Return the current at the start through the stations of feeds, by the minimum case where it feeds."""
+        """Return the current at the start through the feeds; of the minimum case where that feeds."""
         station = np.array([self.feeds[k].station for k in feed], np.int64)
         found = []
         for currents in (self.minimum, self.maximum):
@@ -158,24 +157,19 @@ class ModeFaults:
 
     def exists(self, level: int) -> BoolArray:
         """Return the feeds for which a level is a fault of its own, [feed]."""
+        everywhere = np.ones(len(self.feeds), bool)
         turned = np.zeros(len(self.feeds), bool)
         np.logical_or.at(turned, self.feed, self.turned)
         apart = (self.place[0] != self.place[1]) | (self.inside[0] != self.inside[1])
-        match level:
-            case 0:
-                return np.ones(len(self.feeds), bool)
-            case 1:
-                return apart
-            case 2:
-                return self.there & apart
-            case 3:
-                return self.there
-            case 7:
-                return turned
-            case 8:
-                return turned & self.there
-            case _:
-                return self.there | apart
+        found = {
+            MAX_NEAR: everywhere,
+            MAX_FAR: apart,
+            MIN_NEAR: self.there & apart,
+            MIN_FAR: self.there,
+            TWO_PHASE_NEAR: turned,
+            TWO_PHASE_FAR: turned & self.there,
+        }
+        return np.asarray(found.get(level, self.there | apart), bool)
 
     def currents(self, rows: IntArray, level: int) -> Currents:
         """Return the currents of some rows at one level, [row, time].
@@ -194,8 +188,8 @@ class ModeFaults:
         """
         if level in self._kept:
             return self._kept[level].rows(rows)
-        if level in _BETWEEN:
-            return self.at_part(rows, np.full(len(rows), _BETWEEN[level]))
+        if level in BETWEEN:
+            return self.at_part(rows, np.full(len(rows), BETWEEN[level]))
         case = self.maximum if level in _MAXIMUM else self.minimum
         end, feed = _CORNER[level], self.feed[rows]
         return case.through(
