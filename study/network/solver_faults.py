@@ -8,7 +8,8 @@ from __future__ import annotations
 
 import logging
 import warnings
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
+from contextlib import contextmanager
 from dataclasses import dataclass
 from typing import Any
 
@@ -16,12 +17,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from study.formulas.fault_iec60909 import LvTolerance
-from study.formulas.fault_iec60909_equipment import generator_fictitious_resistance_ohm
 from study.model.branches import ThreeWindingTransformer, Transformer
 from study.model.sources import Genset, SynchronousMotor
 from study.network.fault_network import FaultNetwork
 from study.network.fault_supplies import Supply
 from study.network.fault_tables import (
+    Columns,
     generator_columns,
     motor_columns,
     shore_columns,
@@ -33,7 +34,6 @@ from study.network.solver_empty import empty_network
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
 
-_TABLES = ("bus", "impedance", "trafo", "trafo3w", "gen", "ext_grid", "motor")
 LINK_OHM = 1e-8  # between a source without a cable and its board
 
 
@@ -52,10 +52,10 @@ class LibraryCurrents:
 def library_currents(
     nets: Sequence[FaultNetwork], lv_tolerance_percent: LvTolerance, *, all_places: bool
 ) -> tuple[LibraryCurrents, ...]:
-    """Return pandapower's IEC 60909 currents of cases, mode by mode.
+    """Return pandapower's IEC 60909 currents of cases.
 
-    Its generators have one resistance for all currents, so each case is run twice: with the real one for
-    I''k, and with the fictitious one for kappa.
+    All cases of one kind, maximum or minimum, are one network of many islands: a call of the library costs
+    far more than what it computes. It takes the generators' fictitious resistance for kappa by itself.
 
     Parameters
     ----------
@@ -65,28 +65,25 @@ def library_currents(
         Chooses the voltage factors.
     all_places : bool
         Also at consumers' terminals without a motor, where only a series impedance is added, and the
-        two-phase fault; the matrices that the library inverts are then many times larger.
+        two-phase fault.
 
     Returns
     -------
     tuple of LibraryCurrents
         At the voltage of each place, in the order given.
     """
-    if not nets:
-        return ()
-    network = nets[0].plant.network
-    template = empty_network(network.plant.project.f_rated_hz, network.s_base_kva)
-    blank = {name: template[name] for name in _TABLES}
     log = logging.getLogger("pandapower.shortcircuit.calc_sc")
     level = log.level
     log.setLevel(logging.ERROR)  # it warns of every network with a generator
+    found: dict[int, LibraryCurrents] = {}
     try:
-        grids = (
-            _Grid(template, blank, x, all_places=all_places, tolerance=lv_tolerance_percent) for x in nets
-        )
-        return tuple(_currents(grid) for grid in grids)
+        for maximum in (True, False):
+            rows = [k for k, x in enumerate(nets) if x.options.maximum == maximum]
+            parts = [_Part(nets[k], all_places=all_places, tolerance=lv_tolerance_percent) for k in rows]
+            found |= dict(zip(rows, _currents(parts, lv_tolerance_percent, all_places), strict=True))
     finally:
         log.setLevel(level)
+    return tuple(found[k] for k in range(len(nets)))
 
 
 def library_network(net: FaultNetwork, lv_tolerance_percent: LvTolerance, *, all_places: bool) -> Any:
@@ -106,53 +103,115 @@ def library_network(net: FaultNetwork, lv_tolerance_percent: LvTolerance, *, all
     pandapowerNet
         Its buses are named by number.
     """
-    network = net.plant.network
-    blank = empty_network(network.plant.project.f_rated_hz, network.s_base_kva)
-    grid = _Grid(blank, {}, net, all_places=all_places, tolerance=lv_tolerance_percent)
-    grid.set_resistance(fictitious=False)
-    return grid.net
+    return _library([_Part(net, all_places=all_places, tolerance=lv_tolerance_percent)])
 
 
-def _currents(grid: _Grid) -> LibraryCurrents:
-    from pandapower.shortcircuit import calc_sc
+def _currents(
+    parts: Sequence[_Part], tolerance: LvTolerance, all_places: bool
+) -> tuple[LibraryCurrents, ...]:
+    """Return the currents of cases that are all maximum or all minimum."""
+    fed = [x for x in parts if x.feeds]
+    columns: dict[str, FloatArray] = {}
+    if fed:
+        from pandapower.shortcircuit import calc_sc
 
-    case = "max" if grid.fault.options.maximum else "min"
-    options: dict[str, Any] = {"case": case, "lv_tol_percent": grid.tolerance}
-    if not grid.feeds:
-        nothing = np.full(len(grid.fault.place_bus), np.nan)
+        grid = _library(fed)
+        how: dict[str, Any] = {
+            "case": "max" if fed[0].fault.options.maximum else "min",
+            "lv_tol_percent": tolerance,
+            "inverse_y": False,  # factors, not the whole inverse of many islands
+        }
+        with _without_compiling(), warnings.catch_warnings():
+            warnings.simplefilter("ignore")
+            calc_sc(grid, fault="3ph", ip=True, kappa_method="C", topology="meshed", **how)
+            columns["three"] = grid.res_bus_sc["ikss_ka"].to_numpy()
+            columns["peak"] = grid.res_bus_sc["ip_ka"].to_numpy()
+            if all_places:
+                calc_sc(grid, fault="2ph", **how)
+                columns["two"] = grid.res_bus_sc["ikss_ka"].to_numpy()
+    starts = dict(zip(map(id, fed), _starts(fed), strict=True))
+    return tuple(_at_places(x, starts.get(id(x)), columns) for x in parts)
+
+
+@contextmanager
+def _without_compiling() -> Iterator[None]:
+    """Let the library build its matrix by numpy: it would compile a loop for two seconds in every process."""
+    from pandapower.pypower.makeYbus import makeYbus
+    from pandapower.shortcircuit import impedance
+
+    compiled = impedance.makeYbus
+    impedance.makeYbus = makeYbus
+    try:
+        yield
+    finally:
+        impedance.makeYbus = compiled
+
+
+def _at_places(part: _Part, start: int | None, columns: Mapping[str, FloatArray]) -> LibraryCurrents:
+    nothing = np.full(len(part.fault.place_bus), np.nan)
+    if start is None:
         return LibraryCurrents(ik_3ph_a=nothing, ik_2ph_a=nothing, ip_3ph_a=nothing)
-    with warnings.catch_warnings():
-        warnings.simplefilter("ignore")
-        grid.set_resistance(fictitious=True)
-        calc_sc(grid.net, fault="3ph", ip=True, kappa_method="C", topology="meshed", **options)
-        kappa = grid.result("ip_ka") / grid.result("ikss_ka")
-        grid.set_resistance(fictitious=False)
-        calc_sc(grid.net, fault="3ph", **options)
-        three = grid.result("ikss_ka")
-        two = np.full_like(three, np.nan)
-        if grid.all_places:
-            calc_sc(grid.net, fault="2ph", **options)
-            two = grid.result("ikss_ka")
-    return LibraryCurrents(ik_3ph_a=three, ik_2ph_a=two, ip_3ph_a=kappa * three)
+    three = part.at_places(1000.0 * columns["three"], start)
+    two = part.at_places(1000.0 * columns["two"], start) if "two" in columns else nothing
+    peak = part.at_places(1000.0 * columns["peak"], start)
+    return LibraryCurrents(ik_3ph_a=three, ik_2ph_a=two, ip_3ph_a=peak)
 
 
-class _Grid:
-    """A pandapower network of one mode and case."""
+_BUSES = {
+    "impedance": ("from_bus", "to_bus"),
+    "trafo": ("hv_bus", "lv_bus"),
+    "trafo3w": ("hv_bus", "mv_bus", "lv_bus"),
+    "gen": ("bus",),
+    "ext_grid": ("bus",),
+    "motor": ("bus",),
+}
 
-    def __init__(
-        self,
-        template: Any,
-        blank: Mapping[str, Any],
-        net: FaultNetwork,
-        *,
-        all_places: bool,
-        tolerance: LvTolerance,
-    ) -> None:
-        self.fault, self.net, self.all_places, self.tolerance = net, template, all_places, tolerance
+
+def _starts(parts: Sequence[_Part]) -> list[int]:
+    """Return the number of each part's first bus in the joint network."""
+    counts = [len(x.columns["bus"]["vn_kv"]) for x in parts]
+    return [sum(counts[:k]) for k in range(len(counts))]
+
+
+def _library(parts: Sequence[_Part]) -> Any:
+    """Return cases as one pandapower network, side by side."""
+    first = parts[0].fault.plant.network
+    net = empty_network(first.plant.project.f_rated_hz, first.s_base_kva)
+    for name in ("bus", *_BUSES):
+        joined: dict[str, list[Any]] = {}
+        for part, start in zip(parts, _starts(parts), strict=True):
+            for column, values in part.columns.get(name, {}).items():
+                shifted = column in _BUSES.get(name, ())
+                joined.setdefault(column, []).extend([v + start for v in values] if shifted else list(values))
+        if joined:
+            _put(net, name, joined)
+    return net
+
+
+def _put(net: Any, table: str, columns: Mapping[str, Any]) -> None:
+    """Fill a table of the library; columns that are not given are empty."""
+    import pandas as pd
+
+    types = net[table].dtypes
+    count = len(next(iter(columns.values())))
+    filled: dict[str, Any] = {}
+    for name, dtype in types.items():
+        if name in columns:
+            filled[name] = pd.Series(columns[name], dtype=dtype)
+        else:
+            filled[name] = np.full(count, np.nan) if dtype.kind == "f" else np.full(count, None, object)
+    filled |= {k: v for k, v in columns.items() if k not in filled}
+    net[table] = pd.DataFrame(filled)
+
+
+class _Part:
+    """One mode and case as columns of the library's tables, its buses numbered from 0."""
+
+    def __init__(self, net: FaultNetwork, *, all_places: bool, tolerance: LvTolerance) -> None:
+        self.fault, self.tolerance = net, tolerance
+        self.columns: dict[str, Columns] = {}
         network = net.plant.network
         self.s_base = network.s_base_kva / 1000.0
-        for name, table in blank.items():
-            self.net[name] = table
         nodes = np.array(net.view.island) >= 0
         nodes[[k for k, n in enumerate(network.topology.nodes) if n.kind == "star"]] = False
         if not all_places:
@@ -176,19 +235,6 @@ class _Grid:
     def _new_bus(self, vn_kv: float) -> int:
         self.extra_vn.append(vn_kv)
         return self.count + len(self.extra_vn) - 1
-
-    def _put(self, table: str, columns: dict[str, Any]) -> None:
-        import pandas as pd
-
-        empty = self.net[table]
-        count = len(next(iter(columns.values())))
-        frame = pd.DataFrame(columns, index=range(count))
-        for name, dtype in empty.dtypes.items():
-            if name in columns:
-                frame[name] = frame[name].astype(dtype)
-            else:
-                frame[name] = np.nan if dtype.kind == "f" else pd.Series([None] * count, dtype=object)
-        self.net[table] = frame
 
     def _branches(self) -> None:
         net, topology, plant = self.fault, self.fault.plant.network.topology, self.fault.plant.network.plant
@@ -216,9 +262,9 @@ class _Grid:
             elif not b.winding:
                 self.links.append((*ends, complex(net.z[n])))
         if two:
-            self._put("trafo", two_winding_columns(two))
+            self.columns["trafo"] = two_winding_columns(two)
         if three:
-            self._put("trafo3w", three_winding_columns(net, three, self.tolerance))
+            self.columns["trafo3w"] = three_winding_columns(net, three, self.tolerance)
 
     def _sources(self) -> None:
         shores: list[tuple[int, Supply]] = []
@@ -246,12 +292,14 @@ class _Grid:
         self.feeds = bool(self.gens or shores or motors)
         items = [s.item for s in self.gens if isinstance(s.item, Genset | SynchronousMotor)]
         if items:
-            self._put("gen", generator_columns(items, self.gen_bus))
+            columns = generator_columns(items, self.gen_bus)
+            own = [x.machine.r_stator_pu * x.u_rated_v**2 / (1000.0 * x.s_rated_kva) for x in items]
+            self.columns["gen"] = columns | {"rdss_ohm": own}
         if shores:
-            self._put("ext_grid", shore_columns(shores, self.s_base))
+            self.columns["ext_grid"] = shore_columns(shores, self.s_base)
         if motors:
             u_v = [float(self.fault.plant.network.u_base_v[s.node]) for _, _, s in motors]
-            self._put("motor", motor_columns(motors, u_v, self.s_base))
+            self.columns["motor"] = motor_columns(motors, u_v, self.s_base)
 
     def _beside(self, s: Supply) -> int:
         board = int(self.bus_of[s.node])
@@ -260,57 +308,32 @@ class _Grid:
         self.links.append((board, bus, 1j * LINK_OHM * self.s_base / vn**2))
         return bus
 
-    def set_resistance(self, *, fictitious: bool) -> None:
-        """Set the generators' resistance, real or fictitious."""
-        values = []
-        for s in self.gens:
-            item = s.item
-            assert isinstance(item, Genset | SynchronousMotor)
-            base = item.u_rated_v**2 / (1000.0 * item.s_rated_kva)
-            x = item.machine.x_d2_saturated_pu * base
-            own = item.machine.r_stator_pu * base
-            assumed = float(generator_fictitious_resistance_ohm(x, item.u_rated_v, 1000.0 * item.s_rated_kva))
-            values.append(assumed if fictitious else own)
-        if values:
-            self.net.gen["rdss_ohm"] = values
-
     def _fill_buses(self) -> None:
         vn = np.concatenate([self.vn, self.extra_vn])
-        self._put(
-            "bus",
-            {
-                "name": [str(k) for k in range(len(vn))],
-                "vn_kv": vn,
-                "type": ["b"] * len(vn),
-                "in_service": [True] * len(vn),
-            },
-        )
+        self.columns["bus"] = {
+            "name": [str(k) for k in range(len(vn))],
+            "vn_kv": vn,
+            "type": ["b"] * len(vn),
+            "in_service": [True] * len(vn),
+        }
         links = [x for x in self.links if x[0] != x[1]]
         z = np.array([x[2] for x in links], complex)
-        self._put(
-            "impedance",
-            {
-                "name": [str(k) for k in range(len(links))],
-                "from_bus": [x[0] for x in links],
-                "to_bus": [x[1] for x in links],
-                "rft_pu": z.real,
-                "xft_pu": z.imag,
-                "rtf_pu": z.real,
-                "xtf_pu": z.imag,
-                "gf_pu": np.zeros(len(links)),
-                "bf_pu": np.zeros(len(links)),
-                "gt_pu": np.zeros(len(links)),
-                "bt_pu": np.zeros(len(links)),
-                "sn_mva": np.full(len(links), self.s_base),
-                "in_service": [True] * len(links),
-            },
-        )
+        zero = np.zeros(len(links))
+        self.columns["impedance"] = {
+            "name": [str(k) for k in range(len(links))],
+            "from_bus": [x[0] for x in links],
+            "to_bus": [x[1] for x in links],
+            "rft_pu": z.real,
+            "xft_pu": z.imag,
+            "rtf_pu": z.real,
+            "xtf_pu": z.imag,
+            "sn_mva": np.full(len(links), self.s_base),
+            "in_service": [True] * len(links),
+        } | dict.fromkeys(("gf_pu", "bf_pu", "gt_pu", "bt_pu"), zero)
 
-    def result(self, column: str) -> FloatArray:
-        """Return a column of the results in A at each place; NaN where dead."""
+    def at_places(self, values: FloatArray, start: int) -> FloatArray:
+        """Return values of buses at each place, NaN where dead; the part's first bus is at `start`."""
         place = (self.fault.place_bus >= 0) & (self.bus_of[self.fault.plant.place_node] >= 0)
         out = np.full(len(place), np.nan)
-        node = self.fault.plant.place_node[place]
-        found = self.net.res_bus_sc[column].reindex(range(self.count)).to_numpy()
-        out[place] = 1000.0 * found[self.bus_of[node]]
+        out[place] = values[start + self.bus_of[self.fault.plant.place_node[place]]]
         return out
