@@ -153,7 +153,7 @@ class _Batch:
         self.speed_droop = or_own(trims[3], self.sources, "speed_droop_pu")
         shape = (len(self.sources), self.count)
         self.state, self.power_state = np.zeros(shape, np.int64), np.zeros(shape, np.int64)
-        self.pinned = np.zeros(shape, bool)
+        self.pinned, self.at_current = np.zeros(shape, bool), np.zeros(shape, bool)
         self.found = no_solutions(at.structure, 0)
         self.field = np.full(shape, np.nan)
         self.frequency = np.full((at.structure.islands, self.count), np.nan)
@@ -170,7 +170,9 @@ class _Batch:
                 break
             todo = np.sort(np.concatenate([self._pass(k, reasons) for k in self._alike(todo)]))
         for k in todo:
-            reasons[k] = "the sources' limits lead from one to the other without end: no steady state found."
+            reasons[k] = self._beyond_currents(self.at_current[:, k]) or (
+                "the sources' limits lead from one to the other without end: no steady state found."
+            )
         return self._result(reasons)
 
     def _alike(self, todo: IntArray) -> list[IntArray]:
@@ -223,6 +225,9 @@ class _Batch:
             return (
                 f"no operating point: {beyond} {asks} for more than the run there can carry at any voltage."
             )
+        held = self._beyond_currents(self.state[:, n] == LARGEST_CURRENT)
+        if held:
+            return held
         without = np.flatnonzero(self.state[:, n] == NO_EXCITATION)
         if len(without):
             names = " and ".join(self.sources[j].name for j in without)
@@ -231,6 +236,16 @@ class _Batch:
                 f"without field, and cannot stay in step so {tried}"
             )
         return f"no operating point: the load exceeds what sources and network can carry {tried}"
+
+    def _beyond_currents(self, held: BoolArray) -> str:
+        """Return that the load asks these sources, [source], for more than their current; empty for none."""
+        names = " and ".join(self.sources[j].name for j in np.flatnonzero(held))
+        if not names:
+            return ""
+        return (
+            f"no operating point: the load asks {names} for more than the largest current of the converter, "
+            "and takes more current still as the voltage falls."
+        )
 
     def _beyond_their_runs(self, n: int) -> str:
         """Return the consumers at the end of a run that cannot carry their load from rated voltage."""
@@ -278,6 +293,7 @@ class _Batch:
         count = len(self.sources)
         by_field, by_engine = np.flatnonzero(moves & (most < count)), np.flatnonzero(moves & (most >= count))
         self.state[most[by_field], k[by_field]] = wanted[most[by_field], by_field]
+        self.at_current |= self.state == LARGEST_CURRENT
         j = most[by_engine] - count
         self.power_state[j, k[by_engine]] = p_wanted[j, by_engine]
         return np.asarray(k[moves])

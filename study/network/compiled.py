@@ -21,7 +21,7 @@ def solve_compiled(problem: Problem, base: Point, out: Solutions, most_sweeps: i
     Parameters
     ----------
     problem : Problem
-        Scenarios; no law of a constant field among them.
+        Scenarios; no law of a constant field among them, and no varying droop of a cross-current group.
     base : Point
         Solution of the mean scenario.
     out : Solutions
@@ -32,10 +32,12 @@ def solve_compiled(problem: Problem, base: Point, out: Solutions, most_sweeps: i
     Raises
     ------
     ValueError
-        A source under the law of a constant field.
+        There is such a law, or such a droop.
     """
     if (problem.laws.code == Law.FIELD).any():
         raise ValueError("the compiled sweep has no law of a constant field")
+    if problem.laws.crossed and problem.laws.cross_x.shape[1] > 1:
+        raise ValueError("the compiled sweep has one droop of a cross-current group for all scenarios")
     mean, at = problem.column(None), problem.at
     fixed, accept = _fixed(mean, base), at.accept
     laws, power, demand = problem.laws, problem.power, problem.demand
@@ -90,7 +92,7 @@ def _fixed(mean: Problem, base: Point) -> Fixed:
         b0=np.where(laws.code == Law.BEHIND_IMPEDANCE, 0.0, mean.power.b[:, 0]),
         by_law=np.ascontiguousarray(laws.gradient(v_s, base.i[:, 0]).reshape(s, 4 * s)),
         r=laws.r[:, 0].copy(),
-        cross=np.ascontiguousarray(laws.cross),
+        cross=np.ascontiguousarray(laws.cross_x * laws.cross),
         q_set=laws.q_set[:, 0].copy(),
         q_per_p=laws.q_per_p[:, 0].copy(),
         i_max=laws.i_max[:, 0].copy(),

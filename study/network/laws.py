@@ -27,6 +27,7 @@ _Number = TypeVar("_Number", np.float64, np.complex128)
 PHASOR, CROSS_CURRENT = int(Law.PHASOR), int(Law.CROSS_CURRENT)
 BEHIND_IMPEDANCE = int(Law.BEHIND_IMPEDANCE)
 EVERY = slice(None)
+VARYING = ("e_ref", "x", "z", "cross_x")
 STEP = 1e-6  # of voltage and current, for the gradient of the field equation
 
 
@@ -35,7 +36,8 @@ class VoltageLaws:
     """The voltage law of each source, per unit of the network's base.
 
     ``code`` [source], and ``groups`` its kinds with their sources; ``e_ref`` and ``x`` [source, scenario or
-    1]; ``cross`` [source, source] reactances that other sets' currents act through. ``to_own_v`` and
+    1]; ``cross`` [source, source] weights with which the currents of a cross-current group count, and
+    ``cross_x`` [source, scenario or 1] the reactance that they act through. ``to_own_v`` and
     ``to_own_i`` turn network per unit into the source's. ``z`` is r + jx; ``behind`` [source] marks supplies
     behind an impedance, ``crossed`` and ``any_behind`` say whether there are any reactances or supplies such.
     """
@@ -47,6 +49,7 @@ class VoltageLaws:
     q_set: FloatArray
     q_per_p: FloatArray
     cross: FloatArray
+    cross_x: FloatArray
     i_max: FloatArray
     to_own_v: FloatArray
     to_own_i: FloatArray
@@ -66,13 +69,13 @@ class VoltageLaws:
         """Return the laws of one scenario, or of the mean of all where k is None."""
         if self.e_ref.shape[1] == self.x.shape[1] == 1:
             return self
-        return replace(self, e_ref=take(self.e_ref, k), x=take(self.x, k), z=take(self.z, k))
+        return replace(self, **{n: take(getattr(self, n), k) for n in VARYING})
 
     def columns(self, k: IntArray) -> VoltageLaws:
         """Return the laws of some scenarios."""
         if self.e_ref.shape[1] == self.x.shape[1] == 1:
             return self
-        return replace(self, e_ref=some(self.e_ref, k), x=some(self.x, k), z=some(self.z, k))
+        return replace(self, **{n: some(getattr(self, n), k) for n in VARYING})
 
     def residual(self, v: ComplexArray, i: ComplexArray) -> FloatArray:
         """Return the residual of every law, [source, scenario]; the first of the two for an impedance."""
@@ -87,7 +90,7 @@ class VoltageLaws:
     def compensated(self, v: ComplexArray, i: ComplexArray) -> ComplexArray:
         """Return V + jX I and what cross-current compensation adds, [source, scenario]."""
         out = v + self.z * i
-        return out + 1j * (self.cross @ i) if self.crossed else out
+        return out + 1j * self.cross_x * (self.cross @ i) if self.crossed else out
 
     def field_surplus(self, j: int, v: ComplexArray, i: ComplexArray) -> FloatArray:
         """Return field required less field available of source j, per unit of its air-gap-line field."""
@@ -114,7 +117,7 @@ class VoltageLaws:
         for code, k in self.groups:
             if code in (PHASOR, CROSS_CURRENT):
                 # Of |Vc|^2: twice Vc times what each unknown does to it.
-                turned = 1j * self.cross[k] * np.conj(vc[k])[:, None]
+                turned = 1j * (self.cross_x[k] * self.cross[k]) * np.conj(vc[k])[:, None]
                 turned[np.arange(len(k)), k] += self.z[k, 0] * np.conj(vc[k])
                 out[k, 0, k], out[k, 1, k] = 2.0 * vc[k].real, 2.0 * vc[k].imag
                 out[k, 2], out[k, 3] = 2.0 * turned.real, -2.0 * turned.imag
@@ -229,7 +232,8 @@ def voltage_laws(
     own_v = np.array([u / s.u_rated_v for u, s in zip(u_base_v, sources, strict=True)])[:, None]
     to_network = 1.0 / (own_v**2 * rating)
     code = np.array([s.law for s in sources], np.int64)
-    cross = _cross_matrix(sources, np.asarray(xc_pu)[:, 0], to_network[:, 0], own_v[:, 0], rating[:, 0])
+    cross = _cross_weights(sources, own_v[:, 0], rating[:, 0])
+    crossed = cross.any(axis=1)[:, None]
     own_x = np.where((code == Law.CROSS_CURRENT)[:, None], 0.0, xc_pu)
     x, r = own_x * to_network, np.array([s.r_pu for s in sources]).reshape(-1, 1) * to_network
     return VoltageLaws(
@@ -240,13 +244,14 @@ def voltage_laws(
         q_set=np.array([s.q_set_pu for s in sources]).reshape(-1, 1) * rating,
         q_per_p=np.array([s.q_per_p for s in sources]).reshape(-1, 1),
         cross=cross,
+        cross_x=np.where(crossed, xc_pu, 0.0),
         i_max=np.array([s.i_max_pu for s in sources]).reshape(-1, 1) * rating * own_v,
         to_own_v=own_v,
         to_own_i=1.0 / (rating * own_v),
         machines=tuple(s.machine for s in sources),
         supplies=tuple(s.field for s in sources),
         z=r + 1j * x,
-        crossed=bool(cross.any()),
+        crossed=bool(crossed.any()),
         **_of_code(code),
     )
 
@@ -263,17 +268,12 @@ def _groups(code: IntArray) -> tuple[tuple[int, IntArray], ...]:
     return tuple((kind, np.flatnonzero(code == kind)) for kind in kinds)
 
 
-def _cross_matrix(
-    sources: tuple[Source, ...],
-    xc: FloatArray,
-    to_network: FloatArray,
-    own_v: FloatArray,
-    rating: FloatArray,
-) -> FloatArray:
-    """Return the cross-current reactances of all groups, per unit of the network.
+def _cross_weights(sources: tuple[Source, ...], own_v: FloatArray, rating: FloatArray) -> FloatArray:
+    """Return the weights of the currents of all cross-current groups, [source, source].
 
-    Row i multiplies the other sets' currents in pu of their own rating, which are I / (rating own_v), and the
-    voltage seen is in pu of i's rated voltage.
+    Row i multiplies the sets' currents in pu of their own rating, which are I / (rating own_v); with i's
+    reactance they give the voltage that i's regulator sees, in pu of the network. A regulator's row is zero
+    where it is alone in its group.
     """
     out = np.zeros((len(sources), len(sources)))
     groups = {(s.island, s.cross_group) for s in sources if s.law == Law.CROSS_CURRENT}
@@ -283,8 +283,6 @@ def _cross_matrix(
             for n, s in enumerate(sources)
             if s.law == Law.CROSS_CURRENT and (s.island, s.cross_group) == (island, group)
         ]
-        # Each row by its own setting: sets of one group may be set apart.
-        for row, n in enumerate(k):
-            matrix = cross_current_reactance([sources[m].s_rated_kva for m in k], float(xc[n]))
-            out[n, k] = matrix[row] / own_v[n] / (rating[k] * own_v[k])
+        weights = cross_current_reactance([sources[m].s_rated_kva for m in k], 1.0)
+        out[np.ix_(k, k)] = weights / own_v[k][:, None] / (rating[k] * own_v[k])
     return out

@@ -238,9 +238,9 @@ def trims_table(outcome: StudyOutcome) -> Table:
         columns=columns,
         rows=rows,
         notes=(
-            "In % of rated voltage and rated frequency, at no load; droops stay as set. One set is left "
-            "alone: the one that leaves most others alone too and brings the board nearest to rated voltage or "
-            "frequency. 'None': no such set-point is in use, or the sets cannot be trimmed.",
+            "In % of rated voltage and rated frequency, at no load; droops stay as set. One set is"
+            " left alone: the one that leaves most others alone too and brings the board nearest to rated"
+            " voltage or frequency. 'None': no such set-point is in use, or the sets cannot be trimmed.",
         ),
         group_by=("mode",),
     )
