@@ -27,7 +27,6 @@ _Number = TypeVar("_Number", np.float64, np.complex128)
 PHASOR, CROSS_CURRENT = int(Law.PHASOR), int(Law.CROSS_CURRENT)
 BEHIND_IMPEDANCE = int(Law.BEHIND_IMPEDANCE)
 EVERY = slice(None)
-VARYING = ("e_ref", "x", "z", "cross_x")
 STEP = 1e-6  # of voltage and current, for the gradient of the field equation
 
 
@@ -69,13 +68,25 @@ class VoltageLaws:
         """Return the laws of one scenario, or of the mean of all where k is None."""
         if self.e_ref.shape[1] == self.x.shape[1] == 1:
             return self
-        return replace(self, **{n: take(getattr(self, n), k) for n in VARYING})
+        return replace(
+            self,
+            e_ref=take(self.e_ref, k),
+            x=take(self.x, k),
+            z=take(self.z, k),
+            cross_x=take(self.cross_x, k),
+        )
 
     def columns(self, k: IntArray) -> VoltageLaws:
         """Return the laws of some scenarios."""
         if self.e_ref.shape[1] == self.x.shape[1] == 1:
             return self
-        return replace(self, **{n: some(getattr(self, n), k) for n in VARYING})
+        return replace(
+            self,
+            e_ref=some(self.e_ref, k),
+            x=some(self.x, k),
+            z=some(self.z, k),
+            cross_x=some(self.cross_x, k),
+        )
 
     def residual(self, v: ComplexArray, i: ComplexArray) -> FloatArray:
         """Return the residual of every law, [source, scenario]; the first of the two for an impedance."""
@@ -233,7 +244,7 @@ def voltage_laws(
     to_network = 1.0 / (own_v**2 * rating)
     code = np.array([s.law for s in sources], np.int64)
     cross = _cross_weights(sources, own_v[:, 0], rating[:, 0])
-    crossed = cross.any(axis=1)[:, None]
+    crossed = np.any(cross != 0.0, axis=1, keepdims=True)
     own_x = np.where((code == Law.CROSS_CURRENT)[:, None], 0.0, xc_pu)
     x, r = own_x * to_network, np.array([s.r_pu for s in sources]).reshape(-1, 1) * to_network
     return VoltageLaws(
