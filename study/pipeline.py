@@ -97,7 +97,7 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     regulation = voltage_regulation(plant)
     sharing = sharing_study(networks, p_kw, q_kvar, _sharing_options(limits))
     _tell(progress, "short-circuit currents and fault ratings")
-    faults = short_circuit(network)
+    faults = short_circuit(network, views=[at.view for at in networks])
     ratings = fault_ratings(plant, faults)
     outcome = StudyOutcome(
         plant=plant,

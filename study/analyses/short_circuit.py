@@ -26,6 +26,7 @@ from study.network.fault_network import FaultNetwork, FaultPlant, fault_network,
 from study.network.fault_supplies import MAXIMUM, MINIMUM, NOMINAL
 from study.network.network import Network
 from study.network.solver_faults import library_currents
+from study.network.view import View
 from study.results.arrays import read_only
 from study.results.short_circuit import (
     Iec60909Case,
@@ -48,7 +49,11 @@ class SolvedMode:
     general: tuple[GeneralCase, GeneralCase]
 
 
-def short_circuit(network: Network, options: ShortCircuitOptions = DEFAULT_OPTIONS) -> ShortCircuitResult:
+def short_circuit(
+    network: Network,
+    options: ShortCircuitOptions = DEFAULT_OPTIONS,
+    views: Sequence[View] | None = None,
+) -> ShortCircuitResult:
     """Return the short-circuit currents of every mode.
 
     Parameters
@@ -57,6 +62,8 @@ def short_circuit(network: Network, options: ShortCircuitOptions = DEFAULT_OPTIO
         Of the plant.
     options : ShortCircuitOptions
         Choices of the study.
+    views : sequence of View, optional
+        What is energised in each mode, where it is known already.
 
     Returns
     -------
@@ -65,7 +72,8 @@ def short_circuit(network: Network, options: ShortCircuitOptions = DEFAULT_OPTIO
     """
     static = fault_plant(network)
     places = device_places(network.plant.devices, network.topology)
-    solved = [solve_mode(static, mode, options) for mode in network.plant.modes]
+    seen = views or [None] * len(network.plant.modes)
+    solved = [solve_mode(static, m, options, v) for m, v in zip(network.plant.modes, seen, strict=True)]
     general = _compared(solved, options)
     return ShortCircuitResult(
         places=places_of(static),
@@ -106,7 +114,9 @@ def places_of(static: FaultPlant) -> Places:
     )
 
 
-def solve_mode(static: FaultPlant, mode: Mode, options: ShortCircuitOptions) -> SolvedMode:
+def solve_mode(
+    static: FaultPlant, mode: Mode, options: ShortCircuitOptions, view: View | None = None
+) -> SolvedMode:
     """Return a mode's two cases by both standards.
 
     Parameters
@@ -117,14 +127,16 @@ def solve_mode(static: FaultPlant, mode: Mode, options: ShortCircuitOptions) -> 
         One of its modes.
     options : ShortCircuitOptions
         Choices of the study.
+    view : View, optional
+        What is energised in the mode, where it is known already.
 
     Returns
     -------
     SolvedMode
         Before the comparison with pandapower.
     """
-    high = fault_network(static, mode, MAXIMUM)
-    low = fault_network(static, mode, MINIMUM, None if mode.changeover_sets else high.view)
+    high = fault_network(static, mode, MAXIMUM, None if mode.changeover_sets else view)
+    low = fault_network(static, mode, MINIMUM, view if mode.changeover_sets else high.view)
     if options.one_set:
         low = fault_network(static, _one_set(mode, low), MINIMUM)
     return SolvedMode(

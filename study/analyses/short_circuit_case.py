@@ -139,7 +139,7 @@ class _Assembler:
         share: FloatArray,
     ) -> FaultCase:
         hz, parts = self.hz, self.parts
-        times = time_grid(hz)
+        times = time_grid(hz, fine=not self.net.options.maximum)
         half, dc_half = half_cycle(parts, hz)
         initial = parts.subtransient_a
         ac, dc = sums_at(parts, self.ends_s, times)

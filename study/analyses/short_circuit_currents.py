@@ -98,8 +98,10 @@ def solve_stages(net: FaultNetwork, lasting: Stages | None = None) -> Stages:
         return solve_stage(net, z[0], z[1], active, **how)  # type: ignore[arg-type]
 
     first = stage(lambda x: x.x_sub_ohm, everyone)
-    mixed = stage(lambda x: np.where(s.asynchronous, x.x_sub_ohm, x.x_trans_ohm), everyone)
     transient = stage(lambda x: x.x_trans_ohm, ~s.asynchronous)
+    mixed = transient
+    if s.asynchronous.any():
+        mixed = stage(lambda x: np.where(s.asynchronous, x.x_sub_ohm, x.x_trans_ohm), everyone)
     if lasting is not None:
         return replace(lasting, subtransient=first, mixed=mixed, transient=transient)
     return Stages(

@@ -15,6 +15,7 @@ FloatArray = NDArray[np.float64]
 _NODES = 10  # Chebyshev points in half a cycle; the decays are smooth, ten leave 1e-7
 _COARSE, _PASSES, _FINE = 16, 4, 9
 _EARLIEST = -0.2  # of half a cycle, -1 to 1: resistance alone puts the peak at 0, a quarter cycle
+_FEW_S = np.array([0.0, 0.05, 0.1, 0.2, 0.5, 1.0, 2.0, 10.0])
 _DIED_AWAY = -30.0  # exponent: 1e-13 of the start
 
 
@@ -137,13 +138,15 @@ def greatest_peaks(current: FaultCurrent, ends_s: FloatArray, frequency_hz: floa
     return value
 
 
-def time_grid(frequency_hz: float) -> FloatArray:
-    """Return the common times of all decay curves: fine in the first cycles, to 10 s; with T/2 and T.
+def time_grid(frequency_hz: float, *, fine: bool) -> FloatArray:
+    """Return the common times of the totals, to 10 s, with T/2 and T.
 
     Parameters
     ----------
     frequency_hz : float
         [Hz]
+    fine : bool
+        Fine in the first cycles, for the minimum currents that devices must see; else a few instants.
 
     Returns
     -------
@@ -151,5 +154,7 @@ def time_grid(frequency_hz: float) -> FloatArray:
         Ascending, from 0. [s]
     """
     own = np.array([0.5 / frequency_hz, 1.0 / frequency_hz])
+    if not fine:
+        return np.unique(np.concatenate([_FEW_S, own]).round(9))
     parts = [np.linspace(0.0, 0.02, 9), np.linspace(0.025, 0.1, 16), np.geomspace(0.12, 10.0, 24), own]
     return np.unique(np.concatenate(parts).round(9))

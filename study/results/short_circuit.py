@@ -121,8 +121,9 @@ class FaultCase:
     ``equivalent_half_a`` and ``equivalent_ip_a`` come from the standard's equivalent generator behind an
     impedance (NaN on boards that sources feed directly, where contributions are added one by one).
 
-    [place, time]: ``iac_a`` and ``idc_a`` at ``time_s``; the two-phase and line-earth ``iac_2ph_a`` and
-    ``iac_earth_a`` (NaN where the neutral is not earthed); ``least_a`` the least of the three.
+    [place, time]: ``iac_a`` and ``idc_a`` at ``time_s`` (few instants in the maximum case); the two-phase
+    and line-earth ``iac_2ph_a`` and ``iac_earth_a`` (NaN where the neutral is not earthed); ``least_a`` the
+    least of the three.
     [place, parting]: ``dc_part`` is idc / (sqrt2 Iac) at ``parting_s`` (above 1: no current zero).
     [place, source]: ``parts`` of the three-phase fault, ``parts_2ph`` and ``parts_earth`` of the others (all
     0 where the neutral is not earthed), and what each source gives to the three-phase fault:
