@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -244,18 +245,24 @@ class Openers:
         ----------
         station, held
             As for `delayed_release_s`.
-        current_a : ndarray, shape (row,)
+        current_a : ndarray, shape (row, ...)
             The largest current of each row. [A]
 
         Returns
         -------
-        ndarray, shape (row,)
-            [s]
+        ndarray
+            The shape of the currents. [s]
         """
-        edges, row = self._delayed(station, held)
         found = np.full(current_a.shape, np.inf)
-        if edges:
-            np.minimum.at(found, row, edge_times_s(edges, current_a[row][:, None])[:, 0])
+        key = 2 * station + held
+        order = np.argsort(key, kind="stable")
+        bounds = np.flatnonzero(np.diff(key[order], prepend=-1)).tolist()
+        for first, last in pairwise([*bounds, len(order)]):
+            rows = order[first:last]
+            edges, _ = self._delayed(station[rows[:1]], held[rows[:1]])
+            if edges:
+                amps = np.broadcast_to(current_a[rows].reshape(1, -1), (len(edges), current_a[rows].size))
+                found[rows] = edge_times_s(edges, amps).min(axis=0).reshape(current_a[rows].shape)
         return found
 
     def largest_a(self, currents: Currents) -> FloatArray:

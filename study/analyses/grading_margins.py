@@ -13,6 +13,7 @@ from study.analyses.grading_bands import Openers
 from study.analyses.grading_currents import Currents, between
 from study.analyses.grading_faults import (
     BETWEEN,
+    LEVELS,
     MAX_FAR,
     MAX_NEAR,
     MIN_FAR,
@@ -101,6 +102,12 @@ class ModeMargins:
         self.own_row = faults.own[faults.feed]
         self.behind = np.flatnonzero(np.arange(len(faults.feed)) != self.own_row)
         self._corners = {level: self._start(level) for level in (MAX_NEAR, MAX_FAR, MIN_NEAR, MIN_FAR)}
+        self.starts = [self.start(level) for level in range(len(LEVELS))]
+        self._bounds = self.openers.release_bound_s(
+            faults.station[self.behind],
+            np.stack([x.largest_a[self.behind] for x in self.starts], axis=1),
+            rules.held[self.behind],
+        )
 
     def _start(self, level: int) -> Start:
         currents = self.faults.currents(np.arange(len(self.faults.feed)), level)
@@ -149,8 +156,8 @@ class ModeMargins:
         feeds = np.flatnonzero(faults.exists(level))
         late, edge = np.full(len(faults.feeds), np.nan), np.full(len(faults.feeds), NO_EDGE, np.int64)
         late[feeds], edge[feeds] = self._late_s(feeds, faults.currents(faults.own[feeds], level))
-        rows = self.behind[np.isin(faults.feed[self.behind], feeds)]
-        start = self.start(level)
+        of_behind = np.flatnonzero(faults.exists(level)[faults.feed[self.behind]])
+        rows, start = self.behind[of_behind], self.starts[level]
         near = Nearest(late_s=late[faults.feed[rows]], start_a=start.half.ac_a[self.own_row[rows], 0])
         release, margin = (np.full(len(faults.feed), np.nan) for _ in range(2))
         rule = np.full(len(faults.feed), CURVES, np.int64)
@@ -158,6 +165,7 @@ class ModeMargins:
             rows,
             near,
             Start(half=start.half.rows(rows), largest_a=start.largest_a[rows]),
+            self._bounds[of_behind, level],
             lambda some: faults.currents(rows[some], level),
         )
         return Stage(late_s=late, edge=edge, release_s=release, margin_s=margin, rule=rule)
@@ -182,7 +190,9 @@ class ModeMargins:
         late, _ = self._late_s(self.faults.feed[rows], own)
         near = Nearest(late_s=late, start_a=self.openers.half(own).ac_a[:, 0])
         start = Start(half=self.openers.half(through), largest_a=self.openers.largest_a(through))
-        _, margin, _ = self._judged(rows, near, start, through.rows)
+        station, held = self.faults.station[rows], self.rules.held[rows]
+        bound = self.openers.release_bound_s(station, start.largest_a, held)
+        _, margin, _ = self._judged(rows, near, start, bound, through.rows)
         return margin, own.ac_a[:, 0]
 
     def _late_s(self, feeds: IntArray, currents: Currents) -> tuple[FloatArray, IntArray]:
@@ -214,17 +224,21 @@ class ModeMargins:
         fast = near.late_s <= LIMITS_WITHIN_S
         sheets: dict[int, list[int]] = {}
         for row in np.flatnonzero(fast).tolist():
-            if self.openers.openers[station[row]].sheet is not None:
-                sheets.setdefault(int(station[row]), []).append(row)
-        for s, rows in sheets.items():
-            sheet = self.openers.openers[s].sheet
-            assert sheet is not None
-            peak[rows] = np.nan_to_num(sheet.cut_off_at_a(near.start_a[rows]) / _SQRT2, nan=np.inf)
-            heat[rows] = np.nan_to_num(sheet.heat_at_a2s(near.start_a[rows]), nan=np.inf)
+            sheets.setdefault(id(self.openers.openers[station[row]].sheet), []).append(row)
+        for rows in sheets.values():
+            sheet = self.openers.openers[station[rows[0]]].sheet
+            if sheet is not None:
+                peak[rows] = np.nan_to_num(sheet.cut_off_at_a(near.start_a[rows]) / _SQRT2, nan=np.inf)
+                heat[rows] = np.nan_to_num(sheet.heat_at_a2s(near.start_a[rows]), nan=np.inf)
         return peak, np.where(fast, np.minimum(heat, self.openers.cleared_a2s[station]), np.inf)
 
     def _judged(
-        self, rows: IntArray, near: Nearest, start: Start, currents: Callable[[IntArray], Currents]
+        self,
+        rows: IntArray,
+        near: Nearest,
+        start: Start,
+        bound_s: FloatArray,
+        currents: Callable[[IntArray], Currents],
     ) -> tuple[FloatArray, FloatArray, IntArray]:
         """Return release, margin and rule of stations behind; bounds from below where they are ample."""
         openers, rules = self.openers, self.rules
@@ -236,7 +250,7 @@ class ModeMargins:
         peak, heat = peak * reach, heat * reach**2
         bare = openers.threatened(station, start.half, np.full(len(rows), np.inf))
         at_once = openers.threatened(station, start.half, peak)
-        release = np.where(at_once, 0.0, openers.release_bound_s(station, start.largest_a, held))
+        release = np.where(at_once, 0.0, bound_s)
         known = np.where(np.isnan(near.late_s), -np.inf, near.late_s)
         exact = np.flatnonzero(~at_once & (release < np.minimum(known, 1e9) + self.needed_s + AMPLE_S))
         if len(exact):

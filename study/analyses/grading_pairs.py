@@ -1,0 +1,270 @@
+"""Pairs of stations over all modes: the governing fault of each, and how far a partial one discriminates."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from study.analyses.grading_bands import Openers
+from study.analyses.grading_faults import LEVELS, MAX_FAR, MAX_NEAR, MIN_FAR, ModeFaults
+from study.analyses.grading_margins import DOWNSTREAM_UNKNOWN, UPSTREAM_UNKNOWN, ModeMargins, Stage
+from study.analyses.grading_rules import Rules, mode_rules
+from study.analyses.grading_zones import Feed, Zones
+from study.results.grading import FULL, NONE, NOT_ASSESSED, NOT_NEEDED, PAIR_KINDS, PARTIAL, PairKind
+
+FloatArray = NDArray[np.float64]
+IntArray = NDArray[np.int64]
+BoolArray = NDArray[np.bool_]
+
+# Sets that run together from which on the faulty one can be told by the current of all the others: the
+# breaker of each may have an instantaneous stage above its own contribution; ABS 4-8-2/9.11, from memory.
+SETS_TOLD_APART: Final = 3
+_BISECTIONS = 10
+_PATH: Final = (MIN_FAR, 4, 5, 6, MAX_NEAR)
+_SQRT2 = 2.0**0.5
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ModePairs:
+    """The pairs of one mode, arrays [row] over the rows behind; fields as in `GradingPairs`.
+
+    ``key`` [row] is (downstream, upstream, inward).
+    """
+
+    key: tuple[tuple[int, int, bool], ...]
+    zone: tuple[str, ...]
+    row: IntArray
+    kind: IntArray
+    extent: IntArray
+    level: IntArray
+    rule: IntArray
+    clears_s: FloatArray
+    releases_s: FloatArray
+    margin_s: FloatArray
+    needed_s: FloatArray
+    current_a: FloatArray
+    upstream_a: FloatArray
+    up_to_a: FloatArray
+    from_a: FloatArray
+    largest_a: FloatArray
+    current_ratio: FloatArray
+
+
+def pair_kinds(faults: ModeFaults, blind: BoolArray) -> list[PairKind]:
+    """Return the kind of each row behind, [row of all rows].
+
+    Parameters
+    ----------
+    faults : ModeFaults
+        Of the mode.
+    blind : ndarray of bool, shape (row,)
+        Where a station does not see the fault.
+
+    Returns
+    -------
+    list of str
+        For a feed's own row: series.
+    """
+    zones = faults.zones
+    found: list[PairKind] = []
+    feeds_of: dict[int, int] = {}
+    for feed in faults.feeds:
+        feeds_of[feed.zone] = feeds_of.get(feed.zone, 0) + 1
+    for n, feed in enumerate(faults.feeds):
+        whole = _kind_of_fault(feed, zones, feeds_of[feed.zone])
+        if blind[faults.own[n]]:
+            whole = "looks away"
+        same = _same_circuit(feed, zones)
+        found.append("series")
+        found += ["same circuit" if s in same and whole == "series" else whole for s, _ in feed.behind]
+    return found
+
+
+def _kind_of_fault(feed: Feed, zones: Zones, feeds: int) -> PairKind:
+    zone = zones.zones[feed.zone]
+    if zone.sources and not zone.boards:
+        return "fault of a set"
+    if zone.passes_on and feeds > 1:
+        return "parallel path"
+    return "series"
+
+
+def _same_circuit(feed: Feed, zones: Zones) -> set[int]:
+    """Return the stations that open the same circuit as a feed's own: nothing branches off in between."""
+    found: set[int] = set()
+    station, here = feed.station, zones.side[feed.station][0 if feed.inward else 1]
+    while zones.zones[here].passes_on:
+        station = next(s for s, _ in zones.zones[here].stations if s != station)
+        found.add(station)
+        outside, inside = zones.side[station]
+        here = inside if here == outside else outside
+    return found
+
+
+class ModePairing:
+    """The pairs of one mode with one set of devices.
+
+    Parameters
+    ----------
+    faults : ModeFaults
+        The faults of the mode, their currents worked out.
+    openers : Openers
+        What opens each station.
+    rules : Rules
+        Beside the curves.
+    needed_s : float
+        The least margin. [s]
+    """
+
+    def __init__(self, faults: ModeFaults, openers: Openers, rules: Rules, needed_s: float) -> None:
+        self.faults, self.openers = faults, openers
+        self.mode_rules = mode_rules(rules, faults, openers)
+        self.margins = ModeMargins(faults, openers, self.mode_rules, needed_s)
+        self.stages = [self.margins.stage(level) for level in range(len(LEVELS))]
+        self.rows = self.margins.behind
+        fused = np.isfinite(openers.melts_a2s[faults.station[self.rows]])
+        self.needed_s = np.where(fused, 0.0, needed_s)
+
+    def pairs(self) -> ModePairs:
+        """Return the pairs of the mode."""
+        faults, rows = self.faults, self.rows
+        own = faults.station[self.margins.own_row[rows]]
+        kinds = pair_kinds(faults, self.mode_rules.blind)
+        kind = np.array([PAIR_KINDS.index(kinds[r]) for r in rows.tolist()], np.int64)
+        judged = self._judged(kind)
+        level, margin, unknown = self._governing()
+        feed = faults.feed[rows]
+        at = (level, np.arange(len(rows)))
+        starts = self.margins.starts
+        own_a = np.stack([s.half.ac_a[self.margins.own_row[rows], 0] for s in starts])
+        up_a = np.stack([s.half.ac_a[rows, 0] for s in starts])
+        fails = margin < self.needed_s
+        up_to, low = self._range(np.flatnonzero(fails & judged))
+        partial = (np.nan_to_num(up_to) > 0.0) | np.isfinite(low)
+        extent = np.select(
+            [~judged, fails & partial, fails, unknown], [NOT_NEEDED, PARTIAL, NONE, NOT_ASSESSED], FULL
+        )
+        inward = [faults.feeds[f].inward for f in feed.tolist()]
+        zones = [faults.zones.zones[faults.feeds[f].zone].name for f in feed.tolist()]
+        return ModePairs(
+            key=tuple(zip(own.tolist(), faults.station[rows].tolist(), inward, strict=True)),
+            zone=tuple(zones),
+            row=rows,
+            kind=kind,
+            extent=extent.astype(np.int64),
+            level=level,
+            rule=np.stack([s.rule[rows] for s in self.stages])[at],
+            clears_s=np.stack([s.late_s[feed] for s in self.stages])[at],
+            releases_s=np.stack([s.release_s[rows] for s in self.stages])[at],
+            margin_s=margin,
+            needed_s=self.needed_s,
+            current_a=own_a[at],
+            upstream_a=up_a[at],
+            up_to_a=up_to,
+            from_a=low,
+            largest_a=own_a[MAX_NEAR],
+            current_ratio=self._current_ratio(),
+        )
+
+    def failing(self) -> list[tuple[tuple[int, int, bool], float]]:
+        """Return the pairs that fail, with their least margin: what a change of a setting is held against."""
+        faults, rows = self.faults, self.rows
+        kinds = pair_kinds(faults, self.mode_rules.blind)
+        kind = np.array([PAIR_KINDS.index(kinds[r]) for r in rows.tolist()], np.int64)
+        _, margin, _ = self._governing()
+        bad = np.flatnonzero(self._judged(kind) & (margin < self.needed_s))
+        own = faults.station[self.margins.own_row[rows[bad]]].tolist()
+        up = faults.station[rows[bad]].tolist()
+        inward = [faults.feeds[f].inward for f in faults.feed[rows[bad]].tolist()]
+        return list(zip(zip(own, up, inward, strict=True), margin[bad].tolist(), strict=True))
+
+    def _judged(self, kind: IntArray) -> BoolArray:
+        """Return the rows that have to discriminate."""
+        series = kind == PAIR_KINDS.index("series")
+        of_sets = kind == PAIR_KINDS.index("fault of a set")
+        feed = self.faults.feed[self.rows]
+        quick = np.isfinite(self.mode_rules.quick_s)[feed]
+        together = self._sets_together()[feed] >= SETS_TOLD_APART
+        directed = np.array([self._directed(k) for k in range(len(self.faults.feeds))], bool)[feed]
+        parallel = kind == PAIR_KINDS.index("parallel path")
+        return np.asarray(series | (of_sets & (together | quick)) | (parallel & (directed | quick)))
+
+    def _sets_together(self) -> IntArray:
+        """Return how many lasting sources run in the island of each feed, [feed]."""
+        case = self.faults.maximum.ways.case
+        island = case.sources.island[self.faults.maximum.ways.lasting]
+        here = case.routes.place_island[self.faults.place[0]]
+        return np.asarray((island[None, :] == here[:, None]).sum(axis=1), np.int64)
+
+    def _directed(self, feed: int) -> bool:
+        members = self.openers.openers[self.faults.feeds[feed].station].members
+        return any(self.openers.models[k].direction or self.openers.models[k].zone for k in members)
+
+    def _governing(self) -> tuple[IntArray, FloatArray, BoolArray]:
+        """Return the level with the least margin, that margin, and where a level could not be told."""
+        margin = np.stack([s.margin_s[self.rows] for s in self.stages])
+        rule = np.stack([s.rule[self.rows] for s in self.stages])
+        open_ = np.isin(rule, (UPSTREAM_UNKNOWN, DOWNSTREAM_UNKNOWN)) & np.isnan(margin)
+        there = np.stack([self.faults.exists(k) for k in range(len(LEVELS))])[:, self.faults.feed[self.rows]]
+        known = np.where(np.isnan(margin), np.inf, margin)
+        level = known.argmin(axis=0)
+        unknown = (open_ & there).any(axis=0)
+        first = (open_ & there).argmax(axis=0)
+        least = known[level, np.arange(len(level))]
+        show = unknown & ~(least < self.needed_s)
+        return np.where(show, first, level), np.where(show, np.nan, least), np.asarray(unknown, bool)
+
+    def _current_ratio(self) -> FloatArray:
+        station = self.faults.station[self.rows]
+        found = np.full(len(self.rows), np.inf)
+        for stage, start in zip(self.stages, self.margins.starts, strict=True):
+            half = start.half.rows(self.rows)
+            symmetrical = half.ac_a[:, 0]
+            peak = symmetrical + half.dc_a[:, 0] / _SQRT2
+            with np.errstate(divide="ignore", invalid="ignore"):
+                ratio = np.fmin(
+                    self.openers.at_once_a[0, station] / peak,
+                    self.openers.at_once_a[1, station] / symmetrical,
+                )
+            found = np.where(np.isnan(stage.margin_s[self.rows]), found, np.fmin(found, ratio))
+        return found
+
+    def _range(self, failing: IntArray) -> tuple[FloatArray, FloatArray]:
+        """Return up to and from which current partial pairs discriminate, [row]; NaN where nothing bounds it.
+
+        Found by bisection over the level of the fault between the least and the greatest.
+        """
+        up_to, start = (np.full(len(self.rows), np.nan) for _ in range(2))
+        if not len(failing):
+            return up_to, start
+        good = self._good_on_path(failing)
+        rises = ~good[0]  # fails at the least fault: may discriminate from somewhere up
+        changed = (good != good[0]).argmax(axis=0)
+        never = (good == good[0]).all(axis=0)
+        up_to[failing[never & rises]] = 0.0
+        some = failing[~never]
+        low = (changed[~never] - 1) / (len(_PATH) - 1.0)
+        high = changed[~never] / (len(_PATH) - 1.0)
+        current = np.full(len(some), np.nan)
+        first = good[0][~never]
+        for _ in range(_BISECTIONS):
+            middle = 0.5 * (low + high)
+            margin, amps = self.margins.at_parts(self.rows[some], middle)
+            same = ~(margin < self.needed_s[some]) == first
+            low, high = np.where(same, middle, low), np.where(same, high, middle)
+            current = np.where(same == first, amps, np.where(np.isnan(current), amps, current))
+        up_to[some[first]], start[some[~first]] = current[first], current[~first]
+        return up_to, start
+
+    def _good_on_path(self, failing: IntArray) -> BoolArray:
+        """Return whether failing rows discriminate at the faults from the least to the greatest."""
+        rows = self.rows[failing]
+        there = self.faults.there[self.faults.feed[rows]]
+        path: list[Stage] = [self.stages[level] for level in _PATH]
+        margin = np.stack([s.margin_s[rows] for s in path])
+        margin[0] = np.where(there, margin[0], self.stages[MAX_FAR].margin_s[rows])
+        margin = np.where(np.isnan(margin), margin[-1], margin)
+        return np.asarray(~(margin < self.needed_s[failing]))
