@@ -6,11 +6,11 @@ from collections.abc import Sequence
 from dataclasses import replace
 from typing import Final
 
-from study.formulas.curves_iec60255 import RESET_S
+from study.formulas.curves_iec60255 import FLAT_ABOVE, RESET_S
 from study.formulas.fuse_bands_iec60269 import Points, curve_edge, fuse_edges
 from study.formulas.relays_iec60255 import DEFINITE, Reset, relay_edges
 from study.formulas.releases_iec60947 import instantaneous_edges, long_time_edges, short_time_edges
-from study.formulas.thermal_iec60947_4 import CONTACTOR_BREAKS, overload_relay_edges
+from study.formulas.thermal_iec60947_4 import CONTACTOR_OPENS_S, overload_relay_edges
 from study.formulas.trip_band import TripBand
 from study.formulas.trip_law import Edge
 from study.model.protection import CurvePoint, Device
@@ -120,11 +120,16 @@ def _fuse_band(device: Device) -> TripBand:
 def _overload_band(device: Device) -> TripBand:
     if device.long_time_a is None or device.trip_class is None:
         return _unknown("the current setting or the trip class is not given")
+    # A starter breaks what its relay trips up to the take-over current of the breaker or fuse before it:
+    # IEC 60947-4-1, annex B.4, from memory. The contactor's own rating is not on the sheet.
     early, late = overload_relay_edges(
-        device.long_time_a, device.trip_class, breaks_up_to_a=CONTACTOR_BREAKS * device.i_rated_a
+        device.long_time_a, device.trip_class, breaks_up_to_a=FLAT_ABOVE * device.long_time_a
     )
-    opens, breaks = device.opening_time_min_s, device.breaking_time_max_s
-    return TripBand(earliest=(replace(early, after_s=opens),), latest=(replace(late, after_s=breaks),))
+    breaks = max(device.breaking_time_max_s, CONTACTOR_OPENS_S)
+    return TripBand(
+        earliest=(replace(early, after_s=device.opening_time_min_s),),
+        latest=(replace(late, after_s=breaks),),
+    )
 
 
 def _curve_band(device: Device, curve: Sequence[CurvePoint]) -> TripBand:

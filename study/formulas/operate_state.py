@@ -127,7 +127,7 @@ def operate(bands: Sequence[TripBand], history: CurrentHistory, half_cycle_s: fl
     [0.3, inf]
     """
     (release, early, early_stage), (_, late, late_stage) = (
-        _one_side(bands, history, half_cycle_s, early=x) for x in (True, False)
+        first_operation(bands, history, half_cycle_s, early=x) for x in (True, False)
     )
     return Operation(
         release_s=release,
@@ -138,10 +138,27 @@ def operate(bands: Sequence[TripBand], history: CurrentHistory, half_cycle_s: fl
     )
 
 
-def _one_side(
+def first_operation(
     bands: Sequence[TripBand], history: CurrentHistory, half_cycle_s: float, *, early: bool
 ) -> tuple[FloatArray, FloatArray, tuple[str, ...]]:
-    """Return when the first stage of each band releases, when the device is open, and the stage's name."""
+    """Return one side of `operate`: when the first stage releases, when the device is open, which stage.
+
+    Parameters
+    ----------
+    bands : sequence of TripBand
+        One for each case.
+    history : CurrentHistory
+        Currents, [case, time].
+    half_cycle_s : float
+        T/2. [s]
+    early : bool
+        True: the earliest edges, False: the latest.
+
+    Returns
+    -------
+    tuple
+        Release and opening [s], name of the stage; inf, inf and "" for never, NaN where it is not known.
+    """
     edges = [edge for band in bands for edge in side(band, early=early)]
     case = np.array([n for n, band in enumerate(bands) for _ in side(band, early=early)], np.int64)
     release, ends = (np.full(len(bands), np.inf) for _ in range(2))

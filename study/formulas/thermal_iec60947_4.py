@@ -16,6 +16,9 @@ CLASS_EARLIEST_S: Final = MappingProxyType({"5": 0.5, "10A": 2.0, "10": 4.0, "20
 CLASS_WARM_S: Final = MappingProxyType({"5": 120.0, "10A": 120.0, "10": 240.0, "20": 480.0, "30": 720.0})
 WARM_AT: Final = 1.5
 NO_TRIP: Final = 1.05
+# A contactor has dropped out and broken the current within this time of the relay's contact; common practice,
+# no source.
+CONTACTOR_OPENS_S: Final = 0.1
 # A contactor of utilisation category AC-3 breaks 8 times its rated operational current: IEC 60947-4-1,
 # table 7, from memory. Above that the breaker or fuse before it must clear.
 CONTACTOR_BREAKS: Final = 8.0
