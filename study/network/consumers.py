@@ -92,8 +92,9 @@ def ports_of(
 class Drawn:
     """Consumers of some scenarios, with what does not depend on the voltages worked out, [place, scenario].
 
-    On buses ``s`` is conj(S) and ``y`` the conjugate admittance. On leaves ``ratio`` is V'/V and ``product``
-    z' conj(S), of which ``twice`` is twice the real part and ``fourfold`` four times the square.
+    On buses ``s`` is conj(S) and ``y`` the conjugate admittance. On leaves ``ratio`` is V'/V without constant
+    power and ``product`` z' conj(S), of which ``twice`` is twice the real part and ``fourfold`` four times
+    the square.
     """
 
     ports: Ports
@@ -116,22 +117,8 @@ class Drawn:
         u = 0.5 * (b + np.sqrt(b * b - self.fourfold))
         return np.asarray((u + np.conj(self.product)) * (behind / square))
 
-    def current(self, v: ComplexArray) -> ComplexArray:
-        """Return what is drawn at every port but for the near ends of the leaves' branches, per unit."""
-        ports = self.ports
-        if not ports.leaves and len(ports.direct) == len(ports.bus):
-            return np.asarray(self.s / np.conj(v) + self.y * v)
-        out = np.zeros((len(v), max(v.shape[1], self.s.shape[1], self.product.shape[1])), complex)
-        if len(ports.direct):
-            here = v[ports.direct]
-            out[ports.direct] = self.s / np.conj(here) + self.y * here
-        if ports.leaves:
-            through = ports.into * self.leaf_voltage(v)
-            out[ports.parents] += np.add.reduceat(through, ports.first, axis=0)
-        return out
-
     def gradient(self, v: ComplexArray) -> FloatArray:
-        """Return the gradient of `current` for one scenario, [4, port]: Re by e, Re by f, Im by e, Im by f.
+        """Return the gradient of the current for one scenario, [4, port]: Re by e, Re by f, Im by e, Im by f.
 
         With ``dI = A dV + B conj(dV)``: on a bus ``A = conj(y)``, ``B = -conj(S)/conj(V)^2``; through a leaf,
         ``beta = -z' conj(S)/conj(v)^2``, ``V' = k V`` and ``dv = (k dV - beta conj(k dV))/(1 - |beta|^2)``.
@@ -175,4 +162,96 @@ def drawn_by(ports: Ports, demand: Demand) -> Drawn:
         product=product,
         twice=2.0 * product.real,
         fourfold=4.0 * (product.real**2 + product.imag**2),
+    )
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Currents:
+    """What consumers draw at the ports, as a function of the voltages there, for many evaluations.
+
+    A leaf without constant power is an admittance at its port: ``straight`` [port, scenario] adds them up.
+    The others, with k = V'/V without their power and p = z' conj(S), draw ``ytf' (u + conj(p)) / conj(k V)``
+    with ``2 u = b + sqrt(b^2 - 4 |p|^2)`` and ``b = |k|^2 |V|^2 - 2 Re p``; arrays [leaf, scenario]:
+    ``square`` is |k|^2, ``half_re`` and ``half_im`` multiply 2 u. ``parent`` [leaf] is the port, ``parents``
+    each port once, ``first`` its first leaf, and ``fixed`` [parents, scenario] the sum of the part without u.
+    """
+
+    ports: Ports
+    s: ComplexArray
+    y: ComplexArray
+    straight: ComplexArray
+    parent: IntArray
+    parents: IntArray
+    first: IntArray
+    square: FloatArray
+    twice: FloatArray
+    fourfold: FloatArray
+    half_re: FloatArray
+    half_im: FloatArray
+    fixed: ComplexArray
+
+    def at(self, v: ComplexArray) -> ComplexArray:
+        """Return what is drawn at every port but for the near ends of the leaves' branches, per unit."""
+        direct = self.ports.direct
+        if not self.ports.leaves and len(direct) == len(v):
+            return np.asarray(self.s / np.conj(v) + self.y * v)
+        out = self.straight * v
+        if len(direct):
+            here = v[direct]
+            out[direct] += self.s / np.conj(here) + self.y * here
+        if len(self.parents):
+            out[self.parents] += self._through(v) / np.conj(v[self.parents])
+        return np.asarray(out)
+
+    def _through(self, v: ComplexArray) -> ComplexArray:
+        """Return the current to the leaves with constant power, times the conjugate voltage."""
+        v_square = v.real**2 + v.imag**2
+        b = self.square * v_square[self.parent] - self.twice
+        double = b + np.sqrt(b * b - self.fourfold)
+        out = np.empty((len(self.parents), double.shape[1]), complex)
+        out.real = np.add.reduceat(self.half_re * double, self.first, axis=0)
+        out.imag = np.add.reduceat(self.half_im * double, self.first, axis=0)
+        return out + self.fixed
+
+
+def currents_of(drawn: Drawn) -> Currents:
+    """Return the consumers' currents as a function of the voltages.
+
+    Parameters
+    ----------
+    drawn : Drawn
+        Consumers of some scenarios.
+
+    Returns
+    -------
+    Currents
+        For the same scenarios.
+    """
+    ports, bent = drawn.ports, np.asarray(drawn.product.any(axis=1))
+    width = max(drawn.ratio.shape[1], drawn.product.shape[1])
+    straight = np.zeros((len(ports.bus), width), complex)
+    through = ports.into * drawn.ratio
+    k = np.flatnonzero(bent)
+    parent, ratio, product = ports.parent[k], drawn.ratio[k], drawn.product[k]
+    first = np.flatnonzero(np.diff(parent, prepend=-1))
+    square = ratio.real**2 + ratio.imag**2
+    half = through[k] * (0.5 / square)
+    if len(k) < ports.leaves:
+        through[k] = 0.0
+        straight[ports.parents] = np.add.reduceat(through, ports.first, axis=0)
+    fixed = 2.0 * half * np.conj(product)
+    return Currents(
+        ports=ports,
+        s=drawn.s,
+        y=drawn.y,
+        straight=straight,
+        parent=parent,
+        parents=parent[first],
+        first=first,
+        square=square,
+        twice=drawn.twice[k],
+        fourfold=drawn.fourfold[k],
+        half_re=np.ascontiguousarray(half.real),
+        half_im=np.ascontiguousarray(half.imag),
+        fixed=np.add.reduceat(fixed, first, axis=0) if len(k) else fixed,
     )

@@ -16,7 +16,7 @@ from scipy.linalg.lapack import dgetrf, dgetrs
 from scipy.sparse import csc_matrix, csr_array
 from scipy.sparse.linalg import SuperLU, splu
 
-from study.network.consumers import Demand, Drawn, Ports, drawn_by
+from study.network.consumers import Currents, Demand, Ports, drawn_by
 from study.network.laws import VoltageLaws, some, take
 from study.network.power import PowerLaws
 
@@ -197,15 +197,15 @@ class Problem:
         )
 
 
-def residual(problem: Problem, drawn: Drawn, x: Point) -> FloatArray:
+def residual(problem: Problem, currents: Currents, x: Point) -> FloatArray:
     """Return the residual of every row for one scenario.
 
     Parameters
     ----------
     problem : Problem
         One scenario.
-    drawn : Drawn
-        Its consumers.
+    currents : Currents
+        Of its consumers.
     x : Point
         Arrays with one column.
 
@@ -220,7 +220,7 @@ def residual(problem: Problem, drawn: Drawn, x: Point) -> FloatArray:
     # The sparse product by hand: the library's own costs more than the multiplications.
     current = np.add.reduceat(at.admittance.data * v[at.admittance.indices], at.row_start)
     np.subtract.at(current, at.source_bus, i)
-    current[at.ports.bus] += drawn.current(x.v[at.ports.bus])[:, 0]
+    current[at.ports.bus] += currents.at(x.v[at.ports.bus])[:, 0]
     out = np.empty(at.size)
     out[:n], out[n : 2 * n] = current.real, current.imag
     v_s = x.v[at.source_bus]

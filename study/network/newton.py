@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from study.network.consumers import Drawn, drawn_by
+from study.network.consumers import Currents, currents_of, drawn_by
 from study.network.equations import Factors, Point, Problem, Structure, jacobian, residual
 
 FloatArray = NDArray[np.float64]
@@ -71,9 +71,9 @@ def solve_one(problem: Problem, start: Point) -> Solved:
         Where ``converged`` is False the point is the best found.
     """
     at = problem.at
-    accept, drawn = at.accept, drawn_by(at.ports, problem.demand)
+    accept, currents = at.accept, currents_of(drawn_by(at.ports, problem.demand))
     x = _pack(start)
-    f = _residual(problem, drawn, start)
+    f = _residual(problem, currents, start)
     size = float(np.abs(f).max())
     factors: Factors | None = None
     fresh = False
@@ -86,7 +86,7 @@ def solve_one(problem: Problem, start: Point) -> Solved:
             if factors is None:
                 break
         trial = x - step * factors.solve(f)
-        f_trial = _residual(problem, drawn, _unpack(at, trial))
+        f_trial = _residual(problem, currents, _unpack(at, trial))
         size_trial = float(np.abs(f_trial).max())
         if size_trial < size:
             fresh = size_trial < SLOW * size
@@ -119,10 +119,10 @@ def _ended(at: Structure, x: FloatArray, size: float, count: int, factors: Facto
     )
 
 
-def _residual(problem: Problem, drawn: Drawn, x: Point) -> FloatArray:
+def _residual(problem: Problem, currents: Currents, x: Point) -> FloatArray:
     """Return the residual, infinite where a leaf's branch cannot carry its load at that point."""
     with np.errstate(invalid="ignore", over="ignore", divide="ignore"):
-        f = residual(problem, drawn, x)
+        f = residual(problem, currents, x)
     return np.where(np.isfinite(f), f, np.inf)
 
 

@@ -13,7 +13,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from study.network.consumers import Drawn, drawn_by
+from study.network.consumers import Currents, currents_of, drawn_by
 from study.network.equations import Factors, Point, Problem, Structure, jacobian
 from study.network.newton import Solved, flat_start, solve_one
 from study.network.sources import Law
@@ -90,7 +90,8 @@ def _pays(problem: Problem, count: int) -> bool:
 
 
 def _can_compile(problem: Problem) -> bool:
-    return not (problem.laws.code == Law.FIELD).any()
+    laws = problem.laws
+    return not (laws.code == Law.FIELD).any() and not (laws.crossed and laws.cross_x.shape[1] > 1)
 
 
 def _base(problem: Problem, start: Point | None) -> Solved:
@@ -193,14 +194,14 @@ class _Frame:
     def solve_block(self, out: Solutions, k: IntArray, problem: Problem) -> None:
         """Sweep one block of scenarios until every one has converged or stopped converging."""
         count = len(k)
-        drawn = drawn_by(self.at.ports, problem.demand)
-        right = self._first_right(problem, drawn, count)
+        currents = currents_of(drawn_by(self.at.ports, problem.demand))
+        right = self._first_right(problem, currents, count)
         residual = np.full(count, np.inf)
         sweeps = np.zeros(count, np.int64)
         with np.errstate(all="ignore"):  # a diverging scenario overflows; it is solved again by itself
             for _ in range(MOST_SWEEPS):
                 v, i, m = self._split(self.step(right))
-                new = self._right(problem, drawn, v, i, m)
+                new = self._right(problem, currents, v, i, m)
                 change = np.abs(new - right).max(axis=0)
                 sweeps += residual > self.accept
                 residual = np.where(np.isnan(change), np.inf, change)
@@ -215,11 +216,11 @@ class _Frame:
         out.residual_pu[k], out.iterations[k] = residual, sweeps
         out.converged[k] = residual <= self.accept
 
-    def _first_right(self, problem: Problem, drawn: Drawn, count: int) -> FloatArray:
+    def _first_right(self, problem: Problem, currents: Currents, count: int) -> FloatArray:
         """Return the right-hand side at the base point."""
         v = np.broadcast_to(self.base.v[self.local], (len(self.local), count))
         i = np.broadcast_to(self.i0, (self.at.sources, count))
-        return self._right(problem, drawn, v, i, np.broadcast_to(self.base.m, (self.at.islands, count)))
+        return self._right(problem, currents, v, i, np.broadcast_to(self.base.m, (self.at.islands, count)))
 
     def _split(self, x: FloatArray) -> tuple[ComplexArray, ComplexArray, FloatArray]:
         n, s = len(self.local), self.at.sources
@@ -228,11 +229,11 @@ class _Frame:
         return v, i, x[2 * n + 2 * s :]
 
     def _right(
-        self, problem: Problem, drawn: Drawn, v: ComplexArray, i: ComplexArray, m: FloatArray
+        self, problem: Problem, currents: Currents, v: ComplexArray, i: ComplexArray, m: FloatArray
     ) -> FloatArray:
         v_l, v_s = v[self.load_place], v[self.source_place]
         laws, power = problem.laws, problem.power
-        current = drawn.current(v_l)
+        current = currents.at(v_l)
         p, s = len(v_l), len(v_s)
         out = np.empty((2 * p + 2 * s, v.shape[1]))
         re_e, re_f, im_e, im_f = self.by_load
