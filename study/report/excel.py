@@ -11,7 +11,8 @@ from typing import Any
 from study.report.catalogue import all_tables
 from study.report.content import CAUTION, StudyOutcome
 from study.report.excel_charts import add_charts, chart_rows, stands_beside
-from study.report.excel_sheet import FIRST_ROW, Formats, Place, SheetWriter, cell_range, layout
+from study.report.excel_formats import Formats
+from study.report.excel_sheet import FIRST_ROW, Place, SheetWriter, cell_range, layout
 from study.report.style import ACCENT, QUIET, TINT
 from study.report.tables import SHEETS, Table
 from study.report.tables_verdicts import VerdictGrid, verdict_grid

@@ -6,46 +6,22 @@ import math
 import textwrap
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
+from functools import lru_cache
 from typing import Any, Final
 
-from study.report.numbers import excel_format
-from study.report.style import ACCENT, QUIET, RULE, TINT, VERDICTS, VerdictLook
+from study.issues import StudyError
+from study.report.excel_formats import Formats, padded_format, row_look
+from study.report.style import ACCENT, QUIET, RULE, TINT, VERDICTS
 from study.report.tables import Column, Table, Value
 
 FIRST_ROW: Final = 4
+LAST_ROW: Final = 1_048_576
+MOST_LINKS: Final = 65_000
+"""On a sheet; a spreadsheet program takes 65 530, and the writer would leave out the cells beyond."""
 _WIDEST_TEXT = 26
 _WIDEST_LONG_TEXT = 44
 _NARROWEST = 7.5
 _LINE_POINTS = 13.5
-
-
-class Formats:
-    """Cell formats of the result workbook, each made once.
-
-    Parameters
-    ----------
-    book : xlsxwriter.Workbook
-        The workbook.
-    """
-
-    def __init__(self, book: Any) -> None:
-        self._book = book
-        self._made: dict[tuple[tuple[str, Any], ...], Any] = {}
-
-    def get(self, **properties: Any) -> Any:
-        """Return the format with these properties."""
-        whole = {"font_name": "Calibri", "font_size": 10, "valign": "top", **properties}
-        key = tuple(sorted(whole.items()))
-        if key not in self._made:
-            self._made[key] = self._book.add_format(whole)
-        return self._made[key]
-
-    def colours(self, look: VerdictLook) -> Any:
-        """Return the colours of a status word, for a conditional format."""
-        key = (("status", look.css),)
-        if key not in self._made:
-            self._made[key] = self._book.add_format({"font_color": look.ink, "bg_color": look.ground})
-        return self._made[key]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -97,6 +73,11 @@ def layout(
             )
         )
         row = end + 3
+    if row > LAST_ROW:
+        raise StudyError(
+            f"the sheet {tables[0].sheet} would need {row} rows, more than a sheet can have; "
+            "let one row stand for equal loads, or study fewer modes at a time"
+        )
     return places
 
 
@@ -112,8 +93,10 @@ class SheetWriter:
         Cell formats of the workbook.
     widths : dict
         Characters that each column has to hold.
-    texts : dict
-        The cells of each measured table as text, by its key.
+    texts, decimals : dict
+        The cells of each measured table as text, and their decimals, by its key.
+    links : int
+        How many cells are links by now.
     verdict_ranges : list of str
         Ranges with status words.
     """
@@ -122,6 +105,8 @@ class SheetWriter:
     formats: Formats
     widths: dict[int, float] = field(default_factory=dict)
     texts: dict[str, list[tuple[str, ...]]] = field(default_factory=dict)
+    decimals: dict[str, list[tuple[int, ...]]] = field(default_factory=dict)
+    links: int = 0
     verdict_ranges: list[str] = field(default_factory=list)
 
     def text(self, row: int, column: int, text: str, **properties: Any) -> None:
@@ -133,8 +118,9 @@ class SheetWriter:
 
         A table that is `alone` on its sheet may have a wider first column.
         """
-        texts = [table.texts(c) for c in range(len(table.columns))]
-        self.texts[table.key] = texts
+        decimals = [table.decimals(c) for c in range(len(table.columns))]
+        texts = [table.texts(c, decimals[c]) for c in range(len(table.columns))]
+        self.texts[table.key], self.decimals[table.key] = texts, decimals
         for c, column in enumerate(table.columns):
             longest = max((len(t) for t in texts[c]), default=0)
             wide = column.kind == "long text" or (alone and c == 0)
@@ -164,13 +150,13 @@ class SheetWriter:
 
     def _column(self, place: Place, c: int, column: Column) -> None:
         table = place.table
-        decimals, texts = table.decimals(c), self.texts[table.key][c]
+        decimals, texts = self.decimals[table.key][c], self.texts[table.key][c]
         most = max(decimals, default=0)
+        number_looks = {d: {"num_format": padded_format(d, most, column)} for d in set(decimals)}
         for r, value in enumerate(table.values[c]):
-            look = _row_look(table.style(r))
+            look = row_look(table.style(r))
             at = place.first_row + r, c
-            number = {"num_format": _padded(decimals[r], most, column)}
-            self._cell(at, value, column, text=texts[r], number=number | look, words=look)
+            self._cell(at, value, column, text=texts[r], number=number_looks[decimals[r]] | look, words=look)
         if column.kind == "verdict":
             self.verdict_ranges.append(cell_range(place.first_row, c, place.last_row, c))
 
@@ -187,7 +173,8 @@ class SheetWriter:
         row, c = at
         if value is None or value == "":
             self.sheet.write_blank(row, c, None, self.formats.get(**words))
-        elif column.kind == "cell":
+        elif column.kind == "cell" and self.links < MOST_LINKS:
+            self.links += 1
             link = self.formats.get(font_color=ACCENT, underline=1, align="left", indent=1, **words)
             self.sheet.write_url(row, c, internal_link(str(value)), link, str(value))
         elif isinstance(value, (int, float)) and not isinstance(value, bool) and math.isfinite(value):
@@ -198,22 +185,29 @@ class SheetWriter:
         else:
             self.text(row, c, text, align="right", font_color=QUIET, **words)
 
+    def _room(self, c: int) -> int:
+        """Return the characters that stand side by side in a column."""
+        return max(4, int(self.widths[c] - 0.5))
+
     def _lines(self, text: str, c: int) -> int:
         """Return the lines that a text takes in its column."""
-        width = max(4, int(self.widths[c] - 0.5))
-        return 1 if len(text) <= width else len(textwrap.wrap(text, width))
+        width = self._room(c)
+        return 1 if len(text) <= width else _wrapped_lines(text, width)
 
     def _heights(self, place: Place) -> None:
         """Set the heights of the heading and of rows with long text."""
         table, texts = place.table, self.texts[place.table.key]
         lines = max(self._lines(column.title, c) for c, column in enumerate(table.columns))
         self.sheet.set_row(place.first_row - 1, _LINE_POINTS * lines + 3)
-        wide = [c for c, column in enumerate(table.columns) if column.is_text]
-        for r in range(table.n_rows):
-            if table.style(r) != "group":
-                most = max((self._lines(texts[c][r], c) for c in wide), default=1)
-                if most > 1:
-                    self.sheet.set_row(place.first_row + r, _LINE_POINTS * most + 2)
+        most = [1] * table.n_rows
+        for c in (c for c, column in enumerate(table.columns) if column.is_text):
+            room = self._room(c)
+            for r, text in enumerate(texts[c]):
+                if len(text) > room:
+                    most[r] = max(most[r], self._lines(text, c))
+        for r, needed in enumerate(most):
+            if needed > 1 and table.style(r) != "group":
+                self.sheet.set_row(place.first_row + r, _LINE_POINTS * needed + 2)
 
     def _header_format(self, column: Column, *, first: bool) -> Any:
         return self.formats.get(
@@ -302,29 +296,9 @@ class SheetWriter:
                 )
 
 
-def _row_look(style: str) -> dict[str, Any]:
-    match style:
-        case "group":
-            return {"bold": True, "font_color": ACCENT}
-        case "subtotal":
-            return {"italic": True, "top": 4, "top_color": RULE}
-        case "total":
-            return {"bold": True, "top": 1, "top_color": ACCENT}
-        case _:
-            return {}
-
-
-def _padded(decimals: int, most: int, column: Column) -> str:
-    """Return a number format that keeps the decimal point in line with the longest number of the column."""
-    if column.kind == "tiny":
-        return "0.0E+00"
-    if column.kind in ("count", "free"):
-        return "General"
-    if column.kind == "judged":
-        return excel_format(decimals)
-    spaces = most - decimals
-    point = "_." if decimals == 0 and most > 0 else ""
-    return excel_format(decimals) + point + "_0" * spaces
+@lru_cache(maxsize=10_000)
+def _wrapped_lines(text: str, width: int) -> int:
+    return len(textwrap.wrap(text, width))
 
 
 def internal_link(cell: str) -> str:

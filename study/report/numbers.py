@@ -196,8 +196,15 @@ def _rounded(value: float, decimals: int) -> str:
     """Round the number as it is written in decimals, halves away from zero, as a spreadsheet does."""
     if abs(value) >= _HUGE:
         return f"{value:.3e}"
-    step = Decimal(1).scaleb(-decimals)
-    return format(Decimal(repr(float(value))).quantize(step, context=_ROUNDING), "f")
+    written = repr(float(value))
+    places = len(written.partition(".")[2])
+    if "e" in written or (places == decimals + 1 and written[-1] == "5"):
+        step = Decimal(1).scaleb(-decimals)
+        return format(Decimal(written).quantize(step, context=_ROUNDING), "f")
+    if places <= decimals:
+        return written + "0" * (decimals - places)
+    # Away from a half, the number as written and its binary value round alike, and this is faster.
+    return f"{value:.{decimals}f}"
 
 
 def tiny(value: float) -> str:

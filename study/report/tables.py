@@ -219,6 +219,8 @@ class Table:
         base = column_decimals(pool, own.most_decimals, own.digits)
         if own.exact:
             base = exact_decimals(pool, own.most_decimals)
+        if against is None and not judged_by:
+            return (base,) * len(values)
         pairs = [(values, limits), *judged_by]
         return tuple(
             max(decimals_apart(a[row], b[row], base, _NOISE_DECIMALS) for a, b in pairs)
@@ -233,20 +235,23 @@ class Table:
             for value, limit, status in judged
         )
 
-    def texts(self, column: int) -> tuple[str, ...]:
+    def texts(self, column: int, decimals: Sequence[int] | None = None) -> tuple[str, ...]:
         """Return a column as the reader sees it.
 
         Parameters
         ----------
         column : int
             Position of the column.
+        decimals : sequence of int, optional
+            `decimals` of that column, where they are known already.
 
         Returns
         -------
         tuple of str
             One text for each row; blanks are empty.
         """
-        own, decimals = self.columns[column], self.decimals(column)
+        own = self.columns[column]
+        decimals = self.decimals(column) if decimals is None else decimals
         return tuple(_text(v, own, d) for v, d in zip(self.values[column], decimals, strict=True))
 
 

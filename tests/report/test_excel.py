@@ -11,6 +11,8 @@ import pytest
 from openpyxl import load_workbook
 from openpyxl.worksheet.worksheet import Worksheet
 
+from study.issues import StudyError
+from study.report import excel_sheet
 from study.report.catalogue import all_tables
 from study.report.excel import result_workbook
 from study.report.excel_sheet import internal_link
@@ -99,6 +101,26 @@ def test_governing_cells_are_links_into_the_workbook() -> None:
     assert cell.hyperlink is not None
     assert cell.hyperlink.location == "'Cables'!A4"
     assert cell.hyperlink.target is None
+
+
+def test_cells_beyond_the_most_links_keep_their_text(monkeypatch: pytest.MonkeyPatch) -> None:
+    """A sheet takes 65 530 links (Excel specifications and limits, from memory)."""
+    monkeypatch.setattr(excel_sheet, "MOST_LINKS", 3)
+    sheet = load_workbook(BytesIO(result_workbook(OUTCOME)))["R Load flow"]
+    whole = BOOK["R Load flow"]
+    assert [c.value for row in sheet.iter_rows() for c in row] == [
+        c.value for row in whole.iter_rows() for c in row
+    ]
+    inputs = [
+        c for row in sheet.iter_rows() for c in row if c.hyperlink and "'R " not in c.hyperlink.location
+    ]
+    assert len(inputs) == 3
+
+
+def test_a_sheet_longer_than_a_sheet_can_be_is_said(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(excel_sheet, "LAST_ROW", 40)
+    with pytest.raises(StudyError, match=r"would need \d+ rows, more than a sheet can have"):
+        result_workbook(OUTCOME)
 
 
 def test_link_to_a_sheet_with_a_blank_or_a_quote_in_its_name() -> None:

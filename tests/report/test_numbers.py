@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from decimal import ROUND_HALF_UP, Decimal
 
 from hypothesis import example, given
 from hypothesis import strategies as st
@@ -44,6 +45,22 @@ def test_number_reads_back_within_half_of_its_last_digit(value: float, decimals:
 
 def test_halves_round_away_from_zero_as_in_a_spreadsheet() -> None:
     assert [numbers.number(v, 1) for v in (39.15, 0.25, -0.25, 2.675e2)] == ["39.2", "0.3", "−0.3", "267.5"]
+
+
+@given(
+    st.floats(allow_nan=False, allow_infinity=False, min_value=-1e12, max_value=1e12)
+    | st.decimals(-10000, 10000, places=4).map(float),
+    st.integers(0, 9),
+)
+@example(6923948368.566255, 7)
+@example(2.5, 0)
+@example(1e-7, 3)
+def test_rounding_is_that_of_the_number_as_written(value: float, decimals: int) -> None:
+    """The way round is Python's decimal arithmetic on the shortest decimal that means the number."""
+    exact = Decimal(repr(value)).quantize(Decimal(1).scaleb(-decimals), ROUND_HALF_UP)
+    printed = numbers.number(value, decimals).replace(numbers.MINUS, "-")
+    assert Decimal(printed) == exact
+    assert len(printed.partition(".")[2]) == decimals
 
 
 def test_what_is_not_a_number_prints_as_words() -> None:
