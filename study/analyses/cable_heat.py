@@ -215,10 +215,9 @@ def _faults(case: _Case) -> _Faults:
     mode, knots = case.mode, case.knots
     out = np.abs(mode.device_shares(case.device, case.place, maximum=True))
     total, behind = case_histories(mode.maximum, case.place, out, knots)
-    into = [np.maximum(mode.device_shares(case.device, case.far, maximum=x), 0.0) for x in (True, False)]
-    _, beyond = case_histories(mode.maximum, case.far, into[0], knots)
-    near = _either(np.array([end.on_cable for end in case.ends], bool), total.less(behind), beyond)
-    _, least = case_histories(mode.minimum, case.far, into[1], knots)
+    near = _near(case, total.less(behind))
+    into = np.maximum(mode.device_shares(case.device, case.far, maximum=False), 0.0)
+    _, least = case_histories(mode.minimum, case.far, into, knots)
     least = least.times(least_over_three_phase(mode.minimum, case.far, knots))
     rows, share = _corners(case.ends, near, least, case.half_cycle_s)
     alone = np.flatnonzero([end.alone and end.on_cable for end in case.ends])
@@ -233,14 +232,16 @@ def _faults(case: _Case) -> _Faults:
     )
 
 
-def _either(first: BoolArray, one: Histories, other: Histories) -> Histories:
-    """Return one history in some rows and another in the others."""
-    wide = first[:, None, None]
-    return Histories(
-        time_s=one.time_s,
-        ac_a=np.where(wide, one.ac_a, other.ac_a),
-        dc_a=np.where(wide, one.dc_a, other.dc_a),
-    )
+def _near(case: _Case, rest: Histories) -> Histories:
+    """Return the greatest faults: at the device, or beyond it where it does not stand on the cable."""
+    off = np.flatnonzero([not end.on_cable for end in case.ends])
+    if not len(off):
+        return rest
+    into = np.maximum(case.mode.device_shares(case.device[off], case.far[off], maximum=True), 0.0)
+    _, beyond = case_histories(case.mode.maximum, case.far[off], into, case.knots)
+    ac, dc = np.array(rest.ac_a), np.array(rest.dc_a)
+    ac[off], dc[off] = beyond.ac_a, beyond.dc_a
+    return Histories(time_s=rest.time_s, ac_a=ac, dc_a=dc)
 
 
 def _rows(histories: Histories, rows: IntArray | BoolArray) -> Histories:

@@ -111,16 +111,20 @@ def body_trips_s(edges: Sequence[Edge], time_s: FloatArray, seen_a: FloatArray) 
     squared = (seen_a / setting[:, None]) ** 2
     most = (np.array([edge.up_to_a for edge in edges]) / setting) ** 2
     width = np.diff(time_s, axis=1)
-    theta, found, hot = preload**2, np.full(len(edges), np.inf), np.zeros(len(edges), bool)
-    for k in range(width.shape[1]):
-        pair, step = squared[:, k : k + 2], width[:, k]
-        after = _heated(theta, pair, step, tau, np.ones_like(tau))
-        now = ~hot & (after >= trips_at**2) & (step > 0.0)
-        if now.any():
-            share = _crossing(theta[now], pair[now], step[now], tau[now], trips_at[now] ** 2)
-            there = pair[now, 0] * (pair[now, 1] / pair[now, 0]) ** share
-            found[now] = np.where(there <= most[now], time_s[now, k] + share * step[now], np.inf)
-        theta, hot = after, hot | now
+    theta, last = preload**2, np.full(len(edges), -1)
+    before = np.array(theta)
+    for n in range(width.shape[1]):
+        after = _heated(theta, squared[:, n : n + 2], width[:, n], tau, 1.0)
+        now = (last < 0) & (after >= trips_at**2) & (width[:, n] > 0.0)
+        last[now], before[now] = n, theta[now]
+        theta = after
+    row = np.flatnonzero(last >= 0)
+    k = last[row]
+    pair, step = np.stack([squared[row, k], squared[row, k + 1]], axis=1), width[row, k]
+    share = _crossing(before[row], pair, step, tau[row], trips_at[row] ** 2)
+    there = pair[:, 0] * (pair[:, 1] / pair[:, 0]) ** share
+    found = np.full(len(edges), np.inf)
+    found[row] = np.where(there <= most[row], time_s[row, k] + share * step, np.inf)
     return found
 
 
@@ -191,7 +195,7 @@ def _fraction(rate: FloatArray, share: FloatArray) -> FloatArray:
 
 
 def _heated(
-    theta: FloatArray, pair: FloatArray, step: FloatArray, tau: FloatArray, share: FloatArray
+    theta: FloatArray, pair: FloatArray, step: FloatArray, tau: FloatArray, share: FloatArray | float
 ) -> FloatArray:
     """Return the temperature after a share of one interval, M² running from pair[:, 0] to pair[:, 1]."""
     growth = np.log(pair[:, 1] / pair[:, 0])
