@@ -18,7 +18,7 @@ from study.model.modes import Mode
 from study.model.plant import Plant
 from study.model.sources import ShoreSupply, SynchronousMotor
 from study.results.arrays import BoolArray
-from study.results.balance import ConsumerDemand
+from study.results.balance import ConsumerDemand, IslandBalance
 
 NAMES_SHOWN = 5
 CURRENT_TOLERANCE = 0.10
@@ -125,6 +125,23 @@ def island_findings(
             yield f"{source.name} takes {-p_kw:.0f} kW by its set power, a load of the other sources."
         elif p_kw < 0.0:
             yield f"{source.name} would be driven with {-p_kw:.0f} kW: the set powers exceed the load."
+
+
+def section_findings(boards: Sequence[str], balance: IslandBalance) -> Iterator[str]:
+    """Yield what the loss of the only set of a section means, where other sections have sources on line."""
+    if balance.services_lost is None or not balance.loss or balance.loss[0].sets_left:
+        return
+    lost = balance.services_lost
+    else_where = f"nothing else then serves {listed(lost)}"
+    if not lost:
+        else_where = (
+            "each service to propulsion, steering and safety in use there has its like on another section"
+        )
+    yield (
+        f"{balance.loss[0].lost} runs alone on its section: when it is lost, {listed(boards)} "
+        f"{'is' if len(boards) == 1 else 'are'} dead until a standby set has started or a tie is closed; "
+        f"{else_where}."
+    )
 
 
 def largest_start(plant: Plant, consumers: Consumers) -> int | None:

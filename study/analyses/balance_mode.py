@@ -27,6 +27,7 @@ from study.analyses.balance_restart import (
     restart_steps,
     sets_that_start,
 )
+from study.analyses.balance_section import services_lost
 from study.analyses.balance_shares import Share, set_row, share_load
 from study.analyses.balance_sources import Source, capacity, loading, sources_of
 from study.analyses.balance_supply import ModeSupply
@@ -116,7 +117,7 @@ def mode_balance(study: Study, row: int, supply: ModeSupply) -> tuple[ModeBalanc
     names = tuple(b.name for b in plant.boards)
     sums = totals(study.table, study.demand, row, supply, boards=names, motors=motors)
     restart, restart_notes = _restart(study, row, mode, live)
-    islands = tuple(_island_balance(study, island, sources) for island in live)
+    islands = tuple(_island_balance(study, island, sources, supply) for island in live)
     notes = [
         *findings.supply_findings(plant, mode, sources, supply),
         *findings.demand_findings(plant, mode, study.demand, row),
@@ -176,7 +177,9 @@ def _live_island(
     )
 
 
-def _island_balance(study: Study, island: LiveIsland, sources: Sequence[Source]) -> IslandBalance:
+def _island_balance(
+    study: Study, island: LiveIsland, sources: Sequence[Source], supply: ModeSupply
+) -> IslandBalance:
     p_load_kw, q_load_kvar = island.consumers.p_kw, island.consumers.q_kvar
     s_load_kva = math.hypot(p_load_kw, q_load_kvar)
     p_capacity_kw, s_capacity_kva = capacity(island.running)
@@ -212,6 +215,14 @@ def _island_balance(study: Study, island: LiveIsland, sources: Sequence[Source])
         shore_current_a=shore.current_a,
         shore_rated_a=shore.rated_a,
         loss_with_standby=loss.with_standby,
+        services_lost=services_lost(
+            study.plant,
+            study.demand,
+            island.consumers.row,
+            supply,
+            island=island.number,
+            sources=sources,
+        ),
     )
 
 
@@ -241,6 +252,7 @@ def _island_notes(study: Study, island: LiveIsland, balance: IslandBalance) -> l
             island.boards, island.running, island.standby, island.shares, balance.p_load_kw
         )
     )
+    notes += findings.section_findings(island.boards, balance)
     start = findings.largest_start(study.plant, island.consumers)
     if start is not None and any(s.kind == "genset" for s in island.running):
         capability_kw = _capability_without(study, island, start)

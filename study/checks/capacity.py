@@ -130,6 +130,10 @@ def _loss(plant: Plant, mode: ModeBalance, island: IslandBalance, limits: Limits
     if governing is None:
         return
     stage, words = governing
+    if not stage.sets_left and island.services_lost is not None:
+        if island.services_lost:
+            yield _section(plant, mode, island, stage, island.services_lost)
+        return
     yield make_verdict(
         mode=mode.mode,
         subject=_SUBJECT,
@@ -146,13 +150,36 @@ def _loss(plant: Plant, mode: ModeBalance, island: IslandBalance, limits: Limits
     )
 
 
+def _section(
+    plant: Plant, mode: ModeBalance, island: IslandBalance, stage: LossOfSet, lost: tuple[str, ...]
+) -> Verdict:
+    """Judge the loss of the only set of a section while other sections have sources on line."""
+    return make_verdict(
+        mode=mode.mode,
+        subject=_SUBJECT,
+        equipment=stage.lost,
+        quantity=f"with it its section is dead ({island.boards[0]}), and nowhere else served: "
+        + ", ".join(lost),
+        value=float(len(lost)),
+        limit=0.0,
+        unit="-",
+        close_margin=0.0,
+        basis="SOLAS II-1/41.5.1, from memory: propulsion, steering and safety stay supplied or are at once "
+        "restored when one generator is lost",
+        cell=plant.cell_of(stage.lost, _RATED),
+        remedy="Divide these services between the sections, or run one more set on this one, or let one "
+        "stand by (sheets Loads, Running).",
+    )
+
+
 def _governing_loss(mode: ModeBalance, island: IslandBalance) -> tuple[LossOfSet, str] | None:
     """Return the stage that decides, and what it is called; None where nothing is asked.
 
     Where sets are left, the preferential trips have to save them: the stage with the least loading, the first
     of equal ones, before any standby has started. After a blackout the standby sets carry what the trips
     leave. A set that runs alone without a standby is no fault in port, where propulsion and steering do not
-    hang on it (SOLAS II-1/41.5.1.1, from memory).
+    hang on it (SOLAS II-1/41.5.1.1, from memory). Under way it is none on one of several sections, where the
+    others serve what is essential.
     """
     alone = [stage for stage in island.loss if stage.stage != "standby started"]
     if not alone:

@@ -82,7 +82,8 @@ class IslandBalance:
     """One live island of a mode: load against sources.
 
     ``loss_with_standby`` is the loss of the same set with the standby sets started, at every trip stage;
-    empty where no set stands by.
+    empty where no set stands by. ``services_lost`` are the services to propulsion, steering and safety that
+    no other section serves; None where no other section has a main source on line.
     """
 
     island: int
@@ -104,6 +105,7 @@ class IslandBalance:
     shore_current_a: float
     shore_rated_a: float
     loss_with_standby: tuple[LossOfSet, ...] = ()
+    services_lost: tuple[str, ...] | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

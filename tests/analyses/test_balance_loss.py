@@ -11,7 +11,18 @@ from study.analyses.balance import load_balance
 from study.model.modes import Interlock
 from study.network.view import view_of
 from study.results.balance import IslandBalance, LossOfSet, ModeBalance
-from tests.plants import board, converter_supply, demand, genset, load, mode, plant
+from tests.plants import (
+    board,
+    cable,
+    converter_supply,
+    demand,
+    genset,
+    load,
+    mode,
+    plant,
+    tie,
+    transfer,
+)
 
 
 def balance(p: Any) -> ModeBalance:
@@ -159,3 +170,68 @@ def test_no_essential_load_means_no_check_and_a_word_about_it() -> None:
     result = balance(one_board({"gensets": [genset("G1", "MSB")]}, heaters(10.0)))
     assert result.main_set_out == ()
     assert any("No load is marked essential" in f for f in result.findings)
+
+
+def two_sections(*loads: Any, sets: tuple[str, ...] = ("P", "S"), **more: Any) -> ModeBalance:
+    """Return a set on each of two sections with the bus-tie open, and an emergency board with its set."""
+    p = plant(
+        boards=[board("P"), board("S"), board("ESB")],
+        gensets=[genset(f"G-{b}", b, redundancy_group=b) for b in sets]
+        + [genset("EDG", "ESB", service="emergency")],
+        ties=[tie("BT", "P", "S"), tie("BT-E", "S", "ESB")],
+        loads=list(loads),
+        modes=[mode(states={"BT": "off", "BT-E": "off"}, demand={x.name: demand() for x in loads})],
+        **more,
+    )
+    return balance(p)
+
+
+def essential(name: str, at: str, **changes: Any) -> Any:
+    return load(name, at, **{"service": "Pumps", "essential_to": "propulsion", "p_rated_kw": 50.0, **changes})
+
+
+def test_a_service_that_both_sections_have_is_kept() -> None:
+    one, other, _ = two_sections(essential("Pump 1", "P"), essential("Pump 2", "S")).islands
+    assert one.services_lost == other.services_lost == ()
+    assert not one.loss[0].sets_left
+    notes = two_sections(essential("Pump 1", "P"), essential("Pump 2", "S")).findings
+    assert sum("has its like on another section" in x for x in notes) == 2
+
+
+def test_a_service_of_one_section_alone_is_lost_with_it() -> None:
+    lone = essential("Steering gear 1", "P", service="Steering", essential_to="steering")
+    comfort = essential("Galley", "P", service="Galley", essential_to="habitability")
+    on_emergency = essential("Steering gear 2", "ESB", service="Steering", essential_to="steering")
+    result = two_sections(lone, comfort, on_emergency, essential("Pump", "S"))
+    one, other, emergency = result.islands
+    assert one.services_lost == ("steering (Steering)",)  # the emergency set is no part of the main source
+    assert other.services_lost == ("propulsion (Pumps)",)
+    assert emergency.loss == ()
+    assert any("G-P runs alone on its section: when it is lost, P is dead" in x for x in result.findings)
+
+
+def test_a_load_of_the_lost_redundancy_group_keeps_nothing_up() -> None:
+    pair = essential("Pump 1", "P"), essential("Pump 2", "S", redundancy_group="P")
+    assert two_sections(*pair).islands[0].services_lost == ("propulsion (Pumps)",)
+
+
+@pytest.mark.parametrize(
+    ("target", "other", "automatic", "lost"),
+    [
+        ("Pump", "S", True, ()),
+        ("Pump", "S", False, ("propulsion (Pumps)",)),
+        ("Pump", "ESB", True, ("propulsion (Pumps)",)),
+        ("Pump", "C-Pump", True, ()),
+    ],
+)
+def test_an_automatic_second_feed_from_another_section_keeps_a_service(
+    target: str, other: str, automatic: bool, lost: tuple[str, ...]
+) -> None:
+    feed = transfer(target, "P", other, automatic=automatic)
+    cables = [cable("C-Pump", "S", "Pump")] if other == "C-Pump" else []
+    result = two_sections(essential("Pump", "P"), transfers=[feed], cables=cables)
+    assert result.islands[0].services_lost == lost
+
+
+def test_one_section_alone_has_no_other_to_keep_anything_up() -> None:
+    assert two_sections(essential("Pump", "P"), sets=("P",)).islands[0].services_lost is None

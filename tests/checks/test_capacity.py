@@ -141,6 +141,18 @@ def test_where_nothing_is_shed_the_first_stage_is_named() -> None:
 BLACKOUT = tuple(a_loss(s, math.inf) for s in ("at once", "after trip stage 1", "after trip stage 2"))
 
 
+def test_the_only_set_of_one_of_several_sections_is_judged_by_what_it_alone_serves() -> None:
+    """SOLAS II-1/41.5.1, from memory: what is essential is kept up by the other sections."""
+    kept = an_island(loss=BLACKOUT, services_lost=())
+    assert not [x for x in judged(a_balance(kept)) if x.status == "exceeds"]
+    lost = an_island(loss=BLACKOUT, services_lost=("propulsion (Pumps)",))
+    v = find(judged(a_balance(lost)), "G1", "with it its section")
+    assert v.status == "exceeds"
+    assert v.quantity.endswith("(MSB), and nowhere else served: propulsion (Pumps)")
+    assert v.cell == "G1!Rated apparent power"
+    assert not [x for x in judged(a_balance(lost, kind="harbour")) if "section" in x.quantity]
+
+
 def test_after_a_blackout_the_standby_carries_what_the_trips_leave() -> None:
     with_standby = (
         a_loss("at once", 1.2, "G2"),
