@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from typing import Final
 
 import numpy as np
@@ -11,7 +10,9 @@ from numpy.typing import NDArray
 from study.analyses.grading_currents import CaseCurrents, Currents, between, joined
 from study.analyses.grading_stations import Stations, case_ways
 from study.analyses.grading_zones import Feed, Zones
-from study.results.short_circuit import ModeShortCircuit, Places
+from study.model.modes import Mode
+from study.model.plant import Plant
+from study.results.short_circuit import ModeShortCircuit, Places, ShortCircuitResult
 
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
@@ -54,12 +55,20 @@ class ModeFaults:
         Of the result.
     time_s : ndarray, shape (time,)
         Instants of all currents. [s]
+    unused : frozenset of str
+        Consumers that are not in use in the mode: switched off.
     """
 
     def __init__(
-        self, mode: ModeShortCircuit, stations: Stations, places: Places, time_s: FloatArray
+        self,
+        mode: ModeShortCircuit,
+        stations: Stations,
+        places: Places,
+        time_s: FloatArray,
+        unused: frozenset[str],
     ) -> None:
         self.mode, self.stations, self.places, self.time_s = mode, stations, places, time_s
+        self.unused = unused
         self.maximum = CaseCurrents(case_ways(stations, mode, maximum=True), time_s)
         self.minimum = CaseCurrents(case_ways(stations, mode, maximum=False), time_s)
         self.zones = Zones(stations, self.maximum.ways, places)
@@ -86,6 +95,8 @@ class ModeFaults:
     def _idle(self, feed: Feed) -> bool:
         """Return True for a zone that holds the open end of something that is off: nothing is protected."""
         zone = self.zones.zones[feed.zone]
+        if zone.consumers and not zone.boards and not zone.sources:
+            return self.unused.issuperset(zone.consumers)
         if zone.boards or zone.consumers or zone.sources or len(zone.stations) > 1 or not zone.places:
             return False
         running = set(self.mode.maximum.sources.names)
@@ -226,18 +237,18 @@ class ModeFaults:
 
 
 def mode_faults(
-    modes: Sequence[ModeShortCircuit], stations: Stations, places: Places, time_s: FloatArray
+    plant: Plant, result: ShortCircuitResult, stations: Stations, time_s: FloatArray
 ) -> list[ModeFaults]:
     """Return the faults of every mode.
 
     Parameters
     ----------
-    modes : sequence of ModeShortCircuit
-        Of the result.
+    plant : Plant
+        What is in use in each mode.
+    result : ShortCircuitResult
+        Currents of every mode.
     stations : Stations
         Of the plant.
-    places : Places
-        Of the result.
     time_s : ndarray, shape (time,)
         Instants of all currents. [s]
 
@@ -246,4 +257,12 @@ def mode_faults(
     list of ModeFaults
         In the order of the modes.
     """
-    return [ModeFaults(mode, stations, places, time_s) for mode in modes]
+    return [
+        ModeFaults(mode, stations, result.places, time_s, _unused(plant, plant.mode(mode.mode)))
+        for mode in result.modes
+    ]
+
+
+def _unused(plant: Plant, mode: Mode) -> frozenset[str]:
+    used = {name for name, demand in mode.demand.items() if demand.in_use > 0.0}
+    return frozenset(load.name for load in plant.loads if load.name not in used)

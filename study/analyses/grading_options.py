@@ -18,6 +18,6 @@ class GradingOptions:
     margin_s: float = 0.01
     clearing_s: float = 5.0
     last_s: float = 20.0
-    starting_time_s: float = 5.0
+    starting_time_s: float = 3.0
     start_factor: float = 1.1
     proposals: int = 12

@@ -1,0 +1,412 @@
+"""Motor starts, transformer inrush and the restart after a blackout: what must not open a station."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from study.analyses.grading_bands import Openers
+from study.analyses.grading_currents import Currents
+from study.analyses.grading_faults import ModeFaults
+from study.analyses.grading_options import GradingOptions
+from study.formulas.induction import rated_current
+from study.model.loads import Load
+from study.model.plant import Plant
+from study.results.balance import ModeBalance
+from study.results.grading import RideThrough
+from study.results.load_flow import ModeLoadFlow
+
+FloatArray = NDArray[np.float64]
+IntArray = NDArray[np.int64]
+
+# Open transition from star to delta: for a moment up to the current of a direct start; common practice.
+TRANSITION_S: Final = 0.1
+ON_TOP: Final = " on top of the load"
+# Time constants after which an inrush is gone.
+DIES_AWAY: Final = 5.0
+# A load that carries less of another's start than this is not looked at.
+_LEAST_SHARE = 0.02
+_SQRT2 = 2.0**0.5
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Surge:
+    """A current at a load's place that a station must hold for a time.
+
+    ``current_a`` r.m.s., ``peak_a`` its first peak over sqrt2, ``normal_a`` what the load draws otherwise.
+    """
+
+    event: str
+    load: int
+    current_a: float
+    peak_a: float
+    normal_a: float
+    lasts_s: float
+    assumed: str
+
+
+def load_current_a(load: Load) -> float:
+    """Return the rated current of one unit of a consumer [A]."""
+    if load.running_current_a is not None:
+        return load.running_current_a
+    return float(rated_current(load.p_rated_kw, load.u_rated_v, load.efficiency, load.cos_phi, load.phases))
+
+
+def asymmetry(cos_phi: float) -> float:
+    """Return the first peak of a starting current over that of its symmetrical part.
+
+    Source: IEC 60909-0:2016, equation for kappa, from memory: 1.02 + 0.98 e^(-3 R/X).
+
+    Parameters
+    ----------
+    cos_phi : float
+        Power factor at the start.
+
+    Returns
+    -------
+    float
+        1.02..2.
+
+    Examples
+    --------
+    >>> round(asymmetry(0.3), 2)
+    1.4
+    """
+    reactive = max(1.0 - cos_phi**2, 1e-9) ** 0.5
+    return float(1.02 + 0.98 * np.exp(-3.0 * cos_phi / reactive))
+
+
+def surges_of(number: int, load: Load, options: GradingOptions) -> Iterator[Surge]:
+    """Yield what a motor draws while it starts.
+
+    Parameters
+    ----------
+    number : int
+        Place of the load in the workbook.
+    load : Load
+        The consumer.
+    options : GradingOptions
+        Starting time where none is given.
+
+    Yields
+    ------
+    Surge
+        One for a direct, autotransformer or soft start, two for star-delta; none for a converter.
+
+    Notes
+    -----
+    Star: a third of the current of a direct start; autotransformer: the square of the tap; definitions.
+    """
+    motor = load.motor
+    if motor is None or load.kind == "converter" or motor.starting_method == "converter":
+        return
+    rated = load_current_a(load)
+    direct = motor.starting_current * rated
+    factor = asymmetry(motor.starting_cos_phi)
+    given = motor.starting_time_s
+    time_s = options.starting_time_s if given is None else given
+    assumed = "" if given is not None else f"starting time not given: {options.starting_time_s:g} s taken"
+
+    def surge(event: str, current: float, lasts: float, first: float = factor, words: str = assumed) -> Surge:
+        return Surge(
+            event=event,
+            load=number,
+            current_a=current,
+            peak_a=first * current,
+            normal_a=rated,
+            lasts_s=lasts,
+            assumed=words,
+        )
+
+    match motor.starting_method:
+        case "star-delta":
+            change = motor.star_delta_change_s
+            words = "" if change is not None else assumed
+            yield surge("start in star", direct / 3.0, time_s if change is None else change, words=words)
+            yield surge("change from star to delta", direct, TRANSITION_S, words="")
+        case "autotransformer":
+            yield surge("start by autotransformer", direct * motor.autotransformer_tap**2, time_s)
+        case "soft starter":
+            ramp = motor.soft_starter_ramp_s
+            yield surge("soft start", motor.soft_starter_current * rated, ramp, 1.0, "")
+        case _:
+            yield surge("direct start", direct, time_s)
+
+
+class ModeStarts:
+    """What the stations of one mode must hold.
+
+    Parameters
+    ----------
+    plant : Plant
+        Loads and transformers.
+    faults : ModeFaults
+        Of the mode: how currents find their way.
+    flow : ModeLoadFlow
+        What flows before.
+    options : GradingOptions
+        Starting time, factor.
+    """
+
+    def __init__(self, plant: Plant, faults: ModeFaults, flow: ModeLoadFlow, options: GradingOptions) -> None:
+        self.plant, self.faults, self.options = plant, faults, options
+        self.mode = plant.mode(faults.mode.mode)
+        self.before = _before_a(faults, flow)
+        self._of_consumers = np.zeros(len(faults.stations), bool)
+        for f in faults.feeds:
+            if faults.zones.zones[f.zone].consumers and not faults.zones.zones[f.zone].boards:
+                self._of_consumers[f.station] = True
+        self._at = {
+            (name, kind == "board"): p
+            for p, (name, kind) in enumerate(zip(faults.places.names, faults.places.kinds, strict=True))
+            if kind in ("board", "consumer terminals")
+        }
+
+    def _place(self, load: Load) -> int:
+        place = self._at.get((load.name, False), -1)
+        return place if place >= 0 else self._at.get((load.board, True), -1)
+
+    def shares(self, place: IntArray) -> FloatArray:
+        """Return the current through every station for 1 A drawn at places, [place, station].
+
+        Lasting sources take it by what they would give into a fault there.
+        """
+        ways = self.faults.minimum.ways
+        count = len(self.faults.stations)
+        station = np.tile(np.arange(count), len(place))
+        where = np.repeat(place, count)
+        none = np.full(len(where), -1, np.int64)
+        share = ways.into_branch(station, where, none)
+        gives = ways.case.parts.subtransient_a[place] * ways.lasting
+        total = gives.sum(axis=1, keepdims=True)
+        weight = np.divide(gives, total, out=np.zeros_like(gives), where=total > 0.0)
+        return np.asarray(np.abs(np.einsum("pns,ps->pn", share.reshape(len(place), count, -1), weight)))
+
+    def surges(self) -> list[Surge]:
+        """Return the starts of the motors that are in use in the mode."""
+        return [
+            surge
+            for k, load in enumerate(self.plant.loads)
+            if (demand := self.mode.demand.get(load.name)) is not None and demand.in_use > 0.0
+            for surge in surges_of(k, load, self.options)
+        ]
+
+    def motor_starts(self, openers: Openers) -> list[RideThrough]:
+        """Return every motor start against the motor's own station, and the hardest against those behind."""
+        found = self.surges()
+        places = np.array([self._place(self.plant.loads[s.load]) for s in found], np.int64)
+        here = np.flatnonzero(places >= 0)
+        if not len(here):
+            return []
+        used, index = np.unique(places[here], return_inverse=True)
+        share = self.shares(used)[index]
+        row, station = np.nonzero(share > _LEAST_SHARE)
+        surge = [found[here[r]] for r in row]
+        part = share[row, station]
+        before = np.maximum(self.before[station] - part * np.array([s.normal_a for s in surge]), 0.0)
+        own = self._own(station, [self.plant.loads[s.load].name for s in surge])
+        before = np.where(own, 0.0, before)
+        current = before + part * np.array([s.current_a for s in surge])
+        peak = before + part * np.array([s.peak_a for s in surge])
+        trips = _trips_s(openers, station, current, peak)
+        needed = self.options.start_factor * np.array([s.lasts_s for s in surge])
+        keep = np.concatenate([np.flatnonzero(own), _hardest(station, own, trips / needed)])
+        return [
+            RideThrough(
+                mode=self.mode.name,
+                station=int(station[k]),
+                event=surge[k].event if own[k] else surge[k].event + ON_TOP,
+                equipment=self.plant.loads[surge[k].load].name,
+                current_a=float(current[k]),
+                before_a=float(before[k]),
+                lasts_s=surge[k].lasts_s,
+                needed_s=float(needed[k]),
+                trips_s=float(trips[k]),
+                assumed=surge[k].assumed,
+            )
+            for k in keep.tolist()
+        ]
+
+    def _own(self, station: IntArray, loads: Sequence[str]) -> NDArray[np.bool_]:
+        """Return where a station is the load's own: it feeds that consumer's zone."""
+        mine = {
+            (f.station, name)
+            for f in self.faults.feeds
+            for name in self.faults.zones.zones[f.zone].consumers
+            if not self.faults.zones.zones[f.zone].boards
+        }
+        return np.array([(int(s), n) in mine for s, n in zip(station, loads, strict=True)], bool)
+
+    def inrush(self, openers: Openers) -> list[RideThrough]:
+        """Return the inrush of every transformer against the stations through which it comes.
+
+        The first peak is the given multiple of that of the rated current; it falls with the given time
+        constant. A stage that does not look at the peak sees the r.m.s. value of half waves, half their peak.
+
+        Source: definition of the multiple; r.m.s. value of a half-wave sine.
+        """
+        found = []
+        for feed in self.faults.feeds:
+            zone = self.faults.zones.zones[feed.zone]
+            for t in (x for x in self.plant.transformers if x.name in zone.branches):
+                rated = 1000.0 * t.s_rated_kva * t.units / (3.0**0.5 * t.u_primary_v)
+                near = self.faults.places.names[int(self.faults.stations.place[feed.station])]
+                if near != t.from_board:
+                    continue
+                place = int(self.faults.stations.place[feed.station])
+                share = self.shares(np.array([place], np.int64))[0]
+                share[feed.station] = 1.0
+                stations = [feed.station, *(s for s, _ in feed.behind if share[s] > _LEAST_SHARE)]
+                found += self._inrush_at(openers, t.name, (t.inrush_current * rated, t.inrush_decay_s),
+                                         np.array(stations, np.int64), share)  # fmt: skip
+        return found
+
+    def _inrush_at(
+        self,
+        openers: Openers,
+        name: str,
+        surge: tuple[float, float],
+        station: IntArray,
+        share: FloatArray,
+    ) -> list[RideThrough]:
+        peak_a, decay_s = surge
+        fall = np.exp(-openers.time_s / decay_s)[None, :]
+        part = share[station]
+        before = np.where(np.arange(len(station)) == 0, 0.0, self.before[station])
+        ac = before[:, None] + (part * peak_a / _SQRT2)[:, None] * fall
+        dc = _SQRT2 * (part * peak_a * (1.0 - 1.0 / _SQRT2))[:, None] * fall
+        currents = Currents(ac_a=ac, dc_a=dc)
+        free = np.zeros(len(station), bool)
+        release = openers.delayed_release_s(station, currents, free)
+        first = Currents(ac_a=ac[:, :1], dc_a=dc[:, :1])
+        at_once = openers.threatened(station, first, np.full(len(station), np.inf))
+        release = np.where(at_once, 0.0, release)
+        release = np.where(openers.early_known[station] | at_once, release, np.nan)
+        lasts = DIES_AWAY * decay_s
+        return [
+            RideThrough(
+                mode=self.mode.name,
+                station=int(s),
+                event="inrush",
+                equipment=name,
+                current_a=float(before[k] + part[k] * peak_a),
+                before_a=float(before[k]),
+                lasts_s=lasts,
+                needed_s=lasts,
+                trips_s=float(release[k]),
+                assumed="",
+            )
+            for k, s in enumerate(station.tolist())
+        ]
+
+    def restart(self, balance: ModeBalance, openers: Openers) -> list[RideThrough]:
+        """Return the hardest step of the restart after a blackout against every station.
+
+        All motors of a step start together, on top of what the steps before have connected.
+        """
+        number = {load.name: k for k, load in enumerate(self.plant.loads)}
+        groups = sorted(balance.restart, key=lambda step: (step.island, step.at_s))
+        running: dict[int, FloatArray] = {}
+        worst: dict[int, RideThrough] = {}
+        for step in groups:
+            loads = [self.plant.loads[number[name]] for name in step.loads if name in number]
+            place = np.array([self._place(x) for x in loads], np.int64)
+            loads = [x for x, p in zip(loads, place, strict=True) if p >= 0]
+            if not loads:
+                continue
+            share = self.shares(place[place >= 0])
+            units = np.array([self.mode.demand[x.name].in_use for x in loads])
+            normal = units * np.array([load_current_a(x) for x in loads])
+            surges = [max(surges_of(0, x, self.options), key=_heat, default=None) for x in loads]
+            surge = np.array(
+                [u * s.current_a if s else n for u, s, n in zip(units, surges, normal, strict=True)]
+            )
+            lasts = max((s.lasts_s for s in surges if s), default=0.0)
+            before = running.get(step.island, np.zeros(len(self.faults.stations)))
+            current = before + surge @ share
+            station = np.flatnonzero((surge @ share > 0.0) & ~self._of_consumers)
+            trips = _trips_s(openers, station, current[station], current[station])
+            for s, t in zip(station.tolist(), trips.tolist(), strict=True):
+                if s not in worst or t < worst[s].trips_s:
+                    worst[s] = RideThrough(
+                        mode=self.mode.name,
+                        station=s,
+                        event=f"restart after a blackout, step {step.step}",
+                        equipment=", ".join(step.loads),
+                        current_a=float(current[s]),
+                        before_a=float(before[s]),
+                        lasts_s=lasts,
+                        needed_s=self.options.start_factor * lasts,
+                        trips_s=t,
+                        assumed="",
+                    )
+            running[step.island] = before + normal @ share
+        return list(worst.values())
+
+
+def _heat(surge: Surge) -> float:
+    return surge.current_a**2 * surge.lasts_s
+
+
+def _trips_s(openers: Openers, station: IntArray, current_a: FloatArray, peak_a: FloatArray) -> FloatArray:
+    """Return when stations may open at the earliest on a constant current with a first peak."""
+    free = np.zeros(len(station), bool)
+    release = openers.release_bound_s(station, current_a, free)
+    first = Currents(ac_a=current_a[:, None], dc_a=_SQRT2 * (peak_a - current_a)[:, None])
+    at_once = openers.threatened(station, first, np.full(len(station), np.inf))
+    release = np.where(at_once, 0.0, release)
+    return np.where(openers.early_known[station] | at_once, release, np.nan)
+
+
+def _hardest(station: IntArray, own: NDArray[np.bool_], ratio: FloatArray) -> IntArray:
+    """Return the row with the least ratio for each station that is not the load's own."""
+    rows = np.flatnonzero(~own)
+    order = rows[np.argsort(np.nan_to_num(ratio[rows], nan=np.inf), kind="stable")]
+    _, first = np.unique(station[order], return_index=True)
+    return np.asarray(order[first], np.int64)
+
+
+def _before_a(faults: ModeFaults, flow: ModeLoadFlow) -> FloatArray:
+    """Return what each station carries before: of its branch, else of its own source; in A."""
+    branch = dict(zip(flow.branches.names, flow.branches.current_a.tolist(), strict=True))
+    source = dict(zip(flow.sources.names, flow.sources.current_a.tolist(), strict=True))
+    stations = faults.stations
+    found = [
+        branch.get(b, 0.0) if b else source.get(e, 0.0)
+        for b, e in zip(stations.branch, stations.equipment, strict=True)
+    ]
+    return np.asarray(np.nan_to_num(np.array(found, float)))
+
+
+def hardest_of(rows: Sequence[RideThrough]) -> tuple[RideThrough, ...]:
+    """Return the worst mode of each event, equipment and station; for restarts of each station.
+
+    Parameters
+    ----------
+    rows : sequence of RideThrough
+        Of all modes.
+
+    Returns
+    -------
+    tuple of RideThrough
+        In the order in which they came first.
+    """
+    worst: dict[tuple[str, str, int], RideThrough] = {}
+    for row in rows:
+        shared = row.event.startswith("restart") or row.event.endswith(ON_TOP)
+        event = ("restart" if row.event.startswith("restart") else ON_TOP) if shared else row.event
+        key = (event, "" if shared else row.equipment, row.station)
+        known = worst.get(key)
+        if known is None or _ratio(row) < _ratio(known):
+            worst[key] = row
+    return tuple(worst.values())
+
+
+def _ratio(row: RideThrough) -> float:
+    if np.isnan(row.trips_s):
+        return np.inf
+    return row.trips_s / max(row.needed_s, 1e-9)
