@@ -11,7 +11,7 @@ from typing import Final
 from study.model.modes import Event, Mode, SetPoint
 from study.model.plant import Plant
 from study.model.sources import ConverterSupply, Genset
-from study.network.network import ModeNetwork, mode_network
+from study.network.network import ModeNetwork, with_settings
 from study.network.sources import Law, Source, Speed
 from study.results.sharing import SetTrim
 
@@ -56,11 +56,10 @@ def changed_network(at: ModeNetwork, events: Sequence[Event]) -> ModeNetwork:
     ModeNetwork
         With other sources, and refused where they can no longer share.
     """
-    network, mode = at.network, at.mode
-    plant = network.plant
+    plant, mode = at.network.plant, at.mode
     for event in events:
         plant, mode = _with_setting(plant, mode, event)
-    return mode_network(replace(network, plant=plant), mode)
+    return with_settings(at, plant, mode)
 
 
 def trimmed_network(at: ModeNetwork, trims: Sequence[SetTrim]) -> ModeNetwork:
@@ -85,7 +84,7 @@ def trimmed_network(at: ModeNetwork, trims: Sequence[SetTrim]) -> ModeNetwork:
         found = {"no_load_voltage_pu": trim.u_trimmed_pu, "no_load_frequency_pu": trim.f_trimmed_pu}
         given = {name: value for name, value in found.items() if not math.isnan(value)}
         points[trim.genset] = replace(point, **given)  # type: ignore[arg-type]
-    return mode_network(at.network, replace(mode, set_points=points))
+    return with_settings(at, at.network.plant, replace(mode, set_points=points))
 
 
 def _with_setting(plant: Plant, mode: Mode, event: Event) -> tuple[Plant, Mode]:

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from typing import Any
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -212,28 +213,65 @@ def mode_network(network: Network, mode: Mode | str) -> ModeNetwork:
         square_sum=_sum_at(load_bus, places, follows / network.s_base_kva),
         port_constant=_sum_at(motor_bus, places, np.full(len(motor_bus), 1.0 / network.s_base_kva))
         @ motor_kva,
-        set_groups=set_groups(sources),
         source_u_base_v=network.u_base_v[source_node],
-        laws=voltage_laws(
+        **_of_sources(sources, network.u_base_v[source_node], network.s_base_kva, view),
+    )
+
+
+def with_settings(at: ModeNetwork, plant: Plant, mode: Mode) -> ModeNetwork:
+    """Return the network of a mode in which nothing but settings of sets and converters differs.
+
+    Parameters
+    ----------
+    at : ModeNetwork
+        As it is.
+    plant : Plant
+        With other droops, or the same.
+    mode : Mode
+        With other set-points of sets and converters, or the same.
+
+    Returns
+    -------
+    ModeNetwork
+        As `mode_network` would make it.
+    """
+    network = at.network
+    sources = sources_of(plant, mode, network.topology, at.view)
+    return replace(
+        at,
+        network=replace(network, plant=plant),
+        mode=mode,
+        sources=sources,
+        **_of_sources(sources, at.source_u_base_v, network.s_base_kva, at.view),
+    )
+
+
+def _of_sources(
+    sources: tuple[Source, ...], u_base_v: FloatArray, s_base_kva: float, view: View
+) -> dict[str, Any]:
+    """Return what hangs on the settings of the sources."""
+    return {
+        "set_groups": set_groups(sources),
+        "laws": voltage_laws(
             sources,
-            network.u_base_v[source_node],
-            network.s_base_kva,
+            u_base_v,
+            s_base_kva,
             v_ref_pu=_column(sources, "v_ref_pu"),
             xc_pu=_column(sources, "xc_pu"),
         ),
-        power=power_laws(
+        "power": power_laws(
             sources,
             len(view.islands),
-            network.s_base_kva,
+            s_base_kva,
             f_no_load_pu=_column(sources, "f_no_load_pu"),
             speed_droop_pu=_column(sources, "speed_droop_pu"),
             at_limit=np.zeros(len(sources), np.int64),
         ),
-        refusals=tuple(
+        "refusals": tuple(
             island.refusal or refusal([s for s in sources if s.island == n])
             for n, island in enumerate(view.islands)
         ),
-    )
+    }
 
 
 def _column(sources: Sequence[Source], name: str) -> FloatArray:
