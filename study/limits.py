@@ -192,6 +192,25 @@ _SPECS = (
         maximum=200.0,
     ),
     LimitSpec(
+        key="cable_overload_trip",
+        quantity="Overload trip against cable rating",
+        limit=145.0,
+        unit="%",
+        basis="IEC 60364-4-43 cl. 433.1 and IEC 60092-202: I2 up to 1.45 Iz, from memory",
+        minimum=100.0,
+        maximum=200.0,
+    ),
+    LimitSpec(
+        key="steering_overload",
+        quantity="Overload setting of steering gear and fire pumps",
+        limit=200.0,
+        unit="%",
+        basis="SOLAS II-1/30: where there is any, not less than twice the full-load current; fire pumps by"
+        " class practice; from memory",
+        minimum=100.0,
+        maximum=1000.0,
+    ),
+    LimitSpec(
         key="transformer_loading",
         quantity="Transformer loading",
         limit=100.0,

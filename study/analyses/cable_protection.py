@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 
 import numpy as np
 
@@ -19,12 +20,24 @@ from study.results.load_flow import LoadFlowResult
 from study.results.short_circuit import ShortCircuitResult
 
 
+@dataclass(frozen=True, slots=True, kw_only=True)
+class CableOptions:
+    """Limits that the proposed sections keep.
+
+    ``drop_limit_pu`` from the switchboard to a consumer, ``trip_factor`` what may trip the overload
+    protection for certain over the rating of the cable.
+    """
+
+    drop_limit_pu: float
+    trip_factor: float
+
+
 def cable_protection(
     plant: Plant,
     models: Sequence[DeviceModel],
     flow: LoadFlowResult,
     short_circuit: ShortCircuitResult,
-    drop_limit_pu: float,
+    options: CableOptions,
 ) -> CableProtectionResult:
     """Return every cable with what protects it.
 
@@ -38,8 +51,8 @@ def cable_protection(
         Currents and voltages of every mode.
     short_circuit : ShortCircuitResult
         Fault currents of every mode.
-    drop_limit_pu : float
-        Permitted fall of voltage from the switchboard to a consumer.
+    options : CableOptions
+        Limits that the proposals keep.
 
     Returns
     -------
@@ -48,7 +61,7 @@ def cable_protection(
     """
     overload = cable_overload(plant, models, flow)
     heat = cable_heat(plant, models, short_circuit)
-    drop = cable_drop(plant, flow, drop_limit_pu)
+    drop = cable_drop(plant, flow, options.drop_limit_pu)
     cables = plant.cables
     return CableProtectionResult(
         modes=tuple(mode.mode for mode in flow.modes),
@@ -61,5 +74,5 @@ def cable_protection(
         overload=overload,
         heat=heat,
         drop=drop,
-        sections=cable_sections(plant, overload, heat, drop, flow),
+        sections=cable_sections(plant, overload, heat, drop, flow, trip_factor=options.trip_factor),
     )

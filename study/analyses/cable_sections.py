@@ -33,6 +33,8 @@ def cable_sections(
     heat: CableHeat,
     drop: CableDrop,
     flow: LoadFlowResult,
+    *,
+    trip_factor: float,
 ) -> CableSections:
     """Return the smallest sections, number of runs and way of laying kept.
 
@@ -44,6 +46,8 @@ def cable_sections(
         What each cable must meet.
     flow : LoadFlowResult
         Power factors of the cables.
+    trip_factor : float
+        What trips the overload protection for certain, over the rating.
 
     Returns
     -------
@@ -53,7 +57,7 @@ def cable_sections(
     cables = plant.cables
     sizes = np.array(OFFERED_MM2)
     runs = np.array([c.runs for c in cables], float)
-    rating = _rating_holds(cables, overload)
+    rating = _rating_holds(cables, overload, trip_factor)
     worst = greatest(heat.heat_a2s)
     withstand = (heat.k * runs)[:, None] ** 2 * sizes**2
     known = ~np.isnan(worst)
@@ -76,13 +80,14 @@ def cable_sections(
     )
 
 
-def _rating_holds(cables: tuple[Cable, ...], overload: CableOverload) -> BoolArray:
+def _rating_holds(cables: tuple[Cable, ...], overload: CableOverload, trip_factor: float) -> BoolArray:
     """Return for each cable and section whether it carries the load and suits the overload protection."""
     free = np.array([bool(word) for word in overload.exempt]) | np.isinf(overload.device_a)
     wanted = least_rating_a(
         overload.load_a,
         np.where(free, np.nan, overload.device_a),
         np.where(free, np.nan, overload.conventional_a),
+        trip_factor,
     )
     part = np.array([_rating_parts(c.section_mm2, c.conductor_temperature_degc) for c in cables])
     part = part.reshape(len(cables), len(OFFERED_MM2))

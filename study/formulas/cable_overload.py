@@ -2,44 +2,17 @@
 
 from __future__ import annotations
 
-from typing import Final
-
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
 
-# I2 may be up to 1.45 times what the cable carries: IEC 60364-4-43, clause 433.1, and IEC 60092-202; from
-# memory.
-OVERLOAD_FACTOR: Final = 1.45
 
-
-def overload_limit_a(rating_a: ArrayLike) -> FloatArray:
-    """Return the largest current that may trip the device for certain: ``1.45 Iz``.
-
-    Source: IEC 60364-4-43, clause 433.1, condition 2; from memory.
-
-    Parameters
-    ----------
-    rating_a : array_like
-        Iz. [A]
-
-    Returns
-    -------
-    FloatArray
-        [A]
-
-    Examples
-    --------
-    >>> float(overload_limit_a(100.0))
-    145.0
-    """
-    return np.asarray(OVERLOAD_FACTOR * np.asarray(rating_a, float))
-
-
-def least_rating_a(load_a: ArrayLike, device_a: ArrayLike, conventional_a: ArrayLike) -> FloatArray:
-    """Return the least rating of a cable: the largest of Ib, In and I2/1.45; NaN stands for no such demand.
+def least_rating_a(
+    load_a: ArrayLike, device_a: ArrayLike, conventional_a: ArrayLike, trip_factor: float = 1.45
+) -> FloatArray:
+    """Return the least rating of a cable: the largest of Ib, In and I2/1.45; NaN is no demand.
 
     Source: IEC 60364-4-43, clause 433.1: Ib <= In <= Iz and I2 <= 1.45 Iz; from memory.
 
@@ -51,6 +24,8 @@ def least_rating_a(load_a: ArrayLike, device_a: ArrayLike, conventional_a: Array
         In, rating or setting of the overload protection. [A]
     conventional_a : array_like
         I2, what trips it for certain. [A]
+    trip_factor : float
+        What I2 may be over the rating.
 
     Returns
     -------
@@ -65,7 +40,7 @@ def least_rating_a(load_a: ArrayLike, device_a: ArrayLike, conventional_a: Array
     demands = np.broadcast_arrays(
         np.asarray(load_a, float),
         np.asarray(device_a, float),
-        np.asarray(conventional_a, float) / OVERLOAD_FACTOR,
+        np.asarray(conventional_a, float) / trip_factor,
     )
     return np.asarray(np.fmax.reduce(demands))
 

@@ -8,7 +8,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from study.formulas.cable_overload import least_rating_a, overload_limit_a, voltage_drop_pu
+from study.formulas.cable_overload import least_rating_a, voltage_drop_pu
 from study.formulas.cable_ratings import adiabatic_k, withstand_a2s
 from study.formulas.damage_curves import cable_withstand_s, first_half_cycle_a, through_fault_s
 
@@ -22,7 +22,6 @@ def test_a_breaker_may_be_the_whole_rating() -> None:
     # I2 = 1.30 Ir (IEC 60947-2) or 1.45 In (IEC 60898-1): In <= Iz governs.
     for trips_at in (1.30, 1.45):
         assert least_rating_a(80.0, 100.0, trips_at * 100.0) == pytest.approx(100.0)
-    assert overload_limit_a(100.0) == pytest.approx(145.0)
 
 
 def test_without_overload_protection_the_load_alone_counts() -> None:
