@@ -15,6 +15,7 @@ from study.formulas.exciters import DERIVATIVE_FILTER_S, KVAR_TRIM_S, TRANSDUCER
 from study.formulas.governor import POWER_FILTER_S, POWER_TRIM_S, TURBOCHARGER_S
 from study.formulas.starting import FAN_BREAKAWAY, HYPERBOLIC_LARGEST
 from study.network.dynamics_data import (
+    AGAINST,
     AIR_GAP,
     ANGLE,
     AVR_D,
@@ -24,6 +25,7 @@ from study.network.dynamics_data import (
     BY_DROOP,
     CONSTANT_FIELD,
     CONVERTER,
+    COSINE,
     DAMPER_D,
     DAMPER_Q,
     DEAD_S,
@@ -36,26 +38,37 @@ from study.network.dynamics_data import (
     FIELD,
     FIELD_ON,
     FILTERED,
+    FIRST_STATE,
     FLUX,
-    FULL,
     GOV_D,
     GOV_FILTER_S,
     GOV_FILTERED,
     GOV_I,
     GOV_INTEGRAL,
     GOV_P,
+    GOVERNOR,
     HYPERBOLIC,
+    I_D,
+    I_IM,
     I_MAX,
+    I_Q,
+    I_RE,
     INTEGRAL,
+    ISLAND_SPEED,
+    KIND,
     KNEE,
     KVAR,
     KVAR_TRIM,
+    LAW,
     LOAD,
     LOAD_SHARING,
     MACHINE,
     MEASURED,
+    METHOD,
     MOTOR_2H,
+    MOTOR_NODE,
     OFF,
+    OMEGA,
     ON,
     OWN_MOTOR_V,
     OWN_V,
@@ -70,17 +83,23 @@ from study.network.dynamics_data import (
     RACK,
     RACK_S,
     RAMP_S,
+    RATE,
     RATED_FIELD,
     RATING,
     REACTIVE_CURRENT,
-    REDUCED,
+    REGULATOR,
     SAT_A,
     SAT_B,
     SAT_KIND,
     SET_POWER,
+    SHARED,
     SHORE,
+    SINE,
+    SLIP,
     SLIP_RATED,
     SPEED,
+    STAGE,
+    STATES,
     STEP,
     SUPPLY_ALONE,
     SUPPLY_C,
@@ -88,11 +107,19 @@ from study.network.dynamics_data import (
     SUPPLY_V,
     TD01,
     TD02,
+    TORQUE,
     TORQUE_FACTOR,
     TQ02,
     TURBO,
+    TURNING,
+    TURNING_RATE,
     TWO_H,
+    V_D,
+    V_IM,
+    V_Q,
+    V_RE,
     V_REF,
+    WINDING,
     XC,
     XD,
     XD1,
@@ -101,13 +128,7 @@ from study.network.dynamics_data import (
     XQ,
     XQ2,
 )
-from study.network.dynamics_network import (
-    axis_currents,
-    compiled,
-    motor_admittance,
-    motor_branch,
-    subtransient,
-)
+from study.network.dynamics_network import compiled, motor_branch
 
 OVERLOAD = 1.10  # largest rack, of the engine's rated power; IACS UR M51, from memory
 LEAST_TRIM_DROOP = 0.03
@@ -115,227 +136,232 @@ SHARING_DROOP = 0.04  # gain of the load-sharing lines, as that of a droop; comm
 CONVERTER_S = 0.02  # of a grid-forming converter's voltage control; common practice, no source
 CONVERTER_SPEED_S = 0.01
 LIMITER_X = 0.15  # a converter's current limiter lowers its e.m.f. by this times the excess of current
-RUNNING_SPEED = 0.02
 
 
 @compiled
-def terminal(now: Any, j: int) -> Any:
-    """Return Id, Iq, Vd, Vq of a machine, on the board or off it."""
-    x, p = now.source[j], now.par[j]
-    if p[ON] == 0.0:
-        ed, eq = subtransient(x, p)
-        return 0.0, 0.0, ed, eq
-    return axis_currents(x, p, now.v[now.system.node[j]])
-
-
-@compiled
-def saturation(e: float, p: Any) -> float:
+def saturation(source: Any, j: int) -> Any:
     """Return the field spent on saturation, quadratic (1) or exponential (2)."""
-    if p[SAT_KIND] == 1.0:
-        over = max(e - p[SAT_A], 0.0)
-        return p[SAT_B] * over * over
-    if p[SAT_KIND] == 2.0:
-        return p[SAT_A] * max(e, 0.0) ** (p[SAT_B] + 1.0)
+    e = source[j, FLUX]
+    if source[j, SAT_KIND] == 1.0:
+        over = max(e - source[j, SAT_A], 0.0)
+        return source[j, SAT_B] * over * over
+    if source[j, SAT_KIND] == 2.0:
+        return source[j, SAT_A] * max(e, 0.0) ** (source[j, SAT_B] + 1.0)
     return 0.0
 
 
 @compiled
-def island_speed(now: Any) -> float:
+def island_speed(source: Any) -> Any:
     """Return the mean speed of the sets on the board by stored energy, or what holds the frequency else."""
     total, weight = 0.0, 0.0
-    for j in range(len(now.system.node)):
-        p = now.par[j]
-        if p[ON] != 0.0 and now.system.kind[j] == MACHINE:
-            h = p[TWO_H] * p[RATING]
-            total += h * now.source[j, SPEED]
+    for j in range(source.shape[0]):
+        if source[j, ON] != 0.0 and source[j, KIND] == MACHINE:
+            h = source[j, TWO_H] * source[j, RATING]
+            total += h * source[j, SPEED]
             weight += h
     if weight > 0.0:
         return total / weight
-    for j in range(len(now.system.node)):
-        if now.par[j, ON] != 0.0:
-            return now.par[j, F_REF] if now.system.kind[j] == SHORE else now.source[j, SPEED]
-    return now.source[0, SPEED] if len(now.source) else 1.0
+    for j in range(source.shape[0]):
+        if source[j, ON] != 0.0:
+            return source[j, F_REF] if source[j, KIND] == SHORE else source[j, SPEED]
+    return source[0, SPEED] if source.shape[0] else 1.0
 
 
 @compiled
-def ceiling(p: Any, axes: Any) -> float:
+def ceiling(source: Any, j: int) -> Any:
     """Return the most field that the supply gives: constant + |Kv V + jKi I|."""
-    i_d, i_q, vd, vq = axes
-    real = p[SUPPLY_V] * vd - p[SUPPLY_I] * i_q
-    imaginary = p[SUPPLY_V] * vq + p[SUPPLY_I] * i_d
-    return p[FIELD_ON] * (p[SUPPLY_C] + np.sqrt(real * real + imaginary * imaginary))
+    real = source[j, SUPPLY_V] * source[j, V_D] - source[j, SUPPLY_I] * source[j, I_Q]
+    imaginary = source[j, SUPPLY_V] * source[j, V_Q] + source[j, SUPPLY_I] * source[j, I_D]
+    return source[j, FIELD_ON] * (source[j, SUPPLY_C] + np.sqrt(real * real + imaginary * imaginary))
 
 
 @compiled
-def seen_voltage(now: Any, j: int, axes: Any) -> float:
+def seen_voltage(source: Any, cross: Any, j: int) -> Any:
     """Return the voltage that a regulator compares with its set-point, load compensation included."""
-    i_d, i_q, vd, vq = axes
-    p = now.par[j]
-    if now.system.regulator[j] == REACTIVE_CURRENT:
+    i_d, i_q, vd, vq, xc = (
+        source[j, I_D],
+        source[j, I_Q],
+        source[j, V_D],
+        source[j, V_Q],
+        source[j, XC],
+    )
+    if source[j, REGULATOR] == REACTIVE_CURRENT:
         v = np.sqrt(vd * vd + vq * vq)
-        return v + p[XC] * (vq * i_d - vd * i_q) / max(v, 1e-6)
-    real, imaginary = vd - p[XC] * i_q, vq + p[XC] * i_d
-    cross = 0j
-    for k in range(len(now.current)):
-        cross += complex(0.0, now.system.cross[j, k]) * now.current[k]
-    if cross != 0j:
-        x = now.source[j]
-        turned = cross * p[OWN_V] * complex(np.sin(x[ANGLE]), np.cos(x[ANGLE]))
-        real, imaginary = real + turned.real, imaginary + turned.imag
+        return v + xc * (vq * i_d - vd * i_q) / max(v, 1e-6)
+    # jX times a current of another set, turned into this one's axes.
+    re, im = 0.0, 0.0
+    for k in range(source.shape[0]):
+        re -= cross[j, k] * source[k, I_IM]
+        im += cross[j, k] * source[k, I_RE]
+    s, c, own = source[j, SINE], source[j, COSINE], source[j, OWN_V]
+    real = vd - xc * i_q + (re * s - im * c) * own
+    imaginary = vq + xc * i_d + (re * c + im * s) * own
     return np.sqrt(real * real + imaginary * imaginary)
 
 
 @compiled
-def excite(now: Any, j: int, axes: Any, d: Any) -> None:
-    """Fill the derivatives of field and regulator."""
-    x, p = now.source[j], now.par[j]
-    most = ceiling(p, axes)
-    if now.system.regulator[j] == CONSTANT_FIELD:
-        d[FIELD] = (p[SUPPLY_C] * p[FIELD_ON] - x[FIELD]) / p[EXCITER_S]
+def excite(source: Any, cross: Any, j: int) -> None:
+    """Fill the rates of field and regulator."""
+    most, way = ceiling(source, j), int(source[j, REGULATOR])
+    field, lag = source[j, FIELD], source[j, EXCITER_S]
+    if way == CONSTANT_FIELD:
+        source[j, FIELD + RATE] = (source[j, SUPPLY_C] * source[j, FIELD_ON] - field) / lag
         return
-    if now.system.regulator[j] == SUPPLY_ALONE:
-        d[FIELD] = (most - x[FIELD]) / p[EXCITER_S]
+    if way == SUPPLY_ALONE:
+        source[j, FIELD + RATE] = (most - field) / lag
         return
-    d[MEASURED] = (seen_voltage(now, j, axes) - x[MEASURED]) / TRANSDUCER_S
-    reference = p[V_REF] + x[KVAR_TRIM]
-    if x[SPEED] < p[KNEE]:
-        reference *= x[SPEED] / p[KNEE]
-    error = reference - x[MEASURED]
-    rate = (error - x[FILTERED]) / DERIVATIVE_FILTER_S
-    asked = p[RATED_FIELD] * (p[AVR_P] * error + x[INTEGRAL] + p[AVR_D] * rate)
-    d[FILTERED] = rate
+    measured = source[j, MEASURED]
+    source[j, MEASURED + RATE] = (seen_voltage(source, cross, j) - measured) / TRANSDUCER_S
+    reference = source[j, V_REF] + source[j, KVAR_TRIM]
+    if source[j, SPEED] < source[j, KNEE]:
+        reference *= source[j, SPEED] / source[j, KNEE]
+    error = reference - measured
+    rate = (error - source[j, FILTERED]) / DERIVATIVE_FILTER_S
+    by_error = source[j, AVR_P] * error + source[j, INTEGRAL] + source[j, AVR_D] * rate
+    asked = source[j, RATED_FIELD] * by_error
+    source[j, FILTERED + RATE] = rate
     held = (asked > most and error > 0.0) or (asked < 0.0 and error < 0.0)
-    d[INTEGRAL] = 0.0 if held else p[AVR_I] * error
-    d[FIELD] = (min(max(asked, 0.0), most) - x[FIELD]) / p[EXCITER_S]
-    if now.system.regulator[j] == KVAR and p[ON] != 0.0:
-        i_d, i_q, vd, vq = axes
-        active, reactive = vd * i_d + vq * i_q, vq * i_d - vd * i_q
-        d[KVAR_TRIM] = (p[Q_SET] + p[Q_PER_P] * active - reactive) / KVAR_TRIM_S
+    source[j, INTEGRAL + RATE] = 0.0 if held else source[j, AVR_I] * error
+    source[j, FIELD + RATE] = (min(max(asked, 0.0), most) - field) / lag
+    if way == KVAR and source[j, ON] != 0.0:
+        active = source[j, V_D] * source[j, I_D] + source[j, V_Q] * source[j, I_Q]
+        reactive = source[j, V_Q] * source[j, I_D] - source[j, V_D] * source[j, I_Q]
+        wanted = source[j, Q_SET] + source[j, Q_PER_P] * active
+        source[j, KVAR_TRIM + RATE] = (wanted - reactive) / KVAR_TRIM_S
 
 
 @compiled
-def govern(now: Any, j: int, active: float, d: Any) -> None:
-    """Fill the derivatives of governor and rack; `active` in pu of rated kVA."""
-    x, p = now.source[j], now.par[j]
-    way = now.system.governor[j]
-    power = x[POWER]
-    d[POWER] = (active / p[P_RATED] - power) / POWER_FILTER_S
-    error = p[F_REF] - x[SPEED]
+def govern(source: Any, j: int, active: float, shared: float) -> None:
+    """Fill the rates of governor and rack; `active` in pu of rated kVA, `shared` what sharing lines carry."""
+    way, power = int(source[j, GOVERNOR]), source[j, POWER]
+    source[j, POWER + RATE] = (active / source[j, P_RATED] - power) / POWER_FILTER_S
+    error = source[j, F_REF] - source[j, SPEED]
     if way == BY_DROOP:
-        error -= p[DROOP] * power
+        error -= source[j, DROOP] * power
     elif way == SET_POWER:
-        error += x[POWER_TRIM] - p[DROOP] * power
-        d[POWER_TRIM] = max(p[DROOP], LEAST_TRIM_DROOP) * (p[P_SET] - power) / POWER_TRIM_S
+        error += source[j, POWER_TRIM] - source[j, DROOP] * power
+        trim = max(source[j, DROOP], LEAST_TRIM_DROOP) * (source[j, P_SET] - power)
+        source[j, POWER_TRIM + RATE] = trim / POWER_TRIM_S
     elif way == LOAD_SHARING:
-        error += SHARING_DROOP * (now.shared[0] - power)
-    rate = (error - x[GOV_FILTERED]) / p[GOV_FILTER_S]
-    asked = p[GOV_P] * error + x[GOV_INTEGRAL] + p[GOV_D] * rate
-    most = min(OVERLOAD * p[ENGINE], x[TURBO] + p[STEP] * p[ENGINE])
-    d[GOV_FILTERED] = rate
+        error += SHARING_DROOP * (shared - power)
+    rate = (error - source[j, GOV_FILTERED]) / source[j, GOV_FILTER_S]
+    asked = source[j, GOV_P] * error + source[j, GOV_INTEGRAL] + source[j, GOV_D] * rate
+    engine = source[j, ENGINE]
+    most = min(OVERLOAD * engine, source[j, TURBO] + source[j, STEP] * engine)
+    source[j, GOV_FILTERED + RATE] = rate
     held = (asked > most and error > 0.0) or (asked < 0.0 and error < 0.0)
-    d[GOV_INTEGRAL] = 0.0 if held else p[GOV_I] * error
+    source[j, GOV_INTEGRAL + RATE] = 0.0 if held else source[j, GOV_I] * error
     rack = min(max(asked, 0.0), most)
-    if p[DEAD_S] > 0.0:
-        d[DELAY] = (rack - x[DELAY]) / (0.5 * p[DEAD_S])
-        rack = 2.0 * x[DELAY] - rack
-    d[RACK] = (rack - x[RACK]) / p[RACK_S]
-    d[TURBO] = (x[RACK] - x[TURBO]) / TURBOCHARGER_S
+    if source[j, DEAD_S] > 0.0:
+        source[j, DELAY + RATE] = (rack - source[j, DELAY]) / (0.5 * source[j, DEAD_S])
+        rack = 2.0 * source[j, DELAY] - rack
+    source[j, RACK + RATE] = (rack - source[j, RACK]) / source[j, RACK_S]
+    source[j, TURBO + RATE] = (source[j, RACK] - source[j, TURBO]) / TURBOCHARGER_S
 
 
 @compiled
-def move_machine(now: Any, j: int, f: float, d: Any) -> None:
-    """Fill the derivatives of a set; `f` is the speed of the frame."""
-    x, p = now.source[j], now.par[j]
-    axes = terminal(now, j)
-    i_d, i_q, vd, vq = axes
-    active = vd * i_d + vq * i_q
-    lead = p[XD1] - p[XL]
-    linkage = (p[XD1] - p[XD2]) / (lead * lead) * (x[DAMPER_D] + lead * i_d - x[FLUX])
-    demagnetised = (p[XD] - p[XD1]) * (i_d - linkage)
-    d[FLUX] = (x[FIELD] - x[FLUX] - demagnetised - saturation(x[FLUX], p)) / p[TD01]
-    d[DAMPER_D] = (x[FLUX] - lead * i_d - x[DAMPER_D]) / p[TD02]
-    d[DAMPER_Q] = ((p[XQ] - p[XQ2]) * i_q - x[DAMPER_Q]) / p[TQ02]
-    torque = (active + p[RA] * (i_d * i_d + i_q * i_q)) / x[SPEED]
-    d[SPEED] = (x[RACK] * p[P_RATED] - torque) / p[TWO_H]
-    d[ANGLE] = now.system.omega * (x[SPEED] - f)
-    excite(now, j, axes, d)
-    govern(now, j, active, d)
+def move_machine(now: Any, j: int) -> None:
+    """Fill the rates of a set."""
+    source = now.source
+    i_d, i_q = source[j, I_D], source[j, I_Q]
+    active = source[j, V_D] * i_d + source[j, V_Q] * i_q
+    flux, damper = source[j, FLUX], source[j, DAMPER_D]
+    lead = source[j, XD1] - source[j, XL]
+    linkage = (source[j, XD1] - source[j, XD2]) / (lead * lead) * (damper + lead * i_d - flux)
+    demagnetised = (source[j, XD] - source[j, XD1]) * (i_d - linkage)
+    spent = flux + demagnetised + saturation(source, j)
+    source[j, FLUX + RATE] = (source[j, FIELD] - spent) / source[j, TD01]
+    source[j, DAMPER_D + RATE] = (flux - lead * i_d - damper) / source[j, TD02]
+    across = (source[j, XQ] - source[j, XQ2]) * i_q
+    source[j, DAMPER_Q + RATE] = (across - source[j, DAMPER_Q]) / source[j, TQ02]
+    torque = (active + source[j, RA] * (i_d * i_d + i_q * i_q)) / source[j, SPEED]
+    source[j, SPEED + RATE] = (source[j, RACK] * source[j, P_RATED] - torque) / source[j, TWO_H]
+    excite(source, now.cross, j)
+    govern(source, j, active, now.single[SHARED])
 
 
 @compiled
-def move_converter(now: Any, j: int, f: float, d: Any) -> None:
-    """Fill the derivatives of a grid-forming converter: e.m.f. by voltage or current, angle by droop."""
-    x, p = now.source[j], now.par[j]
-    v = now.v[now.system.node[j]] * p[OWN_V]
-    i = now.current[j] / (p[RATING] * p[OWN_V])
-    seen = abs(v + complex(0.0, p[XC]) * i)
-    d[FLUX] = min(p[V_REF] - seen, LIMITER_X * (p[I_MAX] - abs(i))) / CONVERTER_S
-    power = (v * np.conj(i)).real / p[P_RATED]
-    d[POWER] = (power - x[POWER]) / CONVERTER_S
-    aim = p[F_REF] - p[DROOP] * x[POWER]
-    if now.system.governor[j] == SET_POWER:
-        aim += x[POWER_TRIM]
-        d[POWER_TRIM] = max(p[DROOP], LEAST_TRIM_DROOP) * (p[P_SET] - x[POWER]) / POWER_TRIM_S
-    d[SPEED] = (aim - x[SPEED]) / CONVERTER_SPEED_S
-    d[ANGLE] = now.system.omega * (x[SPEED] - f)
+def move_converter(source: Any, j: int) -> None:
+    """Fill the rates of a grid-forming converter: e.m.f. by voltage or current, speed by droop."""
+    i_d, i_q, vd, vq = source[j, I_D], source[j, I_Q], source[j, V_D], source[j, V_Q]
+    seen = np.hypot(vd - source[j, XC] * i_q, vq + source[j, XC] * i_d)
+    room = LIMITER_X * (source[j, I_MAX] - np.hypot(i_d, i_q))
+    source[j, FLUX + RATE] = min(source[j, V_REF] - seen, room) / CONVERTER_S
+    power = (vd * i_d + vq * i_q) / source[j, P_RATED]
+    source[j, POWER + RATE] = (power - source[j, POWER]) / CONVERTER_S
+    aim = source[j, F_REF] - source[j, DROOP] * source[j, POWER]
+    if source[j, GOVERNOR] == SET_POWER:
+        aim += source[j, POWER_TRIM]
+        trim = max(source[j, DROOP], LEAST_TRIM_DROOP) * (source[j, P_SET] - source[j, POWER])
+        source[j, POWER_TRIM + RATE] = trim / POWER_TRIM_S
+    source[j, SPEED + RATE] = (aim - source[j, SPEED]) / CONVERTER_SPEED_S
 
 
 @compiled
-def share_power(now: Any) -> None:
-    """Set what the load-sharing lines carry: the mean kW of the sets on them over their rated kW."""
+def shared_power(source: Any) -> Any:
+    """Return what the load-sharing lines carry: mean kW of the sets on them over their rated kW."""
     total, weight = 0.0, 0.0
-    for j in range(len(now.system.node)):
-        p = now.par[j]
-        if now.system.governor[j] == LOAD_SHARING and p[ON] != 0.0:
-            total += now.source[j, POWER] * p[P_RATED] * p[RATING]
-            weight += p[P_RATED] * p[RATING]
-    now.shared[0] = total / weight if weight > 0.0 else 0.0
+    for j in range(source.shape[0]):
+        if source[j, GOVERNOR] == LOAD_SHARING and source[j, ON] != 0.0:
+            rated = source[j, P_RATED] * source[j, RATING]
+            total += source[j, POWER] * rated
+            weight += rated
+    return total / weight if weight > 0.0 else 0.0
 
 
 @compiled
-def motor_torques(now: Any, m: int, f: float) -> Any:
-    """Return the torque of a motor and that of its load, over rated torque."""
-    par = now.system.motor[m]
-    n = now.speed[m]
-    law = now.system.law[m]
+def fill_torques(motor: Any, node: Any, m: int, f: float) -> None:
+    """Fill the torque of a motor and that of its load, over rated torque; `f` is the island's speed."""
+    n = motor[m, TURNING]
     against = 1.0
-    if law == FAN:
+    if motor[m, LAW] == FAN:
         against = FAN_BREAKAWAY + (1.0 - FAN_BREAKAWAY) * n * n
-    elif law == HYPERBOLIC:
+    elif motor[m, LAW] == HYPERBOLIC:
         against = 1.0 / max(n, 1.0 / HYPERBOLIC_LARGEST)
-    against *= par[LOAD]
-    if now.stage[m] not in (REDUCED, FULL) or now.system.method[m] == BY_CONVERTER:
-        return 0.0, against
-    v_own = abs(now.v[now.system.motor_node[m]]) * par[OWN_MOTOR_V]
-    _, k = motor_admittance(now, m, v_own)
-    slip = now.slip[m]
-    r, x = motor_branch(slip, par)
-    v = v_own * k
-    torque = r / ((par[R_STATOR] + r) ** 2 + x * x) * v * v * par[AIR_GAP] / f
-    w = min(max((slip - par[SLIP_RATED]) / (1.0 - par[SLIP_RATED]), 0.0), 1.0)
-    return torque * (1.0 + w * (par[TORQUE_FACTOR] - 1.0)), against
+    motor[m, AGAINST], motor[m, TORQUE] = against * motor[m, LOAD], 0.0
+    if motor[m, WINDING] == 0.0:
+        return
+    k = int(motor[m, MOTOR_NODE])
+    u2 = node[k, V_RE] * node[k, V_RE] + node[k, V_IM] * node[k, V_IM]
+    own = motor[m, WINDING] * motor[m, OWN_MOTOR_V]
+    r, x = motor_branch(motor, m)
+    with_r = motor[m, R_STATOR] + r
+    torque = r / (with_r * with_r + x * x) * u2 * own * own * motor[m, AIR_GAP] / f
+    slip, rated = motor[m, SLIP], motor[m, SLIP_RATED]
+    w = min(max((slip - rated) / (1.0 - rated), 0.0), 1.0)
+    motor[m, TORQUE] = torque * (1.0 + w * (motor[m, TORQUE_FACTOR] - 1.0))
 
 
 @compiled
-def move(now: Any, f: float, d_source: Any, d_speed: Any) -> None:
-    """Fill the derivatives of all states at the voltages of `now`; `f` is the island's speed."""
-    share_power(now)
-    d_source[:] = 0.0
-    for j in range(len(now.system.node)):
-        if now.system.kind[j] == MACHINE:
-            move_machine(now, j, f, d_source[j])
-        elif now.system.kind[j] == CONVERTER:
-            move_converter(now, j, f, d_source[j])
+def move_motors(motor: Any, node: Any, f: float) -> None:
+    """Fill torques and rates of all motors."""
+    for m in range(motor.shape[0]):
+        motor[m, TURNING_RATE] = 0.0
+        if motor[m, METHOD] == BY_CONVERTER:
+            ramping = motor[m, STAGE] != OFF and motor[m, TURNING] < 1.0
+            motor[m, TURNING_RATE] = 1.0 / motor[m, RAMP_S] if ramping else 0.0
+            continue
+        fill_torques(motor, node, m, f)
+        if motor[m, STAGE] == OFF:
+            continue
+        rate = (motor[m, TORQUE] - motor[m, AGAINST]) / motor[m, MOTOR_2H]
+        motor[m, TURNING_RATE] = rate if motor[m, TURNING] > 0.0 else max(rate, 0.0)
+
+
+@compiled
+def move(now: Any) -> None:
+    """Fill the rates of all states at the voltages and currents found."""
+    source, f = now.source, now.single[ISLAND_SPEED]
+    now.single[SHARED] = shared_power(source)
+    for j in range(source.shape[0]):
+        for state in range(FIRST_STATE, FIRST_STATE + STATES):
+            source[j, state + RATE] = 0.0
+        speed = source[j, SPEED]
+        if source[j, KIND] == MACHINE:
+            move_machine(now, j)
+        elif source[j, KIND] == CONVERTER:
+            move_converter(source, j)
         else:
-            d_source[j, ANGLE] = now.system.omega * (now.par[j, F_REF] - f)
-    for m in range(len(now.system.motor_node)):
-        d_speed[m] = 0.0
-        if now.stage[m] == OFF:
-            continue
-        if now.system.method[m] == BY_CONVERTER:
-            d_speed[m] = 1.0 / now.system.motor[m, RAMP_S] if now.speed[m] < 1.0 else 0.0
-            continue
-        torque, against = motor_torques(now, m, f)
-        d_speed[m] = (torque - against) / now.system.motor[m, MOTOR_2H]
-        if now.speed[m] <= 0.0 and d_speed[m] < 0.0:
-            d_speed[m] = 0.0
+            speed = source[j, F_REF]
+        source[j, ANGLE + RATE] = now.single[OMEGA] * (speed - f)
+    move_motors(now.motor, now.node, f)

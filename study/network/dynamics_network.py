@@ -1,6 +1,7 @@
 """Voltages of the reduced network at one instant, compiled: Newton's method, factors kept while they serve.
 
-Unknowns are Re V then Im V of every node; the mismatch is the current that leaves a node.
+Unknowns are Re V then Im V of every node; the mismatch is the current that leaves a node. Sources are linear
+in the voltage while their states stand, motors as well but for soft starters; consumers are not.
 """
 
 from __future__ import annotations
@@ -12,18 +13,41 @@ import numpy as np
 
 from study.formulas.starting import SOFT_START_FIRST_VOLTAGE
 from study.network.dynamics_data import (
+    A_IM,
+    A_RE,
     ANGLE,
     B_FIXED,
+    B_IM,
+    B_RE,
     B_SHUNT,
     BY_CONVERTER,
+    COSINE,
     DAMPER_D,
     DAMPER_Q,
+    FACTORED,
+    FLOOR,
     FLUX,
     FULL,
     G_SHUNT,
+    HAS_FACTORS,
+    I0_IM,
+    I0_RE,
+    I_D,
+    I_IM,
     I_LIMIT,
+    I_Q,
+    I_RE,
+    KIND,
+    M_II,
+    M_IR,
+    M_RI,
+    M_RR,
     MACHINE,
-    OFF,
+    METHOD,
+    MOTOR_B,
+    MOTOR_G,
+    MOTOR_NODE,
+    NODE,
     ON,
     OWN_MOTOR_V,
     OWN_V,
@@ -37,11 +61,22 @@ from study.network.dynamics_data import (
     RAMP_S,
     RATING,
     REDUCED,
+    SHUNT_B,
+    SHUNT_G,
+    SINCE,
+    SINE,
+    SLIP,
     SLIP_RATED,
     SOFT_STARTER,
     SPEED,
+    STAGE,
     STAR_DELTA,
     TAP,
+    V_D,
+    V_IM,
+    V_Q,
+    V_RE,
+    WINDING,
     X_RUN,
     X_SOURCE,
     X_START,
@@ -58,12 +93,13 @@ TOLERANCE = 1e-8  # of the mismatch, pu of the network's base
 KEEP_FACTORS = 4  # iterations that old factors may take
 MOST = 40
 SMALLEST_SLIP = 1e-6
-LEAST_VOLTAGE = 1e-4  # of |V|^2, so that nothing is divided by nothing in a fault
+LEAST_SQUARE = 1e-4  # of |V|, so that nothing is divided by nothing in a fault
+AS_IMPEDANCE = 1e9  # a floor that no voltage reaches
 
 
 @compiled
 def factorise(a: Any, order: Any) -> bool:
-    """Factorise a [n, n] in place with row exchanges in `order`; False where it is singular."""
+    """Factorise the square part of a [n, n + 1] in place, row exchanges in `order`; False where singular."""
     n = a.shape[0]
     for k in range(n):
         p, best = k, abs(a[k, k])
@@ -79,263 +115,280 @@ def factorise(a: Any, order: Any) -> bool:
         inverse = 1.0 / a[k, k]
         for i in range(k + 1, n):
             if a[i, k] != 0.0:
-                a[i, k] *= inverse
-                f = a[i, k]
+                f = a[i, k] * inverse
+                a[i, k] = f
                 for j in range(k + 1, n):
                     a[i, j] -= f * a[k, j]
     return True
 
 
 @compiled
-def back_substitute(a: Any, order: Any, b: Any) -> None:
-    """Solve with the factors, in place."""
+def back_substitute(a: Any, order: Any) -> None:
+    """Solve with the factors in a for the right-hand side in its last column, in place."""
     n = a.shape[0]
     for k in range(n):
         p = order[k]
-        b[k], b[p] = b[p], b[k]
+        a[k, n], a[p, n] = a[p, n], a[k, n]
     for i in range(n):
-        total = b[i]
+        total = a[i, n]
         for j in range(i):
-            total -= a[i, j] * b[j]
-        b[i] = total
+            total -= a[i, j] * a[j, n]
+        a[i, n] = total
     for i in range(n - 1, -1, -1):
-        total = b[i]
+        total = a[i, n]
         for j in range(i + 1, n):
-            total -= a[i, j] * b[j]
-        b[i] = total / a[i, i]
+            total -= a[i, j] * a[j, n]
+        a[i, n] = total / a[i, i]
 
 
 @compiled
-def subtransient(x: Any, p: Any) -> Any:
-    """Return speed x E''d and speed x E''q of a machine from its states."""
-    share = (p[XD2] - p[XL]) / (p[XD1] - p[XL])
-    eq = share * x[FLUX] + (1.0 - share) * x[DAMPER_D]
-    return x[SPEED] * x[DAMPER_Q], x[SPEED] * eq
+def prepare_sources(source: Any) -> None:
+    """Fill the current of every source as I0 - M V, in network units.
+
+    A machine's axes: ``Vd = -Ra Id + w X''q Iq + w E''d``, ``Vq = -Ra Iq - w X''d Id + w E''q``, turned by
+    its angle; any other source is an e.m.f. behind its impedance.
+    """
+    for j in range(source.shape[0]):
+        for column in range(I0_RE, I_RE):
+            source[j, column] = 0.0
+        s, c = np.sin(source[j, ANGLE]), np.cos(source[j, ANGLE])
+        source[j, SINE], source[j, COSINE] = s, c
+        if source[j, ON] == 0.0:
+            continue
+        to_current = source[j, RATING] * source[j, OWN_V]
+        scale = to_current * source[j, OWN_V]
+        if source[j, KIND] != MACHINE:
+            y = 1.0 / complex(source[j, R_SOURCE], source[j, X_SOURCE])
+            i = y * complex(c, s) * (source[j, FLUX] * to_current)
+            source[j, I0_RE], source[j, I0_IM] = i.real, i.imag
+            source[j, M_RR] = source[j, M_II] = y.real * scale
+            source[j, M_RI], source[j, M_IR] = -y.imag * scale, y.imag * scale
+            continue
+        ra, w = source[j, RA], source[j, SPEED]
+        xd, xq = w * source[j, XD2], w * source[j, XQ2]
+        share = (source[j, XD2] - source[j, XL]) / (source[j, XD1] - source[j, XL])
+        eq = w * (share * source[j, FLUX] + (1.0 - share) * source[j, DAMPER_D])
+        ed = w * source[j, DAMPER_Q]
+        inverse = 1.0 / (ra * ra + xd * xq)
+        i_d, i_q = (ra * ed + xq * eq) * inverse, (ra * eq - xd * ed) * inverse
+        source[j, I0_RE] = (i_d * s + i_q * c) * to_current
+        source[j, I0_IM] = (i_q * s - i_d * c) * to_current
+        g = scale * inverse
+        d_r, d_i = ra * s + xq * c, -ra * c + xq * s
+        q_r, q_i = ra * c - xd * s, ra * s + xd * c
+        source[j, M_RR], source[j, M_RI] = g * (d_r * s + q_r * c), g * (d_i * s + q_i * c)
+        source[j, M_IR], source[j, M_II] = g * (q_r * s - d_r * c), g * (q_i * s - d_i * c)
 
 
 @compiled
-def axis_currents(x: Any, p: Any, v: complex) -> Any:
-    """Return Id, Iq, Vd and Vq of a machine at a network voltage, per unit of its own."""
-    s, c = np.sin(x[ANGLE]), np.cos(x[ANGLE])
-    vr, vi = v.real * p[OWN_V], v.imag * p[OWN_V]
-    vd, vq = vr * s - vi * c, vr * c + vi * s
-    ed, eq = subtransient(x, p)
-    xd, xq = x[SPEED] * p[XD2], x[SPEED] * p[XQ2]
-    inverse = 1.0 / (p[RA] * p[RA] + xd * xq)
-    i_d = (p[RA] * (ed - vd) + xq * (eq - vq)) * inverse
-    i_q = (p[RA] * (eq - vq) - xd * (ed - vd)) * inverse
-    return i_d, i_q, vd, vq
+def fill_currents(source: Any, node: Any) -> None:
+    """Fill currents, and axis currents and voltages, of the sources at the voltages found."""
+    for j in range(source.shape[0]):
+        k = int(source[j, NODE])
+        vr, vi = node[k, V_RE], node[k, V_IM]
+        re = source[j, I0_RE] - source[j, M_RR] * vr - source[j, M_RI] * vi
+        im = source[j, I0_IM] - source[j, M_IR] * vr - source[j, M_II] * vi
+        source[j, I_RE], source[j, I_IM] = re, im
+        s, c, own = source[j, SINE], source[j, COSINE], source[j, OWN_V]
+        to_own = 1.0 / (source[j, RATING] * own)
+        source[j, I_D], source[j, I_Q] = (re * s - im * c) * to_own, (re * c + im * s) * to_own
+        source[j, V_D], source[j, V_Q] = (vr * s - vi * c) * own, (vr * c + vi * s) * own
+        if source[j, ON] == 0.0 and source[j, KIND] == MACHINE:
+            share = (source[j, XD2] - source[j, XL]) / (source[j, XD1] - source[j, XL])
+            source[j, V_D] = source[j, SPEED] * source[j, DAMPER_Q]
+            eq = share * source[j, FLUX] + (1.0 - share) * source[j, DAMPER_D]
+            source[j, V_Q] = source[j, SPEED] * eq
 
 
 @compiled
-def source_current(kind: int, x: Any, p: Any, v: complex) -> complex:
-    """Return the current of a source in network units."""
-    if p[ON] == 0.0:
-        return 0j
-    if kind == MACHINE:
-        i_d, i_q, _, _ = axis_currents(x, p, v)
-        s, c = np.sin(x[ANGLE]), np.cos(x[ANGLE])
-        return complex(i_d * s + i_q * c, i_q * s - i_d * c) * (p[RATING] * p[OWN_V])
-    emf = complex(x[FLUX] * np.cos(x[ANGLE]), x[FLUX] * np.sin(x[ANGLE]))
-    return (emf - v * p[OWN_V]) / complex(p[R_SOURCE], p[X_SOURCE]) * (p[RATING] * p[OWN_V])
-
-
-@compiled
-def motor_branch(slip: float, m: Any) -> Any:
-    """Return rotor resistance over slip and leakage reactance of a motor at a slip."""
-    s = slip
+def motor_branch(motor: Any, m: int) -> Any:
+    """Return rotor resistance over slip and leakage reactance of a motor at its slip."""
+    s = motor[m, SLIP]
     if abs(s) < SMALLEST_SLIP:
         s = SMALLEST_SLIP
-    w = min(max((s - m[SLIP_RATED]) / (1.0 - m[SLIP_RATED]), 0.0), 1.0)
-    r = m[R_RUN] + w * (m[R_START] - m[R_RUN])
-    return r / s, m[X_RUN] + w * (m[X_START] - m[X_RUN])
+    w = min(max((s - motor[m, SLIP_RATED]) / (1.0 - motor[m, SLIP_RATED]), 0.0), 1.0)
+    r = motor[m, R_RUN] + w * (motor[m, R_START] - motor[m, R_RUN])
+    return r / s, motor[m, X_RUN] + w * (motor[m, X_START] - motor[m, X_RUN])
 
 
 @compiled
-def starter(now: Any, m: int, y: float, v_own: float) -> Any:
-    """Return the shares of active and of whole motor admittance that the network sees, and of the voltage.
+def prepare_motor(motor: Any, m: int, v: float) -> None:
+    """Fill what the network sees of a motor at a voltage [pu of the network], and the voltage it is left.
 
     Star: a third of the admittance, and voltage over root 3 on each phase; autotransformer: a^2 and a. A soft
-    starter passes k of the voltage and the motor's own current k Y V, whose active part is k^2 G V.
+    starter passes k of the voltage and the motor's own current k Y V, whose active part is k^2 G V. A
+    converter takes its power whatever the voltage.
     """
-    method, par = now.system.method[m], now.system.motor[m]
-    if now.stage[m] == FULL:
-        return 1.0, 1.0, 1.0
-    if method == STAR_DELTA:
-        return 1.0 / 3.0, 1.0 / 3.0, 1.0 / np.sqrt(3.0)
-    if method == SOFT_STARTER:
-        share = min(now.since[m] / par[RAMP_S], 1.0)
-        k = SOFT_START_FIRST_VOLTAGE + (1.0 - SOFT_START_FIRST_VOLTAGE) * share
-        if y * v_own * k > par[I_LIMIT]:
-            k = par[I_LIMIT] / (y * v_own)
-        return k * k, k, k
-    a = par[TAP]
-    return a * a, a * a, a
-
-
-@compiled
-def motor_admittance(now: Any, m: int, v_own: float) -> Any:
-    """Return a motor's admittance in network units, and the part of the voltage at its windings."""
-    par = now.system.motor[m]
-    fixed = complex(0.0, par[B_FIXED])
-    if now.stage[m] not in (REDUCED, FULL):
-        return fixed, 0.0
-    r, x = motor_branch(now.slip[m], par)
-    y = complex(par[G_SHUNT], -par[B_SHUNT]) + 1.0 / complex(par[R_STATOR] + r, x)
-    active, whole, k = starter(now, m, abs(y), v_own)
+    motor[m, MOTOR_G], motor[m, MOTOR_B], motor[m, WINDING] = 0.0, -motor[m, B_FIXED], 0.0
+    stage, method = int(motor[m, STAGE]), int(motor[m, METHOD])
+    if stage not in (REDUCED, FULL):
+        return
+    if method == BY_CONVERTER:
+        ramp = min(motor[m, SINCE] / motor[m, RAMP_S], 1.0) / (v * v)
+        motor[m, MOTOR_G], motor[m, MOTOR_B] = motor[m, POWER_P] * ramp, motor[m, POWER_Q] * ramp
+        return
+    r, x = motor_branch(motor, m)
+    y = complex(motor[m, G_SHUNT], -motor[m, B_SHUNT]) + 1.0 / complex(motor[m, R_STATOR] + r, x)
+    active, whole, k = 1.0, 1.0, 1.0
+    if stage == REDUCED and method == STAR_DELTA:
+        active, whole, k = 1.0 / 3.0, 1.0 / 3.0, 1.0 / np.sqrt(3.0)
+    elif stage == REDUCED and method == SOFT_STARTER:
+        ramp = min(motor[m, SINCE] / motor[m, RAMP_S], 1.0)
+        k = SOFT_START_FIRST_VOLTAGE + (1.0 - SOFT_START_FIRST_VOLTAGE) * ramp
+        own = abs(y) * v * motor[m, OWN_MOTOR_V]
+        if own * k > motor[m, I_LIMIT]:
+            k = motor[m, I_LIMIT] / own
+        active, whole = k * k, k
+    elif stage == REDUCED:
+        k = motor[m, TAP]
+        active, whole = k * k, k * k
     g = active * y.real
-    b = np.sqrt(max(whole * whole * (y.real**2 + y.imag**2) - g * g, 0.0))
-    return complex(g, -b if y.imag < 0.0 else b) * par[Y_SCALE] + fixed, k
+    b = np.sqrt(max(whole * whole * (y.real * y.real + y.imag * y.imag) - g * g, 0.0))
+    motor[m, MOTOR_G] = g * motor[m, Y_SCALE]
+    motor[m, MOTOR_B] = b * motor[m, Y_SCALE] - motor[m, B_FIXED]
+    motor[m, WINDING] = k
 
 
 @compiled
-def mismatch(now: Any, f: Any) -> float:
-    """Fill the mismatch [2 node] at the voltages of `now`; return its largest entry."""
-    v, n = now.v, len(now.v)
-    sys = now.system
+def follow_voltage(motor: Any, node: Any, every: bool) -> None:
+    """Bring motors up to date with the voltages: all, or those that do not follow them in proportion."""
+    for m in range(motor.shape[0]):
+        if every or motor[m, METHOD] >= SOFT_STARTER:
+            k, least = int(motor[m, MOTOR_NODE]), LEAST_SQUARE
+            if motor[m, METHOD] == BY_CONVERTER:
+                least = node[k, FLOOR]
+            u2 = node[k, V_RE] * node[k, V_RE] + node[k, V_IM] * node[k, V_IM]
+            prepare_motor(motor, m, np.sqrt(max(u2, least)))
+
+
+@compiled
+def mismatch(now: Any) -> float:
+    """Fill the mismatch into the last column of the work space; return its largest entry."""
+    node, f, y = now.node, now.work, now.y
+    n = node.shape[0]
     for k in range(n):
-        re, im = 0.0, 0.0
+        vr, vi = node[k, V_RE], node[k, V_IM]
+        over = 1.0 / max(vr * vr + vi * vi, node[k, FLOOR])
+        g = node[k, A_RE] * over + node[k, B_RE] + node[k, SHUNT_G]
+        b = -node[k, A_IM] * over - node[k, B_IM] + node[k, SHUNT_B]
+        re, im = g * vr - b * vi, g * vi + b * vr
         for j in range(n):
-            a = sys.y[k, j]
-            re += a.real * v[j].real - a.imag * v[j].imag
-            im += a.real * v[j].imag + a.imag * v[j].real
-        u2 = v[k].real ** 2 + v[k].imag ** 2
-        over = 1.0 / max(u2, sys.floor[k])
-        a = np.conj(now.constant[k]) * over + np.conj(now.square[k]) + now.shunt[k]
-        total = a * v[k]
-        f[k], f[n + k] = re + total.real, im + total.imag
-    for m in range(len(sys.motor_node)):
-        k = sys.motor_node[m]
-        # The two that do not follow the voltage in proportion are worked out at every voltage.
-        i = motor_current(now, m) if sys.method[m] >= SOFT_STARTER else now.motor_y[m] * v[k]
-        f[k] += i.real
-        f[n + k] += i.imag
-    for j in range(len(sys.node)):
-        k = sys.node[j]
-        i = source_current(sys.kind[j], now.source[j], now.par[j], v[k])
-        f[k] -= i.real
-        f[n + k] -= i.imag
+            a = y[k, j]
+            re += a.real * node[j, V_RE] - a.imag * node[j, V_IM]
+            im += a.real * node[j, V_IM] + a.imag * node[j, V_RE]
+        f[k, 2 * n], f[n + k, 2 * n] = re, im
+    follow_voltage(now.motor, node, False)
+    for m in range(now.motor.shape[0]):
+        k = int(now.motor[m, MOTOR_NODE])
+        g, b = now.motor[m, MOTOR_G], now.motor[m, MOTOR_B]
+        f[k, 2 * n] += g * node[k, V_RE] + b * node[k, V_IM]
+        f[n + k, 2 * n] += g * node[k, V_IM] - b * node[k, V_RE]
+    source = now.source
+    for j in range(source.shape[0]):
+        k = int(source[j, NODE])
+        vr, vi = node[k, V_RE], node[k, V_IM]
+        f[k, 2 * n] -= source[j, I0_RE] - source[j, M_RR] * vr - source[j, M_RI] * vi
+        f[n + k, 2 * n] -= source[j, I0_IM] - source[j, M_IR] * vr - source[j, M_II] * vi
     worst = 0.0
     for k in range(2 * n):
-        worst = abs(f[k]) if not abs(f[k]) <= worst else worst
+        worst = abs(f[k, 2 * n]) if not abs(f[k, 2 * n]) <= worst else worst
     return worst
 
 
 @compiled
-def motor_current(now: Any, m: int) -> complex:
-    """Return the current of a motor in network units at the voltages of `now`."""
-    sys = now.system
-    v = now.v[sys.motor_node[m]]
-    u = abs(v)
-    if sys.method[m] == BY_CONVERTER:
-        if now.stage[m] == OFF:
-            return 0j
-        ramp = min(now.since[m] / sys.motor[m, RAMP_S], 1.0)
-        s = complex(sys.motor[m, POWER_P], -sys.motor[m, POWER_Q]) * ramp
-        return s * v / max(u * u, sys.floor[sys.motor_node[m]])
-    y, _ = motor_admittance(now, m, u * sys.motor[m, OWN_MOTOR_V])
-    return y * v
-
-
-@compiled
-def jacobian(now: Any, a: Any) -> None:
-    """Fill the gradient of the mismatch [2 node, 2 node]."""
-    v, n = now.v, len(now.v)
-    sys = now.system
+def jacobian(now: Any) -> None:
+    """Fill the gradient of the mismatch into the square part of the work space."""
+    node, a = now.node, now.work
+    n = node.shape[0]
     for k in range(n):
         for j in range(n):
-            y = sys.y[k, j]
+            y = now.y[k, j]
             a[k, j], a[k, n + j], a[n + k, j], a[n + k, n + j] = y.real, -y.imag, y.imag, y.real
-        u2 = v[k].real ** 2 + v[k].imag ** 2
-        c = np.conj(now.constant[k])
-        y = np.conj(now.square[k]) + now.shunt[k] + c / max(u2, sys.floor[k])
-        add(a, k, (y.real, -y.imag, y.imag, y.real))
-        if u2 > sys.floor[k]:
-            i = c * v[k] / (u2 * u2)
-            e, f = 2.0 * v[k].real, 2.0 * v[k].imag
-            add(a, k, (-i.real * e, -i.real * f, -i.imag * e, -i.imag * f))
-    for m in range(len(sys.motor_node)):
-        y = now.motor_y[m]
-        add(a, sys.motor_node[m], (y.real, -y.imag, y.imag, y.real))
-    for j in range(len(sys.node)):
-        p, x = now.par[j], now.source[j]
-        if p[ON] == 0.0:
-            continue
-        scale = p[RATING] * p[OWN_V] * p[OWN_V]
-        if sys.kind[j] != MACHINE:
-            y = scale / complex(p[R_SOURCE], p[X_SOURCE])
-            add(a, sys.node[j], (y.real, -y.imag, y.imag, y.real))
-            continue
-        s, c = np.sin(x[ANGLE]), np.cos(x[ANGLE])
-        xd, xq = x[SPEED] * p[XD2], x[SPEED] * p[XQ2]
-        g = scale / (p[RA] * p[RA] + xd * xq)
-        # Both axes turned into the network's: T^T [[Ra, Xq], [-Xd, Ra]] T.
-        d_r, d_i = p[RA] * s + xq * c, -p[RA] * c + xq * s
-        q_r, q_i = p[RA] * c - xd * s, p[RA] * s + xd * c
-        rr, ri = g * (d_r * s + q_r * c), g * (d_i * s + q_i * c)
-        ir, ii = g * (q_r * s - d_r * c), g * (q_i * s - d_i * c)
-        add(a, sys.node[j], (rr, ri, ir, ii))
+        vr, vi = node[k, V_RE], node[k, V_IM]
+        u2 = vr * vr + vi * vi
+        over = 1.0 / max(u2, node[k, FLOOR])
+        g = node[k, A_RE] * over + node[k, B_RE] + node[k, SHUNT_G]
+        b = -node[k, A_IM] * over - node[k, B_IM] + node[k, SHUNT_B]
+        a[k, k], a[k, n + k] = a[k, k] + g, a[k, n + k] - b
+        a[n + k, k], a[n + k, n + k] = a[n + k, k] + b, a[n + k, n + k] + g
+        if u2 > node[k, FLOOR]:
+            twice = 2.0 * over * over
+            re = (node[k, A_RE] * vr + node[k, A_IM] * vi) * twice
+            im = (node[k, A_RE] * vi - node[k, A_IM] * vr) * twice
+            a[k, k], a[k, n + k] = a[k, k] - re * vr, a[k, n + k] - re * vi
+            a[n + k, k], a[n + k, n + k] = a[n + k, k] - im * vr, a[n + k, n + k] - im * vi
+    for m in range(now.motor.shape[0]):
+        k = int(now.motor[m, MOTOR_NODE])
+        g, b = now.motor[m, MOTOR_G], now.motor[m, MOTOR_B]
+        a[k, k], a[k, n + k] = a[k, k] + g, a[k, n + k] + b
+        a[n + k, k], a[n + k, n + k] = a[n + k, k] - b, a[n + k, n + k] + g
+    source = now.source
+    for j in range(source.shape[0]):
+        k = int(source[j, NODE])
+        a[k, k], a[k, n + k] = a[k, k] + source[j, M_RR], a[k, n + k] + source[j, M_RI]
+        a[n + k, k] = a[n + k, k] + source[j, M_IR]
+        a[n + k, n + k] = a[n + k, n + k] + source[j, M_II]
 
 
 @compiled
-def add(a: Any, k: int, block: Any) -> None:
-    """Add a two by two block to the rows and columns of a node."""
-    n = a.shape[0] // 2
-    a[k, k] += block[0]
-    a[k, n + k] += block[1]
-    a[n + k, k] += block[2]
-    a[n + k, n + k] += block[3]
-
-
-@compiled
-def solve(now: Any) -> bool:
-    """Find the voltages of `now`; False where there are none."""
-    n = len(now.v)
-    sys = now.system
-    for m in range(len(sys.motor_node)):
-        k = sys.motor_node[m]
-        if sys.method[m] == BY_CONVERTER:
-            now.motor_y[m] = 0j
-        else:
-            v_own = max(abs(now.v[k]) * sys.motor[m, OWN_MOTOR_V], 1e-3)
-            now.motor_y[m], _ = motor_admittance(now, m, v_own)
+def newton(now: Any) -> bool:
+    """Find the voltages for the sources and motors prepared; False where there are none."""
+    node, a, single = now.node, now.work, now.single
+    n = node.shape[0]
     for turn in range(MOST):
-        worst = mismatch(now, now.right)
+        worst = mismatch(now)
         if worst < TOLERANCE:
             return True
         if np.isnan(worst) or worst > 1e9:
             return False
-        if now.flags[0] == 0 or turn == KEEP_FACTORS or turn > 2 * KEEP_FACTORS:
-            jacobian(now, now.factors)
-            now.flags[0] = 1 if factorise(now.factors, now.order) else 0
-            now.flags[1] += 1
-            if now.flags[0] == 0:
+        if single[HAS_FACTORS] == 0.0 or turn >= KEEP_FACTORS:
+            for k in range(2 * n):
+                now.order[k] = k
+            jacobian(now)
+            single[HAS_FACTORS] = 1.0 if factorise(a, now.order) else 0.0
+            single[FACTORED] += 1.0
+            if single[HAS_FACTORS] == 0.0:
                 return False
-        back_substitute(now.factors, now.order, now.right)
+        back_substitute(a, now.order)
         for k in range(n):
-            now.v[k] -= complex(now.right[k], now.right[n + k])
+            node[k, V_RE] -= a[k, 2 * n]
+            node[k, V_IM] -= a[n + k, 2 * n]
     return False
+
+
+@compiled
+def solve(now: Any) -> bool:
+    """Find voltages and currents for the states at hand; False where there are none."""
+    prepare_sources(now.source)
+    follow_voltage(now.motor, now.node, True)
+    found = newton(now)
+    if not found and now.single[HAS_FACTORS] != 0.0:
+        now.single[HAS_FACTORS] = 0.0
+        found = newton(now)
+    fill_currents(now.source, now.node)
+    return found
 
 
 @compiled
 def solve_afresh(now: Any) -> bool:
     """Find the voltages after a sudden change; from impedances alone where the last point leads nowhere."""
-    n = len(now.v)
-    now.flags[0] = 0
-    before = now.v.copy()
+    node = now.node
+    before = node.copy()
+    now.single[HAS_FACTORS] = 0.0
     if solve(now):
         return True
-    floor = now.system.floor.copy()
-    now.system.floor[:] = 1e9
     # With every load an impedance of what it drew before, the network is linear.
-    kept = now.constant.copy()
-    for k in range(n):
-        u2 = max(before[k].real ** 2 + before[k].imag ** 2, LEAST_VOLTAGE)
-        now.constant[k] = kept[k] * 1e9 / u2
-        now.v[k] = before[k]
-    now.flags[0] = 0
+    for k in range(node.shape[0]):
+        u2 = max(before[k, V_RE] ** 2 + before[k, V_IM] ** 2, LEAST_SQUARE)
+        node[k, V_RE], node[k, V_IM] = before[k, V_RE], before[k, V_IM]
+        node[k, A_RE], node[k, A_IM] = (
+            before[k, A_RE] * AS_IMPEDANCE / u2,
+            before[k, A_IM] * AS_IMPEDANCE / u2,
+        )
+        node[k, FLOOR] = AS_IMPEDANCE
+    now.single[HAS_FACTORS] = 0.0
     solve(now)
-    now.system.floor[:] = floor
-    now.constant[:] = kept
-    now.flags[0] = 0
+    for k in range(node.shape[0]):
+        node[k, A_RE], node[k, A_IM], node[k, FLOOR] = before[k, A_RE], before[k, A_IM], before[k, FLOOR]
+    now.single[HAS_FACTORS] = 0.0
     return solve(now)

@@ -255,7 +255,7 @@ def voltages_behind(lumped: Lumped, v: FloatArray, buses: IntArray) -> FloatArra
     Returns
     -------
     ndarray, shape (time, wanted)
-        Magnitudes, with the loads of the first state. [pu]
+        Magnitudes, with the loads of the last state. [pu]
     """
     twigs = lumped.twigs
     known: dict[int, FloatArray] = {int(b): v[:, k] for k, b in enumerate(lumped.bus)}
@@ -282,7 +282,7 @@ def voltages_behind(lumped: Lumped, v: FloatArray, buses: IntArray) -> FloatArra
 
 def _through(twigs: Twigs, k: int, behind: FloatArray, floor: float) -> FloatArray:
     """Return the magnitude at the end of a twig; below the floor its whole load is an impedance."""
-    a, b = complex(twigs.constant[k, 0]), complex(twigs.square[k, 0])
+    a, b = complex(twigs.constant[k, -1]), complex(twigs.square[k, -1])
     z = 1.0 / (twigs.own[k] + np.conj(b))
     end = np.maximum(behind, 1e-9).astype(complex)
     v = np.abs(_upper(-twigs.out[k] * z * end, np.full(len(end), z * np.conj(a))))

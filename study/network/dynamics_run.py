@@ -1,0 +1,101 @@
+"""A model followed in time: the compiled run called, and what it kept as arrays of the right length."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from study.network import dynamics_data as d
+from study.network.dynamics_build import Model, shortest_time_s
+from study.network.dynamics_data import Kept, Plant, Script
+
+FloatArray = NDArray[np.float64]
+
+LONGEST_STEP_S = 0.002
+SHORTEST_STEP_S = 0.0002
+STEP_SHARE = 0.4  # of the shortest time constant
+LOG_ROWS = 400
+MORE_ROWS = 2 * LOG_ROWS + 64
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Course:
+    """What a plant did: arrays [time, ...] at every step, an event with a row before and one after.
+
+    ``v_pu`` [time, node] are magnitudes; ``source`` and ``motor`` [time, row, column] hold the KEPT_ columns
+    of `dynamics_data`, per unit of their own ratings. ``log`` [row] is (time, what, which). ``how`` it ended.
+    """
+
+    time_s: FloatArray
+    v_pu: FloatArray
+    source: FloatArray
+    motor: FloatArray
+    log: FloatArray
+    how: int
+    step_s: float
+
+
+def step_for(plant: Plant) -> float:
+    """Return the length of step that a plant wants.
+
+    Parameters
+    ----------
+    plant : Plant
+        Ready to be followed.
+
+    Returns
+    -------
+    float
+        Some part of its shortest time constant, within bounds. [s]
+    """
+    return float(np.clip(STEP_SHARE * shortest_time_s(plant), SHORTEST_STEP_S, LONGEST_STEP_S))
+
+
+def follow_model(model: Model, until_s: float, step_s: float | None = None) -> Course:
+    """Follow a model in time.
+
+    Parameters
+    ----------
+    model : Model
+        At rest; stays as it is.
+    until_s : float
+        How long. [s]
+    step_s : float, optional
+        Length of a step; by `step_for` where left out. [s]
+
+    Returns
+    -------
+    Course
+        What it did.
+    """
+    from study.network.dynamics_kernel import follow
+
+    step = step_for(model.start) if step_s is None else step_s
+    now = Plant(**{name: x.copy() for name, x in model.start._asdict().items()})
+    script = Script(**{name: x.copy() for name, x in model.script._asdict().items()})
+    kept = space_for(now, int(until_s / step) + 4 * len(script.event) + MORE_ROWS)
+    rows, logged, how = follow(now, script, kept, (float(until_s), step))
+    v = kept.v[:rows]
+    return Course(
+        time_s=kept.time[:rows],
+        v_pu=np.hypot(v[:, :, 0], v[:, :, 1]),
+        source=kept.source[:rows],
+        motor=kept.motor[:rows],
+        log=kept.log[:logged],
+        how=int(how),
+        step_s=step,
+    )
+
+
+def space_for(plant: Plant, rows: int) -> Kept:
+    """Return the space that a run of so many rows needs."""
+    sources, motors, nodes = len(plant.source), len(plant.motor), len(plant.node)
+    return Kept(
+        time=np.zeros(rows),
+        v=np.zeros((rows, nodes, 2)),
+        source=np.zeros((rows, sources, d.KEPT_SOURCE)),
+        motor=np.zeros((rows, motors, d.KEPT_MOTOR)),
+        log=np.zeros((LOG_ROWS, 3)),
+    )
