@@ -80,8 +80,9 @@ def reactances(
         if s.droop_base == "rated kVA" and s.law == Law.PHASOR:
             out[j] = np.where(s.reversed_polarity, -d_all[j], d_all[j])  # the droop is the reactance
         elif s.machine is not None and s.law in (Law.PHASOR, Law.REACTIVE_CURRENT, Law.CROSS_CURRENT):
-            pairs, place = np.unique(np.stack([v_all[j], d_all[j]]), axis=1, return_inverse=True)
-            out[j] = np.array([_reactance(s, v, d) for v, d in pairs.T])[place]
+            pairs = list(zip(v_all[j].tolist(), d_all[j].tolist(), strict=True))
+            once = {pair: _reactance(s, *pair) for pair in dict.fromkeys(pairs)}
+            out[j] = [once[pair] for pair in pairs]
     return out
 
 
