@@ -69,7 +69,7 @@ def cable_heat(plant: Plant, models: Sequence[DeviceModel], result: ShortCircuit
     Faults lie between the near end, in the maximum case, and the far end, least kind of fault in the minimum
     case; between both, those just below every pick-up of the devices count, where the next slower stage
     clears. Where the cable has devices at one end alone, they also clear what the other end feeds into a
-    fault on their own side.
+    fault on their own side. Of a fault that lasts longer than 5 s, the heat of the first 5 s counts.
 
     Parameters
     ----------
@@ -193,21 +193,20 @@ def _mode_heat(table: _Worst, column: int, case: _Case) -> None:
     clearing_s, owner, stages = _cleared(case, faults)
     initial = faults.currents.ac_a[:, 0, 0]
     soon = clearing_s <= ADIABATIC_UP_TO_S
-    heat = faults.currents.heat_a2s(np.where(soon, clearing_s, 0.0))
+    heat = faults.currents.heat_a2s(np.minimum(clearing_s, ADIABATIC_UP_TO_S))
     fast = np.array([stage in LIMITING for stage in stages]) & (clearing_s <= LIMITS_WITHIN_S)
     let = _let_through_a2s(case, faults.end, initial, fast)
     ratio = case.ratio[faults.end]
     limited = let < heat
-    heat = np.where(soon, np.fmin(heat, let), np.nan) * ratio**2
+    heat = np.fmin(heat, let) * ratio**2
     cable = np.array([end.cable for end in case.ends])[faults.end]
     table.slow[cable[~soon], column] = True
-    for row in np.argsort(np.nan_to_num(heat, nan=-1.0), kind="stable"):
-        if soon[row]:
-            at = cable[row], column
-            table.heat_a2s[at], table.fault_a[at] = heat[row], initial[row] * ratio[row]
-            table.clearing_s[at], table.device[at] = clearing_s[row], owner[row]
-            table.stage[at[0]][column] = stages[row]
-            table.let_through[at], table.inside[at] = limited[row], faults.inside[row]
+    for row in np.argsort(heat, kind="stable"):
+        at = cable[row], column
+        table.heat_a2s[at], table.fault_a[at] = heat[row], initial[row] * ratio[row]
+        table.clearing_s[at], table.device[at] = clearing_s[row], owner[row]
+        table.stage[at[0]][column] = stages[row]
+        table.let_through[at], table.inside[at] = limited[row], faults.inside[row]
 
 
 def _faults(case: _Case) -> _Faults:

@@ -167,7 +167,7 @@ def _heat(plant: Plant, result: CableProtectionResult, k: int, limits: Limits) -
     if np.isnan(rows).all():
         return
     mode = int(np.nanargmax(rows))
-    device = heat.devices[int(heat.device[k, mode])]
+    device = heat.devices[int(heat.device[k, mode])] if heat.device[k, mode] >= 0 else result.devices[k][0]
     how = (
         f"{heat.stage[k][mode]} at {heat.fault_a[k, mode] / 1000.0:.3g} kA, {heat.clearing_s[k, mode]:.3g} s"
     )

@@ -30,6 +30,7 @@ SHEET: Final = "R Cables"
 _SHOWN: Final = 25
 _NONE: Final = "none"
 _MEGA: Final = 1e6
+_MODES_NAMED: Final = 3
 
 
 def cable_tables(plant: Plant, result: CableProtectionResult) -> tuple[Table, ...]:
@@ -89,7 +90,8 @@ def overload_table(result: CableProtectionResult, cells: Mapping[str, str]) -> T
             "Ib: the greatest current of the load flow, and no less than the rated current of the consumer "
             "or source served. In: setting or rating of the device that trips first; I2: what trips it for "
             "certain within its conventional time (breakers 1.30 Ir, gG fuses 1.6 In, thermal overload "
-            "relays 1.2, makers' curves as given). Ib ≤ In ≤ Iz, and I2 within the limit of the sheet Acceptance. "
+            "relays 1.2, makers' curves as given). Ib ≤ In ≤ Iz, and I2 within the limit of the sheet "
+            "Acceptance. "
             "Steering gear and fire pumps have short-circuit protection alone.",
         ),
         worked=_worked_overload(result, order),
@@ -157,7 +159,14 @@ def heat_table(result: CableProtectionResult, cells: Mapping[str, str]) -> Table
             key="fault_ka", heading="Fault, I''k", unit="kA", most_decimals=3, digits=3, missing="unknown"
         ),
         text_column("where", "Where"),
-        Column(key="clearing_s", heading="Arc out within", unit="s", most_decimals=3, missing="unknown"),
+        Column(
+            key="clearing_s",
+            heading="Arc out within",
+            unit="s",
+            most_decimals=3,
+            missing="unknown",
+            infinite="not cleared",
+        ),
         text_column("data", "Heat from"),
         Column(key="heat", heading="Heat", unit="kA²s", most_decimals=4, digits=3, against="withstand"),
         Column(key="withstand", heading="k²S²", unit="kA²s", most_decimals=3, digits=3),
@@ -178,8 +187,8 @@ def heat_table(result: CableProtectionResult, cells: Mapping[str, str]) -> Table
             "Faults from the near end (maximum case) to the far end (least kind, minimum case), and between "
             "both those just below each pick-up, where the next slower stage clears. Each current decays "
             "until the arc is out at the latest; a maker's let-through I²t counts where the device opens "
-            "fast enough. Longer than 5 s: in the modes named the least faults last longer than heat stays in the "
-            "conductor; the overload rating then governs.",
+            "fast enough. Longer than 5 s: in the modes named the least faults last longer than heat stays "
+            "in the conductor; the heat of their first 5 s counts.",
         ),
         worked=_worked_heat(result, rows),
         shown_per_group=_SHOWN,
@@ -198,7 +207,7 @@ def _heat_row(result: CableProtectionResult, k: int, m: int, cells: Mapping[str,
         part = percent(value / withstand)
         worst = (
             result.modes[m],
-            heat.devices[int(heat.device[k, m])],
+            heat.devices[int(heat.device[k, m])] if heat.device[k, m] >= 0 else _NONE,
             heat.stage[k][m],
             float(heat.fault_a[k, m]) / 1000.0,
             "between the ends" if heat.inside[k, m] else "at an end",
@@ -211,7 +220,9 @@ def _heat_row(result: CableProtectionResult, k: int, m: int, cells: Mapping[str,
 
 
 def _named(modes: list[str], every: tuple[str, ...]) -> str:
-    return "every mode" if len(modes) == len(every) > 1 else ", ".join(modes)
+    if len(modes) == len(every) > 1:
+        return "every mode"
+    return ", ".join(modes) if len(modes) <= _MODES_NAMED else f"{len(modes)} of {len(every)} modes"
 
 
 def _worked_heat(result: CableProtectionResult, rows: list[tuple[int, int]]) -> Worked | None:
@@ -272,7 +283,8 @@ def sections_table(result: CableProtectionResult, cells: Mapping[str, str]) -> T
         notes=(
             "Proposals for the designer, nothing is changed: number of runs, way of laying and devices are "
             "kept. Voltage drop: the run may use its own drop and what the worst consumer behind it leaves "
-            "of the limit, in the mode that leaves least. Mechanical strength and terminals are not looked at.",
+            "of the limit, in the mode that leaves least. Mechanical strength and terminals are not looked "
+            "at.",
         ),
         shown_per_group=_SHOWN,
     )

@@ -39,10 +39,11 @@ class CableHeat:
     """Heat of the worst fault on each cable, over the whole range from the near end to the far end.
 
     [cable]: ``withstand_a2s`` k² S² of all runs. [cable, mode]: ``heat_a2s`` until the arc is out at the
-    latest, where that is within the time for which heat stays in the conductor; ``fault_a`` the initial
-    symmetrical current of that fault; ``clearing_s`` and the ``device`` (place in `devices`, -1: none) that
-    clears it; ``let_through`` True where the maker's let-through I²t counts; ``inside`` True where a fault
-    between both ends is worse than any at the ends; ``slow`` True where some fault of the range lasts longer.
+    latest, but no longer than the 5 s for which heat stays in the conductor; ``fault_a`` the initial
+    symmetrical current of that fault; ``clearing_s`` (inf: it does not clear) and the ``device`` (place in
+    `devices`, -1: none) and ``stage`` that clear it; ``let_through`` True where the maker's let-through I²t
+    counts; ``inside`` True where a fault between both ends is worse than any at the ends; ``slow`` True where
+    some fault of the range lasts longer than those 5 s.
     """
 
     k: FloatArray
