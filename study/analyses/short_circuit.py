@@ -21,6 +21,7 @@ from study.analyses.short_circuit_findings import (
 )
 from study.analyses.short_circuit_general import GeneralCase, compared, general_case
 from study.analyses.short_circuit_options import ShortCircuitOptions
+from study.analyses.short_circuit_simulation import known_bias, simulated_faults
 from study.model.modes import Mode, State
 from study.network.fault_network import FaultNetwork, FaultPlant, fault_network, fault_plant, with_tolerance
 from study.network.fault_supplies import MAXIMUM, MINIMUM, NOMINAL
@@ -72,13 +73,15 @@ def short_circuit(
     """
     static = fault_plant(network)
     places = device_places(network.plant.devices, network.topology)
-    seen = views or [None] * len(network.plant.modes)
+    seen: Sequence[View | None] = views or [None] * len(network.plant.modes)
     solved = [solve_mode(static, m, options, v) for m, v in zip(network.plant.modes, seen, strict=True)]
     general = _compared(solved, options)
     return ShortCircuitResult(
         places=places_of(static),
         f_hz=network.plant.project.f_rated_hz,
         modes=tuple(_mode(s, g, places, options) for s, g in zip(solved, general, strict=True)),
+        simulated=simulated_faults(network),
+        bias=known_bias(),
     )
 
 

@@ -8,6 +8,7 @@ from typing import Any, Final
 
 import numpy as np
 
+from study.report.charts_fault_simulation import simulation_figures
 from study.report.content import StudyOutcome
 from study.report.fault_view import (
     SHEET,
@@ -49,7 +50,7 @@ _MOST_FIGURES: Final = 20
 
 
 def short_circuit_figures(outcome: StudyOutcome) -> tuple[Drawing, ...]:
-    """Draw current against time at the main, emergency and propulsion boards.
+    """Draw current against time at the main, emergency and propulsion boards, then the simulated faults.
 
     Parameters
     ----------
@@ -70,7 +71,7 @@ def short_circuit_figures(outcome: StudyOutcome) -> tuple[Drawing, ...]:
     if rest:
         more = f" The curves of {rest} further boards are on sheet {SHEET} of the workbook."
         drawn[-1] = replace(drawn[-1], caption=drawn[-1].caption + more)
-    return tuple(drawn)
+    return (*drawn, *simulation_figures(outcome))
 
 
 def _board(result: ShortCircuitResult, group: Sequence[int], number: int) -> Drawing:

@@ -40,6 +40,7 @@ _NOT_ON_THE_PAGE = (
     "inherent_curves",
     "short_circuit_by_mode",
     "fault_decay",
+    "fault_simulation_curves",
 )
 """Tables that the page shows as sentences, grid or figures, or leaves to the result sheets."""
 _ON_SHEET_ONLY: Final[dict[str, tuple[str, ...]]] = {

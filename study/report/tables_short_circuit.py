@@ -4,13 +4,14 @@ from __future__ import annotations
 
 from study.report.content import StudyOutcome
 from study.report.fault_view import SHEET, mode_words
-from study.report.methods_short_circuit import SHORT_CIRCUIT_BASIS
+from study.report.methods_short_circuit import KNOWN_BIAS, SHORT_CIRCUIT_BASIS
 from study.report.tables import Table, make_table, text_column
 from study.report.tables_fault_boards import boards_table, by_mode_table, governing_table
 from study.report.tables_fault_branches import branches_table, decay_table, quick_table
 from study.report.tables_fault_earth import earth_table
 from study.report.tables_fault_general import general_tables
 from study.report.tables_fault_places import places_table
+from study.report.tables_fault_simulation import bias_words, simulation_tables
 from study.report.tables_fault_sources import contributions_table, sources_table
 from study.results.short_circuit import ShortCircuitResult
 
@@ -41,10 +42,11 @@ def short_circuit_tables(outcome: StudyOutcome) -> tuple[Table, ...]:
         branches_table(outcome, result),
         quick_table(result),
         decay_table(outcome, result),
+        *simulation_tables(result),
         places_table(outcome, result),
         *general_tables(outcome, result),
         earth_table(outcome, result),
-        basis_table(),
+        basis_table(result),
     )
 
 
@@ -65,12 +67,13 @@ def findings_table(outcome: StudyOutcome, result: ShortCircuitResult) -> Table:
     )
 
 
-def basis_table() -> Table:
+def basis_table(result: ShortCircuitResult) -> Table:
     """Return what the figures rest on, and the cautions."""
+    bias = bias_words(result)
     return make_table(
         key="short_circuit_basis",
         title="Basis of the short-circuit currents, and cautions",
         sheet=SHEET,
         columns=[text_column("subject", "Subject"), text_column("remark", "Basis", kind="long text")],
-        rows=SHORT_CIRCUIT_BASIS,
+        rows=[(subject, text.replace(KNOWN_BIAS, bias)) for subject, text in SHORT_CIRCUIT_BASIS],
     )

@@ -347,25 +347,28 @@ class ModeShortCircuit:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class ShortCircuitResult:
-    """Short-circuit currents of every mode."""
-
-    places: Places
-    f_hz: float
-    modes: tuple[ModeShortCircuit, ...]
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
 class SimulatedFault:
     """A time simulation of one place in the maximum case beside the two standards.
 
+    ``cases`` names the cases of the sheet Events that ask for it and ``cell`` the first of them. Where
+    ``simulated`` is False ``reason`` says why, figures are NaN and arrays empty.
+
     Greatest peak and Iac at T/2 and 0.1 s [A] by the full-order machines, by IEC 61363-1 (``ship_*``) and by
-    IEC 60909 (``general_*``; no Iac). ``time_s``, ``iac_a`` are the simulation's; ``bias`` states the known
-    bias of the method; ``left_out`` names what the simulation does not represent.
+    IEC 60909 (``general_*``; no Iac), of the sources that are simulated alone; ``left_out`` names the others.
+    ``bias_low_percent`` and ``bias_high_percent`` [quantity] are the known differences of IEC 61363-1 at such
+    a place in Iac(T/2), Iac(0.1 s), ip and the greatest peak, and ``behind`` says what kind of place it is.
+
+    [time]: ``iac_a`` by the machines and ``ship_iac_a`` at ``time_s``; ``wave_a`` is the instantaneous
+    current of the phase with the greatest peak and ``ship_envelope_a`` sqrt2 Iac + idc at ``wave_time_s``.
     """
 
+    cases: tuple[str, ...]
+    cell: str
     mode: str
     place: str
+    simulated: bool
+    reason: str
+    behind: str
     peak_a: float
     iac_half_a: float
     iac_100ms_a: float
@@ -375,7 +378,34 @@ class SimulatedFault:
     ship_iac_100ms_a: float
     general_ip_a: float
     general_ik_initial_a: float
+    bias_low_percent: FloatArray
+    bias_high_percent: FloatArray
     time_s: FloatArray
     iac_a: FloatArray
-    bias: str
+    ship_iac_a: FloatArray
+    wave_time_s: FloatArray
+    wave_a: FloatArray
+    ship_envelope_a: FloatArray
     left_out: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class KnownBias:
+    """Measured difference of IEC 61363-1 against a simulation of all windings, at one kind of place [%]."""
+
+    place: str
+    state: str
+    quantity: str
+    low_percent: float
+    high_percent: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ShortCircuitResult:
+    """Short-circuit currents of every mode; ``simulated`` are the faults of the sheet Events."""
+
+    places: Places
+    f_hz: float
+    modes: tuple[ModeShortCircuit, ...]
+    simulated: tuple[SimulatedFault, ...]
+    bias: tuple[KnownBias, ...]

@@ -247,7 +247,7 @@ def mode(
 
 def result(where: Places, *modes: ModeShortCircuit, f_hz: float = 60.0) -> ShortCircuitResult:
     """Return the whole result."""
-    return ShortCircuitResult(places=where, f_hz=f_hz, modes=modes)
+    return ShortCircuitResult(places=where, f_hz=f_hz, modes=modes, simulated=(), bias=())
 
 
 def earth_system(boards: Sequence[str], u_nominal_v: float = 440.0, **changes: Any) -> EarthSystem:

@@ -6,7 +6,7 @@ The currents follow from each source's exponentials by plain numpy, apart from t
 from __future__ import annotations
 
 import math
-from dataclasses import replace
+from dataclasses import fields, replace
 from typing import Any
 
 import numpy as np
@@ -22,10 +22,12 @@ from study.results.short_circuit import (
     FaultCase,
     FaultSources,
     Iec60909Case,
+    KnownBias,
     ModeShortCircuit,
     Places,
     QuickRow,
     ShortCircuitResult,
+    SimulatedFault,
 )
 from tests.analyses.made_up_short_circuit import no_routes
 from tests.report import made_up
@@ -71,7 +73,63 @@ def short_circuit(plant: Plant, *, all_solved: bool = False) -> ShortCircuitResu
     modes = [_mode(plant, where, m) for m in range(len(plant.modes))]
     if not all_solved:
         modes[-1] = replace(modes[-1], solved=False, reason="no source is on line", findings=(), earth=())
-    return ShortCircuitResult(places=where, f_hz=F_HZ, modes=tuple(modes))
+    return ShortCircuitResult(
+        places=where, f_hz=F_HZ, modes=tuple(modes), simulated=simulated(plant), bias=BIAS
+    )
+
+
+def simulated(plant: Plant) -> tuple[SimulatedFault, ...]:
+    """Return one simulated fault, whose ip lies outside its band, and one that could not be simulated."""
+    times, wave = np.linspace(0.0, 0.2, 41), np.linspace(0.0, 0.1, 241)
+    falls = 12_000.0 * np.exp(-times / 0.1) + 6_000.0
+    one = SimulatedFault(
+        cases=("Fault <1>", "Fault 2"),
+        cell="Events!A5",
+        mode=plant.modes[0].name,
+        place=plant.boards[0].name,
+        simulated=True,
+        reason="",
+        behind="on a board that sets feed",
+        peak_a=40_000.0,
+        iac_half_a=16_000.0,
+        iac_100ms_a=10_000.0,
+        ship_peak_a=39_000.0,
+        ship_ip_a=34_000.0,
+        ship_iac_half_a=17_000.0,
+        ship_iac_100ms_a=11_000.0,
+        general_ip_a=41_000.0,
+        general_ik_initial_a=17_500.0,
+        bias_low_percent=read_only([-3.0, 0.0, -10.0, -7.0]),
+        bias_high_percent=read_only([18.0, 14.0, 5.0, 5.0]),
+        time_s=read_only(times),
+        iac_a=read_only(falls),
+        ship_iac_a=read_only(1.05 * falls),
+        wave_time_s=read_only(wave),
+        wave_a=read_only(20_000.0 * np.cos(2.0 * math.pi * F_HZ * wave)),
+        ship_envelope_a=read_only(np.full_like(wave, 34_000.0)),
+        left_out=("Shore 1", "Battery 1"),
+    )
+    nothing = {
+        f.name: read_only([]) for f in fields(SimulatedFault) if f.name.endswith(("_percent", "_s"))
+    } | {name: read_only([]) for name in ("iac_a", "ship_iac_a", "wave_a", "ship_envelope_a")}
+    numbers = [f.name for f in fields(SimulatedFault) if f.name.endswith("_a") and f.name not in nothing]
+    other = SimulatedFault(
+        cases=("Fault 3",), cell="Events!A6", mode=plant.modes[0].name, place="Galley", simulated=False,
+        reason="there is no fault place 'Galley'", behind="", left_out=(), **nothing,
+        **dict.fromkeys(numbers, NAN),
+    )  # fmt: skip
+    return one, other
+
+
+BIAS = (
+    KnownBias(
+        place="on a board that sets feed", state="loaded", quantity="peak at T/2",
+        low_percent=-10.0, high_percent=5.0,
+    ),
+    KnownBias(
+        place="behind a cable", state="loaded", quantity="peak at T/2", low_percent=-14.0, high_percent=3.0
+    ),
+)  # fmt: skip
 
 
 def _places(plant: Plant) -> Places:

@@ -110,7 +110,7 @@ def test_page_says_standard_assumptions_and_cautions() -> None:
         "cables cold (20 °C)",
         "low end of their tolerance",
         "from memory of the standard",
-        "−9 to +4 % off at the board and down to −16 % behind resistive feeders",
+        "on a board that sets feed peak at T/2 −10 to +5 %; behind a cable peak at T/2 −14 to +3 %",
         "greatest peak over all times and angles",
     ):
         assert text in words
@@ -436,7 +436,9 @@ def test_figure_is_small_and_has_a_text_alternative(figure: object) -> None:
 
 
 def test_figures_show_what_they_must() -> None:
-    assert [f.key for f in DRAWN] == ["fig-fault-1", "fig-fault-2", "fig-fault-duties", "fig-fault-peaks"]
+    assert [f.key for f in DRAWN] == [
+        "fig-fault-1", "fig-fault-2", "fig-fault-simulated-1", "fig-fault-duties", "fig-fault-peaks"
+    ]  # fmt: skip
     words = " ".join(etree.fromstring(FIGURES.short_circuit[0].svg).itertext())
     for text in ("a.c., √2 Iac", "d.c., idc", "greatest peak", "DG1", "small motors of MSB 1", "least fault"):
         assert text in words
@@ -454,3 +456,31 @@ def test_nothing_runs_over_and_no_words_overlap(width: int, tmp_path: Path) -> N
     found = json.loads(held[1].replace("&quot;", '"').replace("&amp;", "&").replace("&lt;", "<"))
     assert found["page"] <= found["width"] + 1
     assert (found["over"], found["left"], found["overlaps"]) == ([], [], [])
+
+
+def test_a_simulated_fault_stands_beside_both_standards() -> None:
+    rows = list(TABLES["fault_simulations"].rows())
+    keys = [c.key for c in TABLES["fault_simulations"].columns]
+    peak = dict(zip(keys, rows[3], strict=True))
+    assert (peak["case"], peak["place"]) == ("Fault <1>; Fault 2", OUTCOME.plant.boards[0].name)
+    assert peak["ship_difference_percent"] == pytest.approx(100.0 * (34.0 / 40.0 - 1.0))
+    assert peak["general_difference_percent"] == pytest.approx(2.5)
+    assert (peak["known_from_percent"], peak["known_to_percent"]) == (-10.0, 5.0)
+    assert "outside the known differences" in str(peak["remark"])
+    first = dict(zip(keys, rows[0], strict=True))
+    assert "Shore 1, Battery 1" in str(first["remark"])
+    assert first["known_from_percent"] is None
+    inside = dict(zip(keys, rows[1], strict=True))
+    assert inside["remark"] == ""
+    last = dict(zip(keys, rows[-1], strict=True))
+    assert last["quantity"] == "not simulated"
+    assert last["remark"] == "there is no fault place 'Galley'."
+    assert "fig-fault-simulated-1" in PAGE
+    assert "Fault &lt;1&gt;" in PAGE
+
+
+def test_no_simulated_fault_leaves_no_empty_table() -> None:
+    outcome = replace(OUTCOME, short_circuit=replace(RESULT, simulated=()))
+    page = report_page(outcome)
+    assert "Simulated faults beside" not in page
+    assert "fig-fault-simulated" not in page
