@@ -15,6 +15,7 @@ from numpy.typing import ArrayLike, NDArray
 
 FloatArray = NDArray[np.float64]
 
+ENGINE_DRAG = 0.10  # torque of an engine without fuel, of its rated one; common practice, no source
 OPTIMUM_RATIO = 2.5  # between 2 (quick) and 3 (well damped); Kessler's symmetrical optimum, from memory
 DERIVATIVE_FILTER = 0.2  # of the derivative time; common practice, no source
 POWER_FILTER_S = 0.2  # of the kW measurement; common practice, no source

@@ -12,7 +12,7 @@ from typing import Any
 import numpy as np
 
 from study.formulas.exciters import DERIVATIVE_FILTER_S, KVAR_TRIM_S, TRANSDUCER_S
-from study.formulas.governor import POWER_FILTER_S, POWER_TRIM_S, TURBOCHARGER_S
+from study.formulas.governor import ENGINE_DRAG, POWER_FILTER_S, POWER_TRIM_S, TURBOCHARGER_S
 from study.formulas.starting import FAN_BREAKAWAY, HYPERBOLIC_LARGEST
 from study.network.dynamics_data import (
     AGAINST,
@@ -249,9 +249,10 @@ def govern(source: Any, j: int, active: float, shared: float) -> None:
     engine = source[j, ENGINE]
     most = min(OVERLOAD * engine, source[j, TURBO] + source[j, STEP] * engine)
     source[j, GOV_FILTERED + RATE] = rate
-    held = (asked > most and error > 0.0) or (asked < 0.0 and error < 0.0)
+    least = -ENGINE_DRAG * engine
+    held = (asked > most and error > 0.0) or (asked < least and error < 0.0)
     source[j, GOV_INTEGRAL + RATE] = 0.0 if held else source[j, GOV_I] * error
-    rack = min(max(asked, 0.0), most)
+    rack = min(max(asked, least), most)
     if source[j, DEAD_S] > 0.0:
         source[j, DELAY + RATE] = (rack - source[j, DELAY]) / (0.5 * source[j, DEAD_S])
         rack = 2.0 * source[j, DELAY] - rack
