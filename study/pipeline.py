@@ -92,7 +92,13 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     balance = load_balance(plant, [at.view for at in networks], _balance_options(limits))
     p_kw, q_kvar = balance.demand.p_counted_kw, balance.demand.q_counted_kvar
     _tell(progress, f"load flow of {len(networks)} modes")
-    flow = load_flow(networks, p_kw, q_kvar)
+    flow = load_flow(
+        networks,
+        p_kw,
+        q_kvar,
+        running_kw=balance.demand.p_kw,
+        running_kvar=balance.demand.q_kvar,
+    )
     _tell(progress, "regulation and sharing")
     regulation = voltage_regulation(plant)
     sharing = sharing_study(networks, p_kw, q_kvar, _sharing_options(limits))

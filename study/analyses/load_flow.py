@@ -1,7 +1,8 @@
 """The load flow of every mode: boards, consumers' terminals, sources, branches, islands.
 
 Each mode is solved twice (`network.solver`); what is reported is pandapower's solution, and how far the
-vectorised one is from it. Consumers ask for what the load balance counts.
+vectorised one is from it. Consumers ask for what the load balance counts; their terminals and own runs are
+then shown as they are while the consumer runs.
 """
 
 from __future__ import annotations
@@ -13,6 +14,7 @@ from numpy.typing import NDArray
 
 from study.analyses.load_flow_boards import board_state
 from study.analyses.load_flow_branches import BranchTable, branch_state, branch_table
+from study.analyses.load_flow_running import while_running
 from study.analyses.load_flow_terminals import terminal_state
 from study.network.cases import SolvedCase, case
 from study.network.network import ModeNetwork
@@ -33,7 +35,14 @@ LARGEST_DIFFERENCE_PU = 1e-6  # between the solvers, above which it is a finding
 LOWEST_PLAUSIBLE_PU = 0.7  # board voltage below which consumers do not keep the power they are given
 
 
-def load_flow(networks: Sequence[ModeNetwork], p_kw: FloatArray, q_kvar: FloatArray) -> LoadFlowResult:
+def load_flow(
+    networks: Sequence[ModeNetwork],
+    p_kw: FloatArray,
+    q_kvar: FloatArray,
+    *,
+    running_kw: FloatArray | None = None,
+    running_kvar: FloatArray | None = None,
+) -> LoadFlowResult:
     """Return the load flow of every mode.
 
     Parameters
@@ -41,7 +50,9 @@ def load_flow(networks: Sequence[ModeNetwork], p_kw: FloatArray, q_kvar: FloatAr
     networks : sequence of ModeNetwork
         One for each mode.
     p_kw, q_kvar : ndarray, shape (mode, load)
-        What the consumers ask for, all units in use together, at rated voltage. [kW], [kvar]
+        What counts of the consumers, all units in use together, at rated voltage. [kW], [kvar]
+    running_kw, running_kvar : ndarray, shape (mode, load), optional
+        What they take while they run, where that is more than what counts. [kW], [kvar]
 
     Returns
     -------
@@ -58,10 +69,17 @@ def load_flow(networks: Sequence[ModeNetwork], p_kw: FloatArray, q_kvar: FloatAr
     cases = [case(at, p_kw[k], q_kvar[k]) for k, at in enumerate(networks)]
     network = networks[0].network
     solved, table = solve_reported(network, cases), branch_table(network)
-    return LoadFlowResult(modes=tuple(_mode(c, table) for c in solved))
+    run_kw = p_kw if running_kw is None else running_kw
+    run_kvar = q_kvar if running_kvar is None else running_kvar
+    return LoadFlowResult(
+        modes=tuple(
+            _mode(c, while_running(c.reported, p, q), table)
+            for c, p, q in zip(solved, run_kw, run_kvar, strict=True)
+        )
+    )
 
 
-def _mode(one: SolvedCase, table: BranchTable) -> ModeLoadFlow:
+def _mode(one: SolvedCase, running: ModeSolution, table: BranchTable) -> ModeLoadFlow:
     s = one.reported
     own_findings = _source_findings(s)
     return ModeLoadFlow(
@@ -69,9 +87,9 @@ def _mode(one: SolvedCase, table: BranchTable) -> ModeLoadFlow:
         solved=s.solved,
         reason=s.reason,
         boards=board_state(s),
-        terminals=terminal_state(s),
+        terminals=terminal_state(running),
         sources=_sources(s),
-        branches=branch_state(s, table),
+        branches=branch_state(running, table),
         islands=_islands(s, own_findings),
         dead_boards=tuple(
             b.name for b, live in zip(s.at.network.plant.boards, s.energised, strict=True) if not live

@@ -53,8 +53,8 @@ def branch_tables(outcome: StudyOutcome) -> tuple[Table, ...]:
 
 
 _CABLE_NOTE = (
-    "Rating: all runs in parallel, with its deratings. A cable to a consumer stands for one unit's run. "
-    "The most loaded first."
+    "Rating: all runs in parallel, with its deratings. A cable to a consumer stands for one unit's run, and "
+    "its row for the consumer running, whatever counts of it in the load balance. The most loaded first."
 )
 _TIE_NOTE = (
     "In a closed ring of ties without impedance the current of each tie is undetermined; give the ties an "

@@ -295,7 +295,11 @@ def terminals_table(outcome: StudyOutcome) -> Table:
         sheet=_SHEET,
         columns=columns,
         rows=rows,
-        notes=("The largest voltage drop first; the drop is in % of the consumer's rated voltage.",),
+        notes=(
+            "Each consumer while it runs, all units in use, on its board at the voltage of the load flow; "
+            "what counts of it in the load balance may be less. The largest voltage drop first, in % of the "
+            "consumer's rated voltage.",
+        ),
         group_by=("mode",),
         shown_per_group=_SHOWN,
     )

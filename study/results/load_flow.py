@@ -31,10 +31,12 @@ class BoardState:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class TerminalState:
-    """Consumer terminals in use in a mode, arrays [terminal].
+    """Consumer terminals in use in a mode, arrays [terminal], while the consumer runs with all units in use.
 
-    ``drop_pu`` is the fall of voltage from the nearest main or emergency switchboard (or transformer
-    secondary feeding the consumer's own voltage level) to the terminal, of the consumer's rated voltage.
+    Its board is at the voltage of the load flow, in which it may count in part only; so kW and kvar do not
+    add up to the load of the board. ``drop_pu`` is the fall of voltage from the nearest main or emergency
+    switchboard (or transformer secondary feeding the consumer's own voltage level) to the terminal, of the
+    consumer's rated voltage.
     ``path`` lists the pieces between them, joined by ' > '.
     """
 
@@ -83,7 +85,8 @@ class BranchState:
     """Cables, transformers, ties, reactors and shore connections carrying current, arrays [branch].
 
     ``kind`` is cable, transformer, three-winding transformer, tie or reactor. A tie in a closed ring of ties
-    without impedance has NaN current and ``determined`` False. Load cables: current of one unit's run.
+    without impedance has NaN current and ``determined`` False. Load cables: current of one unit's run, power
+    of all, while the consumer runs, whatever counts of it in the load flow.
     ``rating_a`` is the derated rating, of all runs in parallel; NaN where there is none.
     """
 

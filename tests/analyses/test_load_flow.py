@@ -10,6 +10,7 @@ import pytest
 from study.analyses.load_flow import load_flow
 from study.analyses.load_flow_branches import cable_rating_a
 from study.model.plant import Plant
+from study.network.cable_data import cable_ohm_per_km
 from study.network.network import build_network, mode_network
 from study.results.load_flow import ModeLoadFlow
 from tests.plants import (
@@ -244,3 +245,82 @@ def test_agreement_is_reported_in_every_mode() -> None:
     assert 0.0 < m.agreement.residual_pu < 1e-9
     assert m.agreement.largest_du_pu < 1e-8
     assert m.agreement.iterations > 0
+
+
+# ---- consumers that count in part, while they run
+
+
+def running(p: Plant, counted: Any, asked: Any, q_per_p: float = 0.5) -> ModeLoadFlow:
+    """Return the first mode with some kW counted of what consumers take while they run."""
+    kw, run = np.array([counted], float), np.array([asked], float)
+    (one,) = load_flow(
+        [mode_network(build_network(p), p.modes[0])],
+        kw,
+        q_per_p * kw,
+        running_kw=run,
+        running_kvar=q_per_p * run,
+    ).modes
+    return one
+
+
+def drawn_by_hand(v_board: float, z_pu: complex, s_pu: complex) -> complex:
+    """Return the voltage behind a run to a constant power, by Newton's method on V - V' = Z conj(S/V')."""
+    v = complex(v_board)
+    for _ in range(50):
+        v = v_board - z_pu * np.conj(s_pu / v)
+    return v
+
+
+def test_a_run_carries_its_consumer_in_full_whatever_counts_of_it() -> None:
+    """The pump counts with 20 of 50 kW: its board sees 20, its own cable and its terminals 50."""
+    p = two_switchboards()
+    part, alone = (
+        running(p, [20.0, 30.0, 2.0], [50.0, 30.0, 2.0]),
+        flow(p, [20.0, 30.0, 2.0], [10.0, 15.0, 1.0])[0],
+    )
+    np.testing.assert_array_equal(part.boards.u_v, alone.boards.u_v)
+    np.testing.assert_array_equal(part.sources.p_kw, alone.sources.p_kw)
+    assert part.islands == alone.islands
+    c, t = part.branches.names.index("C-Pump"), part.terminals.loads.index("Pump")
+    cable_pump = p.cables[1]
+    r, x = cable_ohm_per_km(cable_pump, 60.0)
+    z = complex(r, x) * cable_pump.length_m / 1000.0 / 440.0**2 * 1e5  # per unit of 440 V and 100 kVA
+    v_board = part.boards.u_v[part.boards.names.index("DB")] / 440.0
+    v = drawn_by_hand(v_board, z, complex(0.5, 0.25))
+    assert part.terminals.u_v[t] == pytest.approx(440.0 * abs(v), abs=1e-6)
+    assert part.branches.current_a[c] == pytest.approx(
+        1e5 * abs(complex(0.5, 0.25) / v) / 440.0 / 3**0.5, rel=1e-5
+    )
+    assert part.terminals.p_kw[t] == 50.0
+    assert part.branches.drop_pu[c] == pytest.approx(v_board - abs(v), abs=1e-8)
+
+
+def test_a_consumer_that_counts_with_nothing_has_its_terminal_voltage() -> None:
+    part = running(two_switchboards(), [0.0, 0.0, 0.0], [50.0, 30.0, 2.0])
+    assert part.terminals.loads == ("Pump", "Fan", "Light")
+    assert (
+        part.branches.current_a[[part.branches.names.index(n) for n in ("C-Pump", "C-Light")]] > 5.0
+    ).all()
+    assert part.branches.current_a[part.branches.names.index("C-DB")] == pytest.approx(0.0, abs=1e-6)
+
+
+def test_what_counts_in_full_is_the_load_flow_itself() -> None:
+    """Heating follows the square of the voltage; its run has two cables side by side."""
+    heater = load("Heater", "DB", kind="heating")
+    p = two_switchboards(
+        loads=[load("Pump", "DB"), load("Fan", "MSB"), heater],
+        cables=[
+            cable("C-DB", "MSB", "DB", runs=2),
+            cable("C-Pump", "DB", "Pump"),
+            cable("C-Heater 1", "DB", "Heater", section_mm2=16.0),
+            cable("C-Heater 2", "Heater", "DB", section_mm2=10.0),
+        ],
+    )
+    kw = [40.0, 30.0, 25.0]
+    found, (alone, *_) = running(p, kw, kw), flow(p, kw, [20.0, 15.0, 12.5])
+    for name in ("u_v", "drop_pu", "p_kw", "q_kvar", "current_a"):
+        np.testing.assert_allclose(getattr(found.terminals, name), getattr(alone.terminals, name), rtol=1e-7)
+    for name in ("current_a", "p_from_kw", "p_to_kw", "loss_kw", "drop_pu"):
+        np.testing.assert_allclose(
+            getattr(found.branches, name), getattr(alone.branches, name), rtol=1e-6, atol=1e-8
+        )
