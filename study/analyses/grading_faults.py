@@ -42,8 +42,9 @@ class ModeFaults:
     ``feeds`` [feed] are the stations that feed a fault, each with the zone in which it lies. Rows [row] are
     the currents to be looked at: ``feed``, ``station``, ``inward``; the first row of a feed, ``own`` [feed],
     is that of its own station, the others are the stations behind it. ``place`` and ``inside`` are [near or
-    far, feed]. ``there`` [feed] is False where the minimum case does not feed the fault, ``turned`` [row]
-    True with a star-delta transformation between station and fault.
+    far, feed]. ``there`` [feed] is False where the minimum case does not feed the fault; ``fed_back`` [feed]
+    True where only converters feed it, and others feed the fault too; ``turned`` [row] True with a star-delta
+    transformation between station and fault.
 
     Parameters
     ----------
@@ -77,6 +78,7 @@ class ModeFaults:
         self._number()
         self.place, self.inside = self._where()
         self.there = self._in_minimum()
+        self.fed_back = self._by_converters_alone()
         self.turned = self._turned()
 
     def work_out(self) -> None:
@@ -158,6 +160,23 @@ class ModeFaults:
         share = self.minimum.ways.into_branch(station, self.place[1], self.inside[1])
         parts = self.minimum.ways.case.parts
         return np.asarray(np.abs((share * parts.subtransient_a[self.place[1]]).sum(axis=1)) > 0.0)
+
+    def _by_converters_alone(self) -> BoolArray:
+        """Return the feeds through which only converters give current, where others feed the fault too.
+
+        Their current stays near the rated one until they block: no device can tell it from load.
+        """
+        ways = self.maximum.ways
+        station, place, inside = self.station[self.own], self.place[0], self.inside[0]
+        share = np.abs(ways.into_branch(station, place, inside)) * ways.case.parts.subtransient_a[place]
+        kinds = ways.case.sources.kinds
+        converter = np.array([kind == "converter supply" for kind in kinds], bool)
+        total = (share * ways.lasting).sum(axis=1)
+        only = (share * converter).sum(axis=1) > (1.0 - 1e-6) * total
+        others: dict[int, bool] = {}
+        for feed, alone in zip(self.feeds, only.tolist(), strict=True):
+            others[feed.zone] = others.get(feed.zone, False) or not alone
+        return np.array([a and others[f.zone] for f, a in zip(self.feeds, only.tolist(), strict=True)], bool)
 
     def _turned(self) -> BoolArray:
         """Return the rows with a star-delta transformation between their station and the fault."""

@@ -37,8 +37,20 @@ RULES: Final = (
     "instantaneous stage upstream",
     "upstream device not known",
     "downstream device not known",
+    "neither opens",
 )
-CURVES, NOT_SEEN, MAKER, LET_THROUGH, FUSES, SIGNAL, AT_ONCE, UPSTREAM_UNKNOWN, DOWNSTREAM_UNKNOWN = range(9)
+(
+    CURVES,
+    NOT_SEEN,
+    MAKER,
+    LET_THROUGH,
+    FUSES,
+    SIGNAL,
+    AT_ONCE,
+    UPSTREAM_UNKNOWN,
+    DOWNSTREAM_UNKNOWN,
+    NEITHER,
+) = range(10)
 
 # A device that has cleared by then limits the current, if its maker gives a sheet: as the fault ratings.
 LIMITS_WITHIN_S: Final = 0.1
@@ -265,6 +277,7 @@ class ModeMargins:
         release = np.where(np.any(free, axis=0), np.inf, np.where(unknown, np.nan, release))
         rule = np.select([*free, unknown], [NOT_SEEN, MAKER, FUSES, UPSTREAM_UNKNOWN], rule)
         rule = np.where(np.isnan(near.late_s), DOWNSTREAM_UNKNOWN, rule)
+        rule = np.where(np.isposinf(near.late_s) & np.isposinf(release), NEITHER, rule)
         never = np.isposinf(release) & ~np.isnan(near.late_s)
         with np.errstate(invalid="ignore"):
             return release, np.where(never, np.inf, release - near.late_s), rule

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from study.analyses.grading_bands import Openers
 from study.analyses.grading_faults import LEVELS, MAX_FAR, MAX_NEAR, MIN_FAR, ModeFaults
-from study.analyses.grading_margins import DOWNSTREAM_UNKNOWN, UPSTREAM_UNKNOWN, ModeMargins, Stage
+from study.analyses.grading_margins import DOWNSTREAM_UNKNOWN, NEITHER, UPSTREAM_UNKNOWN, ModeMargins, Stage
 from study.analyses.grading_rules import Rules, mode_rules
 from study.analyses.grading_zones import Feed, Zones
 from study.results.grading import FULL, NONE, NOT_ASSESSED, NOT_NEEDED, PAIR_KINDS, PARTIAL, PairKind
@@ -75,6 +75,8 @@ def pair_kinds(faults: ModeFaults, blind: BoolArray) -> list[PairKind]:
         feeds_of[feed.zone] = feeds_of.get(feed.zone, 0) + 1
     for n, feed in enumerate(faults.feeds):
         whole = _kind_of_fault(feed, zones, feeds_of[feed.zone])
+        if faults.fed_back[n]:
+            whole = "fed back by a converter"
         if blind[faults.own[n]]:
             whole = "looks away"
         same = _same_circuit(feed, zones)
@@ -134,7 +136,7 @@ class ModePairing:
         own = faults.station[self.margins.own_row[rows]]
         kinds = pair_kinds(faults, self.mode_rules.blind)
         kind = np.array([PAIR_KINDS.index(kinds[r]) for r in rows.tolist()], np.int64)
-        judged = self._judged(kind)
+        judged = self._judged(kind) & ~self._neither()
         level, margin, unknown = self._governing()
         feed = faults.feed[rows]
         at = (level, np.arange(len(rows)))
@@ -191,6 +193,12 @@ class ModePairing:
         directed = np.array([self._directed(k) for k in range(len(self.faults.feeds))], bool)[feed]
         parallel = kind == PAIR_KINDS.index("parallel path")
         return np.asarray(series | (of_sets & (together | quick)) | (parallel & (directed | quick)))
+
+    def _neither(self) -> BoolArray:
+        """Return the rows with no fault that either station clears: that is a matter of reach."""
+        rule = np.stack([s.rule[self.rows] for s in self.stages])
+        there = np.stack([self.faults.exists(k) for k in range(len(LEVELS))])[:, self.faults.feed[self.rows]]
+        return np.asarray((~there | (rule == NEITHER)).all(axis=0))
 
     def _sets_together(self) -> IntArray:
         """Return how many lasting sources run in the island of each feed, [feed]."""

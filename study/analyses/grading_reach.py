@@ -65,7 +65,7 @@ def mode_reach(faults: ModeFaults, openers: Openers, rules: ModeRules) -> ModeRe
     when = np.where(np.isfinite(late), np.minimum(late, faults.time_s[-1]), 0.0)
     stops = ~np.isfinite(late) & (least.ac_a[:, -1] <= 0.0) & (least.ac_a[:, 0] > 0.0)
     return ModeReach(
-        judged=least.ac_a[:, 0] > 0.0,
+        judged=(least.ac_a[:, 0] > 0.0) & ~faults.fed_back,
         least_a=_at(faults.time_s, least.ac_a, when),
         clears_s=late,
         by=np.where(stops, ENDS_BY_ITSELF, by),

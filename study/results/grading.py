@@ -13,13 +13,16 @@ from typing import Final, Literal
 
 from study.results.arrays import BoolArray, FloatArray, IntArray
 
-PairKind = Literal["series", "same circuit", "fault of a set", "parallel path", "looks away"]
+PairKind = Literal[
+    "series", "same circuit", "fault of a set", "parallel path", "looks away", "fed back by a converter"
+]
 PAIR_KINDS: Final[tuple[PairKind, ...]] = (
     "series",
     "same circuit",
     "fault of a set",
     "parallel path",
     "looks away",
+    "fed back by a converter",
 )
 FULL, PARTIAL, NONE, NOT_ASSESSED, NOT_NEEDED = range(5)
 EXTENTS: Final = ("full", "partial", "none", "not assessed", "not needed")

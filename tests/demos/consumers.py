@@ -199,7 +199,7 @@ def _protect_motor(book: Book, row: Row, amps: float, fused: bool) -> tuple[floa
             i_tol=20,
         )
     if row["Essential to"] != "steering" and "fire pump" not in name.lower():
-        heavy = float(str(row.get("Starting time [s]", 0))) > 8
+        start_s = float(str(row.get("Starting time [s]", 0)))
         book.device(
             f"F-{name}",
             name,
@@ -207,7 +207,7 @@ def _protect_motor(book: Book, row: Row, amps: float, fused: bool) -> tuple[floa
             "thermal overload",
             round(amps, 1),
             ir=round(amps, 1),
-            trip_class="20" if heavy else "10",
+            trip_class="30" if start_s > 5 else "20" if start_s > 3.5 else "10",
             source="adjustable",
         )
     return 1.15 * amps, frame(size)

@@ -154,9 +154,6 @@ def _protection(book: Book) -> None:
     book.amend("Devices", earth, *[f"R-DG{n}" for n in range(1, 7)])
     quick: dict[str, object] = {"Earth-fault current [A]": 1.0, "Earth-fault delay [s]": 0.3}
     book.amend("Devices", quick, *[f"R-{name}-1" for name in MV_TRANSFORMERS], "R-Jetting pump motor")
-    for tie, zone in (("12", "MV-1"), ("23", "MV-2"), ("34", "MV-3"), ("41", "MV-4")):
-        seen: dict[str, object] = {"Direction": "forward", "Protected zone": zone}
-        book.amend("Devices", seen, f"R-BT-{tie}")
     book.amend("Devices", {"Interlocked with": "Q-T-450-P-2"}, "Q-BT-450")
     sets = tuple(f"DG{n}" for n in range(1, 7))
     protect_sets(book, sets)
@@ -167,8 +164,13 @@ def _protection(book: Book) -> None:
         *[(f"{n} loss of excitation", n, "loss of excitation", 40, "%", 3, f"Q-{n}") for n in sets],
         *[(f"{n} differential", n, "differential", 20, "%", 0.05, f"Q-{n}") for n in sets],
         *[
-            (f"BT-{a} differential", f"BT-{a}", "differential", 20, "%", 0.05, f"Q-BT-{a}")
-            for a in ("23", "41")
+            (f"MV-{n} differential", f"MV-{n}", "differential", 20, "%", 0.05, opens)
+            for n, opens in (
+                (1, "Q-BT-12, Q-BT-41, Q-DG1"),
+                (2, "Q-BT-12, Q-BT-23, Q-DG2, Q-DG3"),
+                (3, "Q-BT-23, Q-BT-34, Q-DG4"),
+                (4, "Q-BT-34, Q-BT-41, Q-DG5, Q-DG6"),
+            )
         ],
         ("ESB undervoltage", "ESB", "undervoltage", 70, "%", 3, "Q-ESB-E"),
     )

@@ -97,7 +97,7 @@ def _sources(book: Book) -> None:
             (kind, "permanent magnet" if large else "compounded"),
             30 + 4 * n,
             also=also,
-            short=(2.5, 0.6),
+            short=(2.5, 0.85),
             inst_x=14,
         )
     alone: dict[str, object] = {"Governor mode": "isochronous", "No-load frequency [%]": 100.0}
@@ -128,7 +128,7 @@ def _sources(book: Book) -> None:
         book.cable(f"C-{name}", (name, board), 1.1 * amps, 28, board=board, cores="3 single")
         book.breaker(
             f"Q-{name}", f"C-{name}", board, frame, icw_ka=50, ir=round(1.1 * amps), tr=10, tr_at=2,
-            isd=round(1.25 * amps), tsd=0.2, ii="off",
+            isd=round(1.25 * amps), tsd=0.7, ii=round(2.5 * amps),
         )  # fmt: skip
 
 
@@ -168,10 +168,10 @@ def _medium_voltage(book: Book) -> None:
     )
     slow: dict[str, Any] = {"tr": 12, "tr_at": 1.5, "ii": "off"}
     for label, a in (("12", 1), ("23", 2), ("34", 3), ("41", 4)):
-        book.breaker(f"Q-BT-{label}", f"BT-{label}", f"MV-{a}", 1250, ir=1200, isd=2000, tsd=0.45, **slow)
-    book.breaker("Q-BT-690", "BT-690", "LV690-P", 2000, icw_ka=50, ir=1900, isd=5000, tsd=0.3, **slow)
-    book.breaker("Q-BT-450", "BT-450", "SWB-P", 2500, icw_ka=65, ir=2300, isd=5500, tsd=0.35, **slow)
-    book.breaker("Q-BT-LDB", "BT-LDB", "LDB-1", 800, icw_ka=15, ir=700, isd=2100, tsd=0.2, **slow)
+        book.breaker(f"Q-BT-{label}", f"BT-{label}", f"MV-{a}", 1250, ir=600, isd=650, tsd=0.65, **slow)
+    book.breaker("Q-BT-690", "BT-690", "LV690-P", 2000, icw_ka=50, ir=1900, isd=3500, tsd=0.3, **slow)
+    book.breaker("Q-BT-450", "BT-450", "SWB-P", 2500, icw_ka=65, ir=2300, isd=5000, tsd=0.3, **slow)
+    book.breaker("Q-BT-LDB", "BT-LDB", "LDB-1", 800, icw_ka=15, ir=700, isd=2100, tsd=0.1, **slow)
     for name, board, halves in (
         ("T-PP1", "MV-1", ("PB-P1A", "PB-P1B")),
         ("T-PP2", "MV-2", ("PB-P2A", "PB-P2B")),
@@ -209,8 +209,8 @@ def _step_down(
         figures,
         lengths_m=(38, 14),
         volts=(6600, no_load_v),
-        primary=(7, 0.35),
-        secondary=(4, 0.3),
+        primary=(2.5, 0.5),
+        secondary=(2.5, 0.4),
         also={"Vector group": "Dyn11", "X0/X1": 0.95, "R0/R1": 1.0},
     )
 
@@ -238,9 +238,9 @@ def _propulsion_transformer(book: Book, name: str, board: str, halves: tuple[str
         "Tap [%]": 0,
     }
     book.sheets["Three-winding transformers"].append(row)
-    winding(book, f"{name}-1", (board, name), 2900 / 6600, 42, short=(7, 0.35), feeds=True)
+    winding(book, f"{name}-1", (board, name), 2900 / 6600, 42, short=(2.5, 0.5), feeds=True)
     for place, half in zip(("2", "3"), halves, strict=True):
-        winding(book, f"{name}-{place}", (half, name), 1450 / 690, 12, short=(4, 0.3), feeds=False)
+        winding(book, f"{name}-{place}", (half, name), 1450 / 690, 12, short=(2.5, 0.4), feeds=False)
 
 
 def _distribution(book: Book) -> None:
@@ -252,7 +252,7 @@ def _distribution(book: Book) -> None:
     for side, _ in SIDES:
         book.breaker(
             f"Q-X-CRANE-{side}", f"X-CRANE-{side}", f"LV690-{side}", 1250, icw_ka=50, ir=1200, tr=10, tr_at=2,
-            isd=6000, tsd=0.2, ii="off",
+            isd=3000, tsd=0.2, ii="off",
         )  # fmt: skip
     book.add(
         "Filters",
@@ -266,7 +266,7 @@ def _distribution(book: Book) -> None:
         feeder(book, (f"SWB-{side}", f"ER2-{side}"), 320, 34, short=(6, 0.2), least_mm2=150)
         feeder(book, (f"SWB-{side}", f"PROP-{side}"), 160, 40, short=(6, 0.2), least_mm2=150)
         feeder(book, (f"SWB-{side}", f"PUMP-{side}"), 520, 44, short=(5, 0.2))
-    feeder(book, ("SWB-P", "ESB"), 900, 62, short=(5, 0.25), switch_at_end=True)
+    feeder(book, ("SWB-P", "ESB"), 900, 62, short=(5, 0.2), switch_at_end=True)
     # second feeds of the thruster rooms, normally open
     feeder(book, ("SWB-S", "THR-F"), 200, 74, name="THR-F-2", short=(6, 0.2), least_mm2=150)
     feeder(book, ("SWB-P", "THR-A"), 200, 68, name="THR-A-2", short=(6, 0.2), least_mm2=150)
@@ -296,7 +296,7 @@ def _low_distribution(book: Book) -> None:
             lengths_m=(18, 10),
             volts=(450, 236),
             primary=(8, 0.2),
-            secondary=(4.5, 0.15),
+            secondary=(4.5, 0.12),
         )
     for name in ("T-EM1", "T-EM2"):
         transformer(
@@ -307,8 +307,8 @@ def _low_distribution(book: Book) -> None:
             (4.0, 1.75, 0.42),
             lengths_m=(10, 8),
             volts=(450, 236),
-            primary=(8, 0.2),
-            secondary=(4.5, 0.15),
+            primary=(8, 0.12),
+            secondary=(4.5, 0.12),
         )
     panels = [(f"L-ACC{n}", "LDB-1" if n % 2 else "LDB-2", 150, 30 + 4 * n) for n in range(1, 8)]
     panels += [("L-ER-P", "LDB-1", 80, 34), ("L-ER-S", "LDB-2", 80, 36)]
@@ -316,4 +316,4 @@ def _low_distribution(book: Book) -> None:
     panels += [("L-THR-A", "LDB-2", 80, 66), ("L-DECK-A", "LDB-2", 120, 70), ("L-SWB", "LDB-2", 80, 24)]
     panels += [("NAV", "ELDB", 125, 40), ("RADIO", "ELDB", 63, 42)]
     for to, board, amps, length_m in panels:
-        feeder(book, (board, to), amps, length_m, short=(5, 0.08), max_drop_percent=2.0, least_mm2=50)
+        feeder(book, (board, to), amps, length_m, short=(5, 0.06), max_drop_percent=2.0, least_mm2=50)

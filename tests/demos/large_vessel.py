@@ -9,8 +9,7 @@ The second converter pair of each shaft is taken off by the preferential trip (s
 harbour set is alone: its loss is a blackout, and is reported as it is.
 
 Meant to be a sound design but for one planted fault: the harbour set is shunt excited, its short-circuit
-current collapses, and behind delayed breakers a fault in harbour, or at anchor on the battery, does not
-clear.
+current collapses, and behind delayed breakers a fault in harbour does not clear.
 """
 
 from __future__ import annotations

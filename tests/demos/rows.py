@@ -189,9 +189,9 @@ class Book:
             "icm": making_ka(breaking_ka, volts),
             "source": "adjustable",
             "open_s": 0.03 if big else 0.005,
-            "break_s": 0.06 if big else 0.02,
+            "break_s": 0.04 if big else 0.02,
         }
-        release: Row = {"senses": "rms", "i_tol": 10, "t_tol": 10, "category": "B" if big else "A"} | settings
+        release: Row = {"senses": "rms", "i_tol": 10, "t_tol": 5, "category": "B" if big else "A"} | settings
         if volts <= 1000:
             self.device(name, equipment, board, "circuit breaker", amps, **ratings | release)
             return

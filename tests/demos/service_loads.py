@@ -8,9 +8,9 @@ from __future__ import annotations
 
 THRUSTERS_AND_DECK = """
 [MSB-P | Thrusters | converter]
-Bow thruster | 320 | - 1/42 1/60 - - - - | 40 | 12-pulse port fused | 330 kW drive behind a 12-pulse rectifier
+Bow thruster | 320 | - 1/42 1/60 - - - - | 40 | 12-pulse port | 330 kW drive behind a 12-pulse rectifier
 [MSB-S | Thrusters | converter]
-Stern thruster | 240 | - 1/40 1/50 - - - - | 45 | active starboard fused | Drive with active front end
+Stern thruster | 240 | - 1/40 1/50 - - - - | 45 | active starboard | Drive with active front end
 [MSB-S | Deck | converter]
 Towing winch | 110 | 1/15i 1/30i 1/20i - - - - | 52 | dc-link starboard fused regenerates stage=1 | Frequency-controlled, brakes into the board through a regenerative rectifier
 [DECK | Deck | motor]

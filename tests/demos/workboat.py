@@ -130,7 +130,7 @@ def _plant(book: Book) -> None:
     )
     book.cable("C-Shore", ("Shore", "MSB"), 63, 18, board="MSB")
     book.breaker(
-        "Q-Shore", "C-Shore", "MSB", 100, icw_ka=12, ir=63, tr=10, tr_at=2, isd=315, tsd=0.2, ii="off"
+        "Q-Shore", "C-Shore", "MSB", 100, icw_ka=12, ir=63, tr=10, tr_at=2, isd=315, tsd=0.4, ii="off"
     )
     for name in ("T-230-1", "T-230-2"):
         transformer(
@@ -142,10 +142,10 @@ def _plant(book: Book) -> None:
             lengths_m=(8, 6),
             volts=(400, 234),
             primary=(5.0, 0.25),
-            secondary=(4.5, 0.15),
+            secondary=(4.5, 0.12),
         )
     feeder(book, ("MSB", "DB-ER"), 63, 14, short=(5, 0.15))
-    feeder(book, ("DB-230", "DB-WH"), 32, 22, short=(6, 0.1), max_drop_percent=1.2)
+    feeder(book, ("DB-230", "DB-WH"), 32, 22, short=(6, 0.05), max_drop_percent=1.2)
 
 
 def _operation(book: Book) -> None:
