@@ -171,22 +171,23 @@ class _Grid:
         self.network, self.layout = network, layout_of(network)
         self.net = empty_network(network.plant.project.f_rated_hz, network.s_base_kva)
         for table, columns in fixed_tables(network, self.layout).items():
-            empty = self.net[table]
-            count = len(columns["name"])
-            frame = pd.DataFrame(columns, index=range(count)).reindex(columns=empty.columns)
-            self.net[table] = frame.astype(
-                {c: t for c, t in empty.dtypes.items() if c in columns or t.kind == "b"}
+            dtypes, count = self.net[table].dtypes, len(columns["name"])
+            self.net[table] = pd.DataFrame(
+                {c: _typed(columns.get(c), count, dtype) for c, dtype in dtypes.items()}, index=range(count)
             )
 
-    def _write(self, columns: Mapping[tuple[str, str], NDArray[Any]]) -> None:
-        """Write columns, or their first rows where the sources' rows follow."""
+    def _write(self, columns: Mapping[tuple[str, str], NDArray[Any]], after: int = 0) -> None:
+        """Write columns, or as many of their rows as are given, from row `after` on.
+
+        What stands there already is left alone: that is much quicker than writing it again.
+        """
         for (table, column), values in columns.items():
             frame = self.net[table]
-            if len(values) == len(frame):
-                frame[column] = values
-            else:
-                whole = frame[column].to_numpy(copy=True)
-                whole[: len(values)] = values
+            old = frame[column].to_numpy()
+            rows = slice(after, after + len(values))
+            if not np.array_equal(old[rows], values):
+                whole = old.copy()
+                whole[rows] = values
                 frame[column] = whole
 
     def switch(self, one: Case) -> None:
@@ -196,7 +197,7 @@ class _Grid:
 
     def set_sources(self, emfs: Emfs, members: IntArray) -> None:
         """Set EMF, reactance, base point and part in the slack; only `members` are in service."""
-        net, s_base = self.net, self.net.sn_mva
+        s_base = self.net.sn_mva
         rows = self._rows(emfs.at)
         count = len(self.layout.source_names)
         behind = (emfs.x != 0.0) | (emfs.r != 0.0)
@@ -207,27 +208,27 @@ class _Grid:
             out[rows] = values
             return out
 
-        gen, sgen, ext = net.gen, net.sgen, net.ext_grid
-        gen["in_service"] = spread(here & ~emfs.fixed & ~emfs.grid, False)
-        gen["vm_pu"], ext["vm_pu"] = spread(emfs.e, 1.0), spread(emfs.e, 1.0)
-        gen["p_mw"] = spread(emfs.p * s_base, 0.0)
-        gen["slack"], gen["slack_weight"] = spread(emfs.weight != 0.0, False), spread(emfs.weight, 0.0)
-        ext["in_service"] = spread(here & emfs.grid, False)
-        sgen["in_service"] = spread(here & emfs.fixed, False)
-        sgen["p_mw"], sgen["q_mvar"] = spread(emfs.p * s_base, 0.0), spread(emfs.q * s_base, 0.0)
-        after = len(self.layout.impedance)
-        for column, values in (("rft_pu", emfs.r), ("xft_pu", emfs.x)):
-            for name in (column, column.replace("ft", "tf")):
-                whole = net.impedance[name].to_numpy(copy=True)
-                whole[after:] = spread(values, 0.0)
-                net.impedance[name] = whole
-        self._tail("impedance", "in_service", after, spread(behind & ~emfs.fixed, False))
-        self._tail("switch", "closed", len(self.layout.tie), spread(~behind & ~emfs.fixed, False))
-
-    def _tail(self, table: str, column: str, after: int, values: NDArray[Any]) -> None:
-        whole = self.net[table][column].to_numpy(copy=True)
-        whole[after:] = values
-        self.net[table][column] = whole
+        e, r, x = spread(emfs.e, 1.0), spread(emfs.r, 0.0), spread(emfs.x, 0.0)
+        p, q = spread(emfs.p * s_base, 0.0), spread(emfs.q * s_base, 0.0)
+        self._write(
+            {
+                ("gen", "in_service"): spread(here & ~emfs.fixed & ~emfs.grid, False),
+                ("gen", "vm_pu"): e,
+                ("gen", "p_mw"): p,
+                ("gen", "slack"): spread(emfs.weight != 0.0, False),
+                ("gen", "slack_weight"): spread(emfs.weight, 0.0),
+                ("ext_grid", "in_service"): spread(here & emfs.grid, False),
+                ("ext_grid", "vm_pu"): e,
+                ("sgen", "in_service"): spread(here & emfs.fixed, False),
+                ("sgen", "p_mw"): p,
+                ("sgen", "q_mvar"): q,
+            }
+        )
+        reactances = {("impedance", "rft_pu"): r, ("impedance", "xft_pu"): x}
+        reactances |= {("impedance", "rtf_pu"): r, ("impedance", "xtf_pu"): x}
+        joined = {("impedance", "in_service"): spread(behind & ~emfs.fixed, False)}
+        self._write(reactances | joined, after=len(self.layout.impedance))
+        self._write({("switch", "closed"): spread(~behind & ~emfs.fixed, False)}, after=len(self.layout.tie))
 
     def _rows(self, at: ModeNetwork) -> IntArray:
         return np.array([self.layout.source_row(s.name) for s in at.sources], np.int64)
@@ -301,3 +302,10 @@ class _Grid:
     def _complex(self, table: str, p: str, q: str) -> ComplexArray:
         frame = self.net[f"res_{table}"]
         return np.asarray(frame[p].to_numpy() + 1j * frame[q].to_numpy())
+
+
+def _typed(values: NDArray[Any] | None, count: int, dtype: Any) -> NDArray[Any]:
+    """Return a column of the library's type; one that is not given is NaN, or True if it is a yes or no."""
+    if values is None:
+        return np.ones(count, bool) if dtype.kind == "b" else np.full(count, np.nan)
+    return values.astype(dtype)
