@@ -6,12 +6,16 @@ import contextlib
 import errno
 import hashlib
 import os
+import re
 import stat
 import tempfile
+import time
 from pathlib import Path
 
 from study.issues import ChangedFileError, PackageError
 
+LEFT_OVER_S = 3600.0
+"""Age from which a temporary file is that of a killed run: a write takes seconds."""
 _REASONS = {
     errno.ENOSPC: "the disk is full",
     errno.EDQUOT: "the disk quota is used up",
@@ -27,7 +31,8 @@ def write_atomically(path: str | Path, data: bytes, *, read_digest: str | None =
     """Replace a file by new content; whatever goes wrong, the old file stays whole.
 
     The content goes to a temporary file beside the target, is flushed to the disk and then takes the target's
-    name in one step. Permissions of an existing file are kept; a symbolic link stays one.
+    name in one step. Permissions of an existing file are kept; a symbolic link stays one. Temporary files
+    that a killed run left beside the target an hour ago or earlier are removed.
 
     Parameters
     ----------
@@ -49,7 +54,8 @@ def write_atomically(path: str | Path, data: bytes, *, read_digest: str | None =
         mode = _mode_of(target)
         _refuse_open(target)
         _refuse_changed(target, read_digest)
-        handle, name = tempfile.mkstemp(prefix=f".{target.name[:100]}.", suffix=".tmp", dir=target.parent)
+        _clear_left_over(target)
+        handle, name = tempfile.mkstemp(prefix=_prefix(target), suffix=".tmp", dir=target.parent)
         temporary = Path(name)
         with os.fdopen(handle, "wb") as stream:
             stream.write(data)
@@ -70,6 +76,21 @@ def write_atomically(path: str | Path, data: bytes, *, read_digest: str | None =
             with contextlib.suppress(OSError):
                 temporary.unlink(missing_ok=True)
     _sync_folder(target.parent)
+
+
+def _prefix(target: Path) -> str:
+    return f".{target.name[:100]}."
+
+
+def _clear_left_over(target: Path) -> None:
+    """Remove what killed runs left; the temporary file of a run that is still at work is younger."""
+    name = re.compile(re.escape(_prefix(target)) + r"[a-z0-9_]{8}\.tmp")
+    with contextlib.suppress(OSError), os.scandir(target.parent) as entries:
+        for entry in entries:
+            if name.fullmatch(entry.name) and entry.is_file(follow_symlinks=False):
+                age_s = time.time() - entry.stat(follow_symlinks=False).st_mtime
+                if age_s > LEFT_OVER_S:
+                    os.unlink(entry.path)
 
 
 def _mode_of(target: Path) -> int:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import errno
 import hashlib
 import os
@@ -9,6 +10,7 @@ import signal
 import stat
 import subprocess
 import sys
+import tempfile
 import textwrap
 from pathlib import Path
 
@@ -158,15 +160,32 @@ def test_a_read_only_file(target):
     unharmed(target)
 
 
-@pytest.mark.skipif(os.name == "nt" or os.geteuid() == 0, reason="the folder of root is never read-only")
-def test_a_read_only_folder(target):
-    target.parent.chmod(0o555)
+@contextlib.contextmanager
+def an_ordinary_user():
+    """Root may write anywhere: the rights of another user while the test goes on."""
+    if os.geteuid() != 0:
+        yield
+        return
+    os.seteuid(65534)
     try:
-        with pytest.raises(PackageError, match="read-only"):
-            write_atomically(target, NEW)
-        unharmed(target)
+        yield
     finally:
-        target.parent.chmod(0o755)
+        os.seteuid(0)
+
+
+@pytest.mark.skipif(os.name == "nt", reason="permission bits are a POSIX matter")
+def test_a_read_only_folder():
+    with tempfile.TemporaryDirectory() as folder:
+        target = Path(folder) / "BOOK.xlsx"
+        target.write_bytes(OLD)
+        target.chmod(0o666)
+        target.parent.chmod(0o555)
+        try:
+            with an_ordinary_user(), pytest.raises(PackageError, match="the file or its folder is read-only"):
+                write_atomically(target, NEW)
+            unharmed(target)
+        finally:
+            target.parent.chmod(0o755)
 
 
 def test_a_folder_that_is_not_there(tmp_path):
@@ -237,8 +256,31 @@ def test_a_process_killed_between_write_and_rename(target, step):
     left = [n for n in os.listdir(target.parent) if n != "BOOK.xlsx"]
     assert len(left) == 1
     assert left[0].startswith(".BOOK.xlsx.")
+    # It may be that of a run still at work; an hour later it is none.
     write_atomically(target, NEW)
+    assert sorted(os.listdir(target.parent)) == sorted([*left, "BOOK.xlsx"])
+    made = (target.parent / left[0]).stat().st_mtime - write.LEFT_OVER_S - 1.0
+    os.utime(target.parent / left[0], (made, made))
+    write_atomically(target, NEW)
+    assert os.listdir(target.parent) == ["BOOK.xlsx"]
     assert target.read_bytes() == NEW
+
+
+def test_no_other_file_is_taken_for_a_left_over_one(target):
+    others = [
+        ".BOOK.xlsx.tmp",
+        ".BOOK.xlsx.of-mine.tmp",
+        "BOOK.xlsx.abcd1234.tmp",
+        ".OTHER.xlsx.abcd1234.tmp",
+    ]
+    for name in others:
+        (target.parent / name).write_bytes(b"mine")
+        os.utime(target.parent / name, (0, 0))
+    (target.parent / ".BOOK.xlsx.abcd1234.tmp").mkdir()
+    (target.parent / ".BOOK.xlsx.abcd1235.tmp").symlink_to(target.parent / others[0])
+    before = sorted(os.listdir(target.parent))
+    write_atomically(target, NEW)
+    assert sorted(os.listdir(target.parent)) == before
 
 
 def test_the_flush_comes_before_the_rename(target, monkeypatch):
