@@ -87,8 +87,21 @@ class _Paths:
     def from_switchboard(self, node: int) -> tuple[int | None, list[str]]:
         """Return the node where the way begins, and the names on it from there to `node`."""
         if node not in self.known:
-            self.known[node] = self._walk(node)
+            one_way = len(self.around.get(node, ())) == 1 and node not in self.starts
+            self.known[node] = self._beyond(node) if one_way else self._walk(node)
         return self.known[node]
+
+    def _beyond(self, node: int) -> tuple[int | None, list[str]]:
+        """Return the way to the end of a branch: that to its other end, which many have in common."""
+        ((nearer, name),) = self.around[node]
+        if nearer not in self.known:
+            self.known[nearer] = self._walk(nearer)
+        start, path = self.known[nearer]
+        if start is None:
+            return None, [self.topology.nodes[node].board]
+        here = self.topology.nodes[nearer]
+        passed = [here.owner] if nearer != start and here.kind == "board" else []
+        return start, [*path, *passed, name]
 
     def _walk(self, node: int) -> tuple[int | None, list[str]]:
         came_from: dict[int, tuple[int, str]] = {node: (node, "")}
