@@ -113,7 +113,7 @@ def grading(
         modes=tuple(m.mode for m in short_circuit.modes),
         levels=LEVELS,
         rules=RULES,
-        stations=_stations(plant, stations, short_circuit.places),
+        stations=_stations(plant, stations, openers, short_circuit.places),
         pairs=pairs,
         reach=reach,
         ride_through=hardest_of([row for g in graded for row in g.ride_through]),
@@ -225,10 +225,14 @@ def joined_reach(modes: Sequence[GradedMode]) -> Reach:
     )
 
 
-def _stations(plant: Plant, stations: Stations, places: Places) -> GradingStations:
+def _stations(plant: Plant, stations: Stations, openers: Openers, places: Places) -> GradingStations:
     at = stations.place.tolist()
+    first = [openers.models[o.members[0]] for o in openers.openers]
+    bands = [[openers.models[k].band for k in o.members] for o in openers.openers]
     return GradingStations(
         names=stations.names,
+        set_at=tuple(model.opened_by for model in first),
+        unknown=tuple("; ".join(w for band in some for w in band.unknown) for some in bands),
         devices=tuple(tuple(plant.devices[k].name for k in members) for members in stations.devices),
         equipment=stations.equipment,
         boards=tuple(places.boards[p] for p in at),

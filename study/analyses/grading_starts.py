@@ -2,8 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
+from collections.abc import Sequence
 from typing import Final
 
 import numpy as np
@@ -13,128 +12,22 @@ from study.analyses.grading_bands import Openers
 from study.analyses.grading_currents import Currents
 from study.analyses.grading_faults import ModeFaults
 from study.analyses.grading_options import GradingOptions
-from study.formulas.induction import rated_current
+from study.analyses.grading_surges import Surge, load_current_a, surges_of
 from study.model.loads import Load
 from study.model.plant import Plant
-from study.results.balance import ModeBalance
+from study.results.balance import ModeBalance, RestartStep
 from study.results.grading import RideThrough
 from study.results.load_flow import ModeLoadFlow
 
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
 
-# Open transition from star to delta: for a moment up to the current of a direct start; common practice.
-TRANSITION_S: Final = 0.1
 ON_TOP: Final = " on top of the load"
 # Time constants after which an inrush is gone.
 DIES_AWAY: Final = 5.0
 # A load that carries less of another's start than this is not looked at.
 _LEAST_SHARE = 0.02
 _SQRT2 = 2.0**0.5
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Surge:
-    """A current at a load's place that a station must hold for a time.
-
-    ``current_a`` r.m.s., ``peak_a`` its first peak over sqrt2, ``normal_a`` what the load draws otherwise.
-    """
-
-    event: str
-    load: int
-    current_a: float
-    peak_a: float
-    normal_a: float
-    lasts_s: float
-    assumed: str
-
-
-def load_current_a(load: Load) -> float:
-    """Return the rated current of one unit of a consumer [A]."""
-    if load.running_current_a is not None:
-        return load.running_current_a
-    return float(rated_current(load.p_rated_kw, load.u_rated_v, load.efficiency, load.cos_phi, load.phases))
-
-
-def asymmetry(cos_phi: float) -> float:
-    """Return the first peak of a starting current over that of its symmetrical part.
-
-    Source: IEC 60909-0:2016, equation for kappa, from memory: 1.02 + 0.98 e^(-3 R/X).
-
-    Parameters
-    ----------
-    cos_phi : float
-        Power factor at the start.
-
-    Returns
-    -------
-    float
-        1.02..2.
-
-    Examples
-    --------
-    >>> round(asymmetry(0.3), 2)
-    1.4
-    """
-    reactive = max(1.0 - cos_phi**2, 1e-9) ** 0.5
-    return float(1.02 + 0.98 * np.exp(-3.0 * cos_phi / reactive))
-
-
-def surges_of(number: int, load: Load, options: GradingOptions) -> Iterator[Surge]:
-    """Yield what a motor draws while it starts.
-
-    Parameters
-    ----------
-    number : int
-        Place of the load in the workbook.
-    load : Load
-        The consumer.
-    options : GradingOptions
-        Starting time where none is given.
-
-    Yields
-    ------
-    Surge
-        One for a direct, autotransformer or soft start, two for star-delta; none for a converter.
-
-    Notes
-    -----
-    Star: a third of the current of a direct start; autotransformer: the square of the tap; definitions.
-    """
-    motor = load.motor
-    if motor is None or load.kind == "converter" or motor.starting_method == "converter":
-        return
-    rated = load_current_a(load)
-    direct = motor.starting_current * rated
-    factor = asymmetry(motor.starting_cos_phi)
-    given = motor.starting_time_s
-    time_s = options.starting_time_s if given is None else given
-    assumed = "" if given is not None else f"starting time not given: {options.starting_time_s:g} s taken"
-
-    def surge(event: str, current: float, lasts: float, first: float = factor, words: str = assumed) -> Surge:
-        return Surge(
-            event=event,
-            load=number,
-            current_a=current,
-            peak_a=first * current,
-            normal_a=rated,
-            lasts_s=lasts,
-            assumed=words,
-        )
-
-    match motor.starting_method:
-        case "star-delta":
-            change = motor.star_delta_change_s
-            words = "" if change is not None else assumed
-            yield surge("start in star", direct / 3.0, time_s if change is None else change, words=words)
-            yield surge("change from star to delta", direct, TRANSITION_S, words="")
-        case "autotransformer":
-            yield surge("start by autotransformer", direct * motor.autotransformer_tap**2, time_s)
-        case "soft starter":
-            ramp = motor.soft_starter_ramp_s
-            yield surge("soft start", motor.soft_starter_current * rated, ramp, 1.0, "")
-        case _:
-            yield surge("direct start", direct, time_s)
 
 
 class ModeStarts:
@@ -156,6 +49,13 @@ class ModeStarts:
         self.plant, self.faults, self.options = plant, faults, options
         self.mode = plant.mode(faults.mode.mode)
         self.before = _before_a(faults, flow)
+        self._shares: dict[int, FloatArray] = {}
+        self._mine = {
+            (f.station, name)
+            for f in faults.feeds
+            for name in faults.zones.zones[f.zone].consumers
+            if not faults.zones.zones[f.zone].boards
+        }
         self._of_consumers = np.zeros(len(faults.stations), bool)
         for f in faults.feeds:
             if faults.zones.zones[f.zone].consumers and not faults.zones.zones[f.zone].boards:
@@ -173,18 +73,26 @@ class ModeStarts:
     def shares(self, place: IntArray) -> FloatArray:
         """Return the current through every station for 1 A drawn at places, [place, station].
 
-        Lasting sources take it by what they would give into a fault there.
+        Lasting sources take it by what they would give into a fault there. A consumer's own station is left
+        out: it carries all of its own consumer's current and nothing else.
         """
+        missing = np.array(sorted(set(place.tolist()) - self._shares.keys()), np.int64)
+        if len(missing):
+            self._work_out(missing)
+        return np.array([self._shares[p] for p in place.tolist()]).reshape(len(place), -1)
+
+    def _work_out(self, place: IntArray) -> None:
         ways = self.faults.minimum.ways
-        count = len(self.faults.stations)
-        station = np.tile(np.arange(count), len(place))
-        where = np.repeat(place, count)
-        none = np.full(len(where), -1, np.int64)
-        share = ways.into_branch(station, where, none)
+        trunk = np.flatnonzero(~self._of_consumers)
+        station = np.tile(trunk, len(place))
+        where = np.repeat(place, len(trunk))
+        share = ways.into_branch(station, where, np.full(len(where), -1, np.int64))
         gives = ways.case.parts.subtransient_a[place] * ways.lasting
         total = gives.sum(axis=1, keepdims=True)
         weight = np.divide(gives, total, out=np.zeros_like(gives), where=total > 0.0)
-        return np.asarray(np.abs(np.einsum("pns,ps->pn", share.reshape(len(place), count, -1), weight)))
+        found = np.zeros((len(place), len(self.faults.stations)))
+        found[:, trunk] = np.abs(np.einsum("pns,ps->pn", share.reshape(len(place), len(trunk), -1), weight))
+        self._shares |= dict(zip(place.tolist(), found, strict=True))
 
     def surges(self) -> list[Surge]:
         """Return the starts of the motors that are in use in the mode."""
@@ -202,8 +110,12 @@ class ModeStarts:
         here = np.flatnonzero(places >= 0)
         if not len(here):
             return []
-        used, index = np.unique(places[here], return_inverse=True)
-        share = self.shares(used)[index]
+        share = self.shares(places[here])
+        stations = {name: s for s, name in self._mine}
+        for k, r in enumerate(here.tolist()):
+            own_station = stations.get(self.plant.loads[found[r].load].name, -1)
+            if own_station >= 0:
+                share[k, own_station] = 1.0
         row, station = np.nonzero(share > _LEAST_SHARE)
         surge = [found[here[r]] for r in row]
         part = share[row, station]
@@ -233,13 +145,7 @@ class ModeStarts:
 
     def _own(self, station: IntArray, loads: Sequence[str]) -> NDArray[np.bool_]:
         """Return where a station is the load's own: it feeds that consumer's zone."""
-        mine = {
-            (f.station, name)
-            for f in self.faults.feeds
-            for name in self.faults.zones.zones[f.zone].consumers
-            if not self.faults.zones.zones[f.zone].boards
-        }
-        return np.array([(int(s), n) in mine for s, n in zip(station, loads, strict=True)], bool)
+        return np.array([(int(s), n) in self._mine for s, n in zip(station, loads, strict=True)], bool)
 
     def inrush(self, openers: Openers) -> list[RideThrough]:
         """Return the inrush of every transformer against the stations through which it comes.
@@ -309,43 +215,51 @@ class ModeStarts:
         All motors of a step start together, on top of what the steps before have connected.
         """
         number = {load.name: k for k, load in enumerate(self.plant.loads)}
-        groups = sorted(balance.restart, key=lambda step: (step.island, step.at_s))
         running: dict[int, FloatArray] = {}
-        worst: dict[int, RideThrough] = {}
-        for step in groups:
+        found: list[tuple[int, RestartStep, float, float, float]] = []
+        for step in sorted(balance.restart, key=lambda x: (x.island, x.at_s)):
             loads = [self.plant.loads[number[name]] for name in step.loads if name in number]
-            place = np.array([self._place(x) for x in loads], np.int64)
-            loads = [x for x, p in zip(loads, place, strict=True) if p >= 0]
-            if not loads:
-                continue
-            share = self.shares(place[place >= 0])
-            units = np.array([self.mode.demand[x.name].in_use for x in loads])
-            normal = units * np.array([load_current_a(x) for x in loads])
-            surges = [max(surges_of(0, x, self.options), key=_heat, default=None) for x in loads]
-            surge = np.array(
-                [u * s.current_a if s else n for u, s, n in zip(units, surges, normal, strict=True)]
+            normal, surge, lasts = self._together([x for x in loads if self._place(x) >= 0])
+            before = running.get(step.island, np.zeros(len(surge)))
+            found += [
+                (s, step, float(before[s] + surge[s]), float(before[s]), lasts)
+                for s in np.flatnonzero(surge > 0.0).tolist()
+            ]
+            running[step.island] = before + normal
+        station = np.array([x[0] for x in found], np.int64)
+        current = np.array([x[2] for x in found], float)
+        trips = _trips_s(openers, station, current, current) if found else current
+        worst: dict[int, int] = {}
+        for k, (s, *_) in enumerate(found):
+            if s not in worst or trips[k] < trips[worst[s]]:
+                worst[s] = k
+        return [
+            RideThrough(
+                mode=self.mode.name,
+                station=s,
+                event=f"restart after a blackout, step {found[k][1].step}",
+                equipment=", ".join(found[k][1].loads),
+                current_a=found[k][2],
+                before_a=found[k][3],
+                lasts_s=found[k][4],
+                needed_s=self.options.start_factor * found[k][4],
+                trips_s=float(trips[k]),
+                assumed="",
             )
-            lasts = max((s.lasts_s for s in surges if s), default=0.0)
-            before = running.get(step.island, np.zeros(len(self.faults.stations)))
-            current = before + surge @ share
-            station = np.flatnonzero((surge @ share > 0.0) & ~self._of_consumers)
-            trips = _trips_s(openers, station, current[station], current[station])
-            for s, t in zip(station.tolist(), trips.tolist(), strict=True):
-                if s not in worst or t < worst[s].trips_s:
-                    worst[s] = RideThrough(
-                        mode=self.mode.name,
-                        station=s,
-                        event=f"restart after a blackout, step {step.step}",
-                        equipment=", ".join(step.loads),
-                        current_a=float(current[s]),
-                        before_a=float(before[s]),
-                        lasts_s=lasts,
-                        needed_s=self.options.start_factor * lasts,
-                        trips_s=t,
-                        assumed="",
-                    )
-            running[step.island] = before + normal @ share
-        return list(worst.values())
+            for s, k in worst.items()
+        ]
+
+    def _together(self, loads: Sequence[Load]) -> tuple[FloatArray, FloatArray, float]:
+        """Return what loads draw through every station in service and at their start, and how long."""
+        none = np.zeros(len(self.faults.stations))
+        if not loads:
+            return none, none, 0.0
+        share = self.shares(np.array([self._place(x) for x in loads], np.int64))
+        units = np.array([self.mode.demand[x.name].in_use for x in loads])
+        normal = units * np.array([load_current_a(x) for x in loads])
+        surges = [max(surges_of(0, x, self.options), key=_heat, default=None) for x in loads]
+        start = [u * s.current_a if s else n for u, s, n in zip(units, surges, normal, strict=True)]
+        return normal @ share, np.array(start) @ share, max((s.lasts_s for s in surges if s), default=0.0)
 
 
 def _heat(surge: Surge) -> float:

@@ -32,11 +32,14 @@ EXTENTS: Final = ("full", "partial", "none", "not assessed", "not needed")
 class GradingStations:
     """Stations, tuples and arrays [station].
 
-    ``devices`` are the names of the devices there, ``equipment`` what they protect, ``boards`` the board at
-    which they stand, ``u_nominal_v`` its voltage.
+    ``devices`` are the names of the devices there and ``set_at`` the one that holds the settings against
+    faults; ``equipment`` is what they protect, ``boards`` the board at which they stand, ``u_nominal_v`` its
+    voltage. ``unknown`` says what of them the workbook does not give.
     """
 
     names: tuple[str, ...]
+    set_at: tuple[str, ...]
+    unknown: tuple[str, ...]
     devices: tuple[tuple[str, ...], ...]
     equipment: tuple[str, ...]
     boards: tuple[str, ...]
