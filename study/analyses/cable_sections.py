@@ -129,6 +129,8 @@ def _drop_holds(plant: Plant, drop: CableDrop, flow: LoadFlowResult) -> BoolArra
         if mode < 0:
             continue
         own = float(drop.own_pu[k, mode])
+        if own == 0.0:
+            continue
         p, q = powers[mode].get(cable.name, (np.nan, np.nan))
         part = _drop_parts(cable, plant.project.f_rated_hz, (abs(float(p)), abs(float(q))), known)
         holds[k] = own * part <= float(drop.allowed_pu[k]) * (1.0 + 1e-9)
