@@ -97,7 +97,7 @@ def _relay(work: CaseWork, load: Load) -> Device | None:
 
 
 def _heating(relay: Device | None, t: FloatArray, amperes: FloatArray, until: float) -> tuple[float, float]:
-    """Return the heating at the end of the run-up, or of the course: of the quickest and the slowest relay."""
+    """Return the heating at the end of the run-up, or of the course: quickest and slowest relay."""
     nan = float("nan")
     if relay is None or relay.trip_class not in TRIP_CLASSES:
         return nan, nan

@@ -9,11 +9,13 @@ from study.analyses.dips_build_up import simulate_build_up
 from study.analyses.dips_cases import KINDS, CaseWork, load_before, mode_before
 from study.analyses.dips_options import DipOptions
 from study.analyses.dips_relays import add_relays
-from study.analyses.dips_results import case_result, not_simulated
+from study.analyses.dips_results import case_result
+from study.analyses.dips_unsimulated import not_simulated
 from study.issues import SolveError
 from study.model.modes import Event
 from study.network.batch import BatchSolution, solve_batch
 from study.network.dynamics_build import Model, build_model
+from study.network.dynamics_data import START_MOTOR
 from study.network.dynamics_run import Course, follow_model
 from study.network.network import ModeNetwork, mode_network
 from study.results.arrays import FloatArray
@@ -193,15 +195,15 @@ def island_of(at: ModeNetwork, events: Sequence[Event]) -> int:
         Nothing of it is live.
     """
     topology, plant = at.network.topology, at.network.plant
-    branch_node = {b.name: b.from_node for b in topology.branches}
     loads = {x.name: n for n, x in enumerate(plant.loads)}
     for e in events:
+        nodes = [topology.node_of[e.equipment]] if e.equipment in topology.node_of else []
+        nodes += [n for b in topology.branches if b.name == e.equipment for n in (b.from_node, b.to_node)]
         if e.equipment in loads:
-            node = at.view.load_node[loads[e.equipment]]
-        else:
-            node = topology.node_of.get(e.equipment, branch_node.get(e.equipment, -1))
-        if node >= 0 and at.view.island[node] >= 0:
-            return int(at.view.island[node])
+            nodes = [at.view.load_node[loads[e.equipment]]]
+        live = [at.view.island[n] for n in nodes if at.view.island[n] >= 0]
+        if live:
+            return int(live[0])
     raise SolveError(f"{events[0].equipment} is dead in {at.mode.name}.")
 
 
@@ -209,7 +211,7 @@ def length_s(work: CaseWork, options: DipOptions) -> float:
     """Return how long a case is followed: beyond its last event and its starters' ramps. [s]."""
     last = max((h.at_s for h in work.happenings), default=0.0)
     until = last + options.after_s
-    started = {h.index: h.at_s for h in work.happenings if h.kind == 0}
+    started = {h.index: h.at_s for h in work.happenings if h.kind == START_MOTOR}
     for n, drive in enumerate(work.drives):
         motor = drive.load.motor
         assert motor is not None

@@ -284,18 +284,17 @@ class _Builder:
         p = self.plan.p_kw[0, here]
         if not here or p.sum() <= 0.0:
             return None
+        at = self.batch.at
+        u = np.abs(self.batch.v_bus_pu[0, at.load_bus[here]]) * at.load_arrays.v_scale[here]
         return running_motors(
             [network.plant.loads[n] for n in here],
             (p / p.sum() * total * network.s_base_kva).tolist(),
+            u.tolist(),
             v=complex(lumped.v[k]),
-            u_base_v=float(network.u_base_v[self._node_of_bus(int(lumped.bus[k]))]),
             s_base_kva=network.s_base_kva,
             f_hz=network.plant.project.f_rated_hz,
             f_pu=f_pu,
         )
-
-    def _node_of_bus(self, bus: int) -> int:
-        return int(np.flatnonzero(self.batch.at.bus_of_node == bus)[0])
 
     def _node_behind(self, load: int) -> int:
         """Return the node that a consumer hangs on through the trees; -1 in another island."""
@@ -319,7 +318,6 @@ class _Builder:
             motor=motor,
             node=node,
             y=y,
-            cross=np.ascontiguousarray(self.batch.laws.cross[np.ix_(self.rows.place, self.rows.place)]),
             work=np.zeros((2 * size, 2 * size + 1)),
             order=np.zeros(2 * size, np.int64),
             single=single,

@@ -17,17 +17,20 @@ ComplexArray = NDArray[np.complex128]
 IntArray = NDArray[np.int64]
 
 # A source: parameters per unit of its own rating. RATING over the network's base; OWN_V turns network voltage
-# into own. SUPPLY_* see `formulas.excitation.FieldSupply`. ON is 0 when its breaker is open.
+# into own. SUPPLY_* see `formulas.excitation.FieldSupply`. ON is 0 when its breaker is open. GROUP numbers
+# the
+# cross-current groups from 1; 0 is none.
 (
     RATING, OWN_V, XD, XD1, XD2, XQ, XQ2, XL, RA, TD01, TD02, TQ02, SAT_KIND, SAT_A, SAT_B, TWO_H,
     V_REF, XC, Q_SET, Q_PER_P, AVR_P, AVR_I, AVR_D, RATED_FIELD, EXCITER_S, KNEE,
     SUPPLY_C, SUPPLY_V, SUPPLY_I, FIELD_ON, F_REF, DROOP, P_SET, GOV_P, GOV_I, GOV_D, GOV_FILTER_S,
     RACK_S, DEAD_S, ENGINE, STEP, P_RATED, I_MAX, R_SOURCE, X_SOURCE, ON, KIND, NODE, REGULATOR, GOVERNOR,
-) = range(50)  # fmt: skip
+    GROUP,
+) = range(51)  # fmt: skip
 # Its states. Angle [rad], speed, E'q, psi1d, E''d, field; transducer, integral and filtered error of the
 # regulator, its trim; integral and filtered error of the governor, rack, dead time, charge air, measured kW,
 # trim of the set power. A converter uses angle, speed, e.m.f. (at FLUX) and measured kW.
-FIRST_STATE, STATES = 50, 17
+FIRST_STATE, STATES = 51, 17
 (
     ANGLE, SPEED, FLUX, DAMPER_D, DAMPER_Q, FIELD, MEASURED, INTEGRAL, FILTERED, KVAR_TRIM,
     GOV_INTEGRAL, GOV_FILTERED, RACK, DELAY, TURBO, POWER, POWER_TRIM,
@@ -42,7 +45,7 @@ SOURCE_COLUMNS = FIRST_STATE + 4 * STATES + 14
 
 MACHINE, CONVERTER, SHORE = 0, 1, 2
 # How the field is made.
-CONSTANT_FIELD, SUPPLY_ALONE, PHASOR, REACTIVE_CURRENT, KVAR = 0, 1, 2, 3, 4
+CONSTANT_FIELD, SUPPLY_ALONE, PHASOR, REACTIVE_CURRENT, KVAR, CROSS_CURRENT = 0, 1, 2, 3, 4, 5
 # How the engine is told.
 BY_DROOP, ISOCHRONOUS, LOAD_SHARING, SET_POWER = 0, 1, 2, 3
 
@@ -112,16 +115,14 @@ class Plant(NamedTuple):
     """A plant at one instant; everything in it is written to while it is followed.
 
     ``source`` [source, column], ``motor`` [motor, column], ``node`` [node, column]; ``y`` [node, node] is the
-    network without what moves, per unit; ``cross`` [source, source] are cross-current reactances in network
-    units. ``work`` [2 node, 2 node + 1] holds factors and a right-hand side, ``order`` [2 node] row
-    exchanges.
+    network without what moves, per unit. ``work`` [2 node, 2 node + 1] holds factors and a right-hand side,
+    ``order`` [2 node] row exchanges.
     """
 
     source: FloatArray
     motor: FloatArray
     node: FloatArray
     y: ComplexArray
-    cross: FloatArray
     work: FloatArray
     order: IntArray
     single: FloatArray

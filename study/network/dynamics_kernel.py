@@ -11,6 +11,7 @@ from hashlib import sha256
 from pathlib import Path
 from typing import Any
 
+import numba
 import numpy as np
 
 from study.formulas import exciters, governor, starting
@@ -156,6 +157,17 @@ def gather(now: Any, weight: float) -> None:
 
 
 @compiled
+def take_total(now: Any) -> None:
+    """Set the states to their weighted sums: the end of a step."""
+    source, motor = now.source, now.motor
+    for j in range(source.shape[0]):
+        for x in range(FIRST_STATE, FIRST_STATE + STATES):
+            source[j, x] = source[j, x + TOTAL]
+    for m in range(motor.shape[0]):
+        motor[m, TURNING] = max(motor[m, TURNING_TOTAL], 0.0)
+
+
+@compiled
 def advance(now: Any, script: Any, t: float, h: float) -> bool:
     """Make one Runge-Kutta step of length h; voltages and currents are those at its end."""
     source, motor = now.source, now.motor
@@ -164,24 +176,20 @@ def advance(now: Any, script: Any, t: float, h: float) -> bool:
             source[j, x + ORIGIN], source[j, x + TOTAL] = source[j, x], source[j, x]
     for m in range(motor.shape[0]):
         motor[m, TURNING_ORIGIN], motor[m, TURNING_TOTAL] = motor[m, TURNING], motor[m, TURNING]
-    for part in range(4):
+    for part in range(5):
+        if part == 4:
+            take_total(now)
+        elif part > 0:
+            step_to(now, h if part == 3 else 0.5 * h)
         if part > 0:
-            ahead = h if part == 3 else 0.5 * h
-            step_to(now, ahead)
-            observe(now, script, t + ahead)
+            observe(now, script, t + (h if part >= 3 else 0.5 * h))
             slips(now)
             if not solve(now):
                 return False
-        move(now)
-        gather(now, h / 6.0 if part in (0, 3) else h / 3.0)
-    for j in range(source.shape[0]):
-        for x in range(FIRST_STATE, FIRST_STATE + STATES):
-            source[j, x] = source[j, x + TOTAL]
-    for m in range(motor.shape[0]):
-        motor[m, TURNING] = max(motor[m, TURNING_TOTAL], 0.0)
-    observe(now, script, t + h)
-    slips(now)
-    return solve(now)
+        if part < 4:
+            move(now)
+            gather(now, h / 6.0 if part in (0, 3) else h / 3.0)
+    return True
 
 
 @compiled
@@ -243,7 +251,7 @@ def settle(now: Any, script: Any, t: float) -> bool:
 
 
 def digest_of(*modules: Any) -> str:
-    """Return a digest of modules' sources: numba's cache looks at the file of the function alone."""
+    """Return a digest of modules' sources: numba's cache looks at the file of the cached function alone."""
     text = b"".join(Path(str(m.__file__)).read_bytes() for m in modules)
     return sha256(text).hexdigest()
 
@@ -251,32 +259,34 @@ def digest_of(*modules: Any) -> str:
 def _follower(digest: str) -> Callable[..., Any]:
     """Return the compiled run; the digest, being part of it, parts it from runs of other sources."""
 
-    @compiled
+    @numba.njit(cache=True, nogil=True, error_model="numpy", fastmath={"contract", "arcp"})
     def follow(now: Any, script: Any, kept: Any, timing: Any) -> Any:
         until, step = timing
-        t, e, n, logged = 0.0, 0, 0, 0
-        how = FINISHED if settle(now, script, t) and len(digest) > 0 else NO_SOLUTION
-        keep(now, kept, 0, t)
-        while t < until - SAME_TIME and how == FINISHED and n < kept.time.shape[0] - 3:
-            first = e
-            e = let_happen(now, script, t, first)
-            changed = e > first
-            if not changed:
-                h = min(step, until - t)
-                if e < script.event.shape[0]:
-                    h = min(h, script.event[e, EVENT_TIME] - t)
-                if not advance(now, script, t, h):
-                    how = NO_SOLUTION
-                    break
-                t, n = t + h, n + 1
-                keep(now, kept, n, t)
-                before = logged
-                logged = react(now, script, kept, (t, h, n, logged))
-                changed, how = logged > before, ended(now, h)
-            if changed and how == FINISHED:
+        t, e, n, logged = 0.0, 0, -1, 0
+        how, changed = FINISHED if len(digest) > 0 else NO_SOLUTION, True
+        while how == FINISHED and n < kept.time.shape[0] - 3:
+            if changed:
                 how = FINISHED if settle(now, script, t) else NO_SOLUTION
                 n += 1
                 keep(now, kept, n, t)
+            first = e
+            e = let_happen(now, script, t, first)
+            changed = e > first
+            if changed:
+                continue
+            if t >= until - SAME_TIME:
+                break
+            h = min(step, until - t)
+            if e < script.event.shape[0]:
+                h = min(h, script.event[e, EVENT_TIME] - t)
+            if not advance(now, script, t, h):
+                how = NO_SOLUTION
+                break
+            t, n = t + h, n + 1
+            keep(now, kept, n, t)
+            before = logged
+            logged = react(now, script, kept, (t, h, n, logged))
+            changed, how = logged > before, ended(now, h)
         return n + 1, logged, how
 
     return follow

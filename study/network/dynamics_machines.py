@@ -26,6 +26,7 @@ from study.network.dynamics_data import (
     CONSTANT_FIELD,
     CONVERTER,
     COSINE,
+    CROSS_CURRENT,
     DAMPER_D,
     DAMPER_Q,
     DEAD_S,
@@ -47,6 +48,7 @@ from study.network.dynamics_data import (
     GOV_INTEGRAL,
     GOV_P,
     GOVERNOR,
+    GROUP,
     HYPERBOLIC,
     I_D,
     I_IM,
@@ -176,7 +178,26 @@ def ceiling(source: Any, j: int) -> Any:
 
 
 @compiled
-def seen_voltage(source: Any, cross: Any, j: int) -> Any:
+def others_current(source: Any, j: int) -> Any:
+    """Return the mean current of the other sets of a cross-current group in the axes of set j.
+
+    Per unit and weighted by rating, of those that are on the board: the current transformer of a set off it
+    is short-circuited. A set alone has none.
+    """
+    re, im, weight = 0.0, 0.0, 0.0
+    for k in range(source.shape[0]):
+        if k != j and source[k, ON] != 0.0 and source[k, GROUP] == source[j, GROUP]:
+            re += source[k, I_RE] / source[k, OWN_V]
+            im += source[k, I_IM] / source[k, OWN_V]
+            weight += source[k, RATING]
+    if weight == 0.0 or source[j, ON] == 0.0:
+        return 0.0, 0.0, False
+    s, c = source[j, SINE] / weight, source[j, COSINE] / weight
+    return re * s - im * c, re * c + im * s, True
+
+
+@compiled
+def seen_voltage(source: Any, j: int) -> Any:
     """Return the voltage that a regulator compares with its set-point, load compensation included."""
     i_d, i_q, vd, vq, xc = (
         source[j, I_D],
@@ -188,19 +209,15 @@ def seen_voltage(source: Any, cross: Any, j: int) -> Any:
     if source[j, REGULATOR] == REACTIVE_CURRENT:
         v = np.sqrt(vd * vd + vq * vq)
         return v + xc * (vq * i_d - vd * i_q) / max(v, 1e-6)
-    # jX times a current of another set, turned into this one's axes.
-    re, im = 0.0, 0.0
-    for k in range(source.shape[0]):
-        re -= cross[j, k] * source[k, I_IM]
-        im += cross[j, k] * source[k, I_RE]
-    s, c, own = source[j, SINE], source[j, COSINE], source[j, OWN_V]
-    real = vd - xc * i_q + (re * s - im * c) * own
-    imaginary = vq + xc * i_d + (re * c + im * s) * own
+    if source[j, REGULATOR] == CROSS_CURRENT:
+        other_d, other_q, found = others_current(source, j)
+        i_d, i_q = (i_d - other_d, i_q - other_q) if found else (0.0, 0.0)
+    real, imaginary = vd - xc * i_q, vq + xc * i_d
     return np.sqrt(real * real + imaginary * imaginary)
 
 
 @compiled
-def excite(source: Any, cross: Any, j: int) -> None:
+def excite(source: Any, j: int) -> None:
     """Fill the rates of field and regulator."""
     most, way = ceiling(source, j), int(source[j, REGULATOR])
     field, lag = source[j, FIELD], source[j, EXCITER_S]
@@ -211,7 +228,7 @@ def excite(source: Any, cross: Any, j: int) -> None:
         source[j, FIELD + RATE] = (most - field) / lag
         return
     measured = source[j, MEASURED]
-    source[j, MEASURED + RATE] = (seen_voltage(source, cross, j) - measured) / TRANSDUCER_S
+    source[j, MEASURED + RATE] = (seen_voltage(source, j) - measured) / TRANSDUCER_S
     reference = source[j, V_REF] + source[j, KVAR_TRIM]
     if source[j, SPEED] < source[j, KNEE]:
         reference *= source[j, SPEED] / source[j, KNEE]
@@ -277,7 +294,7 @@ def move_machine(now: Any, j: int) -> None:
     source[j, DAMPER_Q + RATE] = (across - source[j, DAMPER_Q]) / source[j, TQ02]
     torque = (active + source[j, RA] * (i_d * i_d + i_q * i_q)) / source[j, SPEED]
     source[j, SPEED + RATE] = (source[j, RACK] * source[j, P_RATED] - torque) / source[j, TWO_H]
-    excite(source, now.cross, j)
+    excite(source, j)
     govern(source, j, active, now.single[SHARED])
 
 

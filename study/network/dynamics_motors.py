@@ -217,9 +217,9 @@ class RunningMotors:
 def running_motors(
     loads: Sequence[Load],
     s_kva: Sequence[complex],
+    u_pu: Sequence[float],
     *,
     v: complex,
-    u_base_v: float,
     s_base_kva: float,
     f_hz: float,
     f_pu: float,
@@ -237,10 +237,12 @@ def running_motors(
         Motors direct on line.
     s_kva : sequence of complex
         What each draws at the node now. [kVA]
+    u_pu : sequence of float
+        Voltage at the terminals of each now. [pu of its rated voltage]
     v : complex
         Voltage of the node. [pu]
-    u_base_v, s_base_kva : float
-        Bases. [V], [kVA]
+    s_base_kva : float
+        Base power. [kVA]
     f_hz, f_pu : float
         Rated frequency [Hz], and that before over it.
 
@@ -268,7 +270,7 @@ def running_motors(
     torque = float(np.dot(weight, [_motor(x).locked_rotor_torque for x in loads]))
     fill_circuit(circuit, torque, row)
     h = [inertia_of(x, c, 1.0, f_hz).h_s for x, c in zip(loads, circuits, strict=True)]
-    own_v = u_base_v / float(np.dot(weight, [x.u_rated_v for x in loads]))
+    own_v = float(np.dot(weight, u_pu)) / abs(v)
     p_now = sum(s.real for s in s_kva) / s_base_kva
     cos_phi = float(motor_admittance(circuit.slip_rated, circuit).real)
     row[d.OWN_MOTOR_V], row[d.Y_SCALE] = own_v, p_now / cos_phi * own_v**2

@@ -87,7 +87,8 @@ from study.network.dynamics_data import (
     Y_SCALE,
 )
 
-compiled = numba.njit(cache=True, nogil=True, error_model="numpy", fastmath={"contract", "arcp"})
+# Not kept on disk one by one: what calls them would be kept with older ones inside it. See `dynamics_kernel`.
+compiled = numba.njit(nogil=True, error_model="numpy", fastmath={"contract", "arcp"})
 
 TOLERANCE = 1e-8  # of the mismatch, pu of the network's base
 KEEP_FACTORS = 4  # iterations that old factors may take
@@ -361,34 +362,46 @@ def solve(now: Any) -> bool:
     """Find voltages and currents for the states at hand; False where there are none."""
     prepare_sources(now.source)
     follow_voltage(now.motor, now.node, True)
-    found = newton(now)
-    if not found and now.single[HAS_FACTORS] != 0.0:
-        now.single[HAS_FACTORS] = 0.0
+    found, turns = False, 0
+    # Called in one place: every place is a copy of the whole for the compiler.
+    while not found and turns < 2:
+        if turns == 1:
+            now.single[HAS_FACTORS] = 0.0
         found = newton(now)
+        turns += 1
     fill_currents(now.source, now.node)
     return found
 
 
 @compiled
-def solve_afresh(now: Any) -> bool:
-    """Find the voltages after a sudden change; from impedances alone where the last point leads nowhere."""
-    node = now.node
-    before = node.copy()
-    now.single[HAS_FACTORS] = 0.0
-    if solve(now):
-        return True
-    # With every load an impedance of what it drew before, the network is linear.
+def load_as_impedance(node: Any, before: Any) -> None:
+    """Make every load an impedance of what it drew before: the network is then linear."""
     for k in range(node.shape[0]):
         u2 = max(before[k, V_RE] ** 2 + before[k, V_IM] ** 2, LEAST_SQUARE)
         node[k, V_RE], node[k, V_IM] = before[k, V_RE], before[k, V_IM]
-        node[k, A_RE], node[k, A_IM] = (
-            before[k, A_RE] * AS_IMPEDANCE / u2,
-            before[k, A_IM] * AS_IMPEDANCE / u2,
-        )
+        node[k, A_RE] = before[k, A_RE] * AS_IMPEDANCE / u2
+        node[k, A_IM] = before[k, A_IM] * AS_IMPEDANCE / u2
         node[k, FLOOR] = AS_IMPEDANCE
-    now.single[HAS_FACTORS] = 0.0
-    solve(now)
+
+
+@compiled
+def load_as_before(node: Any, before: Any) -> None:
+    """Give every load its own law again."""
     for k in range(node.shape[0]):
         node[k, A_RE], node[k, A_IM], node[k, FLOOR] = before[k, A_RE], before[k, A_IM], before[k, FLOOR]
-    now.single[HAS_FACTORS] = 0.0
-    return solve(now)
+
+
+@compiled
+def solve_afresh(now: Any) -> bool:
+    """Find the voltages after a sudden change; from impedances alone where the last point leads nowhere."""
+    before = now.node.copy()
+    found, turns = False, 0
+    while not found and turns < 3:
+        if turns == 1:
+            load_as_impedance(now.node, before)
+        elif turns == 2:
+            load_as_before(now.node, before)
+        now.single[HAS_FACTORS] = 0.0
+        found = solve(now) and turns != 1
+        turns += 1
+    return found

@@ -70,11 +70,33 @@ def follow_model(model: Model, until_s: float, step_s: float | None = None) -> C
     Course
         What it did.
     """
+    return follow_plant(model.start, model.script, until_s, step_s)
+
+
+def follow_plant(start: Plant, script: Script, until_s: float, step_s: float | None = None) -> Course:
+    """Follow a plant in time; see `follow_model`.
+
+    Parameters
+    ----------
+    start : Plant
+        At rest; stays as it is.
+    script : Script
+        What happens; stays as it is.
+    until_s : float
+        How long. [s]
+    step_s : float, optional
+        Length of a step. [s]
+
+    Returns
+    -------
+    Course
+        What it did.
+    """
     from study.network.dynamics_kernel import follow
 
-    step = step_for(model.start) if step_s is None else step_s
-    now = Plant(**{name: x.copy() for name, x in model.start._asdict().items()})
-    script = Script(**{name: x.copy() for name, x in model.script._asdict().items()})
+    step = step_for(start) if step_s is None else step_s
+    now = Plant(**{name: x.copy() for name, x in start._asdict().items()})
+    script = Script(**{name: x.copy() for name, x in script._asdict().items()})
     kept = space_for(now, int(until_s / step) + 4 * len(script.event) + MORE_ROWS)
     rows, logged, how = follow(now, script, kept, (float(until_s), step))
     v = kept.v[:rows]
@@ -86,6 +108,27 @@ def follow_model(model: Model, until_s: float, step_s: float | None = None) -> C
         log=kept.log[:logged],
         how=int(how),
         step_s=step,
+    )
+
+
+def empty_script(nodes: int) -> Script:
+    """Return a script in which nothing happens.
+
+    Parameters
+    ----------
+    nodes : int
+        Of the plant.
+
+    Returns
+    -------
+    Script
+        Without events.
+    """
+    return Script(
+        event=np.zeros((0, d.EVENT_COLUMNS)),
+        relay=np.zeros((0, d.RELAY_COLUMNS)),
+        inrush=np.zeros((0, d.INRUSH_COLUMNS)),
+        load=np.zeros((1, 4, nodes)),
     )
 
 

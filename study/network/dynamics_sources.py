@@ -12,10 +12,11 @@ from study.formulas.exciters import SLIP_RING_LAG_S
 from study.formulas.governor import tuned_gains
 from study.formulas.machine_constants import open_circuit_time_constant
 from study.formulas.saturation import SaturationCurve, saturation_field
-from study.formulas.synchronous import two_reaction
+from study.formulas.synchronous import rated_load_field, two_reaction
 from study.model.sources import ConverterSupply, Genset, MachineData
 from study.network import dynamics_data as d
 from study.network.batch import BatchSolution
+from study.network.dynamics_data import Plant
 from study.network.machines import machine_of
 from study.network.sources import Law, Source, Speed
 
@@ -29,7 +30,7 @@ CONVERTER_X_PU = 0.10  # filter of a grid-forming converter; common practice, no
 STIFF_X_PU = 1e-3  # behind a shore supply without a fault level
 _REGULATORS = {
     Law.PHASOR: d.PHASOR,
-    Law.CROSS_CURRENT: d.PHASOR,
+    Law.CROSS_CURRENT: d.CROSS_CURRENT,
     Law.REACTIVE_CURRENT: d.REACTIVE_CURRENT,
     Law.REACTIVE_POWER: d.KVAR,
 }
@@ -81,6 +82,7 @@ def source_rows(batch: BatchSolution, island: int) -> SourceRows:
     at = batch.at
     rows = [j for j, s in enumerate(at.sources) if s.island == island and not _follows(s)]
     table = np.zeros((len(rows), d.SOURCE_COLUMNS))
+    groups = sorted({s.cross_group for s in at.sources})
     for n, j in enumerate(rows):
         s = at.sources[j]
         to_v, to_i = float(batch.laws.to_own_v[j, 0]), float(batch.laws.to_own_i[j, 0])
@@ -92,6 +94,8 @@ def source_rows(batch: BatchSolution, island: int) -> SourceRows:
         )
         p = table[n]
         p[d.ON], p[d.OWN_V], p[d.RATING] = 1.0, to_v, s.s_rated_kva / at.network.s_base_kva
+        if s.law == Law.CROSS_CURRENT:
+            p[d.GROUP] = 1.0 + groups.index(s.cross_group)
         p[d.GOVERNOR] = _GOVERNORS[s.speed]
         _fill_common(s, point, p)
         if s.machine is not None:
@@ -136,7 +140,7 @@ def following(batch: BatchSolution, island: int) -> tuple[IntArray, ComplexArray
 def _fill_common(s: Source, point: Operating, p: FloatArray) -> None:
     """Fill what every source has: settings of voltage and speed, and its measured power."""
     p[d.P_RATED] = s.p_rated_kw / s.s_rated_kva
-    p[d.V_REF], p[d.XC] = s.v_ref_pu, 0.0 if s.law == Law.CROSS_CURRENT else s.xc_pu
+    p[d.V_REF], p[d.XC] = s.v_ref_pu, s.xc_pu
     p[d.DROOP], p[d.F_REF] = s.speed_droop_pu, s.f_no_load_pu
     p[d.POWER] = (point.v * point.i.conjugate()).real / p[d.P_RATED]
     p[d.SPEED] = point.f_pu
@@ -210,6 +214,49 @@ def fill_rotor(point: Operating, p: FloatArray) -> None:
     p[d.DAMPER_Q] = (p[d.XQ] - p[d.XQ2]) * i_q
     p[d.SPEED] = w
     p[d.FIELD] = e + float(saturation_field(p[d.FLUX], curve_of(p)))
+
+
+def set_alone(item: Genset, supply: FieldSupply, f_rated_hz: float, residual_pu: float) -> Plant:
+    """Return a set at rated speed on a board of its own, without load and without field but for the residual.
+
+    Parameters
+    ----------
+    item : Genset
+        The set.
+    supply : FieldSupply
+        The most that its field supply gives.
+    f_rated_hz : float
+        Rated frequency. [Hz]
+    residual_pu : float
+        Voltage of the residual magnetism. [pu of rated]
+
+    Returns
+    -------
+    Plant
+        With one node, per unit of the set's own rating.
+    """
+    p = np.zeros(d.SOURCE_COLUMNS)
+    p[d.ON] = p[d.OWN_V] = p[d.RATING] = p[d.SPEED] = p[d.F_REF] = 1.0
+    fill_machine(item, f_rated_hz, p)
+    _fill_supply(supply, p)
+    p[d.RATED_FIELD] = rated_load_field(item.cos_phi_rated, machine_of(item))
+    p[d.GOVERNOR], p[d.V_REF] = d.ISOCHRONOUS, item.regulator.no_load_voltage_pu
+    without = item.excitation.field_supply in ("fixed", "compounded without regulator")
+    p[d.REGULATOR] = d.SUPPLY_ALONE if without else d.PHASOR
+    p[d.FLUX] = p[d.DAMPER_D] = p[d.MEASURED] = residual_pu
+    p[d.FILTERED] = p[d.V_REF] - residual_pu
+    node, single = np.zeros((1, d.NODE_COLUMNS)), np.zeros(d.SINGLE_COLUMNS)
+    node[0, d.V_RE], single[d.OMEGA] = residual_pu, 2.0 * np.pi * f_rated_hz
+    single[d.DEAD_TIME] = -np.inf  # a low voltage is no end here
+    return Plant(
+        source=p[np.newaxis],
+        motor=np.zeros((0, d.MOTOR_COLUMNS)),
+        node=node,
+        y=np.zeros((1, 1), complex),
+        work=np.zeros((2, 3)),
+        order=np.zeros(2, np.int64),
+        single=single,
+    )
 
 
 def curve_of(p: FloatArray) -> SaturationCurve:
