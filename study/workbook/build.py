@@ -50,8 +50,9 @@ class Reading:
 
     @property
     def modes(self) -> list[str]:
-        """Names of the modes."""
-        return [row.name for row in self.rows.get("Modes", ()) if row.name]
+        """Names of the modes, each once."""
+        names = {folded(row.name): row.name for row in reversed(self.rows.get("Modes", [])) if row.name}
+        return list(reversed(names.values()))
 
 
 def read_plant(path: Path | str) -> Plant:
@@ -134,14 +135,8 @@ def _read_tables(book: RawBook, reading: Reading) -> None:
     for spec in order:
         sheet = raw.get(spec.name)
         if sheet is None:
-            if spec.required:
-                reading.found.add(
-                    "missing-sheet",
-                    spec.name,
-                    "",
-                    f"there is no sheet {spec.name}",
-                    f"add the sheet {spec.name}",
-                )
+            if spec.required and spec.name not in reading.found.unread:
+                _report_no_rows(reading, spec.name, f"there is no sheet {spec.name}", "add the sheet")
             continue
         table = find_table(spec, sheet.read(), reading.modes, reading.found, reading.not_read)
         if table is None:
@@ -149,10 +144,14 @@ def _read_tables(book: RawBook, reading: Reading) -> None:
         reading.tables[spec.name] = table
         if spec.name not in ITEM_SHEETS:
             reading.rows[spec.name] = read_rows(table, reading.found)
+            if spec.required and not reading.rows[spec.name]:
+                _report_no_rows(reading, spec.name, "the sheet has no rows", "fill it in")
     _read_items(reading)
-    for spec in SHEETS:
-        if spec.required and spec.name in reading.rows and not reading.rows[spec.name]:
-            reading.found.add("missing-sheet", spec.name, "", "the sheet has no rows", "fill it in")
+
+
+def _report_no_rows(reading: Reading, sheet: str, said: str, wanted: str) -> None:
+    reading.found.unread.add(sheet)
+    reading.found.add("missing-sheet", sheet, "", said, wanted)
 
 
 def _read_items(reading: Reading) -> None:
@@ -171,20 +170,23 @@ def _read_items(reading: Reading) -> None:
 def _recognised_sheets(book: RawBook, reading: Reading) -> dict[str, RawSheet]:
     known = {folded(spec.name): spec.name for spec in SHEETS}
     sheets: dict[str, RawSheet] = {}
+    misspelt: set[str] = set()
     for sheet in book.sheets:
         name = known.get(folded(sheet.name))
         if name is None:
-            _unknown_sheet(sheet.name, reading)
+            misspelt.add(_unknown_sheet(sheet.name, reading))
         elif name in sheets:
             reading.found.add(
                 "doubled-sheet", sheet.name, "", f"the sheet {name} is there twice", "keep one of the two"
             )
         else:
             sheets[name] = sheet
+    reading.found.unread |= misspelt - sheets.keys()
     return sheets
 
 
-def _unknown_sheet(name: str, reading: Reading) -> None:
+def _unknown_sheet(name: str, reading: Reading) -> str:
+    """Report a sheet that is nearly one of ours, and return the name of that; list any other as not read."""
     for spec in SHEETS:
         limit = min(2, len(spec.name) // LETTERS_PER_SLIP)
         if edit_distance(heading_key(name), heading_key(spec.name), limit) <= limit:
@@ -192,8 +194,9 @@ def _unknown_sheet(name: str, reading: Reading) -> None:
                 "near-miss-sheet", name, "", f"the sheet’s name is nearly “{spec.name}”",
                 f"call it “{spec.name}”, or start its name with # if it is your own",
             )  # fmt: skip
-            return
+            return spec.name
     reading.not_read.append(f"sheet “{name}”")
+    return ""
 
 
 def _settle(reading: Reading) -> Names:

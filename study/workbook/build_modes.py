@@ -9,7 +9,7 @@ from study.model.modes import Demand, DutyKind, Event, Interlock, Mode, SetPoint
 from study.model.plant import Assumption
 from study.workbook.build_parts import make, model_values
 from study.workbook.faults import Findings
-from study.workbook.headings import folded, nearest
+from study.workbook.headings import closest, folded, nearest
 from study.workbook.links import Names, RowsBySheet
 from study.workbook.sheets import SOURCE_SHEETS
 from study.workbook.tables import Row, Table
@@ -87,7 +87,7 @@ def _assumed_on(row: Row, equipment: str, mode: str) -> Assumption:
 
 
 def _check_listed(rows: RowsBySheet, names: Names, listed: set[str], found: Findings) -> None:
-    if "Running" not in rows:
+    if "Running" in found.unread:
         return
     for name in names.all(SOURCE_SHEETS):
         if name not in listed:
@@ -184,9 +184,11 @@ def check_services(rows: RowsBySheet, found: Findings) -> None:
             continue
         near = nearest(service, services.values())
         row.broken.add("service")
+        if "Loads" in found.unread:
+            continue
         found.add(
             "unknown-service", row.sheet, row.cell("service"), f"no load has the service “{service}”",
-            f"closest are {', '.join(near)}" if near else "write it as on the sheet Loads",
+            closest(near) if near else "write it as on the sheet Loads",
         )  # fmt: skip
 
 

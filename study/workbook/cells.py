@@ -125,7 +125,7 @@ def _wanted(column: Column) -> str:
     if column.bounds.words() == "any number":
         words = "give a number"
     words = f"{words}, or {' or '.join(column.words)}" if column.words else words
-    return f"{words} ({column.hint})" if column.hint else words
+    return f"{words} ({column.hint})" if column.hint not in {"", column.unit} else words
 
 
 def _other_number(value: Any, match: Match) -> float | Refused:

@@ -104,9 +104,17 @@ FAULTS: Final[Mapping[str, str]] = MappingProxyType(
 
 
 class Findings:
-    """What has been found so far, in no order."""
+    """What has been found so far, in no order.
+
+    Attributes
+    ----------
+    unread : set of str
+        Sheets that could not be read as a whole, which is a fault of its own: that a name is on none of the
+        others says nothing then.
+    """
 
     def __init__(self) -> None:
+        self.unread: set[str] = set()
         self._issues: list[Issue] = []
         self._seen: set[tuple[str, str, str, str]] = set()
 

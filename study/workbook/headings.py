@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 import unicodedata
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
 from functools import lru_cache
 from types import MappingProxyType
@@ -112,11 +112,22 @@ def nearest(text: str, names: Iterable[str], count: int = 3) -> tuple[str, ...]:
     ('MSB 1', 'MSB 2')
     """
     wanted = heading_key(text)
-    limit = max(NEAR, len(wanted) // 3)
+    limit = max(min(NEAR, len(wanted) // 2), len(wanted) // 3)
     scored = sorted((edit_distance(wanted, heading_key(name), limit), name) for name in names)
     # Where one is much like it, those that are less so only distract.
     limit = min(limit, scored[0][0] + 1) if scored else limit
     return tuple(name for distance, name in scored if distance <= limit)[:count]
+
+
+def closest(names: Sequence[str]) -> str:
+    """Return a sentence's end that offers names.
+
+    Examples
+    --------
+    >>> closest(["MSB 1"]), closest(["MSB 1", "MSB 2"])
+    ('the closest name is MSB 1', 'closest names are MSB 1, MSB 2')
+    """
+    return f"the closest name is {names[0]}" if len(names) == 1 else f"closest names are {', '.join(names)}"
 
 
 @lru_cache(maxsize=512)

@@ -15,6 +15,7 @@ from study.workbook.headings import (
     HeadingIndex,
     Match,
     Misfit,
+    closest,
     folded,
     heading_key,
     known_unit,
@@ -162,7 +163,7 @@ def _quantity(
     if limit is None:
         quantities = [spec.quantity for spec in known.values()]
         near = nearest(name, quantities)
-        hint = f"closest are {', '.join(near)}" if near else "take it off this sheet, or start it with #"
+        hint = closest(near) if near else "take it off this sheet, or start it with #"
         found.add(
             "unknown-quantity", table.spec.name, table.cell(number, "quantity"),
             f"quantity {shown(text)} is not known", hint,

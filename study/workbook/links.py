@@ -9,7 +9,7 @@ from typing import Any, Final
 from study.workbook.cells import shown
 from study.workbook.columns import Column
 from study.workbook.faults import Findings
-from study.workbook.headings import folded, nearest
+from study.workbook.headings import closest, folded, nearest
 from study.workbook.sheets import EQUIPMENT_SHEETS
 from study.workbook.tables import Row
 
@@ -166,12 +166,12 @@ def _report(row: Row, column: Column, text: str, names: Names, found: Findings) 
 
 
 def _report_unknown(row: Row, column: Column, text: str, names: Names, found: Findings) -> None:
+    if not found.unread.isdisjoint(column.target):
+        return
     known = names.all(column.target)
     near = names.near(text, column.target)
-    if len(near) == 1:
-        wanted = f"the closest name is {near[0]}"
-    elif near:
-        wanted = f"closest names are {', '.join(near)}"
+    if near:
+        wanted = closest(near)
     elif known:
         wanted = f"give a name from {', '.join(column.target)}"
     else:
@@ -197,9 +197,10 @@ def check_unique(rows: RowsBySheet, found: Findings) -> None:
             first = seen.setdefault(identity, row)
             if first is not row:
                 row.broken.add(unique[0])
+                what = ", ".join(shown(v) for v in map(row.values.get, unique) if v is not None)
                 found.add(
                     "doubled-row", row.sheet, row.cell(unique[0]),
-                    f"{shown(row.name)} stands in row {first.number} already", "keep one of the two rows",
+                    f"{what} stands in row {first.number} already", "keep one of the two rows",
                 )  # fmt: skip
 
 

@@ -174,6 +174,8 @@ def _check_load_sum(plan: Plan) -> None:
     capacities_kw = [_capacity_kw(row) for row in plan.of(*SOURCE_SHEETS)]
     capacity_kw = sum(capacities_kw)
     # A source whose rating is at fault has none, and the sum says nothing.
+    if not plan.found.unread.isdisjoint(SOURCE_SHEETS):
+        return
     if all(capacities_kw) and capacity_kw > 0.0 and sum_kw > LOAD_SUM * capacity_kw:
         largest = max(loads, key=lambda row: float(row.values["installed"] * row.values["p_rated_kw"]))
         said = f"all loads together are {sum_kw:.4g} kW, all sources {capacity_kw:.4g} kW"

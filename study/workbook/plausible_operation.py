@@ -36,7 +36,9 @@ def known_modes(plan: Plan, modes: Sequence[str]) -> list[str]:
 def check_modes(plan: Plan, modes: Sequence[str]) -> None:
     """Report modes in which nothing feeds the plant."""
     rows = [row for row in plan.of("Running") if plan.names.sheet_of(row.name) in SOURCE_SHEETS]
-    # A source that is not listed is a fault of its own, and may be the one that is on.
+    # A source that is not listed or not read is a fault of its own, and may be the one that is on.
+    if not plan.found.unread.isdisjoint(SOURCE_SHEETS):
+        return
     if len({row.name for row in rows}) < len(plan.names.all(SOURCE_SHEETS)):
         return
     for mode in modes:
@@ -54,6 +56,8 @@ def check_interlocks(plan: Plan, modes: Sequence[str]) -> None:
         if not row.has("equipment_a", "equipment_b", "kind"):
             continue
         pair = (row.values["equipment_a"], row.values["equipment_b"])
+        if pair[0] == pair[1]:
+            continue
         for mode in modes:
             if all(_is_on(plan, name, running.get(name), mode) for name in pair):
                 listed = next((running[name] for name in pair if name in running), row)

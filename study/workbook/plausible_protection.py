@@ -31,11 +31,10 @@ def check_protection(plan: Plan) -> None:
 def _in_order(plan: Plan, row: Row, low: str, high: str, *, warning: bool) -> None:
     smaller, larger = row.values.get(low), row.values.get(high)
     if isinstance(smaller, float) and isinstance(larger, float) and smaller > larger:
-        names = row.table.spec.column(low).name, row.table.spec.column(high).name
-        said = f"{row.name}: {names[0]} is {smaller:g}, {names[1]} {larger:g}"
-        plan.report(
-            "rating-order", row, low, said, f"{names[0]} may not be above {names[1]}", warning=warning
-        )
+        first, second = row.table.spec.column(low), row.table.spec.column(high)
+        said = f"{row.name}: {first.name} is {smaller:g} {first.unit}, {second.name} {larger:g} {second.unit}"
+        wanted = f"{first.name} may not be above {second.name}"
+        plan.report("rating-order", row, low, said, wanted, warning=warning)
 
 
 def _check_point(plan: Plan, row: Row) -> None:

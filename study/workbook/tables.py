@@ -175,8 +175,10 @@ def _report_no_header(spec: SheetSpec, rows: Rows, found: Findings) -> None:
     ]
     if not filled:
         if spec.required:
+            found.unread.add(spec.name)
             found.add("missing-sheet", spec.name, "", "the sheet is empty", "fill it in")
         return
+    found.unread.add(spec.name)
     wanted = f"start the row of headings with “{spec.key.name}”"
     for number, column, value in filled[:HEADER_SEARCH_ROWS]:
         if edit_distance(heading_key(str(value)), heading_key(spec.key.name), 2) <= 2:
@@ -219,6 +221,8 @@ def _report_unknown(table: Table, column: int, text: str, found: Findings, not_r
     mode, colon, suffix = text.rpartition(":")
     suffixes = {heading_key(c.suffix) for c in table.spec.mode_columns if c.suffix}
     if colon and heading_key(suffix.partition("[")[0]) in suffixes:
+        if "Modes" in found.unread:
+            return
         found.add(
             "unknown-mode", table.spec.name, address(column, table.header_row),
             f"heading {shown(text)} names the mode {shown(mode)}, which the sheet Modes does not have",

@@ -85,8 +85,9 @@ def _check_two_ends(plan: Plan, row: Row, fields: tuple[str, ...]) -> None:
     for name in fields:
         end = row.values.get(name)
         if end is not None and seen.setdefault(end, name) != name:
-            said = f"{row.name or 'the row'} names {shown(end)} at two ends"
-            plan.report("same-end", row, name, said, "give two different ends")
+            ends = "at two ends" if row.sheet in BRANCH_BOARDS else "twice"
+            said = f"{row.name or 'the row'} names {shown(end)} {ends}"
+            plan.report("same-end", row, name, said, "give two different ones")
 
 
 def _check_cables(plan: Plan) -> None:
@@ -109,7 +110,9 @@ def _check_cables(plan: Plan) -> None:
         allowed = boards_of(plan, other) | other_feeds.get(other, set())
         if allowed and boards[0] not in allowed:
             said = f"{row.name} joins {shown(other)} to {shown(boards[0])}"
-            plan.report("wrong-board", row, field, said, f"{other} is on {' and '.join(sorted(allowed))}")
+            there = " and ".join(sorted(allowed))
+            wanted = f"{other} is on {there}; let the cable end there, or move {other}"
+            plan.report("wrong-board", row, field, said, wanted)
         first = pairs.setdefault((boards[0], other), row)
         if first is not row:
             said = f"{first.name} joins {shown(boards[0])} and {shown(other)} already"
@@ -177,6 +180,8 @@ def _check_reach(plan: Plan) -> None:
             names = (row.values["target"], row.values["normal_supply"], row.values["other_supply"])
             joined.join({board for name in names for board in boards_of(plan, name)})
     sources = list(plan.of(*SOURCE_SHEETS))
+    if not plan.found.unread.isdisjoint(SOURCE_SHEETS):
+        return
     if not sources:
         plan.found.add("no-sources", "Gensets", "", "the plant has no set and no supply", "add what feeds it")
         return

@@ -8,7 +8,7 @@ import pytest
 
 from study.cli import main
 from tests.faulty_workbooks.grids import Grid, check, good_grids, listing, write
-from tests.faulty_workbooks.spoil import Spoil, put, rename
+from tests.faulty_workbooks.spoil import Spoil, call, put, rename, without
 
 
 def near(cell: str, text: str, known: str) -> str:
@@ -105,7 +105,45 @@ def test_a_set_misspelt_on_running_gives_no_false_alarm() -> None:
     found = messages(put("Running", 0, "Equipment", "D1G"), put("Running", 3, "Harbour", "on"))
     assert len(found) == 2
     assert found[0].startswith("Gensets!A5: DG1 has no row on the sheet Running; add a row")
-    assert found[1].startswith("Running!A5: Equipment “D1G” does not exist; closest names are DG1, DG2")
+    assert found[1].startswith("Running!A5: Equipment “D1G” does not exist; the closest name is DG1 [")
+
+
+@pytest.mark.parametrize(
+    ("spoil", "message"),
+    [
+        (without("Boards"), "Boards: there is no sheet Boards; add the sheet [missing-sheet]"),
+        (
+            call("Gensets", "Genset"),
+            "Genset: the sheet’s name is nearly “Gensets”; call it “Gensets”, or start its name with # if it "
+            "is your own [near-miss-sheet]",
+        ),
+        (
+            rename("Gensets", "Genset", "Machine room"),
+            "Gensets: the sheet has no row of headings; start the row of headings with “Genset” "
+            "[missing-header]",
+        ),
+        (
+            lambda grids: grids["Modes"].rows.clear(),
+            "Modes: the sheet has no rows; fill it in [missing-sheet]",
+        ),
+        (
+            lambda grids: grids["Running"].rows.clear(),
+            "Running: the sheet has no rows; fill it in [missing-sheet]",
+        ),
+        (
+            lambda grids: grids.update(Loads=Grid([], [])),
+            "Loads: the sheet is empty; fill it in [missing-sheet]",
+        ),
+    ],
+)
+def test_a_sheet_that_cannot_be_read_is_the_only_fault(spoil: Spoil, message: str) -> None:
+    """What refers to it is right for all that is known."""
+    assert messages(spoil) == [message]
+
+
+def test_what_refers_to_other_sheets_is_still_checked() -> None:
+    found = messages(without("Boards"), put("Demand", 0, "Load", "Pmup"))
+    assert [line.partition(":")[0] for line in found] == ["Boards", "Demand!A5"]
 
 
 def test_faults_of_several_sheets_come_together_and_in_order() -> None:
