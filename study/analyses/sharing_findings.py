@@ -7,7 +7,7 @@ from collections.abc import Iterator, Sequence
 import numpy as np
 
 from study.analyses.sharing_curves import LOADS_PU
-from study.analyses.sharing_group import COMPENSATED, Group
+from study.analyses.sharing_group import COMPENSATED, Group, beyond_rating
 from study.network.batch import BatchSolution
 from study.network.solution import limit_words
 from study.network.sources import Law, Source, Speed
@@ -73,7 +73,7 @@ def _not_scaled(group: Group) -> list[str]:
 
 
 def own_load_findings(group: Group, own: BatchSolution) -> Iterator[str]:
-    """Yield why the sets have no operating point at the mode's own load, where they have none.
+    """Yield why the sets have no operating point at the mode's own load, or are overloaded there.
 
     Parameters
     ----------
@@ -92,6 +92,11 @@ def own_load_findings(group: Group, own: BatchSolution) -> Iterator[str]:
             f"{_listed(group.names)} have no operating point at the mode's own load: {own.reason[0]} "
             "Sharing is judged over the range of load that the sets can carry, at the power factor of the "
             "mode's load."
+        )
+    elif beyond_rating(group, own):
+        yield (
+            f"The mode's own load is beyond the ratings of {_listed(group.names)} together; adjusting "
+            "margins are those of the range of load."
         )
 
 

@@ -160,6 +160,13 @@ def tolerances(group: Group, options: SharingOptions) -> tuple[FloatArray, Float
     return kw, np.full(len(group.sources), kvar)
 
 
+def beyond_rating(group: Group, own: BatchSolution) -> bool:
+    """Return whether the mode's own load, the first row, is more than the sets can carry together."""
+    p, q = own.source_p_kw[0, group.places].sum(), own.source_q_kvar[0, group.places].sum()
+    within = p <= group.p_rated_kw.sum() and np.hypot(p, q) <= group.s_rated_kva.sum()
+    return not (own.solved[0] and within)
+
+
 def kw_off(group: Group, p_kw: FloatArray) -> FloatArray:
     """Return how far each set's kW are from its share, [..., set]; linear in the kW."""
     return _off(p_kw, group.p_rated_kw, group.shares_kw)

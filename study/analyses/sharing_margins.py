@@ -18,7 +18,7 @@ import numpy as np
 
 from study.analyses.sharing_change import trimmed_network
 from study.analyses.sharing_curves import NUDGE, AsSet, Nudge, solve_as_set
-from study.analyses.sharing_group import Group, group_of
+from study.analyses.sharing_group import Group, beyond_rating, group_of
 from study.analyses.sharing_laws import (
     Held,
     droop_holding,
@@ -53,8 +53,9 @@ def adjusting_margins(
 ) -> tuple[AdjustingMargin, ...]:
     """Return the margins of every voltage and speed setting that acts.
 
-    They are taken at both ends of the range of load, where sharing is judged, and at the mode's own load.
-    Where something is broken as set and nothing is as trimmed, they are about the trimmed set-points.
+    They are taken at both ends of the range of load, where sharing is judged, and at the mode's own load if
+    the sets can carry it together: no setting cures an overload. Where something is broken as set and nothing
+    is as trimmed, they are about the trimmed set-points.
 
     Parameters
     ----------
@@ -96,8 +97,6 @@ def _margins(group: Group, as_set: AsSet, options: SharingOptions) -> tuple[tupl
     boards = _Boards.of(group)
     loads = _loads(group, as_set, options, boards)
     broken = next((f"{load.broken}, broken as set" for load in loads if load.broken), "")
-    if not as_set.own.solved[0]:
-        broken = "no operating point at the mode's own load"
     lines = _Lines.of(group, as_set, boards)
     found: dict[str, list[AdjustingMargin]] = {name: [] for names in _SETTINGS.values() for name in names}
     ends = [end for load in loads for end in _ends(load, lines)] if lines.sets else []
@@ -206,7 +205,7 @@ def _loads(group: Group, as_set: AsSet, options: SharingOptions, boards: _Boards
     """Return the ends of the range that have a solution, and the mode's own load."""
     ends = [k for k in (0, len(as_set.scale) - 1) if as_set.solution.solved[k]]
     rows = [(as_set.solution, k, False) for k in ends]
-    rows += [(as_set.own, 0, True)] if as_set.own.solved[0] else []
+    rows += [] if beyond_rating(group, as_set.own) else [(as_set.own, 0, True)]
     loads = []
     for solution, row, own in rows:
         held, words = _held(group, boards, solution, row), limit_words(solution, row)

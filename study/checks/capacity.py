@@ -82,7 +82,7 @@ def _sets(plant: Plant, mode: ModeBalance, island: IslandBalance, limits: Limits
             mode=mode.mode,
             subject=_SUBJECT,
             equipment=_place(mode, island),
-            quantity=f"{word} on the sets on line",
+            quantity=f"loading in {word} of the sets on line",
             value=100.0 * value,
             limit=limits.number("set_loading"),
             unit="%",

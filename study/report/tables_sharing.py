@@ -209,11 +209,19 @@ def trims_table(outcome: StudyOutcome) -> Table:
         text_column("mode", "Mode"),
         text_column("island", "Sets in parallel"),
         text_column("genset", "Set"),
-        percent_column("u_as_set_percent", "No-load voltage as set", most_decimals=2, missing="none"),
-        percent_column("u_trimmed_percent", "No-load voltage as trimmed", most_decimals=2, missing="none"),
+        percent_column(
+            "u_as_set_percent", "No-load voltage as set", most_decimals=2, digits=5, missing="none"
+        ),
+        percent_column(
+            "u_trimmed_percent", "No-load voltage as trimmed", most_decimals=2, digits=5, missing="none"
+        ),
         text_column("u_input_cell", "Cell of the voltage", kind="cell"),
-        percent_column("f_as_set_percent", "No-load frequency as set", most_decimals=2, missing="none"),
-        percent_column("f_trimmed_percent", "No-load frequency as trimmed", most_decimals=2, missing="none"),
+        percent_column(
+            "f_as_set_percent", "No-load frequency as set", most_decimals=2, digits=5, missing="none"
+        ),
+        percent_column(
+            "f_trimmed_percent", "No-load frequency as trimmed", most_decimals=2, digits=5, missing="none"
+        ),
         text_column("f_input_cell", "Cell of the frequency", kind="cell"),
     ]
     rows = [

@@ -341,7 +341,16 @@ def test_an_overloaded_mode_has_its_sharing_judged_over_the_range() -> None:
     np.testing.assert_allclose(over.as_set.q_kvar, within.as_set.q_kvar, atol=0.01)
     np.testing.assert_allclose(over.trimmed.dq_kvar, within.trimmed.dq_kvar, atol=0.01)
     assert over.cos_phi == pytest.approx(within.cos_phi, abs=1e-6)
-    assert {m.low_breaks for m in over.margins} == {"no operating point at the mode's own load"}
+    alike = island(one_bus({}, {}, kw=4000.0))
+    assert {m.low_breaks[:12] for m in alike.margins} == {"kvar sharing", "kW sharing o"}
+
+
+def test_no_setting_cures_an_overload_so_margins_leave_it_aside() -> None:
+    over = island(one_bus({}, {}, kw=1700.0))
+    assert any(
+        x.startswith("The mode's own load is beyond the ratings of G1 and G2 together") for x in over.findings
+    )
+    assert all("sharing" in m.low_breaks + m.high_breaks for m in over.margins)
 
 
 def test_an_overload_of_another_island_hides_nothing() -> None:

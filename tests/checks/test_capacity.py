@@ -55,7 +55,7 @@ def judged(result: BalanceResult, **changes: Any) -> tuple[Verdict, ...]:
 
 def test_load_on_the_sets_on_line() -> None:
     verdicts = judged(a_balance(an_island(kw_loading=1.02, kva_loading=0.96), sets=(a_set(),)))
-    kw, kva = find(verdicts, "all boards", "kW on"), find(verdicts, "all boards", "kVA on")
+    kw, kva = find(verdicts, "all boards", "loading in kW"), find(verdicts, "all boards", "loading in kVA")
     assert (kw.value, kw.limit, kw.unit, kw.sense, kw.status) == (102.0, 100.0, "%", "at most", "exceeds")
     assert kw.margin == pytest.approx(-0.02)
     assert kw.cell == "G1!Rated apparent power"
@@ -66,18 +66,18 @@ def test_load_on_the_sets_on_line() -> None:
 
 def test_several_islands_are_named_by_their_first_board() -> None:
     verdicts = judged(a_balance(an_island(), an_island(island=1, boards=("ESB",))))
-    assert find(verdicts, "MSB", "kW on").status == "within"
-    assert find(verdicts, "ESB", "kW on").status == "within"
+    assert find(verdicts, "MSB", "loading in kW").status == "within"
+    assert find(verdicts, "ESB", "loading in kW").status == "within"
 
 
 def test_an_island_without_capacity_exceeds() -> None:
     verdicts = judged(a_balance(an_island(kw_loading=math.inf, kva_loading=math.inf)))
-    assert find(verdicts, "all boards", "kW on").status == "exceeds"
+    assert find(verdicts, "all boards", "loading in kW").status == "exceeds"
 
 
 def test_in_an_emergency_the_remedy_is_no_main_set() -> None:
     verdicts = judged(a_balance(an_island(kw_loading=1.2), kind="emergency"))
-    assert "G1" not in find(verdicts, "all boards", "kW on").remedy
+    assert "G1" not in find(verdicts, "all boards", "loading in kW").remedy
 
 
 def test_load_without_supply_exceeds() -> None:

@@ -66,7 +66,7 @@ def test_a_mode_without_a_solution_exceeds() -> None:
 def test_kw_and_kva_of_a_set() -> None:
     state = sources(names=("G1",), kw_loading=read_only([0.97]), kva_loading=read_only([1.03]))
     verdicts = judged(a_flow(sources=state))
-    kw, kva = find(verdicts, "G1", "kW of rated"), find(verdicts, "G1", "kVA of rated")
+    kw, kva = find(verdicts, "G1", "loading in kW"), find(verdicts, "G1", "loading in kVA")
     assert (kw.value, kw.limit, kw.unit, kw.status) == (97.0, 100.0, "%", "close")
     assert (kva.value, kva.status) == (103.0, "exceeds")
     assert kva.depends_on_data
@@ -77,14 +77,14 @@ def test_kw_and_kva_of_a_set() -> None:
 def test_a_shore_supply_is_judged_by_current_alone() -> None:
     state = sources(names=("Shore",), kinds=("shore supply",), kva_loading=read_only([1.01]))
     verdicts = judged(a_flow(sources=state))
-    v = find(verdicts, "Shore", "current of rated")
+    v = find(verdicts, "Shore", "loading in current")
     assert (v.status, v.cell) == ("exceeds", "Shore!Rated current")
-    assert quantities(verdicts, "Shore") == {"current of rated, from the load flow"}
+    assert quantities(verdicts, "Shore") == {"loading in current by the load flow"}
 
 
 def test_a_converter_that_charges_is_no_reverse_power() -> None:
     state = sources(names=("B",), kinds=("converter supply",), p_kw=read_only([-300.0]))
-    assert quantities(judged(a_flow(sources=state)), "B") == {"kVA of rated, from the load flow"}
+    assert quantities(judged(a_flow(sources=state)), "B") == {"loading in kVA by the load flow"}
 
 
 def test_a_set_that_is_driven_exceeds() -> None:

@@ -88,15 +88,15 @@ def test_the_largest_distance_over_the_range_decides() -> None:
     verdicts = judged(
         an_island(a_curve([10, -125, 30], [50, -40, 58]), a_curve([5, 0, -6], [8, 0, -9], trimmed=True))
     )
-    kw = find(verdicts, "G1", "kW off its share, as set")
+    kw = find(verdicts, "G1", "distance from its kW share as set")
     assert (kw.subject, kw.mode, kw.value, kw.limit, kw.unit) == ("kW sharing", MODE, 125.0, 120.0, "kW")
     assert (kw.status, kw.sense, kw.cell) == ("exceeds", "at most", "G1!Speed droop")
     assert "ClassNK 2.4.14-3" in kw.basis
     assert "no-load frequencies" in kw.remedy
-    kvar = find(verdicts, "G1", "kvar off its share, as set")
+    kvar = find(verdicts, "G1", "distance from its kvar share as set")
     assert (kvar.value, kvar.limit, kvar.unit, kvar.status) == (58.0, 60.0, "kvar", "close")
     assert kvar.cell == "G1!Voltage droop"
-    trimmed = find(verdicts, "G2", "kvar off its share, trimmed at 75 % load")
+    trimmed = find(verdicts, "G2", "distance from its kvar share trimmed at 75 % load")
     assert (trimmed.value, trimmed.status) == (9.0, "within")
     assert len(verdicts) == 8
 
@@ -111,29 +111,35 @@ def test_the_basis_is_that_of_the_rule_that_governs() -> None:
         q_tolerance_kvar=read_only([50.0, 50.0]),
     )
     verdicts = judged(island)
-    assert find(verdicts, "G1", "kW off its share, as set").basis == LIMITS.basis("kw_sharing_largest")
-    assert find(verdicts, "G2", "kW off its share, as set").basis == LIMITS.basis("kw_sharing_own")
-    assert find(verdicts, "G1", "kvar off its share, as set").basis == LIMITS.basis("kvar_sharing_smallest")
+    assert find(verdicts, "G1", "distance from its kW share as set").basis == LIMITS.basis(
+        "kw_sharing_largest"
+    )
+    assert find(verdicts, "G2", "distance from its kW share as set").basis == LIMITS.basis("kw_sharing_own")
+    assert find(verdicts, "G1", "distance from its kvar share as set").basis == LIMITS.basis(
+        "kvar_sharing_smallest"
+    )
 
 
 def test_an_agreed_tolerance_is_marked() -> None:
     result = SharingResult(islands=(an_island(a_curve([0, 0, 0], [0, 0, 0])),), cases=())
     limits = agreed(**{"kW_sharing,_of_largest_set": 10.0})
-    v = find(judge_sharing(a_plant(), result, limits), "G1", "kW off its share, as set")
+    v = find(judge_sharing(a_plant(), result, limits), "G1", "distance from its kW share as set")
     assert v.basis == "agreed for this project: owner"
 
 
 def test_a_load_without_a_solution_is_no_pass() -> None:
     some = an_island(a_curve([10, 10, 0], [10, 70, 0], solved=(True, True, False)))
     verdicts = judged(some)
-    kw, kvar = (find(verdicts, "G1", f"{unit} off its share, as set") for unit in ("kW", "kvar"))
+    kw, kvar = (find(verdicts, "G1", f"distance from its {unit} share as set") for unit in ("kW", "kvar"))
     assert (kw.status, kw.basis) == ("not assessed", "no operating point at 100 % load")
     assert (kvar.status, kvar.value) == ("exceeds", 70.0)
 
 
 def test_sets_that_could_not_be_trimmed_are_not_assessed() -> None:
     none = a_curve([0, 0, 0], [0, 0, 0], trimmed=True, solved=(False, False, False))
-    v = find(judged(an_island(a_curve([0, 0, 0], [0, 0, 0]), none)), "G1", "kW off its share, trimmed")
+    v = find(
+        judged(an_island(a_curve([0, 0, 0], [0, 0, 0]), none)), "G1", "distance from its kW share trimmed"
+    )
     assert (v.status, v.basis) == ("not assessed", "no operating point at 20, 75, 100 % load")
 
 
@@ -158,7 +164,7 @@ def test_a_set_that_takes_no_part_is_not_judged() -> None:
 def test_a_reversed_droop_circuit_has_its_own_cure() -> None:
     sets = [genset("G1", "MSB", reversed_polarity=True), genset("G2", "MSB")]
     verdicts = judged(an_island(a_curve([0, 0, 0], [0, 700, 0])), gensets=sets)
-    v = find(verdicts, "G1", "kvar off its share, as set")
+    v = find(verdicts, "G1", "distance from its kvar share as set")
     assert v.remedy == "Turn the current transformer of the droop circuit of G1 round."
 
 
@@ -171,13 +177,13 @@ def test_the_cure_names_the_trimmed_set_point_and_its_cell() -> None:
     off = trimmed("G2", u_as_set_pu=1.042, f_trimmed_pu=1.04)
     island = an_island(a_curve([0, 130, 0], [0, 70, 0]), trims=(trimmed("G1"), off))
     verdicts = judged(island)
-    v = find(verdicts, "G1", "kvar off its share, as set")
+    v = find(verdicts, "G1", "distance from its kvar share as set")
     assert v.remedy == "Set the no-load voltage of G2 from 104.20 to 102.00 % (G2!No-load voltage)."
     assert v.cell == "G2!No-load voltage"
-    v = find(verdicts, "G1", "kW off its share, as set")
+    v = find(verdicts, "G1", "distance from its kW share as set")
     assert v.remedy == "Set the no-load frequency of G2 from 103.00 to 104.00 % (G2!No-load frequency)."
     points = [set_point("G2", cell="Set-points!A5", no_load_voltage_pu=1.042)]
-    v = find(judged(island, modes=[mode(set_points=points)]), "G1", "kvar off its share, as set")
+    v = find(judged(island, modes=[mode(set_points=points)]), "G1", "distance from its kvar share as set")
     assert v.cell == "Set-points!A5"
     assert "(Set-points!A5)" in v.remedy
 
@@ -193,7 +199,7 @@ def test_sets_that_trimming_does_not_cure_need_equal_droops() -> None:
             if v.status == "exceeds"
             else ""
         )
-    assert find(judged(island), "G1", "kvar off its share, as set").cell == "G1!Voltage droop"
+    assert find(judged(island), "G1", "distance from its kvar share as set").cell == "G1!Voltage droop"
 
 
 def test_sets_in_parallel_without_a_solution_are_not_assessed() -> None:
