@@ -178,7 +178,7 @@ def heat_table(result: CableProtectionResult, cells: Mapping[str, str]) -> Table
     worst = parts.argmax(axis=1) if parts.shape[1] else np.zeros(len(parts), np.int64)
     rows = [(int(k), int(worst[k])) for k in np.argsort(-parts.max(axis=1, initial=-1.0), kind="stable")]
     return make_table(
-        key="cable_heat",
+        key="cable_fault_range",
         title="Cables in a short circuit, over the whole range of fault currents",
         sheet=SHEET,
         columns=columns,
