@@ -13,6 +13,7 @@ if TYPE_CHECKING:
     import pandas as pd
 
     from study.analyses.balance import BalanceOptions
+    from study.analyses.grading_options import GradingOptions
     from study.analyses.sharing_options import SharingOptions
     from study.checks.limits import Limits
     from study.model.plant import Plant
@@ -76,6 +77,7 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     """
     from study.analyses.balance import load_balance
     from study.analyses.fault_ratings import fault_ratings
+    from study.analyses.grading import grading
     from study.analyses.load_flow import load_flow
     from study.analyses.regulation import voltage_regulation
     from study.analyses.sharing import sharing_study
@@ -105,6 +107,8 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     _tell(progress, "short-circuit currents and fault ratings")
     faults = short_circuit(network, views=[at.view for at in networks])
     ratings = fault_ratings(plant, faults)
+    _tell(progress, "grading of protective devices")
+    graded = grading(plant, faults, flow, balance, _grading_options(limits))
     outcome = StudyOutcome(
         plant=plant,
         balance=balance,
@@ -113,6 +117,7 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
         sharing=sharing,
         short_circuit=faults,
         fault_ratings=ratings,
+        grading=graded,
         verdicts=(),
         limits=tuple(limits.by_key[key] for key in USED_LIMITS),
         methods=METHODS,
@@ -150,6 +155,9 @@ USED_LIMITS = (
     "breaking_rating",
     "earth_fault_standing",
     "earth_fault_detection",
+    "grading_margin",
+    "fault_clearing",
+    "motor_starting_time",
 )
 
 
@@ -157,12 +165,13 @@ def _judged(outcome: StudyOutcome, limits: Limits) -> StudyOutcome:
     from dataclasses import replace
 
     from study.checks.capacity import judge_capacity
+    from study.checks.discrimination import judge_discrimination
     from study.checks.fault_ratings import judge_fault_ratings
     from study.checks.loading import judge_loading
     from study.checks.sharing import judge_regulation, judge_sharing
     from study.checks.voltage import judge_voltage
 
-    plant, ratings = outcome.plant, outcome.fault_ratings
+    plant, ratings, graded = outcome.plant, outcome.fault_ratings, outcome.grading
     return replace(
         outcome,
         verdicts=(
@@ -172,6 +181,7 @@ def _judged(outcome: StudyOutcome, limits: Limits) -> StudyOutcome:
             *judge_sharing(plant, outcome.sharing, limits),
             *judge_regulation(plant, outcome.regulation, limits),
             *(judge_fault_ratings(plant, ratings, limits) if ratings is not None else ()),
+            *(judge_discrimination(plant, graded, limits) if graded is not None else ()),
         ),
     )
 
@@ -185,6 +195,16 @@ def _balance_options(limits: Limits) -> BalanceOptions:
         emergency_hours=limits.number("emergency_duration"),
         emergency_basis=limits.basis("emergency_duration"),
         blackout_start_s=limits.number("emergency_start"),
+    )
+
+
+def _grading_options(limits: Limits) -> GradingOptions:
+    from study.analyses.grading_options import GradingOptions
+
+    return GradingOptions(
+        margin_s=limits.number("grading_margin"),
+        clearing_s=limits.number("fault_clearing"),
+        starting_time_s=limits.number("motor_starting_time"),
     )
 
 

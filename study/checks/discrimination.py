@@ -14,6 +14,8 @@ from study.model.plant import Plant
 from study.results.grading import FULL, NONE, NOT_ASSESSED, PARTIAL, GradingResult, RideThrough
 
 SUBJECT: Final = "grading"
+# A device that is so much later than the one behind it has not picked up with its short-circuit stages.
+_SLOW_S = 1.0
 _BANDS = "bands with all tolerances; "
 _START = "earliest trip at the current of the event"
 
@@ -115,6 +117,7 @@ class _Judged:
         p, names = self.result.pairs, self.result.stations.names
         own, other = int(p.downstream[k]), int(p.upstream[k])
         what = f"discrimination with {names[other]}"
+        range_of = f"it discriminates with {names[other]}"
         basis, cell = self._basis(k, mode), self._cell(k, mode)
         remedy = self.cures.get((names[own], names[other]), self._remedy(k, mode))
         where = self.result.modes[mode]
@@ -126,13 +129,15 @@ class _Judged:
         if up_to > 0.0:
             largest = float(p.largest_a[k, mode])
             return self._verdict(
-                where, own, f"{what} up to", (up_to / 1000.0, largest / 1000.0, "kA"),
+                where, own, f"fault current up to which {range_of}",
+                (up_to / 1000.0, largest / 1000.0, "kA"),
                 basis=basis, cell=cell, remedy=remedy,
             )  # fmt: skip
         if math.isfinite(start):
             least = min(float(p.current_a[k, mode]), start)
             return self._verdict(
-                where, own, f"{what} from", (start / 1000.0, least / 1000.0, "kA"), at_most=True,
+                where, own, f"fault current from which {range_of}",
+                (start / 1000.0, least / 1000.0, "kA"), at_most=True,
                 basis=basis, cell=cell, remedy=remedy,
             )  # fmt: skip
         if math.isinf(margin):
@@ -140,8 +145,9 @@ class _Judged:
             return self._verdict(
                 where, own, alone, (1.0, 0.0, "-"), at_most=True, basis=basis, cell=cell, remedy=remedy
             )
+        released, cleared = float(p.releases_s[k, mode]), float(p.clears_s[k, mode])
         return self._verdict(
-            where, own, f"{what}: time between clearing and release", (margin, needed, "s"),
+            where, own, f"time until {names[other]} releases", (released, cleared + needed, "s"),
             basis=basis, cell=cell, remedy=remedy,
         )  # fmt: skip
 
@@ -162,7 +168,7 @@ class _Judged:
         heading = "Short-time delay"
         if self.result.rules[p.rule[k, mode]].startswith("instantaneous"):
             heading = "Instantaneous current"
-        elif not math.isfinite(p.clears_s[k, mode]):
+        elif not p.margin_s[k, mode] > -_SLOW_S:
             device, heading = stations.set_at[p.downstream[k]], "Short-time current"
         return self.plant.cell_of(device, heading)
 
@@ -174,7 +180,7 @@ class _Judged:
                 f"Set the instantaneous stage of {other} above the fault, or off; or show discrimination by "
                 "the maker's table (sheet Maker discrimination)."
             )
-        if not math.isfinite(p.clears_s[k, mode]) or p.margin_s[k, mode] < -1.0:
+        if not p.margin_s[k, mode] > -_SLOW_S:
             return f"Set the short-time current of {own} below the current of this fault."
         return f"Delay {other} longer, or let {own} open sooner."
 

@@ -8,6 +8,7 @@ from study.report.tables_assumptions import assumption_tables
 from study.report.tables_balance import balance_tables
 from study.report.tables_branches import branch_tables
 from study.report.tables_fault_ratings import fault_rating_tables
+from study.report.tables_grading import grading_tables
 from study.report.tables_load_flow import load_flow_tables
 from study.report.tables_modes import modes_table
 from study.report.tables_regulation import regulation_tables
@@ -46,6 +47,7 @@ def all_tables(outcome: StudyOutcome) -> dict[str, Table]:
         *regulation_tables(outcome),
         *short_circuit_tables(outcome),
         *fault_rating_tables(outcome),
+        *grading_tables(outcome),
         *assumption_tables(outcome),
     )
     found = {table.key: table for table in tables}

@@ -11,6 +11,7 @@ from study.checks.verdict import STATUS_ORDER, Status, Verdict
 from study.model.plant import Plant
 from study.results.balance import BalanceResult
 from study.results.fault_ratings import FaultRatingsResult
+from study.results.grading import GradingResult
 from study.results.load_flow import LoadFlowResult
 from study.results.regulation import RegulationResult
 from study.results.sharing import SharingResult
@@ -27,8 +28,8 @@ class StudyOutcome:
     """Everything that one run found.
 
     ``methods`` holds one sentence for each method, with its standard, clause and range of use; a verdict
-    with an empty mode is about the vessel itself. ``short_circuit`` and ``fault_ratings``
-    are None in a study without them.
+    with an empty mode is about the vessel itself. ``short_circuit``, ``fault_ratings`` and
+    ``grading`` are None in a study without them.
     """
 
     plant: Plant
@@ -42,6 +43,7 @@ class StudyOutcome:
     tool_version: str
     short_circuit: ShortCircuitResult | None = None
     fault_ratings: FaultRatingsResult | None = None
+    grading: GradingResult | None = None
 
     @property
     def modes(self) -> tuple[str, ...]:

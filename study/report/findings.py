@@ -138,7 +138,7 @@ NEVER_CLEARED = "never cleared"
 
 def is_fault(v: Verdict) -> bool:
     """Return whether a verdict is about a fault, where a value without end is a fault that stays."""
-    return v.subject == "fault ratings"
+    return v.subject in ("fault ratings", "grading")
 
 
 def statement(v: Verdict) -> str:
@@ -216,7 +216,12 @@ def remarks(outcome: StudyOutcome) -> tuple[Remark, ...]:
         found.append(Remark(source="Sharing", where=left.mode, text=f"{', '.join(left.sets)}: {left.reason}"))
     for case in outcome.sharing.cases:
         found += _remarks("Maladjusted set", case.mode, [f"Case {case.case}: {case.sentence}"])
+    found += _remarks("Grading", "", _grading(outcome))
     return tuple(dict.fromkeys(found))
+
+
+def _grading(outcome: StudyOutcome) -> tuple[str, ...]:
+    return () if outcome.grading is None else outcome.grading.findings
 
 
 def _remarks(source: str, where: str, texts: Iterable[str]) -> list[Remark]:

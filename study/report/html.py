@@ -23,6 +23,7 @@ _SECTIONS: Final = (
     ("load-balance", "Load balance"),
     ("voltage", "Voltage and sharing"),
     ("short-circuit", "Short-circuit"),
+    ("grading", "Grading"),
     ("comparing", "Comparing modes"),
     ("assumptions", "Assumptions, limits and methods"),
     ("not-covered", "Not covered"),
@@ -41,6 +42,7 @@ _NOT_ON_THE_PAGE = (
     "short_circuit_by_mode",
     "fault_decay",
     "fault_simulation_curves",
+    "setting_list",
 )
 """Tables that the page shows as sentences, grid or figures, or leaves to the result sheets."""
 _ON_SHEET_ONLY: Final[dict[str, tuple[str, ...]]] = {
@@ -141,8 +143,8 @@ def _context(outcome: StudyOutcome, figures: Figures, tables: Mapping[str, Table
 
 def _sections(outcome: StudyOutcome) -> list[tuple[str, str]]:
     """Return key and title of every section that the study fills."""
-    absent = ("short-circuit",) if outcome.short_circuit is None else ()
-    return [(key, title) for key, title in _SECTIONS if key not in absent]
+    given = {"short-circuit": outcome.short_circuit, "grading": outcome.grading}
+    return [(key, title) for key, title in _SECTIONS if given.get(key, outcome) is not None]
 
 
 def _views(tables: Mapping[str, Table], outcome: StudyOutcome) -> dict[str, TableView]:

@@ -64,6 +64,15 @@ METHODS: tuple[str, ...] = (
     "breakers and fuses (IEC 60947-2, IEC 60269, IEC 62271-100, IEC 61439-1, from memory), heat in cables"
     " until the fault is cleared (IEC 60949, adiabatic), against the greatest duty of each mode. A rating"
     " that is not given is never assumed.",
+    "Grading: for every device the fault that it is to clear, from the least at the far end (least sets, hot "
+    "cables, no motors; three-phase, and two-phase behind star-delta transformers) to the largest just "
+    "behind it (change-over sets, motors, cold cables), on the decaying currents through it and through "
+    "every device behind it up to the sources, as the topology of each mode has them. Bands hold all "
+    "tolerances; delays are integrated as IEC 60255-151 has it (from memory). An instantaneous stage that "
+    "may open is ruled by makers' discrimination and let-through tables alone. Partial discrimination is "
+    "found by bisection over the level of the fault.",
+    "What devices must hold: motor starts (typical time where none is given), inrush of transformers, steps "
+    "of the restart after a blackout, each against the near end of the bands.",
     "Verdicts are judged on unrounded values. A verdict depends on data where it would turn within the "
     "load-data tolerance of the sheet Acceptance.",
 )

@@ -33,6 +33,7 @@ SHEETS: Final = (
     "R Sharing",
     "R Short-circuit",
     "R Fault ratings",
+    "R Grading",
     "R Assumptions",
 )
 
