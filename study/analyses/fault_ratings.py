@@ -15,6 +15,7 @@ from study.analyses.fault_ratings_sides import (
     sides_of,
     source_of_devices,
 )
+from study.analyses.fault_ratings_unknown import unknown_sustained
 from study.model.plant import Plant
 from study.results.fault_ratings import FaultRatingsResult
 from study.results.short_circuit import ShortCircuitResult
@@ -50,13 +51,18 @@ def fault_ratings(plant: Plant, short_circuit: ShortCircuitResult) -> FaultRatin
     sides = [sides_of(plant, devices, mode, f_hz) for mode in short_circuit.modes]
     least = [least_faults(plant, devices, mode, short_circuit) for mode in short_circuit.modes]
     rated = RatedDevices(plant, short_circuit)
+    boards = board_ratings(plant, devices, short_circuit)
+    breakers = device_ratings(rated, devices, sides, short_circuit)
+    cables = cable_ratings(plant, sides, least, short_circuit)
+    ties = tie_ratings(plant, short_circuit)
     return FaultRatingsResult(
         modes=tuple(mode.mode for mode in short_circuit.modes),
-        boards=board_ratings(plant, devices, short_circuit),
-        devices=device_ratings(rated, devices, sides, short_circuit),
+        boards=boards,
+        devices=breakers,
         clearing=clearing_ratings(plant, least, short_circuit),
-        cables=cable_ratings(plant, sides, least, short_circuit),
-        ties=tie_ratings(plant, short_circuit),
+        cables=cables,
+        ties=ties,
         resistors=resistor_ratings(plant, short_circuit),
+        unknown=unknown_sustained(plant, short_circuit, least, (boards, breakers, cables, ties)),
         earth=earth_fault_rows(plant, short_circuit),
     )

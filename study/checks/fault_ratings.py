@@ -14,7 +14,7 @@ from study.checks.fault_ratings_verdict import rating_verdict
 from study.checks.limits import Limits
 from study.checks.verdict import Verdict
 from study.model.plant import Plant
-from study.results.fault_ratings import BoardRatings, CableRatings, FaultRatingsResult, TieRatings
+from study.results.fault_ratings import BoardRatings, CableRatings, FaultRatingsResult
 
 _LOW_PEAK = "IEC 61439-1 cl. 5.3.4, rated peak withstand current, from memory"
 _LOW_SHORT = "IEC 61439-1 cl. 5.3.5, rated short-time withstand current, from memory"
@@ -60,9 +60,15 @@ def _boards(plant: Plant, result: FaultRatingsResult, mode: int, limits: Limits)
         rated = float(boards.rated_short_time_ka[k])
         cell = "Short-time duration" if math.isnan(boards.rated_duration_s[k]) else "Short-time withstand"
         remedy = _needs("short-time withstand Icw", float(boards.enough_short_time_ka[k]), "kA")
-        for quantity, value, heading in (
-            ("short-time withstand Icw against the heat of the decaying current", boards.heat_ka, cell),
-            ("short-time withstand Icw against Iac at T/2", boards.half_ka, "Short-time withstand"),
+        unknown = result.unknown.sets[mode] if result.unknown.boards[k, mode] else ""
+        for quantity, value, heading, rests_on in (
+            (
+                "short-time withstand Icw against the heat of the decaying current",
+                boards.heat_ka,
+                cell,
+                unknown,
+            ),
+            ("short-time withstand Icw against Iac at T/2", boards.half_ka, "Short-time withstand", ""),
         ):
             yield rating_verdict(
                 mode=result.modes[mode],
@@ -75,6 +81,7 @@ def _boards(plant: Plant, result: FaultRatingsResult, mode: int, limits: Limits)
                 basis=basis,
                 cell=plant.cell_of(name, heading),
                 remedy=remedy,
+                unknown=rests_on,
             )
 
 
@@ -123,6 +130,7 @@ def _cables(plant: Plant, result: FaultRatingsResult, mode: int, limits: Limits)
                 basis=f"{_CABLE}, k {cables.k[k]:.0f}",
                 cell=plant.cell_of(cables.names[k], "Section"),
                 remedy=_section(cables, int(k)),
+                unknown=result.unknown.sets[mode] if result.unknown.far_cables[k, mode] else "",
             )
 
 
@@ -155,6 +163,7 @@ def _near(plant: Plant, result: FaultRatingsResult, at: tuple[int, int], limits:
         basis=f"{_CABLE}, k {cables.k[k]:.0f}{how}",
         cell=cell,
         remedy=_section(cables, k),
+        unknown=result.unknown.sets[at[1]] if result.unknown.cables[at] else "",
     )
 
 
@@ -166,14 +175,15 @@ def _section(cables: CableRatings, k: int) -> str:
 
 
 def _ties(plant: Plant, result: FaultRatingsResult, mode: int, limits: Limits) -> Iterator[Verdict]:
-    ties = result.ties
-    for k in np.flatnonzero(ties.live[:, mode]):
+    for k in np.flatnonzero(result.ties.live[:, mode]):
         for peak in (True, False):
-            yield _tie(plant, result.modes[mode], ties, (int(k), mode, peak), limits)
+            yield _tie(plant, result, (int(k), mode, peak), limits)
 
 
-def _tie(plant: Plant, mode: str, ties: TieRatings, at: tuple[int, int, bool], limits: Limits) -> Verdict:
+def _tie(plant: Plant, result: FaultRatingsResult, at: tuple[int, int, bool], limits: Limits) -> Verdict:
     k, m, peak = at
+    ties, mode = result.ties, result.modes[m]
+    unknown = result.unknown.sets[m] if result.unknown.ties[k, m] and not peak else ""
     board = ties.rated_by[k] if peak else ties.rated_heat_by[k]
     rated = ties.rated_peak_ka if peak else ties.rated_short_time_ka
     return rating_verdict(
@@ -189,4 +199,5 @@ def _tie(plant: Plant, mode: str, ties: TieRatings, at: tuple[int, int, bool], l
         basis=_TIE,
         cell=plant.cell_of(board, "Peak withstand" if peak else "Short-time withstand"),
         remedy="Take a tie and busbars of a higher rating, or part the sections in this mode.",
+        unknown=unknown,
     )

@@ -8,11 +8,13 @@ from dataclasses import replace
 
 import numpy as np
 
-from study.checks.fault_ratings_verdict import rating_verdict
+from study.checks.fault_ratings_verdict import not_assessed, rating_verdict
 from study.checks.limits import Limits
 from study.checks.verdict import Verdict
 from study.model.plant import Plant
 from study.results.fault_ratings import ClearingRatings, FaultRatingsResult
+
+FOLLOWED_S = 7200.0  # how long a fault is followed where no end of its current is known
 
 _HEADING = {
     "instantaneous": "Instantaneous current",
@@ -50,7 +52,9 @@ def judge_clearing(plant: Plant, result: FaultRatingsResult, mode: int, limits: 
         if clearing.clears[at] and clearing.by[at] >= 0:
             yield _cleared(plant, clearing, at, result.modes[mode], limits)
         elif not clearing.clears[at]:
-            yield _not_cleared(plant, clearing, at, result.modes[mode], limits)
+            found = _not_cleared(plant, clearing, at, result.modes[mode], limits)
+            rests = result.unknown.clearing[at]
+            yield not_assessed(found, result.unknown.sets[mode]) if rests else found
 
 
 def _cleared(
@@ -78,27 +82,30 @@ def _not_cleared(
 ) -> Verdict:
     name, stage = clearing.names[at[0]], clearing.stages[clearing.stage[at]]
     due, holds = float(clearing.due_s[at]), float(clearing.holds_s[at])
-    late = math.isfinite(due) and math.isfinite(holds)
     seen, first = float(clearing.least_a[at]), float(clearing.first_a[at])
-    if late:
-        what = f"it needs {due:.3g} s, the sources keep the current up for {holds:.3g} s"
-    elif seen < float(clearing.pick_up_a[at]):
+    pick_up = float(clearing.pick_up_a[at])
+    too_small = seen < pick_up and not (math.isfinite(due) and math.isfinite(holds))
+    kept_up = holds if math.isfinite(holds) else FOLLOWED_S
+    if too_small:
         what = (
-            f"the current falls from {first:.0f} A to {seen:.0f} A, below the {clearing.pick_up_a[at]:.0f} A"
-            f" at which the {stage} is sure to act"
+            f"the current falls from {first:.0f} A to {seen:.0f} A, below the {pick_up:.0f} A at which the "
+            f"{stage} is sure to act"
         )
+    elif math.isfinite(due):
+        what = f"it needs {due:.3g} s, the sources keep the current up for {kept_up:.3g} s"
     else:
-        what = f"the current of {seen:.0f} A does not last until the {stage} acts"
+        lasts = "it is kept up" if math.isfinite(holds) else "it is followed"
+        what = f"the {stage} does not act on {seen:.0f} A within the {kept_up:.3g} s that {lasts}"
     verdict = rating_verdict(
         mode=mode,
         equipment=name,
-        quantity="does not clear: time against that for which the current is kept up"
-        if late
-        else "does not clear: least fault at the far end against the pick-up",
-        value=due if late else seen,
-        limit=holds if late else float(clearing.pick_up_a[at]),
-        unit="s" if late else "A",
-        sense="at most" if late else "at least",
+        quantity="does not clear: least fault at the far end against the pick-up"
+        if too_small
+        else "does not clear: time against that for which the current is kept up",
+        value=seen if too_small else due,
+        limit=pick_up if too_small else kept_up,
+        unit="A" if too_small else "s",
+        sense="at least" if too_small else "at most",
         limits=limits,
         basis=f"{clearing.kinds[at[0]][at[1]]} fault; no device nearer to the sources clears it either",
         cell=plant.cell_of(name, _HEADING.get(stage, "")),

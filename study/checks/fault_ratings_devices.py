@@ -43,6 +43,7 @@ def judge_devices(plant: Plant, result: FaultRatingsResult, mode: int, limits: L
     """
     devices = result.devices
     for k in np.flatnonzero(devices.live[:, mode]):
+        unknown = result.unknown.sets[mode] if result.unknown.devices[k, mode] else ""
         judged = _Judged(plant, devices, (int(k), mode), result.modes[mode], limits)
         match devices.rules[k]:
             case "fuse":
@@ -50,11 +51,11 @@ def judge_devices(plant: Plant, result: FaultRatingsResult, mode: int, limits: L
             case "low-voltage breaker":
                 yield judged.making(_MAKING, _RATIO)
                 yield judged.breaking()
-                yield from judged.carrying(_SHORT_TIME, _CLOSED)
+                yield from judged.carrying(_SHORT_TIME, _CLOSED, unknown)
             case "medium-voltage breaker":
                 yield judged.making(_HIGH + " cl. 4.103", _HIGH + " cl. 4.103")
                 yield from judged.parting()
-                yield from judged.carrying(_HIGH + " cl. 4.5", _HIGH + " cl. 4.6")
+                yield from judged.carrying(_HIGH + " cl. 4.5", _HIGH + " cl. 4.6", unknown)
 
 
 class _Judged:
@@ -79,6 +80,7 @@ class _Judged:
         heading: str,
         remedy: str,
         detail: str = "",
+        unknown: str = "",
     ) -> Verdict:
         return rating_verdict(
             mode=self.mode,
@@ -91,6 +93,7 @@ class _Judged:
             basis=basis + _MEMORY + detail + self.side,
             cell=self.plant.cell_of(self.name, heading),
             remedy=remedy,
+            unknown=unknown,
         )
 
     def _enough(self) -> str:
@@ -190,7 +193,7 @@ class _Judged:
             remedy="Let the breaker open later, or take one that is proven for delayed current zeros.",
         )
 
-    def carrying(self, short_time: str, closed: str) -> Iterator[Verdict]:
+    def carrying(self, short_time: str, closed: str, unknown: str) -> Iterator[Verdict]:
         """Judge what a breaker that opens with a delay carries closed until then."""
         d, k = self.devices, self.at[0]
         if not d.delayed[self.at]:
@@ -207,6 +210,7 @@ class _Judged:
             detail=f"; {over}; {stage}, {seconds:.3g} s",
             heading="Icw duration" if missing else "Icw",
             remedy="Shorten the delay, or take a breaker of a higher Icw.",
+            unknown=unknown,
         )
         yield self._verdict(
             "peak while it stays closed against n x Icw",

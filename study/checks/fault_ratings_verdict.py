@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import replace
 
 from study.checks.limits import Limits
@@ -24,6 +25,7 @@ def rating_verdict(
     nominal: float = 1.0,
     cell: str = "",
     remedy: str = "",
+    unknown: str = "",
 ) -> Verdict:
     """Judge a fault duty against a rating.
 
@@ -36,6 +38,8 @@ def rating_verdict(
     nominal : float
         The value without the tolerance of the reactances over the value with it: the verdict depends on the
         data where one exceeds and the other does not.
+    unknown : str
+        Sets on whose sustained current the value rests without its being given: it is then not assessed.
 
     Returns
     -------
@@ -57,7 +61,34 @@ def rating_verdict(
         cell=cell,
         remedy=remedy,
     )
+    if unknown:
+        return not_assessed(verdict, unknown)
     at_nominal = judge(value * nominal, limit, sense, margin)[0]
     if (at_nominal == "exceeds") == (verdict.status == "exceeds"):
         return verdict
     return replace(verdict, depends_on_data=True)
+
+
+def not_assessed(verdict: Verdict, sets: str) -> Verdict:
+    """Return a verdict as not assessed: its value rests on a sustained current that is not given.
+
+    Parameters
+    ----------
+    verdict : Verdict
+        As it would be with what stands in for it.
+    sets : str
+        Names of the sets.
+
+    Returns
+    -------
+    Verdict
+        With the reason in its basis.
+    """
+    return replace(
+        verdict,
+        status="not assessed",
+        margin=math.nan,
+        depends_on_data=False,
+        basis=f"{verdict.basis}; rests on the sustained short-circuit current of {sets}, which is not given",
+        remedy="",
+    )

@@ -17,7 +17,8 @@ from study.network.machines import largest_field, machine_of, set_field
 class Holding:
     """Sustained current at the terminals in multiples of rated, and why.
 
-    ``known`` is False where the workbook does not give it and the constant field of rated load stands in.
+    ``known`` is False where the workbook does not give it: the ceiling of the field then stands in for the
+    maximum, the field of no load for the minimum, each on the safe side of what a regulator does.
     ``lasts_s`` is inf where no end is known and 0 where nothing is kept. ``field_limit`` is the e.m.f. at
     rated voltage, per unit, of a set that feeds its field from its own terminals; 0 for all else.
     """
@@ -35,7 +36,7 @@ _NOTHING = Holding(
 
 
 def holding_of(
-    item: Genset | SynchronousMotor | ShoreSupply | ConverterSupply | Load | None, kind: str
+    item: Genset | SynchronousMotor | ShoreSupply | ConverterSupply | Load | None, kind: str, *, maximum: bool
 ) -> Holding:
     """Return what a source keeps up.
 
@@ -45,6 +46,8 @@ def holding_of(
         The source's record.
     kind : str
         As in the results.
+    maximum : bool
+        Of the maximum case, else of the minimum.
 
     Returns
     -------
@@ -52,7 +55,7 @@ def holding_of(
         Multiples of its own rated current.
     """
     if isinstance(item, Genset):
-        return _of_genset(item)
+        return _of_genset(item, maximum=maximum)
     if isinstance(item, ConverterSupply):
         lasts = item.short_circuit_duration_s
         words = f"limits its current to {item.short_circuit_current or 0.0:g} times rated"
@@ -71,7 +74,7 @@ def holding_of(
     return _NOTHING
 
 
-def _of_genset(g: Genset) -> Holding:
+def _of_genset(g: Genset, *, maximum: bool) -> Holding:
     supply = Excitation(g.excitation.field_supply)
     machine = machine_of(g)
     given = g.excitation.sustained_current
@@ -90,9 +93,13 @@ def _of_genset(g: Genset) -> Holding:
         current = set_field(g, g.regulator.no_load_voltage_pu).constant_pu * per_field
         words, known = f"constant field, {current:.2f} times rated (Eq0/Xd)", True
     elif given is None:
-        current = rated_load_field(g.cos_phi_rated, machine) * per_field
+        current, field = per_field, "the field of no load"
+        if maximum:
+            current = g.excitation.ceiling * rated_load_field(g.cos_phi_rated, machine) * per_field
+            field = f"a field of {g.excitation.ceiling:g} times that of rated load"
         words, known = (
-            f"sustained current not given: {current:.2f} times rated, the field of rated load, stands in",
+            f"sustained current not given: {field} stands in, {current:.2f} times rated; what hangs on it "
+            "after 0.1 s is not assessed",
             False,
         )
     else:

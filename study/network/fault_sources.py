@@ -96,7 +96,7 @@ def fault_sources(
     voltage = np.array(
         [s.voltage if s.voltage else before[k] for k, s in enumerate(supplies)], float
     ).reshape(-1)
-    holdings = tuple(holding_of(s.item, s.kind) for s in supplies)
+    holdings = tuple(holding_of(s.item, s.kind, maximum=options.maximum) for s in supplies)
     asynchronous = np.array([s.kind in _ASYNCHRONOUS for s in supplies], bool)
     table = np.zeros((len(supplies), len(_ROW)))
     for k in np.flatnonzero(~asynchronous).tolist():

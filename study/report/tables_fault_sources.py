@@ -124,7 +124,7 @@ def _rounded(value: float) -> float:
 def _sustained_words(at: FaultSources, s: int) -> str:
     if at.sustained_known[s]:
         return "by data"
-    return "assumed: constant field" if at.kinds[s] in _SYNCHRONOUS else ""
+    return "not given: a bound stands in" if at.kinds[s] in _SYNCHRONOUS else ""
 
 
 def _worked_source(rows: Sequence[tuple[Value, ...]]) -> Worked | None:

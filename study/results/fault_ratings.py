@@ -222,6 +222,24 @@ class EarthFaultRow:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class UnknownSustained:
+    """What rests on the sustained current of sets of which the workbook does not give it, [piece, mode].
+
+    ``sets`` [mode] names them. True where the piece is fed by them for longer than 0.1 s: ``boards`` and
+    ``ties`` over the duration of their short-time withstand, ``devices`` and ``cables`` until they are
+    cleared, ``clearing`` and ``far_cables`` for the least fault at the far end.
+    """
+
+    sets: tuple[str, ...]
+    boards: BoolArray
+    devices: BoolArray
+    clearing: BoolArray
+    cables: BoolArray
+    far_cables: BoolArray
+    ties: BoolArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class FaultRatingsResult:
     """Everything that must survive a fault; the last axis of all arrays is ``modes``."""
 
@@ -232,4 +250,5 @@ class FaultRatingsResult:
     cables: CableRatings
     ties: TieRatings
     resistors: ResistorRatings
+    unknown: UnknownSustained
     earth: tuple[EarthFaultRow, ...]

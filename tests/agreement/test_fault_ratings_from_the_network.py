@@ -21,7 +21,7 @@ from study.analyses.short_circuit import short_circuit
 from study.analyses.short_circuit_options import ShortCircuitOptions
 from study.checks.fault_ratings import judge_fault_ratings
 from study.checks.limits import limits_in_force
-from study.checks.verdict import Verdict
+from study.checks.verdict import Verdict, judge
 from study.model.plant import Plant
 from study.network.network import build_network
 from study.results.short_circuit import ShortCircuitResult
@@ -126,3 +126,66 @@ def test_the_same_set_with_a_permanent_magnet_exciter_clears() -> None:
     # holds three times 1283 A
     assert verdict.status == "within"
     assert verdict.value == pytest.approx(3.0 * 1283.0, rel=0.1)
+
+
+def judged(plant: Plant) -> dict[tuple[str, str], Verdict]:
+    result = short_circuit(build_network(plant), ALONE)
+    verdicts = judge_fault_ratings(plant, fault_ratings(plant, result), limits_in_force(()))
+    return {(v.equipment, v.quantity): v for v in verdicts}
+
+
+def two_boards(**excitation: object) -> Plant:
+    """A set, a feeder breaker with a short-time delay of 0.4 s and one that opens at once."""
+    strong = {"icu_ka": 50.0, "ics_ka": 50.0, "icw_ka": 42.0, "icw_duration_s": 1.0}
+    rated = {"peak_withstand_ka": 63.0, "short_time_withstand_ka": 30.0, "short_time_duration_s": 1.0}
+    return plants.plant(
+        boards=[plants.board("MSB", 450.0, **rated), plants.board("DB", 450.0, **rated)],
+        gensets=[plants.genset("G1", "MSB", **excitation)],
+        cables=[
+            plants.cable("C1", "MSB", "DB", runs=3),
+            plants.cable("C2", "DB", "Pump", section_mm2=35.0, resistance_ohm_per_km=0.52),
+        ],
+        loads=[plants.load("Pump", "DB")],
+        devices=[
+            plants.device("Q1", "C1", end="MSB", short_time_a=2500.0, short_time_delay_s=0.4, **strong),
+            plants.device("Q2", "C2", end="DB", instantaneous_a=500.0, **strong),
+        ],
+    )
+
+
+HEAT = "short-time withstand Icw against the heat of the decaying current"
+AT_ONCE = "short-time withstand Icw against Iac at T/2"
+CARRIES = "short-time withstand Icw against the heat until it opens"
+NEAR = "heat of a fault at the near end until it is cleared"
+
+
+def test_what_rests_on_an_unknown_sustained_current_is_not_assessed() -> None:
+    """Only what lasts longer than 0.1 s needs it: all else is judged as with the maker's figure."""
+    known, unknown = judged(two_boards()), judged(two_boards(sustained_current=None))
+    assert {v.status for v in known.values()} == {"within"}
+    for at in (("MSB", HEAT), ("DB", HEAT), ("Q1", CARRIES), ("C1", NEAR)):
+        assert unknown[at].status == "not assessed"
+        assert "sustained short-circuit current of G1, which is not given" in unknown[at].basis
+    for at in (("MSB", AT_ONCE), ("C2", NEAR), ("MSB", "peak withstand Ipk against the greatest peak")):
+        assert unknown[at].status == "within"
+    # At no load its field keeps 0.5 times rated, too little for 2500 A after 0.4 s; the truth is not known.
+    found = [v for (name, q), v in unknown.items() if name == "Q1" and "does not clear" in q]
+    assert [v.status for v in found] == ["not assessed"]
+    assert "which is not given" in found[0].basis
+
+
+def test_what_does_not_clear_never_shows_a_value_that_meets_its_limit() -> None:
+    """Converters that block, a set that collapses, a delay beyond the duration of the sustained current."""
+    seen = []
+    for changes in (
+        {"sustained_duration_s": 0.2},
+        {"field_supply": "shunt"},
+        {"sustained_current": 1.0},
+        {"sustained_current": 1.9, "sustained_duration_s": 0.42},
+    ):
+        for v in judged(two_boards(**changes)).values():
+            if v.quantity.startswith("does not clear"):
+                seen.append(v)
+                assert v.status == "exceeds"
+                assert judge(v.value, v.limit, v.sense, 0.0)[0] == "exceeds", v
+    assert len(seen) >= 3

@@ -188,9 +188,15 @@ def test_a_shunt_set_cannot_clear_at_its_board_but_holds_a_distant_fault():
 def test_sustained_current_is_known_or_said_to_be_unknown():
     known = study(one_board(a_set("G1"))).modes[0]
     assert known.maximum.sustained_duty_a[0] == pytest.approx(1.3 * RATED_A)
-    unknown = study(one_board(a_set("G1", sustained_current=None))).modes[0]
+    # A round rotor without saturation: field at rated load |1 + (ra + jxd) I|, at no load 1, over Zd.
+    machine = {"x_q_pu": 2.2, "saturation_10": 0.0, "saturation_12": 0.0, "ceiling": 2.0}
+    unknown = study(one_board(a_set("G1", sustained_current=None, **machine))).modes[0]
     assert not unknown.maximum.sources.sustained_known[0]
     assert any("sustained current not given" in f for f in unknown.findings)
+    zd = complex(0.01, 2.2)
+    rated_load_field = abs(1.0 + zd * (0.8 - 0.6j))
+    assert unknown.minimum.sustained_reach_a[0] == pytest.approx(RATED_A / abs(zd))
+    assert unknown.maximum.sustained_duty_a[0] == pytest.approx(2.0 * rated_load_field / abs(zd) * RATED_A)
 
 
 def test_reach_never_exceeds_duty():

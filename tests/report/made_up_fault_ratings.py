@@ -19,6 +19,7 @@ from study.results.fault_ratings import (
     FaultRatingsResult,
     ResistorRatings,
     TieRatings,
+    UnknownSustained,
 )
 
 NAN = math.nan
@@ -51,6 +52,7 @@ def fault_ratings(plant: Plant) -> FaultRatingsResult:
             live=read_only(np.ones((1, len(modes))), bool),
             lasts_s=read_only(np.full((1, len(modes)), np.inf)),
         ),
+        unknown=_unknown(plant, len(modes)),
         earth=tuple(
             EarthFaultRow(
                 mode=mode,
@@ -66,6 +68,21 @@ def fault_ratings(plant: Plant) -> FaultRatingsResult:
             )
             for mode in modes
         ),
+    )
+
+
+def _unknown(plant: Plant, modes: int) -> UnknownSustained:
+    boards, devices, cables, ties = (len(x) for x in (plant.boards, RULES, plant.cables, plant.ties))
+    counts = {
+        "boards": boards,
+        "devices": devices,
+        "clearing": devices,
+        "cables": cables,
+        "far_cables": cables,
+        "ties": ties,
+    }
+    return UnknownSustained(
+        sets=("",) * modes, **{k: read_only(np.zeros((n, modes)), bool) for k, n in counts.items()}
     )
 
 

@@ -300,7 +300,7 @@ def test_sources_equal_in_several_modes_stand_once() -> None:
 def test_assumed_sustained_current_is_said() -> None:
     table = TABLES["fault_sources"]
     said = dict(zip(table.column("source"), table.column("sustained_data"), strict=True))
-    assert (said["DG1"], said["DG2"]) == ("assumed: constant field", "by data")
+    assert (said["DG1"], said["DG2"]) == ("not given: a bound stands in", "by data")
     assert said["small motors of MSB 1"] == ""
 
 
