@@ -11,11 +11,10 @@ import openpyxl
 import pytest
 
 from study.cli import main
-from study.pipeline import DEMOS, result_frames, run_study
-from study.report.content import StudyOutcome
+from study.pipeline import DEMOS, result_frames
 from study.workbook.package import validate_package
+from tests.demos.studies import WORKBOOKS, studied
 
-WORKBOOKS = Path(__file__).parents[2] / "workbooks"
 EXPECTED_STATUS = {"workboat": 0, "service-vessel": 1}
 
 
@@ -78,7 +77,7 @@ def test_out_leaves_the_workbook_alone(tmp_path: Path) -> None:
 
 
 def test_the_planted_faults_of_the_service_vessel_are_found() -> None:
-    found = run_study(WORKBOOKS / "service-vessel.xlsx")
+    found = studied("service-vessel")
     bad = {(v.mode, v.subject, v.equipment) for v in found.verdicts if v.status == "exceeds"}
     assert ("Cargo", "capacity", "all boards") in bad
     assert ("Manoeuvring", "kvar sharing", "DG2") in bad
@@ -86,7 +85,7 @@ def test_the_planted_faults_of_the_service_vessel_are_found() -> None:
 
 
 def test_tables_are_frames_for_notebooks() -> None:
-    frames = result_frames(run_study(WORKBOOKS / "workboat.xlsx"))
+    frames = result_frames(studied("workboat"))
     assert {"verdicts", "load_balance", "boards"} <= frames.keys()
     assert all(len(frame.columns) for frame in frames.values())
 
@@ -94,8 +93,7 @@ def test_tables_are_frames_for_notebooks() -> None:
 @pytest.mark.parametrize("name", DEMOS)
 def test_the_two_solvers_agree_on_every_mode(name: str) -> None:
     """pandapower's solution against our own: the acceptance of the engine is 1e-6 pu in every run."""
-    found: StudyOutcome = run_study(WORKBOOKS / f"{name}.xlsx")
-    for mode in found.load_flow.modes:
+    for mode in studied(name).load_flow.modes:
         assert mode.solved, mode.reason
         assert mode.agreement.largest_du_pu < 1e-8, mode.mode
 

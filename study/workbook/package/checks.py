@@ -146,11 +146,12 @@ def _check_relations(read: _Read) -> Iterator[str]:
         for relation in relations:
             if not relation.external and part_key(relation.target) not in keys:
                 yield f"{where}: {relation.id} leads to {relation.target}, which is not there"
+    office = f"{{{OFFICE}}}"
     for part, root in read.roots.items():
         ids = {r.id for r in read.graph.get(part, ())}
         for node in root.walk():
             for name, value in node.attributes.items():
-                if name.startswith(f"{{{OFFICE}}}") and value and value not in ids:
+                if name.startswith(office) and value and value not in ids:
                     yield f"{part}: {node.name} refers to the relation {value}, which is not there"
 
 
@@ -237,9 +238,10 @@ def _check_differential(read: _Read) -> Iterator[str]:
     styles = read.related("styles")
     container = styles.find("dxfs") if styles else None
     size = len(container.children) if container else 0
+    space = read.book.space
     for part, root in read.roots.items():
         for node in root.walk():
-            if node.space != read.book.space:
+            if node.space != space:
                 continue
             for name, value in node.attributes.items():
                 if name.lower().endswith("dxfid") and whole_number(node, name) >= size:
