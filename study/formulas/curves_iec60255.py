@@ -63,7 +63,9 @@ def inverse_time_s(multiple: ArrayLike, k: ArrayLike, c: ArrayLike, alpha: Array
     m = np.minimum(np.asarray(multiple, float), FLAT_ABOVE)
     above = m > 1.0
     safe = np.where(above, m, 2.0)
-    return np.where(above, np.asarray(k) / (safe ** np.asarray(alpha) - 1.0) + np.asarray(c), np.inf)
+    # expm1 keeps M^alpha - 1 above 0 for every M above 1.
+    rise = np.expm1(np.asarray(alpha) * np.log(safe))
+    return np.where(above, np.asarray(k) / rise + np.asarray(c), np.inf)
 
 
 def reset_time_s(multiple: ArrayLike, reset_s: ArrayLike) -> FloatArray:

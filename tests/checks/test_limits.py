@@ -39,6 +39,22 @@ def an_item(quantity: str, limit: float | str, unit: str = "%", basis: str = "")
         ("emergency_start", 45.0),
         # IACS UR E24 Rev.1
         ("thd", 8.0),
+        # IEC 60364-4-43 cl. 433.1 and SOLAS II-1/30, both from memory
+        ("cable_overload_trip", 145.0),
+        ("steering_overload", 200.0),
+        # ClassNK 2 to 15 % and about 10 s; ABS 4-8-2/9.11 115 % of full load
+        ("reverse_power_least", 2.0),
+        ("reverse_power_most", 15.0),
+        ("reverse_power_delay", 10.0),
+        ("set_long_time", 115.0),
+        # class practice and IACS UR E13, from memory
+        ("undervoltage_least", 35.0),
+        ("undervoltage_most", 70.0),
+        ("set_overload_time", 120.0),
+        # examination texts: 95 to 110 % of rated current, up to 15 s
+        ("preferential_least", 95.0),
+        ("preferential_most", 110.0),
+        ("preferential_delay", 15.0),
     ],
 )
 def test_a_built_in_limit_is_that_of_its_source(key: str, number: float) -> None:
