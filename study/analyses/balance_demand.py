@@ -3,21 +3,19 @@
 The rules of counting, first match wins:
 
 1. the factor of the Simultaneity sheet for the load's service, duty and mode;
-2. in an emergency mode, and for loads essential to safety on emergency boards or fed from them: 1, since
-   SOLAS II-1/42 and 43 want services that may have to run together counted together (from memory);
+2. in an emergency mode 1, since SOLAS II-1/42 and 43 want the services that the emergency source may have to
+   feed together counted together (from memory);
 3. continuous duty 1; intermittent duty one over the diversity of Acceptance; occasional duty 0 (common
    practice, no source: what runs now and then is covered by the spare of the sets).
 """
 
 from __future__ import annotations
 
-from collections.abc import Iterable
 from dataclasses import dataclass
 
 import numpy as np
 
 from study.formulas.demand import part_load_efficiency, part_load_power_factor, reactive_power_kvar
-from study.model.branches import Cable, Reactor
 from study.model.loads import Load
 from study.model.modes import Mode
 from study.model.plant import Plant
@@ -26,7 +24,6 @@ from study.results.arrays import BoolArray, FloatArray, IntArray, read_only
 from study.results.balance import DUTIES, ConsumerDemand
 
 INTERMITTENT = DUTIES.index("intermittent")
-_STOPS = {"main", "propulsion"}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -44,7 +41,6 @@ class LoadTable:
     behind_converter: BoolArray
     trip_stage: IntArray
     essential: BoolArray
-    undiversified: BoolArray
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -65,7 +61,6 @@ def load_table(plant: Plant) -> LoadTable:
     loads = plant.loads
     services = tuple(dict.fromkeys(load.service for load in loads))
     number = {name: i for i, name in enumerate(services)}
-    emergency = boards_fed_from_emergency(plant)
     return LoadTable(
         names=tuple(load.name for load in loads),
         services=services,
@@ -78,9 +73,6 @@ def load_table(plant: Plant) -> LoadTable:
         behind_converter=np.array([behind_converter(load) for load in loads], dtype=bool),
         trip_stage=np.array([load.trip_stage for load in loads], dtype=np.int64),
         essential=np.array([load.essential_to != "none" for load in loads], dtype=bool),
-        undiversified=np.array(
-            [load.essential_to == "safety" and load.board in emergency for load in loads], dtype=bool
-        ),
     )
 
 
@@ -93,30 +85,6 @@ def behind_converter(load: Load) -> bool:
 def board_cos_phi(load: Load) -> float:
     """Return the power factor at rated output as the board sees it."""
     return load.cos_phi if load.converter is None else load.converter.displacement_cos_phi
-
-
-def boards_fed_from_emergency(plant: Plant) -> frozenset[str]:
-    """Return the emergency boards and what hangs below them.
-
-    Followed along transformers, reactors and cables from supply end to far end, never through a main or
-    propulsion board, and not across ties (the interconnector to the main board is one).
-    """
-    roles = {board.name: board.role for board in plant.boards}
-    down: dict[str, set[str]] = {}
-    runs: Iterable[Cable | Reactor] = (*plant.cables, *plant.reactors)
-    ends = [(t.from_board, t.to_board) for t in plant.transformers]
-    ends += [(c.from_end, c.to_end) if isinstance(c, Cable) else (c.from_board, c.to_board) for c in runs]
-    ends += [(t.primary_board, t.secondary_board) for t in plant.three_winding]
-    ends += [(t.primary_board, t.tertiary_board) for t in plant.three_winding]
-    for upper, lower in ends:
-        down.setdefault(upper, set()).add(lower)
-    reached = {name for name, role in roles.items() if role == "emergency"}
-    front = set(reached)
-    while front:
-        below = {low for name in front for low in down.get(name, ())}
-        front = {b for b in below if b in roles and roles[b] not in _STOPS} - reached
-        reached |= front
-    return frozenset(reached)
 
 
 def asked_of(plant: Plant, table: LoadTable) -> Asked:
@@ -221,7 +189,7 @@ def counting_factors(
     """
     by_duty = np.array([1.0, 1.0 / diversity, 0.0])
     emergency = np.array([mode.kind == "emergency" for mode in modes], dtype=bool)[:, None]
-    factor = np.where(emergency | table.undiversified, 1.0, by_duty[duty])
+    factor = np.where(emergency, 1.0, by_duty[duty])
     services = {name: i for i, name in enumerate(table.services)}
     for row, mode in enumerate(modes):
         for (service, kind), value in mode.simultaneity.items():

@@ -6,7 +6,7 @@ METHODS: tuple[str, ...] = (
     "Load balance: continuous load, plus intermittent load over its diversity or by its service's "
     "simultaneity factor, by mode; occasional load counts with nothing. The alternative takes the largest"
     " intermittent consumer and those sure to run, instead of the diversity (ClassNK-type electric load "
-    "analysis). Emergency modes, and what is essential to safety on emergency boards, count in full "
+    "analysis). In an emergency mode everything in use counts in full "
     "(SOLAS II-1/42 and 43, from memory). Losses of cables and transformers are not in the balance; the "
     "load flow has them.",
     "Motors at part load: efficiency from the split of losses at which three-quarter and rated load have "

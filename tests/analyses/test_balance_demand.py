@@ -172,9 +172,9 @@ def emergency_plant(kind: str, **mode_changes: Any) -> Any:
     )
 
 
-def test_safety_loads_fed_from_the_emergency_board_have_no_diversity() -> None:
-    # SOLAS II-1/42, 43 (from memory): services that may run together are counted together.
-    assert balance(emergency_plant("sea")).demand.factor[0].tolist() == [0.5, 1.0, 1.0, 0.5, 0.5]
+def test_on_the_main_source_loads_of_the_emergency_board_count_by_their_duty() -> None:
+    # SOLAS II-1/42, 43 (from memory) ask for services counted together of the emergency source alone.
+    assert balance(emergency_plant("sea")).demand.factor[0].tolist() == [0.5] * 5
 
 
 def test_emergency_mode_has_no_diversity_and_counts_what_is_occasional() -> None:
