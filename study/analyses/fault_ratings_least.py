@@ -145,8 +145,18 @@ def clearing_ratings(plant: Plant, least: list[LeastFaults], result: ShortCircui
         clearing_s=read_only(table["clearing_s"]),
         due_s=read_only(table["due_s"]),
         holds_s=read_only(table["holds_s"]),
+        one_set_a=read_only(_one_set_a(least, result)),
         kinds=tuple(tuple(kind[k] for kind in kinds) for k in range(len(plant.devices))),
     )
+
+
+def _one_set_a(least: list[LeastFaults], result: ShortCircuitResult) -> FloatArray:
+    """Return the least current with one supply in each island, [device, mode]."""
+    modes = [
+        {"a": np.where(x.judged & mode.one_set.fewer, mode.one_set.device_least_a, np.nan)}
+        for x, mode in zip(least, result.modes, strict=True)
+    ]
+    return Stacked(modes, len(least[0].judged) if least else 0)["a"]
 
 
 def _columns(least: LeastFaults) -> dict[str, NDArray[np.generic]]:

@@ -1,18 +1,18 @@
 """Short-circuit currents at every place, in every mode: IEC 61363-1 and IEC 60909 side by side.
 
 The maximum case counts every set that may run in parallel, change-over included, and every motor in use; the
-minimum the sets that the mode runs, and no motor.
+minimum the sets that the mode runs, and no motor; beside it, one supply in each island.
 """
 
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
 from study.analyses.short_circuit_case import SolvedCase, solve_case
-from study.analyses.short_circuit_devices import DevicePlaces, device_faults, device_places
+from study.analyses.short_circuit_devices import DevicePlaces, device_faults, device_places, least_far_a
 from study.analyses.short_circuit_findings import (
     earth_findings,
     earth_systems,
@@ -20,10 +20,11 @@ from study.analyses.short_circuit_findings import (
     quick_rows,
 )
 from study.analyses.short_circuit_general import GeneralCase, compared, general_case
+from study.analyses.short_circuit_one_set import one_set_case, one_set_left
 from study.analyses.short_circuit_options import ShortCircuitOptions
 from study.analyses.short_circuit_simulation import known_bias, simulated_faults
-from study.model.modes import Mode, State
-from study.network.fault_network import FaultNetwork, FaultPlant, fault_network, fault_plant, with_tolerance
+from study.model.modes import Mode
+from study.network.fault_network import FaultPlant, fault_network, fault_plant, with_tolerance
 from study.network.fault_supplies import MAXIMUM, MINIMUM, NOMINAL
 from study.network.network import Network
 from study.network.solver_faults import library_currents
@@ -79,7 +80,7 @@ def short_circuit(
     return ShortCircuitResult(
         places=places_of(static),
         f_hz=network.plant.project.f_rated_hz,
-        modes=tuple(_mode(s, g, places, options) for s, g in zip(solved, general, strict=True)),
+        modes=tuple(_mode(s, g, places) for s, g in zip(solved, general, strict=True)),
         simulated=simulated_faults(network),
         bias=known_bias(),
     )
@@ -140,32 +141,12 @@ def solve_mode(
     """
     high = fault_network(static, mode, MAXIMUM, None if mode.changeover_sets else view)
     low = fault_network(static, mode, MINIMUM, view if mode.changeover_sets else high.view)
-    if options.one_set:
-        low = fault_network(static, _one_set(mode, low), MINIMUM)
     return SolvedMode(
         mode=mode,
         maximum=solve_case(high, with_tolerance(high, NOMINAL), options),
         minimum=solve_case(low, None, options),
         general=(general_case(high, options), general_case(low, options)),
     )
-
-
-def _one_set(mode: Mode, low: FaultNetwork) -> Mode:
-    """Return the mode with one supply left in each island: that which holds least, then gives least."""
-    off: dict[str, State] = {}
-    s = low.sources
-    for i in range(len(low.view.islands)):
-        here = [k for k in range(len(s.supplies)) if s.island[k] == i]
-        least = sorted(
-            here,
-            key=lambda k: (
-                s.bare.current.sustained_a[k],
-                s.bare.current.subtransient_a[k],
-                s.supplies[k].name,
-            ),
-        )
-        off |= {s.supplies[k].name: "off" for k in least[1:]}
-    return replace(mode, states={**mode.states, **off})
 
 
 def _compared(
@@ -191,23 +172,25 @@ def _mode(
     s: SolvedMode,
     general: tuple[Iec60909Case, Iec60909Case],
     places: DevicePlaces,
-    options: ShortCircuitOptions,
 ) -> ModeShortCircuit:
     plant = s.maximum.net.plant.network.plant
     live = bool(np.any(s.maximum.case.live))
+    alone = one_set_case(s.minimum)
+    least = least_far_a(plant.devices, places, alone)
     return ModeShortCircuit(
         mode=s.mode.name,
         solved=live,
         reason="" if live else "no source whose short-circuit current is known feeds any board.",
         maximum=s.maximum.case,
         minimum=s.minimum.case,
+        one_set=one_set_left(alone, s.minimum, least),
         iec60909_maximum=general[0],
         iec60909_minimum=general[1],
         devices=device_faults(plant.devices, places, s.maximum, s.minimum, plant.project.f_rated_hz),
         earth=earth_systems(s.maximum.net),
         quick=quick_rows(s.maximum.net),
         findings=(
-            *mode_findings(plant, s.mode, s.maximum, s.minimum, general, one_set=options.one_set),
+            *mode_findings(plant, s.mode, s.maximum, s.minimum, general),
             *earth_findings(s.maximum.net),
         ),
     )

@@ -32,20 +32,26 @@ TAKEN_OVER = "taken over from motors"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class SolvedCase:
-    """A case with what the studies of devices and of IEC 60909 need of it.
+class CaseCurrents:
+    """Currents of a case, as the study of devices needs them.
 
-    ``two_phase`` and ``earth`` are exponentials [place, source] in A like ``parts``; ``share`` [end, source].
+    ``parts``, ``two_phase`` and ``earth`` are exponentials [place, source] in A; ``share`` [end, source].
     """
 
     net: FaultNetwork
-    stages: Stages
     rows: EndRows
     share: FloatArray
     parts: FaultCurrent
     two_phase: FaultCurrent
     earth: FaultCurrent | None
     ends_s: FloatArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class SolvedCase(CaseCurrents):
+    """A case with its stages and its result."""
+
+    stages: Stages
     case: FaultCase
 
 

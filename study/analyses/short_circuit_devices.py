@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from study.analyses.short_circuit_case import SolvedCase
+from study.analyses.short_circuit_case import CaseCurrents, SolvedCase
 from study.analyses.short_circuit_ends import EndRows
 from study.formulas.fault_current import SQRT2, FaultCurrent
 from study.model.protection import Device
@@ -19,6 +19,7 @@ from study.results.short_circuit import DeviceFaults
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
 
+_LAST_S = 10.0  # for devices whose settings give no time: the end of the time grid
 _KINDS = ("three-phase", "two-phase", "line-earth")
 
 
@@ -162,6 +163,26 @@ def device_faults(
     )
 
 
+def least_far_a(devices: tuple[Device, ...], places: DevicePlaces, case: CaseCurrents) -> FloatArray:
+    """Return the least fault at the far end of each device when its own setting has cleared it.
+
+    Parameters
+    ----------
+    devices : tuple of Device
+        In workbook order.
+    places : DevicePlaces
+        Where they sit.
+    case : CaseCurrents
+        A minimum case.
+
+    Returns
+    -------
+    ndarray, shape (device,)
+        [A]; NaN where nothing feeds it.
+    """
+    return _least(places, case, np.array([_operating_s(d) for d in devices], float))[1]
+
+
 def _rows(rows: EndRows, places: DevicePlaces, far: bool = False) -> IntArray:
     at = {(int(b), int(n)): k for k, (b, n) in enumerate(zip(rows.branch, rows.node, strict=True))}
     node = places.far_node if far else places.node
@@ -226,7 +247,7 @@ def _operating_s(d: Device) -> float:
 
 
 def _least(
-    places: DevicePlaces, minimum: SolvedCase, operating: FloatArray
+    places: DevicePlaces, minimum: CaseCurrents, operating: FloatArray
 ) -> tuple[IntArray, FloatArray, IntArray]:
     """Return the far place, the least current there through the device, and of which fault."""
     far_place = minimum.net.plant.place_of_node[places.far_node]
@@ -239,7 +260,7 @@ def _least(
         share = np.where(backwards[:, None], minimum.share[near], share)
         far_place = np.where(backwards, minimum.net.plant.place_of_node[places.node], far_place)
     share = np.where((places.branch < 0)[:, None], 1.0, share)
-    time = np.where(np.isfinite(operating), operating, minimum.case.time_s[-1])
+    time = np.where(np.isfinite(operating), operating, _LAST_S)
     faults = [minimum.parts, minimum.two_phase] + ([minimum.earth] if minimum.earth is not None else [])
     currents = np.array([_at(f, minimum.ends_s, far_place, share, time)[0] for f in faults])
     initial = np.array([(f.subtransient_a[far_place] * share).sum(axis=1) for f in faults])

@@ -124,8 +124,6 @@ def mode_findings(
     maximum: SolvedCase,
     minimum: SolvedCase,
     general: tuple[Iec60909Case, ...],
-    *,
-    one_set: bool,
 ) -> tuple[str, ...]:
     """Return what was found about a mode, in sentences.
 
@@ -139,8 +137,6 @@ def mode_findings(
         Its two cases.
     general : tuple of Iec60909Case
         IEC 60909 of both.
-    one_set : bool
-        The minimum has one supply in each island.
 
     Returns
     -------
@@ -150,7 +146,7 @@ def mode_findings(
     return (
         *_clearing(minimum),
         *_sustained(maximum),
-        *_counted(plant, mode, maximum, minimum, one_set),
+        *_counted(plant, mode, maximum),
         *_scope(maximum),
         *_agreement(general),
         *dict.fromkeys((*maximum.net.findings, *minimum.net.findings)),
@@ -187,7 +183,7 @@ def _sustained(maximum: SolvedCase) -> list[str]:
     ]
 
 
-def _counted(plant: Plant, mode: Mode, maximum: SolvedCase, minimum: SolvedCase, one_set: bool) -> list[str]:
+def _counted(plant: Plant, mode: Mode, maximum: SolvedCase) -> list[str]:
     out = []
     more = [n for n in mode.changeover_sets if not mode.is_on(n) and n in maximum.net.view.sources]
     if more:
@@ -202,9 +198,6 @@ def _counted(plant: Plant, mode: Mode, maximum: SolvedCase, minimum: SolvedCase,
             f"{', '.join(left)}: on standby and not counted. Name them as sets that may run together in "
             "change-over if they may run in parallel with the others."
         )
-    if one_set:
-        names = ", ".join(s.name for s in minimum.net.sources.supplies)
-        out.append(f"The minimum is that of one supply in each island: {names}.")
     return out
 
 

@@ -23,7 +23,23 @@ SHORT_CIRCUIT_BASIS: Final[tuple[tuple[str, str], ...]] = (
         "Minimum case",
         "The sets that the mode runs, no motors, no load before the fault, reactances at the high end of "
         "their tolerance, conductors at the temperature at the end of a fault. The least of the "
-        "three-phase, the two-phase and, where the neutral is earthed, the line-to-earth fault.",
+        "three-phase, the two-phase and, where the neutral is earthed, the line-to-earth fault. The fewest "
+        "sets of a mode are taken as those that it runs: give a mode of its own to every smaller number of "
+        "sets that the vessel is operated with.",
+    ),
+    (
+        "One set left",
+        "Beside the minimum: what the single supply gives that keeps up least (then gives least) of those "
+        "that the mode runs in an island, as after the loss of all others. It is shown for boards and "
+        "devices and judges nothing, since the vessel is not operated like that.",
+    ),
+    (
+        "Sustained current",
+        "That of the maker, by kind of excitation and for as long as the workbook says. Where it is not "
+        "given, the ceiling of the field stands in for the maximum and the field of no load for the minimum; "
+        "what hangs on it for longer than 0.1 s is not assessed. A set that feeds its field from its own "
+        "terminals keeps up nothing at its board. Where motors share a feeder with sets, these give more as "
+        "the motors die away: a row of its own, taken over from motors, nothing at first and rising.",
     ),
     (
         "Addition of sources",

@@ -53,6 +53,7 @@ def governing_table(outcome: StudyOutcome, result: ShortCircuitResult) -> Table:
         ka_column("iac_highest_ka", "Greatest Iac(T/2)"),
         ka_column("ip_lowest_ka", "Smallest ip"),
         ka_column("least_ka", LEAST_HEADING, 3, digits=3),
+        ka_column("least_one_set_ka", f"{LEAST_HEADING}, one set left", 3, digits=3),
         text_column("dead_in", "Dead in"),
         cell_column(),
     ]
@@ -69,7 +70,8 @@ def governing_table(outcome: StudyOutcome, result: ShortCircuitResult) -> Table:
         notes=(
             "Maximum case, IEC 61363-1; main, emergency and propulsion boards first. ip is the peak at "
             "half a cycle, the greatest peak that over all times and angles. Least fault: minimum case, "
-            "the least of three-phase, two-phase and line-to-earth fault at 0.1 s.",
+            "the least of three-phase, two-phase and line-to-earth fault at 0.1 s; one set left: the same "
+            "after the loss of all supplies of the island but the one that gives least.",
         ),
         worked=_worked_peak(result, order),
     )
@@ -83,13 +85,14 @@ def _governing_row(
     dead = mode_words([m.mode for m in modes if not m.maximum.live[place]], [m.mode for m in result.modes])
     governing = governing_mode(result, place)
     if governing is None:
-        return (name, role.get(name, ""), "none", "", "", u_nominal_v, *(None,) * 9, dead, cell)
+        return (name, role.get(name, ""), "none", "", "", u_nominal_v, *(None,) * 10, dead, cell)
     names = [m.mode for m in modes]
     case = governing.maximum
     ip = [float(m.maximum.ip_a[place]) for m in modes]
     top, low = greatest(names, ip), least(names, ip)
     iac = greatest(names, [float(m.maximum.iac_half_a[place]) for m in modes])
     minimum = least(names, [least_a(m.minimum, place) for m in modes])
+    alone = least(names, [float(m.one_set.least_100ms_a[place]) for m in modes])
     return (
         name,
         role.get(name, ""),
@@ -102,7 +105,7 @@ def _governing_row(
             for v in (case.ik_initial_a, case.iac_half_a, case.idc_half_a, case.ip_a, case.peak_a)
         ),
         float(case.cos_phi[place]),
-        *(ka(found.value) if found else math.nan for found in (iac, low, minimum)),
+        *(ka(found.value) if found else math.nan for found in (iac, low, minimum, alone)),
         dead,
         cell,
     )
@@ -187,7 +190,9 @@ def boards_table(outcome: StudyOutcome, result: ShortCircuitResult) -> Table:
         notes=(
             "Bolted three-phase fault, IEC 61363-1. D.c. is idc / (√2 Iac) at that time after the start "
             "of the fault; above 100 % the current has no zero. Main, emergency and propulsion boards "
-            "first, then by falling peak.",
+            "first, then by falling peak. Behind transformers and long cables the high sustained current may "
+            "be above I''k: the regulators bring the sets back to rated voltage, and only the impedance up "
+            "to the fault is left.",
         ),
         worked=_worked_board(outcome, result, partings),
         group_by=("mode", "case"),

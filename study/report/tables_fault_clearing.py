@@ -54,6 +54,7 @@ def clearing_table(ratings: FaultRatingsResult, cells: Mapping[str, str]) -> Tab
         Column(key="clearing_s", heading="Cleared in", unit="s", most_decimals=3, infinite=NO_END),
         Column(key="due_s", heading="Stage is due at", unit="s", most_decimals=3, infinite="never",
                missing="unknown"),
+        Column(key="one_set_a", heading="With one set left", unit="A", most_decimals=0),
         Column(key="holds_s", heading="Current is kept up for", unit="s", most_decimals=2,
                infinite="no end known", missing="unknown"),
         cell_column(),
@@ -71,7 +72,9 @@ def clearing_table(ratings: FaultRatingsResult, cells: Mapping[str, str]) -> Tab
         notes=(
             "Minimum case. A current that collapses, as of a set that takes its field from its own "
             "terminals, may start a delayed stage and be gone before it opens. What does not clear stands "
-            "first.",
+            "first. With one set left: the least current when the device's setting for high currents has "
+            "cleared, after the loss of all supplies of the island but the one that gives least; below the "
+            "pick-up, the device does not see its least fault until sets are back. It judges nothing.",
         ),
         worked=_worked_clearing(c, rows),
         group_by=("result",),
@@ -112,6 +115,7 @@ def _clearing_row(
         c.stages[int(c.stage[i, m])],
         float(c.clearing_s[i, m]),
         float(c.due_s[i, m]),
+        shown(math.isfinite(c.one_set_a[i, m]), c.one_set_a[i, m]),
         float(c.holds_s[i, m]),
         cells.get(c.names[i], ""),
     )

@@ -115,7 +115,8 @@ class ClearingRatings:
     tolerance, ``stage`` which it is (numbers ``stages``), ``clearing_s`` the time, inf for never; where no
     device clears, all are those of the stage that should, and ``due_s`` is when it would if the sources kept
     the current up for longer than ``holds_s``. ``first_a`` is the least current at the start of
-    the fault: it shows one that collapses. ``judged`` False: dead, or nothing known.
+    the fault: it shows one that collapses. ``judged`` False: dead, or nothing known. ``one_set_a`` is the
+    least current at the far end with one supply left in each island (NaN where the mode runs no more).
     """
 
     names: tuple[str, ...]
@@ -130,6 +131,7 @@ class ClearingRatings:
     clearing_s: FloatArray
     due_s: FloatArray
     holds_s: FloatArray
+    one_set_a: FloatArray
     kinds: tuple[tuple[str, ...], ...]
 
 

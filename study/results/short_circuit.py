@@ -295,12 +295,30 @@ class QuickRow:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class OneSetLeft:
+    """The minimum with one supply in each island: that which keeps up least, then gives least.
+
+    ``supplies`` names them; ``fewer`` is False where the mode runs no more than that. [place], A, NaN where
+    dead: ``ik_initial_a`` I''k, ``least_100ms_a`` and ``least_1s_a`` the least of three-phase, two-phase and
+    line-earth fault. ``device_least_a`` [device] is as `DeviceFaults.least_a`.
+    """
+
+    supplies: tuple[str, ...]
+    fewer: bool
+    ik_initial_a: FloatArray
+    least_100ms_a: FloatArray
+    least_1s_a: FloatArray
+    device_least_a: FloatArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class ModeShortCircuit:
     """One mode; where ``solved`` is False ``reason`` says why, and every place is dead in all tables.
 
     ``maximum``: every set that may run in parallel, change-over included, and every motor in use, cold
     cables, reactances at the low end of their tolerance, loaded before the fault. ``minimum``: the sets that
-    the mode runs, no motors, hot cables, reactances at the high end, no load before the fault.
+    the mode runs, no motors, hot cables, reactances at the high end, no load before the fault; ``one_set``
+    the same with one supply in each island.
     """
 
     mode: str
@@ -308,6 +326,7 @@ class ModeShortCircuit:
     reason: str
     maximum: FaultCase
     minimum: FaultCase
+    one_set: OneSetLeft
     iec60909_maximum: Iec60909Case
     iec60909_minimum: Iec60909Case
     devices: DeviceFaults

@@ -24,6 +24,7 @@ from study.results.short_circuit import (
     FaultSources,
     Iec60909Case,
     ModeShortCircuit,
+    OneSetLeft,
     Places,
     QuickRow,
     ShortCircuitResult,
@@ -235,6 +236,7 @@ def mode(
         reason="",
         maximum=maximum,
         minimum=least,
+        one_set=one_set_left(where, devices),
         iec60909_maximum=general_case(maximum, 1.05),
         iec60909_minimum=general_case(least, 0.95),
         devices=device_faults(where, feeds, devices, maximum, f_hz),
@@ -288,6 +290,19 @@ def general_case(case: FaultCase, c: float) -> Iec60909Case:
         pandapower_ik_2ph_a=read_only(0.866 * initial),
         largest_difference=0.0,
         comparison="made up",
+    )
+
+
+def one_set_left(where: Places, rows: Sequence[DeviceRow]) -> OneSetLeft:
+    """Return the case with one supply in each island, of which nothing is known."""
+    none = read_only(np.full(len(where.names), np.nan))
+    return OneSetLeft(
+        supplies=(),
+        fewer=False,
+        ik_initial_a=none,
+        least_100ms_a=none,
+        least_1s_a=none,
+        device_least_a=read_only(np.full(len(rows), np.nan)),
     )
 
 

@@ -376,11 +376,25 @@ def test_change_over_sets_count_for_the_maximum_alone():
     assert any("G2: on standby and not counted" in f for f in apart.findings)
 
 
-def test_one_set_may_be_asked_for_in_the_minimum():
-    plant = one_board(a_set("G1"), a_set("G2", s_rated_kva=500.0))
-    mode = study(plant, replace(OWN, one_set=True)).modes[0]
-    assert mode.minimum.sources.names == ("G2",)
-    assert mode.maximum.sources.names == ("G1", "G2")
+def test_one_set_left_is_the_mode_with_that_set_alone():
+    """The smaller set holds less; everything is as in a mode in which it runs alone."""
+    feeder = {
+        "cables": [plants.cable("C1", "MSB", "DB")],
+        "boards": [plants.board("MSB", 450.0), plants.board("DB", 450.0)],
+        "devices": [plants.device("Q1", "C1", end="MSB", short_time_a=900.0, short_time_delay_s=0.4)],
+    }
+    both = plants.plant(gensets=[a_set("G1"), a_set("G2", s_rated_kva=500.0)], **feeder)
+    alone = plants.plant(gensets=[a_set("G2", s_rated_kva=500.0)], **feeder)
+    mode, other = study(both).modes[0], study(alone).modes[0]
+    assert mode.maximum.sources.names == mode.minimum.sources.names == ("G1", "G2")
+    assert (mode.one_set.supplies, mode.one_set.fewer) == (("G2",), True)
+    assert mode.one_set.ik_initial_a == pytest.approx(other.minimum.ik_initial_a)
+    at = np.argmin(np.abs(other.minimum.time_s - 0.1))
+    assert mode.one_set.least_100ms_a == pytest.approx(other.minimum.least_a[:, at])
+    assert mode.one_set.device_least_a == pytest.approx(other.devices.least_a)
+    assert mode.one_set.device_least_a[0] < 0.6 * mode.devices.least_a[0]
+    assert not other.one_set.fewer
+    assert other.one_set.device_least_a == pytest.approx(other.devices.least_a)
 
 
 def test_a_closed_tie_makes_one_busbar_and_carries_the_far_side():

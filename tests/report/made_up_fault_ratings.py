@@ -238,6 +238,7 @@ def _clearing(plant: Plant, modes: int) -> ClearingRatings:
         clearing_s=read_only(np.where(clears, 0.39, np.inf) * dark),
         due_s=read_only(np.where(clears, 0.39, 0.6) * dark),
         holds_s=read_only(np.where(clears, 10.0, 0.2) * dark),
+        one_set_a=read_only(_rows([1200.0, 700.0, NAN, NAN, NAN], modes) * dark),
         kinds=(("two-phase",) * modes,) * n,
     )
 

@@ -24,6 +24,7 @@ from study.results.short_circuit import (
     Iec60909Case,
     KnownBias,
     ModeShortCircuit,
+    OneSetLeft,
     Places,
     QuickRow,
     ShortCircuitResult,
@@ -156,6 +157,14 @@ def _mode(plant: Plant, where: Places, m: int) -> ModeShortCircuit:
         reason="",
         maximum=maximum,
         minimum=minimum,
+        one_set=OneSetLeft(
+            supplies=("DG1",),
+            fewer=True,
+            ik_initial_a=read_only(0.5 * minimum.ik_initial_a),
+            least_100ms_a=read_only(0.5 * minimum.least_a[:, 6]),
+            least_1s_a=read_only(0.4 * minimum.least_a[:, 9]),
+            device_least_a=none,
+        ),
         iec60909_maximum=_general(maximum, 1.05),
         iec60909_minimum=_general(minimum, 0.95),
         devices=DeviceFaults(
