@@ -5,10 +5,11 @@ from __future__ import annotations
 import math
 import re
 import zipfile
+from functools import cache
 from io import BytesIO
 
 import pytest
-from openpyxl import load_workbook
+from openpyxl import Workbook, load_workbook
 from openpyxl.worksheet.worksheet import Worksheet
 
 from study.issues import StudyError
@@ -21,14 +22,22 @@ from tests.report import made_up
 
 OUTCOME = made_up.outcome()
 TABLES = all_tables(OUTCOME)
-DATA = result_workbook(OUTCOME)
-BOOK = load_workbook(BytesIO(DATA))
 _FORMAT = re.compile(r"0(?:\.(0+))?")
+
+
+@cache
+def _data() -> bytes:
+    return result_workbook(OUTCOME)
+
+
+@cache
+def _book() -> Workbook:
+    return load_workbook(BytesIO(_data()))
 
 
 def _start(table: Table) -> tuple[Worksheet, int]:
     """Return the sheet of a table and the row of its first row of data."""
-    sheet = BOOK[table.sheet]
+    sheet = _book()[table.sheet]
     titles = [c.title for c in table.columns]
     for row in range(1, sheet.max_row + 1):
         if [sheet.cell(row, c + 1).value for c in range(len(titles))] == titles:
@@ -42,8 +51,8 @@ def _start(table: Table) -> tuple[Worksheet, int]:
 
 def test_every_sheet_has_the_prefix_of_results() -> None:
     used = {table.sheet for table in TABLES.values()}
-    assert BOOK.sheetnames == [name for name in SHEETS if name in used]
-    assert all(name.startswith("R ") for name in BOOK.sheetnames)
+    assert _book().sheetnames == [name for name in SHEETS if name in used]
+    assert all(name.startswith("R ") for name in _book().sheetnames)
 
 
 @pytest.mark.parametrize("table", TABLES.values(), ids=TABLES.keys())
@@ -87,10 +96,10 @@ def test_number_formats_have_few_decimals_but_where_a_limit_is_near() -> None:
 
 
 def test_text_of_cells_is_never_a_formula() -> None:
-    for sheet in BOOK.worksheets:
+    for sheet in _book().worksheets:
         for row in sheet.iter_rows():
             assert all(cell.data_type != "f" for cell in row)
-    names = {cell.value for cell in BOOK["R Load balance"]["A"]}
+    names = {cell.value for cell in _book()["R Load balance"]["A"]}
     assert {"=1+1 sounder", made_up.SCRIPT} <= names
 
 
@@ -107,7 +116,7 @@ def test_cells_beyond_the_most_links_keep_their_text(monkeypatch: pytest.MonkeyP
     """A sheet takes 65 530 links (Excel specifications and limits, from memory)."""
     monkeypatch.setattr(excel_sheet, "MOST_LINKS", 3)
     sheet = load_workbook(BytesIO(result_workbook(OUTCOME)))["R Load flow"]
-    whole = BOOK["R Load flow"]
+    whole = _book()["R Load flow"]
     assert [c.value for row in sheet.iter_rows() for c in row] == [
         c.value for row in whole.iter_rows() for c in row
     ]
@@ -130,21 +139,21 @@ def test_link_to_a_sheet_with_a_blank_or_a_quote_in_its_name() -> None:
 
 
 def test_status_words_are_coloured_by_condition() -> None:
-    rules = [rule.text for formats in BOOK["R Summary"].conditional_formatting for rule in formats.rules]
+    rules = [rule.text for formats in _book()["R Summary"].conditional_formatting for rule in formats.rules]
     assert {"within", "close", "exceeds", "not assessed"} <= set(rules)
 
 
 def test_charts_stand_beside_loading_voltages_and_sharing() -> None:
-    names = zipfile.ZipFile(BytesIO(DATA)).namelist()
+    names = zipfile.ZipFile(BytesIO(_data())).namelist()
     assert sum(name.startswith("xl/charts/chart") for name in names) >= 10
-    sheets = {name: len(BOOK[name]._charts) for name in BOOK.sheetnames}  # openpyxl reads charts back
+    sheets = {name: len(_book()[name]._charts) for name in _book().sheetnames}  # openpyxl reads charts back
     assert sheets["R Capacity"] >= 3
     assert sheets["R Load flow"] >= 1
     assert sheets["R Sharing"] >= 8
 
 
 def test_charts_point_at_numbers_of_their_own_sheet() -> None:
-    archive = zipfile.ZipFile(BytesIO(DATA))
+    archive = zipfile.ZipFile(BytesIO(_data()))
     for name in archive.namelist():
         if name.startswith("xl/charts/chart"):
             text = archive.read(name).decode()
@@ -153,12 +162,12 @@ def test_charts_point_at_numbers_of_their_own_sheet() -> None:
 
 
 def test_rows_of_headings_repeat_in_print_and_pages_are_landscape() -> None:
-    for sheet in BOOK.worksheets:
+    for sheet in _book().worksheets:
         assert sheet.page_setup.orientation == "landscape"
         assert sheet.print_title_rows
         assert sheet.freeze_panes
-        assert "Page &P of &N" in DATA.decode("latin-1") or sheet.oddFooter.right.text == "Page &P of &N"
+        assert "Page &P of &N" in _data().decode("latin-1") or sheet.oddFooter.right.text == "Page &P of &N"
 
 
 def test_the_same_study_gives_the_same_bytes() -> None:
-    assert result_workbook(made_up.outcome()) == DATA
+    assert result_workbook(made_up.outcome()) == _data()

@@ -10,14 +10,13 @@ from pathlib import Path
 
 import pytest
 
-from study.report.html import report_page
-from tests.report import made_up
+from tests.report import drawn, made_up
 
 BROWSER = next(filter(None, map(shutil.which, ("chromium", "chromium-browser", "google-chrome"))), None)
 pytestmark = pytest.mark.skipif(BROWSER is None, reason="no Chromium on this machine; CI installs one")
 
 # Reports what is wider than the window outside a scrolling box, and figure texts that overlap or leave.
-_MEASURE = """
+MEASURE = """
 <script>
 addEventListener("load", function () {
   var found = {over: [], overlaps: [], left: []};
@@ -65,23 +64,26 @@ def _run(tmp_path: Path, page: Path, *arguments: str) -> str:
     return subprocess.run(command, capture_output=True, text=True, timeout=240, check=True).stdout
 
 
-_OUTCOMES = {
-    "small": made_up.outcome,
-    "large": made_up.large_outcome,
-    "one set in each mode": lambda: made_up.outcome(made_up.Size(modes=10, sets=1)),
+_DRAWN = {
+    "small": drawn.small_with_faults,
+    "one set in each mode": lambda: drawn.drawn(made_up.outcome(made_up.Size(modes=10, sets=1))),
 }
 
 
-@pytest.fixture(scope="module", params=_OUTCOMES)
+@pytest.fixture(scope="module", params=_DRAWN)
 def page(request: pytest.FixtureRequest, tmp_path_factory: pytest.TempPathFactory) -> Path:
-    outcome = _OUTCOMES[request.param]()
     path = tmp_path_factory.mktemp("page") / f"{request.param}.html"
-    path.write_text(report_page(outcome) + _MEASURE, encoding="utf-8")
+    path.write_text(_DRAWN[request.param]().page + MEASURE, encoding="utf-8")
     return path
 
 
 @pytest.mark.parametrize("width", [1280, 520])
 def test_nothing_runs_over_and_no_words_overlap(page: Path, width: int, tmp_path: Path) -> None:
+    measure(page, width, tmp_path)
+
+
+def measure(page: Path, width: int, tmp_path: Path) -> None:
+    """Open a page with the script that measures it, and check what it found."""
     dom = _run(tmp_path, page, f"--window-size={width},900", "--dump-dom")
     held = re.search(r'data-found="([^"]*)"', dom)
     assert held is not None
@@ -94,7 +96,7 @@ def test_nothing_runs_over_and_no_words_overlap(page: Path, width: int, tmp_path
 
 def test_print_makes_whole_pages(tmp_path: Path) -> None:
     page = tmp_path / "small.html"
-    page.write_text(report_page(made_up.outcome()), encoding="utf-8")
+    page.write_text(drawn.small_with_faults().page, encoding="utf-8")
     target = tmp_path / "page.pdf"
     _run(tmp_path, page, f"--print-to-pdf={target}", "--no-pdf-header-footer")
     data = target.read_bytes()

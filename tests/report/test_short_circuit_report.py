@@ -8,27 +8,27 @@ import re
 from collections import Counter
 from dataclasses import replace
 from io import BytesIO
-from pathlib import Path
 
 import numpy as np
 import pytest
 from lxml import etree
-from openpyxl import load_workbook
+from openpyxl import Workbook, load_workbook
 
 from study.report.catalogue import all_tables
-from study.report.charts import draw_figures
+from study.report.charts import Figures
+from study.report.charts_short_circuit import short_circuit_figures
 from study.report.content import StudyOutcome
 from study.report.excel import result_workbook
 from study.report.fault_view import curves, governing_mode, greatest, leading_boards, least, one_busbar
 from study.report.findings import findings
-from study.report.html import report_page
 from study.report.json_out import json_text
+from study.report.plotting import Drawing, house_style
 from study.report.tables import Table
 from study.report.tables_assumptions import NOT_COVERED, not_covered
 from study.report.tables_fault_devices import breakers_table
 from study.report.tables_verdicts import verdict_grid
 from study.results.short_circuit import FaultCase, ShortCircuitResult
-from tests.report import made_up, made_up_faults, test_page
+from tests.report import drawn, made_up, made_up_faults
 from tests.report.made_up_fault_ratings import JUST_ABOVE_KA
 from tests.report.test_html import Reader
 
@@ -36,8 +36,17 @@ OUTCOME = made_up_faults.fault_outcome()
 TABLES = all_tables(OUTCOME)
 PLAIN = all_tables(made_up.outcome())
 NEW = {key: table for key, table in TABLES.items() if key not in PLAIN}
-PAGE = report_page(OUTCOME)
 SHEETS = ("R Short-circuit", "R Fault ratings")
+
+
+@pytest.fixture(scope="module")
+def page() -> str:
+    return drawn.small_with_faults().page
+
+
+@pytest.fixture(scope="module")
+def figures() -> Figures:
+    return drawn.small_with_faults().figures
 
 
 def _faults(outcome: StudyOutcome = OUTCOME) -> ShortCircuitResult:
@@ -54,19 +63,14 @@ def _texts(key: str, column: str) -> tuple[str, ...]:
     return table.texts(table.index(column))
 
 
-def test_study_without_it_has_no_table_sheet_section_or_figure_of_it() -> None:
-    outcome = made_up.outcome()
+def test_study_without_it_has_no_table_or_sheet_of_it() -> None:
     assert not any(table.sheet in SHEETS for table in PLAIN.values())
-    assert "Short-circuit</h2>" not in report_page(outcome)
-    figures = draw_figures(outcome)
-    assert (figures.short_circuit, figures.fault_ratings) == ((), ())
-    assert not_covered(outcome) == NOT_COVERED
 
 
-def test_study_with_it_no_longer_says_that_it_is_not_covered() -> None:
+def test_study_with_it_no_longer_says_that_it_is_not_covered(page: str) -> None:
     left_out = {subject for subject, _ in NOT_COVERED} - {subject for subject, _ in not_covered(OUTCOME)}
     assert left_out == {"Short-circuit currents"}
-    assert "ratings of boards and devices are not judged" not in PAGE
+    assert "ratings of boards and devices are not judged" not in page
 
 
 def test_every_new_table_stands_on_one_of_the_two_sheets() -> None:
@@ -75,18 +79,18 @@ def test_every_new_table_stands_on_one_of_the_two_sheets() -> None:
         assert NEW[key].n_rows > 0
 
 
-def test_section_comes_before_the_comparison_and_is_numbered() -> None:
+def test_section_comes_before_the_comparison_and_is_numbered(page: str) -> None:
     reader = Reader()
-    reader.feed(PAGE)
+    reader.feed(page)
     headings = [text for tag, text in reader.text if tag == "h2"]
     titles = [h.split(" ", 1)[1] for h in headings]
     assert titles.index("Short-circuit") == titles.index("Comparing modes") - 1
     assert [int(h.split(" ", 1)[0]) for h in headings] == list(range(1, len(headings) + 1))
 
 
-def test_ids_are_unique_and_links_have_targets() -> None:
+def test_ids_are_unique_and_links_have_targets(page: str) -> None:
     reader = Reader()
-    reader.feed(PAGE)
+    reader.feed(page)
     reader.close()
     assert [i for i, n in Counter(reader.ids).items() if n > 1] == []
     for tag, name, value in reader.attributes:
@@ -94,15 +98,15 @@ def test_ids_are_unique_and_links_have_targets() -> None:
             assert value[1:] in reader.ids, (tag, value)
 
 
-def test_names_and_sentences_are_escaped() -> None:
-    assert "<script>alert('x')</script> pump" not in PAGE
-    assert made_up_faults.SENTENCE not in PAGE
-    assert "&lt;b&gt;Not&lt;/b&gt; cleared after 0.4 s &amp; more." in PAGE
-    assert "&lt;b&gt;125&lt;/b&gt;" in PAGE
+def test_names_and_sentences_are_escaped(page: str) -> None:
+    assert "<script>alert('x')</script> pump" not in page
+    assert made_up_faults.SENTENCE not in page
+    assert "&lt;b&gt;Not&lt;/b&gt; cleared after 0.4 s &amp; more." in page
+    assert "&lt;b&gt;125&lt;/b&gt;" in page
 
 
-def test_page_says_standard_assumptions_and_cautions() -> None:
-    words = " ".join(re.sub(r"<[^>]+>", " ", PAGE).split())
+def test_page_says_standard_assumptions_and_cautions(page: str) -> None:
+    words = " ".join(re.sub(r"<[^>]+>", " ", page).split())
     for text in (
         "IEC 61363-1:1998",
         "IEC 60909-0:2016",
@@ -182,7 +186,7 @@ def test_worked_results_stand_in_their_rows() -> None:
         assert float(result.split()[0]) == pytest.approx(shown, rel=5e-3)
 
 
-def test_value_just_beyond_its_rating_never_prints_equal_to_it() -> None:
+def test_value_just_beyond_its_rating_never_prints_equal_to_it(page: str) -> None:
     for key, value, limit, part in (
         ("board_ratings", "limited_peak_ka", "rated_peak_ka", "peak_percent"),
         ("breaker_ratings", "ip_ka", "icm_ka", "making_percent"),
@@ -199,7 +203,7 @@ def test_value_just_beyond_its_rating_never_prints_equal_to_it() -> None:
         for r in rows:
             assert _texts(key, value)[r] != _texts(key, limit)[r]
             assert not part or float(_texts(key, part)[r]) > 100.0
-    assert f"{JUST_ABOVE_KA:.5f}" in PAGE
+    assert f"{JUST_ABOVE_KA:.5f}" in page
 
 
 def test_board_table_holds_the_result() -> None:
@@ -304,20 +308,6 @@ def test_assumed_sustained_current_is_said() -> None:
     assert said["small motors of MSB 1"] == ""
 
 
-def test_page_shortens_places_and_sheet_holds_all() -> None:
-    outcome = made_up_faults.large_fault_outcome()
-    table = all_tables(outcome)["short_circuit_places"]
-    live = [m.maximum.live for m in _faults(outcome).modes]
-    others = np.array([kind != "board" for kind in _faults(outcome).places.kinds])
-    assert table.n_rows == sum(int((x & others).sum()) for x in live)
-    page = report_page(outcome)
-    assert len(page.encode()) < 5_000_000
-    part = page[page.index('id="table-short-circuit-places"') :]
-    shown = part[: part.index("</table>")].count("<tr")
-    assert shown < 200
-    assert f"all {table.n_rows} rows are on sheet R Short-circuit" in part
-
-
 def test_verdict_grid_has_fault_ratings() -> None:
     grid = verdict_grid(OUTCOME)
     row = grid.cells[grid.subjects.index("fault ratings")]
@@ -388,12 +378,14 @@ def test_json_holds_both_sheets_without_nan() -> None:
     assert document["tables"]["fault_clearing"]["rows"][0]["result"] == "does not clear"
 
 
-BOOK = load_workbook(BytesIO(result_workbook(OUTCOME)))
+@pytest.fixture(scope="module")
+def book() -> Workbook:
+    return load_workbook(BytesIO(result_workbook(OUTCOME)))
 
 
 @pytest.mark.parametrize("name", SHEETS)
-def test_sheet_has_its_tables_numbers_unrounded_and_room_for_them(name: str) -> None:
-    sheet = BOOK[name]
+def test_sheet_has_its_tables_numbers_unrounded_and_room_for_them(name: str, book: Workbook) -> None:
+    sheet = book[name]
     numbers = {
         f"{c.value:.12g}"
         for row in sheet.iter_rows()
@@ -413,20 +405,20 @@ def test_sheet_has_its_tables_numbers_unrounded_and_room_for_them(name: str) -> 
                     assert len(text) + 1 <= width, column.key
 
 
-def test_native_charts_of_decay_stand_beside_the_numbers() -> None:
+def test_native_charts_of_decay_stand_beside_the_numbers(book: Workbook) -> None:
     groups = one_busbar(RESULT, leading_boards(OUTCOME, RESULT))
-    assert len(BOOK["R Short-circuit"]._charts) == len(groups)
+    assert len(book["R Short-circuit"]._charts) == len(groups)
     # One board has no rating, which a chart would show as a rating of nought.
-    assert len(BOOK["R Fault ratings"]._charts) == 0
+    assert len(book["R Fault ratings"]._charts) == 0
 
 
-FIGURES = draw_figures(OUTCOME)
-DRAWN = (*FIGURES.short_circuit, *FIGURES.fault_ratings)
+def test_figures_are_small_and_have_a_text_alternative(figures: Figures) -> None:
+    for figure in (*figures.short_circuit, *figures.fault_ratings):
+        _check_figure(figure)
 
 
-@pytest.mark.parametrize("figure", DRAWN, ids=[f.key for f in DRAWN])
-def test_figure_is_small_and_has_a_text_alternative(figure: object) -> None:
-    svg = figure.svg  # type: ignore[attr-defined]
+def _check_figure(figure: Drawing) -> None:
+    svg = figure.svg
     assert len(svg) < 60_000
     root = etree.fromstring(svg)
     assert root.get("role") == "img"
@@ -435,30 +427,17 @@ def test_figure_is_small_and_has_a_text_alternative(figure: object) -> None:
     assert "nan" not in re.sub(r"<[^>]*>", "", svg).lower()
 
 
-def test_figures_show_what_they_must() -> None:
-    assert [f.key for f in DRAWN] == [
+def test_figures_show_what_they_must(figures: Figures) -> None:
+    assert [f.key for f in (*figures.short_circuit, *figures.fault_ratings)] == [
         "fig-fault-1", "fig-fault-2", "fig-fault-simulated-1", "fig-fault-duties", "fig-fault-peaks"
     ]  # fmt: skip
-    words = " ".join(etree.fromstring(FIGURES.short_circuit[0].svg).itertext())
+    words = " ".join(etree.fromstring(figures.short_circuit[0].svg).itertext())
     for text in ("a.c., √2 Iac", "d.c., idc", "greatest peak", "DG1", "small motors of MSB 1", "least fault"):
         assert text in words
-    assert "MSB 1, MSB 2" in FIGURES.short_circuit[0].title
+    assert "MSB 1, MSB 2" in figures.short_circuit[0].title
 
 
-@pytest.mark.skipif(test_page.BROWSER is None, reason="no Chromium on this machine; CI installs one")
-@pytest.mark.parametrize("width", [1280, 520])
-def test_nothing_runs_over_and_no_words_overlap(width: int, tmp_path: Path) -> None:
-    page = tmp_path / "faults.html"
-    page.write_text(PAGE + test_page._MEASURE, encoding="utf-8")
-    dom = test_page._run(tmp_path, page, f"--window-size={width},900", "--dump-dom")
-    held = re.search(r'data-found="([^"]*)"', dom)
-    assert held is not None
-    found = json.loads(held[1].replace("&quot;", '"').replace("&amp;", "&").replace("&lt;", "<"))
-    assert found["page"] <= found["width"] + 1
-    assert (found["over"], found["left"], found["overlaps"]) == ([], [], [])
-
-
-def test_a_simulated_fault_stands_beside_both_standards() -> None:
+def test_a_simulated_fault_stands_beside_both_standards(page: str) -> None:
     rows = list(TABLES["fault_simulations"].rows())
     keys = [c.key for c in TABLES["fault_simulations"].columns]
     peak = dict(zip(keys, rows[3], strict=True))
@@ -475,12 +454,14 @@ def test_a_simulated_fault_stands_beside_both_standards() -> None:
     last = dict(zip(keys, rows[-1], strict=True))
     assert last["quantity"] == "not simulated"
     assert last["remark"] == "there is no fault place 'Galley'."
-    assert "fig-fault-simulated-1" in PAGE
-    assert "Fault &lt;1&gt;" in PAGE
+    assert "fig-fault-simulated-1" in page
+    assert "Fault &lt;1&gt;" in page
 
 
-def test_no_simulated_fault_leaves_no_empty_table() -> None:
+def test_no_simulated_fault_leaves_no_empty_table(figures: Figures) -> None:
     outcome = replace(OUTCOME, short_circuit=replace(RESULT, simulated=()))
-    page = report_page(outcome)
+    with house_style():
+        left = short_circuit_figures(outcome)
+    page = drawn.page_with(outcome, replace(figures, short_circuit=left))
     assert "Simulated faults beside" not in page
     assert "fig-fault-simulated" not in page
