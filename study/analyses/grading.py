@@ -20,7 +20,8 @@ from study.analyses.grading_findings import grading_findings
 from study.analyses.grading_margins import RULES
 from study.analyses.grading_options import GradingOptions
 from study.analyses.grading_pairs import ModePairing, ModePairs
-from study.analyses.grading_reach import ModeReach, mode_reach
+from study.analyses.grading_proposals import Search, targets_of
+from study.analyses.grading_reach import ENDS_BY_ITSELF, ModeReach, mode_reach
 from study.analyses.grading_rules import Rules, rules_of
 from study.analyses.grading_starts import ModeStarts, hardest_of
 from study.analyses.grading_stations import Stations, stations_of
@@ -39,6 +40,8 @@ from study.results.grading import (
 from study.results.load_flow import LoadFlowResult
 from study.results.short_circuit import Places, ShortCircuitResult
 
+IntArray = NDArray[np.int64]
+
 DEFAULT_OPTIONS = GradingOptions()
 
 
@@ -51,6 +54,8 @@ class GradedMode:
     reach: ModeReach
     ride_through: tuple[RideThrough, ...]
     paths: tuple[GradingPath, ...]
+    kind: IntArray
+    starts: ModeStarts
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -107,8 +112,11 @@ def grading(
     )
     everything = mode_faults(plant, short_circuit, stations, time_s)
     graded = [_graded(basis, faults, k) for k, faults in enumerate(everything)]
-    pairs = joined_pairs([g.pairs for g in graded])
-    reach = joined_reach(graded)
+    pairs, sides = joined_pairs([g.pairs for g in graded])
+    reach, zones = joined_reach(graded)
+    late = reach.present & ~(reach.clears_s <= options.clearing_s) & (reach.by != ENDS_BY_ITSELF)
+    targets = targets_of(pairs, sides, reach, (zones, late & ~np.isnan(reach.clears_s)))
+    changes, not_cured = _proposals(basis, graded).search(targets) if targets else ([], [])
     return GradingResult(
         modes=tuple(m.mode for m in short_circuit.modes),
         levels=LEVELS,
@@ -118,8 +126,8 @@ def grading(
         reach=reach,
         ride_through=hardest_of([row for g in graded for row in g.ride_through]),
         paths=tuple(path for g in graded for path in g.paths),
-        changes=(),
-        not_cured=(),
+        changes=tuple(changes),
+        not_cured=tuple(not_cured),
         findings=grading_findings(plant, stations, openers, pairs),
     )
 
@@ -138,13 +146,39 @@ def _graded(basis: GradingBasis, faults: ModeFaults, number: int) -> GradedMode:
             *starts.restart(basis.balance.modes[number], basis.openers),
         ),
         paths=_paths(faults, pairing),
+        kind=pairing.kind,
+        starts=starts,
     )
     faults.forget()
     return done
 
 
-def joined_pairs(modes: Sequence[ModePairs]) -> GradingPairs:
-    """Return the pairs of all modes as one table.
+def _proposals(basis: GradingBasis, graded: Sequence[GradedMode]) -> Search:
+    """Return the search for settings, with what must be held by the station that is changed."""
+    starts = [g.starts for g in graded]
+
+    def held(openers: Openers, station: int) -> set[tuple[str, str, str]]:
+        return {
+            (row.mode, row.event, row.equipment)
+            for one in starts
+            for row in (*one.motor_starts(openers, station), *one.inrush(openers, station))
+            if row.trips_s < row.needed_s
+        }
+
+    return Search(
+        basis.plant,
+        stations=basis.stations,
+        faults=[g.faults for g in graded],
+        kinds=[g.kind for g in graded],
+        rules=basis.rules,
+        openers=basis.openers,
+        held=held,
+        options=basis.options,
+    )
+
+
+def joined_pairs(modes: Sequence[ModePairs]) -> tuple[GradingPairs, tuple[bool, ...]]:
+    """Return the pairs of all modes as one table, and on which side of the nearest station the fault lies.
 
     Parameters
     ----------
@@ -155,6 +189,8 @@ def joined_pairs(modes: Sequence[ModePairs]) -> GradingPairs:
     -------
     GradingPairs
         Pairs in the order in which modes first have them.
+    tuple of bool
+        True where the fault lies in the branch of the nearest station.
     """
     number: dict[tuple[int, int, bool], int] = {}
     zone: list[str] = []
@@ -177,17 +213,18 @@ def joined_pairs(modes: Sequence[ModePairs]) -> GradingPairs:
         for name, table in whole.items():
             table[rows, m] = getattr(mode, name)
     keys = list(number)
-    return GradingPairs(
+    pairs = GradingPairs(
         downstream=read_only([k[0] for k in keys], np.int64),
         upstream=read_only([k[1] for k in keys], np.int64),
         zone=tuple(zone),
         present=read_only(present, np.bool_),
         **{name: read_only(table, table.dtype) for name, table in whole.items()},
     )
+    return pairs, tuple(k[2] for k in keys)
 
 
-def joined_reach(modes: Sequence[GradedMode]) -> Reach:
-    """Return the reach of all modes as one table.
+def joined_reach(modes: Sequence[GradedMode]) -> tuple[Reach, tuple[bool, ...]]:
+    """Return the reach of all modes as one table, and on which side of the station the fault lies.
 
     Parameters
     ----------
@@ -198,6 +235,8 @@ def joined_reach(modes: Sequence[GradedMode]) -> Reach:
     -------
     Reach
         One row for each station and side.
+    tuple of bool
+        True where the fault lies in the branch of the station.
     """
     number: dict[tuple[int, bool], int] = {}
     zone: list[str] = []
@@ -214,7 +253,7 @@ def joined_reach(modes: Sequence[GradedMode]) -> Reach:
         present[rows, m], by[rows, m] = mode.reach.judged, mode.reach.by
         least[rows, m], clears[rows, m] = mode.reach.least_a, mode.reach.clears_s
         holds[rows, m] = mode.reach.holds_s
-    return Reach(
+    found = Reach(
         station=read_only([k[0] for k in number], np.int64),
         zone=tuple(zone),
         present=read_only(present, np.bool_),
@@ -223,6 +262,7 @@ def joined_reach(modes: Sequence[GradedMode]) -> Reach:
         by=read_only(by, np.int64),
         holds_s=read_only(holds),
     )
+    return found, tuple(k[1] for k in number)
 
 
 def _stations(plant: Plant, stations: Stations, openers: Openers, places: Places) -> GradingStations:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import copy
 from typing import Final
 
 import numpy as np
@@ -80,6 +81,41 @@ class ModeFaults:
         self.there = self._in_minimum()
         self.fed_back = self._by_converters_alone()
         self.turned = self._turned()
+        self.whole_rows = np.arange(len(self.feed))
+
+    def only(self, station: int) -> ModeFaults:
+        """Return the faults in which a station has a part, with the rows that its settings bear upon.
+
+        Where it is the nearest one those are all rows of the feed, elsewhere the feed's own and its row.
+
+        Parameters
+        ----------
+        station : int
+            Which.
+
+        Returns
+        -------
+        ModeFaults
+            A part of these; its currents are worked out.
+        """
+        has = np.zeros(len(self.feeds), bool)
+        has[self.feed[self.station == station]] = True
+        nearest = self.station[self.own] == station
+        is_own = np.zeros(len(self.feed), bool)
+        is_own[self.own] = True
+        rows = np.flatnonzero(has[self.feed] & (nearest[self.feed] | is_own | (self.station == station)))
+        feeds = np.flatnonzero(has)
+        part = copy.copy(self)
+        part._kept = {}
+        part.feeds = tuple(self.feeds[k] for k in feeds)
+        part.feed = np.searchsorted(feeds, self.feed[rows])
+        part.station, part.inward, part.turned = self.station[rows], self.inward[rows], self.turned[rows]
+        part.own = np.flatnonzero(is_own[rows])
+        part.place, part.inside = self.place[:, feeds], self.inside[:, feeds]
+        part.there, part.fed_back = self.there[feeds], self.fed_back[feeds]
+        part.whole_rows = rows
+        part.work_out()
+        return part
 
     def work_out(self) -> None:
         """Work out the currents of all rows at once and keep them until `forget`."""

@@ -18,6 +18,7 @@ from study.results.grading import FULL, NONE, NOT_ASSESSED, NOT_NEEDED, PAIR_KIN
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
 BoolArray = NDArray[np.bool_]
+PairKey = tuple[int, int, bool]
 
 # Sets that run together from which on the faulty one can be told by the current of all the others: the
 # breaker of each may have an instantaneous stage above its own contribution; ABS 4-8-2/9.11, from memory.
@@ -34,7 +35,7 @@ class ModePairs:
     ``key`` [row] is (downstream, upstream, inward).
     """
 
-    key: tuple[tuple[int, int, bool], ...]
+    key: tuple[PairKey, ...]
     zone: tuple[str, ...]
     row: IntArray
     kind: IntArray
@@ -119,11 +120,24 @@ class ModePairing:
         Beside the curves.
     needed_s : float
         The least margin. [s]
+    kind : ndarray of int, shape (row,), optional
+        Kinds of the rows where the faults are a part of all; else found from the topology.
     """
 
-    def __init__(self, faults: ModeFaults, openers: Openers, rules: Rules, needed_s: float) -> None:
+    def __init__(
+        self,
+        faults: ModeFaults,
+        openers: Openers,
+        rules: Rules,
+        needed_s: float,
+        kind: IntArray | None = None,
+    ) -> None:
         self.faults, self.openers = faults, openers
         self.mode_rules = mode_rules(rules, faults, openers)
+        if kind is None:
+            kinds = pair_kinds(faults, self.mode_rules.blind)
+            kind = np.array([PAIR_KINDS.index(k) for k in kinds], np.int64)
+        self.kind = kind
         self.margins = ModeMargins(faults, openers, self.mode_rules, needed_s)
         self.stages = [self.margins.stage(level) for level in range(len(LEVELS))]
         self.rows = self.margins.behind
@@ -133,9 +147,7 @@ class ModePairing:
     def pairs(self) -> ModePairs:
         """Return the pairs of the mode."""
         faults, rows = self.faults, self.rows
-        own = faults.station[self.margins.own_row[rows]]
-        kinds = pair_kinds(faults, self.mode_rules.blind)
-        kind = np.array([PAIR_KINDS.index(kinds[r]) for r in rows.tolist()], np.int64)
+        kind = self.kind[rows]
         judged = self._judged(kind) & ~self._neither()
         level, margin, unknown = self._governing()
         feed = faults.feed[rows]
@@ -149,10 +161,9 @@ class ModePairing:
         extent = np.select(
             [~judged, fails & partial, fails, unknown], [NOT_NEEDED, PARTIAL, NONE, NOT_ASSESSED], FULL
         )
-        inward = [faults.feeds[f].inward for f in feed.tolist()]
         zones = [faults.zones.zones[faults.feeds[f].zone].name for f in feed.tolist()]
         return ModePairs(
-            key=tuple(zip(own.tolist(), faults.station[rows].tolist(), inward, strict=True)),
+            key=tuple(self.keys(rows)),
             zone=tuple(zones),
             row=rows,
             kind=kind,
@@ -171,17 +182,19 @@ class ModePairing:
             current_ratio=self._current_ratio(),
         )
 
-    def failing(self) -> list[tuple[tuple[int, int, bool], float]]:
-        """Return the pairs that fail, with their least margin: what a change of a setting is held against."""
-        faults, rows = self.faults, self.rows
-        kinds = pair_kinds(faults, self.mode_rules.blind)
-        kind = np.array([PAIR_KINDS.index(kinds[r]) for r in rows.tolist()], np.int64)
+    def failing(self) -> dict[PairKey, float]:
+        """Return the pairs that fail with their least margin: what a change of a setting is held against."""
+        rows = self.rows
         _, margin, _ = self._governing()
-        bad = np.flatnonzero(self._judged(kind) & (margin < self.needed_s))
-        own = faults.station[self.margins.own_row[rows[bad]]].tolist()
-        up = faults.station[rows[bad]].tolist()
-        inward = [faults.feeds[f].inward for f in faults.feed[rows[bad]].tolist()]
-        return list(zip(zip(own, up, inward, strict=True), margin[bad].tolist(), strict=True))
+        bad = np.flatnonzero(self._judged(self.kind[rows]) & ~self._neither() & (margin < self.needed_s))
+        return dict(zip(self.keys(rows[bad]), margin[bad].tolist(), strict=True))
+
+    def keys(self, rows: IntArray) -> list[PairKey]:
+        """Return (downstream, upstream, inward) of rows behind."""
+        faults = self.faults
+        own = faults.station[self.margins.own_row[rows]].tolist()
+        inward = [faults.feeds[f].inward for f in faults.feed[rows].tolist()]
+        return list(zip(own, faults.station[rows].tolist(), inward, strict=True))
 
     def _judged(self, kind: IntArray) -> BoolArray:
         """Return the rows that have to discriminate."""

@@ -103,8 +103,21 @@ class ModeStarts:
             for surge in surges_of(k, load, self.options)
         ]
 
-    def motor_starts(self, openers: Openers) -> list[RideThrough]:
-        """Return every motor start against the motor's own station, and the hardest against those behind."""
+    def motor_starts(self, openers: Openers, only: int | None = None) -> list[RideThrough]:
+        """Return every motor start against the motor's own station, and the hardest against those behind.
+
+        Parameters
+        ----------
+        openers : Openers
+            What opens each station.
+        only : int, optional
+            One station alone.
+
+        Returns
+        -------
+        list of RideThrough
+            Of this mode.
+        """
         found = self.surges()
         places = np.array([self._place(self.plant.loads[s.load]) for s in found], np.int64)
         here = np.flatnonzero(places >= 0)
@@ -117,6 +130,10 @@ class ModeStarts:
             if own_station >= 0:
                 share[k, own_station] = 1.0
         row, station = np.nonzero(share > _LEAST_SHARE)
+        if only is not None:
+            row, station = row[station == only], station[station == only]
+            if not len(row):
+                return []
         surge = [found[here[r]] for r in row]
         part = share[row, station]
         before = np.maximum(self.before[station] - part * np.array([s.normal_a for s in surge]), 0.0)
@@ -147,17 +164,31 @@ class ModeStarts:
         """Return where a station is the load's own: it feeds that consumer's zone."""
         return np.array([(int(s), n) in self._mine for s, n in zip(station, loads, strict=True)], bool)
 
-    def inrush(self, openers: Openers) -> list[RideThrough]:
+    def inrush(self, openers: Openers, only: int | None = None) -> list[RideThrough]:
         """Return the inrush of every transformer against the stations through which it comes.
 
         The first peak is the given multiple of that of the rated current; it falls with the given time
         constant. A stage that does not look at the peak sees the r.m.s. value of half waves, half their peak.
 
         Source: definition of the multiple; r.m.s. value of a half-wave sine.
+
+        Parameters
+        ----------
+        openers : Openers
+            What opens each station.
+        only : int, optional
+            One station alone.
+
+        Returns
+        -------
+        list of RideThrough
+            Of this mode.
         """
         found = []
         for feed in self.faults.feeds:
             zone = self.faults.zones.zones[feed.zone]
+            if only is not None and only not in (feed.station, *(s for s, _ in feed.behind)):
+                continue
             for t in (x for x in self.plant.transformers if x.name in zone.branches):
                 rated = 1000.0 * t.s_rated_kva * t.units / (3.0**0.5 * t.u_primary_v)
                 near = self.faults.places.names[int(self.faults.stations.place[feed.station])]
