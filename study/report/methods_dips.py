@@ -4,7 +4,7 @@ from __future__ import annotations
 
 DIPS_METHODS: tuple[str, ...] = (
     "Events in time: sets as machines of subtransient order with saturation (stator transients left out), "
-    "each with its own excitation system, regulator, droop circuit and governor, motors that start with their "
+    "each with its own excitation system, regulator, droop circuit and governor, motors with their "
     "slip, inertia and load torque, other consumers by kind; from the load flow of the mode to the new rest. "
     "What a relay, an overload or a starter does on the way is followed. Voltages are of the positive "
     "sequence and hold from the first cycle on.",
