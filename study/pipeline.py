@@ -13,6 +13,7 @@ if TYPE_CHECKING:
     import pandas as pd
 
     from study.analyses.balance import BalanceOptions
+    from study.analyses.cable_protection import CableOptions
     from study.analyses.grading_options import GradingOptions
     from study.analyses.sharing_options import SharingOptions
     from study.checks.limits import Limits
@@ -76,9 +77,12 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
         Plant, results and verdicts.
     """
     from study.analyses.balance import load_balance
+    from study.analyses.cable_protection import cable_protection
     from study.analyses.fault_ratings import fault_ratings
+    from study.analyses.generator_protection import generator_protection
     from study.analyses.grading import grading
     from study.analyses.load_flow import load_flow
+    from study.analyses.protection_devices import protection_devices
     from study.analyses.regulation import voltage_regulation
     from study.analyses.sharing import sharing_study
     from study.analyses.short_circuit import short_circuit
@@ -86,6 +90,7 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     from study.network.network import build_network, mode_network
     from study.report.content import StudyOutcome
     from study.report.methods import METHODS
+    from study.report.methods_protection import PROTECTION_METHODS
 
     limits = limits_in_force(plant.acceptance)
     network = build_network(plant)
@@ -109,6 +114,9 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     ratings = fault_ratings(plant, faults)
     _tell(progress, "grading of protective devices")
     graded = grading(plant, faults, flow, balance, _grading_options(limits))
+    _tell(progress, "cables and the sets' protection")
+    devices = protection_devices(plant)
+    cables = cable_protection(plant, devices, flow, faults, _cable_options(limits))
     outcome = StudyOutcome(
         plant=plant,
         balance=balance,
@@ -118,9 +126,11 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
         short_circuit=faults,
         fault_ratings=ratings,
         grading=graded,
+        cables=cables,
+        set_protection=generator_protection(plant, devices, flow, faults),
         verdicts=(),
         limits=tuple(limits.by_key[key] for key in USED_LIMITS),
-        methods=METHODS,
+        methods=(*METHODS, *PROTECTION_METHODS),
         tool_version=tool_version(),
     )
     return _judged(outcome, limits)
@@ -158,20 +168,40 @@ USED_LIMITS = (
     "grading_margin",
     "fault_clearing",
     "motor_starting_time",
+    "cable_overload_trip",
+    "steering_overload",
+    "reverse_power_least",
+    "reverse_power_most",
+    "reverse_power_delay",
+    "undervoltage_least",
+    "undervoltage_most",
+    "overvoltage_most",
+    "underfrequency_least",
+    "overfrequency_most",
+    "preferential_least",
+    "preferential_most",
+    "preferential_delay",
+    "set_long_time",
+    "set_overload_time",
+    "set_short_time",
+    "set_differential",
 )
 
 
 def _judged(outcome: StudyOutcome, limits: Limits) -> StudyOutcome:
     from dataclasses import replace
 
+    from study.checks.cables import judge_cables
     from study.checks.capacity import judge_capacity
     from study.checks.discrimination import judge_discrimination
     from study.checks.fault_ratings import judge_fault_ratings
+    from study.checks.generator_protection import judge_generator_protection
     from study.checks.loading import judge_loading
     from study.checks.sharing import judge_regulation, judge_sharing
     from study.checks.voltage import judge_voltage
 
     plant, ratings, graded = outcome.plant, outcome.fault_ratings, outcome.grading
+    cables, sets = outcome.cables, outcome.set_protection
     return replace(
         outcome,
         verdicts=(
@@ -182,6 +212,8 @@ def _judged(outcome: StudyOutcome, limits: Limits) -> StudyOutcome:
             *judge_regulation(plant, outcome.regulation, limits),
             *(judge_fault_ratings(plant, ratings, limits) if ratings is not None else ()),
             *(judge_discrimination(plant, graded, limits) if graded is not None else ()),
+            *(judge_cables(plant, cables, limits) if cables is not None else ()),
+            *(judge_generator_protection(plant, sets, limits) if sets is not None else ()),
         ),
     )
 
@@ -195,6 +227,15 @@ def _balance_options(limits: Limits) -> BalanceOptions:
         emergency_hours=limits.number("emergency_duration"),
         emergency_basis=limits.basis("emergency_duration"),
         blackout_start_s=limits.number("emergency_start"),
+    )
+
+
+def _cable_options(limits: Limits) -> CableOptions:
+    from study.analyses.cable_protection import CableOptions
+
+    return CableOptions(
+        drop_limit_pu=limits.fraction("cable_drop"),
+        trip_factor=limits.fraction("cable_overload_trip"),
     )
 
 

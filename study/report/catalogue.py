@@ -7,7 +7,9 @@ from study.report.tables import Table
 from study.report.tables_assumptions import assumption_tables
 from study.report.tables_balance import balance_tables
 from study.report.tables_branches import branch_tables
+from study.report.tables_cables import cable_tables
 from study.report.tables_fault_ratings import fault_rating_tables
+from study.report.tables_generator_protection import generator_protection_tables
 from study.report.tables_grading import grading_tables
 from study.report.tables_load_flow import load_flow_tables
 from study.report.tables_modes import modes_table
@@ -48,9 +50,20 @@ def all_tables(outcome: StudyOutcome) -> dict[str, Table]:
         *short_circuit_tables(outcome),
         *fault_rating_tables(outcome),
         *grading_tables(outcome),
+        *_protection(outcome),
         *assumption_tables(outcome),
     )
     found = {table.key: table for table in tables}
     if len(found) != len(tables):
         raise ValueError("two tables have one key")
     return found
+
+
+def _protection(outcome: StudyOutcome) -> tuple[Table, ...]:
+    """Return the tables of the sets' protection and of the cables, where the study has them."""
+    tables: tuple[Table, ...] = ()
+    if outcome.set_protection is not None:
+        tables += generator_protection_tables(outcome.plant, outcome.set_protection)
+    if outcome.cables is not None:
+        tables += cable_tables(outcome.plant, outcome.cables)
+    return tables

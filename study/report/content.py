@@ -10,7 +10,9 @@ from study.checks.limits import LimitUsed
 from study.checks.verdict import STATUS_ORDER, Status, Verdict
 from study.model.plant import Plant
 from study.results.balance import BalanceResult
+from study.results.cable_protection import CableProtectionResult
 from study.results.fault_ratings import FaultRatingsResult
+from study.results.generator_protection import GeneratorProtectionResult
 from study.results.grading import GradingResult
 from study.results.load_flow import LoadFlowResult
 from study.results.regulation import RegulationResult
@@ -28,8 +30,8 @@ class StudyOutcome:
     """Everything that one run found.
 
     ``methods`` holds one sentence for each method, with its standard, clause and range of use; a verdict
-    with an empty mode is about the vessel itself. ``short_circuit``, ``fault_ratings`` and
-    ``grading`` are None in a study without them.
+    with an empty mode is about the vessel itself. ``short_circuit``, ``fault_ratings``, ``grading``,
+    ``cables`` and ``set_protection`` are None in a study without them.
     """
 
     plant: Plant
@@ -44,6 +46,8 @@ class StudyOutcome:
     short_circuit: ShortCircuitResult | None = None
     fault_ratings: FaultRatingsResult | None = None
     grading: GradingResult | None = None
+    cables: CableProtectionResult | None = None
+    set_protection: GeneratorProtectionResult | None = None
 
     @property
     def modes(self) -> tuple[str, ...]:

@@ -24,6 +24,7 @@ _SECTIONS: Final = (
     ("voltage", "Voltage and sharing"),
     ("short-circuit", "Short-circuit"),
     ("grading", "Grading"),
+    ("cables", "Cables"),
     ("comparing", "Comparing modes"),
     ("assumptions", "Assumptions, limits and methods"),
     ("not-covered", "Not covered"),
@@ -143,7 +144,11 @@ def _context(outcome: StudyOutcome, figures: Figures, tables: Mapping[str, Table
 
 def _sections(outcome: StudyOutcome) -> list[tuple[str, str]]:
     """Return key and title of every section that the study fills."""
-    given = {"short-circuit": outcome.short_circuit, "grading": outcome.grading}
+    given = {
+        "short-circuit": outcome.short_circuit,
+        "grading": outcome.grading,
+        "cables": outcome.cables,
+    }
     return [(key, title) for key, title in _SECTIONS if given.get(key, outcome) is not None]
 
 

@@ -34,6 +34,7 @@ SHEETS: Final = (
     "R Short-circuit",
     "R Fault ratings",
     "R Grading",
+    "R Cables",
     "R Assumptions",
 )
 
