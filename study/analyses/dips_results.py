@@ -10,6 +10,7 @@ import numpy as np
 from study.analyses.dips_cases import CaseWork
 from study.analyses.dips_measures import recovery_of, rows_to_keep
 from study.analyses.dips_motors import drop_outs, motor_traces
+from study.analyses.dips_places import judged_board
 from study.analyses.dips_sets import set_traces
 from study.formulas.performance_iso8528 import performance_class
 from study.model.modes import Event
@@ -69,7 +70,7 @@ def case_result(
     """
     view = _view(work, model, course, events)
     at, plant = work.at, work.plant
-    judged = _judged_board(work)
+    judged = judged_board(at, work.island)
     place = int(np.flatnonzero(view.boards == judged)[0])
     voltage = recovery_of(
         course.time_s, view.u_board_pu[:, place], view.starts_s, work.options.recovery_band_pu
@@ -164,15 +165,6 @@ def island_speed_of(course: Course, model: Model) -> FloatArray:
     mean = (on * weight * course.source[:, :, d.KEPT_SPEED]).sum(axis=1) / np.maximum(total, 1e-12)
     # Without a set on the board a frequency is that of the last one.
     return np.asarray(np.where(total > 0.0, mean, course.source[:, 0, d.KEPT_SPEED]))
-
-
-def _judged_board(work: CaseWork) -> int:
-    """Return the board of the largest set of the island, or of its largest source."""
-    at, names = work.at, [b.name for b in work.plant.boards]
-    here = [s for s in at.sources if s.island == work.island]
-    sets = [s for s in here if s.machine is not None] or here
-    largest = max(sets, key=lambda s: s.s_rated_kva)
-    return names.index(at.network.topology.nodes[largest.node].board)
 
 
 def _boards(view: View) -> BoardDips:

@@ -152,7 +152,7 @@ def build_model(batch: BatchSolution, plan: Plan) -> Model:
         A motor whose name-plate no circuit meets, or whose run cannot be found.
     """
     at = batch.at
-    places = [_place(at, x) for x in plan.drives]
+    places = [place_of(at, x) for x in plan.drives]
     keep = {*plan.keep, *(bus for bus, _ in places), *(x.bus for x in plan.board_loads)}
     keep |= {x.bus for x in plan.inrush}
     p, q = plan.p_kw, plan.q_kvar
@@ -164,8 +164,14 @@ def build_model(batch: BatchSolution, plan: Plan) -> Model:
     return _Builder(batch=batch, plan=plan, lumped=lumped, rows=rows, places=places, running=running).model()
 
 
-def _place(at: ModeNetwork, drive: Drive) -> tuple[int, complex]:
-    """Return the bus that a motor hangs on, and the impedance of its own run (0 for none)."""
+def place_of(at: ModeNetwork, drive: Drive) -> tuple[int, complex]:
+    """Return the bus that a motor hangs on, and the impedance of its own run (0 for none), per unit.
+
+    Raises
+    ------
+    SolveError
+        The motor is not fed in this mode.
+    """
     topology, network = at.network.topology, at.network
     node = topology.node_of[drive.load.name]
     own = [

@@ -36,8 +36,8 @@ class StartEstimates:
     """Every motor started in one mode, by closed forms; arrays [motor] unless said otherwise.
 
     Voltages of boards are per unit of nominal, of terminals per unit of the motor's rated voltage.
-    ``set_board`` is the board of the largest set of the motor's island, ``worst_board`` the worst of the
-    others that are not on the motor's path. ``u_set_board_pu`` and ``u_terminal_pu`` are [law, motor] in the
+    ``set_board`` is the board of the largest set of the motor's island, ``worst_board`` the one that
+    falls most of the others. ``u_set_board_pu`` and ``u_terminal_pu`` are [law, motor] in the
     order of ``PRELOAD_LAWS``, with X'd (what a meter sees for 0.1 to 0.2 s); ``first_cycle`` is with X''d.
     ``u_*_running_pu`` are with the motor at rated speed. ``p_engine_*`` belong to the engine check: kW before
     plus kW of the start against 110 % of the engines. NaN where there is none. ``dip_pu`` is the fall at the
