@@ -29,6 +29,7 @@ _RC: Final[Any] = {
     "axes.titlesize": _FONT,
     "axes.titleweight": "bold",
     "axes.titlelocation": "left",
+    "axes.titley": 1.0,  # the library would else measure every tick label to find that same place
     "axes.labelsize": _FONT,
     "axes.labelcolor": QUIET,
     "axes.edgecolor": RULE,
