@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from study.analyses.grading_bands import Openers
-from study.analyses.grading_currents import Currents, between
+from study.analyses.grading_currents import Currents, between, joined
 from study.analyses.grading_faults import (
     BETWEEN,
     LEVELS,
@@ -93,6 +93,13 @@ class Nearest:
     start_a: FloatArray
 
 
+def _spread(rows: IntArray, values: FloatArray, count: int) -> FloatArray:
+    """Return values at their rows, NaN elsewhere."""
+    found = np.full(count, np.nan)
+    found[rows] = values
+    return found
+
+
 class ModeMargins:
     """Margins of one mode.
 
@@ -151,36 +158,59 @@ class ModeMargins:
             largest_a=np.where(there, a.largest_a, b.largest_a),
         )
 
-    def stage(self, level: int) -> Stage:
-        """Return what happens at one level.
-
-        Parameters
-        ----------
-        level : int
-            Place in `LEVELS`.
+    def stages(self) -> list[Stage]:
+        """Return what happens at every level; all of them are worked out at once.
 
         Returns
         -------
-        Stage
-            NaN where the level is no fault of a feed.
+        list of Stage
+            In the order of the levels; NaN where a level is no fault of a feed.
         """
         faults = self.faults
-        feeds = np.flatnonzero(faults.exists(level))
-        late, edge = np.full(len(faults.feeds), np.nan), np.full(len(faults.feeds), NO_EDGE, np.int64)
-        late[feeds], edge[feeds] = self._late_s(feeds, faults.currents(faults.own[feeds], level))
-        of_behind = np.flatnonzero(faults.exists(level)[faults.feed[self.behind]])
-        rows, start = self.behind[of_behind], self.starts[level]
-        near = Nearest(late_s=late[faults.feed[rows]], start_a=start.half.ac_a[self.own_row[rows], 0])
-        release, margin = (np.full(len(faults.feed), np.nan) for _ in range(2))
-        rule = np.full(len(faults.feed), CURVES, np.int64)
-        release[rows], margin[rows], rule[rows] = self._judged(
+        there = [faults.exists(level) for level in range(len(LEVELS))]
+        feeds = [np.flatnonzero(x) for x in there]
+        currents = joined([faults.currents(faults.own[f], level) for level, f in enumerate(feeds)])
+        late, edge = self._late_s(np.concatenate(feeds), currents)
+        bounds = np.cumsum([len(f) for f in feeds])[:-1]
+        times = [_spread(f, x, len(faults.feeds)) for f, x in zip(feeds, np.split(late, bounds), strict=True)]
+        behind = [np.flatnonzero(x[faults.feed[self.behind]]) for x in there]
+        level = np.repeat(np.arange(len(LEVELS)), [len(x) for x in behind])
+        of_behind = np.concatenate(behind)
+        rows = self.behind[of_behind]
+        starts = [Start(half=s.half.rows(self.behind[x]), largest_a=s.largest_a[self.behind[x]])
+                  for s, x in zip(self.starts, behind, strict=True)]  # fmt: skip
+        own = [s.half.ac_a[self.own_row[self.behind[x]], 0] for s, x in zip(self.starts, behind, strict=True)]
+        release, margin, rule = self._judged(
             rows,
-            near,
-            Start(half=start.half.rows(rows), largest_a=start.largest_a[rows]),
+            Nearest(late_s=np.stack(times)[level, faults.feed[rows]], start_a=np.concatenate(own)),
+            Start(
+                half=joined([s.half for s in starts]), largest_a=np.concatenate([s.largest_a for s in starts])
+            ),
             self._bounds[of_behind, level],
-            lambda some: faults.currents(rows[some], level),
+            lambda some: self._at_levels(rows[some], level[some]),
         )
-        return Stage(late_s=late, edge=edge, release_s=release, margin_s=margin, rule=rule)
+        edges = np.split(edge, bounds)
+        found = []
+        for k in range(len(LEVELS)):
+            mine, count = level == k, len(faults.feed)
+            which = np.full(len(faults.feeds), NO_EDGE, np.int64)
+            which[feeds[k]] = edges[k]
+            whole_rule = np.full(count, CURVES, np.int64)
+            whole_rule[rows[mine]] = rule[mine]
+            found.append(
+                Stage(
+                    late_s=times[k],
+                    edge=which,
+                    release_s=_spread(rows[mine], release[mine], count),
+                    margin_s=_spread(rows[mine], margin[mine], count),
+                    rule=whole_rule,
+                )
+            )
+        return found
+
+    def _at_levels(self, rows: IntArray, level: IntArray) -> Currents:
+        """Return the currents of rows, each at its own level; levels ascend."""
+        return joined([self.faults.currents(rows[level == k], k) for k in range(len(LEVELS))])
 
     def at_parts(self, rows: IntArray, part: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Return the margins of some rows for faults between the least (0) and the greatest (1).

@@ -139,7 +139,7 @@ class ModePairing:
             kind = np.array([PAIR_KINDS.index(k) for k in kinds], np.int64)
         self.kind = kind
         self.margins = ModeMargins(faults, openers, self.mode_rules, needed_s)
-        self.stages = [self.margins.stage(level) for level in range(len(LEVELS))]
+        self.stages = self.margins.stages()
         self.rows = self.margins.behind
         fused = np.isfinite(openers.melts_a2s[faults.station[self.rows]])
         self.needed_s = np.where(fused, 0.0, needed_s)
