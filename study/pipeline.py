@@ -14,6 +14,7 @@ if TYPE_CHECKING:
 
     from study.analyses.balance import BalanceOptions
     from study.analyses.cable_protection import CableOptions
+    from study.analyses.dips_options import DipOptions
     from study.analyses.grading_options import GradingOptions
     from study.analyses.sharing_options import SharingOptions
     from study.checks.limits import Limits
@@ -78,6 +79,7 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     """
     from study.analyses.balance import load_balance
     from study.analyses.cable_protection import cable_protection
+    from study.analyses.dips_simulation import simulate_cases
     from study.analyses.fault_ratings import fault_ratings
     from study.analyses.generator_protection import generator_protection
     from study.analyses.grading import grading
@@ -90,7 +92,9 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     from study.network.network import build_network, mode_network
     from study.report.content import StudyOutcome
     from study.report.methods import METHODS
+    from study.report.methods_dips import DIPS_METHODS
     from study.report.methods_protection import PROTECTION_METHODS
+    from study.results.dips import DipsResult
 
     limits = limits_in_force(plant.acceptance)
     network = build_network(plant)
@@ -117,6 +121,8 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     _tell(progress, "cables and the sets' protection")
     devices = protection_devices(plant)
     cables = cable_protection(plant, devices, flow, faults, _cable_options(limits))
+    _tell(progress, "events in time")
+    cases = simulate_cases(networks, p_kw, q_kvar, _dip_options(limits), progress=progress)
     outcome = StudyOutcome(
         plant=plant,
         balance=balance,
@@ -127,10 +133,11 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
         fault_ratings=ratings,
         grading=graded,
         cables=cables,
+        dips=DipsResult(estimates=(), largest=(), cases=cases),
         set_protection=generator_protection(plant, devices, flow, faults),
         verdicts=(),
         limits=tuple(limits.by_key[key] for key in USED_LIMITS),
-        methods=(*METHODS, *PROTECTION_METHODS),
+        methods=(*METHODS, *PROTECTION_METHODS, *DIPS_METHODS),
         tool_version=tool_version(),
     )
     return _judged(outcome, limits)
@@ -185,6 +192,13 @@ USED_LIMITS = (
     "set_overload_time",
     "set_short_time",
     "set_differential",
+    "transient_low",
+    "transient_high",
+    "recovery_time",
+    "voltage_recovery_band",
+    "transient_frequency",
+    "frequency_recovery",
+    "frequency_recovery_band",
 )
 
 
@@ -193,6 +207,7 @@ def _judged(outcome: StudyOutcome, limits: Limits) -> StudyOutcome:
 
     from study.checks.cables import judge_cables
     from study.checks.capacity import judge_capacity
+    from study.checks.dips import judge_dips
     from study.checks.discrimination import judge_discrimination
     from study.checks.fault_ratings import judge_fault_ratings
     from study.checks.generator_protection import judge_generator_protection
@@ -214,6 +229,7 @@ def _judged(outcome: StudyOutcome, limits: Limits) -> StudyOutcome:
             *(judge_discrimination(plant, graded, limits) if graded is not None else ()),
             *(judge_cables(plant, cables, limits) if cables is not None else ()),
             *(judge_generator_protection(plant, sets, limits) if sets is not None else ()),
+            *(judge_dips(plant, outcome.dips, limits) if outcome.dips is not None else ()),
         ),
     )
 
@@ -236,6 +252,17 @@ def _cable_options(limits: Limits) -> CableOptions:
     return CableOptions(
         drop_limit_pu=limits.fraction("cable_drop"),
         trip_factor=limits.fraction("cable_overload_trip"),
+    )
+
+
+def _dip_options(limits: Limits) -> DipOptions:
+    from study.analyses.dips_options import DipOptions
+
+    return DipOptions(
+        dip_allowed_pu=limits.fraction("transient_low"),
+        rise_allowed_pu=limits.fraction("transient_high"),
+        recovery_band_pu=limits.fraction("voltage_recovery_band"),
+        frequency_band_pu=limits.fraction("frequency_recovery_band"),
     )
 
 

@@ -8,6 +8,7 @@ from study.report.tables_assumptions import assumption_tables
 from study.report.tables_balance import balance_tables
 from study.report.tables_branches import branch_tables
 from study.report.tables_cables import cable_tables
+from study.report.tables_dips import dips_tables
 from study.report.tables_fault_ratings import fault_rating_tables
 from study.report.tables_generator_protection import generator_protection_tables
 from study.report.tables_grading import grading_tables
@@ -51,6 +52,7 @@ def all_tables(outcome: StudyOutcome) -> dict[str, Table]:
         *fault_rating_tables(outcome),
         *grading_tables(outcome),
         *_protection(outcome),
+        *dips_tables(outcome),
         *assumption_tables(outcome),
     )
     found = {table.key: table for table in tables}

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from study.report.charts_balance import load_by_service, set_loading
+from study.report.charts_dips import dips_figures
 from study.report.charts_fault_ratings import fault_rating_figures
 from study.report.charts_sharing import case_figures, sharing_figures
 from study.report.charts_short_circuit import short_circuit_figures
@@ -24,6 +25,7 @@ class Figures:
     regulation: tuple[Drawing, ...]
     short_circuit: tuple[Drawing, ...]
     fault_ratings: tuple[Drawing, ...]
+    dips: tuple[Drawing, ...]
 
     @property
     def every(self) -> tuple[Drawing, ...]:
@@ -36,6 +38,7 @@ class Figures:
             *self.regulation,
             *self.short_circuit,
             *self.fault_ratings,
+            *self.dips,
         )
 
 
@@ -61,6 +64,7 @@ def draw_figures(outcome: StudyOutcome) -> Figures:
             regulation=regulation_figures(outcome),
             short_circuit=short_circuit_figures(outcome),
             fault_ratings=fault_rating_figures(outcome),
+            dips=dips_figures(outcome),
         )
 
 

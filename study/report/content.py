@@ -11,6 +11,7 @@ from study.checks.verdict import STATUS_ORDER, Status, Verdict
 from study.model.plant import Plant
 from study.results.balance import BalanceResult
 from study.results.cable_protection import CableProtectionResult
+from study.results.dips import DipsResult
 from study.results.fault_ratings import FaultRatingsResult
 from study.results.generator_protection import GeneratorProtectionResult
 from study.results.grading import GradingResult
@@ -31,7 +32,7 @@ class StudyOutcome:
 
     ``methods`` holds one sentence for each method, with its standard, clause and range of use; a verdict
     with an empty mode is about the vessel itself. ``short_circuit``, ``fault_ratings``, ``grading``,
-    ``cables`` and ``set_protection`` are None in a study without them.
+    ``cables``, ``set_protection`` and ``dips`` are None in a study without them.
     """
 
     plant: Plant
@@ -48,6 +49,7 @@ class StudyOutcome:
     grading: GradingResult | None = None
     cables: CableProtectionResult | None = None
     set_protection: GeneratorProtectionResult | None = None
+    dips: DipsResult | None = None
 
     @property
     def modes(self) -> tuple[str, ...]:

@@ -239,6 +239,21 @@ def _decay(book: Any, sheet: Any, place: Place) -> None:
         _insert(sheet, chart, place, width=560, down=number)
 
 
+def _dips(book: Any, sheet: Any, place: Place) -> None:
+    table = place.table
+    for number, (first, last) in enumerate(_blocks(table, _BLOCK_KEYS[table.key])):
+        lines = (
+            ("Voltage [% of nominal]", (("u_percent", "board judged"), ("u_worst_percent", "worst board"))),
+            ("Frequency [Hz]", (("f_hz", "frequency"),)),
+        )
+        for side, (axis, series) in enumerate(lines):
+            chart = book.add_chart({"type": "scatter", "subtype": "straight"})
+            for i, (key, name) in enumerate(series):
+                _line(chart, place, (first, last), ("time_s", key), name=name, i=i)
+            _dress(chart, str(table.column("case")[first]), "Time [s]", axis)
+            _insert(sheet, chart, place, width=440, down=number, across=side)
+
+
 def _line(
     chart: Any,
     place: Place,
@@ -317,6 +332,7 @@ _BLOCK_KEYS: Final[dict[str, tuple[str, ...]]] = {
     "setting_lines": ("mode", "island"),
     "inherent_curves": ("genset",),
     "fault_decay": ("board",),
+    "dips_traces": ("case",),
 }
 _SHORT: Final = ("load_balance_islands", "set_loading", "boards", "board_ratings")
 _WITHOUT_GAPS: Final = {"board_ratings": "rated_peak_ka"}
@@ -337,6 +353,7 @@ _CHARTS: Final[dict[str, Callable[[Any, Any, Place], None]]] = {
     "regulation_curves": _regulation,
     "inherent_curves": _inherent,
     "fault_decay": _decay,
+    "dips_traces": _dips,
     "board_ratings": _bars(
         "Peak current [kA]", ("limited_peak_ka", "greatest peak"), ("rated_peak_ka", "rated peak withstand")
     ),

@@ -25,6 +25,7 @@ _SECTIONS: Final = (
     ("short-circuit", "Short-circuit"),
     ("grading", "Grading"),
     ("cables", "Cables"),
+    ("dips", "Voltage dips and recovery"),
     ("comparing", "Comparing modes"),
     ("assumptions", "Assumptions, limits and methods"),
     ("not-covered", "Not covered"),
@@ -44,6 +45,8 @@ _NOT_ON_THE_PAGE = (
     "fault_decay",
     "fault_simulation_curves",
     "setting_list",
+    "dips_traces",
+    "dips_set_traces",
 )
 """Tables that the page shows as sentences, grid or figures, or leaves to the result sheets."""
 _ON_SHEET_ONLY: Final[dict[str, tuple[str, ...]]] = {
@@ -148,6 +151,7 @@ def _sections(outcome: StudyOutcome) -> list[tuple[str, str]]:
         "short-circuit": outcome.short_circuit,
         "grading": outcome.grading,
         "cables": outcome.cables,
+        "dips": outcome.dips,
     }
     return [(key, title) for key, title in _SECTIONS if given.get(key, outcome) is not None]
 

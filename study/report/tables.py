@@ -35,6 +35,7 @@ SHEETS: Final = (
     "R Fault ratings",
     "R Grading",
     "R Cables",
+    "R Voltage dips",
     "R Assumptions",
 )
 

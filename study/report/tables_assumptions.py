@@ -13,11 +13,13 @@ _SHORT_CIRCUIT: Final = (
     "Short-circuit currents",
     "Not computed yet; ratings of boards and devices are not judged.",
 )
+_GRADING: Final = ("Grading of protective devices", "Not computed; settings are not judged.")
+_DIPS: Final = ("Voltage and frequency dips", "Events are not simulated.")
 NOT_COVERED: Final = (
     ("One-line diagram", "Not drawn yet."),
     _SHORT_CIRCUIT,
-    ("Grading of protective devices", "Not computed yet; settings are not judged."),
-    ("Voltage and frequency dips", "Starting of large motors and load steps is not simulated yet."),
+    _GRADING,
+    _DIPS,
     ("Harmonic distortion", "Not computed yet."),
     (
         "Comparison of two revisions of the workbook",
@@ -137,7 +139,12 @@ def not_covered(outcome: StudyOutcome) -> tuple[tuple[str, str], ...]:
     tuple of (str, str)
         Subject and remark.
     """
-    return tuple(row for row in NOT_COVERED if outcome.short_circuit is None or row is not _SHORT_CIRCUIT)
+    covered = {
+        _SHORT_CIRCUIT: outcome.short_circuit,
+        _GRADING: outcome.grading,
+        _DIPS: outcome.dips,
+    }
+    return tuple(row for row in NOT_COVERED if covered.get(row) is None)
 
 
 def not_covered_table(outcome: StudyOutcome) -> Table:
