@@ -88,7 +88,8 @@ def device_surroundings(plant: Plant) -> DeviceSurroundings:
     differential: dict[str, list[str]] = {}
     for function in plant.protection_functions:
         if function.kind == "differential":
-            for where in {function.equipment, function.trips or ""}:
+            opens = {name.strip() for name in (function.trips or "").split(",")}
+            for where in {function.equipment, *opens} - {""}:
                 differential.setdefault(where, []).append(function.name)
     return DeviceSurroundings(
         curves={name: tuple(points) for name, points in curves.items()},

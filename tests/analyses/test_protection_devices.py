@@ -100,7 +100,7 @@ def test_a_relay_opens_the_breaker_that_has_no_settings() -> None:
                       ct_primary_a=600.0, ct_secondary_a=1.0, **relay, **timing),
         protection_functions=[
             ProtectionFunction(name="87", equipment="C1", cell="", kind="differential", pick_up=20.0,
-                               unit="%", delay_s=0.05, trips="Q1")
+                               unit="%", delay_s=0.05, trips="Q9, Q1")
         ],
     )  # fmt: skip
     assert (found.name, found.opened_by, found.direction, found.zone) == ("Q1", "R1", "forward", "MSB")
