@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cache
 
 import numpy as np
 
@@ -117,6 +118,7 @@ def _spare_kw(batch: BatchSolution, island: int) -> float:
     return float(most - batch.source_p_kw[0, sets].sum())
 
 
+@cache
 def _usual(method: str, f_hz: float) -> _Usual:
     hz = 50.0 if f_hz < 55.0 else 60.0
     s, cos_phi = np.empty(len(GRID_KW)), np.empty(len(GRID_KW))

@@ -26,7 +26,6 @@ from study.network.dynamics_motors import (
 from study.network.dynamics_sources import SourceRows, following, source_rows
 from study.network.lumping import FLOOR_PU, Lumped, lump
 from study.network.network import ModeNetwork
-from study.network.topology import Topology
 
 FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
@@ -164,6 +163,12 @@ def build_model(batch: BatchSolution, plan: Plan) -> Model:
     return _Builder(batch=batch, plan=plan, lumped=lumped, rows=rows, places=places, running=running).model()
 
 
+def _node_of_load(at: ModeNetwork, name: str) -> int:
+    """Return the node that feeds a consumer in the mode, that of its second feed where it hangs on that."""
+    number = next(n for n, x in enumerate(at.network.plant.loads) if x.name == name)
+    return int(at.view.load_node[number])
+
+
 def place_of(at: ModeNetwork, drive: Drive) -> tuple[int, complex]:
     """Return the bus that a motor hangs on, and the impedance of its own run (0 for none), per unit.
 
@@ -172,28 +177,19 @@ def place_of(at: ModeNetwork, drive: Drive) -> tuple[int, complex]:
     SolveError
         The motor is not fed in this mode.
     """
-    topology, network = at.network.topology, at.network
-    node = topology.node_of[drive.load.name]
-    own = [
-        k for k in at.live if topology.branches[k].load == drive.load.name and node in _ends(topology, int(k))
-    ]
+    topology = at.network.topology
+    node, branches = _node_of_load(at, drive.load.name), network.branches
+    at_node = (branches.from_node[at.live] == node) | (branches.to_node[at.live] == node)
+    own = [int(k) for k in at.live[at_node] if topology.branches[k].load == drive.load.name]
     if not own:
         bus = int(at.bus_of_node[node])
         if bus < 0:
             raise SolveError(f"{at.mode.name}: {drive.load.name} is not fed")
         return bus, 0j
-    branches, y = network.branches, 0j
-    k = int(own[0])
-    for n in own:
-        y += drive.units / complex(branches.r_pu[n], branches.x_pu[n])
-    ends = _ends(topology, k)
-    other = ends[0] if ends[1] == node else ends[1]
+    y = sum(drive.units / complex(branches.r_pu[k], branches.x_pu[k]) for k in own)
+    first = topology.branches[own[0]]
+    other = first.from_node if first.to_node == node else first.to_node
     return int(at.bus_of_node[other]), 1.0 / y
-
-
-def _ends(topology: Topology, k: int) -> tuple[int, int]:
-    branch = topology.branches[k]
-    return branch.from_node, branch.to_node
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

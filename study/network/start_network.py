@@ -36,8 +36,8 @@ class StartNetwork:
     z_without: ComplexArray
 
 
-def source_impedance(batch: BatchSolution, *, first_cycle: bool) -> ComplexArray:
-    """Return what each source is behind, [source]; infinite for converters that follow the grid.
+def source_admittances(batch: BatchSolution, *, first_cycle: bool) -> ComplexArray:
+    """Return the admittance that each source's e.m.f. is behind, [source].
 
     Parameters
     ----------
@@ -49,19 +49,19 @@ def source_impedance(batch: BatchSolution, *, first_cycle: bool) -> ComplexArray
     Returns
     -------
     ndarray
-        Impedance. [pu of the network]
+        0 for converters that follow the grid: they keep their current. [pu of the network]
     """
     plant = batch.at.network.plant
 
     def own(s: Source) -> complex:
         if s.machine is not None:
             m = plant.genset(s.name).machine
-            return complex(m.r_stator_pu, m.x_d2_pu if first_cycle else m.x_d1_pu)
+            return 1.0 / complex(m.r_stator_pu, m.x_d2_pu if first_cycle else m.x_d1_pu)
         if s.kind == "shore supply":
-            return complex(s.r_pu, s.xc_pu) or 1j * STIFF_X_PU
-        return complex(np.inf) if s.law == Law.REACTIVE_POWER else 1j * CONVERTER_X_PU
+            return 1.0 / (complex(s.r_pu, s.xc_pu) or 1j * STIFF_X_PU)
+        return 0j if s.law == Law.REACTIVE_POWER else 1.0 / (1j * CONVERTER_X_PU)
 
-    to_network = batch.laws.to_own_i[:, 0] / batch.laws.to_own_v[:, 0]
+    to_network = batch.laws.to_own_v[:, 0] / batch.laws.to_own_i[:, 0]
     return np.asarray(np.array([own(s) for s in batch.at.sources], complex) * to_network, complex)
 
 
@@ -89,9 +89,9 @@ def start_network(
     at, v = batch.at, batch.v_bus_pu[0]
     structure, ports = at.structure, at.structure.ports
     n = structure.buses
-    z_source = source_impedance(batch, first_cycle=first_cycle)
     bare = np.asarray(structure.admittance.toarray(), complex)
-    np.add.at(bare, (structure.source_bus, structure.source_bus), 1.0 / z_source)
+    y_source = source_admittances(batch, first_cycle=first_cycle)
+    np.add.at(bare, (structure.source_bus, structure.source_bus), y_source)
     loads = _load_admittances(batch, load)
     with_loads = bare.copy()
     with_loads[np.arange(n), np.arange(n)] += loads[:n]

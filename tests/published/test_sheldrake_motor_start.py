@@ -1,14 +1,14 @@
 """Motor start of the handbook's appendix G, every printed figure, from a workbook to the result.
 
-Source: D. J. Sheldrake, Handbook of Electrical Engineering, Wiley 2003, appendix G: generator 3125 kVA, 13.8 kV,
-0.02 + j0.25 pu; transformer 3150 kVA, 13.2/4.0 kV, 0.7 + j6.0 %; motor 500 kW, 4 kV, efficiency 95 %, power
-factor 0.88, starting with 5 times its current at 0.25; its cable 0.00844 + j0.003175 pu on 3125 kVA. Standing
-loads 900 kW at 0.9 and 500 kW at 0.85 are impedances at 1 pu. Voltages are per unit of 13.8 kV, and of
-13.8 x 4.0/13.2 = 4.1818 kV on the low side.
+Source: D. J. Sheldrake, Handbook of Electrical Engineering, Wiley 2003, appendix G: generator 3125 kVA,
+13.8 kV, 0.02 + j0.25 pu; transformer 3150 kVA, 13.2/4.0 kV, 0.7 + j6.0 %; motor 500 kW, 4 kV, efficiency
+95 %, power factor 0.88, starting with 5 times its current at 0.25; its cable 0.00844 + j0.003175 pu on 3125 kVA.
+Standing loads 900 kW at 0.9 and 500 kW at 0.85 are impedances at 1 pu. Voltages are per unit of 13.8 kV, and
+of 13.8 x 4.0/13.2 = 4.1818 kV on the low side.
 
-The standing load at the generator is not on the page that was read: it follows from the printed impedance. The
-page gives the cable as 1500 m of 70 mm2 with 0.343 and 0.129 ohm/km as well, which is not that pu: the length is
-taken here that makes it so (138 m, for both parts).
+The standing load at the generator is not on the page that was read: it follows from the printed impedance.
+The page gives the cable as 1500 m of 70 mm2 with 0.343 and 0.129 ohm/km as well, which is not that pu: the
+length is taken here that makes it so (138 m, for both parts).
 The tolerance is half of the last printed digit.
 """
 
@@ -39,9 +39,9 @@ def _tables():
     genset = {
         "Genset": "G", "Board": "GB", "Rated apparent power [kVA]": BASE_KVA, "Rated power factor": 0.8,
         "Rated voltage [V]": 13_800.0, "Engine power [kW]": 2700.0, "Alternator efficiency [%]": 96.0,
-        "Service": "main", "Xd [pu]": 2.0, "Xd' [pu]": 0.25, "Xd'' [pu]": 0.16, "Stator resistance [pu]": 0.02,
-        "Field supply": "permanent magnet", "No-load voltage [%]": 100.0, "Regulator mode": "no droop",
-        "Voltage droop [%]": 0.0,
+        "Service": "main", "Xd [pu]": 2.0, "Xd' [pu]": 0.25, "Xd'' [pu]": 0.16,
+        "Stator resistance [pu]": 0.02, "Field supply": "permanent magnet",
+        "No-load voltage [%]": 100.0, "Regulator mode": "no droop", "Voltage droop [%]": 0.0,
     }  # fmt: skip
     transformer = {
         "Transformer": "T", "From": "GB", "To": "MCC", "Rated power [kVA]": 3150.0,
@@ -143,7 +143,7 @@ def test_other_laws_of_the_load_before_dip_deeper(estimate):
     assert impedance > current > power
 
 
-SET, LOAD = 0.02 + 0.25j, None
+SET = 0.02 + 0.25j
 
 
 def _standing(kw, cos_phi):
