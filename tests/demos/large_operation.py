@@ -162,7 +162,7 @@ def _protection(book: Book) -> None:
         "Protection functions",
         "Function|Equipment|Kind|Pick-up|Unit|Delay [s]|Trips",
         *[(f"{n} loss of excitation", n, "loss of excitation", 40, "%", 3, f"Q-{n}") for n in sets],
-        *[(f"{n} differential", n, "differential", 20, "%", 0.05, f"Q-{n}") for n in sets],
+        *[(f"{n} differential", n, "differential", 20, "%", 0.05, f"Q-{n}") for n in (*sets, "HG")],
         *[
             (f"MV-{n} differential", f"MV-{n}", "differential", 20, "%", 0.05, opens)
             for n, opens in (
