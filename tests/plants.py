@@ -350,6 +350,8 @@ def reactor(name: str, from_board: str, to_board: str, **changes: Any) -> Reacto
         rated_current_a=1000.0,
         x_ohm=0.02,
         r_ohm=0.0005,
+        short_time_ka=None,
+        short_time_duration_s=None,
     )
     return replace(start, **changes)
 

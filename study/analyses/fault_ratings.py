@@ -1,4 +1,4 @@
-"""Everything that must survive a fault, in every mode: boards, breakers, fuses, cables, ties, resistors."""
+"""Everything that must survive a fault, in every mode: boards, devices, cables, ties, transformers, reactors."""
 
 from __future__ import annotations
 
@@ -15,6 +15,7 @@ from study.analyses.fault_ratings_sides import (
     sides_of,
     source_of_devices,
 )
+from study.analyses.fault_ratings_through import through_ratings
 from study.analyses.fault_ratings_unknown import unknown_sustained
 from study.model.plant import Plant
 from study.results.fault_ratings import FaultRatingsResult
@@ -62,6 +63,7 @@ def fault_ratings(plant: Plant, short_circuit: ShortCircuitResult) -> FaultRatin
         clearing=clearing_ratings(plant, least, short_circuit),
         cables=cables,
         ties=ties,
+        through=through_ratings(plant, devices, short_circuit),
         resistors=resistor_ratings(plant, short_circuit),
         unknown=unknown_sustained(plant, short_circuit, least, (boards, breakers, cables, ties)),
         earth=earth_fault_rows(plant, short_circuit),

@@ -64,7 +64,7 @@ def unknown_sustained(
     protecting = protecting_devices(plant)
     columns = []
     for m, mode in enumerate(result.modes):
-        high, low = _fed(mode.maximum), _fed(mode.minimum)
+        high, low = fed_by_unknown(mode.maximum), fed_by_unknown(mode.minimum)
         at_board = high[place] & (place >= 0)
         at_device = high[mode.devices.place] & (mode.devices.place >= 0)
         far = mode.devices.far_place
@@ -108,8 +108,19 @@ def _unknown(mode: ModeShortCircuit) -> list[str]:
     return list(found)
 
 
-def _fed(case: FaultCase) -> BoolArray:
-    """Return the places to which sets of unknown sustained current give a part that counts; a last False."""
+def fed_by_unknown(case: FaultCase) -> BoolArray:
+    """Return the places to which sets of unknown sustained current give a part that counts.
+
+    Parameters
+    ----------
+    case : FaultCase
+        Of one mode.
+
+    Returns
+    -------
+    ndarray of bool, shape (place + 1,)
+        The last is False, for no place.
+    """
     unknown = ~case.sources.sustained_known & np.array([k == "genset" for k in case.sources.kinds], bool)
     transient = case.parts.transient_a
     part = transient[:, unknown].sum(axis=1)

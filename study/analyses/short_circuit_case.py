@@ -150,6 +150,7 @@ class _Assembler:
         initial = parts.subtransient_a
         ac, dc = sums_at(parts, self.ends_s, times)
         ac2 = ac_sums_at(two_phase, self.ends_s, times)
+        ac2[~(two_phase.subtransient_a.sum(axis=1) > 0.0)] = np.nan
         ac1 = np.full_like(ac, np.nan)
         if earth is not None:
             ac1 = ac_sums_at(earth, self.ends_s, times)

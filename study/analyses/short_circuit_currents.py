@@ -120,7 +120,8 @@ def solve_stages(net: FaultNetwork, lasting: Stages | None = None) -> Stages:
             ),
         ),
         held_voltage=_held_voltage(net, keeps),
-        negative=solve_stage(net, s.negative, s.negative - s.lead, everyone),
+        # A converter has no negative sequence; its limit is taken to hold for every kind of fault.
+        negative=solve_stage(net, s.negative, s.negative - s.lead, s.limit == 0.0),
     )
 
 

@@ -10,6 +10,7 @@ import numpy as np
 from study.checks.fault_ratings_clearing import judge_clearing
 from study.checks.fault_ratings_devices import judge_devices
 from study.checks.fault_ratings_earth import judge_earth_faults
+from study.checks.fault_ratings_through import judge_through_faults
 from study.checks.fault_ratings_verdict import rating_verdict
 from study.checks.limits import Limits
 from study.checks.verdict import Verdict
@@ -46,6 +47,7 @@ def judge_fault_ratings(plant: Plant, result: FaultRatingsResult, limits: Limits
         verdicts += judge_devices(plant, result, mode, limits)
         verdicts += _cables(plant, result, mode, limits)
         verdicts += _ties(plant, result, mode, limits)
+        verdicts += judge_through_faults(plant, result, mode, limits)
         verdicts += judge_clearing(plant, result, mode, limits)
     verdicts += judge_earth_faults(plant, result, limits)
     return tuple(verdicts)

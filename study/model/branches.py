@@ -138,7 +138,7 @@ class Tie:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Reactor:
-    """A series reactor between two boards of one voltage."""
+    """A series reactor between two boards of one voltage; None: its short-time rating is not known."""
 
     name: str
     from_board: str
@@ -147,6 +147,8 @@ class Reactor:
     rated_current_a: float
     x_ohm: float
     r_ohm: float
+    short_time_ka: float | None
+    short_time_duration_s: float | None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -36,6 +36,7 @@ from study.report.tables import (
 from study.report.tables_fault_clearing import cables_table, clearing_table
 from study.report.tables_fault_devices import device_tables
 from study.report.tables_fault_earth import detection_table, resistors_table
+from study.report.tables_fault_through import through_table
 from study.report.tables_verdicts import JUDGED_COLUMNS, judged_values
 from study.results.fault_ratings import BoardRatings, FaultRatingsResult, TieRatings
 
@@ -67,6 +68,7 @@ def fault_rating_tables(outcome: StudyOutcome) -> tuple[Table, ...]:
         clearing_table(ratings, cells),
         cables_table(ratings, cells),
         ties_table(ratings, cells),
+        through_table(ratings, cells),
         resistors_table(ratings, cells),
         detection_table(outcome, ratings),
     )

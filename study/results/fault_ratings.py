@@ -188,6 +188,36 @@ class TieRatings:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class ThroughRatings:
+    """Transformers by pair of windings, then reactors in either direction: a fault at the far end.
+
+    [piece]: ``behind`` is the board there, ``words`` the winding of a three-winding transformer ("" for
+    others), ``kinds`` transformer or reactor; ``withstand_ka`` the r.m.s. current that it withstands for
+    ``duration_s``, ``rated_peak_ka`` the first peak (NaN: not given). [piece, mode], at the voltage of the
+    far end: ``initial_ka`` I''k through it, ``peak_ka`` at T/2, ``heat_ka`` the constant current over the
+    duration with the same I²t until ``device`` (by its place in the workbook's order, -1: none that sees it)
+    has cleared after ``clearing_s``. ``rests_on_unknown`` True where that rests on a sustained current that
+    is not given.
+    """
+
+    names: tuple[str, ...]
+    behind: tuple[str, ...]
+    words: tuple[str, ...]
+    kinds: tuple[str, ...]
+    withstand_ka: FloatArray
+    duration_s: FloatArray
+    rated_peak_ka: FloatArray
+    live: BoolArray
+    initial_ka: FloatArray
+    heat_ka: FloatArray
+    peak_ka: FloatArray
+    device: IntArray
+    clearing_s: FloatArray
+    rests_on_unknown: BoolArray
+    worst_mode: IntArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class ResistorRatings:
     """Neutral resistors, one for each board that has one.
 
@@ -251,6 +281,7 @@ class FaultRatingsResult:
     clearing: ClearingRatings
     cables: CableRatings
     ties: TieRatings
+    through: ThroughRatings
     resistors: ResistorRatings
     unknown: UnknownSustained
     earth: tuple[EarthFaultRow, ...]

@@ -278,6 +278,14 @@ REACTORS = SheetSpec(
             "Resistance", "ohm", "r_ohm", between(0.0, 100.0), "of one phase",
             **derived(rule.reactor_resistance, "a fiftieth of the reactance", PRACTICE),
         ),
+        number(
+            "Short-time current", "kA", "short_time_ka", KILOAMPERES,
+            "rated thermal short-time current, maker's figure; blank: unknown", **UNKNOWN,
+        ),
+        number(
+            "Short-time duration", "s", "short_time_duration_s", above(0.0, 60.0),
+            "of the short-time current; blank: unknown", **UNKNOWN,
+        ),
     ),
 )  # fmt: skip
 

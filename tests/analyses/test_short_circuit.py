@@ -145,6 +145,25 @@ def test_a_converter_supply_gives_its_limit_and_no_direct_component():
     assert mode.maximum.iac_a[k][times <= 0.5] == pytest.approx(limit)
 
 
+def test_converters_alone_feed_several_boards_and_have_no_two_phase_fault_of_their_own():
+    """No negative sequence: the least fault is the three-phase one, the limit, for as long as it lasts."""
+    supply = plants.converter_supply("BATT", "MSB", short_circuit_current=1.5, short_circuit_duration_s=0.5)
+    plant = plants.plant(
+        boards=[plants.board(n, 450.0) for n in ("MSB", "DB", "DB 2")],
+        converter_supplies=[supply],
+        cables=[plants.cable("C1", "MSB", "DB"), plants.cable("C2", "DB", "DB 2")],
+    )
+    result = study(plant)
+    limit = 1.5 * 500e3 / (SQRT3 * 450.0)
+    for name in ("MSB", "DB", "DB 2"):
+        k, mode = at(result, name)
+        assert mode.minimum.ik_initial_a[k] == pytest.approx(limit)
+        assert np.isnan(mode.minimum.iac_2ph_a[k]).all()
+        soon, late = (int(np.argmin(np.abs(mode.minimum.time_s - t))) for t in (0.1, 1.0))
+        assert mode.minimum.least_a[k, [soon, late]] == pytest.approx([limit, 0.0])
+        assert mode.one_set.least_100ms_a[k] == pytest.approx(limit)
+
+
 def test_a_shore_supply_gives_its_fault_level():
     shore = plants.shore("Shore", "MSB", fault_level_max_mva=15.0, fault_level_min_mva=8.0)
     plant = plants.plant(boards=[plants.board("MSB")], shore_supplies=[shore])

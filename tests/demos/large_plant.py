@@ -246,8 +246,12 @@ def _propulsion_transformer(book: Book, name: str, board: str, halves: tuple[str
 def _distribution(book: Book) -> None:
     book.add(
         "Reactors",
-        "Reactor|From|To|Rated current [A]|Reactance [ohm]|Resistance [ohm]",
-        *[(f"X-CRANE-{side}", f"LV690-{side}", f"CRANE-{side}", 1250, 0.012, 0.0003) for side, _ in SIDES],
+        "Reactor|From|To|Rated current [A]|Reactance [ohm]|Resistance [ohm]"
+        "|Short-time current [kA]|Short-time duration [s]",
+        *[
+            (f"X-CRANE-{side}", f"LV690-{side}", f"CRANE-{side}", 1250, 0.012, 0.0003, 25, 1)
+            for side, _ in SIDES
+        ],
     )
     for side, _ in SIDES:
         book.breaker(

@@ -18,6 +18,7 @@ from study.results.fault_ratings import (
     EarthFaultRow,
     FaultRatingsResult,
     ResistorRatings,
+    ThroughRatings,
     TieRatings,
     UnknownSustained,
 )
@@ -44,6 +45,7 @@ def fault_ratings(plant: Plant) -> FaultRatingsResult:
         clearing=_clearing(plant, len(modes)),
         cables=_cables(plant, len(modes)),
         ties=_ties(plant, len(modes)),
+        through=_through(len(modes)),
         resistors=ResistorRatings(
             boards=(plant.boards[0].name,),
             current_a=read_only([5.0]),
@@ -68,6 +70,28 @@ def fault_ratings(plant: Plant) -> FaultRatingsResult:
             )
             for mode in modes
         ),
+    )
+
+
+def _through(modes: int) -> ThroughRatings:
+    """Return a transformer, one whose fault nothing clears, and a reactor without a rating."""
+    live = np.ones((3, modes), bool)
+    return ThroughRatings(
+        names=("T1", "T2", "X1"),
+        behind=("DB", "DB", "DB"),
+        words=("", "secondary", ""),
+        kinds=("transformer", "transformer", "reactor"),
+        withstand_ka=read_only([20.0, 15.0, NAN]),
+        duration_s=read_only([2.0, 2.0, NAN]),
+        rated_peak_ka=read_only([45.00004, 38.0, NAN]),
+        live=read_only(live, bool),
+        initial_ka=read_only(_rows([18.0, 14.0, 9.0], modes)),
+        heat_ka=read_only(_rows([8.1, NAN, NAN], modes)),
+        peak_ka=read_only(_rows([45.0001, 30.0, 20.0], modes)),
+        device=read_only(np.outer([0, -1, -1], np.ones(modes)), np.int64),
+        clearing_s=read_only(np.outer([0.3, NAN, NAN], np.ones(modes))),
+        rests_on_unknown=read_only(~live, bool),
+        worst_mode=read_only([modes - 1] * 3, np.int64),
     )
 
 
