@@ -178,7 +178,7 @@ def place_of(at: ModeNetwork, drive: Drive) -> tuple[int, complex]:
         The motor is not fed in this mode.
     """
     topology = at.network.topology
-    node, branches = _node_of_load(at, drive.load.name), network.branches
+    node, branches = _node_of_load(at, drive.load.name), at.network.branches
     at_node = (branches.from_node[at.live] == node) | (branches.to_node[at.live] == node)
     own = [int(k) for k in at.live[at_node] if topology.branches[k].load == drive.load.name]
     if not own:
