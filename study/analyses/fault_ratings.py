@@ -1,4 +1,4 @@
-"""Everything that must survive a fault, in every mode: boards, devices, cables, ties, transformers, reactors."""
+"""Everything that must survive a fault: boards, devices, cables, ties, transformers, reactors, resistors."""
 
 from __future__ import annotations
 
