@@ -13,6 +13,7 @@ from study.results.dips import Recovery
 SETTLED_S = 0.5  # of the end over which a quantity is looked at
 SETTLED_BAND = 0.005  # of its value: within it it has settled
 EARLY_POINTS = 40
+SAME_TIME = 1e-9  # s
 
 
 def recovery_of(time_s: FloatArray, value: FloatArray, starts_s: Sequence[float], band: float) -> Recovery:
@@ -45,8 +46,8 @@ def recovery_of(time_s: FloatArray, value: FloatArray, starts_s: Sequence[float]
 
 
 def _window(time_s: FloatArray, value: FloatArray, start: float, end: float, band: float) -> Recovery:
-    first = int(np.searchsorted(time_s, start, side="left"))
-    last = int(np.searchsorted(time_s, end, side="left"))
+    first = int(np.searchsorted(time_s, start - SAME_TIME))
+    last = int(np.searchsorted(time_s, end - SAME_TIME))
     t, v = time_s[first : last + 1], value[first : last + 1]
     before = float(v[0])
     tail = v[t >= max(end - SETTLED_S, start)]
