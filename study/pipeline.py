@@ -79,6 +79,7 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     """
     from study.analyses.balance import load_balance
     from study.analyses.cable_protection import cable_protection
+    from study.analyses.dips_estimate import start_estimates
     from study.analyses.dips_simulation import simulate_cases
     from study.analyses.fault_ratings import fault_ratings
     from study.analyses.generator_protection import generator_protection
@@ -122,6 +123,7 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     devices = protection_devices(plant)
     cables = cable_protection(plant, devices, flow, faults, _cable_options(limits))
     _tell(progress, "events in time")
+    estimates, largest = start_estimates(networks, p_kw, q_kvar, _dip_options(limits))
     cases = simulate_cases(networks, p_kw, q_kvar, _dip_options(limits), progress=progress)
     outcome = StudyOutcome(
         plant=plant,
@@ -133,7 +135,7 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
         fault_ratings=ratings,
         grading=graded,
         cables=cables,
-        dips=DipsResult(estimates=(), largest=(), cases=cases),
+        dips=DipsResult(estimates=estimates, largest=largest, cases=cases),
         set_protection=generator_protection(plant, devices, flow, faults),
         verdicts=(),
         limits=tuple(limits.by_key[key] for key in USED_LIMITS),

@@ -18,6 +18,9 @@ JUDGED_KINDS: Final = frozenset(
 """Events of service; faults, faulty settings and the build-up of voltage have no transient limits."""
 _RUN_UP_PERCENT: Final = 90.0
 """Cage motors run above it at any load that they can drive for long."""
+_CURE_START: Final = (
+    "Run one set more before it starts, or start it with less current; simulate it as an Event."
+)
 _CURE: Final = "See the cures tried for this case; run one set more, or change how the motor is started."
 
 
@@ -39,13 +42,43 @@ def judge_dips(plant: Plant, result: DipsResult, limits: Limits) -> tuple[Verdic
     Returns
     -------
     tuple of Verdict
-        Subject ``dips``, one row for each case and quantity; equipment is the name of the case.
+        Subject ``dips``, one row for each case and quantity, equipment being the name of the case;
+        and the quick estimate of starts, equipment being the motor.
     """
-    return tuple(
+    starts = _starts(plant, result, limits)
+    cases = (
         verdict
         for case in result.cases
         for verdict in _Case(case, plant.project.f_rated_hz, limits).verdicts()
     )
+    return (*starts, *cases)
+
+
+def _starts(plant: Plant, result: DipsResult, limits: Limits) -> Iterator[Verdict]:
+    """Judge the quick estimate of the motors in use: all that dip too far, and the deepest of each mode."""
+    cells = {load.name: load.cell for load in plant.loads}
+    for mode in result.estimates:
+        demand = plant.mode(mode.mode).demand
+        used = [k for k, name in enumerate(mode.loads) if name in demand and demand[name].in_use > 0.0]
+        deepest = sorted(used, key=lambda k: -float(mode.dip_pu[k]))
+        judged = [
+            make_verdict(
+                mode=mode.mode,
+                subject=SUBJECT,
+                equipment=mode.loads[k],
+                quantity=f"dip of {mode.set_boards[k]} when it starts, quick estimate",
+                value=100.0 * float(mode.dip_pu[k]),
+                limit=limits.number("transient_low"),
+                unit="%",
+                close_margin=limits.fraction("close_margin"),
+                basis=limits.basis("transient_low"),
+                data_tolerance=limits.fraction("load_data_tolerance"),
+                cell=cells[mode.loads[k]],
+                remedy=_CURE_START,
+            )
+            for k in deepest
+        ]
+        yield from (v for n, v in enumerate(judged) if n == 0 or v.status == "exceeds")
 
 
 class _Case:

@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 DIPS_METHODS: tuple[str, ...] = (
+    "Quick estimate of starts: sets as a constant e.m.f. behind Ra + jX'd (X''d in the first cycle), the "
+    "motor at standstill behind its cable, the load before as impedance, constant current or constant power.",
     "Events in time: sets as machines of subtransient order with saturation (stator transients left out), "
     "each with its own excitation system, regulator, droop circuit and governor, motors with their "
     "slip, inertia and load torque, other consumers by kind; from the load flow of the mode to the new rest. "

@@ -16,6 +16,7 @@ from study.report.tables import (
     text_column,
     verdict_column,
 )
+from study.report.tables_dips_starts import start_tables
 from study.report.tables_dips_traces import trace_tables
 from study.results.dips import DipsResult, SimulatedCase
 
@@ -37,9 +38,10 @@ def dips_tables(outcome: StudyOutcome) -> tuple[Table, ...]:
         In the order of the page.
     """
     result = outcome.dips
-    if result is None or not result.cases:
+    if result is None:
         return ()
     return (
+        *start_tables(outcome.plant, result),
         cases_table(outcome, result),
         set_swings_table(result),
         motors_table(result),
