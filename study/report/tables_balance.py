@@ -30,7 +30,7 @@ _SHEET = "R Load balance"
 _SHORT_DUTY = {duty: duty[0].upper() for duty in DUTIES} | {
     f"{duty}, not fed": f"{duty[0].upper()} (not fed)" for duty in DUTIES
 }
-_PER_MODE = 9
+_PER_MODE = 10
 
 
 def balance_tables(outcome: StudyOutcome) -> tuple[Table, ...]:
@@ -77,7 +77,8 @@ def consumers_table(outcome: StudyOutcome) -> Table:
         footers=_consumer_footers(balance),
         notes=(
             "Duty: C continuous, I intermittent, O occasional. Rated and absorbed power are those of one "
-            "unit: shaft output for motors, input otherwise. The load factor refers to the absorbed power.",
+            "unit: shaft output for motors, input otherwise. The load factor refers to the absorbed power; "
+            "efficiency and cos φ are those at that load.",
             "kW and kvar are the input of all units in use at their part load; counted kW and kvar are these "
             f"times the simultaneity factor. Intermittent load without a factor of its own counts 1/"
             f"{quantity(balance.diversity, '')} (diversity {quantity(balance.diversity, '')}).",
@@ -102,6 +103,7 @@ def _consumer_columns(balance: BalanceResult) -> list[Column]:
             percent_column("load_factor_percent", "Load factor", group=mode, exact=True),
             text_column("duty", "Duty", group=mode, short=_SHORT_DUTY),
             percent_column("efficiency_percent", "Efficiency", group=mode),
+            Column(key="cos_phi", heading="cos φ", group=mode, most_decimals=2),
             Column(key="p_kw", heading="Power", unit="kW", group=mode, most_decimals=1),
             Column(key="q_kvar", heading="Reactive", unit="kvar", group=mode, most_decimals=1),
             percent_column("factor_percent", "Simultaneity", group=mode, most_decimals=0),
@@ -157,6 +159,7 @@ def _demand_cells(balance: BalanceResult, mode: int, load: int) -> list[Value]:
         percent(demand.load_factor[at]),
         duty if demand.fed[at] else f"{duty}, not fed",
         percent(demand.efficiency[at]),
+        float(demand.cos_phi[at]),
         float(demand.p_kw[at]),
         float(demand.q_kvar[at]),
         percent(demand.factor[at]),
@@ -173,16 +176,17 @@ def _subtotal_row(service: str, duty: int, balance: BalanceResult) -> tuple[Valu
             row += [None] * _PER_MODE
             continue
         at = mode.services.index(service), duty
-        row += [None] * 4 + [float(mode.p_connected_by_service_kw[at]), None, None]
+        row += [None] * 5 + [float(mode.p_connected_by_service_kw[at]), None, None]
         row += [float(mode.p_by_service_kw[at]), float(mode.q_by_service_kvar[at])]
     return tuple(row)
 
 
 def _total_row(balance: BalanceResult) -> tuple[Value, ...]:
-    row: list[Value] = ["Total counted", *[None] * 5]
+    row: list[Value] = ["Total", *[None] * 5]
     for name in balance.demand.modes:
         mode = _mode(balance, name)
-        row += [*[None] * 7, mode.p_total_kw, mode.q_total_kvar]
+        in_use_kw = float(mode.p_connected_by_service_kw.sum())
+        row += [*[None] * 5, in_use_kw, None, None, mode.p_total_kw, mode.q_total_kvar]
     return tuple(row)
 
 
@@ -196,7 +200,7 @@ def _consumer_footers(balance: BalanceResult) -> tuple[Footer, ...]:
         Footer(label="Apparent power", texts={n: quantity(m.s_total_kva, "kVA") for n, m in by_mode}),
         Footer(label="Sources on line", texts={n: _on_line(m) for n, m in by_mode}),
         Footer(
-            label="Load on sources on line, of kW and of kVA",
+            label="Loading of the sources on line, kW / kVA",
             texts={n: "; ".join(_loading(m, island) for island in m.islands) for n, m in by_mode},
         ),
         Footer(

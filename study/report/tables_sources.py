@@ -63,8 +63,8 @@ def islands_table(outcome: StudyOutcome) -> Table:
         Column(key="q_load_kvar", heading="Load", unit="kvar", most_decimals=1),
         Column(key="p_capacity_kw", heading="Capacity", unit="kW", most_decimals=1, exact=True),
         Column(key="s_capacity_kva", heading="Capacity", unit="kVA", most_decimals=1, exact=True),
-        percent_column("kw_loading_percent", "Load of kW", infinite=NO_SET),
-        percent_column("kva_loading_percent", "Load of kVA", infinite=NO_SET),
+        percent_column("kw_loading_percent", "kW loading", infinite=NO_SET),
+        percent_column("kva_loading_percent", "kVA loading", infinite=NO_SET),
         Column(key="spare_kw", heading="Spare", unit="kW", most_decimals=1),
         text_column("fewest_sets", "Fewest sets that carry the load", kind="long text"),
         text_column("largest_step_load", "Largest load switched"),
@@ -127,13 +127,13 @@ def _worked_lines(island: IslandBalance) -> tuple[WorkedLine, ...]:
     p, q = figure(island.p_load_kw, ""), figure(island.q_load_kvar, "")
     return (
         WorkedLine(
-            label="Load of kW",
+            label="kW loading",
             formula="load / capacity",
             figures=f"{p} kW / {figure(island.p_capacity_kw, 'kW')}",
             result=quantity(percent(island.kw_loading), "%"),
         ),
         WorkedLine(
-            label="Load of kVA",
+            label="kVA loading",
             formula="√(P² + Q²) / capacity",
             figures=f"√({p}² + {q}²) / {figure(island.s_capacity_kva, 'kVA')}",
             result=quantity(percent(island.kva_loading), "%"),
@@ -202,8 +202,8 @@ def loss_table(outcome: StudyOutcome) -> Table:
         Column(key="q_load_kvar", heading="Load", unit="kvar", most_decimals=1),
         Column(key="p_capacity_kw", heading="Capacity left", unit="kW", most_decimals=1, exact=True),
         Column(key="s_capacity_kva", heading="Capacity left", unit="kVA", most_decimals=1, exact=True),
-        percent_column("kw_loading_percent", "Load of kW", against=100.0, infinite=NO_SET),
-        percent_column("kva_loading_percent", "Load of kVA", against=100.0, infinite=NO_SET),
+        percent_column("kw_loading_percent", "kW loading", against=100.0, infinite=NO_SET),
+        percent_column("kva_loading_percent", "kVA loading", against=100.0, infinite=NO_SET),
         text_column("sets_left", "Sets left"),
         cell_column(),
     ]
@@ -245,8 +245,8 @@ def main_set_out_table(outcome: StudyOutcome) -> Table:
         Column(key="q_load_kvar", heading="Essential load", unit="kvar", most_decimals=1),
         Column(key="p_capacity_kw", heading="Capacity left", unit="kW", most_decimals=1, exact=True),
         Column(key="s_capacity_kva", heading="Capacity left", unit="kVA", most_decimals=1, exact=True),
-        percent_column("kw_loading_percent", "Load of kW", against=100.0, infinite=NO_SET),
-        percent_column("kva_loading_percent", "Load of kVA", against=100.0, infinite=NO_SET),
+        percent_column("kw_loading_percent", "kW loading", against=100.0, infinite=NO_SET),
+        percent_column("kva_loading_percent", "kVA loading", against=100.0, infinite=NO_SET),
     ]
     rows = [
         (
@@ -285,8 +285,8 @@ def emergency_table(outcome: StudyOutcome) -> Table:
         Column(key="q_load_kvar", heading="Load", unit="kvar", most_decimals=1),
         Column(key="p_rated_kw", heading="Rated", unit="kW", most_decimals=1, exact=True),
         Column(key="s_rated_kva", heading="Rated", unit="kVA", most_decimals=1, exact=True),
-        percent_column("kw_loading_percent", "Load of kW", against=100.0),
-        percent_column("kva_loading_percent", "Load of kVA", against=100.0),
+        percent_column("kw_loading_percent", "kW loading", against=100.0),
+        percent_column("kva_loading_percent", "kVA loading", against=100.0),
         Column(key="hours_required_h", heading="For at least", unit="h", most_decimals=0),
         text_column("basis", "Basis", kind="long text"),
         verdict_column(),
