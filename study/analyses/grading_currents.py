@@ -68,7 +68,7 @@ def between(low: Currents, high: Currents, x: FloatArray) -> Currents:
         logs = (1.0 - x) * np.log(np.where(there, a, 1.0)) + x * np.log(np.where(there, b, 1.0))
         return np.asarray(np.where(there, np.exp(logs), 0.0))
 
-    return Currents(ac_a=mixed(low.ac_a, high.ac_a), dc_a=(1.0 - x) * low.dc_a + x * high.dc_a)
+    return Currents(ac_a=mixed(low.ac_a, high.ac_a), dc_a=mixed(low.dc_a, high.dc_a))
 
 
 def grid_s(result: ShortCircuitResult, last_s: float) -> FloatArray:
