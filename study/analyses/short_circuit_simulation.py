@@ -16,7 +16,7 @@ from study.analyses.short_circuit_machines import participants_of
 from study.analyses.short_circuit_options import ShortCircuitOptions
 from study.analyses.short_circuit_totals import greatest_peaks, sums_at
 from study.formulas.fault_current import SQRT2, SQRT3, FaultCurrent
-from study.formulas.fault_iec61363_bias import BIAS_QUANTITIES, known_bias_percent
+from study.formulas.fault_iec61363_bias import BIAS_MOTORS_UP_TO, BIAS_QUANTITIES, known_bias_percent
 from study.formulas.park_plant import (
     PlantResponse,
     envelopes_a,
@@ -149,6 +149,8 @@ def simulate_fault(network: Network, mode: str, place: str) -> SimulatedFault:
         general_ik_initial_a=float(general.ik_3ph_a[row]),
         bias_low_percent=read_only(bias[:, 0]),
         bias_high_percent=read_only(bias[:, 1]),
+        motors_over_sets=_motors_over_sets(net, simulated),
+        motors_known_to=BIAS_MOTORS_UP_TO,
         left_out=tuple(
             s.name
             for s, taken, i in zip(net.sources.supplies, simulated, net.sources.island, strict=True)
@@ -157,6 +159,14 @@ def simulate_fault(network: Network, mode: str, place: str) -> SimulatedFault:
         **_machines_currents(response, float(static.base_a[static.place_node[row]]), hz),
         **_ship_currents(_ship(alone, row), hz),
     )
+
+
+def _motors_over_sets(net: FaultNetwork, simulated: NDArray[np.bool_]) -> float:
+    """Return the rated current of the motors over that of the synchronous machines, both in pu."""
+    s = net.sources
+    base = net.plant.base_a[np.array([x.node for x in s.supplies], np.int64)]
+    rated = np.array([x.rated_a for x in s.supplies]) / base * simulated
+    return float(rated[s.asynchronous].sum() / rated[~s.asynchronous].sum())
 
 
 def _machines_currents(response: PlantResponse, base_a: float, hz: float) -> dict[str, Any]:
@@ -204,8 +214,8 @@ def _times(hz: float) -> tuple[FloatArray, FloatArray]:
 
 def _not_simulated(mode: str, place: str, reason: str) -> SimulatedFault:
     names = [f.name for f in fields(SimulatedFault)]
-    series = [n for n in names if n.endswith("_percent") or n.endswith("_s") or n in _SERIES]
-    values: dict[str, Any] = {n: math.nan for n in names if n.endswith("_a")}
+    series = [n for n in names if n.endswith(("_percent", "_s")) or n in _SERIES]
+    values: dict[str, Any] = {n: math.nan for n in names if n.endswith(("_a", "_sets", "_known_to"))}
     values |= {n: read_only([]) for n in series}
     values |= {"cases": (), "cell": "", "mode": mode, "place": place, "behind": "", "left_out": ()}
     return SimulatedFault(**values, simulated=False, reason=reason)

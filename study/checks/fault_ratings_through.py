@@ -49,10 +49,7 @@ def _judged(
 ) -> Verdict:
     t, k = result.through, at[0]
     kind = t.kinds[k]
-    what = "peak" if peak else "heat until it is cleared"
-    rating = "its first peak" if peak else f"{t.duration_s[k]:g} s"
-    if not peak and math.isnan(t.duration_s[k]):
-        rating = "its short-time current"
+    what = "peak of a fault" if peak else "heat until cleared of a fault"
     basis = _TRANSFORMER if kind == "transformer" else _REACTOR
     if math.isnan(t.withstand_ka[k]):
         basis += "; its short-time current is not given"
@@ -61,7 +58,7 @@ def _judged(
     return rating_verdict(
         mode=result.modes[at[1]],
         equipment=t.names[k],
-        quantity=f"through-fault, {what}, fault on {t.behind[k]}, against {rating}",
+        quantity=f"{what} on {t.behind[k]}, through it",
         value=float((t.peak_ka if peak else t.heat_ka)[at]),
         limit=float((t.rated_peak_ka if peak else t.withstand_ka)[k]),
         limits=limits,

@@ -25,6 +25,8 @@ Band = tuple[float, float]
 BIAS_QUANTITIES: Final = ("Iac(T/2)", "Iac(0.1 s)", "peak at T/2", "greatest peak")
 # One percent more is for what 10 000 plants did not reach.
 BIAS_TAIL_PERCENT: Final = 1.0
+# Rated current of motors over that of the sets, up to which plants were drawn.
+BIAS_MOTORS_UP_TO: Final = 0.6
 # Lowest and highest difference of the formula in each quantity; peaks against the true maximum.
 BIAS_PERCENT: Final[Mapping[tuple[str, str], tuple[Band, Band, Band, Band]]] = {
     ("board", "idle"): ((-6, 2), (-2, 1), (-10, 0), (-7, 1)),

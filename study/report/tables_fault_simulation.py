@@ -11,7 +11,7 @@ import numpy as np
 
 from study.report.fault_view import SHEET, ka, ka_column
 from study.report.findings import listed
-from study.report.numbers import figure, number, quantity
+from study.report.numbers import figure, number, percent, quantity
 from study.report.tables import (
     Column,
     Table,
@@ -50,11 +50,10 @@ class _Line:
         return 100.0 * (self.general_a / self.simulated_a - 1.0)
 
     @property
-    def remark(self) -> str:
-        """Whether the difference lies in the band."""
-        if math.isnan(self.low_percent) or self.low_percent <= self.ship_percent <= self.high_percent:
-            return ""
-        return "outside the known differences: the plant is unlike those they were measured on"
+    def outside(self) -> bool:
+        """Whether the difference lies outside its band."""
+        known = not math.isnan(self.low_percent)
+        return known and not self.low_percent <= self.ship_percent <= self.high_percent
 
 
 def _lines(fault: SimulatedFault) -> Iterator[_Line]:
@@ -139,7 +138,7 @@ def _rows(fault: SimulatedFault) -> Iterator[tuple[Value, ...]]:
     for k, line in enumerate(_lines(fault)):
         known = not math.isnan(line.low_percent)
         general = not math.isnan(line.general_a)
-        words = [line.remark, left_out if k == 0 else ""]
+        words = [_outside_words(fault) if line.outside else "", left_out if k == 0 else ""]
         yield (
             *head,
             line.quantity,
@@ -153,6 +152,16 @@ def _rows(fault: SimulatedFault) -> Iterator[tuple[Value, ...]]:
             "; ".join(w for w in words if w),
             fault.cell,
         )
+
+
+def _outside_words(fault: SimulatedFault) -> str:
+    words = "outside the known differences"
+    if fault.motors_over_sets > fault.motors_known_to:
+        words += (
+            f": the motors have {percent(fault.motors_over_sets):.0f} % of the sets' rated current; they "
+            f"were measured with up to {percent(fault.motors_known_to):.0f} %"
+        )
+    return words
 
 
 def _notes(result: ShortCircuitResult) -> tuple[str, ...]:

@@ -376,6 +376,8 @@ class SimulatedFault:
     IEC 60909 (``general_*``; no Iac), of the sources that are simulated alone; ``left_out`` names the others.
     ``bias_low_percent`` and ``bias_high_percent`` [quantity] are the known differences of IEC 61363-1 at such
     a place in Iac(T/2), Iac(0.1 s), ip and the greatest peak, and ``behind`` says what kind of place it is.
+    They are known for motors of up to ``motors_known_to`` times the rated current of the sets; here it is
+    ``motors_over_sets``.
 
     [time]: ``iac_a`` by the machines and ``ship_iac_a`` at ``time_s``; ``wave_a`` is the instantaneous
     current of the phase with the greatest peak and ``ship_envelope_a`` sqrt2 Iac + idc at ``wave_time_s``.
@@ -399,6 +401,8 @@ class SimulatedFault:
     general_ik_initial_a: float
     bias_low_percent: FloatArray
     bias_high_percent: FloatArray
+    motors_over_sets: float
+    motors_known_to: float
     time_s: FloatArray
     iac_a: FloatArray
     ship_iac_a: FloatArray

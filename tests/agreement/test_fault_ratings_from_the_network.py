@@ -223,19 +223,19 @@ def test_a_transformer_carries_a_fault_behind_it_until_its_breaker_opens() -> No
     """
     found = judged(with_transformer())
     withstand_ka = 0.2 / (3.0**0.5 * 0.230) / 0.04
-    heat = found["T1", "through-fault, heat until it is cleared, fault on L, against 2 s"]
+    heat = found["T1", "heat until cleared of a fault on L, through it"]
     seconds = 0.3 * 1.1 + 0.05
     assert heat.limit == pytest.approx(withstand_ka)
     assert heat.value == pytest.approx(withstand_ka * (seconds / 2.0) ** 0.5, rel=0.02)
     assert heat.value > withstand_ka * (seconds / 2.0) ** 0.5 * 0.999
     assert (heat.status, heat.basis.split("; ")[-1]) == ("within", f"cleared by Q1 in {seconds:.3g} s")
-    peak = found["T1", "through-fault, peak, fault on L, against its first peak"]
+    peak = found["T1", "peak of a fault on L, through it"]
     assert peak.value == pytest.approx(peak.limit, rel=0.02)
 
 
 def test_a_transformer_without_a_device_of_its_own_is_not_assessed() -> None:
     found = judged(with_transformer(devices=[]))
-    heat = found["T1", "through-fault, heat until it is cleared, fault on L, against 2 s"]
+    heat = found["T1", "heat until cleared of a fault on L, through it"]
     assert heat.status == "not assessed"
     assert "no device that stands on it sees this fault" in heat.basis
 
@@ -244,14 +244,14 @@ def test_a_breaker_on_the_far_side_does_not_see_the_fault_before_it() -> None:
     cable = plants.cable("C1", "T1", "L")
     beyond = plants.device("Q2", "C1", end="L", short_time_a=900.0, short_time_delay_s=0.0)
     found = judged(with_transformer(devices=[beyond], cables=[cable]))
-    heat = found["T1", "through-fault, heat until it is cleared, fault on L, against 2 s"]
+    heat = found["T1", "heat until cleared of a fault on L, through it"]
     assert heat.status == "not assessed"
 
 
 def test_a_reactor_is_held_against_its_short_time_rating() -> None:
     boards = [plants.board("MSB", 690.0), plants.board("X", 690.0)]
     more = {"boards": boards, "transformers": [], "devices": [plants.device("QX", "X1", end="MSB")]}
-    quantity = "through-fault, peak, fault on X, against its first peak"
+    quantity = "peak of a fault on X, through it"
     unknown = judged(with_transformer(reactors=[plants.reactor("X1", "MSB", "X")], **more))
     assert unknown["X1", quantity].status == "not assessed"
     assert "short-time current is not given" in unknown["X1", quantity].basis

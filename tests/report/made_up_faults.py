@@ -102,6 +102,8 @@ def simulated(plant: Plant) -> tuple[SimulatedFault, ...]:
         general_ik_initial_a=17_500.0,
         bias_low_percent=read_only([-3.0, 0.0, -10.0, -7.0]),
         bias_high_percent=read_only([18.0, 14.0, 5.0, 5.0]),
+        motors_over_sets=0.81,
+        motors_known_to=0.6,
         time_s=read_only(times),
         iac_a=read_only(falls),
         ship_iac_a=read_only(1.05 * falls),
@@ -116,7 +118,8 @@ def simulated(plant: Plant) -> tuple[SimulatedFault, ...]:
     numbers = [f.name for f in fields(SimulatedFault) if f.name.endswith("_a") and f.name not in nothing]
     other = SimulatedFault(
         cases=("Fault 3",), cell="Events!A6", mode=plant.modes[0].name, place="Galley", simulated=False,
-        reason="there is no fault place 'Galley'", behind="", left_out=(), **nothing,
+        reason="there is no fault place 'Galley'", behind="", left_out=(), motors_over_sets=NAN,
+        motors_known_to=NAN, **nothing,
         **dict.fromkeys(numbers, NAN),
     )  # fmt: skip
     return one, other
