@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -11,6 +11,7 @@ import numpy as np
 from study.checks.limits import Limits
 from study.checks.verdict import Verdict, make_verdict
 from study.model.plant import Plant
+from study.model.sources import Genset
 from study.results.arrays import FloatArray
 from study.results.regulation import RegulationResult
 from study.results.sharing import LEAST_TRIM_PU, IslandSharing, NotStudied, SharingCurve, SharingResult
@@ -216,12 +217,38 @@ def _trimming(plant: Plant, island: IslandSharing, power: _Power) -> tuple[str, 
 
 
 def _equal_droops(plant: Plant, island: IslandSharing, power: _Power) -> str:
-    turned = [n for n in island.sets if plant.genset(n).regulator.reversed_polarity]
-    if power.unit == "kvar" and turned:
-        return f"Turn the current transformer of the droop circuit of {' and '.join(turned)} round."
+    """Return what would cure sets that trimming does not bring into tolerance."""
+    sets = [plant.genset(name) for name in island.sets]
     if power.unit == "kW":
+        stiff = [g.name for g in sets if g.governor.mode == "isochronous" or g.governor.droop_pu == 0.0]
+        if stiff:
+            return (
+                f"Put the governor of {_and(stiff)} on the speed droop of the others, or all on load sharing."
+            )
         return "Set equal speed droops, then trim the no-load frequencies at 75 % load."
+    modes = {g.name: _regulator_mode(plant, island.mode, g) for g in sets}
+    turned = [g.name for g in sets if g.regulator.reversed_polarity]
+    unregulated = [name for name, mode in modes.items() if mode == "fixed excitation"]
+    stiff = [g.name for g in sets if modes[g.name] == "no droop" or g.regulator.droop_pu == 0.0]
+    if turned:
+        return f"Turn the current transformer of the droop circuit of {_and(turned)} round."
+    if unregulated:
+        return f"Let a regulator with the droop of the other sets act on the field of {_and(unregulated)}."
+    if stiff:
+        return f"Switch the voltage droop of {_and(stiff)} on, as of the other sets, then trim at 75 % load."
     return "Set equal voltage droops, then trim the no-load voltages at 75 % load."
+
+
+def _regulator_mode(plant: Plant, mode: str, genset: Genset) -> str:
+    """Return how a set's regulator works in a mode; a field that none acts on counts as fixed excitation."""
+    if genset.excitation.field_supply in ("fixed", "compounded without regulator"):
+        return "fixed excitation"
+    point = plant.mode(mode).set_points.get(genset.name)
+    return (point.regulator_mode if point else None) or genset.regulator.mode
+
+
+def _and(names: Sequence[str]) -> str:
+    return " and ".join(names)
 
 
 def _not_studied(left: NotStudied, limits: Limits) -> Iterator[Verdict]:

@@ -161,11 +161,38 @@ def test_a_set_that_takes_no_part_is_not_judged() -> None:
     assert {v.subject for v in verdicts} == {"kW sharing"}  # one set alone shares kvar with nobody
 
 
-def test_a_reversed_droop_circuit_has_its_own_cure() -> None:
-    sets = [genset("G1", "MSB", reversed_polarity=True), genset("G2", "MSB")]
-    verdicts = judged(an_island(a_curve([0, 0, 0], [0, 700, 0])), gensets=sets)
-    v = find(verdicts, "G1", "distance from its kvar share as set")
-    assert v.remedy == "Turn the current transformer of the droop circuit of G1 round."
+@pytest.mark.parametrize(
+    ("unit", "changes", "remedy"),
+    [
+        (
+            "kvar",
+            {"reversed_polarity": True},
+            "Turn the current transformer of the droop circuit of G1 round.",
+        ),
+        ("kvar", {"regulator_mode": "no droop"}, "Switch the voltage droop of G1 on,"),
+        ("kvar", {"field_supply": "compounded without regulator"}, "Let a regulator with the droop"),
+        (
+            "kvar",
+            {"regulator_mode": "fixed excitation"},
+            "Let a regulator with the droop of the other sets act",
+        ),
+        ("kvar", {"voltage_droop_pu": 0.08}, "Set equal voltage droops, then trim"),
+        ("kW", {"governor_mode": "isochronous"}, "Put the governor of G1 on the speed droop of the others"),
+        ("kW", {"speed_droop_pu": 0.08}, "Set equal speed droops, then trim"),
+    ],
+)
+def test_what_trimming_does_not_cure_has_its_own_cure(
+    unit: str, changes: dict[str, Any], remedy: str
+) -> None:
+    sets = [genset("G1", "MSB", **changes), genset("G2", "MSB")]
+    verdicts = judged(an_island(a_curve([0, 700, 0], [0, 700, 0])), gensets=sets)
+    assert find(verdicts, "G1", f"distance from its {unit} share as set").remedy.startswith(remedy)
+
+
+def test_the_mode_s_own_regulator_mode_counts() -> None:
+    points = [set_point("G2", regulator_mode="no droop")]
+    verdicts = judged(an_island(a_curve([0, 0, 0], [0, 700, 0])), modes=[mode(set_points=points)])
+    assert "droop of G2 on" in find(verdicts, "G1", "distance from its kvar share as set").remedy
 
 
 def trimmed(genset: str, **changes: float) -> SetTrim:
