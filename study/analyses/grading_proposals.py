@@ -406,13 +406,14 @@ def _upwards(item: SettingRange, aims: Sequence[float], now: float) -> list[floa
         value = _snapped(item, max(aim, _LITTLE * now), up=True)
         step = item.step or 0.1 * value
         found += [round(value + k * step, 6) for k in range(_STEPS)]
-    return [v for v in found if now < v <= item.maximum]
+    return [v for v in found if now < v and item.minimum <= v <= item.maximum]
 
 
 def _downwards(item: SettingRange, aims: Sequence[float], now: float) -> list[float]:
     """Return the first settings from each aim down that are below the present one."""
-    found = [_snapped(item, min(aim, now / _LITTLE), up=False) for aim in aims]
-    return [v for v in found if item.minimum <= v < now]
+    highest = min(now / _LITTLE, item.maximum)
+    found = [_snapped(item, min(aim, highest), up=False) for aim in aims]
+    return [v for v in found if v < now and item.minimum <= v <= item.maximum]
 
 
 def targets_of(
@@ -440,10 +441,13 @@ def targets_of(
         Pairs, then reach.
     """
     bad = np.isin(pairs.extent, (PARTIAL, NONE))
+    rows = enumerate(zip(reach.station.tolist(), late[0], strict=True))
+    least = {(s, bool(inward)): reach.least_a[k] for k, (s, inward) in rows}
     found: list[tuple[tuple[float, float, int], Target]] = []
     for k in np.flatnonzero(bad.any(axis=1)).tolist():
         modes = np.flatnonzero(bad[k])
         m = int(modes[np.argmin(pairs.margin_s[k, modes])])
+        key = (int(pairs.downstream[k]), bool(sides[k]))
         t = Target(
             downstream=int(pairs.downstream[k]),
             upstream=int(pairs.upstream[k]),
@@ -452,7 +456,7 @@ def targets_of(
             clears_s=float(np.nanmax(pairs.clears_s[k, modes])),
             releases_s=float(np.nanmin(pairs.releases_s[k, modes])),
             needed_s=float(pairs.needed_s[k, m]),
-            current_a=float(np.nanmin(pairs.current_a[k, modes])),
+            current_a=float(np.nanmin([*pairs.current_a[k, modes], *least[key][modes]])),
             upstream_a=float(np.nanmax(pairs.upstream_a[k, modes])),
             current_ratio=float(np.nanmin(pairs.current_ratio[k, modes])),
             at_once=int(pairs.rule[k, m]) == AT_ONCE,
