@@ -19,7 +19,12 @@ from study.report.tables_verdicts import VerdictGrid, verdict_grid
 
 _FIXED_DATE = datetime(2000, 1, 1)
 _A3 = 8
-_CHARACTERS_ON_A_PAGE = 270.0
+_PAGE_PIXELS = 1090.0
+"""Across an A3 page at 96 dots to the inch, a quarter left for fonts whose digits widen the columns."""
+_MODES_PIXELS = 1800.0
+"""Of columns of modes that stand side by side on a page: letters of ten points print at six."""
+_WIDEST_PIXELS = 3600.0
+"""Letters of ten points print at four there: sheets are read on the screen, the report is for print."""
 
 
 def result_workbook(outcome: StudyOutcome, tables: Mapping[str, Table] | None = None) -> bytes:
@@ -135,8 +140,15 @@ def _print_setup(writer: SheetWriter, name: str, places: Sequence[Place], outcom
     sheet.set_paper(_A3)
     sheet.set_margins(left=0.5, right=0.5, top=0.6, bottom=0.7)
     only = places[0] if len(places) == 1 and places[0].table.groups else None
-    width = sum(writer.widths.values())
-    sheet.fit_to_pages(math.ceil(width / _CHARACTERS_ON_A_PAGE) if only else 1, 0)
+    if only:
+        starts = [c for c, column in enumerate(only.table.columns) if column.group]
+        starts = [c for c in starts if only.table.columns[c].group != only.table.columns[c - 1].group]
+        breaks, widest = pages_across(writer.widths, starts)
+        sheet.set_v_pagebreaks(breaks)
+        sheet.set_print_scale(max(10, min(100, math.floor(100.0 * _PAGE_PIXELS / widest))))
+    else:
+        whole = sum(map(_pixels, writer.widths.values()))
+        sheet.fit_to_pages(math.ceil(whole / _WIDEST_PIXELS), 0)
     document = f"{project.document_number} rev. {project.revision}".replace("&", "&&")
     sheet.set_footer(f"&L&8{document}&C&8&A&R&8Page &P of &N")
     if only:
@@ -146,3 +158,44 @@ def _print_setup(writer: SheetWriter, name: str, places: Sequence[Place], outcom
     else:
         sheet.freeze_panes(2, 1)
         sheet.repeat_rows(0, 1)
+
+
+def _pixels(width: float) -> float:
+    """Return the pixels of a column from its width in characters (ECMA-376-1, 18.3.1.13, from memory)."""
+    return math.floor(7.0 * width + 5.0)
+
+
+def pages_across(widths: Mapping[int, float], starts: Sequence[int]) -> tuple[list[int], float]:
+    """Return where to break a sheet across its width, so that the columns of a mode stay on one page.
+
+    Parameters
+    ----------
+    widths : mapping of int to float
+        Width of each column in characters; the first column repeats on every page.
+    starts : sequence of int
+        First column of each mode.
+
+    Returns
+    -------
+    breaks : list of int
+        Columns that begin a page.
+    widest : float
+        Pixels of the widest page.
+
+    Examples
+    --------
+    >>> pages_across(dict.fromkeys(range(10), 100.0), [1, 4, 7])
+    ([4, 7], 2820.0)
+    """
+    count = max(widths) + 1
+    pixels = [_pixels(widths[c]) for c in range(count)]
+    breaks: list[int] = []
+    used = widest = sum(pixels[: starts[0]])
+    for start, end in zip(starts, [*starts[1:], count], strict=True):
+        group = sum(pixels[start:end])
+        if used + group > _MODES_PIXELS and used > pixels[0]:
+            breaks.append(start)
+            used = pixels[0]
+        used += group
+        widest = max(widest, used)
+    return breaks, float(widest)

@@ -15,7 +15,7 @@ from openpyxl.worksheet.worksheet import Worksheet
 from study.issues import StudyError
 from study.report import excel_sheet
 from study.report.catalogue import all_tables
-from study.report.excel import result_workbook
+from study.report.excel import pages_across, result_workbook
 from study.report.excel_sheet import internal_link
 from study.report.tables import SHEETS, Table
 from tests.report import made_up
@@ -159,6 +159,18 @@ def test_charts_point_at_numbers_of_their_own_sheet() -> None:
             text = archive.read(name).decode()
             for sheet in re.findall(r"<c:f>'([^']+)'!", text):
                 assert sheet in SHEETS
+
+
+def test_no_mode_is_parted_by_the_edge_of_a_page() -> None:
+    table = next(t for t in TABLES.values() if t.sheet == "R Load balance")
+    starts = [table.index(c.key, c.group) for c in table.columns if c.group]
+    firsts = {min(c for c in starts if table.columns[c].group == group) for group in table.groups}
+    sheet = _book()["R Load balance"]
+    assert {b.id for b in sheet.col_breaks.brk} <= firsts
+    assert not sheet.sheet_properties.pageSetUpPr or not sheet.sheet_properties.pageSetUpPr.fitToPage
+    breaks, widest = pages_across({c: 20.0 if c else 30.0 for c in range(36)}, [4, 12, 20, 28])
+    assert breaks == [12, 20, 28]
+    assert widest == 4 * 145 + 70 + 8 * 145
 
 
 def test_rows_of_headings_repeat_in_print_and_pages_are_landscape() -> None:
