@@ -193,7 +193,7 @@ def pages_across(widths: Mapping[int, float], starts: Sequence[int]) -> tuple[li
     used = widest = sum(pixels[: starts[0]])
     for start, end in zip(starts, [*starts[1:], count], strict=True):
         group = sum(pixels[start:end])
-        if used + group > _MODES_PIXELS and used > pixels[0]:
+        if used + group > _MODES_PIXELS and start != starts[0]:
             breaks.append(start)
             used = pixels[0]
         used += group

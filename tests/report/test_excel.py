@@ -170,7 +170,7 @@ def test_no_mode_is_parted_by_the_edge_of_a_page() -> None:
     assert not sheet.sheet_properties.pageSetUpPr or not sheet.sheet_properties.pageSetUpPr.fitToPage
     breaks, widest = pages_across({c: 20.0 if c else 30.0 for c in range(36)}, [4, 12, 20, 28])
     assert breaks == [12, 20, 28]
-    assert widest == 4 * 145 + 70 + 8 * 145
+    assert widest == 215 + 3 * 145 + 8 * 145
 
 
 def test_rows_of_headings_repeat_in_print_and_pages_are_landscape() -> None:
