@@ -106,8 +106,10 @@ def set_page(sheet: Worksheet, look: Look, header_row: int, columns: int) -> Non
     sheet.hide_gridlines(2)
     sheet.set_landscape()
     sheet.set_paper(A4 if columns <= A4_COLUMNS else A3)
-    sheet.fit_to_pages(-(-columns // COLUMNS_PER_PAGE), 0)
+    pages_wide = -(-columns // COLUMNS_PER_PAGE)
+    sheet.fit_to_pages(pages_wide, 0)
     sheet.repeat_rows(header_row)
-    sheet.repeat_columns(0)
+    if pages_wide > 1:  # some office suites take long to open a sheet that repeats both rows and columns
+        sheet.repeat_columns(0)
     sheet.set_margins(left=0.4, right=0.4, top=0.5, bottom=0.6)
     sheet.set_footer("&L&8&A&R&8&P / &N")
