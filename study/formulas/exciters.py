@@ -14,6 +14,8 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from study.formulas.winding_times import coupling, winding_time_constants
+
 FloatArray = NDArray[np.float64]
 TransferFunction = tuple[FloatArray, FloatArray]
 
@@ -111,19 +113,19 @@ def regulator_output(
 
 
 def machine_open_circuit(
-    *, x_d1_pu: float, x_d2_pu: float, x_l_pu: float, t_d01_s: float, t_d02_s: float
+    *, x_d_pu: float, x_d1_pu: float, x_d2_pu: float, x_l_pu: float, t_d01_s: float, t_d02_s: float
 ) -> TransferFunction:
     """Return the transfer function from field to terminal voltage at open circuit and rated speed.
 
-    ``(1 + a T''d0 s)/((1 + T'd0 s)(1 + T''d0 s))`` with ``a = (X''d - Xl)/(X'd - Xl)``.
+    ``(1 + a T2 s)/((1 + T'd0 s)(1 + T''d0 s))`` with ``a = (X''d - Xl)/(X'd - Xl)`` and T2 of the damper.
 
     Source: machine model of P. W. Sauer and M. A. Pai, *Power System Dynamics and Stability*, with no
     current; from memory.
 
     Parameters
     ----------
-    x_d1_pu, x_d2_pu, x_l_pu : float
-        X'd, X''d and leakage reactance. [pu]
+    x_d_pu, x_d1_pu, x_d2_pu, x_l_pu : float
+        Xd, X'd, X''d and leakage reactance. [pu]
     t_d01_s, t_d02_s : float
         T'd0 and T''d0. [s]
 
@@ -134,12 +136,15 @@ def machine_open_circuit(
 
     Examples
     --------
-    >>> n, d = machine_open_circuit(x_d1_pu=0.2, x_d2_pu=0.12, x_l_pu=0.08, t_d01_s=2.0, t_d02_s=0.03)
-    >>> n.round(4).tolist(), d.round(4).tolist()
-    ([0.01, 1.0], [0.06, 2.03, 1.0])
+    >>> data = {"x_d_pu": 2.0, "x_d1_pu": 0.2, "x_d2_pu": 0.12, "x_l_pu": 0.08}
+    >>> n, d = machine_open_circuit(**data, t_d01_s=2.5, t_d02_s=0.03)
+    >>> n.round(5).tolist(), d.round(4).tolist()
+    ([0.01165, 1.0], [0.075, 2.53, 1.0])
     """
     a = (x_d2_pu - x_l_pu) / (x_d1_pu - x_l_pu)
-    return np.array([a * t_d02_s, 1.0]), np.asarray(np.polymul([t_d01_s, 1.0], [t_d02_s, 1.0]), float)
+    c = coupling(x_d_pu, x_d1_pu, x_d2_pu, x_l_pu)
+    damper_s = winding_time_constants(c, t_d01_s, t_d02_s)[1]
+    return np.array([a * damper_s, 1.0]), np.asarray(np.polymul([t_d01_s, 1.0], [t_d02_s, 1.0]), float)
 
 
 def regulated_open_circuit(
@@ -167,7 +172,8 @@ def regulated_open_circuit(
 
     Examples
     --------
-    >>> m = machine_open_circuit(x_d1_pu=0.2, x_d2_pu=0.12, x_l_pu=0.08, t_d01_s=2.0, t_d02_s=0.03)
+    >>> data = {"x_d_pu": 2.0, "x_d1_pu": 0.2, "x_d2_pu": 0.12, "x_l_pu": 0.08}
+    >>> m = machine_open_circuit(**data, t_d01_s=2.0, t_d02_s=0.03)
     >>> g = RegulatorGains(proportional=20.0, integral_per_s=20.0, derivative_s=0.5)
     >>> n, d = regulated_open_circuit(m, g, rated_field_pu=2.5, exciter_s=0.1)
     >>> round(float(n[-1] / d[-1]), 9)
@@ -211,7 +217,8 @@ def self_excited_open_circuit(
 
     Examples
     --------
-    >>> m = machine_open_circuit(x_d1_pu=0.2, x_d2_pu=0.12, x_l_pu=0.08, t_d01_s=2.0, t_d02_s=0.03)
+    >>> data = {"x_d_pu": 2.0, "x_d1_pu": 0.2, "x_d2_pu": 0.12, "x_l_pu": 0.08}
+    >>> m = machine_open_circuit(**data, t_d01_s=2.0, t_d02_s=0.03)
     >>> n, d = self_excited_open_circuit(m, voltage_gain=0.5, exciter_s=0.1)
     >>> round(float(n[-1] / d[-1]), 9)
     2.0

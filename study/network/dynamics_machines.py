@@ -1,8 +1,9 @@
 """How sources and motors move, compiled: the derivatives of their states at the voltages of an instant.
 
 Machine of subtransient order: Sauer and Pai, *Power System Dynamics and Stability*, with saturation added to
-the field equation and speed as a factor on the voltages; from memory. Regulators: `formulas.exciters`,
-governors: `formulas.governor`, motors: `formulas.induction` and `formulas.starting`.
+the field equation and speed as a factor on the voltages; from memory. TD01 and TD02 are those of the
+windings, see `formulas.winding_times`. Regulators: `formulas.exciters`, governors: `formulas.governor`,
+motors: `formulas.induction` and `formulas.starting`.
 """
 
 from __future__ import annotations

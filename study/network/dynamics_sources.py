@@ -13,6 +13,7 @@ from study.formulas.governor import tuned_gains
 from study.formulas.machine_constants import open_circuit_time_constant
 from study.formulas.saturation import SaturationCurve, saturation_field
 from study.formulas.synchronous import rated_load_field, two_reaction
+from study.formulas.winding_times import coupling, largest_leakage, winding_time_constants
 from study.model.sources import ConverterSupply, Genset, MachineData
 from study.network import dynamics_data as d
 from study.network.batch import BatchSolution
@@ -169,8 +170,10 @@ def fill_machine(item: Genset, f_rated_hz: float, p: FloatArray) -> None:
     p[d.XD], p[d.XD1], p[d.XD2] = m.x_d_pu, m.x_d1_pu, m.x_d2_pu
     p[d.XQ2] = m.x_q2_pu
     p[d.XQ] = max(m.x_q_pu, m.x_q2_pu)
-    p[d.XL], p[d.RA] = min(m.x_l_pu, LARGEST_LEAKAGE * min(m.x_d2_pu, m.x_q2_pu)), m.r_stator_pu
-    p[d.TD01], p[d.TD02], p[d.TQ02] = m.t_d01_s, *subtransient_times(m)
+    t_d02, p[d.TQ02] = subtransient_times(m)
+    p[d.XL], p[d.RA] = _leakage(m, t_d02), m.r_stator_pu
+    c = coupling(m.x_d_pu, m.x_d1_pu, m.x_d2_pu, p[d.XL])
+    p[d.TD01], p[d.TD02] = winding_time_constants(c, m.t_d01_s, t_d02)
     p[d.SAT_KIND], p[d.SAT_A], p[d.SAT_B] = _SATURATIONS[curve.kind], curve.a, curve.b
     p[d.TWO_H] = 2.0 * m.inertia_s
     p[d.EXCITER_S] = e.exciter_time_constant_s or SLIP_RING_LAG_S
@@ -185,6 +188,12 @@ def fill_machine(item: Genset, f_rated_hz: float, p: FloatArray) -> None:
     gains = tuned_gains(m.inertia_s / p[d.P_RATED], p[d.RACK_S], p[d.DEAD_S])
     p[d.GOV_P], p[d.GOV_I], p[d.GOV_D] = gains.proportional, gains.integral_per_s, gains.derivative_s
     p[d.GOV_FILTER_S] = gains.filter_s
+
+
+def _leakage(m: MachineData, t_d02_s: float) -> float:
+    """Return the leakage reactance, not more than what X''d and the time constants leave; it acts little."""
+    most = largest_leakage(m.x_d_pu, m.x_d1_pu, m.x_d2_pu, m.t_d01_s, t_d02_s)
+    return min(m.x_l_pu, LARGEST_LEAKAGE * min(m.x_d2_pu, m.x_q2_pu), 0.95 * most)
 
 
 def subtransient_times(m: MachineData) -> tuple[float, float]:
