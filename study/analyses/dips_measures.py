@@ -14,12 +14,15 @@ SETTLED_S = 0.5  # of the end over which a quantity is looked at
 SETTLED_BAND = 0.005  # of its value: within it it has settled
 EARLY_POINTS = 40
 SAME_TIME = 1e-9  # s
+JOINED_S = 2.0  # no longer than governors and regulators need
 
 
 def recovery_of(time_s: FloatArray, value: FloatArray, starts_s: Sequence[float], band: float) -> Recovery:
     """Return how a quantity is disturbed and comes back.
 
-    Of several disturbances the one counts after which it goes farthest from its value before.
+    Of several disturbances the one counts after which it goes farthest from its value before. What follows
+    within `JOINED_S` belongs to the same disturbance: a set lost and the drives that give way, a fault and
+    its clearing.
 
     Parameters
     ----------
@@ -35,7 +38,7 @@ def recovery_of(time_s: FloatArray, value: FloatArray, starts_s: Sequence[float]
     Recovery
         Of the disturbance that counts.
     """
-    starts = sorted(set(starts_s)) or [float(time_s[0])]
+    starts = _joined(starts_s) or [float(time_s[0])]
     ends = [*starts[1:], float(time_s[-1])]
     found = [
         _window(time_s, value, start, end, band)
@@ -43,6 +46,17 @@ def recovery_of(time_s: FloatArray, value: FloatArray, starts_s: Sequence[float]
         if end > start
     ]
     return max(found, key=lambda r: max(r.before - r.least, r.largest - r.before))
+
+
+def _joined(starts_s: Sequence[float]) -> list[float]:
+    """Return the first moment of each disturbance."""
+    first: list[float] = []
+    last = -np.inf
+    for start in sorted(set(starts_s)):
+        if start - last > JOINED_S:
+            first.append(start)
+        last = start
+    return first
 
 
 def _window(time_s: FloatArray, value: FloatArray, start: float, end: float, band: float) -> Recovery:

@@ -123,6 +123,12 @@ def _running(book: Book) -> None:
     )
 
 
+def _propulsion_limited(case: str, at_s: float) -> list[tuple[object, ...]]:
+    """Return what the drives take off by themselves when a set is lost."""
+    drives = [f"Propulsion converter {side}{n}{half}" for side in "PS" for n in "12" for half in "AB"]
+    return [(case, "Transit", "load step", drive, -350, "kW", at_s) for drive in drives]
+
+
 def _events(book: Book) -> None:
     book.add(
         "Events",
@@ -134,12 +140,14 @@ def _events(book: Book) -> None:
         ("Thruster step", "Station keeping closed ring", "load step", "Bow thruster 1", 600, "kW", 0.5),
         ("One large set trips", "Station keeping in two parts", "set trip", "DG3", None, None, 0.5),
         ("Set trips in transit", "Transit", "set trip", "DG4", None, None, 0.5),
+        *_propulsion_limited("Set trips in transit", 0.8),
         ("Propulsion throws off", "Slow transit", "load rejection", "DG1", 80, "%", 0.5),
         ("Voltage of DG4 raised", "Transit", "set-point step", "DG4", 103, "% no-load voltage", 0.5),
         ("Droop of DG1 changed", "Transit", "droop changed", "DG1", 5, "% voltage droop", 0.5),
         ("Field of DG6 lost", "Transit", "field loss", "DG6", None, None, 0.5),
+        *_propulsion_limited("Field of DG6 lost", 4.8),
         ("Black start of MV-2", "At anchor", "build-up", "DG2", None, None, 0),
-        ("Energising T-PP1", "Slow transit", "transformer energising", "T-PP1", None, None, 0.5),
+        ("Energising T-PP1", "Heavy lift", "transformer energising", "T-PP1", None, None, 0.5),
         ("Fault on LV690-S", "Heavy lift", "fault", "LV690-S", None, None, 0.5),
         ("Fault on LV690-S", "Heavy lift", "fault cleared", "LV690-S", None, None, 0.8),
         ("DG4 droop 6 %", "Transit", "maladjustment", "DG4", 6, "% voltage droop", 0),

@@ -39,10 +39,10 @@ Cargo hydraulic pump | 18.5 | - - - 1/70i - - - | 18 | constant
 Stripping pump | 2x7.5 | - - - 1/80i - - - | 22 | constant
 Mud tank agitator | 4x5.5 | - - 4/60 4/70 - - - | 32 | constant stage=2
 [MSB-P | Cargo | motor | port]
-Bulk air compressor 1 | 132 | - - - 1/92 - - - | 30 | soft-starter constant eff=0.954 pf=0.88 ist=6.5 rpm=1785 inertia=2.6 stage=2
+Bulk air compressor 1 | 132 | - - - 1/92 - - - | 30 | soft-starter eff=0.954 pf=0.88 ist=6.5 rpm=1785 inertia=2.6 stage=2
 Ballast pump 1 | 45 | 1/80i - 1/80i 1/85 1/80i - - | 26 | star-delta
 [MSB-S | Cargo | motor | starboard]
-Bulk air compressor 2 | 132 | - - - 1/92o - - - | 34 | soft-starter constant eff=0.954 pf=0.88 ist=6.5 rpm=1785 inertia=2.6 stage=2
+Bulk air compressor 2 | 132 | - - - 1/92o - - - | 34 | soft-starter eff=0.954 pf=0.88 ist=6.5 rpm=1785 inertia=2.6 stage=2
 Ballast pump 2 | 45 | - - 1/80i 1/85i - - - | 28 | star-delta
 [CARGO | Cargo | general]
 Bulk air dryer | 2x6 | - - - 2/80 - - - | 24 | pf=0.88 stage=2

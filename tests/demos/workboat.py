@@ -40,7 +40,7 @@ Fresh-water pump | 1.5 | 1/80i 1/80i 1/80i | 12
 [DB-ER | Domestic | general]
 Fresh-water maker | 6 | 1/85 - - | 10 | pf=0.85 stage=1
 [MSB | Deck | motor | constant stage=1]
-Tow winch pump | 22 | 1/70i 1/75i - | 22 | star-delta rpm=1465 ist=6.8 inertia=0.25 eff=0.922 pf=0.85
+Tow winch pump | 22 | 1/70i 1/75i - | 22 | star-delta change_s=7 rpm=1465 ist=6.8 inertia=0.25 eff=0.922 pf=0.85
 Deck crane pump | 18.5 | 1/60o - - | 20 | star-delta rpm=1465 ist=6.7 inertia=0.2
 Anchor windlass | 11 | - 1/60i - | 26 | tl=2.2
 [MSB | Galley | heating]
@@ -113,7 +113,11 @@ def _plant(book: Book) -> None:
         ("DB-230", 230, "distribution", 160, 12, 6, 1, "insulated", None, 10, 45),
         ("DB-WH", 230, "distribution", 63, 12, 6, 1, "insulated", None, 10, 45),
     )
-    main = {"Largest engine load step [%]": 60, "Alternator efficiency [%]": 93.0}
+    main = {
+        "Largest engine load step [%]": 60,
+        "Alternator efficiency [%]": 93.0,
+        "Governor time constant [s]": 0.2,
+    }
     genset(book, ("DG1", "MSB"), (150, 132), ("LV 150", "auxiliary winding"), 12, also=main)
     genset(book, ("DG2", "MSB"), (150, 132), ("LV 150", "auxiliary winding"), 12, also=main)
     harbour = {
@@ -196,9 +200,9 @@ def _operation(book: Book) -> None:
     book.add(
         "Events",
         "Case|Mode|Kind|Equipment|Size|Unit|At [s]|Duration [s]",
-        ("Winch start at sea", "At sea", "motor start", "Tow winch pump", 1, "units", 0.5),
-        ("Fire pump start in harbour", "Harbour", "motor start", "Fire pump", 1, "units", 0.5),
-        ("Half load on", "At sea", "load step", "MSB", 60, "kW", 0.5),
+        ("Winch start while manoeuvring", "Manoeuvring", "motor start", "Tow winch pump", 1, "units", 0.5),
+        ("Fire pump start at sea", "At sea", "motor start", "Fire pump", 1, "units", 0.5),
+        ("Load step on one set", "At sea", "load step", "MSB", 25, "kW", 0.5),
         ("One of two sets trips", "Manoeuvring", "set trip", "DG2", None, None, 0.5),
         ("Full load off", "At sea", "load rejection", "DG1", 100, "%", 0.5),
         ("DG2 droop 5 %", "Manoeuvring", "maladjustment", "DG2", 5, "% voltage droop", 0),
