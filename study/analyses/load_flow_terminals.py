@@ -13,6 +13,7 @@ from study.results.arrays import read_only
 from study.results.load_flow import TerminalState
 
 FloatArray = NDArray[np.float64]
+IntArray = NDArray[np.int64]
 
 SWITCHBOARDS = ("main", "emergency", "propulsion")
 
@@ -47,11 +48,20 @@ def terminal_state(s: ModeSolution) -> TerminalState:
         path=tuple(" > ".join(path) for _, path in walks),
         u_rated_v=read_only(u_rated),
         u_v=read_only(v_terminal * scale * u_rated),
+        angle_deg=read_only(_angle_deg(s, node)),
         drop_pu=read_only((v_start - v_terminal) * scale),
         p_kw=read_only(power.real),
         q_kvar=read_only(power.imag),
         current_a=read_only(_current(s, used, v_terminal * scale * u_rated)),
     )
+
+
+def _angle_deg(s: ModeSolution, node: IntArray) -> FloatArray:
+    """Return the angle of each node's voltage against the first board of its island."""
+    board_island = np.array(s.at.view.board_island, np.int64)
+    first = np.array([np.flatnonzero(board_island == n)[0] for n in range(len(s.at.view.islands))], np.int64)
+    island = np.array(s.at.view.island, np.int64)[node]
+    return np.rad2deg(np.angle(s.node_v_pu[node] / s.board_v_pu[first[island]]))
 
 
 def _current(s: ModeSolution, used: list[int], u_v: FloatArray) -> FloatArray:

@@ -19,7 +19,7 @@ from study.report.tables import (
     text_column,
     verdict_column,
 )
-from study.results.balance import BalanceResult, IslandBalance, ModeBalance
+from study.results.balance import BalanceResult, IslandBalance, LossOfSet, ModeBalance
 
 _SHEET = "R Capacity"
 NO_SET = "no set left"
@@ -212,7 +212,7 @@ def loss_table(outcome: StudyOutcome) -> Table:
         (
             mode.mode,
             loss.lost,
-            loss.stage,
+            stage,
             loss.p_load_kw,
             loss.q_load_kvar,
             loss.p_capacity_kw,
@@ -224,7 +224,7 @@ def loss_table(outcome: StudyOutcome) -> Table:
         )
         for mode in outcome.balance.modes
         for island in mode.islands
-        for loss in island.loss
+        for stage, loss in _stages(island)
     ]
     return make_table(
         key="largest_set_lost",
@@ -234,6 +234,16 @@ def loss_table(outcome: StudyOutcome) -> Table:
         rows=rows,
         group_by=("mode",),
     )
+
+
+def _stages(island: IslandBalance) -> list[tuple[str, LossOfSet]]:
+    """Return the stages without the standby sets, then those with them started."""
+    alone = [(loss.stage, loss) for loss in island.loss if loss.stage != "standby started"]
+    started = [
+        ("standby started" + ("" if loss.stage == "at once" else f", {loss.stage}"), loss)
+        for loss in island.loss_with_standby
+    ]
+    return alone + started
 
 
 def main_set_out_table(outcome: StudyOutcome) -> Table:

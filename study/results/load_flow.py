@@ -36,7 +36,7 @@ class TerminalState:
     Its board is at the voltage of the load flow, in which it may count in part only; so kW and kvar do not
     add up to the load of the board. ``drop_pu`` is the fall of voltage from the nearest main or emergency
     switchboard (or transformer secondary feeding the consumer's own voltage level) to the terminal, of the
-    consumer's rated voltage.
+    consumer's rated voltage; ``angle_deg`` is against the first board of its island.
     ``path`` lists the pieces between them, joined by ' > '.
     """
 
@@ -46,6 +46,7 @@ class TerminalState:
     path: tuple[str, ...]
     u_rated_v: FloatArray
     u_v: FloatArray
+    angle_deg: FloatArray
     drop_pu: FloatArray
     p_kw: FloatArray
     q_kvar: FloatArray

@@ -292,6 +292,8 @@ def test_a_run_carries_its_consumer_in_full_whatever_counts_of_it() -> None:
         1e5 * abs(complex(0.5, 0.25) / v) / 440.0 / 3**0.5, rel=1e-5
     )
     assert part.terminals.p_kw[t] == 50.0
+    behind_board = part.terminals.angle_deg[t] - part.boards.angle_deg[part.boards.names.index("DB")]
+    assert behind_board == pytest.approx(np.degrees(np.angle(v)), abs=1e-6)
     assert part.branches.drop_pu[c] == pytest.approx(v_board - abs(v), abs=1e-8)
 
 

@@ -195,6 +195,7 @@ def terminals(**columns: Any) -> TerminalState:
         path=("",) * n,
         u_rated_v=read_only(np.full(n, 440.0)),
         u_v=read_only(np.full(n, 440.0)),
+        angle_deg=read_only(np.zeros(n)),
         drop_pu=read_only(np.zeros(n)),
         p_kw=read_only(np.zeros(n)),
         q_kvar=read_only(np.zeros(n)),

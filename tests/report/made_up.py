@@ -404,6 +404,7 @@ def _mode_flow(plant: Plant, m: int) -> ModeLoadFlow:
         path=tuple(f"MSB 1 > {c.name}" for c in plant.cables),
         u_rated_v=read_only(rated_v),
         u_v=read_only(rated_v * (1.0 - drop)),
+        angle_deg=read_only(np.full(len(drop), -0.6)),
         drop_pu=read_only(drop),
         p_kw=read_only(p_kw),
         q_kvar=read_only(0.6 * p_kw),
