@@ -89,7 +89,7 @@ def _rating_a(plant: Plant, branch: Branch) -> float:
             return plant.reactors[branch.index].rated_current_a
         case "transformer":
             t = plant.transformers[branch.index]
-            return 1000.0 * t.s_rated_kva * t.units / (3.0**0.5 * t.u_primary_v)
+            return float(1000.0 * t.s_rated_kva * t.units / (3.0**0.5 * t.u_primary_v))
     return float("nan")
 
 
