@@ -321,4 +321,4 @@ def test_the_first_100_ms_are_those_of_the_full_order_machine(x_load):
     after = course.time_s > STEP_AT_S - 1e-9
     t, i = course.time_s[after][1:] - STEP_AT_S, course.source[after, 0, d.KEPT_I][1:]
     wanted = envelopes_a(response, t)[0]
-    assert i == pytest.approx(wanted, rel=0.009)
+    assert i == pytest.approx(wanted, rel=0.013)
