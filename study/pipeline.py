@@ -19,7 +19,9 @@ if TYPE_CHECKING:
     from study.analyses.sharing_options import SharingOptions
     from study.checks.limits import Limits
     from study.model.plant import Plant
+    from study.network.network import Network
     from study.report.content import StudyOutcome
+    from study.results.short_circuit import ModeShortCircuit
     from study.workbook.package import Package
 
 Progress = Callable[[str], None]
@@ -118,7 +120,7 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     faults = short_circuit(network, views=[at.view for at in networks])
     ratings = fault_ratings(plant, faults)
     _tell(progress, "grading of protective devices")
-    graded = grading(plant, faults, flow, balance, _grading_options(limits))
+    graded = grading(plant, faults, flow, balance, _grading_options(limits), resolve=_resolver(network))
     _tell(progress, "cables and the sets' protection")
     devices = protection_devices(plant)
     cables = cable_protection(plant, devices, flow, faults, _cable_options(limits))
@@ -266,6 +268,22 @@ def _dip_options(limits: Limits) -> DipOptions:
         recovery_band_pu=limits.fraction("voltage_recovery_band"),
         frequency_band_pu=limits.fraction("frequency_recovery_band"),
     )
+
+
+def _resolver(network: Network) -> Callable[[int, tuple[str, ...]], ModeShortCircuit]:
+    """Return what solves the short-circuits of a mode with some devices open."""
+    from dataclasses import replace
+
+    from study.analyses.short_circuit import short_circuit
+    from study.analyses.short_circuit_options import ShortCircuitOptions
+
+    def resolve(number: int, opened: tuple[str, ...]) -> ModeShortCircuit:
+        mode = network.plant.modes[number]
+        mode = replace(mode, states={**mode.states, **dict.fromkeys(opened, "off")})
+        without = replace(network, plant=replace(network.plant, modes=(mode,)))
+        return short_circuit(without, ShortCircuitOptions(compare=False)).modes[0]
+
+    return resolve
 
 
 def _grading_options(limits: Limits) -> GradingOptions:

@@ -19,10 +19,11 @@ from study.analyses.grading_faults import LEVELS, MAX_NEAR, MIN_FAR, ModeFaults,
 from study.analyses.grading_findings import grading_findings
 from study.analyses.grading_margins import RULES
 from study.analyses.grading_options import GradingOptions
-from study.analyses.grading_pairs import ModePairing, ModePairs
+from study.analyses.grading_pairs import IN_TURN, Follow, ModePairing, ModePairs
 from study.analyses.grading_proposals import Search, targets_of
 from study.analyses.grading_reach import ENDS_BY_ITSELF, ModeReach, mode_reach
 from study.analyses.grading_rules import Rules, rules_of
+from study.analyses.grading_sequence import Follower, Opening, Resolve
 from study.analyses.grading_starts import ModeStarts, hardest_of
 from study.analyses.grading_stations import Stations, stations_of
 from study.analyses.protection_devices import protection_devices
@@ -69,6 +70,7 @@ class GradingBasis:
     flow: LoadFlowResult
     balance: BalanceResult
     options: GradingOptions
+    resolve: Resolve | None
 
 
 def grading(
@@ -77,6 +79,8 @@ def grading(
     flow: LoadFlowResult,
     balance: BalanceResult,
     options: GradingOptions = DEFAULT_OPTIONS,
+    *,
+    resolve: Resolve | None = None,
 ) -> GradingResult:
     """Return the grading of every mode.
 
@@ -92,6 +96,9 @@ def grading(
         The steps of the restart after a blackout.
     options : GradingOptions
         Least margin, longest time.
+    resolve : callable, optional
+        Solves a mode with some devices open: without it pairs behind parallel paths are judged on the
+        currents before any of them opens.
 
     Returns
     -------
@@ -109,6 +116,7 @@ def grading(
         flow=flow,
         balance=balance,
         options=options,
+        resolve=resolve,
     )
     everything = mode_faults(plant, short_circuit, stations, time_s)
     graded = [_graded(basis, faults, k) for k, faults in enumerate(everything)]
@@ -119,7 +127,7 @@ def grading(
     changes, not_cured = _proposals(basis, graded).search(targets) if targets else ([], [])
     return GradingResult(
         modes=tuple(m.mode for m in short_circuit.modes),
-        levels=LEVELS,
+        levels=(*LEVELS, *IN_TURN),
         rules=RULES,
         stations=_stations(plant, stations, openers, short_circuit.places),
         pairs=pairs,
@@ -138,7 +146,7 @@ def _graded(basis: GradingBasis, faults: ModeFaults, number: int) -> GradedMode:
     starts = ModeStarts(basis.plant, faults, basis.flow.modes[number], basis.options)
     done = GradedMode(
         faults=faults,
-        pairs=pairing.pairs(),
+        pairs=pairing.pairs(_follower(basis, faults, number)),
         reach=mode_reach(faults, basis.openers, pairing.mode_rules),
         ride_through=(
             *starts.motor_starts(basis.openers),
@@ -151,6 +159,17 @@ def _graded(basis: GradingBasis, faults: ModeFaults, number: int) -> GradedMode:
     )
     faults.forget()
     return done
+
+
+def _follower(basis: GradingBasis, faults: ModeFaults, number: int) -> Follow | None:
+    if basis.resolve is None:
+        return None
+    follower = Follower(basis.stations, basis.openers, basis.resolve)
+
+    def follow(feeds: Sequence[int], behind: Sequence[int], maximum: bool) -> Opening:
+        return follower.follow(number, faults, feeds, behind, maximum=maximum)
+
+    return follow
 
 
 def _proposals(basis: GradingBasis, graded: Sequence[GradedMode]) -> Search:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import copy
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 from itertools import pairwise
@@ -161,6 +162,23 @@ class Openers:
             for members, old in zip(stations.devices, self.openers, strict=True)
         ]
         new._look_up()
+        return new
+
+    def on_grid(self, time_s: FloatArray) -> Openers:
+        """Return the same for currents at other instants.
+
+        Parameters
+        ----------
+        time_s : ndarray, shape (time,)
+            Half a cycle may be missing: then the instant behind it counts. [s]
+
+        Returns
+        -------
+        Openers
+            A new one.
+        """
+        new = copy.copy(self)
+        new.time_s = time_s
         return new
 
     def half(self, currents: Currents) -> Currents:

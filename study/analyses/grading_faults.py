@@ -100,6 +100,8 @@ class ModeFaults:
         """
         has = np.zeros(len(self.feeds), bool)
         has[self.feed[self.station == station]] = True
+        zones = np.array([f.zone for f in self.feeds], np.int64)
+        has |= np.isin(zones, zones[has])
         nearest = self.station[self.own] == station
         is_own = np.zeros(len(self.feed), bool)
         is_own[self.own] = True

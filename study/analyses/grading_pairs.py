@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
 from typing import Final
 
 import numpy as np
@@ -12,6 +13,7 @@ from study.analyses.grading_bands import Openers
 from study.analyses.grading_faults import LEVELS, MAX_FAR, MAX_NEAR, MIN_FAR, ModeFaults
 from study.analyses.grading_margins import DOWNSTREAM_UNKNOWN, NEITHER, UPSTREAM_UNKNOWN, ModeMargins, Stage
 from study.analyses.grading_rules import Rules, mode_rules
+from study.analyses.grading_sequence import Opening
 from study.analyses.grading_zones import Feed, Zones
 from study.results.grading import FULL, NONE, NOT_ASSESSED, NOT_NEEDED, PAIR_KINDS, PARTIAL, PairKind
 
@@ -19,6 +21,10 @@ FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
 BoolArray = NDArray[np.bool_]
 PairKey = tuple[int, int, bool]
+Follow = Callable[[Sequence[int], Sequence[int], bool], Opening]
+
+IN_TURN: Final = ("largest fault, paths opening in turn", "least fault, paths opening in turn")
+IN_TURN_MAXIMUM, IN_TURN_MINIMUM = len(LEVELS), len(LEVELS) + 1
 
 # Sets that run together from which on the faulty one can be told by the current of all the others: the
 # breaker of each may have an instantaneous stage above its own contribution; ABS 4-8-2/9.11, from memory.
@@ -52,6 +58,32 @@ class ModePairs:
     from_a: FloatArray
     largest_a: FloatArray
     current_ratio: FloatArray
+
+
+def partners_of(faults: ModeFaults) -> dict[int, tuple[int, ...]]:
+    """Return the rows whose station feeds a fault by several paths, with the other feeds of the same zone.
+
+    Parameters
+    ----------
+    faults : ModeFaults
+        Of the mode.
+
+    Returns
+    -------
+    dict of int to tuple of int
+        Row to feeds.
+    """
+    zones = [feed.zone for feed in faults.feeds]
+    paths: dict[tuple[int, int], list[int]] = {}
+    for n, one in enumerate(faults.feeds):
+        for station, _ in one.behind:
+            paths.setdefault((one.zone, station), []).append(n)
+    found: dict[int, tuple[int, ...]] = {}
+    for row, (feed, station) in enumerate(zip(faults.feed.tolist(), faults.station.tolist(), strict=True)):
+        here = paths.get((zones[feed], station), [])
+        if len(here) > 1 and feed in here:
+            found[row] = tuple(n for n in here if n != feed)
+    return found
 
 
 def pair_kinds(faults: ModeFaults, blind: BoolArray) -> list[PairKind]:
@@ -139,13 +171,35 @@ class ModePairing:
             kind = np.array([PAIR_KINDS.index(k) for k in kinds], np.int64)
         self.kind = kind
         self.margins = ModeMargins(faults, openers, self.mode_rules, needed_s)
-        self.stages = self.margins.stages()
         self.rows = self.margins.behind
+        self.partners = partners_of(faults)
+        self.stages = [self._with_partners(stage) for stage in self.margins.stages()]
         fused = np.isfinite(openers.melts_a2s[faults.station[self.rows]])
         self.needed_s = np.where(fused, 0.0, needed_s)
 
-    def pairs(self) -> ModePairs:
-        """Return the pairs of the mode."""
+    def _with_partners(self, stage: Stage) -> Stage:
+        """Return a stage in which a station behind several paths has to wait until all have opened."""
+        late, margin = stage.late_s[self.faults.feed].copy(), stage.margin_s.copy()
+        for row, feeds in self.partners.items():
+            times = stage.late_s[[self.faults.feed[row], *feeds]]
+            late[row] = np.nan if np.isnan(times[0]) else np.nanmax(times)
+            if not np.isposinf(stage.release_s[row]):
+                margin[row] = stage.release_s[row] - late[row]
+        return replace(stage, margin_s=margin)
+
+    def pairs(self, follow: Follow | None = None) -> ModePairs:
+        """Return the pairs of the mode.
+
+        Parameters
+        ----------
+        follow : callable, optional
+            Follows paths that open one after the other, where pairs fail without that.
+
+        Returns
+        -------
+        ModePairs
+            Over the rows behind.
+        """
         faults, rows = self.faults, self.rows
         kind = self.kind[rows]
         judged = self._judged(kind) & ~self._neither()
@@ -162,7 +216,7 @@ class ModePairing:
             [~judged, fails & partial, fails, unknown], [NOT_NEEDED, PARTIAL, NONE, NOT_ASSESSED], FULL
         )
         zones = [faults.zones.zones[faults.feeds[f].zone].name for f in feed.tolist()]
-        return ModePairs(
+        found = ModePairs(
             key=tuple(self.keys(rows)),
             zone=tuple(zones),
             row=rows,
@@ -181,6 +235,41 @@ class ModePairing:
             largest_a=own_a[MAX_NEAR],
             current_ratio=self._current_ratio(),
         )
+        return found if follow is None else self._followed(found, follow)
+
+    def _followed(self, pairs: ModePairs, follow: Follow) -> ModePairs:
+        """Return the pairs, those that fail behind several paths judged on the paths' opening in turn."""
+        place = {row: k for k, row in enumerate(self.rows.tolist())}
+        failing = np.isin(pairs.extent, (PARTIAL, NONE))
+        groups: dict[tuple[int, ...], list[int]] = {}
+        for row, partners in self.partners.items():
+            if row in place and failing[place[row]]:
+                feeds = tuple(sorted((int(self.faults.feed[row]), *partners)))
+                groups.setdefault(feeds, []).append(row)
+        arrays = {
+            name: getattr(pairs, name).copy()
+            for name in ("extent", "level", "clears_s", "releases_s", "margin_s", "up_to_a", "from_a")
+        }
+        for feeds, rows in groups.items():
+            behind = sorted({int(self.faults.station[r]) for r in rows})
+            for maximum, level in ((True, IN_TURN_MAXIMUM), (False, IN_TURN_MINIMUM)):
+                if not self.faults.zones.zones[self.faults.feeds[feeds[0]].zone].places:
+                    continue
+                if not maximum and not self.faults.there[list(feeds)].all():
+                    continue
+                opening = follow(feeds, behind, maximum)
+                if not np.isfinite(opening.isolated_s):
+                    continue
+                for row in rows:
+                    k, station = place[row], int(self.faults.station[row])
+                    margin = opening.releases_s[station] - opening.isolated_s
+                    if maximum or margin < arrays["margin_s"][k]:
+                        arrays["level"][k], arrays["margin_s"][k] = level, margin
+                        arrays["clears_s"][k] = opening.isolated_s
+                        arrays["releases_s"][k] = opening.releases_s[station]
+                        arrays["extent"][k] = FULL if margin >= self.needed_s[k] else NONE
+                        arrays["up_to_a"][k] = arrays["from_a"][k] = np.nan
+        return replace(pairs, **arrays)
 
     def failing(self) -> dict[PairKey, float]:
         """Return the pairs that fail with their least margin: what a change of a setting is held against."""

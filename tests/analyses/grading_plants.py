@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -16,17 +17,27 @@ from study.model.plant import Plant
 from study.model.protection import Device, SettingRange
 from study.network.network import build_network, mode_network
 from study.results.grading import EXTENTS, GradingResult
+from study.results.short_circuit import ModeShortCircuit
 from tests import plants
 
 
-def graded(plant: Plant, **options: Any) -> GradingResult:
-    """Return the grading of a plant."""
+def graded(plant: Plant, *, in_turn: bool = False, **options: Any) -> GradingResult:
+    """Return the grading of a plant; with `in_turn` parallel paths are followed as they open."""
     network = build_network(plant)
     networks = [mode_network(network, mode) for mode in plant.modes]
     balance = load_balance(plant, [at.view for at in networks])
     flow = load_flow(networks, balance.demand.p_counted_kw, balance.demand.q_counted_kvar)
     faults = short_circuit(network, ShortCircuitOptions(compare=False))
-    return grading(plant, faults, flow, balance, GradingOptions(**options))
+
+    def resolve(number: int, opened: tuple[str, ...]) -> ModeShortCircuit:
+        states = {**plant.modes[number].states, **dict.fromkeys(opened, "off")}
+        mode = replace(plant.modes[number], states=states)
+        without = replace(network, plant=replace(plant, modes=(mode,)))
+        return short_circuit(without, ShortCircuitOptions(compare=False)).modes[0]
+
+    return grading(
+        plant, faults, flow, balance, GradingOptions(**options), resolve=resolve if in_turn else None
+    )
 
 
 def breaker(name: str, equipment: str, board: str, **settings: Any) -> Device:

@@ -388,3 +388,32 @@ def test_the_supply_gives_what_its_fault_level_says() -> None:
     path = result.paths[0]
     assert path.largest_a[0] == pytest.approx(LARGEST_A, rel=0.01)
     assert path.least_a[0] == pytest.approx(LEAST_A, rel=0.01)
+
+
+def unlike_transformers(qg_delay_s: float) -> Plant:
+    """Return 400 and 100 kVA in parallel; the small one's breaker does not see its part at first."""
+    plant = transformers(2)
+    settings = {"QT2-2": {"short_time_a": 3000.0}, "QG": {"short_time_delay_s": qg_delay_s}}
+    return replace(
+        plant,
+        transformers=tuple(
+            replace(t, s_rated_kva=kva) for t, kva in zip(plant.transformers, (400.0, 100.0), strict=True)
+        ),
+        devices=tuple(replace(d, **settings.get(d.name, {})) for d in plant.devices),
+    )
+
+
+def test_paths_that_open_in_turn_add_their_times() -> None:
+    # QT1-2 has cleared after 1.1 x 0.1 + 0.03 = 0.14 s. Only then does the current through QT2-2 rise above
+    # its pick-up, and it takes as long again: 0.28 s. QG releases after 0.9 x its delay.
+    plant = unlike_transformers(0.4)
+    before = Pair(graded(plant), "QT2-2", "QG")
+    assert before.clears_s == math.inf
+    followed = Pair(graded(plant, in_turn=True), "QT2-2", "QG")
+    assert followed.level == "largest fault, paths opening in turn"
+    assert followed.clears_s == pytest.approx(0.28, abs=1e-6)
+    assert (followed.extent, followed.releases_s) == ("full", pytest.approx(0.36))
+    assert failing(graded(plant, in_turn=True)) == {}
+    quick = graded(unlike_transformers(0.3), in_turn=True)
+    assert Pair(quick, "QT2-2", "QG").margin_s == pytest.approx(0.27 - 0.28, abs=1e-6)
+    assert ("QT1-2", "QG") in failing(quick)
