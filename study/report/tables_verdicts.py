@@ -34,6 +34,7 @@ SUBJECTS: Final = (
     "regulation",
     "fault ratings",
     "grading",
+    "set protection",
     "dips",
     "harmonics",
 )
