@@ -10,8 +10,9 @@ from typing import Any
 
 from study.report.catalogue import all_tables
 from study.report.content import CAUTION, StudyOutcome
-from study.report.excel_charts import add_charts, chart_rows, stands_beside
+from study.report.excel_charts import CHART_ROWS, add_charts, chart_rows, stands_beside
 from study.report.excel_formats import Formats
+from study.report.excel_pages import modes_scale, pages_across, pages_down, print_scale
 from study.report.excel_sheet import FIRST_ROW, Place, SheetWriter, cell_range, layout
 from study.report.style import ACCENT, QUIET, TINT
 from study.report.tables import SHEETS, Table
@@ -19,12 +20,6 @@ from study.report.tables_verdicts import VerdictGrid, verdict_grid
 
 _FIXED_DATE = datetime(2000, 1, 1)
 _A3 = 8
-_PAGE_PIXELS = 1090.0
-"""Across an A3 page at 96 dots to the inch, a quarter left for fonts whose digits widen the columns."""
-_MODES_PIXELS = 1800.0
-"""Of columns of modes that stand side by side on a page: letters of ten points print at six."""
-_WIDEST_PIXELS = 3600.0
-"""Letters of ten points print at four there: sheets are read on the screen, the report is for print."""
 
 
 def result_workbook(outcome: StudyOutcome, tables: Mapping[str, Table] | None = None) -> bytes:
@@ -117,7 +112,7 @@ def _grid(writer: SheetWriter, grid: VerdictGrid, start: int) -> int:
             look: dict[str, Any] = {"text_wrap": True}
             writer.text(start + 2 + r, c + 1, text, **look)
             lines = max(lines, math.ceil(len(text) / 16))
-        writer.sheet.set_row(start + 2 + r, 14.0 * lines)
+        writer.set_height(start + 2 + r, 14.0 * lines)
     last = start + 1 + len(grid.subjects)
     if grid.subjects:
         writer.verdict_ranges.append(cell_range(start + 2, 1, last, len(grid.columns)))
@@ -134,6 +129,17 @@ def _index(writer: SheetWriter, name: str, places: Sequence[Place], start: int) 
         writer.sheet.write_url(start + 1 + i, 0, target, link, place.table.title)
 
 
+def _together(place: Place) -> list[tuple[int, int]]:
+    """Return first and last row of what one page should hold: heading with first rows, and each chart."""
+    rows = chart_rows(place.table)
+    if not rows:
+        return [(place.title_row, min(place.first_row + 1, place.end_row))]
+    if not stands_beside(place.table):
+        return [(place.title_row, min(place.first_row + 1, place.end_row))]
+    tops = range(place.chart_row, place.chart_row + rows, CHART_ROWS)
+    return [(place.title_row if top == place.chart_row else top, top + CHART_ROWS - 1) for top in tops]
+
+
 def _print_setup(writer: SheetWriter, name: str, places: Sequence[Place], outcome: StudyOutcome) -> None:
     sheet, project = writer.sheet, outcome.plant.project
     sheet.set_landscape()
@@ -145,10 +151,12 @@ def _print_setup(writer: SheetWriter, name: str, places: Sequence[Place], outcom
         starts = [c for c in starts if only.table.columns[c].group != only.table.columns[c - 1].group]
         breaks, widest = pages_across(writer.widths, starts)
         sheet.set_v_pagebreaks(breaks)
-        sheet.set_print_scale(max(10, min(100, math.floor(100.0 * _PAGE_PIXELS / widest))))
+        sheet.set_print_scale(modes_scale(widest))
     else:
-        whole = sum(map(_pixels, writer.widths.values()))
-        sheet.fit_to_pages(math.ceil(whole / _WIDEST_PIXELS), 0)
+        pages, scale = print_scale(writer.widths.values())
+        sheet.fit_to_pages(pages, 0)
+        pieces = [piece for place in places for piece in _together(place)]
+        sheet.set_h_pagebreaks(pages_down(pieces, writer.heights, scale))
     document = f"{project.document_number} rev. {project.revision}".replace("&", "&&")
     sheet.set_footer(f"&L&8{document}&C&8&A&R&8Page &P of &N")
     if only:
@@ -158,44 +166,3 @@ def _print_setup(writer: SheetWriter, name: str, places: Sequence[Place], outcom
     else:
         sheet.freeze_panes(2, 1)
         sheet.repeat_rows(0, 1)
-
-
-def _pixels(width: float) -> float:
-    """Return the pixels of a column from its width in characters (ECMA-376-1, 18.3.1.13, from memory)."""
-    return math.floor(7.0 * width + 5.0)
-
-
-def pages_across(widths: Mapping[int, float], starts: Sequence[int]) -> tuple[list[int], float]:
-    """Return where to break a sheet across its width, so that the columns of a mode stay on one page.
-
-    Parameters
-    ----------
-    widths : mapping of int to float
-        Width of each column in characters; the first column repeats on every page.
-    starts : sequence of int
-        First column of each mode.
-
-    Returns
-    -------
-    breaks : list of int
-        Columns that begin a page.
-    widest : float
-        Pixels of the widest page.
-
-    Examples
-    --------
-    >>> pages_across(dict.fromkeys(range(10), 100.0), [1, 4, 7])
-    ([4, 7], 2820.0)
-    """
-    count = max(widths) + 1
-    pixels = [_pixels(widths[c]) for c in range(count)]
-    breaks: list[int] = []
-    used = widest = sum(pixels[: starts[0]])
-    for start, end in zip(starts, [*starts[1:], count], strict=True):
-        group = sum(pixels[start:end])
-        if used + group > _MODES_PIXELS and start != starts[0]:
-            breaks.append(start)
-            used = pixels[0]
-        used += group
-        widest = max(widest, used)
-    return breaks, float(widest)

@@ -12,7 +12,7 @@ from study.report.style import QUIET, RULE, SERIES
 from study.report.tables import Table
 
 _HEIGHT = 300
-_ROWS = 17
+CHART_ROWS: Final = 17
 _MOST_CATEGORIES = 120
 _DECAY_S = 0.2
 _DASHES = ("solid", "dash", "round_dot", "long_dash_dot")
@@ -40,7 +40,7 @@ def chart_rows(table: Table) -> int:
     if whole and any(isinstance(v, float) and math.isnan(v) for v in table.column(whole)):
         return 0
     blocks = _blocks(table, _BLOCK_KEYS[table.key]) if table.key in _BLOCK_KEYS else [(0, 0)]
-    return _ROWS * len(list(blocks))
+    return CHART_ROWS * len(list(blocks))
 
 
 def stands_beside(table: Table) -> bool:
@@ -324,7 +324,7 @@ def _insert(sheet: Any, chart: Any, place: Place, *, width: int, down: int = 0, 
     column = len(place.table.columns) + 1 if beside else 0
     offset: dict[str, Any] = {"x_offset": across * (width + 12), "y_offset": 6, "object_position": 3}
     offset["description"] = f"Chart: {place.table.title}"
-    sheet.insert_chart(place.chart_row + down * _ROWS, column, chart, offset)
+    sheet.insert_chart(place.chart_row + down * CHART_ROWS, column, chart, offset)
 
 
 _BLOCK_KEYS: Final[dict[str, tuple[str, ...]]] = {

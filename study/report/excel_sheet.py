@@ -97,6 +97,8 @@ class SheetWriter:
         The cells of each measured table as text, and their decimals, by its key.
     links : int
         How many cells are links by now.
+    heights : dict
+        Points of each row that does not have the usual ones.
     verdict_ranges : list of str
         Ranges with status words.
     """
@@ -107,11 +109,17 @@ class SheetWriter:
     texts: dict[str, list[tuple[str, ...]]] = field(default_factory=dict)
     decimals: dict[str, list[tuple[int, ...]]] = field(default_factory=dict)
     links: int = 0
+    heights: dict[int, float] = field(default_factory=dict)
     verdict_ranges: list[str] = field(default_factory=list)
 
     def text(self, row: int, column: int, text: str, **properties: Any) -> None:
         """Write words; what looks like a formula stays words."""
         self.sheet.write_string(row, column, text, self.formats.get(**properties))
+
+    def set_height(self, row: int, points: float) -> None:
+        """Give a row a height of its own."""
+        self.heights[row] = points
+        self.sheet.set_row(row, points)
 
     def measure(self, table: Table, *, alone: bool = False) -> None:
         """Widen the columns to what a table needs; to be done for all tables before the first is written.
@@ -198,7 +206,7 @@ class SheetWriter:
         """Set the heights of the heading and of rows with long text."""
         table, texts = place.table, self.texts[place.table.key]
         lines = max(self._lines(column.title, c) for c, column in enumerate(table.columns))
-        self.sheet.set_row(place.first_row - 1, _LINE_POINTS * lines + 3)
+        self.set_height(place.first_row - 1, _LINE_POINTS * lines + 3)
         most = [1] * table.n_rows
         for c in (c for c, column in enumerate(table.columns) if column.is_text):
             room = self._room(c)
@@ -207,7 +215,7 @@ class SheetWriter:
                     most[r] = max(most[r], self._lines(text, c))
         for r, needed in enumerate(most):
             if needed > 1 and table.style(r) != "group":
-                self.sheet.set_row(place.first_row + r, _LINE_POINTS * needed + 2)
+                self.set_height(place.first_row + r, _LINE_POINTS * needed + 2)
 
     def _header_format(self, column: Column, *, first: bool) -> Any:
         return self.formats.get(
@@ -267,7 +275,7 @@ class SheetWriter:
             room = sum(self.widths[c] for c in at)
             widest = max((len(t) for t in footer.texts.values()), default=0)
             lines = max(math.ceil(widest / room), self._lines(footer.label, 0))
-            self.sheet.set_row(row, _LINE_POINTS * lines + 2)
+            self.set_height(row, _LINE_POINTS * lines + 2)
 
     def _worked(self, place: Place) -> None:
         worked = place.table.worked

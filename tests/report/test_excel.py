@@ -15,7 +15,8 @@ from openpyxl.worksheet.worksheet import Worksheet
 from study.issues import StudyError
 from study.report import excel_sheet
 from study.report.catalogue import all_tables
-from study.report.excel import pages_across, result_workbook
+from study.report.excel import result_workbook
+from study.report.excel_pages import pages_across, pages_down
 from study.report.excel_sheet import internal_link
 from study.report.tables import SHEETS, Table
 from tests.report import made_up
@@ -171,6 +172,16 @@ def test_no_mode_is_parted_by_the_edge_of_a_page() -> None:
     breaks, widest = pages_across({c: 20.0 if c else 30.0 for c in range(36)}, [4, 12, 20, 28])
     assert breaks == [12, 20, 28]
     assert widest == 215 + 3 * 145 + 8 * 145
+
+
+def test_headings_and_charts_are_not_parted_by_the_end_of_a_page() -> None:
+    """At full size a page holds 47 rows of 15 points under the two that repeat."""
+    assert pages_down([(0, 10), (45, 50)], {}, 1.0) == [45]
+    assert pages_down([(0, 10), (40, 45)], {}, 1.0) == []
+    assert pages_down([(0, 10), (40, 45)], {20: 60.0}, 1.0) == [40]
+    assert pages_down([(0, 10), (45, 50)], {}, 0.5) == []
+    # a piece longer than a page begins one and runs on; what follows counts from its end
+    assert pages_down([(5, 120), (130, 150)], {}, 1.0) == [5, 130]
 
 
 def test_rows_of_headings_repeat_in_print_and_pages_are_landscape() -> None:
