@@ -4,8 +4,9 @@ from __future__ import annotations
 
 import json
 import math
-from collections.abc import Mapping
-from dataclasses import asdict
+from collections.abc import Mapping, Sequence
+from dataclasses import asdict, replace
+from functools import lru_cache
 from typing import Any
 
 from study.report.catalogue import all_tables
@@ -13,6 +14,11 @@ from study.report.content import StudyOutcome
 from study.report.tables import Column, Table, Value
 
 FORMAT = "vessel-study-results/1"
+
+
+@lru_cache(maxsize=50_000, typed=True)
+def _word(value: Value) -> str:
+    return json.dumps(value, ensure_ascii=False)
 
 
 def json_document(outcome: StudyOutcome, tables: Mapping[str, Table] | None = None) -> dict[str, Any]:
@@ -62,7 +68,35 @@ def json_text(outcome: StudyOutcome, tables: Mapping[str, Table] | None = None) 
     str
         The text, the same for the same study.
     """
-    return json.dumps(json_document(outcome, tables), ensure_ascii=False, allow_nan=False) + "\n"
+    tables = all_tables(outcome) if tables is None else tables
+    head = json.dumps(json_document(outcome, {}), ensure_ascii=False, allow_nan=False)
+    parts = ", ".join(f"{_word(key)}: {_table_text(table)}" for key, table in tables.items())
+    return f"{head.removesuffix('{}}')}{{{parts}}}}}\n"
+
+
+def _table_text(table: Table) -> str:
+    """Return what `table_document` holds, as text: column by column, which is much quicker."""
+    document = table_document(replace(table, values=tuple(() for _ in table.columns), row_styles=()))
+    head = json.dumps(document, ensure_ascii=False, allow_nan=False).removesuffix("]}")
+    columns = [_column_texts(c.key, v) for c, v in zip(table.columns, table.values, strict=True)]
+    plain = [texts for c, texts in zip(table.columns, columns, strict=True) if not c.group]
+    modes = []
+    for group in table.groups:
+        inside = [texts for c, texts in zip(table.columns, columns, strict=True) if c.group == group]
+        modes.append([f"{_word(group)}: {{{', '.join(row)}}}" for row in zip(*inside, strict=True)])
+    if modes:
+        plain.append([f'"modes": {{{", ".join(row)}}}' for row in zip(*modes, strict=True)])
+    if table.row_styles:
+        plain.append([f'"row": {_word(style or "item")}' for style in table.row_styles])
+    rows = ", ".join(f"{{{', '.join(row)}}}" for row in zip(*plain, strict=True))
+    return f"{head}{rows}]}}"
+
+
+def _column_texts(key: str, values: Sequence[Value]) -> list[str]:
+    name = f"{_word(key)}: "
+    return [
+        name + (repr(v) if type(v) is float and math.isfinite(v) else _word(_json_value(v))) for v in values
+    ]
 
 
 def table_document(table: Table) -> dict[str, Any]:

@@ -7,8 +7,10 @@ many digits as it takes to differ from a limit that it exceeds.
 from __future__ import annotations
 
 import math
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from decimal import ROUND_HALF_UP, Context, Decimal
+
+import numpy as np
 
 NOT_AVAILABLE = "n/a"
 MINUS = "−"
@@ -16,6 +18,7 @@ _MOST_DIGITS = 15
 _HUGE = 1e15
 _ROUNDING = Context(prec=50, rounding=ROUND_HALF_UP)
 _NOISE = 1e-9
+_SAFE, _NEAR_HALF = 1e8, 1e-6  # below the one, a part of a unit is known far better than the other
 
 
 def percent(value_pu: float) -> float:
@@ -190,6 +193,37 @@ def number(value: float, decimals: int, infinite: str = "infinite", missing: str
     if not text.strip("-0."):
         return text.lstrip("-")
     return text.replace("-", MINUS)
+
+
+def column_texts(values: Sequence[float], decimals: Sequence[int]) -> list[str]:
+    """Return numbers as `number` does, a whole column in a fraction of the time.
+
+    Parameters
+    ----------
+    values : sequence of float
+        Numbers to print, all finite.
+    decimals : sequence of int
+        Decimals of each [1].
+
+    Returns
+    -------
+    list of str
+        One text for each.
+
+    Examples
+    --------
+    >>> column_texts([-0.04, 12.345, -7.0], [1, 2, 0])
+    ['0.0', '12.35', '−7']
+    """
+    given = np.array(values, float)
+    with np.errstate(over="ignore", invalid="ignore"):
+        scaled = np.abs(given) * np.power(10.0, np.array(decimals, float))
+        # Well away from a half, a number as written and its binary value round alike.
+        near = ~(scaled < _SAFE) | (np.abs(scaled % 1.0 - 0.5) < _NEAR_HALF)
+    texts = [f"{v:.{d}f}" for v, d in zip(values, decimals, strict=True)]
+    for k in np.flatnonzero(near | np.signbit(given)).tolist():
+        texts[k] = number(values[k], decimals[k])
+    return texts
 
 
 def _rounded(value: float, decimals: int) -> str:

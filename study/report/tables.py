@@ -13,6 +13,7 @@ import numpy as np
 from study.report.numbers import (
     NOT_AVAILABLE,
     column_decimals,
+    column_texts,
     decimals_apart,
     exact_decimals,
     judged_decimals,
@@ -255,7 +256,16 @@ class Table:
         """
         own = self.columns[column]
         decimals = self.decimals(column) if decimals is None else decimals
-        return tuple(_text(v, own, d) for v, d in zip(self.values[column], decimals, strict=True))
+        values = self.values[column]
+        if own.kind not in ("number", "judged"):
+            return tuple(_text(v, own, d) for v, d in zip(values, decimals, strict=True))
+        plain = [k for k, v in enumerate(values) if type(v) is float and math.isfinite(v)]
+        texts = column_texts([values[k] for k in plain], [decimals[k] for k in plain])  # type: ignore[misc]
+        found = dict(zip(plain, texts, strict=True))
+        return tuple(
+            found[k] if k in found else _text(v, own, d)
+            for k, (v, d) in enumerate(zip(values, decimals, strict=True))
+        )
 
 
 def make_table(

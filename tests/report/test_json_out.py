@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 import json
+import math
 import re
 
 from study.report.json_out import json_document, json_text
+from study.report.tables import Column, make_table
 from tests.report import made_up
 
 OUTCOME = made_up.outcome()
@@ -33,6 +35,20 @@ def test_it_is_plain_json_without_nan_and_the_same_every_time() -> None:
 
     json.loads(json_text(OUTCOME), parse_constant=refuse)
     assert json_text(OUTCOME) == json_text(made_up.outcome())
+
+
+def test_the_text_written_column_by_column_is_that_of_the_document() -> None:
+    whole = json.dumps(json_document(OUTCOME), ensure_ascii=False, allow_nan=False)
+    assert json_text(OUTCOME) == whole + "\n"
+
+
+def test_numbers_words_and_blanks_of_every_kind_are_written_as_json_writes_them() -> None:
+    column = Column(key="value", heading="Value", kind="free")
+    values = (1.0, 1, True, -0.0, 1e300, math.nan, -math.inf, None, "", 'a "b" \\ Ω\n', 0.1)
+    table = make_table(key="t", title="T", sheet="R Summary", columns=[column], rows=[[v] for v in values])
+    written = json.loads(json_text(OUTCOME, {"t": table}))["tables"]["t"]["rows"]
+    wanted = [None if isinstance(v, float) and not math.isfinite(v) else v for v in values]
+    assert [repr(row["value"]) for row in written] == [repr(v) for v in wanted]
 
 
 def test_values_are_unrounded_and_what_is_missing_is_null() -> None:

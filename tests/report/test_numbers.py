@@ -63,6 +63,13 @@ def test_rounding_is_that_of_the_number_as_written(value: float, decimals: int) 
     assert len(printed.partition(".")[2]) == decimals
 
 
+@given(st.lists(st.tuples(st.floats(allow_nan=False, allow_infinity=False), st.integers(0, 7))))
+def test_a_column_prints_as_its_numbers_do(cells: list[tuple[float, int]]) -> None:
+    halves = [((n + 0.5) / 10.0**n, n) for n in range(8)]
+    values, decimals = zip(*halves, *cells, strict=True)
+    assert numbers.column_texts(values, decimals) == [numbers.number(v, d) for v, d in (*halves, *cells)]
+
+
 def test_what_is_not_a_number_prints_as_words() -> None:
     assert numbers.number(math.nan, 1) == "n/a"
     assert numbers.number(math.inf, 1, "no set left") == "no set left"
