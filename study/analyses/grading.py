@@ -20,12 +20,13 @@ from study.analyses.grading_findings import grading_findings
 from study.analyses.grading_margins import RULES
 from study.analyses.grading_options import GradingOptions
 from study.analyses.grading_pairs import IN_TURN, Follow, ModePairing, ModePairs
-from study.analyses.grading_proposals import Search, targets_of
+from study.analyses.grading_proposals import Search
 from study.analyses.grading_reach import ENDS_BY_ITSELF, ModeReach, mode_reach
 from study.analyses.grading_rules import Rules, rules_of
 from study.analyses.grading_sequence import Follower, Opening, Resolve
 from study.analyses.grading_starts import ModeStarts, hardest_of
 from study.analyses.grading_stations import Stations, stations_of
+from study.analyses.grading_targets import targets_of
 from study.analyses.protection_devices import protection_devices
 from study.model.plant import Plant
 from study.results.arrays import read_only

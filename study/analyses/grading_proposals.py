@@ -2,70 +2,29 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
-from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
 
 from study.analyses.grading_bands import Openers
+from study.analyses.grading_candidates import FIELDS, Candidate, Trials
 from study.analyses.grading_faults import ModeFaults
-from study.analyses.grading_margins import AT_ONCE
 from study.analyses.grading_options import GradingOptions
 from study.analyses.grading_pairs import ModePairing, PairKey
 from study.analyses.grading_reach import mode_reach
 from study.analyses.grading_rules import Rules
 from study.analyses.grading_stations import Stations
+from study.analyses.grading_targets import Target
 from study.analyses.protection_devices import DeviceModel, device_model, device_surroundings
 from study.model.plant import Plant
 from study.model.protection import Device, SettingRange
-from study.results.grading import NONE, PARTIAL, GradingPairs, NotCured, Reach, SettingChange
+from study.results.grading import NotCured, SettingChange
 
 IntArray = NDArray[np.int64]
 ReachKey = tuple[int, bool]
 Held = Callable[[Openers, int], set[tuple[str, str, str]]]
-
-FIELDS: Final = {
-    "Long-time current": ("long_time_a", "A"),
-    "Short-time current": ("short_time_a", "A"),
-    "Short-time delay": ("short_time_delay_s", "s"),
-    "Instantaneous current": ("instantaneous_a", "A"),
-    "Time multiplier": ("time_multiplier", ""),
-}
-# Overload settings are those of what is protected: they are not touched to cure a grading.
-_NEVER: Final = ("Long-time current", "Long-time delay", "Earth-fault current", "Earth-fault delay")
-_LOWER: Final = (0.9, 0.75, 0.6, 0.5, 0.4, 0.3)
-_STEPS = 5
-_LITTLE = 1.001
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Target:
-    """What fails: a pair, or a reach (upstream -1), in which modes, and the figures that bound a cure."""
-
-    downstream: int
-    upstream: int
-    inward: bool
-    modes: tuple[int, ...]
-    clears_s: float
-    releases_s: float
-    needed_s: float
-    current_a: float
-    upstream_a: float
-    current_ratio: float
-    at_once: bool
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Candidate:
-    """One setting to try: of which station and device, to what, and why."""
-
-    station: int
-    row: int
-    range: SettingRange
-    value: float
-    reason: str
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -116,7 +75,6 @@ class Search:
         self.rules, self.openers, self.held, self.options = rules, openers, held, options
         self.devices = list(plant.devices)
         self.surroundings = device_surroundings(plant)
-        self.row = {d.name: k for k, d in enumerate(plant.devices)}
         self.ranges: dict[str, list[SettingRange]] = {}
         for item in plant.setting_ranges:
             self.ranges.setdefault(item.device, []).append(item)
@@ -140,70 +98,8 @@ class Search:
             reach |= {(m, (part.feeds[k].station, part.feeds[k].inward)) for k in np.flatnonzero(late)}
         return Failures(pairs=pairs, reach=frozenset(reach), graded=graded)
 
-    # ---- what to try
-
-    def candidates(self, target: Target) -> list[Candidate]:
-        """Return settings to try, the least change first."""
-        found = list(self._of_downstream(target))
-        if target.upstream >= 0:
-            found += self._of_upstream(target)
-        unique = {(c.row, c.range.setting, c.value): c for c in found}
-        return sorted(unique.values(), key=self._change)
-
-    def _change(self, c: Candidate) -> tuple[float, str, str]:
-        now = self._now(c.row, c.range)
-        return abs(float(np.log(c.value / now))), c.range.device, c.range.setting
-
-    def _now(self, row: int, item: SettingRange) -> float:
-        value = getattr(self.devices[row], FIELDS[item.setting][0])
-        return float(value) if value else np.nan
-
-    def _settings(self, station: int) -> Iterator[tuple[int, SettingRange, Device]]:
-        """Yield the settings of a station that may be changed, each with the device that holds it."""
-        for k in self.openers.openers[station].members:
-            row = self.row[self.openers.models[k].opened_by]
-            for item in self.ranges.get(self.devices[row].name, []):
-                if item.setting not in _NEVER and self._now(row, item) > 0.0:
-                    yield row, item, self.devices[row]
-
-    def _of_upstream(self, t: Target) -> Iterator[Candidate]:
-        name = self.stations.names[t.upstream]
-        for row, item, d in self._settings(t.upstream):
-            now, aims, reason = self._now(row, item), list[float](), ""
-            match item.setting:
-                case "Short-time delay" if np.isfinite(t.clears_s):
-                    aims = [(t.clears_s + t.needed_s) / (1.0 - d.time_tolerance)]
-                    reason = f"{name} waits until {self.stations.names[t.downstream]} has cleared"
-                case "Time multiplier" if np.isfinite(t.clears_s) and t.releases_s > 0.0:
-                    aims = [now * (t.clears_s + t.needed_s) / t.releases_s]
-                    reason = f"{name} waits until {self.stations.names[t.downstream]} has cleared"
-                case "Instantaneous current" if t.at_once and t.current_ratio > 0.0:
-                    aims = [_LITTLE * now / t.current_ratio]
-                    reason = f"{name} no longer opens without delay for this fault"
-                case "Short-time current":
-                    aims = [_LITTLE * t.upstream_a / (1.0 - d.current_tolerance)]
-                    reason = f"{name} no longer picks up for this fault"
-                case _:
-                    continue
-            for value in _upwards(item, aims, now):
-                yield Candidate(station=t.upstream, row=row, range=item, value=value, reason=reason)
-
-    def _of_downstream(self, t: Target) -> Iterator[Candidate]:
-        name = self.stations.names[t.downstream]
-        for row, item, d in self._settings(t.downstream):
-            now, aims, reason = self._now(row, item), list[float](), ""
-            match item.setting:
-                case "Short-time delay" if t.upstream >= 0 and np.isfinite(t.releases_s):
-                    left = t.releases_s - t.needed_s - d.breaking_time_max_s
-                    aims = [left / (1.0 + d.time_tolerance)] if left > 0.0 else []
-                    reason = f"{name} clears before {self.stations.names[t.upstream]} releases"
-                case "Short-time current" | "Instantaneous current" if not t.at_once:
-                    aims = [part * t.current_a / (1.0 + d.current_tolerance) for part in _LOWER]
-                    reason = f"{name} is sure to pick up for this fault"
-                case _:
-                    continue
-            for value in _downwards(item, aims, now):
-                yield Candidate(station=t.downstream, row=row, range=item, value=value, reason=reason)
+    def _trials(self) -> Trials:
+        return Trials(self.stations, self.openers, self.devices, self.ranges)
 
     # ---- trying
 
@@ -240,7 +136,7 @@ class Search:
         parts: dict[int, list[ModeFaults]] = {}
         before: dict[int, Failures] = {}
         tried = 0
-        for c in self.candidates(target):
+        for c in self._trials().candidates(target):
             tried += 1
             if c.station not in parts:
                 parts[c.station] = [f.only(c.station) for f in self.faults]
@@ -311,7 +207,7 @@ class Search:
             device=c.range.device,
             setting=c.range.setting,
             unit=FIELDS[c.range.setting][1],
-            now=self._now(c.row, c.range),
+            now=self._trials().now(c.row, c.range),
             proposed=c.value,
             cell=self.plant.cell_of(c.range.device, c.range.setting),
             range_cell=c.range.cell,
@@ -342,7 +238,7 @@ class Search:
     def _left(self, t: Target) -> NotCured:
         names = self.stations.names
         stations = [t.downstream] + ([t.upstream] if t.upstream >= 0 else [])
-        given = [names[s] for s in stations if any(self._settings(s))]
+        given = [names[s] for s in stations if any(self._trials().settings(s))]
         if not given:
             why = "no setting of these devices has a range on the sheet Setting ranges"
         else:
@@ -385,99 +281,3 @@ def _key(t: Target) -> PairKey | ReachKey:
 
 def _in(key: PairKey, failures: Failures) -> bool:
     return any(k == key for _, k in failures.pairs)
-
-
-def _snapped(item: SettingRange, value: float, *, up: bool) -> float:
-    """Return the next setting that can be made, up or down; without steps the value to three digits."""
-    if item.step:
-        count = (value - item.minimum) / item.step
-        whole = np.ceil(count - 1e-6) if up else np.floor(count + 1e-6)
-        return float(round(item.minimum + whole * item.step, 6))
-    if value <= 0.0:
-        return value
-    scale = 10.0 ** (np.floor(np.log10(value)) - 2)
-    return float(round((np.ceil if up else np.floor)(value / scale) * scale, 6))
-
-
-def _upwards(item: SettingRange, aims: Sequence[float], now: float) -> list[float]:
-    """Return the first settings from each aim up that are above the present one."""
-    found: list[float] = []
-    for aim in aims:
-        value = _snapped(item, max(aim, _LITTLE * now), up=True)
-        step = item.step or 0.1 * value
-        found += [round(value + k * step, 6) for k in range(_STEPS)]
-    return [v for v in found if now < v and item.minimum <= v <= item.maximum]
-
-
-def _downwards(item: SettingRange, aims: Sequence[float], now: float) -> list[float]:
-    """Return the first settings from each aim down that are below the present one."""
-    highest = min(now / _LITTLE, item.maximum)
-    found = [_snapped(item, min(aim, highest), up=False) for aim in aims]
-    return [v for v in found if v < now and item.minimum <= v <= item.maximum]
-
-
-def targets_of(
-    pairs: GradingPairs,
-    sides: Sequence[bool],
-    reach: Reach,
-    late: tuple[Sequence[bool], NDArray[np.bool_]],
-) -> list[Target]:
-    """Return what fails, in the order in which it is to be cured: most modes first, then the least margin.
-
-    Parameters
-    ----------
-    pairs : GradingPairs
-        Of all modes.
-    sides : sequence of bool
-        Side of the fault of each pair.
-    reach : Reach
-        Of all modes.
-    late : tuple
-        Side of the fault of each row of the reach; [row, mode] what is cleared late or never.
-
-    Returns
-    -------
-    list of Target
-        Pairs, then reach.
-    """
-    bad = np.isin(pairs.extent, (PARTIAL, NONE))
-    rows = enumerate(zip(reach.station.tolist(), late[0], strict=True))
-    least = {(s, bool(inward)): reach.least_a[k] for k, (s, inward) in rows}
-    found: list[tuple[tuple[float, float, int], Target]] = []
-    for k in np.flatnonzero(bad.any(axis=1)).tolist():
-        modes = np.flatnonzero(bad[k])
-        m = int(modes[np.argmin(pairs.margin_s[k, modes])])
-        key = (int(pairs.downstream[k]), bool(sides[k]))
-        t = Target(
-            downstream=int(pairs.downstream[k]),
-            upstream=int(pairs.upstream[k]),
-            inward=bool(sides[k]),
-            modes=tuple(modes.tolist()),
-            clears_s=float(np.nanmax(pairs.clears_s[k, modes])),
-            releases_s=float(np.nanmin(pairs.releases_s[k, modes])),
-            needed_s=float(pairs.needed_s[k, m]),
-            current_a=float(np.nanmin([*pairs.current_a[k, modes], *least[key][modes]])),
-            upstream_a=float(np.nanmax(pairs.upstream_a[k, modes])),
-            current_ratio=float(np.nanmin(pairs.current_ratio[k, modes])),
-            at_once=int(pairs.rule[k, m]) == AT_ONCE,
-        )
-        found.append(((-len(modes), float(pairs.margin_s[k, m]), k), t))
-    ranked = [t for _, t in sorted(found, key=lambda x: x[0])]
-    for k in np.flatnonzero(late[1].any(axis=1)).tolist():
-        modes = np.flatnonzero(late[1][k])
-        ranked.append(
-            Target(
-                downstream=int(reach.station[k]),
-                upstream=-1,
-                inward=bool(late[0][k]),
-                modes=tuple(modes.tolist()),
-                clears_s=np.inf,
-                releases_s=np.nan,
-                needed_s=0.0,
-                current_a=float(np.nanmin(reach.least_a[k, modes])),
-                upstream_a=np.nan,
-                current_ratio=np.inf,
-                at_once=False,
-            )
-        )
-    return ranked
