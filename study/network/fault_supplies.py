@@ -196,7 +196,7 @@ def _motors(network: Network, mode: Mode, view: View, leads: dict[int, tuple[int
             large.append(one)
         else:
             board_node = leads[one.node][0] if one.node in leads else one.node
-            small.setdefault(view.bus[board_node], []).append(replace(one, node=board_node, lead=0j))
+            small.setdefault(board_node, []).append(replace(one, node=board_node, lead=0j))
     return large + [_lump(network, parts) for parts in small.values()]
 
 

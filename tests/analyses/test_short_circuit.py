@@ -567,3 +567,28 @@ def test_the_equivalent_generator_agrees_with_every_source_by_itself():
     assert mode.maximum.equivalent_half_a[k] == pytest.approx(mode.maximum.iac_half_a[k], rel=0.03)
     board, _ = at(result, "MSB")
     assert math.isnan(mode.maximum.equivalent_half_a[board])
+
+
+def test_small_motors_stand_on_their_own_side_of_a_closed_tie():
+    """Two sections are one busbar, yet the tie carries the motors of the far section alone, in any order."""
+    loads = [
+        plants.load("Pump P", "PS", p_rated_kw=30.0),
+        plants.load("Pump S", "SB", p_rated_kw=60.0),
+    ]
+    shares = []
+    for order in (loads, loads[::-1]):
+        plant = plants.plant(
+            boards=[plants.board("PS", 450.0), plants.board("SB", 450.0)],
+            gensets=[a_set("G1", "PS")],
+            ties=[plants.tie("BT", "PS", "SB")],
+            loads=order,
+            devices=[plants.device("Q", "BT", end="PS")],
+        )
+        result = study(plant)
+        case = result.modes[0].maximum
+        row = result.modes[0].devices.end[0]
+        through = dict(zip(case.sources.names, case.ends.share[row], strict=True))
+        assert through["G1"] == through["small motors of PS"] == 0.0
+        assert through["small motors of SB"] == 1.0
+        shares.append(case.ends.through_ip_a[row])
+    assert shares[0] == pytest.approx(shares[1])
