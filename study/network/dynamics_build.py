@@ -14,6 +14,7 @@ from study.network import dynamics_data as d
 from study.network.batch import BatchSolution
 from study.network.consumers import Demand
 from study.network.dynamics_data import Plant, Script
+from study.network.dynamics_idle import without_idle_nodes
 from study.network.dynamics_motors import (
     Drive,
     Inertia,
@@ -98,7 +99,9 @@ class Plan:
 class Model:
     """An island ready to be followed; ``lumped`` gives the voltages of all other buses from its nodes'.
 
-    ``inertia`` is [drive]; the motors of ``start`` are the plan's drives, then the running ones.
+    ``inertia`` is [drive]; the motors of ``start`` are the plan's drives, then the running ones. ``back``
+    [node, node of ``start``] turns voltages of the nodes simulated into those of all nodes: the buses of
+    ``lumped``, then the terminals of motors with a run of their own.
     """
 
     at: ModeNetwork
@@ -108,6 +111,7 @@ class Model:
     inertia: tuple[Inertia, ...]
     start: Plant
     script: Script
+    back: ComplexArray
 
 
 def demand_of(at: ModeNetwork, p_kw: FloatArray, q_kvar: FloatArray) -> Demand:
@@ -206,14 +210,16 @@ class _Builder:
         load = np.stack([self._load(len(v), state) for state in range(len(self.plan.p_kw))])
         inertia = self._inertia()
         motor = self._motors(node, inertia)
+        small = without_idle_nodes(self._start(y, v, load[0], motor), self._script(load - load[0]))
         return Model(
             at=self.batch.at,
             plan=self.plan,
             lumped=self.lumped,
             rows=self.rows,
             inertia=inertia,
-            start=self._start(y, v, load[0], motor),
-            script=self._script(load - load[0]),
+            start=small.start,
+            script=small.script,
+            back=small.back,
         )
 
     def _grid(self) -> tuple[ComplexArray, ComplexArray, IntArray]:

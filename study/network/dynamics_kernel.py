@@ -1,7 +1,7 @@
 """A plant followed in time, compiled: Runge-Kutta steps of fourth order between what happens.
 
-Compiling takes some twenty seconds, once for each installation (the result is kept on disk); reading it back
-a fraction of a second.
+Compiling takes about half a minute, once for each installation (the result is kept on disk); reading it back
+less than a second.
 """
 
 from __future__ import annotations

@@ -12,6 +12,7 @@ from study.network.dynamics_build import Model, shortest_time_s
 from study.network.dynamics_data import Kept, Plant, Script
 
 FloatArray = NDArray[np.float64]
+ComplexArray = NDArray[np.complex128]
 
 LONGEST_STEP_S = 0.002
 SHORTEST_STEP_S = 0.0002
@@ -70,10 +71,17 @@ def follow_model(model: Model, until_s: float, step_s: float | None = None) -> C
     Course
         What it did.
     """
-    return follow_plant(model.start, model.script, until_s, step_s)
+    return follow_plant(model.start, model.script, until_s, step_s, back=model.back)
 
 
-def follow_plant(start: Plant, script: Script, until_s: float, step_s: float | None = None) -> Course:
+def follow_plant(
+    start: Plant,
+    script: Script,
+    until_s: float,
+    step_s: float | None = None,
+    *,
+    back: ComplexArray | None = None,
+) -> Course:
     """Follow a plant in time; see `follow_model`.
 
     Parameters
@@ -86,6 +94,8 @@ def follow_plant(start: Plant, script: Script, until_s: float, step_s: float | N
         How long. [s]
     step_s : float, optional
         Length of a step. [s]
+    back : ndarray, shape (node wanted, node), optional
+        What turns voltages of the plant's nodes into those wanted.
 
     Returns
     -------
@@ -99,10 +109,10 @@ def follow_plant(start: Plant, script: Script, until_s: float, step_s: float | N
     script = Script(**{name: x.copy() for name, x in script._asdict().items()})
     kept = space_for(now, int(until_s / step) + 4 * len(script.event) + MORE_ROWS)
     rows, logged, how = follow(now, script, kept, (float(until_s), step))
-    v = kept.v[:rows]
+    v = kept.v[:rows, :, 0] + 1j * kept.v[:rows, :, 1]
     return Course(
         time_s=kept.time[:rows],
-        v_pu=np.hypot(v[:, :, 0], v[:, :, 1]),
+        v_pu=np.abs(v if back is None else v @ back.T),
         source=kept.source[:rows],
         motor=kept.motor[:rows],
         log=kept.log[:logged],
