@@ -1,12 +1,14 @@
 """The workbook is written back in place, or the old file is whole and a sentence says why; as a user runs it.
 
-The study itself is done once and taken from there: what is tested is what happens to files around it.
+Study, page and result sheets are made once and taken from there: what is tested is what happens to files
+around them.
 """
 
 from __future__ import annotations
 
 import contextlib
 import os
+import pickle
 import shutil
 import signal
 import subprocess
@@ -14,6 +16,7 @@ import sys
 import time
 from collections.abc import Callable, Iterator
 from dataclasses import replace
+from functools import cache
 from hashlib import sha256
 from pathlib import Path
 
@@ -21,9 +24,11 @@ import openpyxl
 import pytest
 
 from study.cli import main
-from study.pipeline import run_study
 from study.report.content import StudyOutcome
-from study.workbook.package import validate_package, write
+from study.report.excel import result_workbook
+from study.report.html import report_page
+from study.workbook.package import graft_result_sheets, validate_package, write
+from tests.demos import studies
 
 ROOT = Path(__file__).parents[2]
 DEMO = ROOT / "workbooks" / "workboat.xlsx"
@@ -32,7 +37,7 @@ OUTPUTS = ["vessel-report.html", "vessel-results.json", "vessel.xlsx"]
 
 @pytest.fixture(scope="module")
 def studied() -> StudyOutcome:
-    return run_study(DEMO)
+    return studies.studied("workboat")
 
 
 @pytest.fixture
@@ -56,6 +61,18 @@ def known_study(
         return replace(studied, plant=replace(studied.plant, file_digest=digest))
 
     monkeypatch.setattr("study.pipeline.run_study", run)
+    monkeypatch.setattr("study.report.html.report_page", lambda *_: known_page())
+    monkeypatch.setattr("study.report.excel.result_workbook", lambda *_: known_sheets())
+
+
+@cache
+def known_page() -> str:
+    return report_page(studies.studied("workboat"))
+
+
+@cache
+def known_sheets() -> bytes:
+    return result_workbook(studies.studied("workboat"))
 
 
 def one_sentence(capsys: pytest.CaptureFixture[str]) -> str:
@@ -222,7 +239,9 @@ def test_a_disk_that_the_report_fills(
 ) -> None:
     """The workbook has its results; the reports of the last run are whole, not cut short."""
     folder = tmp_path / "small"
-    with disk(folder, "size=700k"):
+    old = DEMO.read_bytes()
+    room = len(old) + len(graft_result_sheets(old, known_sheets())) + 60_000
+    with disk(folder, f"size={room // 1024}k"):
         book = folder / "vessel.xlsx"
         shutil.copyfile(DEMO, book)
         for name in OUTPUTS[:2]:
@@ -234,7 +253,7 @@ def test_a_disk_that_the_report_fills(
         def fill(handle: int) -> None:
             real(handle)
             with contextlib.suppress(OSError), filler.open("ab") as stream:
-                stream.write(bytes(600_000))
+                stream.write(bytes(room))
 
         monkeypatch.setattr(write, "_sync", fill)
         assert main(["run", str(book)]) == 2
@@ -289,13 +308,35 @@ def test_report_and_json_are_replaced_in_one_step(
 # ---- killed
 
 
+RUN_OF_A_KNOWN_STUDY = """
+import pickle, sys
+from pathlib import Path
+import study.pipeline
+import study.report.excel
+import study.report.html
+from study.cli import main
+known = pickle.loads(Path(sys.argv[1]).read_bytes())
+study.pipeline.run_study = lambda *_, **__: known[0]
+study.report.html.report_page = lambda *_: known[1]
+study.report.excel.result_workbook = lambda *_: known[2]
+sys.exit(main(["run", sys.argv[2]]))
+"""
+
+
 @pytest.mark.skipif(os.name == "nt", reason="SIGKILL is a POSIX matter")
 @pytest.mark.parametrize("moment", ["reading", "temporary file"])
-def test_a_killed_run_leaves_the_old_file_whole(moment: str, tmp_path: Path) -> None:
-    """A whole run in a process of its own, killed while it reads, or when its temporary file appears."""
+def test_a_killed_run_leaves_the_old_file_whole(
+    moment: str, tmp_path: Path, studied: StudyOutcome, tmp_path_factory: pytest.TempPathFactory
+) -> None:
+    """A run in a process of its own, killed while it reads, or when its temporary file appears."""
     book = tmp_path / "vessel.xlsx"
     shutil.copyfile(DEMO, book)
-    with subprocess.Popen([sys.executable, "-m", "study", "run", str(book)], cwd=ROOT) as process:
+    command = ["-m", "study", "run", str(book)]
+    if moment == "temporary file":
+        known = tmp_path_factory.mktemp("known") / "study"
+        known.write_bytes(pickle.dumps((studied, known_page(), known_sheets())))
+        command = ["-c", RUN_OF_A_KNOWN_STUDY, str(known), str(book)]
+    with subprocess.Popen([sys.executable, *command], cwd=ROOT) as process:
         deadline = time.monotonic() + 300
         while time.monotonic() < deadline and process.poll() is None:
             if moment == "reading" or any(n.endswith(".tmp") for n in os.listdir(tmp_path)):
