@@ -15,6 +15,7 @@ BoolArray = NDArray[np.bool_]
 
 # Steps of a third follow decays of a few milliseconds to 1e-4 of the heat; past 10 s hardly any is left.
 _FIRST_S, _FINE_TO_S, _FINE, _LAST_S, _COARSE = 0.0005, 10.0, 1.35, 7200.0, 2.0
+_DIED_AWAY = 35.0  # time constants: 1e-15 of the start
 _SIMPSON = np.array([1.0, 4.0, 1.0]) / 6.0
 
 
@@ -141,15 +142,29 @@ def _components(
     at = np.ix_(places, fed)
     parts = case.parts
     initial, transient, lasting, direct = (
-        x[at][:, :, None] for x in (parts.subtransient_a, parts.transient_a, parts.sustained_a, parts.dc_a)
+        x[at] for x in (parts.subtransient_a, parts.transient_a, parts.sustained_a, parts.dc_a)
     )
-    t_sub, t_trans, t_dc = (x[at][:, :, None] for x in (parts.t_sub_s, parts.t_trans_s, parts.t_dc_s))
-    ac = (initial - transient) * np.exp(-samples / t_sub)
-    # Motors have no transient part, and they are most of the sources.
-    slow = np.flatnonzero((transient + lasting).any(axis=(0, 2)))
-    kept = lasting[:, slow]
-    ac[:, slow] += (transient[:, slow] - kept) * np.exp(-samples / t_trans[:, slow]) + kept
-    return ac, direct * np.exp(-samples / t_dc)
+    ac, dc = (np.zeros((*initial.shape, len(samples))) for _ in range(2))
+    _add_decays(ac, initial - transient, parts.t_sub_s[at], samples)
+    _add_decays(ac, transient - lasting, parts.t_trans_s[at], samples)
+    ac += lasting[:, :, None]
+    _add_decays(dc, direct, parts.t_dc_s[at], samples)
+    return ac, dc
+
+
+def _add_decays(total: FloatArray, start: FloatArray, constant_s: FloatArray, samples: FloatArray) -> None:
+    """Add decaying parts [place, source] to a total [place, source, sample], up to where they have died away.
+
+    Motors have no transient part, and most decays are short against the last sample.
+    """
+    columns = np.flatnonzero(start.any(axis=0))
+    if not len(columns):
+        return
+    longest = np.where(start[:, columns] != 0.0, constant_s[:, columns], 0.0).max()
+    until = int(np.searchsorted(samples, _DIED_AWAY * longest, side="right"))
+    falls = np.exp(-samples[:until] / constant_s[:, columns, None])
+    falls *= start[:, columns, None]
+    total[:, columns, :until] += falls
 
 
 def _expanded(component: FloatArray, runs: FloatArray) -> FloatArray:
