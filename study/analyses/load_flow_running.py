@@ -132,6 +132,8 @@ def _terminal_voltages(s: ModeSolution, own: _OwnRuns, power_kva: ComplexArray) 
         for _ in range(_REPEATS):
             last, v = v, open_v - np.conj(share * power / v) / y_own
             change = np.abs(v - last)
+            if np.all(change < _FOUND):
+                break
     return np.asarray(np.where(change < _FOUND, v, np.nan))
 
 

@@ -19,7 +19,7 @@ MOST_TRIMS = 12
 TRIMMED = 2e-7  # of rated kW and kVA, that a set may be from its share
 SAME_VOLTAGE, SAME_FREQUENCY = 5e-4, 2e-4  # of rated: changes nearer than this are one
 KEPT_IN = 4  # repetitions
-RESCALED, MOST_RESCALES = 1e-5, 3  # of the sum of rated kW, that a load may be from what it is called
+RESCALED, MOST_RESCALES = 1e-4, 2  # of the sum of rated kW, that a load may be from what it is called
 
 
 def trimmed_settings(group: Group, as_set: AsSet) -> Settings | None:
@@ -62,7 +62,7 @@ def trimmed_settings(group: Group, as_set: AsSet) -> Settings | None:
         if not solution.solved[0]:
             return None
         short_kw = kw_short(group, solution, as_set.load_pu[at])
-        if max(trim.distance(solution), abs(short_kw[0]) / group.p_rated_kw.sum()) < TRIMMED:
+        if trim.distance(solution) < TRIMMED and abs(short_kw[0]) < RESCALED * group.p_rated_kw.sum():
             break
         scale = scale + short_kw / group.p_kw[group.loads].sum()
     return settings
