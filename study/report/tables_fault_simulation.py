@@ -25,6 +25,7 @@ from study.report.tables import (
 )
 from study.results.short_circuit import ShortCircuitResult, SimulatedFault
 
+_NOTHING: Final = "No fault is simulated: name a place in a row of kind fault on the sheet Events."
 _INSTANTS_S: Final = (0.0, 0.004, 0.01, 0.02, 0.03, 0.05, 0.08, 0.1, 0.15, 0.2)
 
 
@@ -122,7 +123,7 @@ def simulation_table(result: ShortCircuitResult) -> Table:
         sheet=SHEET,
         columns=columns,
         rows=rows,
-        notes=_notes(result) if rows else (),
+        notes=_notes(result) if rows else (_NOTHING,),
         worked=_worked(result.simulated),
     )
 

@@ -465,3 +465,19 @@ def test_no_simulated_fault_leaves_no_empty_table(figures: Figures) -> None:
     page = drawn.page_with(outcome, replace(figures, short_circuit=left))
     assert "Simulated faults beside" not in page
     assert "fig-fault-simulated" not in page
+
+
+def test_a_workbook_without_faults_to_simulate_says_how_to_name_one() -> None:
+    tables = all_tables(replace(OUTCOME, short_circuit=replace(RESULT, simulated=())))
+    assert tables["fault_simulations"].n_rows == 0
+    assert "a row of kind fault on the sheet Events" in tables["fault_simulations"].notes[0]
+
+
+def test_through_faults_show_what_is_exceeded_and_what_is_not_assessed(page: str) -> None:
+    table = TABLES["through_faults"]
+    peak, rated = table.texts(table.index("peak_ka")), table.texts(table.index("rated_peak_ka"))
+    assert peak[0] != rated[0]  # 45.0001 against 45.00004
+    assert table.texts(table.index("heat_percent"))[1] == "not assessed"
+    assert table.texts(table.index("withstand_ka"))[2] == "not given"
+    assert table.column("device")[:2] == ("Q1", "")
+    assert "Transformers and reactors against the fault behind them" in page
