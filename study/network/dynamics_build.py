@@ -265,10 +265,11 @@ class _Builder:
 
     def _motors(self, node: IntArray, inertia: Sequence[Inertia]) -> FloatArray:
         """Return the motors that start, then the running ones, [motor, column]."""
-        network, rows = self.batch.at.network, []
+        at, rows = self.batch.at, []
+        number = {x.name: n for n, x in enumerate(at.network.plant.loads)}
         for x, h, k in zip(self.plan.drives, inertia, node, strict=True):
-            u_base = float(network.u_base_v[network.topology.node_of[x.load.name]])
-            row = motor_row(x, u_base_v=u_base, s_base_kva=network.s_base_kva, inertia=h)
+            own_v = float(at.load_arrays.v_scale[number[x.load.name]])
+            row = motor_row(x, own_v=own_v, s_base_kva=at.network.s_base_kva, inertia=h)
             row[d.MOTOR_NODE] = k
             rows.append(row)
         f_pu = float(self.batch.frequency_pu[0, self.plan.island])

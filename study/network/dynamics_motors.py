@@ -148,15 +148,15 @@ class Drive:
     load_pu: float
 
 
-def motor_row(drive: Drive, *, u_base_v: float, s_base_kva: float, inertia: Inertia) -> FloatArray:
+def motor_row(drive: Drive, *, own_v: float, s_base_kva: float, inertia: Inertia) -> FloatArray:
     """Return the parameters of a motor.
 
     Parameters
     ----------
     drive : Drive
         The motor.
-    u_base_v : float
-        Base voltage of its node. [V]
+    own_v : float
+        What turns the network's voltage into that of the motor, per unit each.
     s_base_kva : float
         Base power. [kVA]
     inertia : Inertia
@@ -174,7 +174,6 @@ def motor_row(drive: Drive, *, u_base_v: float, s_base_kva: float, inertia: Iner
     """
     load, motor = drive.load, _motor(drive.load)
     row = np.zeros(d.MOTOR_COLUMNS)
-    own_v = u_base_v / load.u_rated_v
     input_kva = drive.units * load.p_rated_kw / (load.efficiency * load.cos_phi)
     row[d.OWN_MOTOR_V], row[d.Y_SCALE] = own_v, input_kva / s_base_kva * own_v**2
     row[d.METHOD], row[d.LAW] = METHODS[motor.starting_method], LAWS[motor.torque_law]

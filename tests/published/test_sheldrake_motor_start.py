@@ -3,8 +3,8 @@
 Source: D. J. Sheldrake, Handbook of Electrical Engineering, Wiley 2003, appendix G: generator 3125 kVA,
 13.8 kV, 0.02 + j0.25 pu; transformer 3150 kVA, 13.2/4.0 kV, 0.7 + j6.0 %; motor 500 kW, 4 kV, efficiency
 95 %, power factor 0.88, starting with 5 times its current at 0.25; its cable 0.00844 + j0.003175 pu on 3125
-kVA. Standing loads 900 kW at 0.9 and 500 kW at 0.85 are impedances at 1 pu. Voltages are per unit of 13.8 kV, and
-of 13.8 x 4.0/13.2 = 4.1818 kV on the low side.
+kVA. Standing loads 900 kW at 0.9 and 500 kW at 0.85 are impedances at 1 pu. Voltages are per unit of 13.8 kV,
+and of 13.8 x 4.0/13.2 = 4.1818 kV on the low side.
 
 The standing load at the generator is not on the page that was read: it follows from the printed impedance.
 The page gives the cable as 1500 m of 70 mm2 with 0.343 and 0.129 ohm/km as well, which is not that pu: the
