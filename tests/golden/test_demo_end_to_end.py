@@ -82,6 +82,13 @@ def test_the_planted_faults_of_the_service_vessel_are_found() -> None:
     assert ("Cargo", "capacity", "all boards") in bad
     assert ("Manoeuvring", "kvar sharing", "DG2") in bad
     assert {e for _, subject, e in bad if subject == "cables"} == {"C-ACC-2"}
+    assert {(m, e) for m, subject, e in bad if subject == "grading"} >= {("At sea", "Q-CARGO")}
+    assert {e for _, subject, e in bad if subject == "grading"} == {"Q-CARGO"}
+    assert found.grading is not None
+    (change,) = [c for c in found.grading.changes if c.device == "Q-CARGO"]
+    # Below the least of what one set gives at the cargo panel, as the rest of that board's ladder.
+    assert change.setting == "Short-time current"
+    assert change.proposed < change.now
 
 
 def test_tables_are_frames_for_notebooks() -> None:
