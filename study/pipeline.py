@@ -79,8 +79,11 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     StudyOutcome
         Plant, results and verdicts.
     """
+    from dataclasses import replace
+
     from study.analyses.balance import load_balance
     from study.analyses.cable_protection import cable_protection
+    from study.analyses.dips_cures import try_cures
     from study.analyses.dips_estimate import start_estimates
     from study.analyses.dips_simulation import simulate_cases
     from study.analyses.fault_ratings import fault_ratings
@@ -91,6 +94,7 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     from study.analyses.regulation import voltage_regulation
     from study.analyses.sharing import sharing_study
     from study.analyses.short_circuit import short_circuit
+    from study.checks.dips import judge_dips
     from study.checks.limits import limits_in_force
     from study.network.network import build_network, mode_network
     from study.report.content import StudyOutcome
@@ -127,6 +131,17 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
     _tell(progress, "events in time")
     estimates, largest = start_estimates(networks, p_kw, q_kvar, _dip_options(limits))
     cases = simulate_cases(networks, p_kw, q_kvar, _dip_options(limits), progress=progress)
+    dips = DipsResult(estimates=estimates, largest=largest, cases=cases)
+    failed = {v.equipment for v in judge_dips(plant, dips, limits) if v.status == "exceeds"}
+    cures = try_cures(
+        networks,
+        [case.case for case in cases if case.case in failed],
+        p_kw,
+        q_kvar,
+        _dip_options(limits),
+        progress=progress,
+    )
+    dips = replace(dips, cures=cures)
     outcome = StudyOutcome(
         plant=plant,
         balance=balance,
@@ -137,7 +152,7 @@ def study_plant(plant: Plant, progress: Progress | None = None) -> StudyOutcome:
         fault_ratings=ratings,
         grading=graded,
         cables=cables,
-        dips=DipsResult(estimates=estimates, largest=largest, cases=cases),
+        dips=dips,
         set_protection=generator_protection(plant, devices, flow, faults),
         verdicts=(),
         limits=tuple(limits.by_key[key] for key in USED_LIMITS),
@@ -211,7 +226,7 @@ def _judged(outcome: StudyOutcome, limits: Limits) -> StudyOutcome:
 
     from study.checks.cables import judge_cables
     from study.checks.capacity import judge_capacity
-    from study.checks.dips import judge_dips
+    from study.checks.dips import cure_status, judge_dips
     from study.checks.discrimination import judge_discrimination
     from study.checks.fault_ratings import judge_fault_ratings
     from study.checks.generator_protection import judge_generator_protection
@@ -220,9 +235,10 @@ def _judged(outcome: StudyOutcome, limits: Limits) -> StudyOutcome:
     from study.checks.voltage import judge_voltage
 
     plant, ratings, graded = outcome.plant, outcome.fault_ratings, outcome.grading
-    cables, sets = outcome.cables, outcome.set_protection
+    cables, sets, dips = outcome.cables, outcome.set_protection, outcome.dips
     return replace(
         outcome,
+        cure_words=tuple(cure_status(plant, cure, limits) for cure in dips.cures) if dips is not None else (),
         verdicts=(
             *judge_capacity(plant, outcome.balance, limits),
             *judge_loading(plant, outcome.load_flow, limits),
@@ -233,7 +249,7 @@ def _judged(outcome: StudyOutcome, limits: Limits) -> StudyOutcome:
             *(judge_discrimination(plant, graded, limits) if graded is not None else ()),
             *(judge_cables(plant, cables, limits) if cables is not None else ()),
             *(judge_generator_protection(plant, sets, limits) if sets is not None else ()),
-            *(judge_dips(plant, outcome.dips, limits) if outcome.dips is not None else ()),
+            *(judge_dips(plant, dips, limits) if dips is not None else ()),
         ),
     )
 
@@ -326,11 +342,12 @@ def check_study(book: Path | str) -> tuple[Plant | None, tuple[Issue, ...]]:
         Everything found, in the order of the sheets.
     """
     from study.issues import WorkbookError
-    from study.network.network import build_network
     from study.workbook import check_workbook
 
     plant, issues = check_workbook(book)
     if plant is not None:
+        from study.network.network import build_network
+
         try:
             build_network(plant)
         except WorkbookError as error:

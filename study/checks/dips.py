@@ -7,9 +7,9 @@ from collections.abc import Iterator
 from typing import Final
 
 from study.checks.limits import Limits
-from study.checks.verdict import Sense, Verdict, make_verdict
+from study.checks.verdict import Sense, Status, Verdict, make_verdict, worst
 from study.model.plant import Plant
-from study.results.dips import DipsResult, MotorTrace, SimulatedCase
+from study.results.dips import Cure, DipsResult, MotorTrace, SimulatedCase
 
 SUBJECT: Final = "dips"
 JUDGED_KINDS: Final = frozenset(
@@ -18,10 +18,10 @@ JUDGED_KINDS: Final = frozenset(
 """Events of service; faults, faulty settings and the build-up of voltage have no transient limits."""
 _RUN_UP_PERCENT: Final = 90.0
 """Cage motors run above it at any load that they can drive for long."""
+_NOT_TRIED: Final = "Run one set more, or change how the motor is started."
 _CURE_START: Final = (
     "Run one set more before it starts, or start it with less current; simulate it as an Event."
 )
-_CURE: Final = "See the cures tried for this case; run one set more, or change how the motor is started."
 
 
 def judge_dips(plant: Plant, result: DipsResult, limits: Limits) -> tuple[Verdict, ...]:
@@ -49,9 +49,42 @@ def judge_dips(plant: Plant, result: DipsResult, limits: Limits) -> tuple[Verdic
     cases = (
         verdict
         for case in result.cases
-        for verdict in _Case(case, plant.project.f_rated_hz, limits).verdicts()
+        for verdict in _Case(
+            case, plant.project.f_rated_hz, limits, remedy=_remedy(plant, result, case.case, limits)
+        ).verdicts()
     )
     return (*starts, *cases)
+
+
+def cure_status(plant: Plant, cure: Cure, limits: Limits) -> Status:
+    """Return the worst verdict of a case simulated with a cure.
+
+    Parameters
+    ----------
+    plant : Plant
+        For the rated frequency.
+    cure : Cure
+        The case with one thing changed.
+    limits : Limits
+        Transient limits.
+
+    Returns
+    -------
+    str
+        A status word.
+    """
+    judged = worst(tuple(_Case(cure.simulated, plant.project.f_rated_hz, limits).verdicts()))
+    return judged.status if judged is not None else "within"
+
+
+def _remedy(plant: Plant, result: DipsResult, case: str, limits: Limits) -> str:
+    tried = [cure for cure in result.cures if cure.case == case]
+    if not tried:
+        return _NOT_TRIED
+    held = [c.change for c in tried if cure_status(plant, c, limits) in ("within", "close")]
+    if not held:
+        return "None of the cures tried by simulation is enough by itself; see the table of cures."
+    return f"Simulated again, each of these is enough by itself: {'; '.join(held)}."
 
 
 def _starts(plant: Plant, result: DipsResult, limits: Limits) -> Iterator[Verdict]:
@@ -82,8 +115,8 @@ def _starts(plant: Plant, result: DipsResult, limits: Limits) -> Iterator[Verdic
 
 
 class _Case:
-    def __init__(self, case: SimulatedCase, f_rated_hz: float, limits: Limits) -> None:
-        self.case, self.f_rated_hz, self.limits = case, f_rated_hz, limits
+    def __init__(self, case: SimulatedCase, f_rated_hz: float, limits: Limits, *, remedy: str = "") -> None:
+        self.case, self.f_rated_hz, self.limits, self.remedy = case, f_rated_hz, limits, remedy
         self.kinds = set(case.kinds)
 
     def verdicts(self) -> Iterator[Verdict]:
@@ -118,11 +151,11 @@ class _Case:
         """Judge the worst contactor where any would open; those of a dead board are no further matter."""
         if self.case.collapsed or not self.case.drop_outs:
             return
-        worst = min(self.case.drop_outs, key=lambda d: d.u_least_pu - d.drop_out_pu)
+        least = min(self.case.drop_outs, key=lambda d: d.u_least_pu - d.drop_out_pu)
         yield self._one(
-            f"voltage at {worst.load} against its contactor's drop-out",
-            100.0 * worst.u_least_pu,
-            100.0 * worst.drop_out_pu,
+            f"voltage at {least.load} against its contactor's drop-out",
+            100.0 * least.u_least_pu,
+            100.0 * least.drop_out_pu,
             "%",
             sense="at least",
             basis="IEC 60947-4-1: contactors hold down to 75 % at most, from memory",
@@ -173,5 +206,5 @@ class _Case:
             close_margin=self.limits.fraction("close_margin"),
             basis=basis,
             cell=self.case.cells[0] if self.case.cells else "",
-            remedy=_CURE,
+            remedy=self.remedy,
         )

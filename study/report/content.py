@@ -32,7 +32,8 @@ class StudyOutcome:
 
     ``methods`` holds one sentence for each method, with its standard, clause and range of use; a verdict
     with an empty mode is about the vessel itself. ``short_circuit``, ``fault_ratings``, ``grading``,
-    ``cables``, ``set_protection`` and ``dips`` are None in a study without them.
+    ``cables``, ``set_protection`` and ``dips`` are None in a study without them. ``cure_words`` judge
+    the cures of ``dips``, one by one.
     """
 
     plant: Plant
@@ -50,6 +51,7 @@ class StudyOutcome:
     cables: CableProtectionResult | None = None
     set_protection: GeneratorProtectionResult | None = None
     dips: DipsResult | None = None
+    cure_words: tuple[Status, ...] = ()
 
     @property
     def modes(self) -> tuple[str, ...]:

@@ -43,6 +43,7 @@ def dips_tables(outcome: StudyOutcome) -> tuple[Table, ...]:
     return (
         *start_tables(outcome.plant, result),
         cases_table(outcome, result),
+        cures_table(outcome, result),
         set_swings_table(result),
         motors_table(result),
         contactors_table(result),
@@ -152,6 +153,57 @@ def _worked(result: DipsResult, f_rated_hz: float) -> Worked | None:
         ),
     )
     return Worked(row=case.case, lines=lines)
+
+
+def cures_table(outcome: StudyOutcome, result: DipsResult) -> Table:
+    """Return what was tried for the cases that go too far."""
+    columns = [
+        text_column("case", "Case"),
+        text_column("change", "Changed"),
+        percent_column("u_least_percent", "Least voltage", most_decimals=2),
+        percent_column("u_largest_percent", "Largest voltage", most_decimals=2),
+        Column(key="u_recovery_s", heading="Voltage back after", unit="s", infinite="not back"),
+        Column(key="f_least_hz", heading="Least frequency", unit="Hz"),
+        Column(key="f_largest_hz", heading="Largest frequency", unit="Hz"),
+        Column(key="f_recovery_s", heading="Frequency back after", unit="s", infinite="not back"),
+        Column(key="run_up_s", heading="Run-up", unit="s", infinite="does not run up", missing="no start"),
+        text_column("outcome", "Outcome"),
+        verdict_column(),
+    ]
+    as_it_is = {case.case: case for case in result.cases}
+    rows: list[tuple[object, ...]] = []
+    for name in dict.fromkeys(cure.case for cure in result.cures):
+        status = StatusLookup(outcome.verdicts)(as_it_is[name].mode, name, "dips")
+        rows.append((name, "nothing, as in the workbook", *_cure_row(as_it_is[name]), status))
+        rows += [
+            (name, cure.change, *_cure_row(cure.simulated), word)
+            for cure, word in zip(result.cures, outcome.cure_words, strict=True)
+            if cure.case == name
+        ]
+    return make_table(
+        key="dips_cures",
+        title="Cures tried for the cases that go too far",
+        sheet=SHEET,
+        columns=columns,
+        rows=rows,
+        notes=("One thing is changed at a time; the workbook stays as it is.",),
+        group_by=("case",),
+    )
+
+
+def _cure_row(case: SimulatedCase) -> tuple[object, ...]:
+    u, f = case.voltage, case.frequency
+    run_up = max((m.run_up_s for m in case.motors), default=float("nan"))
+    return (
+        percent(u.least),
+        percent(u.largest),
+        u.recovery_s,
+        f.least,
+        f.largest,
+        f.recovery_s,
+        run_up,
+        _outcome(case),
+    )
 
 
 def set_swings_table(result: DipsResult) -> Table:

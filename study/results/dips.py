@@ -240,9 +240,19 @@ class SimulatedCase:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Cure:
+    """A case simulated again with one thing changed; ``change`` says what."""
+
+    case: str
+    change: str
+    simulated: SimulatedCase
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class DipsResult:
     """Quick estimates of every mode, the largest starts, and the simulated cases in the sheet's order."""
 
     estimates: tuple[StartEstimates, ...]
     largest: tuple[LargestStart, ...]
     cases: tuple[SimulatedCase, ...]
+    cures: tuple[Cure, ...] = ()

@@ -88,9 +88,9 @@ Fresh-water maker | 15 | 1/90 - 1/90 - - - - | 22 | pf=0.85 stage=1
 Sewage plant | 7.5 | 1/70i 1/70i 1/70i 1/70i 1/70i 1/60i - | 24
 Fresh-water hydrophore pump | 2x4 | 1/80i 1/80i 1/80i 1/80i 1/80i 1/80i - | 20
 [MSB-P | Safety | motor]
-Fire pump 1 | 75 | 1/90o 1/90o 1/90o 1/90o 1/90o - - | 32 | autotransformer safety port ist=6.8 eff=0.945 pf=0.87
+Fire pump 1 | 75 | 1/90o 1/90o 1/90o 1/90o 1/90o - - | 32 | star-delta safety port ist=6.8 eff=0.945 pf=0.87
 [MSB-S | Safety | motor]
-Fire pump 2 | 75 | 1/90o 1/90o 1/90o 1/90o 1/90o 1/90o - | 34 | autotransformer safety starboard ist=6.8 eff=0.945 pf=0.87
+Fire pump 2 | 75 | 1/90o 1/90o 1/90o 1/90o 1/90o 1/90o - | 34 | star-delta safety starboard ist=6.8 eff=0.945 pf=0.87
 [ER-S | Safety | motor]
 Bilge pump | 11 | 1/80i 1/80i 1/80i 1/80i 1/80i 1/80i - | 18 | safety
 [MSB-P | Steering | motor]

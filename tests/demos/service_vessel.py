@@ -4,7 +4,7 @@ Station keeping runs with the bus-tie open: two islands, each with its own thrus
 
 Loss of DG1 then blacks out the port island: that is the redundancy concept, and is reported as it is.
 
-Four faults are planted, and should be found; everything else is meant to be sound:
+Five faults are planted, and should be found; everything else is meant to be sound:
 
 1. Cargo: the load in this mode is beyond the two sets on line (about 110 %), and stays beyond what is left
    with the largest set lost when the standby set has come in, unless cargo pumps are tripped.
@@ -14,6 +14,8 @@ Four faults are planted, and should be found; everything else is meant to be sou
    cable carries, and the load alone is beyond the rating.
 4. Q-CARGO: its short-time setting of five times the feeder's 800 A is above what one set holds up, so that
    the set's breaker opens first; with two sets in parallel it is graded.
+5. Windlass tried in harbour (Events): started direct on the one set of the mode it takes the voltage far down;
+   with one set more it does not.
 """
 
 from __future__ import annotations
@@ -276,6 +278,7 @@ def _events(book: Book) -> None:
         ("Bulk compressor start", "Cargo", "motor start", "Bulk air compressor 1", 1, "units", 0.5),
         ("Emergency fire pump start", "Emergency", "motor start", "Emergency fire pump", 1, "units", 0.5),
         ("Crane start in harbour", "Harbour", "motor start", "Deck crane pump 1", 1, "units", 0.5),
+        ("Windlass tried in harbour", "Harbour", "motor start", "Anchor windlass", 1, "units", 0.5),
         ("Mud pumps one after the other", "Cargo", "motor start", "Mud pump 1", 1, "units", 0.5),
         ("Mud pumps one after the other", "Cargo", "motor start", "Mud pump 2", 1, "units", 8),
         ("Load step on one set", "At sea", "load step", "MSB-P", 120, "kW", 0.5),
