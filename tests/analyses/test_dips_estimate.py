@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 
 from study.analyses.dips_estimate import start_estimates
+from study.analyses.dips_event_estimate import event_estimates
 from study.analyses.dips_largest import GRID_KW, admittance_for_dip
 from study.analyses.dips_options import DipOptions
 from study.analyses.dips_simulation import simulate_case
@@ -160,3 +161,69 @@ def test_the_simulation_dips_between_the_first_cycle_and_the_transient_estimate(
     assert case.u_board_pu[first] == pytest.approx(found.u_set_board_first_cycle_pu[0], abs=0.004)
     at_50ms = float(np.interp(0.25, case.time_s[first:], case.u_board_pu[first:]))
     assert found.u_set_board_pu[0, 0] - 0.01 < at_50ms < found.u_set_board_first_cycle_pu[0]
+
+
+def rows(kind, equipment, size=None, unit=None):
+    return Event(
+        case=f"{kind} of {equipment}",
+        mode="At sea",
+        kind=kind,
+        equipment=equipment,
+        cell="Events!A5",
+        size=size,
+        unit=unit,
+        at_s=0.2,
+        duration_s=None,
+    )
+
+
+@pytest.mark.parametrize(
+    "event",
+    [
+        rows("motor start", "M"),
+        rows("load step", "MSB", 300.0, "kVA"),
+        rows("load rejection", "MSB", 60.0, "%"),
+        rows("set trip", "G2"),
+        rows("transformer energising", "T"),
+    ],
+    ids=lambda e: e.kind,
+)
+def test_every_kind_of_event_starts_as_estimated(event):
+    """Superposition behind X''d and the simulation's first moment: two routes, impedances for consumers.
+
+    The other axis, the speed of the sets and constant power make the difference.
+    """
+    heater = plants.load("L", "MSB", "heating", p_rated_kw=700.0, cos_phi=0.9, u_rated_v=450.0)
+    plant = plants.plant(
+        boards=[plants.board("MSB", 450.0), plants.board("LDB", 230.0)],
+        gensets=[genset("G1"), genset("G2", s_rated_kva=700.0, p_engine_kw=600.0)],
+        loads=[motor(), heater],
+        transformers=[plants.transformer("T", "MSB", "LDB", s_rated_kva=80.0)],
+        events=[event],
+    )
+    at = mode_network(build_network(plant), plant.modes[0])
+    p, q = np.array([0.0, 700.0]), np.array([0.0, 339.0])
+    (found,) = event_estimates([at], p[None], q[None])
+    case = simulate_case(at, [event], p, q, options=DipOptions(after_s=0.3))
+    first = np.flatnonzero(np.diff(case.time_s) == 0.0)[0] + 1
+    assert found.assessed
+    assert found.board == case.board == "MSB"
+    assert found.u_before_pu == pytest.approx(case.u_board_pu[0], abs=1e-6)
+    change = case.u_board_pu[first] - case.u_board_pu[0]
+    assert found.u_first_cycle_pu - found.u_before_pu == pytest.approx(change, abs=0.004, rel=0.08)
+    assert abs(found.change_pu) > abs(found.u_first_cycle_pu / found.u_before_pu - 1.0)
+
+
+def test_an_event_without_a_closed_form_says_so():
+    plant = plants.plant(
+        boards=[plants.board("MSB", 450.0)],
+        gensets=[genset("G1")],
+        loads=[motor()],
+        events=[rows("field loss", "G1"), rows("motor start", "L9")],
+    )
+    at = mode_network(build_network(plant), plant.modes[0])
+    field, unknown = event_estimates([at], np.zeros((1, 1)), np.zeros((1, 1)))
+    assert not field.assessed
+    assert "see the simulation" in field.reason
+    assert not unknown.assessed
+    assert np.isnan(unknown.change_pu)
