@@ -84,7 +84,7 @@ def case_result(
     worst = min(others, key=lambda n: least[n] / view.u_board_pu[0, n]) if others else place
     motors = motor_traces(work, model, course, view.rows)
     classes = _classes(work, events, voltage, frequency)
-    findings = [*work.findings, *_findings(course, voltage, frequency, batch)]
+    findings = [*work.findings, *_below_knee(model), *_findings(course, voltage, frequency, batch)]
     return SimulatedCase(
         case=events[0].case,
         mode=at.mode.name,
@@ -211,6 +211,17 @@ def _steps(work: CaseWork, course: Course) -> tuple[CaseStep, ...]:
             name = work.drives[int(which)].load.name
             steps.append(CaseStep(at_s=float(at_s), text=f"the starter of {name} changes over", cell=""))
     return tuple(sorted(steps, key=lambda s: s.at_s))
+
+
+def _below_knee(model: Model) -> list[str]:
+    """Return a finding for each set that the volts-per-hertz function holds down before the event."""
+    source, at = model.start.source, model.at
+    return [
+        f"{at.sources[int(j)].name} is below the knee of its V/Hz function before the event: its voltage is "
+        "lower than the load flow has it."
+        for j, row in zip(model.rows.place, source, strict=True)
+        if row[d.KIND] == d.MACHINE and row[d.SPEED] < row[d.KNEE]
+    ]
 
 
 def _findings(course: Course, voltage: Recovery, frequency: Recovery, batch: BatchSolution) -> list[str]:

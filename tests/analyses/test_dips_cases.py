@@ -329,6 +329,27 @@ def test_restart_after_a_blackout_in_steps():
     assert case.steps[0].text.startswith("step 1: 2 consumers")
 
 
+def test_a_motor_fed_by_its_converter_takes_its_power_on_a_ramp():
+    loads = list(make_plant().loads)
+    loads[4] = plants.load(
+        "Fan", "MSB", p_rated_kw=93.0, u_rated_v=450.0, starting_method="converter", starting_time_s=4.0
+    )
+    case = run(event("motor start", "Fan"), plant=make_plant(loads=loads), options=DipOptions(after_s=8.0))
+    kw = sum(s.p_kw for s in case.sets)
+    assert np.interp(AT + 2.0, case.time_s, kw) - kw[0] == pytest.approx(50.0, abs=4.0)
+    assert kw[-1] - kw[0] == pytest.approx(100.0, abs=4.0)
+    assert case.motors[0].speed_pu[-1] == pytest.approx(1.0, abs=0.01)
+
+
+def test_below_the_knee_the_voltage_follows_the_frequency():
+    """A knee of 60.5 Hz, and a load that pulls the frequency under it: V/f holds."""
+    sets = [genset("G1", v_per_hz_knee_hz=60.5, no_load_voltage_pu=1.0, regulator_mode="no droop")]
+    plant = make_plant(gensets=sets)
+    case = run(event("load step", "MSB", 150.0, "kW"), plant=plant, options=DipOptions(after_s=12.0))
+    assert case.f_hz[-1] < 60.5
+    assert case.sets[0].u_pu[-1] == pytest.approx(case.f_hz[-1] / 60.5, abs=1e-4)
+
+
 # ---- measures
 
 
