@@ -52,7 +52,7 @@ def behind_equivalent(net: FaultNetwork, rows: EndRows, parts: FaultCurrent) -> 
     places = np.flatnonzero((steps.row >= 0) & (np.abs(steps.z) > 0.0))
     if not len(places):
         return half, ip
-    own_side = rows.share[steps.row[places]]
+    own_side = _own_side(net, rows, steps, places)
     columns = slice(0, len(s.bus))
     weight = (1.0 - own_side).T
     at_home = steps.home[places]
@@ -80,6 +80,16 @@ def behind_equivalent(net: FaultNetwork, rows: EndRows, parts: FaultCurrent) -> 
     half[places] = ac / k + (own_ac * own_side).sum(axis=1)
     ip[places] = (SQRT2 * ac + dc) / k + ((SQRT2 * own_ac + own_dc) * own_side).sum(axis=1)
     return half, ip
+
+
+def _own_side(net: FaultNetwork, rows: EndRows, steps: _Steps, places: IntArray) -> FloatArray:
+    """Return the part of each source that comes from the place's own side of its home board."""
+    own_side = rows.share[steps.row[places]]
+    own = np.where(net.stub[places] >= 0, net.place_own[places], -1)
+    own_side[net.stub[places] >= 0] = 0.0
+    has = np.flatnonzero(own >= 0)
+    own_side[has, own[has]] = 1.0 / net.sources.units[own[has]]
+    return own_side
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

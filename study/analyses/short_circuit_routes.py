@@ -129,15 +129,36 @@ def _inner(net: FaultNetwork, z: ComplexArray) -> tuple[_Columns, FloatArray]:
 
 
 def _stubs(net: FaultNetwork) -> tuple[_Columns, IntArray, FloatArray]:
-    """Return both ends of the paths to terminals, with the terminal's place, 1 at the board and -1 there."""
-    place = np.flatnonzero((net.stub >= 0) & (net.place_bus >= 0))
-    branch, terminal = net.stub[place], net.plant.place_node[place]
+    """Return both ends of the paths to terminals, the terminal's place, and the part of it that each carries.
+
+    The part is negative at the terminal; rows of cables side by side share by their admittance.
+    """
     branches = net.plant.network.branches
-    a, b = branches.from_node[branch], branches.to_node[branch]
-    board = np.where(a == terminal, b, a)
-    columns = (branch, branch), (board, terminal), (terminal, board)
-    inward = np.repeat([1.0, -1.0], len(place))
-    return tuple(np.concatenate(x) for x in columns), np.concatenate([place, place]), inward  # type: ignore[return-value]
+    closed = np.flatnonzero(np.array(net.view.closed, bool))
+    z = net.plant.z_cold if net.options.maximum else net.plant.z_hot
+    columns: list[list[int]] = [[], [], []]
+    places: list[int] = []
+    parts: list[float] = []
+    place_of = net.plant.place_of_node
+    for end, other in (
+        (branches.from_node, branches.to_node),
+        (branches.to_node, branches.from_node),
+    ):
+        place = place_of[end[closed]]
+        here = (place >= 0) & (net.stub[place] >= 0) & (net.place_bus[place] >= 0)
+        for k, p in zip(closed[here].tolist(), place[here].tolist(), strict=True):
+            for values, value in zip(columns, (k, int(other[k]), int(end[k])), strict=True):
+                values.append(value)
+            places.append(p)
+            parts.append(float((net.place_z[p] / z[k]).real))
+    branch, board, terminal = (np.array(x, np.int64) for x in columns)
+    both = (branch, branch), (board, terminal), (terminal, board)
+    inward = np.concatenate([parts, -np.array(parts, float)])
+    return (
+        tuple(np.concatenate(x) for x in both),  # type: ignore[return-value]
+        np.array(places + places, np.int64),
+        inward,
+    )
 
 
 def _ties(net: FaultNetwork, inner: _Columns, leaves: FloatArray) -> tuple[_Columns, _Lines, BoolArray]:

@@ -22,7 +22,8 @@ class FaultRoutes:
     closed ring of ties without impedance: all of every source is then taken as coming through it.
 
     The rest serves `shares`. A row is either the end of a path to a place's own terminals, ``terminal``
-    [end] (-1: it is not), ``inward`` [end] 1 at the board and -1 at the terminals; or it has its line in
+    [end] (-1: it is not), ``inward`` [end] the part of it that comes by this row, negative at the terminals
+    (1 and -1 but where cables lie side by side); or it has its line in
     three tables, ``line`` [end]: ``pull`` [line, bus], what leaves the end into its branch for 1 at a bus
     against the reference of its island, ``from_source`` [line, source] and ``to_place`` [line, place], what
     stands directly behind it; the last line is empty. ``turns`` [bus] is the voltage at 1 pu of the

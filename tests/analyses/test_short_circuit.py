@@ -592,3 +592,29 @@ def test_small_motors_stand_on_their_own_side_of_a_closed_tie():
         assert through["small motors of SB"] == 1.0
         shares.append(case.ends.through_ip_a[row])
     assert shares[0] == pytest.approx(shares[1])
+
+
+def test_cables_side_by_side_in_rows_of_their_own_share_the_current():
+    """Two rows of one run are one row of two runs; each of their breakers meets the rest and half of it."""
+    boards, sets = [plants.board("MSB", 450.0)], [a_set("G1"), a_set("G2")]
+    rows = [plants.cable(n, "G1", "MSB", length_m=30.0) for n in ("C1a", "C1b")]
+    far = plants.cable("C2", "G2", "MSB", length_m=30.0)
+    apart = study(
+        plants.plant(
+            boards=boards,
+            gensets=sets,
+            cables=[*rows, far],
+            devices=[plants.device(f"Q {c.name}", c.name, end="MSB") for c in rows],
+        )
+    )
+    both = replace(rows[0], runs=2)
+    devices = [plants.device("Q", "C1a", end="MSB")]
+    joined = study(plants.plant(boards=boards, gensets=sets, cables=[both, far], devices=devices))
+    one, other = apart.modes[0], joined.modes[0]
+    assert one.maximum.ik_initial_a == pytest.approx(other.maximum.ik_initial_a)
+    assert one.maximum.equivalent_ip_a == pytest.approx(other.maximum.equivalent_ip_a, nan_ok=True)
+    ends = dict(zip(one.maximum.ends.branches, one.maximum.ends.through_initial_a, strict=False))
+    assert ends["C1a"] == ends["C1b"]
+    g1 = one.maximum.source_ip_a[0, 0]
+    assert one.devices.duty_ip_a == pytest.approx([one.maximum.ip_a[0] - 0.5 * g1] * 2)
+    assert other.devices.duty_ip_a == pytest.approx([max(g1, one.maximum.ip_a[0] - g1)])
