@@ -134,7 +134,7 @@ class CaseCurrents:
         """
         share = self.ways.into_branch(station, place, inside)
         if two_phase:
-            turned = self.ways.case.routes.turned(self.ways.end[station], place)
+            turned = self.ways.turned(station, place)
             share = share * np.where(turned, 2.0 / 3.0**0.5, 1.0)[:, None]
         self._work_out(np.unique(place), two_phase)
         both = np.zeros((len(station), 2 * len(self.time_s)))

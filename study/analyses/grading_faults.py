@@ -219,7 +219,7 @@ class ModeFaults:
     def _turned(self) -> BoolArray:
         """Return the rows with a star-delta transformation between their station and the fault."""
         place = self.place[1][self.feed]
-        return self.maximum.ways.case.routes.turned(self.maximum.ways.end[self.station], place)
+        return self.maximum.ways.turned(self.station, place)
 
     # ---- currents
 

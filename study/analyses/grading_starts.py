@@ -91,7 +91,8 @@ class ModeStarts:
         total = gives.sum(axis=1, keepdims=True)
         weight = np.divide(gives, total, out=np.zeros_like(gives), where=total > 0.0)
         found = np.zeros((len(place), len(self.faults.stations)))
-        found[:, trunk] = np.abs(np.einsum("pns,ps->pn", share.reshape(len(place), len(trunk), -1), weight))
+        shape = (len(place), len(trunk), weight.shape[1])
+        found[:, trunk] = np.abs(np.einsum("pns,ps->pn", share.reshape(shape), weight))
         self._shares |= dict(zip(place.tolist(), found, strict=True))
 
     def surges(self) -> list[Surge]:

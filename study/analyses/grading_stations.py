@@ -84,14 +84,15 @@ def _where(k: int, device: Device, modes: tuple[ModeShortCircuit, ...]) -> tuple
 class CaseWays:
     """One case of one mode, and what comes through each station in it.
 
-    ``device`` [station] is the device that stands for the station. ``end`` [station] is the row of the case's
-    branch ends, `NO_END` where the branch is open or there is none; ``own`` [station] the source that stands
-    behind a station without a branch (-1: none). ``lasting`` [source] marks the sources that keep a current
-    up.
+    ``place`` [station] is where each stands, ``device`` [station] the device that stands for it. ``end``
+    [station] is the row of the case's branch ends, `NO_END` where the branch is open or there is none;
+    ``own`` [station] the source that stands behind a station without a branch (-1: none). ``lasting``
+    [source] marks the sources that keep a current up.
     """
 
     mode: ModeShortCircuit
     maximum: bool
+    place: IntArray
     device: IntArray
     end: IntArray
     own: IntArray
@@ -117,9 +118,40 @@ class CaseWays:
         ndarray, shape (row, source)
             A at the voltage of the station; negative out of the branch.
         """
-        found = self.mode.device_shares(self.device[station], place, maximum=self.maximum)
+        if len(self.case.ends.place):
+            found = self.mode.device_shares(self.device[station], place, maximum=self.maximum)
+        else:
+            found = self._of_sources_alone(station, place)
         close = (inside == station) & self.case.live[place]
         found[close] += 1.0
+        return found
+
+    def turned(self, station: IntArray, place: IntArray) -> BoolArray:
+        """Return True where a star-delta transformation lies between a station and a faulted place.
+
+        Parameters
+        ----------
+        station, place : ndarray of int, shape (row,)
+            Which, and where the fault lies.
+
+        Returns
+        -------
+        ndarray of bool, shape (row,)
+            False where either is dead.
+        """
+        routes = self.case.routes
+        bus, at = routes.place_bus[self.place[station]], routes.place_bus[place]
+        both = (bus >= 0) & (at >= 0)
+        if not len(routes.hours):
+            return both
+        return np.asarray(both & ((routes.hours[bus] - routes.hours[at]) % 2 == 1))
+
+    def _of_sources_alone(self, station: IntArray, place: IntArray) -> FloatArray:
+        """Return what comes out through stations of a plant without a closed branch."""
+        found = np.zeros((len(station), self.case.parts.dc_a.shape[1]))
+        own = self.own[station]
+        rows = np.flatnonzero(own >= 0)
+        found[rows, own[rows]] = -self.case.routes.own_shares(own[rows], place[rows])
         return found
 
 
@@ -146,6 +178,7 @@ def case_ways(stations: Stations, mode: ModeShortCircuit, *, maximum: bool) -> C
     return CaseWays(
         mode=mode,
         maximum=maximum,
+        place=stations.place,
         device=device,
         end=mode.devices.ends[row, device],
         own=mode.devices.own[row, device],

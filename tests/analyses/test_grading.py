@@ -417,3 +417,90 @@ def test_paths_that_open_in_turn_add_their_times() -> None:
     quick = graded(unlike_transformers(0.3), in_turn=True)
     assert Pair(quick, "QT2-2", "QG").margin_s == pytest.approx(0.27 - 0.28, abs=1e-6)
     assert ("QT1-2", "QG") in failing(quick)
+
+
+# ---- plants with little in them
+
+
+def test_a_plant_without_devices_has_nothing_to_grade() -> None:
+    result = graded(plants.small_plant())
+    assert result.stations.names == ()
+    assert result.pairs.present.shape == (0, 1)
+
+
+def test_a_dead_mode_has_nothing_to_grade_and_harms_no_other() -> None:
+    dead = plants.mode("Laid up", {"G1": "off", "G2": "off"})
+    alive = plants.mode("At sea", demand={"H": plants.demand()})
+    both = graded(replace(sets_plant(), modes=(dead, alive)))
+    assert not both.pairs.present[:, 0].any()
+    assert Pair(both, "QBT", "QG1", mode=1).margin_s == pytest.approx(0.11)
+    alone = graded(replace(sets_plant(), modes=(dead,)))
+    assert alone.stations.names == ()
+
+
+def test_sets_and_consumers_without_cables_stand_on_their_board() -> None:
+    own = {"short_time_a": 2500.0, "short_time_delay_s": 0.4}
+    plant = plants.plant(
+        boards=[plants.board("MSB")],
+        gensets=[plants.genset("G1", "MSB"), plants.genset("G2", "MSB")],
+        loads=[heater("H", "MSB")],
+        devices=[
+            breaker("Q1", "G1", "MSB", **own),
+            breaker("Q2", "G2", "MSB", **own),
+            breaker("QH", "H", "MSB", instantaneous_a=500.0),
+            breaker("QB", "MSB", "MSB", **own),
+        ],
+    )
+    result = graded(plant)
+    pair = Pair(result, "QH", "Q1")
+    assert pair.margin_s == pytest.approx(0.36 - 0.03)
+    assert pair.upstream_a / pair.current_a == pytest.approx(0.5, rel=1e-6)
+    assert any(words.startswith("QB: on a board") for words in result.findings)
+
+
+def test_a_battery_alone_is_graded_while_its_converter_holds() -> None:
+    plant = plants.plant(
+        boards=[plants.board("MSB")],
+        converter_supplies=[plants.converter_supply("BAT", "MSB")],
+        cables=[plants.cable("CB", "BAT", "MSB"), plants.cable("CH", "MSB", "H")],
+        loads=[heater("H", "MSB")],
+        devices=[
+            breaker("QB", "CB", "MSB", short_time_a=700.0, short_time_delay_s=0.4),
+            breaker("QH", "CH", "MSB", instantaneous_a=300.0),
+        ],
+    )
+    result = graded(plant)
+    assert Pair(result, "QH", "QB").margin_s == pytest.approx(0.36 - 0.03)
+    # It gives 1.5 x 656 A for 1 s: what would take longer ends by itself.
+    slow = replace(plant.devices[0], short_time_delay_s=1.5)
+    late = graded(replace(plant, devices=(slow, plant.devices[1])))
+    row = [late.stations.names[s] for s in late.reach.station].index("QB")
+    assert late.reach.by[row, 0] == -2
+
+
+def test_a_ring_of_ties_that_are_equally_slow_cannot_be_graded() -> None:
+    names = "ABC"
+    ties = [("T1", "A", "B"), ("T2", "B", "C"), ("T3", "C", "A")]
+    plant = plants.plant(
+        boards=[plants.board(b) for b in names],
+        gensets=[plants.genset("G1", "A"), plants.genset("G2", "B")],
+        ties=[plants.tie(name, a, b, x_ohm=0.0002, r_ohm=0.00005) for name, a, b in ties],
+        cables=[plants.cable("CH", "C", "H"), plants.cable("CG1", "G1", "A"), plants.cable("CG2", "G2", "B")],
+        loads=[heater("H", "C")],
+        devices=[
+            *(
+                breaker(f"Q{name}", name, a, short_time_a=1000.0, short_time_delay_s=0.2)
+                for name, a, _ in ties
+            ),
+            breaker("QG1", "CG1", "A", short_time_a=2500.0, short_time_delay_s=0.5),
+            breaker("QG2", "CG2", "B", short_time_a=2500.0, short_time_delay_s=0.5),
+            breaker("QH", "CH", "C", instantaneous_a=500.0),
+        ],
+    )
+    blamed = failing(graded(plant))
+    assert blamed
+    assert all(down.startswith("QT") and up.startswith("QT") for down, up in blamed)
+    # A differential function on every section opens its own ties alone, at once.
+    zones = {"A": "QT1, QT3, QG1", "B": "QT1, QT2, QG2", "C": "QT2, QT3"}
+    functions = tuple(replace(_differential(b, opens), name=f"87 {b}") for b, opens in zones.items())
+    assert failing(graded(replace(plant, protection_functions=functions))) == {}
