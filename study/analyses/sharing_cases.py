@@ -216,9 +216,9 @@ def _who_takes_what(case: MaladjustedCase) -> str:
         return f"every set keeps its share of {unit}; {allowed}."
     verdict = "out of tolerance" if abs(off[worst]) > tolerance[worst] else "within tolerance"
     return (
-        f"{case.sets[most]} takes {off[most]:.0f} {unit} more than its share ({now[most]:.0f} {unit}) and "
-        f"{case.sets[least]} {-off[least]:.0f} {unit} less ({now[least]:.0f} {unit}); {allowed}, so the "
-        f"sharing is {verdict}."
+        f"{case.sets[most]} takes {now[most]:.0f} {unit}, {off[most]:.0f} more than its share, and "
+        f"{case.sets[least]} {now[least]:.0f} {unit}, {-off[least]:.0f} less; {allowed}, so the sharing is "
+        f"{verdict}."
     )
 
 

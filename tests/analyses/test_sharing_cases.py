@@ -43,8 +43,8 @@ def test_the_sentence_names_who_takes_more_by_how_much_and_the_cure() -> None:
     assert off[1] > case.q_tolerance_kvar[1]
     assert case.sentence == (
         "With the no-load voltage of G2 at 102.0 % instead of 100.0 %, "
-        f"G2 takes {off[1]:.0f} kvar more than its share ({case.q_after_kvar[1]:.0f} kvar) and "
-        f"G1 {-off[0]:.0f} kvar less ({case.q_after_kvar[0]:.0f} kvar); G2 may be 60 kvar off, so the "
+        f"G2 takes {case.q_after_kvar[1]:.0f} kvar, {off[1]:.0f} more than its share, and "
+        f"G1 {case.q_after_kvar[0]:.0f} kvar, {-off[0]:.0f} less; G2 may be 60 kvar off, so the "
         "sharing is out of tolerance. Set the no-load voltage of G2 back to 100.0 %."
     )
 
@@ -53,7 +53,7 @@ def test_within_tolerance_is_said_too() -> None:
     (case,) = cases(one_bus({}, {}), event("G1", 104.4, "% no-load frequency"))
     _, kw = share_straight([1.044, 1.04], [0.04, 0.04], [800.0, 800.0], 800.0)
     np.testing.assert_allclose(case.p_after_kw, kw, atol=1e-6)
-    assert "G1 takes 40 kW more than its share (440 kW) and G2 40 kW less (360 kW)" in case.sentence
+    assert "G1 takes 440 kW, 40 more than its share, and G2 360 kW, 40 less; " in case.sentence
     assert "G1 may be 120 kW off, so the sharing is within tolerance." in case.sentence
     assert case.sentence.endswith("Set the no-load frequency of G1 back to 104.0 %.")
 
