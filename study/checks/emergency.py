@@ -56,7 +56,7 @@ def _loading(plant: Plant, row: EmergencyDuty, limits: Limits) -> Iterator[Verdi
             mode=row.mode,
             subject=_SUBJECT,
             equipment=row.genset,
-            quantity=f"{word} of the emergency list",
+            quantity=f"loading in {word} by the emergency list",
             value=100.0 * value,
             limit=limits.number("set_loading"),
             unit="%",

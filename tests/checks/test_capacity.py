@@ -288,7 +288,7 @@ def a_duty(**changes: Any) -> EmergencyDuty:
 
 def test_the_emergency_list_and_the_start_of_the_emergency_set() -> None:
     verdicts = judged(a_balance(emergency=(a_duty(),)))
-    kw = find(verdicts, "EG", "kW of the emergency list")
+    kw = find(verdicts, "EG", "loading in kW by the emergency list")
     assert (kw.mode, kw.value, kw.limit, kw.status) == ("Emergency", 102.0, 100.0, "exceeds")
     assert kw.basis == "SOLAS II-1/43: 18 h"
     assert kw.cell == "EG!Rated apparent power"
