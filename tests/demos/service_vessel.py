@@ -14,8 +14,8 @@ Five faults are planted, and should be found; everything else is meant to be sou
    cable carries, and the load alone is beyond the rating.
 4. Q-CARGO: its short-time setting of five times the feeder's 800 A is above what one set holds up, so that
    the set's breaker opens first; with two sets in parallel it is graded.
-5. Windlass tried in harbour (Events): started direct on the one set of the mode it takes the voltage far down;
-   with one set more it does not.
+5. Windlass tried in harbour (Events): started direct on the one set of the mode it takes the voltage far
+   down; with one set more it does not.
 """
 
 from __future__ import annotations
