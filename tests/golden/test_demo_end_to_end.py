@@ -13,7 +13,7 @@ import pytest
 from study.cli import main
 from study.pipeline import DEMOS, result_frames
 from study.workbook.package import validate_package
-from tests.demos.studies import WORKBOOKS, studied
+from tests.demos.studies import WORKBOOKS, run, studied
 
 EXPECTED_STATUS = {"workboat": 0, "service-vessel": 1}
 
@@ -24,7 +24,7 @@ def done(request: pytest.FixtureRequest, tmp_path_factory: pytest.TempPathFactor
     name = str(request.param)
     folder = tmp_path_factory.mktemp(name)
     assert main(["new", str(folder / "vessel.xlsx"), "--demo", name]) == 0
-    return name, folder, main(["run", str(folder / "vessel.xlsx"), "--quiet"])
+    return name, folder, run(name, folder / "vessel.xlsx", "--quiet")
 
 
 def outcome_of(folder: Path) -> dict[str, Any]:
@@ -65,7 +65,9 @@ def test_a_second_run_changes_nothing(done: tuple[str, Path, int]) -> None:
         assert (folder / name).read_bytes() == before[name], name
 
 
-def test_out_leaves_the_workbook_alone(tmp_path: Path) -> None:
+def test_out_leaves_the_workbook_alone(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("study.pipeline.run_study", lambda *_, **__: studied("workboat"))
+    monkeypatch.setattr("study.report.html.report_page", lambda *_: "the page")
     book = tmp_path / "vessel.xlsx"
     main(["new", str(book), "--demo", "workboat"])
     before = book.read_bytes()
