@@ -200,10 +200,10 @@ class _Judged:
             yield self._verdict(
                 self.result.modes[mode],
                 station,
-                f"least fault in {r.zone[k]} is cleared after",
+                "time until the least fault is cleared",
                 (clears, self.limits.number("fault_clearing"), "s"),
                 at_most=True,
-                basis=f"{self.limits.basis('fault_clearing')}; {r.least_a[k, mode]:.0f} A{who}"
+                basis=f"{self.limits.basis('fault_clearing')}; {r.least_a[k, mode]:.0f} A in {r.zone[k]}{who}"
                 if not math.isnan(clears)
                 else self.result.stations.unknown[station] or "the device's settings are not given",
                 cell=self.plant.cell_of(device, "Short-time current"),
@@ -219,9 +219,9 @@ class _Judged:
         return self._verdict(
             row.mode,
             row.station,
-            f"{row.event}, {row.equipment}: held for",
+            f"{row.event.split(',')[0]}: time that it is held for",
             (row.trips_s, row.needed_s, "s"),
-            basis=f"{_START}, {row.current_a:.0f} A{assumed}"
+            basis=f"{_START} of {row.equipment}, {row.current_a:.0f} A{assumed}"
             if not math.isnan(row.trips_s)
             else self.result.stations.unknown[row.station] or "the device's settings are not given",
             cell=self.plant.cell_of(

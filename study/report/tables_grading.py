@@ -34,7 +34,7 @@ from study.results.grading import (
 
 SHEET: Final = "R Grading"
 _PAIRS_SHOWN: Final = 40
-_ROWS_SHOWN: Final = 25
+_ROWS_SHOWN: Final = 8
 
 
 def grading_tables(outcome: StudyOutcome) -> tuple[Table, ...]:
@@ -346,8 +346,8 @@ def reach_table(outcome: StudyOutcome, result: GradingResult) -> Table:
             "least, with the sustained current of the sources; what takes longer than they hold it does not "
             "clear.",
         ),
+        group_by=("mode",),
         shown_per_group=_ROWS_SHOWN,
-        group_by=("by",) if len(rows) > _ROWS_SHOWN else (),
     )
 
 

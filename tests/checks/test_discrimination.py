@@ -77,7 +77,7 @@ def test_an_unknown_setting_is_not_assessed_and_says_what_is_missing() -> None:
 
 def test_a_fault_that_nothing_clears_exceeds() -> None:
     found = verdicts(feeder_plant(near={"instantaneous_a": 9e4}, above={"short_time_a": 9e4}))
-    reach = [v for v in failing(found) if v.quantity.startswith("least fault in")]
+    reach = [v for v in failing(found) if v.quantity == "time until the least fault is cleared"]
     assert {v.equipment for v in reach} == {"QH", "QF"}
     assert all(math.isinf(v.value) and v.limit == 5.0 for v in reach)
 
@@ -87,7 +87,7 @@ def test_a_slow_clearing_exceeds_the_time_allowed() -> None:
     slow = {**SLOW, "short_time_a": None, "short_time_delay_s": None}
     near = {**slow, "long_time_a": 1500.0, "long_time_delay_s": 15.0}
     plant = feeder_plant(near=near, above={"short_time_a": 9e4})
-    late = [v for v in failing(verdicts(plant)) if v.quantity.startswith("least fault in H")]
+    late = [v for v in failing(verdicts(plant)) if v.quantity == "time until the least fault is cleared"]
     assert late
     assert late[0].value > 5.0
 
@@ -107,6 +107,6 @@ def test_a_start_that_opens_its_breaker_exceeds() -> None:
         devices=[breaker("QM", "CM", "DB", instantaneous_a=1100.0)],
     )
     (bad,) = [v for v in failing(verdicts(plant)) if v.equipment == "QM"]
-    assert bad.quantity == "direct start, M: held for"
+    assert bad.quantity == "direct start: time that it is held for"
     assert bad.value == 0.0
     assert "3 s taken" in bad.basis
