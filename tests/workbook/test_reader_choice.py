@@ -57,6 +57,8 @@ def by_openpyxl(data: bytes) -> Cells:
             if not is_result(sheet.title):
                 for place, value in _pairs(sheet, formulas[sheet.title]):
                     cells[sheet.title, *place] = value
+        values.close()
+        formulas.close()
     return cells
 
 
