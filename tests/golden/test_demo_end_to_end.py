@@ -53,7 +53,9 @@ def test_the_result_workbook_is_sound(done: tuple[str, Path, int]) -> None:
     _, folder, _ = done
     assert validate_package((folder / "vessel.xlsx").read_bytes()) == []
     book = openpyxl.load_workbook(folder / "vessel.xlsx", read_only=True)
-    assert next(name for name in book.sheetnames if name.startswith("R ")) == "R Summary"
+    names = list(book.sheetnames)
+    book.close()
+    assert next(name for name in names if name.startswith("R ")) == "R Summary"
 
 
 def test_a_second_run_changes_nothing(done: tuple[str, Path, int]) -> None:

@@ -38,6 +38,14 @@ def folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
     return folder
 
 
+def sheet_names(path: Path) -> list[str]:
+    book = openpyxl.load_workbook(path, read_only=True)
+    try:
+        return list(book.sheetnames)
+    finally:
+        book.close()
+
+
 def results(path: Path) -> dict[str, Any]:
     document: dict[str, Any] = json.loads(path.read_text("utf-8"))
     return document
@@ -49,7 +57,7 @@ def test_every_result_sheet_is_printed(folder: Path) -> None:
     done = subprocess.run(
         ["pdftotext", str(folder / "printed" / "vessel.pdf"), "-"], check=True, capture_output=True, text=True
     )
-    names = openpyxl.load_workbook(folder / "vessel.xlsx", read_only=True).sheetnames
+    names = sheet_names(folder / "vessel.xlsx")
     missing = [name for name in names if name.startswith("R ") and name not in done.stdout]
     assert missing == []
     assert "Demonstration workboat" in done.stdout
@@ -66,7 +74,7 @@ def test_what_the_office_suite_saves_is_sound_and_studied_alike(folder: Path) ->
 def test_the_sheets_of_the_first_run_are_replaced(folder: Path) -> None:
     data = (folder / "saved" / "vessel.xlsx").read_bytes()
     assert validate_package(data) == []
-    before = openpyxl.load_workbook(folder / "as-saved.xlsx", read_only=True).sheetnames
-    assert openpyxl.load_workbook(folder / "saved" / "vessel.xlsx", read_only=True).sheetnames == before
+    before = sheet_names(folder / "as-saved.xlsx")
+    assert sheet_names(folder / "saved" / "vessel.xlsx") == before
     assert main(["run", str(folder / "saved" / "vessel.xlsx"), "--quiet"]) == 0
     assert (folder / "saved" / "vessel.xlsx").read_bytes() == data
