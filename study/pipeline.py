@@ -25,6 +25,7 @@ if TYPE_CHECKING:
     from study.workbook.package import Package
 
 Progress = Callable[[str], None]
+MOST_NAMED = 5
 DEMOS = ("workboat", "service-vessel", "large-vessel")
 
 
@@ -447,7 +448,21 @@ def write_results(
         paths.append(folder / name)
     if networks:
         paths += _write_networks(outcome, folder, book.stem)
-    return Written(paths=tuple(paths), notes=(*notes, *_note_formulas(package)))
+    return Written(paths=tuple(paths), notes=(*notes, *_note_own_work(package), *_note_formulas(package)))
+
+
+def _note_own_work(package: Package) -> tuple[str, ...]:
+    """Return a note where somebody wrote on the result sheets of the last run, which are replaced."""
+    from study.workbook import own_work_on_results
+
+    found = own_work_on_results(package)
+    if not found:
+        return ()
+    more = f" and {len(found) - MOST_NAMED} more" if len(found) > MOST_NAMED else ""
+    return (
+        f"replaced with the result sheets: {', '.join(found[:MOST_NAMED])}{more}; keep formulas and comments "
+        "of your own on sheets of your own, they may refer to result sheets",
+    )
 
 
 def _note_formulas(package: Package) -> tuple[str, ...]:

@@ -62,7 +62,9 @@ def result_workbook(outcome: StudyOutcome, tables: Mapping[str, Table] | None = 
 
 
 def _sheet(book: Any, formats: Formats, name: str, tables: Sequence[Table], outcome: StudyOutcome) -> None:
-    sheet = book.add_worksheet(name)
+    from study.report.excel_rows import ResultSheet
+
+    sheet = book.add_worksheet(name, ResultSheet)
     sheet.hide_gridlines(2)
     writer = SheetWriter(sheet=sheet, formats=formats)
     _heading(writer, name, outcome)

@@ -12,7 +12,7 @@ from typing import Any, Final
 from study.issues import StudyError
 from study.report.excel_formats import Formats, padded_format, row_look
 from study.report.style import ACCENT, QUIET, RULE, TINT, VERDICTS
-from study.report.tables import Column, Table, Value
+from study.report.tables import Column, Table
 
 FIRST_ROW: Final = 4
 LAST_ROW: Final = 1_048_576
@@ -79,6 +79,37 @@ def layout(
             "let one row stand for equal loads, or study fewer modes at a time"
         )
     return places
+
+
+@dataclass
+class _Looks:
+    """The formats of one column, each asked for once; ``most`` is the largest number of decimals."""
+
+    formats: Formats
+    column: Column
+    first: bool
+    most: int
+    known: dict[tuple[str, str, int], Any] = field(default_factory=dict)
+
+    def get(self, kind: str, style: str, detail: int = 0) -> Any:
+        """Return a format; the detail is the decimals of a number, and 1 for words that wrap."""
+        key = kind, style, detail
+        if key not in self.known:
+            self.known[key] = self.formats.get(**self._properties(kind, detail), **row_look(style))
+        return self.known[key]
+
+    def _properties(self, kind: str, detail: int) -> dict[str, Any]:
+        match kind:
+            case "blank":
+                return {}
+            case "link":
+                return {"font_color": ACCENT, "underline": 1, "align": "left", "indent": 1}
+            case "number":
+                return {"num_format": padded_format(detail, self.most, self.column)}
+        if not self.column.is_text:
+            return {"align": "right", "font_color": QUIET}
+        wrap = {"text_wrap": True} if detail else {}
+        return {"align": "left", "indent": 0 if self.first else 1, **wrap}
 
 
 @dataclass
@@ -157,41 +188,29 @@ class SheetWriter:
         self._worked(place)
 
     def _column(self, place: Place, c: int, column: Column) -> None:
-        table = place.table
+        table, row = place.table, place.first_row
         decimals, texts = self.decimals[table.key][c], self.texts[table.key][c]
-        most = max(decimals, default=0)
-        number_looks = {d: {"num_format": padded_format(d, most, column)} for d in set(decimals)}
+        looks = _Looks(formats=self.formats, column=column, first=c == 0, most=max(decimals, default=0))
+        wide = self.widths[c] - 1.5
+        cells: list[tuple[float | str | None, Any]] = []
+        linked: list[tuple[int, str, Any]] = []
         for r, value in enumerate(table.values[c]):
-            look = row_look(table.style(r))
-            at = place.first_row + r, c
-            self._cell(at, value, column, text=texts[r], number=number_looks[decimals[r]] | look, words=look)
+            style = table.row_styles[r] if table.row_styles else ""
+            if value is None or value == "":
+                cells.append((None, looks.get("blank", style)))
+            elif column.kind == "cell" and self.links + len(linked) < MOST_LINKS:
+                linked.append((r, str(value), looks.get("link", style)))
+                cells.append((None, linked[-1][2]))
+            elif isinstance(value, (int, float)) and not isinstance(value, bool) and math.isfinite(value):
+                cells.append((value, looks.get("number", style, decimals[r])))
+            else:
+                cells.append((texts[r], looks.get("words", style, int(len(texts[r]) > wide))))
+        self.sheet.fill_column(row, c, cells)
+        for r, value, look in linked:
+            self.sheet.write_url(row + r, c, internal_link(value), look, value)
+        self.links += len(linked)
         if column.kind == "verdict":
             self.verdict_ranges.append(cell_range(place.first_row, c, place.last_row, c))
-
-    def _cell(
-        self,
-        at: tuple[int, int],
-        value: Value,
-        column: Column,
-        *,
-        text: str,
-        number: dict[str, Any],
-        words: dict[str, Any],
-    ) -> None:
-        row, c = at
-        if value is None or value == "":
-            self.sheet.write_blank(row, c, None, self.formats.get(**words))
-        elif column.kind == "cell" and self.links < MOST_LINKS:
-            self.links += 1
-            link = self.formats.get(font_color=ACCENT, underline=1, align="left", indent=1, **words)
-            self.sheet.write_url(row, c, internal_link(str(value)), link, str(value))
-        elif isinstance(value, (int, float)) and not isinstance(value, bool) and math.isfinite(value):
-            self.sheet.write_number(row, c, value, self.formats.get(**number))
-        elif column.is_text:
-            wrap = {"text_wrap": True} if len(text) > self.widths[c] - 1.5 else {}
-            self.text(row, c, text, align="left", indent=1 if c else 0, **wrap, **words)
-        else:
-            self.text(row, c, text, align="right", font_color=QUIET, **words)
 
     def _room(self, c: int) -> int:
         """Return the characters that stand side by side in a column."""

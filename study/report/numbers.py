@@ -94,12 +94,13 @@ def column_decimals(values: Iterable[float], most: int = 2, digits: int = 3) -> 
     >>> column_decimals([0.4, 80.0]), column_decimals([0.4, 3500.0]), column_decimals([1200.0, 3500.0])
     (2, 1, 0)
     """
-    sizes = [abs(v) for v in values if math.isfinite(v)]
-    largest = max(sizes, default=0.0)
-    sizes = [v for v in sizes if v > _NOISE * largest]
-    if not sizes:
+    sizes = np.abs(np.fromiter(values, float))
+    sizes = sizes[np.isfinite(sizes)]
+    largest = float(sizes.max(initial=0.0))
+    sizes = sizes[sizes > _NOISE * largest]
+    if not len(sizes):
         return 0
-    smallest = min(sizes)
+    smallest = float(sizes.min())
     wanted = min(
         significant_decimals(smallest, digits, most), significant_decimals(largest, digits + 1, most)
     )
@@ -161,6 +162,31 @@ def decimals_apart(value: float, limit: float, decimals: int, most: int = _MOST_
         if number(value, more) != number(limit, more):
             return more
     return decimals if most < _MOST_DIGITS else most
+
+
+def close_rows(values: Sequence[float], limits: Sequence[float], decimals: int) -> list[int]:
+    """Return the rows in which a value and its limit may print alike: not further apart than a last digit.
+
+    Parameters
+    ----------
+    values, limits : sequence of float
+        In the same unit.
+    decimals : int
+        Decimals that they print with [1].
+
+    Returns
+    -------
+    list of int
+        Numbers of the rows, from 0.
+
+    Examples
+    --------
+    >>> close_rows([100.004, 55.0, 100.0], [100.0, 100.0, 100.0], 1)
+    [0, 2]
+    """
+    with np.errstate(invalid="ignore"):
+        apart = np.abs(np.array(values, float) - np.array(limits, float))
+    return [int(row) for row in np.flatnonzero(apart <= 1.01 * 10.0**-decimals)]
 
 
 def number(value: float, decimals: int, infinite: str = "infinite", missing: str = NOT_AVAILABLE) -> str:

@@ -12,6 +12,7 @@ import numpy as np
 
 from study.report.numbers import (
     NOT_AVAILABLE,
+    close_rows,
     column_decimals,
     column_texts,
     decimals_apart,
@@ -225,11 +226,11 @@ class Table:
             base = exact_decimals(pool, own.most_decimals)
         if against is None and not judged_by:
             return (base,) * len(values)
-        pairs = [(values, limits), *judged_by]
-        return tuple(
-            max(decimals_apart(a[row], b[row], base, _NOISE_DECIMALS) for a, b in pairs)
-            for row in range(len(values))
-        )
+        found = [base] * len(values)
+        for a, b in [(values, limits), *judged_by]:
+            for row in close_rows(a, b, base):
+                found[row] = max(found[row], decimals_apart(a[row], b[row], base, _NOISE_DECIMALS))
+        return tuple(found)
 
     def _judged_decimals(self) -> tuple[int, ...]:
         """Return the decimals of the columns ``value`` and ``limit`` of a table of verdicts."""
@@ -320,6 +321,8 @@ def _plain(value: Any) -> Value:
 
 
 def _float(value: Value) -> float:
+    if type(value) is float:
+        return value
     return float(value) if isinstance(value, (int, float)) and not isinstance(value, bool) else math.nan
 
 

@@ -9,7 +9,7 @@ from functools import partial
 from typing import Final
 
 from study.issues import PackageError
-from study.workbook.package.cells import area
+from study.workbook.package.cells import address, area
 from study.workbook.package.names import Sheet, defined_names, read_sheets
 from study.workbook.package.opc import Package, read_relations, rels_part
 from study.workbook.package.parts import read_graph
@@ -40,6 +40,7 @@ _QUOTED = re.compile(r'"[^"]*"|\\.|\[[^\]]*\]|_.|\*.')
 
 # An apostrophe, a book in brackets perhaps, and the prefix of result sheets.
 _RESULT_MENTION = re.compile(rb"(?:'|&apos;|&#39;|\])[Rr] ")
+_HAS_FORMULA = re.compile(rb"<(?:\w+:)?f[ />]")
 _MAY_NAME_A_TABLE = re.compile(rb"<(?:\w+:)?f\b[^<]*\[")
 
 Rows = Mapping[int, Mapping[int, Value]]
@@ -109,6 +110,37 @@ def sheets_that_show_results(package: Package) -> tuple[str, ...]:
     load = partial(_cells, package, _tables(package, root))
     found = {place[0] for place in _dependent(package, root, sheets, load)}
     return tuple(sheet.name for sheet in sheets if sheet.name.casefold() in found)
+
+
+def own_work_on_results(package: Package) -> tuple[str, ...]:
+    """Return what somebody wrote on result sheets: the program puts no formula and no comment there.
+
+    Parameters
+    ----------
+    package : Package
+        The workbook, with the result sheets of the last run.
+
+    Returns
+    -------
+    tuple of str
+        ``R Summary!H12 (=SUM(B2:B9))`` for a formula, ``comments on R Summary`` for comments.
+    """
+    root = _xml(package, package.workbook_part)
+    graph = read_graph(package)
+    found = []
+    for sheet in read_sheets(package, root, RESULT_PREFIX):
+        if not sheet.owned:
+            continue
+        data = as_utf8(package.read(sheet.part), sheet.part)
+        if _HAS_FORMULA.search(data):
+            cells = read_cells(data, sheet.part, _tables(package, root))
+            for place, text in cells.formulas.items():
+                row, column = place
+                formula = shifted(text, *cells.moved.get(place, (0, 0)))
+                found.append(f"{sheet.name}!{address(column, row)} (={formula})")
+        if any(relation.is_a("comments") for relation in graph.get(part_key(sheet.part), ())):
+            found.append(f"comments on {sheet.name}")
+    return tuple(found)
 
 
 def _own_sheets(package: Package, root: Node) -> list[Sheet]:
@@ -211,7 +243,9 @@ def _dependent(
     package: Package, root: Node, sheets: Sequence[Sheet], load: Callable[..., SheetCells]
 ) -> Collection[Place]:
     """Return the cells whose formulas depend on a result sheet; formulas are read only where one may."""
-    names = {d.name.casefold(): d.value for _, d in defined_names(root)}
+    # Names of a result sheet's own, such as its print titles, are in no formula that does not name the sheet.
+    own = {sheet.index for sheet in read_sheets(package, root, RESULT_PREFIX) if is_result(sheet.name)}
+    names = {d.name.casefold(): d.value for _, d in defined_names(root) if d.scope not in own}
     parts = [as_utf8(package.read(sheet.part), sheet.part) for sheet in sheets]
     by_table = any("[" in value for value in names.values())
     by_table = by_table or any(_MAY_NAME_A_TABLE.search(part) for part in parts)

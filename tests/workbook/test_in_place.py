@@ -29,6 +29,7 @@ from study.report.excel import result_workbook
 from study.report.html import report_page
 from study.workbook.package import graft_result_sheets, validate_package, write
 from tests.demos import studies
+from tests.workbook.package.samples import parts, rezip
 
 ROOT = Path(__file__).parents[2]
 DEMO = ROOT / "workbooks" / "workboat.xlsx"
@@ -100,7 +101,7 @@ def test_open_in_a_spreadsheet_program(book: Path, lock: str, capsys: pytest.Cap
     assert book.read_bytes() == before
     copy = book.with_name("vessel-with-results.xlsx")
     assert validate_package(copy.read_bytes()) == []
-    assert "R Summary" in openpyxl.load_workbook(copy, read_only=True).sheetnames
+    assert "R Summary" in openpyxl.load_workbook(copy).sheetnames
     assert sorted(os.listdir(book.parent)) == sorted([lock, *OUTPUTS, copy.name])
 
 
@@ -195,6 +196,23 @@ def test_a_formula_on_results_is_named_in_one_line(
         "formulas on Own sums read result sheets; they show the new results when the workbook is next opened "
         "in a spreadsheet program"
     ]
+
+
+def test_a_formula_written_on_a_result_sheet_is_named_when_it_is_replaced(
+    book: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    assert main(["run", str(book)]) == 0
+    assert "replaced with" not in capsys.readouterr().out
+    content = parts(book.read_bytes())
+    part = next(name for name, data in content.items() if b">Summary: " in data)
+    content[part] = content[part].replace(b"</row>", b'<c r="XFC1"><f>SUM(B2:B9)</f><v>2</v></c></row>', 1)
+    book.write_bytes(rezip(content))
+    assert main(["run", str(book)]) == 0
+    assert (
+        "replaced with the result sheets: R Summary!XFC1 (=SUM(B2:B9)); keep formulas and comments of your "
+        "own on sheets of your own, they may refer to result sheets"
+    ) in capsys.readouterr().out.splitlines()
+    assert b"SUM(B2:B9)" not in parts(book.read_bytes())[part]
 
 
 # ---- disks

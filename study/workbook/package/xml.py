@@ -194,8 +194,9 @@ class _Builder:
                 f"part {self.part} is larger or deeper than any workbook needs; it is not opened"
             )
         space, _, name = tag.rpartition("}")
-        named = {("{" + k if "}" in k else k): v for k, v in attributes.items()}
-        node = Node(space=space, name=name, attributes=named, start=self.parser.CurrentByteIndex)
+        if "}" in "".join(attributes):
+            attributes = {("{" + k if "}" in k else k): v for k, v in attributes.items()}
+        node = Node(space=space, name=name, attributes=attributes, start=self.parser.CurrentByteIndex)
         if self.open:
             self.open[-1].children.append(node)
         else:
@@ -204,12 +205,13 @@ class _Builder:
         self.texts.append([])
 
     def end(self, _: str) -> None:
-        node = self.open.pop()
-        node.text = "".join(self.texts.pop())
-        at = self.parser.CurrentByteIndex
-        tag = _START_TAG.match(self.data, node.start)
-        if tag and tag[0].endswith(b"/>"):
-            node.stop = tag.end()
+        node, at = self.open.pop(), self.parser.CurrentByteIndex
+        texts = self.texts.pop()
+        if texts:
+            node.text = texts[0] if len(texts) == 1 else "".join(texts)
+        # Of ``<name/>`` the parser reports the byte after it as its end.
+        if not texts and not node.children and self.data.startswith(b"/>", at - 2):
+            node.stop = at
         else:
             node.close, node.stop = at, self.data.index(b">", at) + 1
 

@@ -14,7 +14,10 @@ from lxml import etree
 from openpyxl.workbook.defined_name import DefinedName
 
 from study.issues import PackageError
+from study.workbook import own_work_on_results
 from study.workbook.package import graft_result_sheets, validate_package
+from study.workbook.package.opc import package_from_bytes
+from study.workbook.reader import read_package
 from tests.workbook.package.samples import (
     MAIN,
     OFFICE,
@@ -121,6 +124,37 @@ def between(data):
     book["R Load flow"].sheet_state = "hidden"
     book.active = book.sheetnames.index("Mine behind")
     return saved(book)
+
+
+def test_what_was_written_on_result_sheets_is_listed():
+    first = graft_result_sheets(engineers_book(), result_book())
+    assert own_work_on_results(package_from_bytes(first)) == ("comments on R Load flow",)
+    content = parts(first)
+    part = next(row[4] for row in sheet_list(first) if row[0] == "R Summary")
+    content[part] = re.sub(
+        rb"</row>",
+        b'<c r="M1"><f t="shared" ref="M1:M2" si="0">$A1*2</f><v>1</v></c></row>',
+        content[part],
+        count=1,
+    )
+    later = content[part].index(b'<row r="2"')
+    content[part] = content[part][:later] + content[part][later:].replace(
+        b"</row>", b'<c r="M2"><f t="shared" si="0"/><v>1</v></c></row>', 1
+    )
+    assert own_work_on_results(package_from_bytes(rezip(content))) == (
+        "R Summary!M1 (=$A1*2)",
+        "R Summary!M2 (=$A2*2)",
+        "comments on R Load flow",
+    )
+
+
+def test_names_of_result_sheets_make_no_sheet_be_read_for_formulas(monkeypatch):
+    """Print titles and marks of the last run name result sheets; only the engineer's own formulas count."""
+    book = load(openpyxl_book())
+    del book["Other"]
+    first = graft_result_sheets(saved(book), result_book())
+    monkeypatch.setattr("study.workbook.reader.read_cells", None)
+    assert [s.name for s in read_package(package_from_bytes(first), "x").sheets] == ["Loads"]
 
 
 def test_sheets_put_between_stay_where_they_are():
