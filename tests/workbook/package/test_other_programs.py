@@ -159,7 +159,9 @@ def test_macros_after_a_save_by_openpyxl():
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")
         data = graft_result_sheets(engineers_book(macros=True), result_book())
-        openpyxl.load_workbook(io.BytesIO(data), keep_vba=True).save(out)
+        book = openpyxl.load_workbook(io.BytesIO(data), keep_vba=True)
+        book.save(out)
+        book.vba_archive.close()
     again = graft_result_sheets(out.getvalue(), result_book(value=8))
     assert parts(again)["xl/vbaProject.bin"] == VBA
     assert load(again)["R Summary"]["B3"].value == 8
