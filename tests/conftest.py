@@ -12,17 +12,18 @@ from pathlib import Path
 import pytest
 
 SLOWEST_FIRST = (
-    "tests/workbook/test_office_suite.py",
     "tests/golden/test_demo_end_to_end.py",
-    "tests/workbook/test_hostile.py",
-    "tests/workbook/test_in_place.py",
+    # pages need nothing that is compiled, so that a fresh copy compiles in one process while these are drawn
     "tests/report/test_large_page.py",
     "tests/report/test_page.py",
     "tests/report/test_html.py",
     "tests/report/test_short_circuit_report.py",
+    "tests/workbook/test_office_suite.py",
+    "tests/workbook/test_hostile.py",
+    "tests/workbook/test_in_place.py",
     "tests/agreement/test_drawn_plants.py",
-    "tests/agreement/test_short_circuit_drawn_plants.py",
     "tests/workbook/package/test_other_programs.py",
+    "tests/agreement/test_short_circuit_drawn_plants.py",
     "tests/analyses/test_load_flow.py",
     "tests/workbook/test_reader_choice.py",
     "tests/faulty_workbooks/test_files.py",
