@@ -100,22 +100,31 @@ class ModeFaults:
         """
         has = np.zeros(len(self.feeds), bool)
         has[self.feed[self.station == station]] = True
-        zones = np.array([f.zone for f in self.feeds], np.int64)
-        has |= np.isin(zones, zones[has])
         nearest = self.station[self.own] == station
+        return self._part(has, nearest[self.feed] | (self.station == station))
+
+    def only_feed(self, station: int, inward: bool) -> ModeFaults:
+        """Return the faults that a station is to clear on one of its sides, with all stations behind it."""
+        has = np.array([(f.station, f.inward) == (station, inward) for f in self.feeds], bool)
+        return self._part(has, np.ones(len(self.feed), bool))
+
+    def _part(self, has: BoolArray, rows: BoolArray) -> ModeFaults:
+        """Return some feeds with the others of their zones; of their rows those wanted and their own."""
+        zones = np.array([f.zone for f in self.feeds], np.int64)
+        has = has | np.isin(zones, zones[has])
         is_own = np.zeros(len(self.feed), bool)
         is_own[self.own] = True
-        rows = np.flatnonzero(has[self.feed] & (nearest[self.feed] | is_own | (self.station == station)))
+        keep = np.flatnonzero(has[self.feed] & (rows | is_own))
         feeds = np.flatnonzero(has)
         part = copy.copy(self)
         part._kept = {}
         part.feeds = tuple(self.feeds[k] for k in feeds)
-        part.feed = np.searchsorted(feeds, self.feed[rows])
-        part.station, part.inward, part.turned = self.station[rows], self.inward[rows], self.turned[rows]
-        part.own = np.flatnonzero(is_own[rows])
+        part.feed = np.searchsorted(feeds, self.feed[keep])
+        part.station, part.inward, part.turned = self.station[keep], self.inward[keep], self.turned[keep]
+        part.own = np.flatnonzero(is_own[keep])
         part.place, part.inside = self.place[:, feeds], self.inside[:, feeds]
         part.there, part.fed_back = self.there[feeds], self.fed_back[feeds]
-        part.whole_rows = rows
+        part.whole_rows = keep
         part.work_out()
         return part
 

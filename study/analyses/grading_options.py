@@ -12,7 +12,8 @@ class GradingOptions:
     ``margin_s`` is the least time from clearing downstream to release upstream, ``clearing_s`` the longest
     time until the least fault is cleared, ``last_s`` how far currents are followed. ``starting_time_s`` is
     a motor's starting time where the workbook gives none; ``start_factor`` times that is how long a release
-    must hold a start. ``proposals`` is the largest number of setting changes looked for.
+    must hold a start. ``trials`` is how
+    often, at most, all that a setting bears upon is graded again in the search for settings.
     """
 
     margin_s: float = 0.01
@@ -20,4 +21,4 @@ class GradingOptions:
     last_s: float = 20.0
     starting_time_s: float = 3.0
     start_factor: float = 1.1
-    proposals: int = 12
+    trials: int = 24

@@ -13,7 +13,7 @@ from study.analyses.grading_candidates import FIELDS, Candidate, Trials
 from study.analyses.grading_faults import ModeFaults
 from study.analyses.grading_options import GradingOptions
 from study.analyses.grading_pairs import ModePairing, PairKey
-from study.analyses.grading_reach import mode_reach
+from study.analyses.grading_reach import ENDS_BY_ITSELF, mode_reach
 from study.analyses.grading_rules import Rules
 from study.analyses.grading_stations import Stations
 from study.analyses.grading_targets import Target
@@ -73,6 +73,7 @@ class Search:
     ) -> None:
         self.plant, self.stations, self.faults, self.kinds = plant, stations, faults, kinds
         self.rules, self.openers, self.held, self.options = rules, openers, held, options
+        self.trials_left = options.trials
         self.devices = list(plant.devices)
         self.surroundings = device_surroundings(plant)
         self.ranges: dict[str, list[SettingRange]] = {}
@@ -81,22 +82,20 @@ class Search:
 
     # ---- what fails
 
-    def failures(self, parts: Sequence[ModeFaults], openers: Openers) -> Failures:
-        """Return what fails of some faults with some devices."""
-        pairs: dict[tuple[int, PairKey], float] = {}
-        reach: set[tuple[int, ReachKey]] = set()
-        graded = 0
-        for m, part in enumerate(parts):
-            if not len(part.feed):
-                continue
-            kind = self.kinds[m][part.whole_rows]
-            pairing = ModePairing(part, openers, self.rules, self.options.margin_s, kind)
-            pairs |= {(m, key): margin for key, margin in pairing.failing().items()}
-            graded += len(pairing.rows)
-            found = mode_reach(part, openers, pairing.mode_rules)
-            late = found.judged & ~(found.clears_s <= self.options.clearing_s) & (found.by != -2)
-            reach |= {(m, (part.feeds[k].station, part.feeds[k].inward)) for k in np.flatnonzero(late)}
-        return Failures(pairs=pairs, reach=frozenset(reach), graded=graded)
+    def failures(self, mode: int, part: ModeFaults, openers: Openers) -> Failures:
+        """Return what fails of some faults of a mode with some devices."""
+        if not len(part.feed):
+            return Failures(pairs={}, reach=frozenset(), graded=0)
+        kind = self.kinds[mode][part.whole_rows]
+        pairing = ModePairing(part, openers, self.rules, self.options.margin_s, kind)
+        found = mode_reach(part, openers, pairing.mode_rules)
+        late = found.judged & ~(found.clears_s <= self.options.clearing_s) & (found.by != ENDS_BY_ITSELF)
+        feeds = (part.feeds[k] for k in np.flatnonzero(late))
+        return Failures(
+            pairs={(mode, key): margin for key, margin in pairing.failing().items()},
+            reach=frozenset((mode, (f.station, f.inward)) for f in feeds),
+            graded=len(pairing.rows),
+        )
 
     def _trials(self) -> Trials:
         return Trials(self.stations, self.openers, self.devices, self.ranges)
@@ -120,11 +119,8 @@ class Search:
         left: list[NotCured] = []
         cured: set[PairKey | ReachKey] = set()
         for target in targets:
-            key = _key(target)
-            if key in cured:
+            if _key(target) in cured:
                 continue
-            if len(changes) + len(left) >= self.options.proposals:
-                break
             change = self._cure(target, cured)
             if change is not None:
                 changes.append(change)
@@ -133,32 +129,39 @@ class Search:
         return _joined(changes), left
 
     def _cure(self, target: Target, cured: set[PairKey | ReachKey]) -> SettingChange | None:
-        parts: dict[int, list[ModeFaults]] = {}
-        before: dict[int, Failures] = {}
+        """Return the first change that cures and breaks nothing; it stays in force."""
+        own = {m: self.faults[m].only_feed(target.downstream, target.inward) for m in target.modes}
         tried = 0
         for c in self._trials().candidates(target):
             tried += 1
-            if c.station not in parts:
-                parts[c.station] = [f.only(c.station) for f in self.faults]
-                before[c.station] = self.failures(parts[c.station], self.openers)
             device, openers = self._with(c)
-            after = self.failures(parts[c.station], openers)
-            old = before[c.station]
-            if self._still(target, after) or set(after.pairs) - set(old.pairs) or after.reach - old.reach:
+            if any(_fails(target, self.failures(m, part, openers)) for m, part in own.items()):
                 continue
-            if self.held(openers, c.station) - self.held(self.openers, c.station):
+            if self.trials_left <= 0:
+                break
+            self.trials_left -= 1
+            both = self._graded_again(c.station, openers)
+            if both is None or self.held(openers, c.station) - self.held(self.openers, c.station):
                 continue
-            change = self._said(c, target, (old, after), tried, (parts[c.station], openers))
+            old, new = both
+            after = [self._margin(target, m, part, openers) for m, part in own.items()]
+            change = self._said(c, target, both, tried, min(after))
             self._keep(c, device, openers)
-            cured |= {k for _, k in set(old.pairs) - set(after.pairs) if not _in(k, after)}
-            cured |= {k for _, k in old.reach - after.reach}
+            cured |= {k for _, k in set(old.pairs) - set(new.pairs) if not _in(k, new)}
+            cured |= {k for _, k in old.reach - new.reach}
             return change
         return None
 
-    def _still(self, t: Target, after: Failures) -> bool:
-        if t.upstream < 0:
-            return any((m, (t.downstream, t.inward)) in after.reach for m in t.modes)
-        return any((m, (t.downstream, t.upstream, t.inward)) in after.pairs for m in t.modes)
+    def _graded_again(self, station: int, openers: Openers) -> tuple[Failures, Failures] | None:
+        """Return what fails before and after of all that a station bears upon; None where more fails."""
+        old, new = [], []
+        for m, faults in enumerate(self.faults):
+            part = faults.only(station)
+            old.append(self.failures(m, part, self.openers))
+            new.append(self.failures(m, part, openers))
+            if set(new[-1].pairs) - set(old[-1].pairs) or new[-1].reach - old[-1].reach:
+                return None
+        return _whole(old), _whole(new)
 
     def _with(self, c: Candidate) -> tuple[Device, Openers]:
         """Return the device with the setting tried, and what opens the stations then."""
@@ -187,7 +190,7 @@ class Search:
         target: Target,
         both: tuple[Failures, Failures],
         tried: int,
-        again: tuple[Sequence[ModeFaults], Openers],
+        after: float,
     ) -> SettingChange:
         old, new = both
         modes: dict[PairKey, list[int]] = {}
@@ -201,8 +204,6 @@ class Search:
         cures += [(names[s], "", tuple(mode_names[m] for m in ms)) for s, ms in late.items()]
         pair = (target.downstream, target.upstream, target.inward)
         margins = [v for (_, key), v in old.pairs.items() if key == pair]
-        unit = "s"
-        after = self._margin(target, again) if target.upstream >= 0 else np.nan
         return SettingChange(
             device=c.range.device,
             setting=c.range.setting,
@@ -215,31 +216,28 @@ class Search:
             cures=tuple(cures),
             before=min(margins, default=np.nan),
             after=after,
-            margin_unit=unit,
+            margin_unit="s",
             tried=tried,
             graded=new.graded,
         )
 
-    def _margin(self, t: Target, again: tuple[Sequence[ModeFaults], Openers]) -> float:
-        """Return the least margin of the pair in the modes in which it failed, with the new setting."""
-        found = [np.inf]
-        for m in t.modes:
-            part = again[0][m]
-            kind = self.kinds[m][part.whole_rows]
-            pairing = ModePairing(part, again[1], self.rules, self.options.margin_s, kind)
-            table = pairing.pairs()
-            found += [
-                float(margin)
-                for key, margin in zip(table.key, table.margin_s, strict=True)
-                if key == (t.downstream, t.upstream, t.inward)
-            ]
-        return float(np.nanmin(found))
+    def _margin(self, t: Target, mode: int, part: ModeFaults, openers: Openers) -> float:
+        """Return the least margin of the pair in a mode with the new setting; NaN for a reach."""
+        if t.upstream < 0:
+            return np.nan
+        kind = self.kinds[mode][part.whole_rows]
+        table = ModePairing(part, openers, self.rules, self.options.margin_s, kind).pairs()
+        pair = (t.downstream, t.upstream, t.inward)
+        margins = zip(table.key, table.margin_s.tolist(), strict=True)
+        return min((margin for key, margin in margins if key == pair), default=np.nan)
 
     def _left(self, t: Target) -> NotCured:
         names = self.stations.names
         stations = [t.downstream] + ([t.upstream] if t.upstream >= 0 else [])
         given = [names[s] for s in stations if any(self._trials().settings(s))]
-        if not given:
+        if given and self.trials_left <= 0:
+            why = "not searched: the search ends after so many trials; cure the others first and run again"
+        elif not given:
             why = "no setting of these devices has a range on the sheet Setting ranges"
         else:
             why = (
@@ -273,6 +271,20 @@ def _joined(changes: Sequence[SettingChange]) -> list[SettingChange]:
             graded=first.graded + change.graded,
         )
     return list(found.values())
+
+
+def _fails(t: Target, failures: Failures) -> bool:
+    if t.upstream < 0:
+        return any(key == (t.downstream, t.inward) for _, key in failures.reach)
+    return _in((t.downstream, t.upstream, t.inward), failures)
+
+
+def _whole(parts: Sequence[Failures]) -> Failures:
+    return Failures(
+        pairs={key: margin for part in parts for key, margin in part.pairs.items()},
+        reach=frozenset(key for part in parts for key in part.reach),
+        graded=sum(part.graded for part in parts),
+    )
 
 
 def _key(t: Target) -> PairKey | ReachKey:
