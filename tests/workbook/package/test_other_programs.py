@@ -25,6 +25,7 @@ from tests.workbook.package.samples import (
     result_book,
     saved_by_openpyxl,
 )
+from tests.workbook.package.test_rerun import between, local_names, sheet_list
 
 OFFICE_SUITE = shutil.which("soffice")
 BOOKS = {"XlsxWriter": engineers_book, "openpyxl": openpyxl_book, "macros": packed_book}
@@ -52,6 +53,8 @@ def converted(tmp_path_factory):
     for name, make in BOOKS.items():
         paths.append(folder / f"{name}.xlsx")
         paths[-1].write_bytes(graft_result_sheets(make(), result_book(value=3.5)))
+    paths.append(folder / "between.xlsx")
+    paths[-1].write_bytes(between(graft_result_sheets(engineers_book(), result_book(value=3.5))))
     profile = f"-env:UserInstallation={(folder / 'profile').as_uri()}"
     for kind, out in (("xlsx:Calc MS Excel 2007 XML", "saved"), ("pdf", "printed")):
         command = [OFFICE_SUITE, profile, "--headless", "--convert-to", kind, "--outdir", str(folder / out)]
@@ -124,6 +127,29 @@ def test_every_part_that_libreoffice_wrote_for_the_engineer_keeps_its_bytes(conv
     assert any(name.startswith("xl/worksheets/sheet") for name in kept)
     assert any(name.startswith("xl/drawings/") for name in kept)
     assert "docProps/core.xml" in kept
+
+
+def test_sheets_put_between_and_saved_by_libreoffice(converted):
+    """Order, hidden sheets, active tab, names, print titles and areas, and formulas on results."""
+    saved = (converted / "saved" / "between.xlsx").read_bytes()
+    second = graft_result_sheets(saved, result_book(value=8))
+    assert validate_package(second) == []
+    assert sheet_list(second) == sheet_list(saved)
+    assert [(row[0], row[3]) for row in sheet_list(second)] == [
+        ("Loads", "visible"), ("R notes of mine", "visible"), ("Hidden", "hidden"), ("R Summary", "visible"),
+        ("Mine between", "visible"), ("R Load flow", "hidden"), ("Mine behind", "visible"),
+    ]  # fmt: skip
+    mine = {key: text for key, text in local_names(saved).items() if not key[1].startswith("R ")}
+    assert ("Own", "Mine between") in mine
+    assert {name for name, _ in mine} >= {"_xlnm.Print_Titles", "_xlnm.Print_Area"}
+    assert {k: v for k, v in local_names(second).items() if not k[1].startswith("R ")} == mine
+    book = load(second)
+    assert book.active.title == "Mine behind"
+    assert book["Mine between"]["A1"].value == "='R Load flow'!B3"
+    assert book["R notes of mine"]["A1"].value == "='R Summary'!B3*2"
+    assert book.defined_names["Last_result"].value == "'R Summary'!$B$3"
+    assert book["R Load flow"]["B3"].value == 8
+    assert graft_result_sheets(second, result_book(value=8)) == second
 
 
 @pytest.mark.parametrize("book", BOOKS)
