@@ -51,6 +51,9 @@ class Trials:
         In workbook order.
     ranges : mapping of str to sequence of SettingRange
         By device.
+    of_sources : frozenset of int
+        Stations of sources: their short-time pick-up is bound to the current that the source holds up, and
+        is never raised.
     """
 
     def __init__(
@@ -59,7 +62,9 @@ class Trials:
         openers: Openers,
         devices: Sequence[Device],
         ranges: Mapping[str, Sequence[SettingRange]],
+        of_sources: frozenset[int],
     ) -> None:
+        self.of_sources = of_sources
         self.stations, self.openers, self.devices, self.ranges = stations, openers, devices, ranges
         self.row = {d.name: k for k, d in enumerate(devices)}
 
@@ -102,7 +107,7 @@ class Trials:
                 case "Instantaneous current" if t.at_once and t.current_ratio > 0.0:
                     aims = [_LITTLE * now / t.current_ratio]
                     reason = f"{name} no longer opens without delay for this fault"
-                case "Short-time current":
+                case "Short-time current" if t.upstream not in self.of_sources:
                     aims = [_LITTLE * t.upstream_a / (1.0 - d.current_tolerance)]
                     reason = f"{name} no longer picks up for this fault"
                 case _:

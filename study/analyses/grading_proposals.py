@@ -74,6 +74,7 @@ class Search:
         self.plant, self.stations, self.faults, self.kinds = plant, stations, faults, kinds
         self.rules, self.openers, self.held, self.options = rules, openers, held, options
         self.trials_left = options.trials
+        self.of_sources = frozenset(s for f in faults for s in f.zones.of_sources())
         self.devices = list(plant.devices)
         self.surroundings = device_surroundings(plant)
         self.ranges: dict[str, list[SettingRange]] = {}
@@ -98,7 +99,7 @@ class Search:
         )
 
     def _trials(self) -> Trials:
-        return Trials(self.stations, self.openers, self.devices, self.ranges)
+        return Trials(self.stations, self.openers, self.devices, self.ranges, self.of_sources)
 
     # ---- trying
 

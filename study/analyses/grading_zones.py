@@ -155,6 +155,14 @@ class Zones:
                 return self._root[p]
         return self._root[places.names.index(board)]
 
+    def of_sources(self) -> frozenset[int]:
+        """Return the stations behind which stands a source and no board."""
+        return frozenset(
+            s
+            for s, sides in self.side.items()
+            if any(self.zones[z].sources and not self.zones[z].boards for z in sides)
+        )
+
     # ---- what feeds a fault
 
     def rests_at(self, zone: int) -> tuple[int, int]:

@@ -70,7 +70,15 @@ METHODS: tuple[str, ...] = (
     "every device behind it up to the sources, as the topology of each mode has them. Bands hold all "
     "tolerances; delays are integrated as IEC 60255-151 has it (from memory). An instantaneous stage that "
     "may open is ruled by makers' discrimination and let-through tables alone. Partial discrimination is "
-    "found by bisection over the level of the fault.",
+    "found by bisection over the level of the fault. Parallel paths open in turn, the currents of the others "
+    "solved again each time.",
+    "Not graded: breakers in one circuit with nothing between them, faults of a set among fewer than three, "
+    "faults in parallel paths without directional or differential protection, and what converters alone feed "
+    "back. Motors' own contributions to faults elsewhere, earth faults and the reacceleration after a fault "
+    "are not in it.",
+    "Proposed settings: values within the ranges of the sheet, the smallest change first; each is graded "
+    "again on all that the setting bears upon, with reach and starts, before it is offered. Overload "
+    "settings and the short-time pick-up of sets are never raised. The search is bounded.",
     "What devices must hold: motor starts (typical time where none is given), inrush of transformers, steps "
     "of the restart after a blackout, each against the near end of the bands.",
     "Verdicts are judged on unrounded values. A verdict depends on data where it would turn within the "

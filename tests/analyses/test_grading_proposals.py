@@ -127,3 +127,18 @@ def test_a_change_that_a_start_does_not_survive_is_not_offered() -> None:
     assert graded(narrow).changes == ()
     offered = graded(wide).changes
     assert offered[0].proposed > 1066.0 / 0.9
+
+
+def test_the_pick_up_of_a_set_is_never_raised() -> None:
+    # It is bound to what the set holds up (80 % of the sustained current, common in ship practice).
+    plant = feeder_plant(
+        source={"gensets": [plants.genset("G1", "MSB")]},
+        above={"short_time_a": 2000.0, "short_time_delay_s": 0.4},
+        cables=[plants.cable("CG", "G1", "MSB", length_m=5.0, section_mm2=300.0, runs=3)],
+        devices=[breaker("QG", "CG", "MSB", short_time_a=2500.0, short_time_delay_s=0.4)],
+    )
+    raised = ranged(plant, ("QG", "Short-time current", 1000.0, 40_000.0, 100.0))
+    assert ("QF", "QG") in failing(graded(raised))
+    assert graded(raised).changes == ()
+    later = ranged(plant, ("QG", "Short-time delay", 0.1, 1.0, 0.1))
+    assert [(c.device, c.setting) for c in graded(later).changes] == [("QG", "Short-time delay")]
